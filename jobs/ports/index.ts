@@ -1,0 +1,61 @@
+import type { LibSQLDatabase } from 'drizzle-orm/libsql';
+import type { FitInput, FitResult } from '../../schema/wire/parameters.ts';
+import type { ReduceOutcome } from '../../schema/wire/reduced.ts';
+import type { ReadOutcome, ReadScan } from '../../schema/wire/scan.ts';
+import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
+
+/**
+ * The database. `read` never writes (a structure test holds that); every write goes through the one guarded door `write`,
+ * which serialises, and retries after a busy error on a fresh connection (a libSQL connection that met SQLITE_BUSY once loses writes in silence).
+ */
+export interface Database {
+  read: LibSQLDatabase;
+  write<T>(work: (db: LibSQLDatabase) => Promise<T>): Promise<T>;
+  close(): void;
+}
+
+/** Originals and derived curves. Keys are relative paths with `/`. */
+export interface BlobStore {
+  /** Stores the stream whole or not at all. `length` is checked where the store can. */
+  put(key: string, body: ReadableStream<Uint8Array> | Uint8Array, length?: number): Promise<void>;
+  /** Throws BlobMissing when there is none. */
+  get(key: string): Promise<ReadableStream<Uint8Array>>;
+  /** The whole blob in memory. Throws BlobMissing when there is none. */
+  bytes(key: string): Promise<Uint8Array>;
+  has(key: string): Promise<boolean>;
+  delete(key: string): Promise<void>;
+  list(prefix: string): AsyncIterable<{ key: string; size: number; modifiedMs: number }>;
+}
+
+export class BlobMissing extends Error {
+  constructor(readonly key: string) {
+    super(`no blob under key ${key}`);
+    this.name = 'BlobMissing';
+  }
+}
+
+/** A wake-up: the job row is the record, a message holds only its id and may be lost or doubled. */
+export interface Queue {
+  wake(jobId: string, delaySeconds: number): Promise<void>;
+}
+
+export interface Clock {
+  /** ms since the epoch */
+  now(): number;
+}
+
+/** Where the pure, long computations run: inline (serverless, tests) or in worker threads (Node). Arrays in, arrays out. */
+export interface Compute {
+  readScan(bytes: Uint8Array, file: string): Promise<ReadOutcome>;
+  reduceScan(scan: ReadScan, input: ReduceInput): Promise<ReduceOutcome>;
+  fitSample(input: FitInput): Promise<FitResult>;
+  close(): Promise<void>;
+}
+
+export interface Ports {
+  database: Database;
+  blobs: BlobStore;
+  queue: Queue;
+  clock: Clock;
+  compute: Compute;
+}

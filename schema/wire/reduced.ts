@@ -1,0 +1,81 @@
+import type { Flag } from './flags.ts';
+
+/** Conversions at which every reduced scan is kept: 0.01 … 0.99. */
+export const CONVERSION_GRID: readonly number[] = Array.from({ length: 99 }, (_, i) => (i + 1) / 100);
+
+/** One event of one scan on the conversion grid (99 rows) with the programme before it. Temperatures are true (lag and offset removed). */
+export interface ReducedCurve {
+  /** s, time at each grid conversion, on the clock of the scan */
+  timeS: Float64Array;
+  /** K */
+  temperatureK: Float64Array;
+  /** 1/s, dα/dt */
+  ratePerS: Float64Array;
+  /** K: shift of T(α) when the event's limits move by one noise length and 10 % of the width: the baseline's share of the uncertainty (one standard error) */
+  baselineErrorK: Float64Array;
+  /** s, K: the programme from its start to α = 0.01 (about 50 rows, last row = the grid's first) */
+  programmeTimeS: Float64Array;
+  programmeTemperatureK: Float64Array;
+}
+
+export interface ReducedEvent {
+  event: number;
+  rateKPerS: number;
+  onsetK: number;
+  peakK: number;
+  endK: number;
+  /** Full width at half maximum, K */
+  widthK: number;
+  /** Time centroid expressed as a temperature, K */
+  centroidK: number;
+  /** One standard error of the peak from noise and sampling, K */
+  peakErrorK: number;
+  /** Area, J (heat flow in W) or J/kg (W/kg) */
+  area: number;
+  areaError: number;
+  enthalpyJPerKg?: number;
+  /** Conversion range that may be used, e.g. [0.01, 0.99], [0.01, 0.8] where melting overlaps */
+  usableFrom: number;
+  usableTo: number;
+  /** Points over the full width at half maximum */
+  pointsOverWidth: number;
+  /** Noise of the signal divided by the event's height (one standard deviation) */
+  noiseFraction: number;
+  /** Start of the linear ramp, K (for Augis–Bennett) */
+  rampStartK: number;
+  /** Missing for a cut event or too few points: temperatures only */
+  curve?: ReducedCurve;
+}
+
+/** A segment of the temperature programme, 1-based in time order; rows [from, to). */
+export interface Segment {
+  segment: number;
+  kind: 'heating' | 'cooling' | 'hold';
+  from: number;
+  to: number;
+  rateKPerS: number;
+  startK: number;
+  endK: number;
+}
+
+/** Decimated traces for the plots, at most 2 000 points, extremes kept. Exotherm up. */
+export interface ReducedTrace {
+  temperatureK: Float64Array;
+  heatFlow: Float64Array;
+  baseline: Float64Array;
+}
+
+export interface ReducedScan {
+  segments: Segment[];
+  /** Segment analysed, 1-based */
+  segment: number;
+  massKg?: number;
+  glassTransitionK?: number;
+  events: ReducedEvent[];
+  trace: ReducedTrace;
+  flags: Flag[];
+}
+
+export type ReduceOutcome =
+  | { ok: true; reduced: ReducedScan }
+  | { ok: false; code: 'sign-unknown' | 'file-damaged'; reason: string; action: string; flags: Flag[] };

@@ -1,0 +1,17 @@
+import type { InstrumentCalibration } from './scan.ts';
+import type { ExothermDirection, Role } from './states.ts';
+
+/** What `reduce-scan` needs beside the columns. */
+export interface ReduceInput {
+  file: string;
+  sample: string;
+  role: Role;
+  rateNominalKPerS?: number;
+  massKg?: number;
+  exotherm?: ExothermDirection;
+  /** 1-based over all segments; empty = the first heating segment that shows an event */
+  segment?: number;
+  calibration: InstrumentCalibration;
+  meltingK?: number;
+  crystallizationEnthalpyJPerKg?: number;
+}

@@ -1,0 +1,10 @@
+import { fileURLToPath } from 'node:url';
+import { defineConfig } from 'vitest/config';
+
+const root = fileURLToPath(new URL('..', import.meta.url));
+
+export default defineConfig({
+  root,
+  esbuild: { jsx: 'automatic', jsxImportSource: 'preact' },
+  test: { include: ['test/**/*.test.ts', 'test/**/*.test.tsx'], testTimeout: 20_000, pool: 'forks' },
+});
