@@ -1,0 +1,46 @@
+/**
+ * Solves the normal equations of a small least-squares problem by Cholesky after scaling to unit diagonal.
+ * @param matrix p × p symmetric, row-major; overwritten by its inverse (in the original scale)
+ * @param rhs length p; overwritten by the solution
+ * @returns false when the matrix is not positive definite to working precision (nothing useful in the outputs then)
+ */
+export function solveSymmetric(matrix: Float64Array, rhs: Float64Array, p: number): boolean {
+  const scale = new Float64Array(p);
+  for (let i = 0; i < p; i++) {
+    const d = matrix[i * p + i];
+    if (!(d > 0) || !Number.isFinite(d)) return false;
+    scale[i] = 1 / Math.sqrt(d);
+  }
+  const l = new Float64Array(p * p);
+  for (let i = 0; i < p; i++) {
+    for (let j = 0; j <= i; j++) {
+      let sum = matrix[i * p + j] * scale[i] * scale[j];
+      for (let k = 0; k < j; k++) sum -= l[i * p + k] * l[j * p + k];
+      if (i === j) {
+        if (sum < 1e-14) return false;
+        l[i * p + i] = Math.sqrt(sum);
+      } else {
+        l[i * p + j] = sum / l[j * p + j];
+      }
+    }
+  }
+  // Columns of the inverse, then the solution as inverse × right-hand side: p is at most a handful.
+  const column = new Float64Array(p);
+  for (let c = 0; c < p; c++) {
+    for (let i = 0; i < p; i++) {
+      let sum = i === c ? 1 : 0;
+      for (let k = 0; k < i; k++) sum -= l[i * p + k] * column[k];
+      column[i] = sum / l[i * p + i];
+    }
+    for (let i = p - 1; i >= 0; i--) {
+      let sum = column[i];
+      for (let k = i + 1; k < p; k++) sum -= l[k * p + i] * column[k];
+      column[i] = sum / l[i * p + i];
+    }
+    for (let i = 0; i < p; i++) matrix[i * p + c] = column[i] * scale[i] * scale[c];
+  }
+  const solution = new Float64Array(p);
+  for (let i = 0; i < p; i++) for (let k = 0; k < p; k++) solution[i] += matrix[i * p + k] * rhs[k];
+  rhs.set(solution);
+  return true;
+}
