@@ -92,10 +92,19 @@ export function csvCell(value: Cell): string {
   return /[",\r\n]/.test(text) ? `"${text.replaceAll('"', '""')}"` : text;
 }
 
+/** Header line of a result table, ended by LF. */
+export function csvHeader(table: ResultTable): string {
+  return `${RESULT_TABLES[table].join(',')}\n`;
+}
+
+/** One row of a result table, ended by LF. */
+export function csvRow(table: ResultTable, row: Record<string, unknown>): string {
+  return `${RESULT_TABLES[table].map((column) => csvCell(row[column] as Cell)).join(',')}\n`;
+}
+
 /** Header line and rows of a result table, lines ended by LF. */
 export function csvTable(table: ResultTable, rows: Iterable<Record<string, unknown>>): string {
-  const columns: readonly string[] = RESULT_TABLES[table];
-  let out = `${columns.join(',')}\n`;
-  for (const row of rows) out += `${columns.map((c) => csvCell(row[c] as Cell)).join(',')}\n`;
+  let out = csvHeader(table);
+  for (const row of rows) out += csvRow(table, row);
   return out;
 }
