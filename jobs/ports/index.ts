@@ -37,14 +37,30 @@ export class BlobMissing extends Error {
 /** A wake-up: the job row is the record, a message holds only its id and may be lost or doubled. */
 export interface Queue {
   wake(jobId: string, delaySeconds: number): Promise<void>;
+  /** Resolves at the next wake-up that this process hears of, or after `timeoutMs`; absent where wake-ups are delivered from outside. */
+  heard?(timeoutMs: number): Promise<void>;
 }
 
 export interface Clock {
   /** ms since the epoch */
   now(): number;
+  /** Resolves after `durationMs`, at once when `signal` aborts. Tests move time instead of waiting. */
+  sleep(durationMs: number, signal?: AbortSignal): Promise<void>;
 }
 
-/** Where the pure, long computations run: inline (serverless, tests) or in worker threads (Node). Arrays in, arrays out. */
+/** What a path alone says (INTERFACES, path rules and names of sheets): the reading rooms know, the store asks. */
+export interface PathRules {
+  /** Why the path is not allowed, or undefined. */
+  problem(path: string): string | undefined;
+  kind(path: string): 'data' | 'sheet' | 'archive';
+  /** The folder layout SAMPLE/INSTRUMENT/file. */
+  assignment(path: string): { sample: string; instrument: string } | undefined;
+}
+
+/**
+ * Where the pure, long computations run: inline (serverless, tests) or in worker threads (Node). Arrays in, arrays out.
+ * Typed arrays are handed over, not copied: the caller must not use `bytes` or the columns of `scan` again.
+ */
 export interface Compute {
   readScan(bytes: Uint8Array, file: string): Promise<ReadOutcome>;
   reduceScan(scan: ReadScan, input: ReduceInput): Promise<ReduceOutcome>;
@@ -58,4 +74,5 @@ export interface Ports {
   queue: Queue;
   clock: Clock;
   compute: Compute;
+  paths: PathRules;
 }

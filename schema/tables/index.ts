@@ -1,7 +1,25 @@
 import { sql } from 'drizzle-orm';
 import { check, index, integer, primaryKey, real, sqliteTable, text, uniqueIndex } from 'drizzle-orm/sqlite-core';
+import type { CoverageRow, GapRow } from '../wire/campaign.ts';
+import type { Flag } from '../wire/flags.ts';
+import type { FitReport, ParameterRow } from '../wire/parameters.ts';
+import type { ReducedSummary } from '../wire/reduced-blob.ts';
+import type { InstrumentCalibration, InstrumentSheetRow, SampleSheetRow, ScanSheetRow } from '../wire/scan.ts';
+import type { JobState, Role, SampleState, ScanState } from '../wire/states.ts';
 
-/** Times are ms since the epoch. Ids are random, prefixed by kind. JSON columns hold types of schema/wire. */
+/**
+ * Times are ms since the epoch. Ids are random, prefixed by kind. JSON columns hold types of schema/wire.
+ * `inputs_revision` grows with every change of what a row depends on; its partner (`planned_revision`, `fitted_revision`, …)
+ * is the revision that the stored result was made from, so that a result made from old inputs never hides newer ones.
+ */
+
+export type FileKind = 'data' | 'sheet' | 'archive';
+/** unread → read | refused (data), parsed | refused (sheet), expanded | refused (archive); failed when the job gave up. */
+export type FileState = 'unread' | 'read' | 'parsed' | 'expanded' | 'refused' | 'failed';
+/** What the sheets say of a scan: it has a sample and an instrument, nobody names it, or it repeats the bytes of another. */
+export type Disposition = 'waiting' | 'assigned' | 'unassigned' | 'duplicate';
+export type ReadSheetName = 'scans' | 'instruments' | 'samples';
+export type SheetRowBody = ScanSheetRow | InstrumentSheetRow | SampleSheetRow;
 
 export const campaigns = sqliteTable(
   'campaigns',
@@ -12,49 +30,60 @@ export const campaigns = sqliteTable(
     createdAt: integer('created_at').notNull(),
     /** Grows with every change of anything the campaign shows: ETags and the event stream use it. */
     revision: integer('revision').notNull().default(0),
+    inputsRevision: integer('inputs_revision').notNull().default(0),
+    plannedRevision: integer('planned_revision').notNull().default(0),
   },
   (t) => [uniqueIndex('campaigns_name').on(t.lab, t.name)],
 );
+
+const campaignId = () =>
+  text('campaign_id')
+    .notNull()
+    .references(() => campaigns.id, { onDelete: 'cascade' });
 
 /** One uploaded file or archive member under one path; a path sent again with other bytes makes the older row superseded. */
 export const files = sqliteTable(
   'files',
   {
     id: text('id').primaryKey(),
-    campaignId: text('campaign_id')
-      .notNull()
-      .references(() => campaigns.id, { onDelete: 'cascade' }),
+    campaignId: campaignId(),
     path: text('path').notNull(),
     sha256: text('sha256').notNull(),
     bytes: integer('bytes').notNull(),
     blobKey: text('blob_key').notNull(),
-    kind: text('kind').notNull(), // data | sheet | archive
-    archiveId: text('archive_id'), // the archive this member came from
+    kind: text('kind').$type<FileKind>().notNull(),
+    /** The archive this member came from. */
+    archiveId: text('archive_id'),
     superseded: integer('superseded', { mode: 'boolean' }).notNull().default(false),
-    /** unread → read | refused (data), expanded (archive), parsed (sheet) */
-    state: text('state').notNull(),
+    state: text('state').$type<FileState>().notNull(),
     reason: text('reason'),
-    refusalCode: text('refusal_code'),
-    /** derived columns blob once read */
+    /** Derived columns blob once read. */
     columnsKey: text('columns_key'),
-    flags: text('flags', { mode: 'json' }).notNull().default([]),
+    /** Highest heating rate over the file, K/s, once read: tells a chip from a furnace. */
+    highestRateKPerS: real('highest_rate_k_per_s'),
+    flags: text('flags', { mode: 'json' }).$type<Flag[]>().notNull().default([]),
     createdAt: integer('created_at').notNull(),
   },
-  (t) => [index('files_path').on(t.campaignId, t.path), index('files_hash').on(t.campaignId, t.sha256)],
+  (t) => [
+    uniqueIndex('files_live_path').on(t.campaignId, t.path).where(sql`superseded = 0`),
+    index('files_hash').on(t.campaignId, t.sha256),
+    index('files_archive').on(t.archiveId),
+  ],
 );
 
 /** Parsed sheet rows as they stand now; `body` is the wire type of the sheet. */
 export const sheetRows = sqliteTable(
   'sheet_rows',
   {
-    campaignId: text('campaign_id')
+    campaignId: campaignId(),
+    fileId: text('file_id')
       .notNull()
-      .references(() => campaigns.id, { onDelete: 'cascade' }),
-    sheet: text('sheet').notNull(), // scans | instruments | samples
-    line: integer('line').notNull(),
-    body: text('body', { mode: 'json' }).notNull(),
+      .references(() => files.id, { onDelete: 'cascade' }),
+    sheet: text('sheet').$type<ReadSheetName>().notNull(),
+    position: integer('position').notNull(),
+    body: text('body', { mode: 'json' }).$type<SheetRowBody>().notNull(),
   },
-  (t) => [primaryKey({ columns: [t.campaignId, t.sheet, t.line] })],
+  (t) => [primaryKey({ columns: [t.fileId, t.position] }), index('sheet_rows_sheet').on(t.campaignId, t.sheet)],
 );
 
 /** A scan: (file bytes, sample, instrument, segment) in a campaign; a file that no row names is one `unassigned` scan. */
@@ -62,57 +91,65 @@ export const scans = sqliteTable(
   'scans',
   {
     id: text('id').primaryKey(),
-    campaignId: text('campaign_id')
-      .notNull()
-      .references(() => campaigns.id, { onDelete: 'cascade' }),
+    campaignId: campaignId(),
     fileId: text('file_id')
       .notNull()
       .references(() => files.id, { onDelete: 'cascade' }),
-    sha256: text('sha256').notNull(),
+    disposition: text('disposition').$type<Disposition>().notNull(),
     sample: text('sample'),
     instrument: text('instrument'),
-    role: text('role').notNull().default('sample'),
-    segment: integer('segment'), // as asked by the sheet; the analysed one is in `result`
-    /** ScanSheetRow or null when assigned by folder */
-    sheetRow: text('sheet_row', { mode: 'json' }),
-    status: text('status').notNull(),
+    role: text('role').$type<Role>().notNull().default('sample'),
+    /** As asked by the sheet; the analysed one is in `result`. */
+    segment: integer('segment'),
+    /** Null when assigned by folder. */
+    sheetRow: text('sheet_row', { mode: 'json' }).$type<ScanSheetRow>(),
+    /** Hash of what the sheets say about this scan: a corrected sheet re-queues only the scans where it changed. */
+    sheetHash: text('sheet_hash').notNull().default(''),
+    inputsRevision: integer('inputs_revision').notNull().default(0),
+    status: text('status').$type<ScanState>().notNull(),
     reason: text('reason'),
     reducedKey: text('reduced_key'),
-    /** ReducedScan without curves: characteristic temperatures, segments, for the tables */
-    result: text('result', { mode: 'json' }),
-    flags: text('flags', { mode: 'json' }).notNull().default([]),
-    updatedAt: integer('updated_at').notNull(),
+    /** ReducedScan without its curves, for the tables. */
+    result: text('result', { mode: 'json' }).$type<ReducedSummary>(),
+    flags: text('flags', { mode: 'json' }).$type<Flag[]>().notNull().default([]),
   },
-  (t) => [index('scans_campaign').on(t.campaignId, t.sample, t.status), index('scans_file').on(t.fileId)],
+  (t) => [
+    index('scans_sample').on(t.campaignId, t.sample, t.status),
+    index('scans_instrument').on(t.campaignId, t.instrument, t.status),
+    index('scans_file').on(t.fileId),
+  ],
 );
 
+/** Samples that some scan names with the role `sample`. */
 export const samples = sqliteTable(
   'samples',
   {
     id: text('id').primaryKey(),
-    campaignId: text('campaign_id')
-      .notNull()
-      .references(() => campaigns.id, { onDelete: 'cascade' }),
+    campaignId: campaignId(),
     sample: text('sample').notNull(),
-    state: text('state').notNull(),
+    state: text('state').$type<SampleState>().notNull(),
     reason: text('reason'),
-    /** hash of the inputs of the stored fit */
+    inputsRevision: integer('inputs_revision').notNull().default(1),
+    fittedRevision: integer('fitted_revision').notNull().default(0),
+    /** Hash of the inputs of the stored fit. */
     fitKey: text('fit_key'),
-    reports: text('reports', { mode: 'json' }).notNull().default([]),
+    reports: text('reports', { mode: 'json' }).$type<FitReport[]>().notNull().default([]),
   },
-  (t) => [uniqueIndex('samples_name').on(t.campaignId, t.sample)],
+  (t) => [uniqueIndex('samples_name').on(t.campaignId, t.sample), index('samples_state').on(t.campaignId, t.state)],
 );
 
+/** Instruments that some scan names. */
 export const instruments = sqliteTable(
   'instruments',
   {
     id: text('id').primaryKey(),
-    campaignId: text('campaign_id')
-      .notNull()
-      .references(() => campaigns.id, { onDelete: 'cascade' }),
+    campaignId: campaignId(),
     instrument: text('instrument').notNull(),
-    /** InstrumentCalibration */
-    calibration: text('calibration', { mode: 'json' }).notNull(),
+    sheetRow: text('sheet_row', { mode: 'json' }).$type<InstrumentSheetRow>(),
+    inputsRevision: integer('inputs_revision').notNull().default(1),
+    calibratedRevision: integer('calibrated_revision').notNull().default(0),
+    /** Null until calibrated for the first time. */
+    calibration: text('calibration', { mode: 'json' }).$type<InstrumentCalibration>(),
   },
   (t) => [uniqueIndex('instruments_name').on(t.campaignId, t.instrument)],
 );
@@ -120,11 +157,10 @@ export const instruments = sqliteTable(
 export const parameters = sqliteTable(
   'parameters',
   {
-    campaignId: text('campaign_id')
-      .notNull()
-      .references(() => campaigns.id, { onDelete: 'cascade' }),
+    campaignId: campaignId(),
     sample: text('sample').notNull(),
-    position: integer('position').notNull(), // order within the sample
+    /** Order within the sample. */
+    position: integer('position').notNull(),
     event: integer('event').notNull(),
     quantity: text('quantity').notNull(),
     method: text('method').notNull(),
@@ -137,9 +173,9 @@ export const parameters = sqliteTable(
     scanCount: integer('scan_count').notNull(),
     rateMinKPerS: real('rate_min_k_per_s').notNull(),
     rateMaxKPerS: real('rate_max_k_per_s').notNull(),
-    flags: text('flags', { mode: 'json' }).notNull(),
-    interval: text('interval').notNull(),
-    variant: text('variant').notNull(),
+    flags: text('flags', { mode: 'json' }).$type<ParameterRow['flags']>().notNull(),
+    interval: text('interval').$type<ParameterRow['interval']>().notNull(),
+    variant: text('variant').$type<ParameterRow['variant']>().notNull(),
   },
   (t) => [
     primaryKey({ columns: [t.campaignId, t.sample, t.position] }),
@@ -147,17 +183,15 @@ export const parameters = sqliteTable(
   ],
 );
 
-/** Flags of fits, sheets and planning; flags of a file or scan live on their rows. */
+/** Flags of fits, sheets and assignment; flags of a file or scan live on their rows. */
 export const flags = sqliteTable(
   'flags',
   {
-    campaignId: text('campaign_id')
-      .notNull()
-      .references(() => campaigns.id, { onDelete: 'cascade' }),
-    /** which step wrote it, so that the step replaces its own: fit:SAMPLE, sheet:NAME, plan */
+    campaignId: campaignId(),
+    /** Which step wrote it, so that the step replaces its own: `fit:SAMPLE`, `assign`. */
     source: text('source').notNull(),
     position: integer('position').notNull(),
-    body: text('body', { mode: 'json' }).notNull(),
+    body: text('body', { mode: 'json' }).$type<Flag>().notNull(),
   },
   (t) => [primaryKey({ columns: [t.campaignId, t.source, t.position] })],
 );
@@ -167,8 +201,8 @@ export const plans = sqliteTable('plans', {
   campaignId: text('campaign_id')
     .primaryKey()
     .references(() => campaigns.id, { onDelete: 'cascade' }),
-  coverage: text('coverage', { mode: 'json' }).notNull(),
-  gaps: text('gaps', { mode: 'json' }).notNull(),
+  coverage: text('coverage', { mode: 'json' }).$type<CoverageRow[]>().notNull(),
+  gaps: text('gaps', { mode: 'json' }).$type<GapRow[]>().notNull(),
 });
 
 /** The job row is the record; a queue message is a wake-up holding its id. */
@@ -176,27 +210,31 @@ export const jobs = sqliteTable(
   'jobs',
   {
     id: text('id').primaryKey(),
-    campaignId: text('campaign_id')
-      .notNull()
-      .references(() => campaigns.id, { onDelete: 'cascade' }),
+    campaignId: campaignId(),
     step: text('step').notNull(),
-    /** what the step works on: a file, scan, sample or campaign id */
+    /** What the step works on: a file, scan, instrument, sample or campaign id. */
     subject: text('subject').notNull(),
-    state: text('state').notNull(),
+    /** Lower runs first. */
+    priority: integer('priority').notNull(),
+    state: text('state').$type<JobState>().notNull(),
     attempts: integer('attempts').notNull().default(0),
-    /** lease: who, until when, and a generation that only grows; every write-back checks it */
+    /** Lease: who, until when, and a generation that only grows; every write-back checks it. */
     generation: integer('generation').notNull().default(0),
     leasedBy: text('leased_by'),
     leasedUntil: integer('leased_until'),
     nextTryAt: integer('next_try_at').notNull(),
     lastError: text('last_error'),
+    /** A wake-up was sent for this row since it was queued (platform queue only). */
+    woken: integer('woken', { mode: 'boolean' }).notNull().default(false),
     createdAt: integer('created_at').notNull(),
+    startedAt: integer('started_at'),
     finishedAt: integer('finished_at'),
   },
   (t) => [
-    index('jobs_due').on(t.state, t.nextTryAt),
+    index('jobs_due').on(t.state, t.priority, t.nextTryAt),
     // at most one waiting job for the same work: a burst of uploads makes one refit
     uniqueIndex('jobs_one_waiting').on(t.step, t.subject).where(sql`state = 'queued'`),
+    index('jobs_running').on(t.step, t.subject).where(sql`state = 'running'`),
     index('jobs_campaign').on(t.campaignId, t.state),
   ],
 );

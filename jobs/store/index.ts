@@ -1,0 +1,26 @@
+/** Every SQL statement of the project lives in this room; this is what the API, the command line and the steps use of it. */
+export {
+  CAMPAIGN_NAME_LIMIT,
+  type Campaign,
+  createCampaign,
+  deleteCampaign,
+  findCampaign,
+  LOCAL_LAB,
+  listCampaigns,
+  type Page,
+  renameCampaign,
+} from './campaigns.ts';
+export { type JobView, listJobs, refitCampaign, retryJob } from './job-views.ts';
+export { FILE_LIMIT_BYTES, type FileReceipt, receiveFile, withdrawMissingFiles } from './receive.ts';
+export { StoreRefusal, type StoreRefusalCode } from './refusals.ts';
+export { campaignStatus } from './status.ts';
+export { type ResultRow, readTable, type TableFilter } from './tables/index.ts';
+export {
+  checkStores,
+  findSample,
+  findScan,
+  listSamples,
+  readReducedScan,
+  type SampleView,
+  type ScanView,
+} from './views.ts';
