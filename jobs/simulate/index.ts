@@ -1,4 +1,5 @@
 export { type SimulatedConversion, simulateConversion } from './conversion.ts';
+export { buildDemoCampaign, type DemoCampaign, type PlantedFlaw, type SampleTruth } from './demo-campaign.ts';
 export { followProgramme, linearRamp, type Programme } from './programme.ts';
 export {
   type ArrheniusLaw,
