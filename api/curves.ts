@@ -1,0 +1,122 @@
+import type { ResultRow } from '../jobs/store/index.ts';
+import { CONVERSION_GRID, type ReducedScan } from '../schema/wire/reduced.ts';
+import { GAS_CONSTANT } from '../schema/wire/units.ts';
+import type { CurveKind, CurveSeries, Curves } from './shapes/curves.ts';
+
+/** One reduced scan with what names its curves. */
+export interface ReducedSampleScan {
+  id: string;
+  file: string;
+  instrument: string;
+  reduced: ReducedScan;
+}
+
+const TEMPERATURE = { quantity: 'temperature', unit: 'K' };
+const CONVERSION = { quantity: 'conversion', unit: '1' };
+
+/** Axes of each kind; a thermogram's unit depends on whether the masses are known. */
+export const CURVE_AXES: Record<CurveKind, Pick<Curves, 'x' | 'y'>> = {
+  thermogram: { x: TEMPERATURE, y: { quantity: 'heat flow, exothermic up', unit: 'W or W/kg' } },
+  baseline: { x: TEMPERATURE, y: { quantity: 'baseline of the heat flow, exothermic up', unit: 'W or W/kg' } },
+  conversion: { x: TEMPERATURE, y: CONVERSION },
+  kissinger: {
+    x: { quantity: 'reciprocal peak temperature', unit: '1/K' },
+    y: { quantity: 'ln(heating rate / peak temperature squared)', unit: 'ln(1/(K s))' },
+  },
+  energy: { x: CONVERSION, y: { quantity: 'activation energy', unit: 'kJ/mol' } },
+};
+
+/** Heat flow, or the baseline under it, of each scan as it was analysed. */
+export function traceSeries(scans: ReducedSampleScan[], column: 'heatFlow' | 'baseline'): CurveSeries[] {
+  return scans.map(({ id, file, instrument, reduced: { trace } }) => ({
+    name: file,
+    instrument,
+    scan_id: id,
+    x: [...trace.temperatureK],
+    y: [...trace[column]],
+  }));
+}
+
+/** α(T) of every event that has a curve. */
+export function conversionSeries(scans: ReducedSampleScan[]): CurveSeries[] {
+  return scans.flatMap(({ id, file, instrument, reduced }) =>
+    reduced.events.flatMap(({ event, curve }) =>
+      curve
+        ? [
+            {
+              name: `${file}, event ${event}`,
+              instrument,
+              scan_id: id,
+              x: [...curve.temperatureK],
+              y: [...CONVERSION_GRID],
+            },
+          ]
+        : [],
+    ),
+  );
+}
+
+/** Groups in the order of first appearance. */
+function groupBy<T>(rows: T[], keyOf: (row: T) => string): [string, T[]][] {
+  const groups = new Map<string, T[]>();
+  for (const row of rows) groups.set(keyOf(row), [...(groups.get(keyOf(row)) ?? []), row]);
+  return [...groups];
+}
+
+/**
+ * Kissinger 1957: ln(β/Tp²) against 1/Tp, one series an event and instrument, and where the fit gave E and ln A its
+ * line ln(A R/E) − E/(R Tp) over the points of the event.
+ * @param scans rows of the scans table @param parameters rows of the parameters table, both of one sample
+ */
+export function kissingerSeries(scans: ResultRow[], parameters: ResultRow[]): CurveSeries[] {
+  const peaks = scans.filter(
+    (r) => r.role === 'sample' && r.status === 'reduced' && Number(r.peak_K) > 0 && Number(r.rate_K_per_s) > 0,
+  );
+  const x = (r: ResultRow) => 1 / Number(r.peak_K);
+  const measured = groupBy(peaks, (r) => `event ${r.event}, ${r.instrument}`).map(([name, rows]) => ({
+    name,
+    instrument: String(rows[0].instrument),
+    x: rows.map(x),
+    y: rows.map((r) => Math.log(Number(r.rate_K_per_s) / Number(r.peak_K) ** 2)),
+  }));
+  const headline = (event: string, quantity: string) =>
+    parameters.find(
+      (p) =>
+        String(p.event) === event &&
+        p.method === 'kissinger' &&
+        p.quantity === quantity &&
+        p.variant === '' &&
+        p.interval === 'monte_carlo',
+    )?.value;
+  const lines = groupBy(peaks, (r) => String(r.event)).flatMap(([event, rows]) => {
+    const energyKJPerMol = headline(event, 'activation_energy');
+    const lnPrefactor = headline(event, 'ln_prefactor');
+    if (typeof energyKJPerMol !== 'number' || typeof lnPrefactor !== 'number') return [];
+    const energyK = (energyKJPerMol * 1000) / GAS_CONSTANT;
+    const ends = [Math.min(...rows.map(x)), Math.max(...rows.map(x))];
+    return [
+      { name: `event ${event}, fit`, x: ends, y: ends.map((u) => lnPrefactor - Math.log(energyK) - energyK * u) },
+    ];
+  });
+  return [...measured, ...lines];
+}
+
+/** Isoconversional activation energies against conversion with their 95 % intervals, one series an event and method. */
+export function energySeries(parameters: ResultRow[]): CurveSeries[] {
+  const rows = parameters.filter(
+    (p) =>
+      p.quantity === 'activation_energy' &&
+      typeof p.conversion === 'number' &&
+      p.variant === '' &&
+      p.interval === 'monte_carlo',
+  );
+  return groupBy(rows, (p) => `event ${p.event}, ${p.method}`).map(([name, points]) => {
+    const bounded = points.every((p) => typeof p.lower95 === 'number' && typeof p.upper95 === 'number');
+    return {
+      name,
+      x: points.map((p) => Number(p.conversion)),
+      y: points.map((p) => Number(p.value)),
+      ...(bounded && { lower: points.map((p) => Number(p.lower95)), upper: points.map((p) => Number(p.upper95)) }),
+    };
+  });
+}

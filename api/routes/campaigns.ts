@@ -1,0 +1,144 @@
+import { createRoute } from '@hono/zod-openapi';
+import { bodyLimit } from 'hono/body-limit';
+import type { Ports } from '../../jobs/ports/index.ts';
+import {
+  CAMPAIGN_NAME_LIMIT,
+  type Campaign,
+  createCampaign,
+  deleteCampaign,
+  listCampaigns,
+  refitCampaign,
+  renameCampaign,
+} from '../../jobs/store/index.ts';
+import { quote } from '../../schema/wire/flags.ts';
+import {
+  type ApiApp,
+  answer,
+  ID_PARAM,
+  listOf,
+  NO_QUERY,
+  PAGE_QUERY,
+  PROBLEM_ANSWER,
+  strict,
+  textOf,
+} from '../openapi.ts';
+import { Problem } from '../problems.ts';
+import { pageOf, requireCampaign } from '../results.ts';
+import { CampaignShape } from '../shapes/campaign.ts';
+
+/** Bytes of a JSON body. */
+const JSON_LIMIT = 1e6;
+const limitJson = bodyLimit({
+  maxSize: JSON_LIMIT,
+  onError: () => {
+    throw new Problem('too-large', `the body has more than ${JSON_LIMIT} bytes`);
+  },
+});
+
+const NAME_BODY = {
+  required: true,
+  content: { 'application/json': { schema: strict({ name: textOf(CAMPAIGN_NAME_LIMIT) }) } },
+} as const;
+
+const createCampaignRoute = createRoute({
+  method: 'post',
+  path: '/v1/campaigns',
+  summary: 'Make a campaign. A name that is taken is refused with 409.',
+  middleware: [limitJson] as const,
+  request: { query: NO_QUERY, body: NAME_BODY },
+  responses: { 201: answer(CampaignShape, 'The new campaign.'), default: PROBLEM_ANSWER },
+});
+
+const listRoute = createRoute({
+  method: 'get',
+  path: '/v1/campaigns',
+  summary: 'Campaigns, ordered by id.',
+  request: { query: strict(PAGE_QUERY) },
+  responses: { 200: answer(listOf(CampaignShape), 'A page of campaigns.'), default: PROBLEM_ANSWER },
+});
+
+const getRoute = createRoute({
+  method: 'get',
+  path: '/v1/campaigns/{id}',
+  summary: 'One campaign, by id or name.',
+  request: { params: ID_PARAM, query: NO_QUERY },
+  responses: { 200: answer(CampaignShape, 'The campaign.'), default: PROBLEM_ANSWER },
+});
+
+const renameRoute = createRoute({
+  method: 'patch',
+  path: '/v1/campaigns/{id}',
+  summary: 'Give a campaign another name.',
+  middleware: [limitJson] as const,
+  request: { params: ID_PARAM, query: NO_QUERY, body: NAME_BODY },
+  responses: { 200: answer(CampaignShape, 'The campaign as it is now.'), default: PROBLEM_ANSWER },
+});
+
+const deleteRoute = createRoute({
+  method: 'delete',
+  path: '/v1/campaigns/{id}',
+  summary: 'Delete a campaign with everything in it.',
+  request: {
+    params: ID_PARAM,
+    query: strict({
+      confirm: textOf(CAMPAIGN_NAME_LIMIT).openapi({ description: 'The name of the campaign, to be sure.' }),
+    }),
+  },
+  responses: { 204: { description: 'Gone.' }, default: PROBLEM_ANSWER },
+});
+
+const refitRoute = createRoute({
+  method: 'post',
+  path: '/v1/campaigns/{id}/refit',
+  summary: 'Queue the fit of every sample again.',
+  request: { params: ID_PARAM, query: NO_QUERY },
+  responses: { 202: answer(CampaignShape, 'The campaign, with fits queued.'), default: PROBLEM_ANSWER },
+});
+
+const shapeOf = ({ id, name, createdAt, revision }: Campaign) => ({
+  id,
+  name,
+  created_at: new Date(createdAt).toISOString(),
+  revision,
+});
+
+export function addCampaignRoutes(app: ApiApp, ports: Ports): void {
+  app.openapi(createCampaignRoute, async (c) => {
+    const campaign = await createCampaign(ports, c.req.valid('json').name, c.get('access').lab);
+    return c.json(shapeOf(campaign), 201, { location: `/v1/campaigns/${campaign.id}` });
+  });
+
+  app.openapi(listRoute, async (c) => {
+    const { limit, after } = c.req.valid('query');
+    const campaigns = await listCampaigns(ports, { lab: c.get('access').lab, after, limit: limit + 1 });
+    return c.json(pageOf(campaigns, limit, shapeOf), 200);
+  });
+
+  app.openapi(getRoute, async (c) => c.json(shapeOf(await requireCampaign(c, ports, c.req.valid('param').id)), 200));
+
+  app.openapi(renameRoute, async (c) => {
+    const { id } = await requireCampaign(c, ports, c.req.valid('param').id);
+    return c.json(shapeOf(await renameCampaign(ports, id, c.req.valid('json').name)), 200);
+  });
+
+  app.openapi(deleteRoute, async (c) => {
+    const campaign = await requireCampaign(c, ports, c.req.valid('param').id);
+    const { confirm } = c.req.valid('query');
+    if (confirm !== campaign.name)
+      throw new Problem(
+        'invalid-input',
+        `query: confirm is ${quote(confirm)}; allowed: the name of the campaign, ${quote(campaign.name)}`,
+        {
+          field: 'confirm',
+        },
+      );
+    await deleteCampaign(ports, campaign.id);
+    return c.body(null, 204);
+  });
+
+  app.openapi(refitRoute, async (c) => {
+    const { id } = await requireCampaign(c, ports, c.req.valid('param').id);
+    await refitCampaign(ports, id);
+    return c.json(shapeOf(await requireCampaign(c, ports, id)), 202);
+  });
+}

@@ -1,0 +1,72 @@
+import { createRoute, z } from '@hono/zod-openapi';
+import type { Ports } from '../../jobs/ports/index.ts';
+import { checkStores } from '../../jobs/store/index.ts';
+import { type ApiApp, answer, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
+import { Problem } from '../problems.ts';
+import { type ApiDocument, REFERENCE_STYLE, renderReference } from '../reference-page.ts';
+
+const DESCRIPTION =
+  'Crystallisation kinetics from heating scans. JSON with the column names of the result files as keys; missing is null. Lists are {items, next}. Errors are problems (RFC 9457). Unknown query parameters and body fields are refused. Result routes carry an ETag.';
+
+const openapiRoute = createRoute({
+  method: 'get',
+  path: '/v1/openapi.json',
+  summary: 'This interface as an OpenAPI 3.1 document.',
+  request: { query: NO_QUERY },
+  responses: { 200: answer(z.object({}), 'The document.'), default: PROBLEM_ANSWER },
+});
+
+const referenceRoute = createRoute({
+  method: 'get',
+  path: '/v1/reference',
+  summary: 'This interface as a page to read.',
+  request: { query: NO_QUERY },
+  responses: {
+    200: { description: 'The page.', content: { 'text/html': { schema: z.string() } } },
+    default: PROBLEM_ANSWER,
+  },
+});
+
+const aliveRoute = createRoute({
+  method: 'get',
+  path: '/healthz',
+  summary: 'The process is alive.',
+  request: { query: NO_QUERY },
+  responses: { 200: answer(z.object({ status: z.literal('alive') }), 'Alive.'), default: PROBLEM_ANSWER },
+});
+
+const readyRoute = createRoute({
+  method: 'get',
+  path: '/readyz',
+  summary: 'The database and the blob store can be reached.',
+  request: { query: NO_QUERY },
+  responses: { 200: answer(z.object({ status: z.literal('ready') }), 'Ready.'), default: PROBLEM_ANSWER },
+});
+
+/** Content policy of the reference page: nothing but its own style, named by hash. */
+async function referencePolicy(): Promise<string> {
+  const hash = new Uint8Array(await crypto.subtle.digest('SHA-256', new TextEncoder().encode(REFERENCE_STYLE)));
+  return `default-src 'none'; style-src 'sha256-${btoa(String.fromCharCode(...hash))}'; frame-ancestors 'none'; base-uri 'none'; form-action 'none'`;
+}
+
+export function addDocumentRoutes(app: ApiApp, ports: Ports): void {
+  const document = () =>
+    app.getOpenAPI31Document({
+      openapi: '3.1.0',
+      info: { title: 'ratespan', version: '1', description: DESCRIPTION },
+    });
+  app.openapi(openapiRoute, (c) => c.json(document() as object, 200));
+  app.openapi(referenceRoute, async (c) =>
+    c.html(renderReference(document() as unknown as ApiDocument), 200, {
+      'content-security-policy': await referencePolicy(),
+    }),
+  );
+  app.openapi(aliveRoute, (c) => c.json({ status: 'alive' as const }, 200));
+  app.openapi(readyRoute, async (c) => {
+    await checkStores(ports).catch((error) => {
+      console.error(error);
+      throw new Problem('not-ready', 'the database or the blob store cannot be reached');
+    });
+    return c.json({ status: 'ready' as const }, 200);
+  });
+}

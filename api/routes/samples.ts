@@ -1,0 +1,101 @@
+import { createRoute, z } from '@hono/zod-openapi';
+import type { Context } from 'hono';
+import type { Ports } from '../../jobs/ports/index.ts';
+import {
+  findSample,
+  listSampleScans,
+  type ResultRow,
+  readReducedScan,
+  readTable,
+  type SampleView,
+  type TableFilter,
+} from '../../jobs/store/index.ts';
+import { quote } from '../../schema/wire/flags.ts';
+import type { ResultTable } from '../../schema/wire/result-tables.ts';
+import { SAMPLE_STATES, SCAN_STATES } from '../../schema/wire/states.ts';
+import type { ApiEnv } from '../access.ts';
+import {
+  CURVE_AXES,
+  conversionSeries,
+  energySeries,
+  kissingerSeries,
+  type ReducedSampleScan,
+  traceSeries,
+} from '../curves.ts';
+import { type ApiApp, answer, ID_PARAM, NO_QUERY, oneOf, PROBLEM_ANSWER, strict } from '../openapi.ts';
+import { Problem } from '../problems.ts';
+import { isUnchanged, requireCampaign, UNCHANGED_ANSWER } from '../results.ts';
+import { CURVE_KINDS, CurvesShape } from '../shapes/curves.ts';
+
+const SampleShape = z
+  .object({
+    id: z.string(),
+    campaign_id: z.string(),
+    sample: z.string(),
+    state: z.enum(SAMPLE_STATES),
+    reason: z.string().nullable(),
+    scans: z.array(z.object({ id: z.string(), file: z.string(), instrument: z.string(), status: z.enum(SCAN_STATES) })),
+  })
+  .openapi('Sample');
+
+const sampleRoute = createRoute({
+  method: 'get',
+  path: '/v1/samples/{id}',
+  summary: 'One sample and its scans. Its numbers are in the parameters table of its campaign.',
+  request: { params: ID_PARAM, query: NO_QUERY },
+  responses: { 200: answer(SampleShape, 'The sample.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
+});
+
+const curvesRoute = createRoute({
+  method: 'get',
+  path: '/v1/samples/{id}/curves',
+  summary: 'Curves of one kind, at most 2000 points each, extremes kept.',
+  request: { params: ID_PARAM, query: strict({ kind: oneOf(CURVE_KINDS) }) },
+  responses: { 200: answer(CurvesShape, 'The curves.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
+});
+
+async function requireSample(c: Context<ApiEnv>, ports: Ports, id: string): Promise<SampleView> {
+  const sample = await findSample(ports, id, c.get('access').lab);
+  if (!sample) throw new Problem('not-found', `there is no sample ${quote(id)}`);
+  return sample;
+}
+
+async function reducedScans(ports: Ports, { campaignId, sample }: SampleView): Promise<ReducedSampleScan[]> {
+  const found: ReducedSampleScan[] = [];
+  for (const { id, file, instrument, status } of await listSampleScans(ports, campaignId, sample)) {
+    const reduced = status === 'reduced' ? await readReducedScan(ports, id) : undefined;
+    if (reduced) found.push({ id, file, instrument, reduced });
+  }
+  return found;
+}
+
+export function addSampleRoutes(app: ApiApp, ports: Ports): void {
+  app.openapi(sampleRoute, async (c) => {
+    const sample = await requireSample(c, ports, c.req.valid('param').id);
+    if (isUnchanged(c, await requireCampaign(c, ports, sample.campaignId))) return c.body(null, 304);
+    const { id, campaignId, state, reason } = sample;
+    const scans = await listSampleScans(ports, campaignId, sample.sample);
+    return c.json({ id, campaign_id: campaignId, sample: sample.sample, state, reason, scans }, 200);
+  });
+
+  app.openapi(curvesRoute, async (c) => {
+    const sample = await requireSample(c, ports, c.req.valid('param').id);
+    const { kind } = c.req.valid('query');
+    if (isUnchanged(c, await requireCampaign(c, ports, sample.campaignId))) return c.body(null, 304);
+    const rowsOf = async (table: ResultTable, filter: TableFilter = {}): Promise<ResultRow[]> => {
+      const rows: ResultRow[] = [];
+      for await (const row of readTable(ports, sample.campaignId, table, { sample: sample.sample, ...filter }))
+        rows.push(row);
+      return rows;
+    };
+    const series = {
+      thermogram: async () => traceSeries(await reducedScans(ports, sample), 'heatFlow'),
+      baseline: async () => traceSeries(await reducedScans(ports, sample), 'baseline'),
+      conversion: async () => conversionSeries(await reducedScans(ports, sample)),
+      kissinger: async () =>
+        kissingerSeries(await rowsOf('scans'), await rowsOf('parameters', { method: 'kissinger' })),
+      energy: async () => energySeries(await rowsOf('parameters', { quantity: 'activation_energy' })),
+    };
+    return c.json({ kind, ...CURVE_AXES[kind], series: await series[kind]() }, 200);
+  });
+}

@@ -1,0 +1,93 @@
+import { createRoute, z } from '@hono/zod-openapi';
+import type { Context } from 'hono';
+import type { Ports } from '../../jobs/ports/index.ts';
+import { type ResultRow, readTable, type TableFilter } from '../../jobs/store/index.ts';
+import { RESULT_TABLES, type ResultTable } from '../../schema/wire/result-tables.ts';
+import type { ApiEnv } from '../access.ts';
+import { csvStream } from '../csv-stream.ts';
+import { type ApiApp, ID_PARAM, listOf, oneOf, PAGE_QUERY, PROBLEM_ANSWER, strict, textOf } from '../openapi.ts';
+import { isUnchanged, requireCampaign, UNCHANGED_ANSWER } from '../results.ts';
+import { ROW_SHAPES } from '../shapes/rows.ts';
+
+const positionError = 'the `next` of the page before';
+const eventError = 'a whole number from 1';
+
+/** Rows have a fixed order, so a page goes on from a position. */
+const TABLE_QUERY = {
+  ...PAGE_QUERY,
+  after: z
+    .string({ error: positionError })
+    .regex(/^\d{1,9}$/, { error: positionError })
+    .optional()
+    .openapi({ description: 'The `next` of the page before.' }),
+  format: oneOf(['json', 'csv'])
+    .default('json')
+    .openapi({ description: '`csv` gives the whole table, whatever limit and after say.' }),
+};
+
+const PARAMETER_FILTERS = {
+  sample: textOf(200).optional(),
+  quantity: textOf(80).optional(),
+  method: textOf(80).optional(),
+  event: z.coerce.number({ error: eventError }).int({ error: eventError }).min(1, { error: eventError }).optional(),
+};
+
+const SUMMARIES: Record<ResultTable, string> = {
+  parameters: 'The consolidated kinetic parameters.',
+  scans: 'Every scan and what was found in it.',
+  conversion: 'The reduced curves.',
+  instruments: 'Instruments with their corrections.',
+  coverage: 'Which decades of heating rate each sample has been measured in.',
+  gaps: 'What is missing, and what to do about it.',
+  flags: 'What to know and what to do.',
+};
+
+function answersOf<T extends ResultTable>(table: T) {
+  return {
+    200: {
+      description: 'A page of rows, or the whole table as CSV.',
+      content: {
+        'application/json': { schema: listOf(ROW_SHAPES[table].openapi(`${table}Row`)) },
+        'text/csv': { schema: z.string() },
+      },
+    },
+    304: UNCHANGED_ANSWER,
+    default: PROBLEM_ANSWER,
+  };
+}
+
+type Query = { limit: number; after?: string; format: 'json' | 'csv' } & TableFilter;
+
+async function answerTable(c: Context<ApiEnv>, ports: Ports, id: string, table: ResultTable, query: Query) {
+  const { limit, after, format, ...filter } = query;
+  const campaign = await requireCampaign(c, ports, id);
+  if (isUnchanged(c, campaign)) return c.body(null, 304);
+  if (format === 'csv')
+    return c.body(csvStream(table, readTable(ports, campaign.id, table, filter)), 200, {
+      'content-type': 'text/csv; charset=utf-8; header=present',
+      'content-disposition': `attachment; filename="${table}.csv"`,
+    });
+  const offset = Number(after ?? 0);
+  const items: ResultRow[] = [];
+  for await (const row of readTable(ports, campaign.id, table, { ...filter, offset, limit: limit + 1 }))
+    items.push(row);
+  const next = items.length > limit ? String(offset + limit) : null;
+  return c.json({ items: items.slice(0, limit), next }, 200);
+}
+
+export function addTableRoutes(app: ApiApp, ports: Ports): void {
+  for (const table of Object.keys(RESULT_TABLES) as ResultTable[]) {
+    const query = strict(table === 'parameters' ? { ...TABLE_QUERY, ...PARAMETER_FILTERS } : TABLE_QUERY);
+    const route = createRoute({
+      method: 'get',
+      path: `/v1/campaigns/{id}/${table}` as const,
+      summary: SUMMARIES[table],
+      request: { params: ID_PARAM, query },
+      responses: answersOf(table),
+    });
+    app.openapi(route, async (c) => {
+      const answer = await answerTable(c, ports, c.req.valid('param').id, table, c.req.valid('query') as Query);
+      return answer as never;
+    });
+  }
+}

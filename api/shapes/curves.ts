@@ -1,0 +1,32 @@
+import { z } from '@hono/zod-openapi';
+
+/** Kinds of curves that a sample has. */
+export const CURVE_KINDS = ['thermogram', 'baseline', 'conversion', 'kissinger', 'energy'] as const;
+export type CurveKind = (typeof CURVE_KINDS)[number];
+
+/** Points of one curve at most. */
+export const CURVE_POINTS = 2000;
+
+const axis = z.object({ quantity: z.string(), unit: z.string() });
+const points = z.array(z.number()).max(CURVE_POINTS);
+
+export const CurvesShape = z
+  .object({
+    kind: z.enum(CURVE_KINDS),
+    x: axis,
+    y: axis,
+    series: z.array(
+      z.object({
+        name: z.string(),
+        instrument: z.string().optional(),
+        scan_id: z.string().optional(),
+        x: points,
+        y: points,
+        lower: points.optional(),
+        upper: points.optional(),
+      }),
+    ),
+  })
+  .openapi('Curves');
+export type Curves = z.infer<typeof CurvesShape>;
+export type CurveSeries = Curves['series'][number];
