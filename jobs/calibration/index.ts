@@ -28,8 +28,7 @@ export function calibrationFromSheet(
     offsetK: row?.offsetK ?? 0,
     offsetSeK: row?.offsetErrorK ?? PRIOR_OFFSET_SE_K[kind],
     lagS,
-    lagSeS:
-      row?.lagErrorS ?? (row?.lagS === undefined ? PRIOR_LAG_SCALE_S[kind] : LAG_ERROR_FRACTION * Math.abs(lagS)),
+    lagSeS: row?.lagErrorS ?? (row?.lagS === undefined ? PRIOR_LAG_SCALE_S[kind] : LAG_ERROR_FRACTION * Math.abs(lagS)),
     ...(row?.responseS !== undefined && { responseS: row.responseS }),
     ...(row?.sensitivityVPerW !== undefined && { sensitivityVPerW: row.sensitivityVPerW }),
     standards: 0,

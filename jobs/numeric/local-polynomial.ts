@@ -54,7 +54,15 @@ export function fitLocalPolynomial(
   }
   for (let i = 0; i < p; i++) for (let k = 0; k < p; k++) normal[i * p + k] = power[i + k];
   if (!solveSymmetric(normal, rhs, p)) {
-    return { value: y[from], slope: 0, curvature: 0, third: 0, valueNoise: 1, slopeNoise: Number.POSITIVE_INFINITY, points: to - from };
+    return {
+      value: y[from],
+      slope: 0,
+      curvature: 0,
+      third: 0,
+      valueNoise: 1,
+      slopeNoise: Number.POSITIVE_INFINITY,
+      points: to - from,
+    };
   }
   return {
     value: rhs[0],

@@ -1,0 +1,108 @@
+import type { Segment } from '../../schema/wire/reduced.ts';
+
+/** Blocks the programme is looked at in: fine enough for short holds, coarse enough for temperature noise. */
+const BLOCKS = 400;
+/** A block is a hold when its slope is below this fraction of the fastest sustained slope. */
+const HOLD_FRACTION = 0.03;
+/** Shorter runs than this many blocks belong to their neighbours (overshoot at a corner, noise). */
+const SHORTEST_RUN = 5;
+
+type Kind = Segment['kind'];
+
+/**
+ * Heating, cooling and hold segments of a temperature programme, numbered from 1 in time order; together they cover all rows.
+ * @param timeS s, strictly increasing
+ * @param temperatureK K, same length
+ */
+export function findSegments(timeS: Float64Array, temperatureK: Float64Array): Segment[] {
+  const n = timeS.length;
+  const size = Math.max(2, Math.floor(n / BLOCKS));
+  const count = Math.max(1, Math.floor(n / size));
+  const slopes = new Float64Array(count);
+  for (let b = 0; b < count; b++) {
+    const from = b * size;
+    const to = b === count - 1 ? n : from + size;
+    // Neighbours on both sides are taken in: three blocks' slope is quieter and corners move by less than a block.
+    slopes[b] = slopeOf(timeS, temperatureK, Math.max(0, from - size), Math.min(n, to + size));
+  }
+  const fastest = Float64Array.from(slopes, Math.abs).sort()[Math.floor(0.95 * (count - 1))];
+  const kinds: Kind[] = Array.from(slopes, (s) =>
+    Math.abs(s) < HOLD_FRACTION * fastest || fastest === 0 ? 'hold' : s > 0 ? 'heating' : 'cooling',
+  );
+  const runs = mergeShortRuns(kinds);
+  return runs.map((run, i) => {
+    const from = run.from * size;
+    const to = i === runs.length - 1 ? n : run.to * size;
+    return {
+      segment: i + 1,
+      kind: run.kind,
+      from,
+      to,
+      rateKPerS: slopeOf(timeS, temperatureK, from, to),
+      startK: temperatureK[from],
+      endK: temperatureK[to - 1],
+    };
+  });
+}
+
+interface Run {
+  kind: Kind;
+  from: number;
+  to: number;
+}
+
+function mergeShortRuns(kinds: Kind[]): Run[] {
+  let runs: Run[] = [];
+  for (let b = 0; b < kinds.length; b++) {
+    const last = runs[runs.length - 1];
+    if (last && last.kind === kinds[b]) last.to = b + 1;
+    else runs.push({ kind: kinds[b], from: b, to: b + 1 });
+  }
+  const shortest = Math.min(SHORTEST_RUN, Math.ceil(kinds.length / 8));
+  for (;;) {
+    if (runs.length === 1) return runs;
+    let at = -1;
+    runs.forEach((run, i) => {
+      if (run.to - run.from < shortest && (at < 0 || run.to - run.from < runs[at].to - runs[at].from)) at = i;
+    });
+    if (at < 0) return runs;
+    const before = runs[at - 1];
+    const after = runs[at + 1];
+    const longer = !before
+      ? after
+      : !after
+        ? before
+        : before.to - before.from >= after.to - after.from
+          ? before
+          : after;
+    runs[at].kind = longer.kind;
+    const merged: Run[] = [];
+    for (const run of runs) {
+      const last = merged[merged.length - 1];
+      if (last && last.kind === run.kind) last.to = run.to;
+      else merged.push(run);
+    }
+    runs = merged;
+  }
+}
+
+/** Least-squares slope dT/dt over rows [from, to), K/s. */
+export function slopeOf(timeS: Float64Array, temperatureK: Float64Array, from: number, to: number): number {
+  const t0 = timeS[from];
+  const T0 = temperatureK[from];
+  let st = 0;
+  let sT = 0;
+  let stt = 0;
+  let stT = 0;
+  const n = to - from;
+  for (let i = from; i < to; i++) {
+    const t = timeS[i] - t0;
+    const T = temperatureK[i] - T0;
+    st += t;
+    sT += T;
+    stt += t * t;
+    stT += t * T;
+  }
+  const d = n * stt - st * st;
+  return d > 0 ? (n * stT - st * sT) / d : 0;
+}
