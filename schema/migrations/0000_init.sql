@@ -5,7 +5,7 @@ CREATE TABLE `campaigns` (
 	`created_at` integer NOT NULL,
 	`revision` integer DEFAULT 0 NOT NULL,
 	`inputs_revision` integer DEFAULT 0 NOT NULL,
-	`planned_revision` integer DEFAULT 0 NOT NULL
+	`queued_revision` integer DEFAULT 0 NOT NULL
 );
 --> statement-breakpoint
 CREATE UNIQUE INDEX `campaigns_name` ON `campaigns` (`lab`,`name`);--> statement-breakpoint
@@ -51,7 +51,9 @@ CREATE TABLE `instruments` (
 	`instrument` text NOT NULL,
 	`sheet_row` text,
 	`inputs_revision` integer DEFAULT 1 NOT NULL,
+	`queued_revision` integer DEFAULT 0 NOT NULL,
 	`calibrated_revision` integer DEFAULT 0 NOT NULL,
+	`highest_rate_k_per_s` real DEFAULT 0 NOT NULL,
 	`calibration` text,
 	FOREIGN KEY (`campaign_id`) REFERENCES `campaigns`(`id`) ON UPDATE no action ON DELETE cascade
 );
@@ -119,7 +121,7 @@ CREATE TABLE `samples` (
 	`state` text NOT NULL,
 	`reason` text,
 	`inputs_revision` integer DEFAULT 1 NOT NULL,
-	`fitted_revision` integer DEFAULT 0 NOT NULL,
+	`queued_revision` integer DEFAULT 0 NOT NULL,
 	`fit_key` text,
 	`reports` text DEFAULT '[]' NOT NULL,
 	FOREIGN KEY (`campaign_id`) REFERENCES `campaigns`(`id`) ON UPDATE no action ON DELETE cascade
@@ -138,7 +140,8 @@ CREATE TABLE `scans` (
 	`segment` integer,
 	`sheet_row` text,
 	`sheet_hash` text DEFAULT '' NOT NULL,
-	`inputs_revision` integer DEFAULT 0 NOT NULL,
+	`inputs_revision` integer DEFAULT 1 NOT NULL,
+	`queued_revision` integer DEFAULT 0 NOT NULL,
 	`status` text NOT NULL,
 	`reason` text,
 	`reduced_key` text,

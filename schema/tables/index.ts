@@ -9,8 +9,8 @@ import type { JobState, Role, SampleState, ScanState } from '../wire/states.ts';
 
 /**
  * Times are ms since the epoch. Ids are random, prefixed by kind. JSON columns hold types of schema/wire.
- * `inputs_revision` grows with every change of what a row depends on; its partner (`planned_revision`, `fitted_revision`, …)
- * is the revision that the stored result was made from, so that a result made from old inputs never hides newer ones.
+ * `inputs_revision` grows with every change of what a row's result depends on; `queued_revision` is the one that a job was
+ * queued for last. A job is due where the first is ahead, so no change is forgotten and a burst makes one job.
  */
 
 export type FileKind = 'data' | 'sheet' | 'archive';
@@ -31,7 +31,7 @@ export const campaigns = sqliteTable(
     /** Grows with every change of anything the campaign shows: ETags and the event stream use it. */
     revision: integer('revision').notNull().default(0),
     inputsRevision: integer('inputs_revision').notNull().default(0),
-    plannedRevision: integer('planned_revision').notNull().default(0),
+    queuedRevision: integer('queued_revision').notNull().default(0),
   },
   (t) => [uniqueIndex('campaigns_name').on(t.lab, t.name)],
 );
@@ -105,7 +105,8 @@ export const scans = sqliteTable(
     sheetRow: text('sheet_row', { mode: 'json' }).$type<ScanSheetRow>(),
     /** Hash of what the sheets say about this scan: a corrected sheet re-queues only the scans where it changed. */
     sheetHash: text('sheet_hash').notNull().default(''),
-    inputsRevision: integer('inputs_revision').notNull().default(0),
+    inputsRevision: integer('inputs_revision').notNull().default(1),
+    queuedRevision: integer('queued_revision').notNull().default(0),
     status: text('status').$type<ScanState>().notNull(),
     reason: text('reason'),
     reducedKey: text('reduced_key'),
@@ -130,7 +131,7 @@ export const samples = sqliteTable(
     state: text('state').$type<SampleState>().notNull(),
     reason: text('reason'),
     inputsRevision: integer('inputs_revision').notNull().default(1),
-    fittedRevision: integer('fitted_revision').notNull().default(0),
+    queuedRevision: integer('queued_revision').notNull().default(0),
     /** Hash of the inputs of the stored fit. */
     fitKey: text('fit_key'),
     reports: text('reports', { mode: 'json' }).$type<FitReport[]>().notNull().default([]),
@@ -147,7 +148,11 @@ export const instruments = sqliteTable(
     instrument: text('instrument').notNull(),
     sheetRow: text('sheet_row', { mode: 'json' }).$type<InstrumentSheetRow>(),
     inputsRevision: integer('inputs_revision').notNull().default(1),
+    queuedRevision: integer('queued_revision').notNull().default(0),
+    /** The revision that `calibration` was made from: scans are reduced only when it is the newest. */
     calibratedRevision: integer('calibrated_revision').notNull().default(0),
+    /** Highest heating rate of its scans that `calibration` was made with, K/s. */
+    highestRateKPerS: real('highest_rate_k_per_s').notNull().default(0),
     /** Null until calibrated for the first time. */
     calibration: text('calibration', { mode: 'json' }).$type<InstrumentCalibration>(),
   },

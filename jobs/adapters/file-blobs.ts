@@ -1,0 +1,106 @@
+import { randomBytes } from 'node:crypto';
+import { createReadStream } from 'node:fs';
+import { type FileHandle, mkdir, open, opendir, readFile, rename, rm, stat } from 'node:fs/promises';
+import { dirname, join, relative, sep } from 'node:path';
+import { Readable } from 'node:stream';
+import { BlobMissing, type BlobStore } from '../ports/index.ts';
+
+const isMissing = (error: unknown) => (error as { code?: string }).code === 'ENOENT';
+
+/**
+ * Blobs as files below `root`. A blob is written under a temporary name, flushed to the disk and renamed, so that a key is
+ * either absent or whole, also after a crash.
+ */
+export function createFileBlobs(root: string): BlobStore {
+  const partsFolder = join(root, 'parts');
+  const known = new Set<string>();
+
+  const pathOf = (key: string): string => {
+    if (!/^[\w.-]+(\/[\w.-]+)+$/.test(key) || key.split('/').some((part) => /^\.+$/.test(part))) {
+      throw new RangeError(
+        `a blob key is made of at least two parts of letters, digits, _ . - with / between; got ${JSON.stringify(key)}`,
+      );
+    }
+    return join(root, ...key.split('/'));
+  };
+  const makeFolder = async (folder: string): Promise<void> => {
+    if (known.has(folder)) return;
+    await mkdir(folder, { recursive: true });
+    known.add(folder);
+  };
+  const missing =
+    (key: string) =>
+    (error: unknown): never => {
+      throw isMissing(error) ? new BlobMissing(key) : error;
+    };
+
+  return {
+    async put(key, body, length) {
+      const path = pathOf(key);
+      await makeFolder(partsFolder);
+      await makeFolder(dirname(path));
+      const part = join(partsFolder, randomBytes(12).toString('hex'));
+      try {
+        const handle = await open(part, 'wx');
+        try {
+          await writeBody(handle, key, body, length);
+          await handle.datasync();
+        } finally {
+          await handle.close();
+        }
+        await rename(part, path);
+      } catch (error) {
+        await rm(part, { force: true });
+        throw error;
+      }
+    },
+    async get(key) {
+      const handle = await open(pathOf(key)).catch(missing(key));
+      return Readable.toWeb(createReadStream('', { fd: handle })) as ReadableStream<Uint8Array>;
+    },
+    bytes: (key) => readFile(pathOf(key)).catch(missing(key)),
+    async has(key) {
+      return (
+        (await stat(pathOf(key)).catch((error) => (isMissing(error) ? undefined : Promise.reject(error)))) !== undefined
+      );
+    },
+    delete: (key) => rm(pathOf(key), { force: true }),
+    async *list(prefix) {
+      // The folder part of the prefix is enough to start from; the rest is compared key by key.
+      const start = join(root, ...prefix.split('/').slice(0, -1));
+      const folder = await opendir(start, { recursive: true }).catch((error) =>
+        isMissing(error) ? undefined : Promise.reject(error),
+      );
+      if (!folder) return;
+      for await (const entry of folder) {
+        if (!entry.isFile()) continue;
+        const path = join(entry.parentPath, entry.name);
+        const key = relative(root, path).split(sep).join('/');
+        if (key.startsWith('parts/') || !key.startsWith(prefix)) continue;
+        const { size, mtimeMs } = await stat(path);
+        yield { key, size, modifiedMs: mtimeMs };
+      }
+    },
+  };
+}
+
+async function writeBody(
+  handle: FileHandle,
+  key: string,
+  body: ReadableStream<Uint8Array> | Uint8Array,
+  length: number | undefined,
+): Promise<void> {
+  let size = 0;
+  if (body instanceof Uint8Array) {
+    await handle.writeFile(body);
+    size = body.byteLength;
+  } else {
+    for await (const chunk of body as unknown as AsyncIterable<Uint8Array>) {
+      await handle.writeFile(chunk);
+      size += chunk.byteLength;
+    }
+  }
+  if (length !== undefined && size !== length) {
+    throw new RangeError(`blob ${key}: ${size} bytes came, ${length} were announced`);
+  }
+}
