@@ -1,4 +1,6 @@
 /** Every SQL statement of the project lives in this room; this is what the API, the command line and the steps use of it. */
+
+export type { FileReceipt } from './arrivals.ts';
 export {
   CAMPAIGN_NAME_LIMIT,
   type Campaign,
@@ -11,7 +13,7 @@ export {
   renameCampaign,
 } from './campaigns.ts';
 export { type JobView, listJobs, refitCampaign, retryJob } from './job-views.ts';
-export { FILE_LIMIT_BYTES, type FileReceipt, receiveFile, withdrawMissingFiles } from './receive.ts';
+export { FILE_LIMIT_BYTES, receiveFile } from './receive.ts';
 export { StoreRefusal, type StoreRefusalCode } from './refusals.ts';
 export { campaignStatus } from './status.ts';
 export { type ResultRow, readTable, type TableFilter } from './tables/index.ts';
@@ -24,3 +26,4 @@ export {
   type SampleView,
   type ScanView,
 } from './views.ts';
+export { withdrawMissingFiles } from './withdraw.ts';

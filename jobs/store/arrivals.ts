@@ -1,0 +1,216 @@
+import { and, eq, sql } from 'drizzle-orm';
+import type { LibSQLDatabase } from 'drizzle-orm/libsql';
+import { type FileKind, files, scans, sheetRows } from '../../schema/tables/index.ts';
+import type { ScanSheetRow } from '../../schema/wire/scan.ts';
+import type { Ports } from '../ports/index.ts';
+import { isConstraint, runBatch, type Statement } from './fence.ts';
+import { createId } from './ids.ts';
+import { ASSIGN_DELAY_MS, insertJob, touchCampaign } from './job-rows.ts';
+
+export interface FileReceipt {
+  /** The path as sent. */
+  file: string;
+  outcome: 'accepted' | 'known' | 'replaced' | 'sheet' | 'archive' | 'refused';
+  scan_ids?: string[];
+  job_id?: string;
+  reason?: string;
+}
+
+/** A file whose bytes are in the blob store (or in `bytes`, not stored yet). */
+export interface ArrivedFile {
+  path: string;
+  kind: FileKind;
+  sha256: string;
+  size: number;
+  blobKey: string;
+  bytes?: Uint8Array;
+  /** The archive it came out of. */
+  archiveId?: string;
+}
+
+/** Decides what a file is to its campaign, stores its bytes where they are not stored yet, and writes its rows and job in one batch. */
+export async function acceptFile(ports: Ports, campaignId: string, file: ArrivedFile): Promise<FileReceipt> {
+  // A second sender may insert the same path in between: the unique index says so, and the second look finds its row.
+  for (let tries = 1; ; tries++) {
+    const before = await lookAround(ports, campaignId, file);
+    if (before.live?.sha256 === file.sha256) {
+      if (!file.bytes) await ports.blobs.delete(file.blobKey);
+      return { file: file.path, outcome: 'known', scan_ids: await scanIdsOf(ports, before.live.id) };
+    }
+    const plan = planArrival(campaignId, file, before, ports.clock.now());
+    if (file.bytes && !plan.sharedBlob) await ports.blobs.put(file.blobKey, file.bytes, file.size);
+    try {
+      await ports.database.write((db) => runBatch(db, plan.statements(db)));
+    } catch (error) {
+      if (isConstraint(error) && tries < 5) continue;
+      throw error;
+    }
+    if (plan.sharedBlob && !file.bytes) await ports.blobs.delete(file.blobKey);
+    for (const jobId of plan.jobIds) await ports.queue.wake(jobId, 0);
+    await ports.queue.wake(plan.assignId, ASSIGN_DELAY_MS / 1000);
+    const known = before.live === undefined && (await isKnownScan(ports, campaignId, file, before.sameBytes));
+    return {
+      file: file.path,
+      outcome: outcomeOf(file.kind, before.live !== undefined, known !== false),
+      scan_ids: known === false ? plan.scanIds : known,
+      ...(plan.jobIds.length > 0 && { job_id: plan.jobIds[0] }),
+    };
+  }
+}
+
+const outcomeOf = (kind: FileKind, replaces: boolean, known: boolean): FileReceipt['outcome'] => {
+  if (replaces) return 'replaced';
+  if (known) return 'known';
+  return kind === 'data' ? 'accepted' : kind;
+};
+
+interface Surroundings {
+  /** The file that has this path now. */
+  live?: { id: string; sha256: string };
+  /** An older file of the same path and bytes. */
+  former?: { id: string };
+  /** Another path with the same bytes. */
+  sameBytes?: { id: string; path: string; blobKey: string };
+}
+
+async function lookAround(ports: Ports, campaignId: string, file: ArrivedFile): Promise<Surroundings> {
+  const rows = await ports.database.read
+    .select({
+      id: files.id,
+      path: files.path,
+      sha256: files.sha256,
+      blobKey: files.blobKey,
+      superseded: files.superseded,
+    })
+    .from(files)
+    .where(
+      and(
+        eq(files.campaignId, campaignId),
+        sql`(${files.path} = ${file.path} and ${files.superseded} = 0 or ${files.sha256} = ${file.sha256})`,
+      ),
+    );
+  const here = rows.filter((row) => row.path === file.path);
+  const elsewhere = rows.filter((row) => row.path !== file.path && row.sha256 === file.sha256 && !row.superseded);
+  elsewhere.sort((a, b) => (a.path < b.path ? -1 : 1));
+  return {
+    live: here.find((row) => !row.superseded),
+    former: here.find((row) => row.superseded && row.sha256 === file.sha256),
+    sameBytes: elsewhere[0],
+  };
+}
+
+interface ArrivalPlan {
+  statements(db: LibSQLDatabase): Statement[];
+  jobIds: string[];
+  assignId: string;
+  scanIds: string[];
+  /** The bytes are in the store already under another row's key. */
+  sharedBlob: boolean;
+}
+
+function planArrival(campaignId: string, file: ArrivedFile, before: Surroundings, now: number): ArrivalPlan {
+  const { live, former, sameBytes } = before;
+  const assignId = createId('job');
+  const jobId = createId('job');
+  const common = (db: LibSQLDatabase): Statement[] => [
+    insertJob(db, {
+      id: assignId,
+      campaignId,
+      step: 'assign-scans',
+      subject: campaignId,
+      now,
+      delayMs: ASSIGN_DELAY_MS,
+    }),
+    touchCampaign(db, campaignId, true),
+  ];
+  const supersede = (db: LibSQLDatabase): Statement[] => (live ? supersedeFile(db, live.id) : []);
+  if (former && file.kind === 'data') {
+    // The path has its old bytes back: the old row, its columns and results count again.
+    return {
+      statements: (db) => [
+        ...supersede(db),
+        db
+          .update(files)
+          .set({ superseded: false, archiveId: file.archiveId ?? null })
+          .where(eq(files.id, former.id)),
+        // It may have been superseded before it was read.
+        insertJob(db, { id: jobId, campaignId, step: 'read-scan', subject: former.id, now }),
+        ...common(db),
+      ],
+      jobIds: [jobId],
+      assignId,
+      scanIds: [],
+      sharedBlob: true,
+    };
+  }
+  const fileId = createId('file');
+  const scanId = createId('scan');
+  const step = ({ data: 'read-scan', sheet: 'read-sheet', archive: 'unpack-archive' } as const)[file.kind];
+  return {
+    statements: (db) => [
+      ...supersede(db),
+      db.insert(files).values({
+        id: fileId,
+        campaignId,
+        path: file.path,
+        sha256: file.sha256,
+        bytes: file.size,
+        blobKey: sameBytes?.blobKey ?? file.blobKey,
+        kind: file.kind,
+        archiveId: file.archiveId,
+        state: 'unread',
+        createdAt: now,
+      }),
+      ...(file.kind === 'data'
+        ? [db.insert(scans).values({ id: scanId, campaignId, fileId, disposition: 'waiting', status: 'received' })]
+        : []),
+      insertJob(db, { id: jobId, campaignId, step, subject: fileId, now }),
+      // A sheet or an archive queues the assignment itself once it is read.
+      ...(file.kind === 'data' ? common(db) : [touchCampaign(db, campaignId, true)]),
+    ],
+    jobIds: [jobId],
+    assignId,
+    scanIds: file.kind === 'data' ? [scanId] : [],
+    sharedBlob: sameBytes !== undefined,
+  };
+}
+
+/** Takes a file out of what counts; its original and its scans stay, marked superseded. */
+export function supersedeFile(db: LibSQLDatabase, fileId: string): Statement[] {
+  return [
+    db.update(files).set({ superseded: true }).where(eq(files.id, fileId)),
+    db
+      .update(scans)
+      .set({ status: 'superseded', inputsRevision: sql`inputs_revision + 1` })
+      .where(eq(scans.fileId, fileId)),
+    db.run(sql`
+      update samples set inputs_revision = inputs_revision + 1, state = 'stale'
+      where (campaign_id, sample) in (select campaign_id, sample from scans where file_id = ${fileId} and role = 'sample')`),
+  ];
+}
+
+const scanIdsOf = async (ports: Ports, fileId: string): Promise<string[]> =>
+  (await ports.database.read.select({ id: scans.id }).from(scans).where(eq(scans.fileId, fileId))).map((row) => row.id);
+
+/** Whether bytes under a new path are told at once to be a scan that is here: its ids, or false. The assignment decides for good. */
+async function isKnownScan(
+  ports: Ports,
+  campaignId: string,
+  file: ArrivedFile,
+  other: Surroundings['sameBytes'],
+): Promise<string[] | false> {
+  if (file.kind !== 'data' || !other) return false;
+  const rows = await ports.database.read
+    .select({ body: sheetRows.body })
+    .from(sheetRows)
+    .where(and(eq(sheetRows.campaignId, campaignId), eq(sheetRows.sheet, 'scans')));
+  const base = (path: string) => path.slice(path.lastIndexOf('/') + 1);
+  const known =
+    rows.length > 0
+      ? !rows.some(({ body }) => {
+          const named = (body as ScanSheetRow).file;
+          return named === file.path || (named === base(file.path) && base(other.path) !== named);
+        })
+      : JSON.stringify(ports.paths.assignment(file.path)) === JSON.stringify(ports.paths.assignment(other.path));
+  return known ? scanIdsOf(ports, other.id) : false;
+}

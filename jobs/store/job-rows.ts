@@ -1,0 +1,118 @@
+import { type SQL, sql } from 'drizzle-orm';
+import type { LibSQLDatabase } from 'drizzle-orm/libsql';
+import { jobs } from '../../schema/tables/index.ts';
+import type { Statement } from './fence.ts';
+
+/** The steps and their priority, lower first: what decides over many scans goes before the scans, fits before further reading. */
+export const STEP_PRIORITY = {
+  'read-sheet': 0,
+  'unpack-archive': 0,
+  'assign-scans': 1,
+  'calibrate-instrument': 2,
+  'reduce-scan': 3,
+  'fit-sample': 4,
+  'read-scan': 5,
+  'plan-campaign': 6,
+} as const;
+export type Step = keyof typeof STEP_PRIORITY;
+
+/** A burst of uploads is assigned once: the job waits this long unless a worker has nothing else to do. */
+export const ASSIGN_DELAY_MS = 200;
+
+/** Steps after which the set of scans may be another: nothing is calibrated or fitted while one is open. */
+const OPENING_STEPS = sql.raw(`('read-sheet', 'unpack-archive', 'assign-scans')`);
+
+export interface NewJob {
+  id: string;
+  campaignId: string;
+  step: Step;
+  subject: string;
+  now: number;
+  delayMs?: number;
+}
+
+/** Queues a job unless one for the same step and subject waits already. */
+export function insertJob(db: LibSQLDatabase, { id, campaignId, step, subject, now, delayMs = 0 }: NewJob): Statement {
+  return db
+    .insert(jobs)
+    .values({
+      id,
+      campaignId,
+      step,
+      subject,
+      priority: STEP_PRIORITY[step],
+      state: 'queued',
+      nextTryAt: now + delayMs,
+      createdAt: now,
+    })
+    .onConflictDoNothing();
+}
+
+/** Queues one job for each subject that `from` selects as `subject`; a waiting twin is enough. */
+function insertJobsFor(db: LibSQLDatabase, campaignId: string, step: Step, now: number, from: SQL): Statement {
+  return db.run(sql`
+    insert or ignore into jobs (id, campaign_id, step, subject, priority, state, next_try_at, created_at)
+    select 'j_' || lower(hex(randomblob(12))), ${campaignId}, ${step}, subject, ${STEP_PRIORITY[step]}, 'queued', ${now}, ${now}
+    from (${from})`);
+}
+
+/**
+ * Queues what has become due in a campaign, at the end of every write-back: instruments whose scans are all read,
+ * samples whose scans are all settled, and the plan once nothing else is open. Whatever holds one back ends in a
+ * write-back of its own, so nothing waits for ever.
+ */
+export function queueDueJobs(db: LibSQLDatabase, campaignId: string, now: number): Statement[] {
+  const open = sql`exists (select 1 from jobs where campaign_id = ${campaignId} and state in ('queued', 'running') and step in ${OPENING_STEPS})`;
+  // Without a kind on its sheet an instrument is told by its fastest scan, so all of them have to be read first.
+  const instruments = sql`instruments.campaign_id = ${campaignId} and inputs_revision > queued_revision and not ${open}
+    and (json_extract(sheet_row, '$.kind') is not null or not exists (
+      select 1 from scans s where s.campaign_id = ${campaignId} and s.instrument = instruments.instrument and s.status = 'received'))`;
+  const samples = sql`samples.campaign_id = ${campaignId} and inputs_revision > queued_revision and not ${open}
+    and not exists (select 1 from scans s where s.campaign_id = ${campaignId} and s.sample = samples.sample
+      and s.status in ('received', 'read') and s.role = 'sample')`;
+  const campaign = sql`campaigns.id = ${campaignId} and inputs_revision > queued_revision and not exists (
+    select 1 from jobs where campaign_id = ${campaignId} and state in ('queued', 'running') and step <> 'plan-campaign')`;
+  return [
+    insertJobsFor(
+      db,
+      campaignId,
+      'calibrate-instrument',
+      now,
+      sql`select id as subject from instruments where ${instruments}`,
+    ),
+    db.run(sql`update instruments set queued_revision = inputs_revision where ${instruments}`),
+    insertJobsFor(db, campaignId, 'fit-sample', now, sql`select id as subject from samples where ${samples}`),
+    db.run(sql`update samples set queued_revision = inputs_revision, state = 'queued' where ${samples}`),
+    insertJobsFor(db, campaignId, 'plan-campaign', now, sql`select id as subject from campaigns where ${campaign}`),
+    db.run(sql`update campaigns set queued_revision = inputs_revision where ${campaign}`),
+  ];
+}
+
+/** Queues the reduction of scans that are read, assigned, and on a calibrated instrument; `which` narrows the rows of `scans`. */
+export function queueReductions(db: LibSQLDatabase, campaignId: string, now: number, which: SQL): Statement[] {
+  const due = sql`scans.campaign_id = ${campaignId} and ${which} and scans.status = 'read' and disposition = 'assigned'
+    and inputs_revision > queued_revision and exists (
+      select 1 from instruments i where i.campaign_id = ${campaignId} and i.instrument = scans.instrument
+      and i.calibration is not null and i.calibrated_revision = i.inputs_revision)`;
+  return [
+    insertJobsFor(db, campaignId, 'reduce-scan', now, sql`select id as subject from scans where ${due}`),
+    db.run(sql`update scans set queued_revision = inputs_revision where ${due}`),
+  ];
+}
+
+/** Marks samples as having newer inputs than their fit; `names` is a subquery of sample names. */
+export function touchSamples(db: LibSQLDatabase, campaignId: string, names: SQL): Statement {
+  return db.run(sql`
+    update samples set inputs_revision = inputs_revision + 1,
+      state = case when state in ('waiting', 'queued') and fit_key is null then 'waiting' else 'stale' end
+    where campaign_id = ${campaignId} and sample in (${names})`);
+}
+
+/** Counts a change of what the campaign shows; of `inputs` too where a new plan may be due. */
+export function touchCampaign(db: LibSQLDatabase, campaignId: string, inputs: boolean): Statement {
+  return db.run(
+    inputs
+      ? sql`update campaigns set revision = revision + 1, inputs_revision = inputs_revision + 1 where id = ${campaignId}`
+      : sql`update campaigns set revision = revision + 1 where id = ${campaignId}`,
+  );
+}

@@ -1,0 +1,204 @@
+import { and, eq, inArray, sql } from 'drizzle-orm';
+import type { LibSQLDatabase } from 'drizzle-orm/libsql';
+import { samples } from '../../schema/tables/index.ts';
+import type { Ports } from '../ports/index.ts';
+import { guarded, isFenceBreak, LateWorker, runBatch, type Statement } from './fence.ts';
+import { hashOf } from './ids.ts';
+import { queueDueJobs, type Step, touchCampaign } from './job-rows.ts';
+
+/** A worker that says nothing for this long has lost its job. */
+export const LEASE_MS = 30_000;
+export const MAX_ATTEMPTS = 5;
+const BACK_OFF_MS = 1_000;
+const LONGEST_BACK_OFF_MS = 60_000;
+
+/** A job that this process holds. */
+export interface ClaimedJob {
+  id: string;
+  campaignId: string;
+  step: Step;
+  subject: string;
+  attempts: number;
+  generation: number;
+}
+
+export interface ClaimOptions {
+  owner: string;
+  limit: number;
+  campaignId?: string;
+  /** Only this job. */
+  jobId?: string;
+  /** Take assignments that still wait for more uploads: this worker has nothing else to do. */
+  eager?: boolean;
+}
+
+/**
+ * Takes up to `limit` due jobs with one statement: waiting ones whose time has come, and running ones whose lease lapsed.
+ * The generation grows with each claim. Two jobs on the same subject never run at once: results would be written over each other.
+ */
+export async function claimJobs(ports: Ports, options: ClaimOptions): Promise<ClaimedJob[]> {
+  const { owner, limit, campaignId, jobId, eager = false } = options;
+  const now = ports.clock.now();
+  const due = eager
+    ? sql`(next_try_at <= ${now} or (step = 'assign-scans' and attempts = 0))`
+    : sql`next_try_at <= ${now}`;
+  const within = sql`${campaignId === undefined ? sql`1` : sql`campaign_id = ${campaignId}`} and ${jobId === undefined ? sql`1` : sql`id = ${jobId}`}`;
+  const rows = await ports.database.write((db) =>
+    db.all<ClaimedJob>(sql`
+      update jobs set state = 'running', generation = generation + 1, attempts = attempts + 1, started_at = ${now},
+        leased_by = ${owner}, leased_until = ${now + LEASE_MS}
+      where id in (
+        select id from (
+          select id, priority, rowid as row from jobs where state = 'queued' and ${due} and ${within}
+            and not exists (select 1 from jobs twin where twin.step = jobs.step and twin.subject = jobs.subject and twin.state = 'running')
+          union all
+          select id, priority, rowid as row from jobs
+          where state = 'running' and leased_until < ${now} and attempts < ${MAX_ATTEMPTS} and ${within}
+        ) order by priority, row limit ${limit})
+      returning id, campaign_id as campaignId, step, subject, attempts, generation`),
+  );
+  const fitted = rows.filter((row) => row.step === 'fit-sample').map((row) => row.subject);
+  if (fitted.length > 0) {
+    await ports.database.write((db) =>
+      db
+        .update(samples)
+        .set({ state: 'fitting' })
+        .where(and(inArray(samples.id, fitted), eq(samples.state, 'queued'))),
+    );
+  }
+  return rows;
+}
+
+/** Extends the leases of jobs in flight. Returns the ids still held; the others went to another worker. */
+export async function extendLeases(ports: Ports, held: readonly ClaimedJob[]): Promise<Set<string>> {
+  if (held.length === 0) return new Set();
+  const until = ports.clock.now() + LEASE_MS;
+  const pairs = sql.join(
+    held.map(({ id, generation }) => sql`(${id}, ${generation})`),
+    sql`, `,
+  );
+  const rows = await ports.database.write((db) =>
+    db.all<{ id: string }>(sql`
+      update jobs set leased_until = ${until} where state = 'running' and (id, generation) in (values ${pairs}) returning id`),
+  );
+  return new Set(rows.map((row) => row.id));
+}
+
+const guardOf = (db: LibSQLDatabase, job: ClaimedJob, now: number): Statement =>
+  db.run(sql`
+    update jobs set state = 'done', finished_at = ${now}, leased_by = null, leased_until = null, last_error = null
+    where id = ${job.id} and generation = ${job.generation} and state = 'running'`);
+
+async function writeBack(ports: Ports, job: ClaimedJob, build: (db: LibSQLDatabase) => Statement[]): Promise<void> {
+  try {
+    await ports.database.write((db) => runBatch(db, build(db)));
+  } catch (error) {
+    if (isFenceBreak(error)) throw new LateWorker({ jobId: job.id, generation: job.generation });
+    throw error;
+  }
+  await wakeNewJobs(ports, job);
+}
+
+/**
+ * The one write-back of a job: results, job done, next jobs, in one batch that fails whole when the lease is gone.
+ * Throws LateWorker then.
+ */
+export function completeJob(
+  ports: Ports,
+  job: ClaimedJob,
+  results: (db: LibSQLDatabase, now: number) => Statement[] = () => [],
+): Promise<void> {
+  const now = ports.clock.now();
+  return writeBack(ports, job, (db) =>
+    guarded(db, guardOf(db, job, now), [
+      ...results(db, now),
+      touchCampaign(db, job.campaignId, job.step !== 'plan-campaign'),
+      ...queueDueJobs(db, job.campaignId, now),
+    ]),
+  );
+}
+
+/** Wait before the next attempt, ms: doubling, ± 50 %, spread by the job's own id so that a burst of failures does not return as a burst. */
+export function backOffMs(jobId: string, attempts: number): number {
+  const spread = 0.5 + Number.parseInt(hashOf([jobId, attempts]).slice(0, 8), 16) / 0xffffffff;
+  return Math.round(Math.min(LONGEST_BACK_OFF_MS, BACK_OFF_MS * 2 ** (attempts - 1)) * spread);
+}
+
+/**
+ * Notes a failed attempt: the job waits and is tried again, or after the last attempt fails for good together with its
+ * subject (`subjectFailed` gives the statements). Throws LateWorker when the lease is gone.
+ */
+export async function failAttempt(
+  ports: Ports,
+  job: ClaimedJob,
+  error: string,
+  subjectFailed: (db: LibSQLDatabase, now: number) => Statement[],
+): Promise<void> {
+  const now = ports.clock.now();
+  if (job.attempts >= MAX_ATTEMPTS) {
+    await writeBack(ports, job, (db) =>
+      guarded(
+        db,
+        db.run(sql`
+          update jobs set state = 'failed', finished_at = ${now}, leased_by = null, leased_until = null, last_error = ${error}
+          where id = ${job.id} and generation = ${job.generation} and state = 'running'`),
+        [
+          ...subjectFailed(db, now),
+          touchCampaign(db, job.campaignId, job.step !== 'plan-campaign'),
+          ...queueDueJobs(db, job.campaignId, now),
+        ],
+      ),
+    );
+    return;
+  }
+  const delayMs = backOffMs(job.id, job.attempts);
+  // A newer job on the same subject waits already: it does the work, and only one may wait.
+  await writeBack(ports, job, (db) =>
+    guarded(
+      db,
+      db.run(sql`
+        update jobs set leased_by = null, leased_until = null, last_error = ${error}, next_try_at = ${now + delayMs}, woken = 0,
+          state = case when exists (select 1 from jobs twin where twin.step = jobs.step and twin.subject = jobs.subject and twin.state = 'queued')
+            then 'done' else 'queued' end
+        where id = ${job.id} and generation = ${job.generation} and state = 'running'`),
+      [touchCampaign(db, job.campaignId, false)],
+    ),
+  );
+}
+
+/** Jobs whose worker vanished on their last attempt: nobody may claim them, so the sweep fails them. */
+export function findLostJobs(ports: Ports): Promise<ClaimedJob[]> {
+  return ports.database.read.all<ClaimedJob>(sql`
+    select id, campaign_id as campaignId, step, subject, attempts, generation from jobs
+    where state = 'running' and leased_until < ${ports.clock.now()} and attempts >= ${MAX_ATTEMPTS}`);
+}
+
+/** Sends wake-ups for jobs that were queued inside a write-back. Where wake-ups are heard in this process one is enough. */
+async function wakeNewJobs(ports: Ports, { id: doneId, campaignId }: ClaimedJob): Promise<void> {
+  if (ports.queue.heard) return ports.queue.wake(doneId, 0);
+  const rows = await ports.database.write((db) =>
+    db.all<{ id: string; nextTryAt: number }>(sql`
+      update jobs set woken = 1 where campaign_id = ${campaignId} and state = 'queued' and woken = 0
+      returning id, next_try_at as nextTryAt`),
+  );
+  const now = ports.clock.now();
+  for (const { id, nextTryAt } of rows) await ports.queue.wake(id, Math.max(0, (nextTryAt - now) / 1000));
+}
+
+/** Ids of due jobs, for the sweep of the serverless home: a lost wake-up is sent again. */
+export async function listDueJobIds(ports: Ports, limit: number): Promise<string[]> {
+  const now = ports.clock.now();
+  const rows = await ports.database.read.all<{ id: string }>(sql`
+    select id from jobs where (state = 'queued' and next_try_at <= ${now}) or (state = 'running' and leased_until < ${now})
+    order by priority, rowid limit ${limit}`);
+  return rows.map((row) => row.id);
+}
+
+/** How many jobs are open, and when the next waiting one is due (ms since the epoch). */
+export async function openJobs(ports: Ports, campaignId?: string): Promise<{ open: number; nextTryAt: number | null }> {
+  const within = campaignId === undefined ? sql`1` : sql`campaign_id = ${campaignId}`;
+  const [row] = await ports.database.read.all<{ open: number; nextTryAt: number | null }>(sql`
+    select count(*) as open, min(case when state = 'queued' then next_try_at else leased_until end) as nextTryAt
+    from jobs where state in ('queued', 'running') and ${within}`);
+  return row;
+}
