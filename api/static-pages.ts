@@ -16,11 +16,14 @@ export function createPages(webDir: string): (request: Request) => Promise<Respo
   const pages = new Hono();
   const index = join(webDir, 'index.html');
   pages.use(async (c, next) => (existsSync(index) ? next() : c.html(NOT_BUILT, 503)));
-  // File names under assets/ carry a hash of their content.
-  const immutable = (path: string, c: { header: (name: string, value: string) => void }) =>
-    c.header('cache-control', path.includes('assets') ? 'public, max-age=31536000, immutable' : 'no-cache');
-  pages.use(serveStatic({ root: webDir, onFound: immutable }));
+  pages.use(async (c, next) => {
+    await next();
+    // File names under assets/ carry a hash of their content.
+    const hashed = c.res.ok && c.req.path.startsWith('/assets/');
+    c.res.headers.set('cache-control', hashed ? 'public, max-age=31536000, immutable' : 'no-cache');
+  });
+  pages.use(serveStatic({ root: webDir }));
   pages.get('/assets/*', (c) => c.text('no such file', 404));
-  pages.get('*', serveStatic({ path: index, onFound: immutable }));
+  pages.get('*', serveStatic({ path: index }));
   return async (request) => pages.fetch(request);
 }
