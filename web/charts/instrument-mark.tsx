@@ -1,0 +1,43 @@
+import {
+  symbol,
+  symbolCircle,
+  symbolCross,
+  symbolDiamond,
+  symbolSquare,
+  symbolStar,
+  symbolTriangle,
+  symbolWye,
+} from 'd3-shape';
+import type { MarkLook } from '../model/ledger.ts';
+
+/** Areas chosen so that the shapes look equally heavy, px². */
+const SHAPES = [
+  symbol(symbolCircle, 82)(),
+  symbol(symbolTriangle, 74)(),
+  symbol(symbolSquare, 80)(),
+  symbol(symbolDiamond, 70)(),
+  symbol(symbolCross, 74)(),
+  symbol(symbolStar, 66)(),
+  symbol(symbolWye, 70)(),
+];
+const HUES = 6;
+
+/** A mark of an instrument: shape and colour by its place in the list of instruments (both repeat, never together within 42). */
+export function InstrumentMark(props: { instrument: number; look: MarkLook; x: number; y: number }) {
+  const { instrument, look, x, y } = props;
+  return (
+    <g class={`mark hue-${instrument % HUES} look-${look}`} transform={`translate(${x.toFixed(1)} ${y.toFixed(1)})`}>
+      <path class="mark-shape" d={SHAPES[instrument % SHAPES.length] ?? undefined} />
+      {look === 'struck' && <path class="mark-strike" d="M-6.500 6.500 6.500-6.500" />}
+    </g>
+  );
+}
+
+/** The same mark beside words. */
+export function InstrumentKey({ instrument, look = 'full' }: { instrument: number; look?: MarkLook }) {
+  return (
+    <svg class="key" width="18" height="18" viewBox="-9 -9 18 18" aria-hidden="true">
+      <InstrumentMark instrument={instrument} look={look} x={0} y={0} />
+    </svg>
+  );
+}

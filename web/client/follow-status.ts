@@ -1,0 +1,56 @@
+import type { CampaignStatus } from '../../schema/wire/campaign.ts';
+import { loadStatus, openStatusStream } from './campaigns.ts';
+import { createEventParser } from './events.ts';
+import { asProblem, type Problem } from './request.ts';
+
+/** How the page hears of changes: by the event stream, by asking, or not at all. */
+export type Link = 'connecting' | 'live' | 'polling' | 'offline';
+
+export interface StatusListener {
+  onStatus(status: CampaignStatus): void;
+  onLink(link: Link, problem?: Problem): void;
+}
+
+const POLL_EVERY_MS = 2_000;
+/** Polls between two tries of the stream. */
+const POLLS_PER_TRY = 5;
+
+const pause = (ms: number, signal: AbortSignal): Promise<void> =>
+  new Promise((resolve) => {
+    setTimeout(resolve, ms);
+    signal.addEventListener('abort', () => resolve(), { once: true });
+  });
+
+/** Follows a campaign until the signal aborts: the stream first, resumed when it ends; polling while it cannot be had. */
+export async function followStatus(id: string, listener: StatusListener, signal: AbortSignal): Promise<void> {
+  let lastEventId: string | undefined;
+  while (!signal.aborted) {
+    const started = performance.now();
+    try {
+      const response = await openStatusStream(id, lastEventId, signal);
+      const parse = createEventParser((event) => {
+        lastEventId = event.id ?? lastEventId;
+        listener.onStatus(JSON.parse(event.data));
+      });
+      listener.onLink('live');
+      const reader = (response.body as ReadableStream<Uint8Array>).getReader();
+      const decoder = new TextDecoder();
+      for (let piece = await reader.read(); !piece.done; piece = await reader.read()) {
+        parse(decoder.decode(piece.value, { stream: true }));
+      }
+      // The server ends a stream after a minute. One that ends at once is not asked for again in a tight loop.
+      if (performance.now() - started < POLL_EVERY_MS) await pause(POLL_EVERY_MS, signal);
+    } catch {
+      for (let i = 0; i < POLLS_PER_TRY && !signal.aborted; i++) {
+        try {
+          listener.onStatus(await loadStatus(id, signal));
+          listener.onLink('polling');
+        } catch (error) {
+          if (signal.aborted) return;
+          listener.onLink('offline', asProblem(error));
+        }
+        await pause(POLL_EVERY_MS, signal);
+      }
+    }
+  }
+}

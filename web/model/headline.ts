@@ -1,0 +1,56 @@
+import type { ParameterRow } from '../../schema/wire/parameters.ts';
+
+/** The numbers of one event of a sample that stand for it. */
+export interface EventNumbers {
+  event: number;
+  energies: ParameterRow[];
+  exponents: ParameterRow[];
+  prefactors: ParameterRow[];
+  enthalpies: ParameterRow[];
+}
+
+/** Order in which a sample's one activation energy is looked for: the first that exists stands in the map's margin. */
+const ENERGY_ORDER = ['vyazovkin', 'friedman', 'starink', 'kissinger_akahira_sunose', 'ozawa_flynn_wall', 'kissinger'];
+const EXPONENT_ORDER = ['jmak', 'augis_bennett', 'ozawa', 'matusita_sakka'];
+
+/**
+ * Consolidated rows: one number for a quantity, method and variant, pooled over conversion, with the Monte Carlo interval
+ * where there is one. Refits without outliers stay in the table only.
+ */
+export function consolidate(rows: readonly ParameterRow[]): ParameterRow[] {
+  const kept = new Map<string, ParameterRow>();
+  for (const row of rows) {
+    if (row.conversion !== null || (row.variant !== '' && row.variant !== 'peak')) continue;
+    const key = [row.sample, row.event, row.quantity, row.method, row.variant, row.temperature_K].join('\u0000');
+    const standing = kept.get(key);
+    if (!standing || (standing.interval !== 'monte_carlo' && row.interval === 'monte_carlo')) kept.set(key, row);
+  }
+  return [...kept.values()];
+}
+
+/** Numbers of each event of each sample, events in order. */
+export function numbersBySample(rows: readonly ParameterRow[]): Map<string, EventNumbers[]> {
+  const samples = new Map<string, EventNumbers[]>();
+  for (const row of consolidate(rows)) {
+    let events = samples.get(row.sample);
+    if (!events) samples.set(row.sample, (events = []));
+    let numbers = events.find((e) => e.event === row.event);
+    if (!numbers) {
+      numbers = { event: row.event, energies: [], exponents: [], prefactors: [], enthalpies: [] };
+      events.push(numbers);
+      events.sort((a, b) => a.event - b.event);
+    }
+    if (row.quantity === 'activation_energy') numbers.energies.push(row);
+    else if (row.quantity === 'avrami_exponent') numbers.exponents.push(row);
+    else if (row.quantity === 'ln_prefactor') numbers.prefactors.push(row);
+    else if (row.quantity === 'enthalpy') numbers.enthalpies.push(row);
+  }
+  return samples;
+}
+
+const pick = (rows: readonly ParameterRow[], order: readonly string[]): ParameterRow | undefined =>
+  order.map((method) => rows.find((row) => row.method === method)).find(Boolean) ?? rows[0];
+
+export const headlineEnergy = (numbers: EventNumbers): ParameterRow | undefined => pick(numbers.energies, ENERGY_ORDER);
+export const headlineExponent = (numbers: EventNumbers): ParameterRow | undefined =>
+  pick(numbers.exponents, EXPONENT_ORDER);

@@ -1,0 +1,128 @@
+import type { CampaignStatus, CoverageRow, GapRow } from '../../schema/wire/campaign.ts';
+import { FLAG_CODES } from '../../schema/wire/flags.ts';
+import type { Role, SampleState, ScanState } from '../../schema/wire/states.ts';
+import type { ScanRow } from '../client/rows.ts';
+import type { EventNumbers } from './headline.ts';
+import { numbersBySample } from './headline.ts';
+
+/** How a mark is drawn: full when the scan gives results, hollow while it waits, struck out when it gives none. */
+export type MarkLook = 'full' | 'hollow' | 'struck';
+
+/** One scan (file and segment) on the map, with its row for each event. */
+export interface ScanMark {
+  key: string;
+  file: string;
+  instrument: string;
+  status: ScanState;
+  look: MarkLook;
+  /** Measured where known, else nominal; always positive; null when neither is known. K/s */
+  rateKPerS: number | null;
+  isCooling: boolean;
+  /** The worst flag that asks for a look. */
+  concern?: 'stop' | 'warn';
+  rows: ScanRow[];
+}
+
+export interface LedgerRow {
+  sample: string;
+  role: Role;
+  state?: SampleState;
+  reason?: string;
+  marks: ScanMark[];
+  gaps: GapRow[];
+  /** Empty decades between filled ones, K/s */
+  emptyDecades: { lowKPerS: number; highKPerS: number }[];
+  numbers: EventNumbers[];
+}
+
+const LOOKS: Record<ScanState, MarkLook | undefined> = {
+  received: 'hollow',
+  read: 'hollow',
+  reduced: 'full',
+  set_aside: 'struck',
+  failed: 'struck',
+  excluded: 'struck',
+  unassigned: undefined,
+  superseded: undefined,
+};
+
+function concernOf(rows: readonly ScanRow[]): 'stop' | 'warn' | undefined {
+  const severities = rows.flatMap((row) => row.flags.map((code) => FLAG_CODES[code]?.[0]));
+  return severities.includes('stop') ? 'stop' : severities.includes('warn') ? 'warn' : undefined;
+}
+
+function markOf(key: string, rows: ScanRow[], look: MarkLook): ScanMark {
+  const [first] = rows;
+  const signed = first.rate_K_per_s ?? first.rate_nominal_K_per_s;
+  return {
+    key,
+    file: first.file,
+    instrument: first.instrument ?? 'no instrument named',
+    status: first.status,
+    look,
+    rateKPerS: signed === null || signed === 0 ? null : Math.abs(signed),
+    isCooling: signed !== null && signed < 0,
+    concern: look === 'struck' ? undefined : concernOf(rows),
+    rows,
+  };
+}
+
+/** Decades without a scan between the lowest and the highest filled one of a sample. */
+export function emptyDecades(rows: readonly CoverageRow[]): { lowKPerS: number; highKPerS: number }[] {
+  const filled = rows.filter((r) => r.scan_count > 0).map((r) => Math.round(Math.log10(r.decade_low_K_per_s)));
+  if (filled.length === 0) return [];
+  const empty = [];
+  for (let decade = Math.min(...filled) + 1; decade < Math.max(...filled); decade++) {
+    if (!filled.includes(decade)) empty.push({ lowKPerS: 10 ** decade, highKPerS: 10 ** (decade + 1) });
+  }
+  return empty;
+}
+
+export interface LedgerTables {
+  scans: readonly ScanRow[];
+  coverage: readonly CoverageRow[];
+  gaps: readonly GapRow[];
+  parameters: Parameters<typeof numbersBySample>[0];
+}
+
+/** Rows of the map: samples in the order of the status, then what else was measured (standards, blanks). */
+export function buildLedger(tables: LedgerTables, status: CampaignStatus | undefined): LedgerRow[] {
+  const rows = new Map<string, LedgerRow>();
+  const rowOf = (sample: string, role: Role): LedgerRow => {
+    const key = `${role}\u0000${sample}`;
+    let row = rows.get(key);
+    if (!row) rows.set(key, (row = { sample, role, marks: [], gaps: [], emptyDecades: [], numbers: [] }));
+    return row;
+  };
+  for (const { sample, state, reason } of status?.samples ?? [])
+    Object.assign(rowOf(sample, 'sample'), { state, reason });
+
+  const scans = new Map<string, ScanRow[]>();
+  for (const scan of tables.scans) {
+    const key = `${scan.file}\u0000${scan.segment ?? ''}\u0000${scan.sample}\u0000${scan.instrument}`;
+    const sameScan = scans.get(key);
+    if (sameScan) sameScan.push(scan);
+    else scans.set(key, [scan]);
+  }
+  for (const [key, scanRows] of scans) {
+    const [{ sample, role, status: scanStatus }] = scanRows;
+    const look = LOOKS[scanStatus];
+    if (sample !== null && look) rowOf(sample, role ?? 'sample').marks.push(markOf(key, scanRows, look));
+  }
+
+  const numbers = numbersBySample(tables.parameters);
+  for (const row of rows.values()) {
+    row.marks.sort((a, b) => (a.rateKPerS ?? 0) - (b.rateKPerS ?? 0) || (a.instrument < b.instrument ? -1 : 1));
+    if (row.role !== 'sample') continue;
+    row.gaps = tables.gaps.filter((gap) => gap.sample === row.sample);
+    row.emptyDecades = emptyDecades(tables.coverage.filter((c) => c.sample === row.sample));
+    row.numbers = numbers.get(row.sample) ?? [];
+  }
+  return [...rows.values()].sort((a, b) => Number(a.role !== 'sample') - Number(b.role !== 'sample'));
+}
+
+/** Names of the instruments in a fixed order: that order decides shape and colour. */
+export const instrumentNames = (rows: readonly LedgerRow[], known: readonly string[]): string[] =>
+  [...new Set([...known, ...rows.flatMap((row) => row.marks.map((mark) => mark.instrument))])].sort((a, b) =>
+    a < b ? -1 : 1,
+  );

@@ -1,0 +1,66 @@
+import { useEffect, useMemo } from 'preact/hooks';
+import { buildLedger, instrumentNames } from '../model/ledger.ts';
+import { openCampaign } from '../state/live-campaign.ts';
+import { createUploads } from '../state/uploads.ts';
+import { FileDesk } from './file-desk.tsx';
+import { InstrumentTable } from './instrument-table.tsx';
+import { Ledger } from './ledger.tsx';
+import { NextSteps } from './next-steps.tsx';
+import { ProblemNotice } from './notice.tsx';
+import { Numbers } from './numbers.tsx';
+import { Progress } from './progress.tsx';
+
+/** One campaign: where it stands, the coverage map, what to do next, the numbers, the instruments. */
+export function CampaignView({ id }: { id: string }) {
+  const live = useMemo(() => openCampaign(id), [id]);
+  const uploads = useMemo(() => createUploads(id), [id]);
+  useEffect(() => () => live.close(), [live]);
+
+  const campaign = live.campaign.value;
+  const status = live.status.value;
+  const tables = live.tables.value;
+  const problem = live.problem.value;
+  useEffect(() => {
+    document.title = `${campaign?.name ?? 'Campaign'} – ratespan`;
+  }, [campaign?.name]);
+
+  const rows = useMemo(() => (tables ? buildLedger(tables, status) : []), [tables, status]);
+  const instruments = useMemo(
+    () => instrumentNames(rows, tables?.instruments.map((row) => row.instrument) ?? []),
+    [rows, tables],
+  );
+
+  if (!campaign) {
+    return problem ? (
+      <>
+        <ProblemNotice problem={problem} />
+        <p>
+          <a href="/">All campaigns</a>
+        </p>
+      </>
+    ) : (
+      <p class="waiting">Loading the campaign…</p>
+    );
+  }
+  const isEmpty = tables !== undefined && rows.length === 0 && tables.scans.length === 0;
+  const unassigned = tables?.scans.filter((scan) => scan.status === 'unassigned') ?? [];
+  return (
+    <>
+      <div class="campaign-head">
+        <h1>{campaign.name}</h1>
+        {status && <Progress status={status} link={live.link.value} />}
+      </div>
+      {problem && <ProblemNotice problem={problem} />}
+      <FileDesk uploads={uploads} isEmpty={isEmpty} />
+      {!tables && !problem && <p class="waiting">Loading the tables…</p>}
+      {tables && !isEmpty && (
+        <>
+          <Ledger campaign={campaign} rows={rows} instruments={instruments} unassigned={unassigned} />
+          <NextSteps campaign={campaign} flags={tables.flags} gaps={tables.gaps} isSettled={status?.settled ?? false} />
+          <Numbers campaign={campaign} rows={rows} />
+          <InstrumentTable campaign={campaign} rows={tables.instruments} names={instruments} />
+        </>
+      )}
+    </>
+  );
+}

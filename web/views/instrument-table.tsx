@@ -1,0 +1,67 @@
+import { InstrumentKey } from '../charts/instrument-mark.tsx';
+import type { Campaign, InstrumentRow } from '../client/rows.ts';
+import { formatEstimate } from '../format.ts';
+import { Downloads } from './download.tsx';
+
+const SOURCES: Record<InstrumentRow['source'], string> = {
+  standards: 'scans of standards',
+  sheet: 'instruments.csv',
+  prior: 'nothing given: a guess with a wide error',
+};
+
+/** Two standard errors either side: close to the 95 % interval used elsewhere on the page. */
+const withError = (value: number | null, error: number | null, unit: string) => {
+  if (value === null) return '–';
+  const spread = error === null ? null : 1.96 * error;
+  const estimate = formatEstimate(
+    value,
+    spread === null ? null : value - spread,
+    spread === null ? null : value + spread,
+  );
+  return `${estimate.value} ${estimate.spread} ${unit}`;
+};
+
+/** What was taken off the temperatures of each instrument, and where that came from. */
+export function InstrumentTable(props: {
+  campaign: Campaign;
+  rows: readonly InstrumentRow[];
+  names: readonly string[];
+}) {
+  const { campaign, rows, names } = props;
+  return (
+    <section class="instruments" aria-labelledby="instruments-title">
+      <div class="section-head">
+        <h2 id="instruments-title">Instruments</h2>
+        <Downloads campaign={campaign} tables={['instruments']} />
+      </div>
+      {rows.length === 0 ? (
+        <p class="waiting">Corrections are listed here once the first scan is reduced.</p>
+      ) : (
+        <table class="instrument-table">
+          <thead>
+            <tr>
+              <th scope="col">Instrument</th>
+              <th scope="col">Kind</th>
+              <th scope="col">Lag</th>
+              <th scope="col">Offset</th>
+              <th scope="col">Taken from</th>
+            </tr>
+          </thead>
+          <tbody>
+            {rows.map((row) => (
+              <tr key={row.instrument}>
+                <th scope="row">
+                  <InstrumentKey instrument={names.indexOf(row.instrument)} /> {row.instrument}
+                </th>
+                <td>{row.kind ?? '–'}</td>
+                <td class="number">{withError(row.lag_s, row.lag_se_s, 's')}</td>
+                <td class="number">{withError(row.offset_K, row.offset_se_K, 'K')}</td>
+                <td>{SOURCES[row.source]}</td>
+              </tr>
+            ))}
+          </tbody>
+        </table>
+      )}
+    </section>
+  );
+}

@@ -1,0 +1,186 @@
+import { useComputed, useSignal } from '@preact/signals';
+import { useLayoutEffect, useMemo, useRef } from 'preact/hooks';
+import { InstrumentKey } from '../charts/instrument-mark.tsx';
+import { RateAxis } from '../charts/rate-axis.tsx';
+import { createRateScale } from '../charts/rate-scale.ts';
+import { layoutStrip } from '../charts/strip-layout.ts';
+import type { Campaign, ScanRow } from '../client/rows.ts';
+import { formatCount } from '../format.ts';
+import type { LedgerRow } from '../model/ledger.ts';
+import { units } from '../state/units.ts';
+import { Downloads } from './download.tsx';
+import { LedgerEntry } from './ledger-entry.tsx';
+import { Readout } from './readout.tsx';
+
+/** The mark under the pointer or the keyboard. */
+export interface ActiveMark {
+  row: number;
+  mark: number;
+}
+
+const FIRST_WIDTH = 600;
+
+/** The coverage map: samples down, heating rate across, one mark a scan; beside it the fit and its headline numbers. */
+export function Ledger(props: {
+  campaign: Campaign;
+  rows: readonly LedgerRow[];
+  instruments: readonly string[];
+  unassigned: readonly ScanRow[];
+}) {
+  const { campaign, rows, instruments, unassigned } = props;
+  const width = useSignal(FIRST_WIDTH);
+  const active = useSignal<ActiveMark | undefined>(undefined);
+  /** The one strip in the tab order */
+  const tabRow = useSignal(0);
+  const axis = useRef<HTMLDivElement>(null);
+  const list = useRef<HTMLUListElement>(null);
+  useLayoutEffect(() => {
+    if (!axis.current) return;
+    const observer = new ResizeObserver(([entry]) => {
+      width.value = Math.floor(entry.contentRect.width);
+    });
+    observer.observe(axis.current);
+    return () => observer.disconnect();
+  }, []);
+
+  const scale = useMemo(
+    () =>
+      createRateScale(
+        rows.flatMap((row) => row.marks.map((m) => m.rateKPerS)),
+        width.value,
+        units.value,
+      ),
+    [rows, width.value, units.value],
+  );
+  const layouts = useMemo(() => rows.map((row) => layoutStrip(row.marks, scale)), [rows, scale]);
+  const activeMark = useComputed(() => {
+    const at = active.value;
+    const row = at && rows[at.row];
+    return row?.marks[at?.mark ?? -1] ? { sample: row.sample, mark: row.marks[at?.mark ?? 0] } : undefined;
+  });
+
+  const moveTo = (row: number, mark: number): void => {
+    active.value = { row, mark };
+    tabRow.value = row;
+    list.current?.querySelector<SVGElement>(`#strip-${row}`)?.focus();
+  };
+  const onKeyDown = (row: number) => (event: KeyboardEvent) => {
+    const count = rows[row].marks.length;
+    const mark = active.value?.row === row ? active.value.mark : 0;
+    if (event.key === 'ArrowRight') moveTo(row, Math.min(count - 1, mark + 1));
+    else if (event.key === 'ArrowLeft') moveTo(row, Math.max(0, mark - 1));
+    else if (event.key === 'Home') moveTo(row, 0);
+    else if (event.key === 'End') moveTo(row, count - 1);
+    else if (event.key === 'ArrowDown' || event.key === 'ArrowUp') {
+      const step = event.key === 'ArrowDown' ? 1 : -1;
+      let to = row + step;
+      while (rows[to] && rows[to].marks.length === 0) to += step;
+      if (rows[to]) {
+        const x = layouts[row].placed[mark].x;
+        const distances = layouts[to].placed.map((placed) => Math.abs(placed.x - x));
+        moveTo(to, distances.indexOf(Math.min(...distances)));
+      }
+    } else if (event.key === 'Escape') active.value = undefined;
+    else return;
+    event.preventDefault();
+  };
+
+  return (
+    <section class="coverage" aria-labelledby="coverage-title">
+      <div class="section-head">
+        <h2 id="coverage-title">Coverage</h2>
+        <Downloads campaign={campaign} tables={['scans', 'coverage', 'conversion']} />
+      </div>
+      <Legend instruments={instruments} rows={rows} />
+      <div class="ledger">
+        <div class="ledger-axis">
+          <span>Sample</span>
+          <div ref={axis}>
+            <p class="axis-title">
+              Heating rate, {scale.unit}
+              <span class="unseen">, logarithmic. Use the arrow keys to move from scan to scan.</span>
+            </p>
+            <RateAxis scale={scale} />
+          </div>
+          <span>
+            Activation energy <i>E</i>
+          </span>
+          <span>
+            Exponent <i>n</i>
+          </span>
+        </div>
+        <ul class="ledger-rows" ref={list}>
+          {rows.map((row, i) => (
+            <LedgerEntry
+              key={`${row.role} ${row.sample}`}
+              row={row}
+              index={i}
+              scale={scale}
+              layout={layouts[i]}
+              instruments={instruments}
+              active={active}
+              tabRow={tabRow}
+              onKeyDown={onKeyDown(i)}
+            />
+          ))}
+        </ul>
+        <Readout active={activeMark} instruments={instruments} />
+      </div>
+      {unassigned.length > 0 && (
+        <details class="unassigned">
+          <summary>{formatCount(unassigned.length, 'file')} without a sample</summary>
+          <p>
+            No row of scans.csv and no folder of the form SAMPLE/INSTRUMENT names the sample. Add a row for each and
+            send the sheet again.
+          </p>
+          <ul>
+            {unassigned.map((scan) => (
+              <li key={scan.file} class="file">
+                {scan.file}
+              </li>
+            ))}
+          </ul>
+        </details>
+      )}
+      <p class="small">
+        <i>E</i> and <i>n</i> with their 95 % intervals. Every other method and interval is listed under “Numbers”.
+      </p>
+    </section>
+  );
+}
+
+function Legend({ instruments, rows }: { instruments: readonly string[]; rows: readonly LedgerRow[] }) {
+  const looks = new Set(rows.flatMap((row) => row.marks.map((mark) => mark.look)));
+  const isFlagged = rows.some((row) => row.marks.some((mark) => mark.concern));
+  return (
+    <ul class="legend" aria-label="Marks">
+      {instruments.map((name, i) => (
+        <li key={name}>
+          <InstrumentKey instrument={i} />
+          {name}
+        </li>
+      ))}
+      <li class="legend-break" aria-hidden="true" />
+      {looks.has('hollow') && (
+        <li class="muted-key">
+          <InstrumentKey instrument={0} look="hollow" />
+          waiting
+        </li>
+      )}
+      {looks.has('struck') && (
+        <li class="muted-key">
+          <InstrumentKey instrument={0} look="struck" />
+          set aside
+        </li>
+      )}
+      {isFlagged && (
+        <li class="muted-key">
+          <svg class="key" width="18" height="18" viewBox="-9 -9 18 18" aria-hidden="true">
+            <path class="mark-concern tone-warn" d="M-6 2.500h12" />
+          </svg>
+          flagged
+        </li>
+      )}
+    </ul>
+  );
+}

@@ -1,0 +1,102 @@
+import type { GapRow } from '../../schema/wire/campaign.ts';
+import { SeverityGlyph } from '../charts/state-glyph.tsx';
+import type { Campaign, FlagRow } from '../client/rows.ts';
+import { type FlagGroup, groupFlags, groupGaps } from '../model/next-steps.ts';
+import { gapName, sentence } from '../words.ts';
+import { Downloads } from './download.tsx';
+
+/** Groups with more places than this start closed. */
+const OPEN_UP_TO = 3;
+
+/** What stops a result, what is missing, what looks wrong, what is worth knowing: each with what to do. */
+export function NextSteps(props: {
+  campaign: Campaign;
+  flags: readonly FlagRow[];
+  gaps: readonly GapRow[];
+  isSettled: boolean;
+}) {
+  const { campaign, flags, gaps, isSettled } = props;
+  const { stop, warn, note } = groupFlags(flags, gaps);
+  const isClear = stop.length + warn.length + gaps.length === 0;
+  return (
+    <section class="next-steps" aria-labelledby="next-title">
+      <div class="section-head">
+        <h2 id="next-title">What to do next</h2>
+        <Downloads campaign={campaign} tables={['flags', 'gaps']} />
+      </div>
+      {isClear && (
+        <p class="waiting">
+          {isSettled
+            ? 'Nothing is missing and nothing was flagged.'
+            : 'Nothing so far; the scans are still being worked on.'}
+        </p>
+      )}
+      <div class="step-columns">
+        <Steps severity="stop" title="Stops a result" groups={stop} />
+        {gaps.length > 0 && <Gaps gaps={gaps} />}
+        <Steps severity="warn" title="Look at" groups={warn} />
+        <Steps severity="note" title="Good to know" groups={note} />
+      </div>
+    </section>
+  );
+}
+
+function Steps(props: { severity: 'stop' | 'warn' | 'note'; title: string; groups: readonly FlagGroup[] }) {
+  const { severity, title, groups } = props;
+  if (groups.length === 0) return null;
+  return (
+    <div class={`steps steps-${severity}`}>
+      <h3>
+        <SeverityGlyph severity={severity} />
+        {title}
+      </h3>
+      <ul>
+        {groups.map((group) => (
+          <li key={`${group.code} ${group.action}`}>
+            <p class="step-what">{sentence(group.meaning)}</p>
+            <p class="step-do">{sentence(group.action)}</p>
+            <details open={severity !== 'note' && group.flags.length <= OPEN_UP_TO}>
+              <summary>{group.flags.length === 1 ? 'Where' : `Where, ${group.flags.length} places`}</summary>
+              <ul class="step-places">
+                {group.flags.map((flag, i) => (
+                  <li key={i} class="step-place">
+                    <span class="place">{placeOf(flag)}</span> {flag.detail}
+                  </li>
+                ))}
+              </ul>
+            </details>
+          </li>
+        ))}
+      </ul>
+    </div>
+  );
+}
+
+const placeOf = (flag: FlagRow): string =>
+  flag.file ?? ([flag.sample, flag.instrument].filter(Boolean).join(', ') || 'campaign');
+
+function Gaps({ gaps }: { gaps: readonly GapRow[] }) {
+  return (
+    <div class="steps steps-gap">
+      <h3>
+        <SeverityGlyph severity="gap" />
+        Missing measurements
+      </h3>
+      <ul>
+        {groupGaps(gaps).map(({ code, gaps: same }) => (
+          <li key={code}>
+            <p class="step-what">{sentence(gapName(code))}</p>
+            <ul class="step-places">
+              {same.map((gap) => (
+                <li key={`${gap.sample} ${gap.detail}`} class="step-place">
+                  <span class="place">{gap.sample || 'campaign'}</span> {sentence(gap.detail)}
+                  <span class="step-do"> {sentence(gap.action)}</span>
+                </li>
+              ))}
+            </ul>
+          </li>
+        ))}
+      </ul>
+    </div>
+  );
+}

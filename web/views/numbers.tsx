@@ -1,0 +1,105 @@
+import type { ParameterRow } from '../../schema/wire/parameters.ts';
+import { createIntervalScale, IntervalAxis, IntervalMark } from '../charts/interval-plot.tsx';
+import type { Campaign } from '../client/rows.ts';
+import { formatRate } from '../format.ts';
+import { describeEstimate } from '../model/describe.ts';
+import type { EventNumbers } from '../model/headline.ts';
+import type { LedgerRow } from '../model/ledger.ts';
+import { units } from '../state/units.ts';
+import { Downloads } from './download.tsx';
+
+const PLOT_WIDTH = 132;
+
+/** The consolidated numbers of each sample and event, by method, drawn on one scale so that disagreement shows. */
+export function Numbers({ campaign, rows }: { campaign: Campaign; rows: readonly LedgerRow[] }) {
+  const events = rows.flatMap((row) =>
+    row.numbers.map((numbers) => ({ sample: row.sample, of: row.numbers.length, numbers })),
+  );
+  return (
+    <section class="numbers" aria-labelledby="numbers-title">
+      <div class="section-head">
+        <h2 id="numbers-title">Numbers</h2>
+        <Downloads campaign={campaign} tables={['parameters']} />
+      </div>
+      {events.length === 0 ? (
+        <p class="waiting">
+          No sample is fitted yet. A fit starts when every scan of a sample is reduced or set aside, and needs three
+          distinct heating rates.
+        </p>
+      ) : (
+        <div class="number-tables">
+          {events.map(({ sample, of, numbers }) => (
+            <EventTable key={`${sample} ${numbers.event}`} sample={sample} isOnly={of === 1} numbers={numbers} />
+          ))}
+        </div>
+      )}
+      {events.length > 0 && (
+        <p class="small">
+          Value and 95 % interval. Methods that follow conversion are given as their mean over 0.1 to 0.9;
+          parameters.csv has every conversion, other intervals and the values without outliers.
+        </p>
+      )}
+    </section>
+  );
+}
+
+function EventTable(props: { sample: string; isOnly: boolean; numbers: EventNumbers }) {
+  const { sample, isOnly, numbers } = props;
+  const any = numbers.energies[0] ?? numbers.exponents[0];
+  return (
+    <table class="event-numbers">
+      <caption>
+        <strong>{sample}</strong>
+        {!isOnly && <span>event {numbers.event}</span>}
+        {any && (
+          <span>
+            {any.scan_count} scans, {formatRate(any.rate_min_K_per_s, units.value)} to{' '}
+            {formatRate(any.rate_max_K_per_s, units.value)}
+          </span>
+        )}
+      </caption>
+      <Quantity title="Activation energy E" unit="kJ/mol" rows={numbers.energies} />
+      <Quantity title="Avrami exponent n" unit="" rows={numbers.exponents} />
+      <Quantity title="Prefactor ln A" unit="A in 1/s" rows={numbers.prefactors} />
+      <Quantity title="Enthalpy" unit="J/g" rows={numbers.enthalpies} />
+    </table>
+  );
+}
+
+function Quantity({ title, unit, rows }: { title: string; unit: string; rows: readonly ParameterRow[] }) {
+  if (rows.length === 0) return null;
+  const scale = rows.length > 1 ? createIntervalScale(rows, PLOT_WIDTH) : undefined;
+  return (
+    <tbody>
+      <tr>
+        <th colSpan={3} scope="rowgroup">
+          {title}
+          {unit && <span class="unit"> {unit}</span>}
+        </th>
+      </tr>
+      {rows.map((row) => {
+        const { value, spread, method } = describeEstimate(row);
+        return (
+          <tr key={`${row.method} ${row.variant} ${row.temperature_K}`}>
+            <th scope="row">{method}</th>
+            <td class="plot">
+              {scale && <IntervalMark scale={scale} value={row.value} lower95={row.lower95} upper95={row.upper95} />}
+            </td>
+            <td class="number">
+              {value} <span class="spread">{spread}</span>
+            </td>
+          </tr>
+        );
+      })}
+      {scale && (
+        <tr>
+          <td />
+          <td class="plot">
+            <IntervalAxis scale={scale} />
+          </td>
+          <td />
+        </tr>
+      )}
+    </tbody>
+  );
+}

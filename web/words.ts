@@ -1,0 +1,61 @@
+import type { SampleState, ScanState } from '../schema/wire/states.ts';
+
+/** Names shown for the codes of the tables. A code without a name is shown as it is. */
+const METHOD_NAMES: Record<string, string> = {
+  kissinger: 'Kissinger',
+  augis_bennett: 'Augis–Bennett',
+  boswell: 'Boswell',
+  ozawa: 'Ozawa',
+  ozawa_flynn_wall: 'Ozawa–Flynn–Wall',
+  kissinger_akahira_sunose: 'Kissinger–Akahira–Sunose',
+  starink: 'Starink',
+  friedman: 'Friedman',
+  vyazovkin: 'Vyazovkin',
+  vyazovkin_linear: 'Vyazovkin, linear programme',
+  jmak: 'JMAK, all curves at once',
+  jmak_isothermal: 'JMAK, holds',
+  matusita_sakka: 'Matusita–Sakka',
+  sestak_berggren: 'Šesták–Berggren',
+  area: 'area under the event',
+  shared_law: 'one law for all instruments',
+  moynihan: 'Moynihan',
+};
+
+export const methodName = (method: string, variant = ''): string =>
+  `${METHOD_NAMES[method] ?? method.replaceAll('_', ' ')}${variant === 'peak' ? ', peaks' : ''}`;
+
+export const SAMPLE_STATE_NAMES: Record<SampleState, string> = {
+  waiting: 'waiting for scans',
+  queued: 'fit queued',
+  fitting: 'fitting now',
+  fitted: 'fitted',
+  insufficient: 'not enough to fit',
+  failed: 'fit failed',
+  stale: 'new scans to fit',
+};
+
+export const SCAN_STATE_NAMES: Record<ScanState, string> = {
+  received: 'waiting to be read',
+  read: 'read, waiting to be reduced',
+  reduced: 'reduced',
+  set_aside: 'set aside',
+  failed: 'failed',
+  unassigned: 'without a sample',
+  excluded: 'excluded by hand',
+  superseded: 'replaced by newer bytes',
+};
+
+/** Short names of gaps, for the margin of the map. */
+const GAP_NAMES: Record<string, string> = {
+  'few-rates': 'too few rates',
+  'narrow-span': 'narrow span of rates',
+  'decade-gap': 'empty decade',
+  'no-replicate': 'nothing repeated',
+  'instruments-not-bridged': 'instruments share no rate',
+  'no-standard': 'no standard',
+};
+
+export const gapName = (code: string): string => GAP_NAMES[code] ?? code.replaceAll('-', ' ');
+
+/** First letter as a capital, for sentences made of table texts. */
+export const sentence = (text: string): string => text.charAt(0).toUpperCase() + text.slice(1);
