@@ -9,6 +9,8 @@ export interface RecordingSettings {
   pinkNoise?: number;
   /** Peak to peak of a curved drift over the whole scan */
   drift: number;
+  /** Highest power of the drift: a parabola bends one way, a cubic by default turns back. */
+  driftOrder?: 2 | 3;
   /** Constant level */
   level?: number;
   /** The signal sits at this level (fraction above the lowest value) instead of passing it. */
@@ -39,7 +41,7 @@ export function recordScan(
   const count = timeS.length;
   const white = random.fork('white');
   const pink = settings.pinkNoise ? pinkNoise(count, random.fork('pink')) : undefined;
-  const drift = curvedDrift(timeS, random.fork('drift'));
+  const drift = curvedDrift(timeS, random.fork('drift'), settings.driftOrder);
   const heatFlowW = new Float64Array(count);
   for (let k = 0; k < count; k++) {
     const extra =
@@ -60,8 +62,8 @@ export function recordScan(
 }
 
 /** Random mixture of the first three Legendre polynomials over the scan, the third at half weight; peak to peak 1. */
-export function curvedDrift(timeS: Float64Array, random: Random): Float64Array {
-  const [linear, square, cubic] = [random.normal(), random.normal(), random.normal() / 2];
+export function curvedDrift(timeS: Float64Array, random: Random, order: 2 | 3 = 3): Float64Array {
+  const [linear, square, cubic] = [random.normal(), random.normal(), order === 3 ? random.normal() / 2 : 0];
   const [first, last] = [timeS[0], timeS[timeS.length - 1]];
   const out = timeS.map((t) => {
     const s = (2 * (t - first)) / (last - first) - 1;

@@ -98,7 +98,8 @@ export function writeScan(scan: RecordedScan, settings: WriteSettings): Uint8Arr
       'Index',
     ),
   );
-  if (dialect.unitPlace === 'row') lines.push(arrange(units, ''));
+  // Runs of spaces cannot hold an empty cell: a dash stands for the counter's missing unit.
+  if (dialect.unitPlace === 'row') lines.push(arrange(units, dialect.delimiter === 'spaces' ? '-' : ''));
   const count = scan.timeS.length;
   const rowsAt = lines.length;
   for (let k = 0; k < count; k++)
