@@ -1,0 +1,12 @@
+/** From the bytes of instrument files, sheets and archives to columns and rows in SI (METHODS 2). */
+export {
+  type ArchiveKind,
+  archiveKind,
+  assignmentFromPath,
+  isProgram,
+  pathProblem,
+  type SheetKind,
+  sheetKind,
+  unpackedPath,
+} from './paths.ts';
+export { createScanReader, readScan, type ScanReader } from './scan-reader.ts';
