@@ -9,6 +9,7 @@ interface Schema {
   default?: unknown;
   minimum?: number;
   maximum?: number;
+  maxLength?: number;
   $ref?: string;
   items?: Schema;
   properties?: Record<string, Schema>;
@@ -37,11 +38,16 @@ h3{margin:.6rem 0 .2rem;font-size:1.05rem}
 .method{display:inline-block;min-width:4.2rem;font-weight:700}
 table{border-collapse:collapse;margin:.4rem 0;width:100%}
 th,td{text-align:left;vertical-align:top;padding:.2rem .8rem .2rem 0;border-bottom:1px solid #8883}
+th:first-child,td:first-child{width:11rem}
+th:nth-child(2):not(:last-child),td:nth-child(2):not(:last-child){width:14rem}
 nav a{margin-right:1rem}
 `;
 
 const escapeText = (text: string): string =>
   text.replace(/[&<>"]/g, (c) => ({ '&': '&amp;', '<': '&lt;', '>': '&gt;', '"': '&quot;' })[c] as string);
+
+/** Text of the document, where `…` marks code. */
+const proseOf = (text: string): string => escapeText(text).replace(/`([^`]+)`/g, '<code>$1</code>');
 
 /** A schema in one short line. */
 function wordsOf(schema: Schema | undefined, depth = 0): string {
@@ -63,7 +69,8 @@ function wordsOf(schema: Schema | undefined, depth = 0): string {
     schema.minimum !== undefined && schema.maximum !== undefined ? `, ${schema.minimum} to ${schema.maximum}` : '';
   const fallback = schema.default === undefined ? '' : `, ${JSON.stringify(schema.default)} unless given`;
   const type = Array.isArray(schema.type) ? schema.type.join(' or ') : (schema.type ?? 'anything');
-  return escapeText(`${type}${schema.format ? ` (${schema.format})` : ''}${range}${fallback}`);
+  const length = schema.maxLength === undefined ? '' : `, at most ${schema.maxLength} characters`;
+  return escapeText(`${type}${schema.format ? ` (${schema.format})` : ''}${length}${range}${fallback}`);
 }
 
 const bodyRows = (content: Record<string, { schema?: Schema }> | undefined): string =>
@@ -75,7 +82,7 @@ function operationSection(path: string, method: string, operation: Operation): s
   const parameters = (operation.parameters ?? [])
     .map(
       (p) =>
-        `<tr><td><code>${escapeText(p.name)}</code></td><td>${escapeText(p.in)}${p.required ? ', required' : ''}</td><td>${wordsOf(p.schema)} ${escapeText(p.description ?? p.schema?.description ?? '')}</td></tr>`,
+        `<tr><td><code>${escapeText(p.name)}</code></td><td>${escapeText(p.in)}${p.required ? ', required' : ''}</td><td>${wordsOf(p.schema)}. ${proseOf(p.description ?? '')}</td></tr>`,
     )
     .join('');
   const answers = Object.entries(operation.responses)
@@ -86,7 +93,7 @@ function operationSection(path: string, method: string, operation: Operation): s
     )
     .join('');
   return `<section><h3><span class="method">${method.toUpperCase()}</span> <code>${escapeText(path)}</code></h3>
-<p>${escapeText(operation.summary ?? '')} ${escapeText(operation.description ?? '')}</p>
+<p>${proseOf(operation.summary ?? '')} ${proseOf(operation.description ?? '')}</p>
 ${parameters ? `<table><tr><th>parameter</th><th>in</th><th>takes</th></tr>${parameters}</table>` : ''}
 ${operation.requestBody ? `<p>Body: ${bodyRows(operation.requestBody.content)}</p>` : ''}
 <table><tr><th>answer</th><th></th><th></th></tr>${answers}</table></section>`;
@@ -103,7 +110,7 @@ export function renderReference(document: ApiDocument): string {
         `<section id="shape-${escapeText(name)}"><h3>${escapeText(name)}</h3><table>${Object.entries(s.properties ?? {})
           .map(
             ([field, f]) =>
-              `<tr><td><code>${escapeText(field)}</code></td><td>${wordsOf(f)}</td><td>${escapeText(f.description ?? '')}</td></tr>`,
+              `<tr><td><code>${escapeText(field)}</code></td><td>${wordsOf(f)}</td><td>${proseOf(f.description ?? '')}</td></tr>`,
           )
           .join('')}</table></section>`,
     )

@@ -47,7 +47,9 @@ function answersOf<T extends ResultTable>(table: T) {
     200: {
       description: 'A page of rows, or the whole table as CSV.',
       content: {
-        'application/json': { schema: listOf(ROW_SHAPES[table].openapi(`${table}Row`)) },
+        'application/json': {
+          schema: listOf(ROW_SHAPES[table].openapi(`${table[0].toUpperCase()}${table.slice(1)}Row`)),
+        },
         'text/csv': { schema: z.string() },
       },
     },

@@ -1,0 +1,78 @@
+import { mkdtemp, readFile, rm } from 'node:fs/promises';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { build } from 'esbuild';
+import { Miniflare } from 'miniflare';
+import { openRemoteDatabase } from '../../jobs/adapters/libsql-web.ts';
+import { migrateDatabase } from '../../jobs/adapters/node-ports.ts';
+import type { Database } from '../../jobs/ports/index.ts';
+import { startHranaBridge } from './hrana-bridge.ts';
+
+/** Why the serverless runtime cannot run on this machine, or undefined when it can. */
+export async function runtimeProblem(): Promise<string | undefined> {
+  const probe = new Miniflare({
+    modules: [{ type: 'ESModule', path: 'probe.js', contents: 'export default { fetch: () => new Response("up") }' }],
+    cf: false,
+  });
+  try {
+    await (await probe.dispatchFetch('http://localhost/')).text();
+    return undefined;
+  } catch (error) {
+    return String(error).split('\n')[0];
+  } finally {
+    await probe.dispose().catch(() => undefined);
+  }
+}
+
+export interface Runtime {
+  miniflare: Miniflare;
+  database: Database;
+  close(): Promise<void>;
+}
+
+/** The program of api/worker.ts as deployed, in the real runtime, over a bucket, a queue and a libSQL server of its own. */
+export async function startRuntime(): Promise<Runtime> {
+  const root = new URL('../..', import.meta.url);
+  const toml = await readFile(new URL('wrangler.toml', root), 'utf8');
+  const setting = (name: string) => new RegExp(`^${name} = "(.+)"$`, 'm').exec(toml)?.[1] as string;
+  const [queue, lost] = [setting('queue'), setting('dead_letter_queue')];
+  const bundle = await build({
+    entryPoints: [new URL(setting('main'), root).pathname],
+    bundle: true,
+    format: 'esm',
+    target: 'es2022',
+    write: false,
+    conditions: ['workerd', 'worker', 'browser'],
+    external: ['node:*', 'cloudflare:*'],
+  });
+  const folder = await mkdtemp(join(tmpdir(), 'ratespan-runtime-'));
+  const bridge = await startHranaBridge(join(folder, 'remote.db'), 'bridge-token');
+  const database = openRemoteDatabase(bridge.url, 'bridge-token');
+  await migrateDatabase(database);
+  const miniflare = new Miniflare({
+    host: '127.0.0.1',
+    port: 0,
+    cf: false,
+    modules: [{ type: 'ESModule', path: 'worker.js', contents: bundle.outputFiles[0].text }],
+    compatibilityDate: setting('compatibility_date'),
+    compatibilityFlags: ['nodejs_compat'],
+    bindings: { DB_URL: bridge.url, DB_TOKEN: 'bridge-token' },
+    r2Buckets: ['BLOBS'],
+    queueProducers: { JOBS: queue },
+    queueConsumers: {
+      [queue]: { maxBatchSize: 1, maxBatchTimeout: 0, maxRetries: 2, deadLetterQueue: lost },
+      [lost]: { maxBatchSize: 10, maxBatchTimeout: 0 },
+    },
+  });
+  await miniflare.ready;
+  return {
+    miniflare,
+    database,
+    close: async () => {
+      await miniflare.dispose();
+      database.close();
+      await bridge.close();
+      await rm(folder, { recursive: true, force: true });
+    },
+  };
+}

@@ -1,0 +1,92 @@
+import { sql } from 'drizzle-orm';
+import { afterAll, beforeAll, describe, expect, test, vi } from 'vitest';
+import type { Body } from '../api/harness.ts';
+import { smallCampaign, TRUE_ENERGY_KJ_PER_MOL } from '../api/small-campaign.ts';
+import { type Runtime, runtimeProblem, startRuntime } from './start-runtime.ts';
+
+const problem = await runtimeProblem();
+if (problem) console.warn(`skipped: the serverless runtime does not start on this machine (${problem})`);
+
+describe.skipIf(problem)('the serverless program in the real runtime', () => {
+  let runtime: Runtime;
+  let id: string;
+  const files = smallCampaign([5, 10, 20]);
+
+  const send = (method: string, path: string, body?: string | Uint8Array, headers: Record<string, string> = {}) =>
+    runtime.miniflare.dispatchFetch(`http://localhost:8787${path}`, { method, body, headers });
+  const get = async (path: string): Promise<Body> => (await send('GET', path)).json();
+  const upload = async (path: string, bytes: Uint8Array): Promise<Body> =>
+    (await send('PUT', `/v1/campaigns/${id}/files?path=${encodeURIComponent(path)}`, bytes)).json();
+  const settled = () =>
+    vi.waitFor(
+      async () => {
+        const status = await get(`/v1/campaigns/${id}/status`);
+        expect(status.settled).toBe(true);
+        return status;
+      },
+      { timeout: 20_000, interval: 100 },
+    );
+
+  beforeAll(async () => {
+    runtime = await startRuntime();
+  }, 20_000);
+  afterAll(() => runtime?.close());
+
+  test('is ready', async () => {
+    expect(await get('/readyz')).toEqual({ status: 'ready' });
+  });
+
+  test('files go in, parameters come out', { timeout: 30_000 }, async () => {
+    const made = await send('POST', '/v1/campaigns', '{"name":"serverless"}', { 'content-type': 'application/json' });
+    expect(made.status).toBe(201);
+    id = ((await made.json()) as Body).id;
+    for (const [path, bytes] of files) expect((await upload(path, bytes)).outcome).toMatch(/^(sheet|accepted)$/);
+    const status = await settled();
+    expect(status.scans.reduced).toBe(3);
+    expect(status.samples).toMatchObject([{ sample: 'glass', state: 'fitted' }]);
+    const { items } = await get(`/v1/campaigns/${id}/parameters?method=kissinger&quantity=activation_energy`);
+    const headline = items.find((r: Body) => r.variant === '' && r.interval === 'monte_carlo');
+    // Truth known from the making of the data.
+    expect(Math.abs(headline.value / TRUE_ENERGY_KJ_PER_MOL - 1)).toBeLessThan(0.02);
+  });
+
+  test('originals come back from the bucket unchanged, and the same bytes are known', async () => {
+    const { items } = await get(`/v1/campaigns/${id}/scans`);
+    const { samples } = await get(`/v1/campaigns/${id}/status`);
+    const { scans } = await get(`/v1/samples/${samples[0].id}`);
+    expect(scans.map((s: Body) => s.file).sort()).toEqual(items.map((r: Body) => r.file).sort());
+    for (const { id: scanId, file } of scans) {
+      const original = new Uint8Array(await (await send('GET', `/v1/scans/${scanId}/original`)).arrayBuffer());
+      expect(original).toEqual(files.get(file));
+      expect((await upload(file, original)).outcome).toBe('known');
+    }
+  });
+
+  test('the sweep finds a job whose message was lost', { timeout: 20_000 }, async () => {
+    await settled();
+    // As if the row had been written and the message never sent.
+    await runtime.database.write((db) =>
+      db.run(sql`update jobs set state = 'queued', attempts = 0, finished_at = null, next_try_at = 0, woken = 0
+        where step = 'plan-campaign' and campaign_id = ${id}`),
+    );
+    expect((await get(`/v1/campaigns/${id}/status`)).settled).toBe(false);
+    const worker = await runtime.miniflare.getWorker();
+    expect((await worker.scheduled({ cron: '*/5 * * * *' })).outcome).toBe('ok');
+    await settled();
+  });
+
+  test('a message of a job that is not there, and one doubled, do no harm', async () => {
+    const worker = await runtime.miniflare.getWorker();
+    const { items } = await get('/v1/jobs?state=done&limit=1');
+    const wake = (jobId: string, n: number) => ({ id: `m${n}`, timestamp: new Date(), attempts: 1, body: { jobId } });
+    const result = await worker.queue('ratespan-jobs', [wake('j_nobody', 1), wake(items[0].id, 2)]);
+    expect(result.outcome).toBe('ok');
+    expect(result.explicitAcks).toEqual(['m1', 'm2']);
+  });
+
+  test('a public address gets nothing', async () => {
+    const response = await runtime.miniflare.dispatchFetch('https://ratespan.example/v1/campaigns');
+    expect(response.status).toBe(403);
+    expect(((await response.json()) as Body).type).toBe('/v1/reference#host-refused');
+  });
+});
