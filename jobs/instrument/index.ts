@@ -10,3 +10,4 @@ export {
   unpackedPath,
 } from './paths.ts';
 export { createScanReader, readScan, type ScanReader } from './scan-reader.ts';
+export { readInstrumentsSheet, readSamplesSheet, readScansSheet, type SheetRows } from './sheets.ts';

@@ -5,7 +5,7 @@ import { clippedRuns } from './clipping.ts';
 import type { ColumnsBuffer } from './columns-buffer.ts';
 import type { ScanHeader } from './header.ts';
 import { addToTally, type BadLine, createTally, type LineTally, type OddRows } from './odd-rows.ts';
-import type { Unit } from './units.ts';
+import { toSi, type Unit } from './units.ts';
 
 /** Share of bad rows that may be dropped (METHODS 2). */
 export const BAD_ROW_SHARE = 0.001;
@@ -31,7 +31,7 @@ export function finishScan(raw: RawRows): ReadOutcome {
   const total = columns.rows + odd.bad.count;
   if (columns.rows === 0) return refuse(nothingUnderHeader(raw));
   header.columns.forEach((column, i) => {
-    toSi([columns.time, columns.temperature, columns.heatFlow][i], columns.rows, column.unit);
+    columnToSi([columns.time, columns.temperature, columns.heatFlow][i], columns.rows, column.unit);
   });
   const clipped = clippedRuns(columns.heatFlow.subarray(0, columns.rows));
   const clippedLines = clipped.map((run) => ({
@@ -101,9 +101,9 @@ export function finishScan(raw: RawRows): ReadOutcome {
   return { ok: true, scan };
 }
 
-function toSi(column: Float64Array, rows: number, { offset, scale }: Unit): void {
-  if (offset === 0 && scale === 1) return;
-  for (let i = 0; i < rows; i++) column[i] = (column[i] + offset) * scale;
+function columnToSi(column: Float64Array, rows: number, unit: Unit): void {
+  if (unit.offset === 0 && unit.scale === 1 && unit.per === 1) return;
+  for (let i = 0; i < rows; i++) column[i] = toSi(column[i], unit);
 }
 
 /**

@@ -1,5 +1,5 @@
 /**
- * Units as instruments and sheets write them, and their way to SI: valueSI = (value + offset) · scale.
+ * Units as instruments and sheets write them, and their way to SI: valueSI = (value + offset) · scale / per.
  * A spelling is first reduced to a canonical form (`mW mg⁻¹` → `mW/mg`, `J/(s g)` → `J/g s`); one that is not in the table is not known, and nothing is guessed.
  * Factors: SI brochure (9th edition, BIPM 2019), section 2 and table 8; degree Fahrenheit T/K = (t/°F + 459.67) · 5/9 (NIST SP 811, B.8).
  */
@@ -24,6 +24,8 @@ export interface Unit {
   symbol: string;
   offset: number;
   scale: number;
+  /** Where a factor below 1 is one over a whole number, that number: 1.25 mg is 1.25/1e6 kg, rounded once. */
+  per: number;
   /** SI unit of the converted value: s, K, W, W/kg, V, K/s, kg, … */
   si: string;
 }
@@ -119,7 +121,19 @@ export function unitOf(quantity: Quantity, text: string): Unit | undefined {
   const table = UNITS[quantity];
   if (symbol === '' || !Object.hasOwn(table, symbol)) return undefined;
   const [scale, si, offset = 0] = table[symbol];
-  return { symbol: symbol.replace(/^u|(?<=[/ ])u/g, 'µ'), offset, scale, si };
+  const inverse = Math.round(1 / scale);
+  const whole = scale < 1 && Math.abs(inverse * scale - 1) < 1e-12;
+  return {
+    symbol: symbol.replace(/^u|(?<=[/ ])u/g, 'µ'),
+    offset,
+    scale: whole ? 1 : scale,
+    per: whole ? inverse : 1,
+    si,
+  };
+}
+
+export function toSi(value: number, { offset, scale, per }: Unit): number {
+  return ((value + offset) * scale) / per;
 }
 
 /** `J/(s·g)`, `J g⁻¹ s⁻¹`, `J per g s`, `J/g/s` → `J/g s`: numerators, then denominators, each in alphabetical order; empty when a word is unknown. */
