@@ -16,7 +16,5 @@ export const temperatureIntegral = (x: number): number => (temperatureIntegralFa
  * 86 x (88 in a widely copied misprint): for inner loops. Relative error under 1e−6 for x ≥ 10 and 1e−7 for x ≥ 15.
  */
 export function temperatureIntegralFactorFast(x: number): number {
-  return (
-    (x * (x * (x * (x + 18) + 86) + 96)) / (x * (x * (x * (x + 20) + 120) + 240) + 120)
-  );
+  return (x * (x * (x * (x + 18) + 86) + 96)) / (x * (x * (x * (x + 20) + 120) + 240) + 120);
 }

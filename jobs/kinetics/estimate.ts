@@ -1,0 +1,197 @@
+import { GAS_CONSTANT } from '../../schema/wire/units.ts';
+import { type ArrheniusIntegral, addArrheniusIntegral, addStretch } from '../laws/arrhenius-integral.ts';
+import { type JmakEstimate, JmakFit } from './avrami/non-isothermal.ts';
+import { CONVERSION_COUNT, type EventColumns, type EventData, GRID_INDEX } from './event-data.ts';
+import { fitFriedman } from './isoconversional/friedman.ts';
+import { fitVyazovkin } from './isoconversional/vyazovkin.ts';
+import {
+  augisBennettExponent,
+  BOSWELL,
+  fitAugisBennett,
+  fitEnergyLine,
+  fitOzawaFlynnWall,
+  KISSINGER,
+  kissingerLnPrefactor,
+  STARINK,
+} from './peak-methods.ts';
+
+/** Every number of one event, estimate or draw. Energies J/mol, ln A of 1/s; arrays over the 19 conversions. */
+export interface Estimates {
+  kissinger: number;
+  kissingerLnPrefactor: number;
+  boswell: number;
+  ozawaFlynnWall: number;
+  augisBennett: number;
+  augisBennettExponent: number;
+  friedman: Float64Array;
+  kissingerAkahiraSunose: Float64Array;
+  starink: Float64Array;
+  ozawaFlynnWallCurve: Float64Array;
+  vyazovkin: Float64Array;
+  vyazovkinConverged: boolean;
+  jmak?: JmakEstimate;
+}
+
+/**
+ * Integrals over the temperature programme. A Monte Carlo draw moves the temperatures of a scan along its ramp, so there T(t) is the ramp
+ * itself and each integral has a closed form; the estimate uses the programme as measured (see `measuredIntegrals`).
+ */
+export interface ProgrammeIntegrals {
+  /** over the conversion step that ends at conversion k, for the scan at `row` of the curve scans */
+  step(energy: number, x0: number, k: number, out: ArrheniusIntegral[]): void;
+  /** from the start of the programme to each conversion, scan-major */
+  cumulative(energy: number, x0: number, out: ArrheniusIntegral[]): void;
+}
+
+const reset = (o: ArrheniusIntegral): void => {
+  o.value = 0;
+  o.byEnergy = 0;
+  o.byEnergy2 = 0;
+};
+
+/** Integrals on the programmes as measured: every row from the start of the programme on. */
+export function measuredIntegrals(data: EventData, curves: ArrayLike<number>): ProgrammeIntegrals {
+  const programme = (j: number) => {
+    const p = data.programmes[curves[j]];
+    if (!p) throw new RangeError(`scan ${data.scans[curves[j]].file} has no curve`);
+    return p;
+  };
+  const add = (j: number, fromRow: number, toRow: number, energy: number, x0: number, out: ArrheniusIntegral) => {
+    const p = programme(j);
+    addArrheniusIntegral(p.timeS, p.temperatureK, fromRow, toRow, energy, x0, out);
+  };
+  const row = (j: number, k: number) => programme(j).gridFrom + GRID_INDEX[k];
+  return {
+    step(energy, x0, k, out) {
+      for (let j = 0; j < curves.length; j++) {
+        reset(out[j]);
+        add(j, k === 0 ? 0 : row(j, k - 1), row(j, k), energy, x0, out[j]);
+      }
+    },
+    cumulative(energy, x0, out) {
+      for (let j = 0; j < curves.length; j++) {
+        for (let k = 0; k < CONVERSION_COUNT; k++) {
+          const o = out[j * CONVERSION_COUNT + k];
+          if (k === 0) reset(o);
+          else Object.assign(o, out[j * CONVERSION_COUNT + k - 1]);
+          add(j, k === 0 ? 0 : row(j, k - 1), row(j, k), energy, x0, o);
+        }
+      }
+    },
+  };
+}
+
+/** Integrals on ideal ramps through the columns' temperatures. @param curves indices of the scans that have curves */
+export function rampIntegrals(columns: EventColumns, curves: ArrayLike<number>): ProgrammeIntegrals {
+  const { temperatureK: T, rate, rampStartK } = columns;
+  return {
+    step(energy, x0, k, out) {
+      const c = energy / GAS_CONSTANT;
+      for (let j = 0; j < curves.length; j++) {
+        const i = curves[j];
+        const at = i * CONVERSION_COUNT + k;
+        const from = k === 0 ? Math.min(rampStartK[i], T[at] - 1) : T[at - 1];
+        reset(out[j]);
+        addStretch(from, T[at], (T[at] - from) / rate[i], c, c * x0, out[j]);
+      }
+    },
+    cumulative(energy, x0, out) {
+      const c = energy / GAS_CONSTANT;
+      for (let j = 0; j < curves.length; j++) {
+        const i = curves[j];
+        const from = Math.min(rampStartK[i], T[i * CONVERSION_COUNT] - 1);
+        for (let k = 0; k < CONVERSION_COUNT; k++) {
+          const to = T[i * CONVERSION_COUNT + k];
+          const o = out[j * CONVERSION_COUNT + k];
+          reset(o);
+          addStretch(from, to, (to - from) / rate[i], c, c * x0, o);
+        }
+      }
+    },
+  };
+}
+
+/** What does not change between draws, made once an event. */
+export interface EstimateSettings {
+  /** scans with curves */
+  curves: Uint16Array;
+  /** weights of all scans, and of the curve scans */
+  weights: Float64Array;
+  curveWeights: Float64Array;
+  /** Augis–Bennett's energy applies */
+  augisBennett: boolean;
+  /** curve methods apply (three distinct rates among the curve scans) */
+  curveMethods: boolean;
+  /** 1/K, reference inverse temperature of JMAK */
+  x0: number;
+}
+
+/**
+ * Makes the function that computes all peak, isoconversional and JMAK estimates from the columns as they stand when it is called: buffers
+ * are made once and the columns may be overwritten between calls (Monte Carlo).
+ * The function's argument: parameters of a neighbouring JMAK fit to start from; without it JMAK is fitted from a rough start.
+ */
+export function createEstimator(
+  d: EventColumns,
+  s: EstimateSettings,
+  integrals: ProgrammeIntegrals,
+): (warmJmak?: Float64Array) => Estimates {
+  const m = s.curves.length;
+  const rate = new Float64Array(m);
+  const T = new Float64Array(m);
+  const lnRate = new Float64Array(m);
+  const work: ArrheniusIntegral[] = Array.from({ length: m }, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
+  for (let j = 0; j < m; j++) rate[j] = d.rate[s.curves[j]];
+  const jmak = new JmakFit(m, s.curveWeights, s.x0, (e, o) => integrals.cumulative(e, s.x0, o));
+
+  return (warmJmak) => {
+    const out = peakEstimates(d, s);
+    if (!s.curveMethods) return out;
+    for (let k = 0; k < CONVERSION_COUNT; k++) {
+      let inverse = 0;
+      for (let j = 0; j < m; j++) {
+        const at = s.curves[j] * CONVERSION_COUNT + k;
+        T[j] = d.temperatureK[at];
+        lnRate[j] = d.lnRate[at];
+        inverse += 1 / T[j] / m;
+      }
+      const kas = fitEnergyLine(rate, T, KISSINGER.power, KISSINGER.factor, s.curveWeights).energy;
+      out.kissingerAkahiraSunose[k] = kas;
+      out.friedman[k] = fitFriedman(lnRate, T, s.curveWeights).energy;
+      out.starink[k] = fitEnergyLine(rate, T, STARINK.power, STARINK.factor, s.curveWeights).energy;
+      out.ozawaFlynnWallCurve[k] = fitOzawaFlynnWall(rate, T, s.curveWeights).energy;
+      const v = fitVyazovkin((e, o) => integrals.step(e, inverse, k, o), s.curveWeights, kas, work);
+      out.vyazovkin[k] = v.energy;
+      out.vyazovkinConverged &&= v.converged;
+    }
+    // ln K at x0 from Kissinger's peak condition ln β = ln K + ln(R T²/E), n from the width.
+    out.jmak = warmJmak
+      ? jmak.fitFrom(warmJmak)
+      : jmak.fitFromScratch(
+          Float64Array.of(
+            out.kissinger,
+            out.kissingerLnPrefactor - (out.kissinger * s.x0) / GAS_CONSTANT,
+            Math.min(6, Math.max(0.5, out.augisBennettExponent)),
+          ),
+        );
+    return out;
+  };
+}
+
+function peakEstimates(d: EventColumns, s: EstimateSettings): Estimates {
+  const kissinger = fitEnergyLine(d.rate, d.peakK, KISSINGER.power, KISSINGER.factor, s.weights);
+  return {
+    kissinger: kissinger.energy,
+    kissingerLnPrefactor: kissingerLnPrefactor(kissinger),
+    boswell: fitEnergyLine(d.rate, d.peakK, BOSWELL.power, BOSWELL.factor, s.weights).energy,
+    ozawaFlynnWall: fitOzawaFlynnWall(d.rate, d.peakK, s.weights).energy,
+    augisBennett: s.augisBennett ? fitAugisBennett(d.rate, d.peakK, d.rampStartK, s.weights).energy : Number.NaN,
+    augisBennettExponent: augisBennettExponent(d.peakK, d.widthK, kissinger.energy, s.weights),
+    friedman: new Float64Array(CONVERSION_COUNT),
+    kissingerAkahiraSunose: new Float64Array(CONVERSION_COUNT),
+    starink: new Float64Array(CONVERSION_COUNT),
+    ozawaFlynnWallCurve: new Float64Array(CONVERSION_COUNT),
+    vyazovkin: new Float64Array(CONVERSION_COUNT),
+    vyazovkinConverged: true,
+  };
+}
