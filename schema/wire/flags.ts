@@ -57,6 +57,7 @@ export const FLAG_CODES = {
   'file-missing': ['warn', 'the sheet names a file that did not come'],
   'file-unassigned': ['warn', 'a file came that no sheet row or folder names'],
   'sheet-damaged': ['stop', 'a sheet or one of its rows cannot be read'],
+  'sheet-unused': ['note', 'a sheet came that no step of this version reads'],
   'sheet-column-unused': ['note', 'a column of a sheet has a header that no sheet column has'],
   'archive-member-skipped': ['note', 'an entry of an archive that holds no data was left out'],
   'same-bytes': ['note', 'the same bytes came again under another name and count once'],
