@@ -1,6 +1,6 @@
 import type { SampleState, ScanState } from '../schema/wire/states.ts';
 
-/** Names shown for the codes of the tables. A code without a name is shown as it is. */
+/** Names of methods, in the order in which they are listed. A code without a name is shown as it is, last. */
 const METHOD_NAMES: Record<string, string> = {
   kissinger: 'Kissinger',
   augis_bennett: 'Augis–Bennett',
@@ -12,7 +12,7 @@ const METHOD_NAMES: Record<string, string> = {
   friedman: 'Friedman',
   vyazovkin: 'Vyazovkin',
   vyazovkin_linear: 'Vyazovkin, linear programme',
-  jmak: 'JMAK, all curves at once',
+  jmak: 'JMAK',
   jmak_isothermal: 'JMAK, holds',
   matusita_sakka: 'Matusita–Sakka',
   sestak_berggren: 'Šesták–Berggren',
@@ -23,6 +23,12 @@ const METHOD_NAMES: Record<string, string> = {
 
 export const methodName = (method: string, variant = ''): string =>
   `${METHOD_NAMES[method] ?? method.replaceAll('_', ' ')}${variant === 'peak' ? ', peaks' : ''}`;
+
+const METHOD_ORDER = Object.keys(METHOD_NAMES);
+
+/** Place of a method in a list. */
+export const methodRank = (method: string): number =>
+  METHOD_ORDER.includes(method) ? METHOD_ORDER.indexOf(method) : METHOD_ORDER.length;
 
 export const SAMPLE_STATE_NAMES: Record<SampleState, string> = {
   waiting: 'waiting for scans',
@@ -57,5 +63,6 @@ const GAP_NAMES: Record<string, string> = {
 
 export const gapName = (code: string): string => GAP_NAMES[code] ?? code.replaceAll('-', ' ');
 
-/** First letter as a capital, for sentences made of table texts. */
-export const sentence = (text: string): string => text.charAt(0).toUpperCase() + text.slice(1);
+/** First letter as a capital and no line break before a unit, for sentences made of table texts. */
+export const sentence = (text: string): string =>
+  (text.charAt(0).toUpperCase() + text.slice(1)).replace(/(\d) (?=%|K\b|s\b)/g, '$1\u00a0');

@@ -12,13 +12,13 @@ import type { MarkLook } from '../model/ledger.ts';
 
 /** Areas chosen so that the shapes look equally heavy, px². */
 const SHAPES = [
-  symbol(symbolCircle, 82)(),
-  symbol(symbolTriangle, 74)(),
-  symbol(symbolSquare, 80)(),
-  symbol(symbolDiamond, 70)(),
-  symbol(symbolCross, 74)(),
-  symbol(symbolStar, 66)(),
-  symbol(symbolWye, 70)(),
+  symbol(symbolCircle, 112)(),
+  symbol(symbolTriangle, 98)(),
+  symbol(symbolSquare, 104)(),
+  symbol(symbolDiamond, 92)(),
+  symbol(symbolCross, 96)(),
+  symbol(symbolStar, 88)(),
+  symbol(symbolWye, 92)(),
 ];
 const HUES = 6;
 
@@ -28,7 +28,7 @@ export function InstrumentMark(props: { instrument: number; look: MarkLook; x: n
   return (
     <g class={`mark hue-${instrument % HUES} look-${look}`} transform={`translate(${x.toFixed(1)} ${y.toFixed(1)})`}>
       <path class="mark-shape" d={SHAPES[instrument % SHAPES.length] ?? undefined} />
-      {look === 'struck' && <path class="mark-strike" d="M-6.500 6.500 6.500-6.500" />}
+      {look === 'struck' && <path class="mark-strike" d="M-7.500 7.500 7.500-7.500" />}
     </g>
   );
 }
@@ -36,7 +36,7 @@ export function InstrumentMark(props: { instrument: number; look: MarkLook; x: n
 /** The same mark beside words. */
 export function InstrumentKey({ instrument, look = 'full' }: { instrument: number; look?: MarkLook }) {
   return (
-    <svg class="key" width="18" height="18" viewBox="-9 -9 18 18" aria-hidden="true">
+    <svg class="key" width="18" height="18" viewBox="-10 -10 20 20" aria-hidden="true">
       <InstrumentMark instrument={instrument} look={look} x={0} y={0} />
     </svg>
   );

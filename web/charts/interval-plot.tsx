@@ -8,7 +8,9 @@ export interface IntervalScale {
   ticks: { x: number; label: string }[];
 }
 
-const PADDING = 8;
+const PADDING = 16;
+/** Least distance between two tick labels, px. */
+const LABEL_DISTANCE = 38;
 
 /** Covers every value; intervals too, unless one is so wide that it would squeeze the rest (then it runs out of the plot). */
 export function createIntervalScale(
@@ -24,7 +26,11 @@ export function createIntervalScale(
   const low = Math.min(...rows.map((row, i) => row.value - Math.min(halves[i], reach)));
   const high = Math.max(...rows.map((row, i) => row.value + Math.min(halves[i], reach)));
   const scale = scaleLinear([low, high], [PADDING, width - PADDING]);
-  const ticks = scale.ticks(3);
+  let ticks: number[] = [];
+  let count = 4;
+  // Fewer ticks until their labels have room.
+  do ticks = scale.ticks(count);
+  while (count-- > 1 && ticks.length > 1 && scale(ticks[1]) - scale(ticks[0]) < LABEL_DISTANCE);
   const step = ticks.length > 1 ? ticks[1] - ticks[0] : 1;
   const decimals = Math.max(0, -Math.floor(Math.log10(step) + 1e-9));
   return { width, x: scale, ticks: ticks.map((value) => ({ x: scale(value), label: formatFixed(value, decimals) })) };

@@ -19,6 +19,8 @@ export const UNRATED_WIDTH = 52;
 const PADDING = 14;
 /** Least distance between two axis labels, px. */
 const LABEL_DISTANCE = 42;
+/** Narrowest decade that is ruled within, px. */
+const RULED_DECADE = 56;
 
 export function createRateScale(ratesKPerS: readonly (number | null)[], width: number, units: Units): RateScale {
   const rated = ratesKPerS.filter((rate): rate is number => rate !== null);
@@ -37,7 +39,7 @@ export function createRateScale(ratesKPerS: readonly (number | null)[], width: n
   const decades = [];
   const steps = [];
   for (let exponent = Math.floor(low); exponent <= high; exponent++) {
-    for (let factor = 2; factor < 10; factor++) {
+    for (let factor = 2; factor < 10 && decadeWidth >= RULED_DECADE; factor++) {
       const value = factor * 10 ** exponent;
       if (value > 10 ** low && value < 10 ** high) steps.push(scale(value));
     }

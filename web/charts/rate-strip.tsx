@@ -1,33 +1,48 @@
 import type { LedgerRow } from '../model/ledger.ts';
 import { InstrumentMark } from './instrument-mark.tsx';
 import type { RateScale } from './rate-scale.ts';
-import { MARK_SIZE, type StripLayout } from './strip-layout.ts';
+import type { StripLayout } from './strip-layout.ts';
 
-/** Ground of one sample's strip: logarithmic ruling, the line that marks sit on, empty decades. */
+/** Generous width of one letter of a label, px. */
+const LABEL_WIDTH = 7;
+
+/** Logarithmic ruling as tall as the figure it lies under. */
+export function RateRuling({ scale }: { scale: RateScale }) {
+  const ruled = (xs: readonly number[], kind: string) =>
+    xs.map((x) => <line key={x} class={kind} x1={x.toFixed(1)} x2={x.toFixed(1)} y1="0" y2="100%" />);
+  return (
+    <>
+      {ruled(scale.steps, 'grid-step')}
+      {ruled(
+        scale.decades.map((decade) => decade.x),
+        'grid-decade',
+      )}
+      {scale.start > 0 && ruled([scale.start], 'grid-edge')}
+    </>
+  );
+}
+
+/** Ground of one sample's strip: the line that marks sit on, and its empty decades. */
 export function StripGround({ scale, layout, row }: { scale: RateScale; layout: StripLayout; row: LedgerRow }) {
   const { height, railY } = layout;
-  const ruling = (xs: readonly number[]): string => xs.map((x) => `M${x.toFixed(1)} 0V${height}`).join('');
   return (
-    <g>
-      <path class="grid-step" d={ruling(scale.steps)} />
-      <path class="grid-decade" d={ruling(scale.decades.map((decade) => decade.x))} />
-      {scale.start > 0 && <path class="grid-edge" d={`M${scale.start} 0V${height}`} />}
+    <>
       <path class="rail" d={`M${scale.start} ${railY}H${scale.width}`} />
-      {row.emptyDecades.map(({ lowKPerS, highKPerS }) => {
+      {row.emptySpans.map(({ lowKPerS, highKPerS, decades }) => {
         const left = scale.x(lowKPerS);
         const width = scale.x(highKPerS) - left;
+        const words = [decades === 1 ? 'empty decade' : `${decades} empty decades`, 'empty', ''];
+        const label = words.find((text) => text.length * LABEL_WIDTH < width - 8);
         return (
           <g key={lowKPerS}>
             <rect class="empty-decade" x={left + 1} width={width - 2} y={3} height={height - 6} rx={2} />
-            {width > 46 && (
-              <text class="empty-decade-label" x={left + width / 2} y={height / 2 + 4} text-anchor="middle">
-                empty
-              </text>
-            )}
+            <text class="empty-decade-label" x={left + width / 2} y={height / 2 + 4} text-anchor="middle">
+              {label}
+            </text>
           </g>
         );
       })}
-    </g>
+    </>
   );
 }
 
@@ -46,10 +61,7 @@ export function StripMarks(props: {
         <g key={mark.key} id={`${idPrefix}-${i}`} role="option" aria-selected="false" aria-label={describe(mark)}>
           <InstrumentMark instrument={instruments.indexOf(mark.instrument)} look={mark.look} x={x} y={y} />
           {mark.concern && (
-            <path
-              class={`mark-concern tone-${mark.concern}`}
-              d={`M${(x - MARK_SIZE / 2).toFixed(1)} ${y + MARK_SIZE / 2 + 2.5}h${MARK_SIZE}`}
-            />
+            <circle class={`mark-concern tone-${mark.concern}`} cx={(x + 6.5).toFixed(1)} cy={y - 5.5} r="3.5" />
           )}
         </g>
       ))}

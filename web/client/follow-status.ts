@@ -7,7 +7,8 @@ import { asProblem, type Problem } from './request.ts';
 export type Link = 'connecting' | 'live' | 'polling' | 'offline';
 
 export interface StatusListener {
-  onStatus(status: CampaignStatus): void;
+  /** `isNews`: the server says that something changed; an answer to polling may be the same again. */
+  onStatus(status: CampaignStatus, isNews: boolean): void;
   onLink(link: Link, problem?: Problem): void;
 }
 
@@ -30,7 +31,7 @@ export async function followStatus(id: string, listener: StatusListener, signal:
       const response = await openStatusStream(id, lastEventId, signal);
       const parse = createEventParser((event) => {
         lastEventId = event.id ?? lastEventId;
-        listener.onStatus(JSON.parse(event.data));
+        listener.onStatus(JSON.parse(event.data), true);
       });
       listener.onLink('live');
       const reader = (response.body as ReadableStream<Uint8Array>).getReader();
@@ -43,7 +44,7 @@ export async function followStatus(id: string, listener: StatusListener, signal:
     } catch {
       for (let i = 0; i < POLLS_PER_TRY && !signal.aborted; i++) {
         try {
-          listener.onStatus(await loadStatus(id, signal));
+          listener.onStatus(await loadStatus(id, signal), false);
           listener.onLink('polling');
         } catch (error) {
           if (signal.aborted) return;

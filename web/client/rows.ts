@@ -44,6 +44,7 @@ export type FlagRow = Row<
 export interface Campaign {
   id: string;
   name: string;
+  created_at: string;
 }
 
 export interface FileOutcome {

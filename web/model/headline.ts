@@ -1,4 +1,5 @@
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
+import { methodRank } from '../words.ts';
 
 /** The numbers of one event of a sample that stand for it. */
 export interface EventNumbers {
@@ -31,7 +32,8 @@ export function consolidate(rows: readonly ParameterRow[]): ParameterRow[] {
 /** Numbers of each event of each sample, events in order. */
 export function numbersBySample(rows: readonly ParameterRow[]): Map<string, EventNumbers[]> {
   const samples = new Map<string, EventNumbers[]>();
-  for (const row of consolidate(rows)) {
+  const consolidated = consolidate(rows).sort((a, b) => methodRank(a.method) - methodRank(b.method));
+  for (const row of consolidated) {
     let events = samples.get(row.sample);
     if (!events) samples.set(row.sample, (events = []));
     let numbers = events.find((e) => e.event === row.event);

@@ -30,8 +30,7 @@ export interface LedgerRow {
   reason?: string;
   marks: ScanMark[];
   gaps: GapRow[];
-  /** Empty decades between filled ones, K/s */
-  emptyDecades: { lowKPerS: number; highKPerS: number }[];
+  emptySpans: EmptySpan[];
   numbers: EventNumbers[];
 }
 
@@ -67,15 +66,23 @@ function markOf(key: string, rows: ScanRow[], look: MarkLook): ScanMark {
   };
 }
 
-/** Decades without a scan between the lowest and the highest filled one of a sample. */
-export function emptyDecades(rows: readonly CoverageRow[]): { lowKPerS: number; highKPerS: number }[] {
-  const filled = rows.filter((r) => r.scan_count > 0).map((r) => Math.round(Math.log10(r.decade_low_K_per_s)));
-  if (filled.length === 0) return [];
-  const empty = [];
-  for (let decade = Math.min(...filled) + 1; decade < Math.max(...filled); decade++) {
-    if (!filled.includes(decade)) empty.push({ lowKPerS: 10 ** decade, highKPerS: 10 ** (decade + 1) });
-  }
-  return empty;
+/** A run of decades without a scan, K/s. */
+export interface EmptySpan {
+  lowKPerS: number;
+  highKPerS: number;
+  decades: number;
+}
+
+/** Runs of empty decades between the lowest and the highest filled one of a sample. */
+export function emptySpans(rows: readonly CoverageRow[]): EmptySpan[] {
+  const filled = rows
+    .filter((row) => row.scan_count > 0)
+    .map((row) => Math.round(Math.log10(row.decade_low_K_per_s)))
+    .sort((a, b) => a - b);
+  return filled.flatMap((decade, i) => {
+    const decades = (filled[i + 1] ?? decade) - decade - 1;
+    return decades > 0 ? [{ lowKPerS: 10 ** (decade + 1), highKPerS: 10 ** (decade + 1 + decades), decades }] : [];
+  });
 }
 
 export interface LedgerTables {
@@ -91,7 +98,7 @@ export function buildLedger(tables: LedgerTables, status: CampaignStatus | undef
   const rowOf = (sample: string, role: Role): LedgerRow => {
     const key = `${role}\u0000${sample}`;
     let row = rows.get(key);
-    if (!row) rows.set(key, (row = { sample, role, marks: [], gaps: [], emptyDecades: [], numbers: [] }));
+    if (!row) rows.set(key, (row = { sample, role, marks: [], gaps: [], emptySpans: [], numbers: [] }));
     return row;
   };
   for (const { sample, state, reason } of status?.samples ?? [])
@@ -115,7 +122,7 @@ export function buildLedger(tables: LedgerTables, status: CampaignStatus | undef
     row.marks.sort((a, b) => (a.rateKPerS ?? 0) - (b.rateKPerS ?? 0) || (a.instrument < b.instrument ? -1 : 1));
     if (row.role !== 'sample') continue;
     row.gaps = tables.gaps.filter((gap) => gap.sample === row.sample);
-    row.emptyDecades = emptyDecades(tables.coverage.filter((c) => c.sample === row.sample));
+    row.emptySpans = emptySpans(tables.coverage.filter((c) => c.sample === row.sample));
     row.numbers = numbers.get(row.sample) ?? [];
   }
   return [...rows.values()].sort((a, b) => Number(a.role !== 'sample') - Number(b.role !== 'sample'));

@@ -85,11 +85,11 @@ export function openCampaign(id: string): LiveCampaign {
     await followStatus(
       id,
       {
-        onStatus(status) {
+        onStatus(status, isNews) {
           const { queued, running, failed } = status.jobs;
           const text = JSON.stringify([status.scans, status.samples, status.settled, queued, running, failed]);
           live.status.value = status;
-          if (text !== seen || live.problem.value) void loadTables();
+          if (isNews || text !== seen || live.problem.value) void loadTables();
           seen = text;
         },
         onLink(link, problem) {

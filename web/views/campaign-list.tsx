@@ -60,7 +60,8 @@ export function CampaignListView() {
     document.title = 'Campaigns – ratespan';
     const abort = new AbortController();
     const load = async (): Promise<void> => {
-      campaigns.value = await listCampaigns(abort.signal);
+      const items = await listCampaigns(abort.signal);
+      campaigns.value = items.sort((a, b) => (a.created_at < b.created_at ? 1 : -1));
       for (const { id } of campaigns.value.slice(0, STATES_SHOWN)) {
         const status = await loadStatus(id, abort.signal);
         states.value = { ...states.value, [id]: status };

@@ -2,7 +2,7 @@ import { useEffect, useMemo } from 'preact/hooks';
 import { buildLedger, instrumentNames } from '../model/ledger.ts';
 import { openCampaign } from '../state/live-campaign.ts';
 import { createUploads } from '../state/uploads.ts';
-import { FileDesk } from './file-desk.tsx';
+import { FileDesk, Outcomes } from './file-desk.tsx';
 import { InstrumentTable } from './instrument-table.tsx';
 import { Ledger } from './ledger.tsx';
 import { NextSteps } from './next-steps.tsx';
@@ -47,11 +47,15 @@ export function CampaignView({ id }: { id: string }) {
   return (
     <>
       <div class="campaign-head">
-        <h1>{campaign.name}</h1>
+        <div class="campaign-title">
+          <h1>{campaign.name}</h1>
+          {!isEmpty && <FileDesk uploads={uploads} isEmpty={false} />}
+        </div>
         {status && <Progress status={status} link={live.link.value} />}
       </div>
       {problem && <ProblemNotice problem={problem} />}
-      <FileDesk uploads={uploads} isEmpty={isEmpty} />
+      {isEmpty && <FileDesk uploads={uploads} isEmpty />}
+      <Outcomes uploads={uploads} />
       {!tables && !problem && <p class="waiting">Loading the tables…</p>}
       {tables && !isEmpty && (
         <>

@@ -18,8 +18,10 @@ const OUTCOMES: Record<UploadItem['state'], { words: string; needsLook?: true }>
   'not sent': { words: 'not sent', needsLook: true },
 };
 
-function Outcomes({ uploads }: { uploads: Uploads }) {
+/** What became of each file sent, those that need a look first. */
+export function Outcomes({ uploads }: { uploads: Uploads }) {
   const items = uploads.items.value;
+  if (items.length === 0) return null;
   const pending = items.filter(isPending).length;
   const troubled = items.filter((item) => OUTCOMES[item.state].needsLook);
   const calm = items.filter((item) => !OUTCOMES[item.state].needsLook);
@@ -121,10 +123,10 @@ export function FileDesk({ uploads, isEmpty }: { uploads: Uploads; isEmpty: bool
         <p>
           {isEmpty
             ? 'Drop the campaign folder here: exported text files, the sheets beside them, or archives of both.'
-            : 'Drop more files anywhere on the page.'}
+            : 'Drop files anywhere, or'}
         </p>
         <button type="button" onClick={() => folderInput.current?.click()}>
-          Choose a folder
+          Choose folder
         </button>
         <button type="button" onClick={() => fileInput.current?.click()}>
           Choose files
@@ -134,7 +136,6 @@ export function FileDesk({ uploads, isEmpty }: { uploads: Uploads; isEmpty: bool
       </div>
       {isEmpty && <FolderHelp />}
       {trouble.value && <p role="alert">{trouble.value}</p>}
-      {uploads.items.value.length > 0 && <Outcomes uploads={uploads} />}
       {isOver.value && (
         <div class="drop-cover" aria-hidden="true">
           <p class="drop-words">Let go to add these files</p>

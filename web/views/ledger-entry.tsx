@@ -1,7 +1,7 @@
 import { type Signal, useComputed } from '@preact/signals';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { RateScale } from '../charts/rate-scale.ts';
-import { StripGround, StripMarks } from '../charts/rate-strip.tsx';
+import { RateRuling, StripGround, StripMarks } from '../charts/rate-strip.tsx';
 import { StateGlyph } from '../charts/state-glyph.tsx';
 import { nearestMark, type StripLayout } from '../charts/strip-layout.ts';
 import { describeEstimate, describeMark } from '../model/describe.ts';
@@ -46,8 +46,14 @@ export function LedgerEntry(props: {
           </p>
         )}
         {row.reason && row.state !== 'fitted' && <p class="entry-reason">{row.reason}</p>}
+        {row.gaps.length > 0 && (
+          <p class="entry-gaps">Missing: {[...new Set(row.gaps.map((gap) => gapName(gap.code)))].join(', ')}</p>
+        )}
       </div>
       <div class="entry-strip">
+        <svg class="entry-ruling" width={scale.width} height="100%" aria-hidden="true">
+          <RateRuling scale={scale} />
+        </svg>
         <div
           id={`strip-${index}`}
           class="strip"
@@ -75,9 +81,6 @@ export function LedgerEntry(props: {
             />
           </svg>
         </div>
-        {row.gaps.length > 0 && (
-          <p class="entry-gaps">Missing: {[...new Set(row.gaps.map((gap) => gapName(gap.code)))].join(', ')}</p>
-        )}
       </div>
       <Headline rows={row.numbers.map(headlineEnergy)} name="E" unit="kJ/mol" />
       <Headline rows={row.numbers.map(headlineExponent)} name="n" unit="" />
@@ -88,7 +91,7 @@ export function LedgerEntry(props: {
 function ActiveRing(props: { active: Signal<ActiveMark | undefined>; index: number; layout: StripLayout }) {
   const at = props.active.value;
   const placed = at?.row === props.index ? props.layout.placed[at.mark] : undefined;
-  return placed ? <circle class="active-ring" cx={placed.x} cy={placed.y} r="10" /> : null;
+  return placed ? <circle class="active-ring" cx={placed.x} cy={placed.y} r="11" /> : null;
 }
 
 /** One number an event, with its interval and method; a dash where there is none yet. */
@@ -105,7 +108,7 @@ function Headline(props: { rows: readonly (ParameterRow | undefined)[]; name: st
         return (
           <p key={row.event}>
             <span class="number">
-              {value} <span class="spread">{spread}</span> {props.unit}
+              {value} <span class="spread">{spread}</span> <span class="unit">{props.unit}</span>
             </span>
             <span class="number-method">
               {rows.length > 1 && `event ${row.event}, `}

@@ -176,7 +176,7 @@ function Legend({ instruments, rows }: { instruments: readonly string[]; rows: r
       {isFlagged && (
         <li class="muted-key">
           <svg class="key" width="18" height="18" viewBox="-9 -9 18 18" aria-hidden="true">
-            <path class="mark-concern tone-warn" d="M-6 2.500h12" />
+            <circle class="mark-concern tone-warn" r="4" />
           </svg>
           flagged
         </li>

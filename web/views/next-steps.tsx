@@ -90,7 +90,7 @@ function Gaps({ gaps }: { gaps: readonly GapRow[] }) {
               {same.map((gap) => (
                 <li key={`${gap.sample} ${gap.detail}`} class="step-place">
                   <span class="place">{gap.sample || 'campaign'}</span> {sentence(gap.detail)}
-                  <span class="step-do"> {sentence(gap.action)}</span>
+                  <p class="step-do">{sentence(gap.action)}</p>
                 </li>
               ))}
             </ul>

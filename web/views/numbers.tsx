@@ -8,7 +8,7 @@ import type { LedgerRow } from '../model/ledger.ts';
 import { units } from '../state/units.ts';
 import { Downloads } from './download.tsx';
 
-const PLOT_WIDTH = 132;
+const PLOT_WIDTH = 150;
 
 /** The consolidated numbers of each sample and event, by method, drawn on one scale so that disagreement shows. */
 export function Numbers({ campaign, rows }: { campaign: Campaign; rows: readonly LedgerRow[] }) {

@@ -25,6 +25,7 @@ export function Progress({ status, link }: { status: CampaignStatus; link: Link 
         {work && <span>{work}</span>}
         {status.settled && present.length > 0 && <span>nothing left to run</span>}
         {status.jobs.failed > 0 && <span class="tone-stop">{formatCount(status.jobs.failed, 'job')} failed</span>}
+        <span class={`link link-${link}`}>{LINK_WORDS[link]}</span>
       </p>
       {present.length > 0 && (
         <>
@@ -38,7 +39,6 @@ export function Progress({ status, link }: { status: CampaignStatus; link: Link 
                 {status.scans[state]} {SCAN_STATE_NAMES[state]}
               </li>
             ))}
-            <li class={`link link-${link}`}>{LINK_WORDS[link]}</li>
           </ul>
         </>
       )}
