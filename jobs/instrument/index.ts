@@ -1,4 +1,7 @@
 /** From the bytes of instrument files, sheets and archives to columns and rows in SI (METHODS 2). */
+
+export { type ArchiveMember, unpackArchive } from './archive.ts';
+export { ARCHIVE_LIMITS, ArchiveRefused, type UnpackLimits } from './inflate.ts';
 export {
   type ArchiveKind,
   archiveKind,
