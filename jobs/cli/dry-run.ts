@@ -3,6 +3,8 @@ import { basename } from 'node:path';
 import type { Flag } from '../../schema/wire/flags.ts';
 import type { ReadScan, ScanSheetRow } from '../../schema/wire/scan.ts';
 import {
+  ARCHIVE_LIMITS,
+  ArchiveRefused,
   archiveKind,
   assignmentFromPath,
   isProgram,
@@ -21,7 +23,7 @@ import { shortNumber } from './text-table.ts';
 /** How one file would be understood. */
 interface FileReading {
   file: string;
-  kind: 'scan' | 'sheet' | 'programme' | 'set aside';
+  kind: 'scan' | 'sheet' | 'programme' | 'archive' | 'set aside';
   sample?: string;
   instrument?: string;
   /** Where sample and instrument come from */
@@ -51,7 +53,7 @@ export async function describeFolder(
     const bytes = await readFile(location);
     if (path.toLowerCase() === 'scans.csv') sheetRows = readScansSheet(bytes, path).rows;
     if (archiveKind(path) === undefined) readings.push(describeFile(path, bytes, sheetRows));
-    else readings.push(...(await describeArchive(path, bytes, sheetRows)));
+    else readings.push(...describeArchive(path, bytes, sheetRows));
   }
   const present = new Set(readings.flatMap((r) => [r.file, basename(r.file)]));
   const missing = sheetRows.filter((row) => !present.has(row.file)).map((row) => ({ file: row.file, line: row.line }));
@@ -68,19 +70,18 @@ export async function describeFolder(
   );
 }
 
-async function describeArchive(
-  path: string,
-  bytes: Uint8Array,
-  sheetRows: readonly ScanSheetRow[],
-): Promise<FileReading[]> {
+function describeArchive(path: string, bytes: Uint8Array, sheetRows: readonly ScanSheetRow[]): FileReading[] {
   const readings: FileReading[] = [];
+  const flags: Flag[] = [];
   try {
-    for await (const member of unpackArchive(bytes, path)) {
+    for (const member of unpackArchive(bytes, path, ARCHIVE_LIMITS, (flag) => flags.push(flag))) {
       readings.push(describeFile(member.path, member.bytes, sheetRows));
     }
   } catch (error) {
-    readings.push({ file: path, kind: 'set aside', reason: (error as Error).message, flags: [] });
+    if (!(error instanceof ArchiveRefused)) throw error;
+    readings.push({ file: path, kind: 'set aside', reason: error.message, action: error.action, flags: [] });
   }
+  if (flags.length > 0) readings.push({ file: path, kind: 'archive', flags });
   return readings;
 }
 
