@@ -48,6 +48,9 @@ interface DemoScan {
   noSign?: true;
 }
 
+/** Ramps start at this fraction of the expected peak, low enough for Augis–Bennett (METHODS 5 asks for 0.75). */
+const START_FRACTION = 0.73;
+
 const SEED = 'ratespan demo campaign 1';
 
 const atRates = (
@@ -169,7 +172,7 @@ function makeScan(
       drift: { linear: 0.05 * (2 * random.uniform() - 1), quadratic: 0.05 * (0.4 + 0.6 * random.uniform()) },
       stepS: Math.max(instrument.stepK / rate, instrument.shortestStepS),
     },
-    linearRamp(expectedK - material.belowPeakK, expectedK + material.abovePeakK, rate),
+    linearRamp(START_FRACTION * expectedK, expectedK + material.abovePeakK, rate),
     random,
   );
   const text = writeScanText({ ...simulated, massKg }, { ...instrument.dialect, preamble: instrument.preamble });

@@ -8,8 +8,7 @@ export interface DemoMaterial extends SimulatedMaterial {
   description: string;
   /** For samples.csv, °C; not every sample has one */
   meltingC?: number;
-  /** Temperature window of the scans below and above the expected peak, K */
-  belowPeakK: number;
+  /** How far the scans go beyond the expected peak, K */
   abovePeakK: number;
 }
 
@@ -32,7 +31,6 @@ export const DEMO_FILM: DemoMaterial = {
     widthK: 1.5,
     stepJPerKgK: 180,
   },
-  belowPeakK: 85,
   abovePeakK: 55,
 };
 
@@ -43,7 +41,6 @@ export const DEMO_RIBBON: DemoMaterial = {
   avramiExponent: 3,
   enthalpyJPerKg: 75_000,
   meltingC: 1040,
-  belowPeakK: 110,
   abovePeakK: 60,
 };
 
@@ -61,7 +58,6 @@ export const DEMO_EXCIPIENT: DemoMaterial = {
     widthK: 1.4,
     stepJPerKgK: 480,
   },
-  belowPeakK: 85,
   abovePeakK: 40,
 };
 
