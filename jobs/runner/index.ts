@@ -1,4 +1,15 @@
 import type { Ports } from '../ports/index.ts';
+import { ColumnsCache } from '../steps/index.ts';
+import { type ClaimedJob, claimJobs, extendLeases, LEASE_MS, openJobs } from '../store/leases.ts';
+import { sweepLostJobs } from './consume.ts';
+import { runJob } from './run-job.ts';
+
+export { consumeWake, sweepWakes } from './consume.ts';
+
+/** How often a process looks for jobs that another one queued. */
+const POLL_MS = 500;
+const SWEEP_EVERY_MS = LEASE_MS / 2;
+const HEARTBEAT_MS = LEASE_MS / 3;
 
 export interface RunnerOptions {
   /** Jobs in flight at once; workers + 1 keeps worker threads busy. */
@@ -8,7 +19,7 @@ export interface RunnerOptions {
 }
 
 export interface Runner {
-  /** Runs until nothing is queued or running (in the campaign, or at all). */
+  /** Runs until nothing is queued or running (in the campaign, or at all). Throws when the database cannot be reached. */
   drain(campaignId?: string): Promise<void>;
   /** Takes jobs until stopped. */
   start(): void;
@@ -16,6 +27,95 @@ export interface Runner {
   stop(): Promise<void>;
 }
 
-export function createRunner(_ports: Ports, _options: RunnerOptions): Runner {
-  throw new Error('not written yet');
+/** Takes due jobs and keeps up to `concurrency` of them in flight, with their leases extended while they run. */
+export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions): Runner {
+  const cache = new ColumnsCache();
+  const inFlight = new Map<string, { job: ClaimedJob; end: Promise<void> }>();
+  const stopping = new AbortController();
+  let heartbeat: Promise<void> | undefined;
+  let sweptAt = Number.NEGATIVE_INFINITY;
+  let background: Promise<void> | undefined;
+
+  /** Extends leases while anything is in flight. A lease lost meanwhile shows at the write-back, which then fails whole. */
+  async function keepLeases(): Promise<void> {
+    const done = new AbortController();
+    while (inFlight.size > 0) {
+      const idle = Promise.all([...inFlight.values()].map(({ end }) => end)).then(() => done.abort());
+      await Promise.race([idle, ports.clock.sleep(HEARTBEAT_MS, done.signal)]);
+      await extendLeases(
+        ports,
+        [...inFlight.values()].map(({ job }) => job),
+      ).catch(() => undefined);
+    }
+    heartbeat = undefined;
+  }
+
+  function launch(job: ClaimedJob): void {
+    const end = runJob(ports, job, cache)
+      // Not even the failure could be noted: the lease lapses and the job is taken again.
+      .catch(() => undefined)
+      .then(() => {
+        inFlight.delete(job.id);
+      });
+    inFlight.set(job.id, { job, end });
+    heartbeat ??= keepLeases();
+  }
+
+  /** Fills the free places. Returns whether anything was taken. */
+  async function fill(campaignId?: string): Promise<boolean> {
+    const now = ports.clock.now();
+    if (now - sweptAt >= SWEEP_EVERY_MS) {
+      sweptAt = now;
+      await sweepLostJobs(ports);
+    }
+    const limit = concurrency - inFlight.size;
+    if (limit <= 0) return false;
+    const taken = await claimJobs(ports, { owner, limit, campaignId, eager: inFlight.size === 0 });
+    for (const job of taken) launch(job);
+    return taken.length > 0;
+  }
+
+  /** Until a job ends, a wake-up is heard, or the time is over. */
+  async function rest(ms: number, signal?: AbortSignal): Promise<void> {
+    const heard = ports.queue.heard?.(ms) ?? ports.clock.sleep(ms, signal);
+    await Promise.race(
+      [heard, ...[...inFlight.values()].map(({ end }) => end), aborted(signal)].filter((p) => p !== undefined),
+    );
+  }
+
+  async function loop(): Promise<void> {
+    while (!stopping.signal.aborted) {
+      const took = await fill().catch(() => false);
+      if (took && inFlight.size < concurrency) continue;
+      await rest(POLL_MS, stopping.signal);
+    }
+    await Promise.all([...inFlight.values()].map(({ end }) => end));
+  }
+
+  return {
+    async drain(campaignId) {
+      for (;;) {
+        if (await fill(campaignId)) continue;
+        if (inFlight.size > 0) {
+          await rest(POLL_MS);
+          continue;
+        }
+        const { open, nextTryAt } = await openJobs(ports, campaignId);
+        if (open === 0) return;
+        // Held by another process, or waiting for its next attempt.
+        await ports.clock.sleep(Math.min(POLL_MS, Math.max(1, (nextTryAt ?? 0) - ports.clock.now())));
+      }
+    },
+    start() {
+      background ??= loop();
+    },
+    async stop() {
+      stopping.abort();
+      await background;
+    },
+  };
+}
+
+function aborted(signal: AbortSignal | undefined): Promise<void> | undefined {
+  return signal && new Promise((resolve) => signal.addEventListener('abort', () => resolve(), { once: true }));
 }

@@ -64,16 +64,16 @@ const outcomeOf = (kind: FileKind, replaces: boolean, known: boolean): FileRecei
   return kind === 'data' ? 'accepted' : kind;
 };
 
-interface Surroundings {
+export interface Surroundings {
   /** The file that has this path now. */
-  live?: { id: string; sha256: string };
+  live?: { id: string; sha256: string; blobKey: string };
   /** An older file of the same path and bytes. */
   former?: { id: string };
   /** Another path with the same bytes. */
   sameBytes?: { id: string; path: string; blobKey: string };
 }
 
-async function lookAround(ports: Ports, campaignId: string, file: ArrivedFile): Promise<Surroundings> {
+export async function lookAround(ports: Ports, campaignId: string, file: ArrivedFile): Promise<Surroundings> {
   const rows = await ports.database.read
     .select({
       id: files.id,
@@ -99,7 +99,7 @@ async function lookAround(ports: Ports, campaignId: string, file: ArrivedFile): 
   };
 }
 
-interface ArrivalPlan {
+export interface ArrivalPlan {
   statements(db: LibSQLDatabase): Statement[];
   jobIds: string[];
   assignId: string;
@@ -108,7 +108,8 @@ interface ArrivalPlan {
   sharedBlob: boolean;
 }
 
-function planArrival(campaignId: string, file: ArrivedFile, before: Surroundings, now: number): ArrivalPlan {
+/** The rows and jobs that an arriving file makes. */
+export function planArrival(campaignId: string, file: ArrivedFile, before: Surroundings, now: number): ArrivalPlan {
   const { live, former, sameBytes } = before;
   const assignId = createId('job');
   const jobId = createId('job');

@@ -15,6 +15,7 @@ export {
 export { type JobView, listJobs, refitCampaign, retryJob } from './job-views.ts';
 export { FILE_LIMIT_BYTES, receiveFile } from './receive.ts';
 export { StoreRefusal, type StoreRefusalCode } from './refusals.ts';
+export { listSampleScans, type SampleScan } from './sample-scans.ts';
 export { campaignStatus } from './status.ts';
 export { type ResultRow, readTable, type TableFilter } from './tables/index.ts';
 export {

@@ -88,9 +88,16 @@ export function queueDueJobs(db: LibSQLDatabase, campaignId: string, now: number
   ];
 }
 
-/** Queues the reduction of scans that are read, assigned, and on a calibrated instrument; `which` narrows the rows of `scans`. */
-export function queueReductions(db: LibSQLDatabase, campaignId: string, now: number, which: SQL): Statement[] {
-  const due = sql`scans.campaign_id = ${campaignId} and ${which} and scans.status = 'read' and disposition = 'assigned'
+/** Queues the reduction of scans that are read, assigned, and on a calibrated instrument: of one file, of one instrument, or all. */
+export function queueReductions(
+  db: LibSQLDatabase,
+  campaignId: string,
+  now: number,
+  { fileId, instrument }: { fileId?: string; instrument?: string } = {},
+): Statement[] {
+  const ofFile = fileId === undefined ? sql`` : sql`and scans.file_id = ${fileId}`;
+  const ofInstrument = instrument === undefined ? sql`` : sql`and scans.instrument = ${instrument}`;
+  const due = sql`scans.campaign_id = ${campaignId} ${ofFile} ${ofInstrument} and scans.status = 'read' and disposition = 'assigned'
     and inputs_revision > queued_revision and exists (
       select 1 from instruments i where i.campaign_id = ${campaignId} and i.instrument = scans.instrument
       and i.calibration is not null and i.calibrated_revision = i.inputs_revision)`;

@@ -1,0 +1,132 @@
+import { type Flag, flag, quote } from '../../schema/wire/flags.ts';
+import type { InstrumentSheetRow } from '../../schema/wire/scan.ts';
+import type { ScanState } from '../../schema/wire/states.ts';
+import { sheetKind } from '../instrument/index.ts';
+import type { Ports } from '../ports/index.ts';
+import {
+  type AssignedScan,
+  type AssignmentRows,
+  deleteScan,
+  followFiles,
+  type InstrumentChanges,
+  insertScan,
+  loadAssignment,
+  reassignScan,
+  replaceFlags,
+  type StoredFile,
+  settleInstruments,
+  settleSamples,
+} from '../store/assignment-rows.ts';
+import { hashOf } from '../store/ids.ts';
+import { queueReductions } from '../store/job-rows.ts';
+import { type ClaimedJob, completeJob } from '../store/leases.ts';
+import { assignScans, type WantedScan } from './assign-scans.ts';
+import { diffScans, type HashedScan, hashScanSheet, type ScanChanges } from './diff-scans.ts';
+
+/** Step `assign-scans`: makes the scans of a campaign what its files and sheets say, and queues only what changed. */
+export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<void> {
+  const rows = await loadAssignment(ports, job.campaignId);
+  const fileOf = new Map(rows.files.map((file) => [file.id, file]));
+  const dataFiles = rows.files.filter((file) => file.kind === 'data');
+  const sheetPresent = rows.files.some((file) => file.kind === 'sheet' && sheetKind(file.path) === 'scans');
+  const { scans, flags } = assignScans(dataFiles, sheetPresent ? rows.sheets.scans : undefined, ports.paths.assignment);
+  const sampleRows = new Map([...rows.sheets.samples].reverse().map((row) => [row.sample, row]));
+  flags.push(
+    ...repeatedRows('samples', rows.sheets.samples, (row) => row.sample),
+    ...repeatedRows('instruments', rows.sheets.instruments, (row) => row.instrument),
+  );
+  const wanted: HashedScan[] = scans.map((scan) => ({
+    ...scan,
+    sheetHash: hashScanSheet(scan, scan.sample === null ? undefined : sampleRows.get(scan.sample)),
+  }));
+  const changes = diffScans(rows.scans, wanted);
+  const placed = (scan: HashedScan): AssignedScan => placeScan(scan, fileOf.get(scan.fileId) as StoredFile);
+  await completeJob(ports, job, (db, now) => [
+    ...changes.insert.map((scan) => insertScan(db, job.campaignId, placed(scan))),
+    ...changes.update.map(({ id, wanted: scan }) => reassignScan(db, id, placed(scan))),
+    ...changes.remove.map((scan) => deleteScan(db, scan.id)),
+    ...followFiles(db, job.campaignId),
+    ...settleSamples(db, job.campaignId, namedSamples(wanted), changedNames(changes, 'sample')),
+    ...settleInstruments(db, job.campaignId, instrumentChanges(rows, wanted, changes)),
+    ...replaceFlags(db, job.campaignId, 'assign', flags),
+    ...queueReductions(db, job.campaignId, now),
+  ]);
+}
+
+/** Of several rows with one name the first counts; the others are said. */
+function repeatedRows<T extends { line: number }>(
+  sheet: string,
+  rows: readonly T[],
+  nameOf: (row: T) => string,
+): Flag[] {
+  const first = new Map<string, T>();
+  return rows.flatMap((row) => {
+    const before = first.get(nameOf(row));
+    if (!before) {
+      first.set(nameOf(row), row);
+      return [];
+    }
+    return flag(
+      'sheet-damaged',
+      `Line ${row.line} of the ${sheet} sheet names ${quote(nameOf(row))} again, after line ${before.line}. The first row counts.`,
+      'Remove one of the two rows.',
+      { file: `${sheet}.csv` },
+    );
+  });
+}
+
+/** The state that a scan starts from in its new place. */
+function placeScan(
+  { fileId, disposition, sample, instrument, role, segment, sheetRow, sheetHash, reason, flags }: HashedScan,
+  file: StoredFile,
+): AssignedScan {
+  const place = { fileId, disposition, sample, instrument, role, segment, sheetRow, sheetHash, flags };
+  if (disposition === 'duplicate') return { ...place, status: 'set_aside', reason };
+  if (file.state === 'refused') return { ...place, status: 'set_aside', reason: file.reason };
+  if (file.state === 'failed') return { ...place, status: 'failed', reason: file.reason };
+  if (disposition === 'unassigned') return { ...place, status: 'unassigned', reason };
+  const status: ScanState = file.state === 'read' ? 'read' : 'received';
+  return { ...place, status, reason: null };
+}
+
+const isSampleScan = (scan: WantedScan) =>
+  scan.disposition === 'assigned' && scan.role === 'sample' && scan.sample !== null;
+
+const namedSamples = (wanted: readonly WantedScan[]): string[] =>
+  [...new Set(wanted.filter(isSampleScan).map((scan) => scan.sample as string))].sort();
+
+/** Samples or instruments that gained, lost or kept a changed scan. */
+function changedNames(changes: ScanChanges, field: 'sample' | 'instrument'): string[] {
+  const names = [
+    ...changes.insert.map((scan) => scan[field]),
+    ...changes.update.flatMap(({ before, wanted }) => [before[field], wanted[field]]),
+    ...changes.remove.map((scan) => scan[field]),
+  ];
+  return [...new Set(names.filter((name) => name !== null))].sort();
+}
+
+function instrumentChanges(
+  rows: AssignmentRows,
+  wanted: readonly WantedScan[],
+  changes: ScanChanges,
+): InstrumentChanges {
+  const sheet = new Map<string, InstrumentSheetRow>(
+    [...rows.sheets.instruments].reverse().map((row) => [row.instrument, row]),
+  );
+  const used = wanted.filter((scan) => scan.disposition === 'assigned').map((scan) => scan.instrument as string);
+  const names = new Set([...used, ...sheet.keys()]);
+  const stored = new Map(rows.instruments.map((row) => [row.instrument, row]));
+  const moved = new Set(changedNames(changes, 'instrument'));
+  const said = (row: InstrumentSheetRow | null | undefined) => hashOf(row ? { ...row, line: undefined } : null);
+  const result: InstrumentChanges = { insert: [], update: [], remove: [] };
+  for (const instrument of [...names].sort()) {
+    const sheetRow = sheet.get(instrument) ?? null;
+    const before = stored.get(instrument);
+    if (!before) result.insert.push({ instrument, sheetRow });
+    else if (said(before.sheetRow) !== said(sheetRow) || (sheetRow?.kind === undefined && moved.has(instrument))) {
+      result.update.push({ id: before.id, sheetRow });
+    }
+  }
+  result.remove = rows.instruments.filter((row) => !names.has(row.instrument)).map((row) => row.id);
+  return result;
+}

@@ -1,0 +1,68 @@
+import { type Flag, flag } from '../../schema/wire/flags.ts';
+import type { ReduceOutcome } from '../../schema/wire/reduced.ts';
+import { decodeReduceOutcome, encodeReduceOutcome, summarizeReduced } from '../../schema/wire/reduced-blob.ts';
+import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
+import type { Ports } from '../ports/index.ts';
+import { hashOf } from '../store/ids.ts';
+import { type ClaimedJob, completeJob } from '../store/leases.ts';
+import { loadReduction, type ReductionRows, saveReduction } from '../store/scan-rows.ts';
+import { type ColumnsCache, readDerived } from './columns-store.ts';
+import { loadColumns } from './read-scan.ts';
+import { STEP_VERSIONS } from './settings.ts';
+
+/** Step `reduce-scan`: one scan to events and curves, kept as a blob under the hash of everything that went in. */
+export async function reduceStoredScan(ports: Ports, job: ClaimedJob, cache: ColumnsCache): Promise<void> {
+  const rows = await loadReduction(ports, job.subject);
+  const input = rows && reduceInputOf(rows);
+  if (!rows || !input || rows.scan.status !== 'read') return completeJob(ports, job);
+  const { scan, file } = rows;
+  const hash = hashOf(['reduce-scan', STEP_VERSIONS['reduce-scan'], STEP_VERSIONS['read-scan'], file.sha256, input]);
+  const reducedKey = `derived/${scan.campaignId}/reduced-${hash}`;
+  let outcome = await readDerived(ports, reducedKey, decodeReduceOutcome);
+  if (!outcome) {
+    outcome = await ports.compute.reduceScan(await loadColumns(ports, file, cache), input);
+    await ports.blobs.put(reducedKey, encodeReduceOutcome(outcome));
+  }
+  const found = outcome.ok
+    ? {
+        status: 'reduced' as const,
+        reason: null,
+        reducedKey,
+        result: summarizeReduced(outcome.reduced),
+        flags: outcome.reduced.flags,
+      }
+    : {
+        status: 'set_aside' as const,
+        reason: outcome.reason,
+        reducedKey,
+        result: null,
+        flags: refusalFlags(outcome, input),
+      };
+  await completeJob(ports, job, (db) => saveReduction(db, scan, found));
+}
+
+function reduceInputOf({ scan, file, calibration, sampleRow }: ReductionRows): ReduceInput | undefined {
+  if (scan.sample === null || calibration === null) return undefined;
+  const row = scan.sheetRow;
+  return {
+    file: file.path,
+    sample: scan.sample,
+    role: scan.role,
+    ...(row?.rateKPerS !== undefined && { rateNominalKPerS: row.rateKPerS }),
+    ...(row?.massKg !== undefined && { massKg: row.massKg }),
+    ...(row?.exotherm !== undefined && { exotherm: row.exotherm }),
+    ...(scan.segment !== null && { segment: scan.segment }),
+    calibration,
+    ...(sampleRow?.meltingK !== undefined && { meltingK: sampleRow.meltingK }),
+    ...(sampleRow?.crystallizationEnthalpyJPerKg !== undefined && {
+      crystallizationEnthalpyJPerKg: sampleRow.crystallizationEnthalpyJPerKg,
+    }),
+  };
+}
+
+/** The flags of a scan that was set aside say the reason too, also where the reduction gave it only as its outcome. */
+function refusalFlags(outcome: Extract<ReduceOutcome, { ok: false }>, input: ReduceInput): Flag[] {
+  const { code, reason, action, flags } = outcome;
+  if (flags.some((found) => found.code === code)) return flags;
+  return [flag(code, reason, action, { file: input.file, sample: input.sample }), ...flags];
+}

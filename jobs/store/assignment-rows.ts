@@ -1,0 +1,242 @@
+import { and, asc, eq, sql } from 'drizzle-orm';
+import type { LibSQLDatabase } from 'drizzle-orm/libsql';
+import {
+  type Disposition,
+  type FileState,
+  files,
+  flags,
+  instruments,
+  type ReadSheetName,
+  samples,
+  scans,
+  sheetRows,
+} from '../../schema/tables/index.ts';
+import type { Flag } from '../../schema/wire/flags.ts';
+import type { InstrumentSheetRow, SampleSheetRow, ScanSheetRow } from '../../schema/wire/scan.ts';
+import type { Role, ScanState } from '../../schema/wire/states.ts';
+import type { Ports } from '../ports/index.ts';
+import type { Statement } from './fence.ts';
+import { createId } from './ids.ts';
+import { touchSamples } from './job-rows.ts';
+
+export interface StoredFile {
+  id: string;
+  path: string;
+  sha256: string;
+  kind: string;
+  state: FileState;
+  reason: string | null;
+}
+
+export interface StoredScan {
+  id: string;
+  fileId: string;
+  disposition: Disposition;
+  sample: string | null;
+  instrument: string | null;
+  role: Role;
+  segment: number | null;
+  sheetHash: string;
+  status: ScanState;
+}
+
+export interface StoredInstrument {
+  id: string;
+  instrument: string;
+  sheetRow: InstrumentSheetRow | null;
+}
+
+export interface AssignmentRows {
+  /** Live files of every kind. */
+  files: StoredFile[];
+  scans: StoredScan[];
+  instruments: StoredInstrument[];
+  sheets: { scans: ScanSheetRow[]; instruments: InstrumentSheetRow[]; samples: SampleSheetRow[] };
+}
+
+/** Rows of one kind of sheet as they stand: sheets by path, rows in their order; those of one sample, or all. */
+export async function loadSheetRows<T>(
+  ports: Ports,
+  campaignId: string,
+  sheet: ReadSheetName,
+  sample?: string,
+): Promise<T[]> {
+  const rows = await ports.database.read
+    .select({ body: sheetRows.body })
+    .from(sheetRows)
+    .innerJoin(files, eq(files.id, sheetRows.fileId))
+    .where(
+      and(
+        eq(sheetRows.campaignId, campaignId),
+        eq(sheetRows.sheet, sheet),
+        sample === undefined ? undefined : sql`json_extract(${sheetRows.body}, '$.sample') = ${sample}`,
+      ),
+    )
+    .orderBy(asc(files.path), asc(sheetRows.position));
+  return rows.map((row) => row.body as T);
+}
+
+export async function loadAssignment(ports: Ports, campaignId: string): Promise<AssignmentRows> {
+  const { read } = ports.database;
+  return {
+    files: await read
+      .select({
+        id: files.id,
+        path: files.path,
+        sha256: files.sha256,
+        kind: files.kind,
+        state: files.state,
+        reason: files.reason,
+      })
+      .from(files)
+      .where(and(eq(files.campaignId, campaignId), eq(files.superseded, false))),
+    scans: await read
+      .select({
+        id: scans.id,
+        fileId: scans.fileId,
+        disposition: scans.disposition,
+        sample: scans.sample,
+        instrument: scans.instrument,
+        role: scans.role,
+        segment: scans.segment,
+        sheetHash: scans.sheetHash,
+        status: scans.status,
+      })
+      .from(scans)
+      .where(eq(scans.campaignId, campaignId)),
+    instruments: await read
+      .select({ id: instruments.id, instrument: instruments.instrument, sheetRow: instruments.sheetRow })
+      .from(instruments)
+      .where(eq(instruments.campaignId, campaignId)),
+    sheets: {
+      scans: await loadSheetRows<ScanSheetRow>(ports, campaignId, 'scans'),
+      instruments: await loadSheetRows<InstrumentSheetRow>(ports, campaignId, 'instruments'),
+      samples: await loadSheetRows<SampleSheetRow>(ports, campaignId, 'samples'),
+    },
+  };
+}
+
+/** What a scan row holds after an assignment. */
+export interface AssignedScan {
+  fileId: string;
+  disposition: Disposition;
+  sample: string | null;
+  instrument: string | null;
+  role: Role;
+  segment: number | null;
+  sheetRow: ScanSheetRow | null;
+  sheetHash: string;
+  status: ScanState;
+  reason: string | null;
+  flags: Flag[];
+}
+
+export const insertScan = (db: LibSQLDatabase, campaignId: string, scan: AssignedScan): Statement =>
+  db.insert(scans).values({ id: createId('scan'), campaignId, ...scan });
+
+/** Gives a scan its new place; what was reduced from the old one no longer counts. */
+export const reassignScan = (db: LibSQLDatabase, scanId: string, scan: AssignedScan): Statement =>
+  db
+    .update(scans)
+    .set({ ...scan, reducedKey: null, result: null, inputsRevision: sql`inputs_revision + 1` })
+    .where(eq(scans.id, scanId));
+
+export const deleteScan = (db: LibSQLDatabase, scanId: string): Statement =>
+  db.delete(scans).where(eq(scans.id, scanId));
+
+/** Files may have been read, refused or superseded while the assignment was worked out: their scans follow them. */
+export const followFiles = (db: LibSQLDatabase, campaignId: string): Statement[] => [
+  db.run(sql`
+    update scans set status = 'read' where campaign_id = ${campaignId} and status = 'received'
+      and file_id in (select id from files where campaign_id = ${campaignId} and state = 'read')`),
+  db.run(sql`
+    update scans set status = case f.state when 'refused' then 'set_aside' else 'failed' end, reason = f.reason
+    from files f where f.id = scans.file_id and scans.campaign_id = ${campaignId}
+      and scans.status in ('received', 'unassigned') and f.state in ('refused', 'failed')`),
+  db.run(sql`
+    update scans set status = 'superseded' where campaign_id = ${campaignId} and status <> 'superseded'
+      and file_id in (select id from files where campaign_id = ${campaignId} and superseded = 1)`),
+];
+
+/** Makes the rows of samples that scans name, touches those whose scans changed, removes those that nobody names any more with their results. */
+export function settleSamples(
+  db: LibSQLDatabase,
+  campaignId: string,
+  named: readonly string[],
+  changed: readonly string[],
+): Statement[] {
+  const statements: Statement[] = [];
+  if (named.length > 0) {
+    statements.push(
+      db
+        .insert(samples)
+        .values(named.map((sample) => ({ id: createId('sample'), campaignId, sample, state: 'waiting' as const })))
+        .onConflictDoNothing(),
+    );
+  }
+  if (changed.length > 0) {
+    statements.push(
+      touchSamples(
+        db,
+        campaignId,
+        sql.join(
+          changed.map((name) => sql`${name}`),
+          sql`, `,
+        ),
+      ),
+    );
+  }
+  statements.push(
+    db.run(sql`
+      delete from samples where campaign_id = ${campaignId} and not exists (
+        select 1 from scans s where s.campaign_id = ${campaignId} and s.sample = samples.sample and s.role = 'sample'
+          and s.disposition = 'assigned' and s.status <> 'superseded')`),
+    db.run(sql`
+      delete from parameters where campaign_id = ${campaignId}
+        and sample not in (select sample from samples where campaign_id = ${campaignId})`),
+    db.run(sql`
+      delete from flags where campaign_id = ${campaignId} and source like 'fit:%'
+        and substr(source, 5) not in (select sample from samples where campaign_id = ${campaignId})`),
+  );
+  return statements;
+}
+
+export interface InstrumentChanges {
+  insert: { instrument: string; sheetRow: InstrumentSheetRow | null }[];
+  /** Another sheet row, or another set of scans where those decide the kind. */
+  update: { id: string; sheetRow: InstrumentSheetRow | null }[];
+  remove: string[];
+}
+
+export function settleInstruments(db: LibSQLDatabase, campaignId: string, changes: InstrumentChanges): Statement[] {
+  return [
+    ...changes.insert.map((row) =>
+      db
+        .insert(instruments)
+        .values({ id: createId('instrument'), campaignId, ...row })
+        .onConflictDoNothing(),
+    ),
+    ...changes.update.map(({ id, sheetRow }) =>
+      db.update(instruments).set({ sheetRow, inputsRevision: sql`inputs_revision + 1` }).where(eq(instruments.id, id)),
+    ),
+    ...changes.remove.map((id) => db.delete(instruments).where(eq(instruments.id, id))),
+  ];
+}
+
+/** Replaces the flags that one source wrote. */
+export function replaceFlags(
+  db: LibSQLDatabase,
+  campaignId: string,
+  source: string,
+  found: readonly Flag[],
+): Statement[] {
+  const statements: Statement[] = [
+    db.delete(flags).where(and(eq(flags.campaignId, campaignId), eq(flags.source, source))),
+  ];
+  // Long lists go in parts: a statement takes a limited number of values.
+  for (let at = 0; at < found.length; at += 500) {
+    const part = found.slice(at, at + 500);
+    statements.push(db.insert(flags).values(part.map((body, i) => ({ campaignId, source, position: at + i, body }))));
+  }
+  return statements;
+}

@@ -1,0 +1,128 @@
+import { and, eq, sql } from 'drizzle-orm';
+import type { LibSQLDatabase } from 'drizzle-orm/libsql';
+import { files, instruments, scans } from '../../schema/tables/index.ts';
+import type { Flag } from '../../schema/wire/flags.ts';
+import type { ReducedSummary } from '../../schema/wire/reduced-blob.ts';
+import type { InstrumentCalibration, SampleSheetRow } from '../../schema/wire/scan.ts';
+import type { Ports } from '../ports/index.ts';
+import { loadSheetRows } from './assignment-rows.ts';
+import type { Statement } from './fence.ts';
+import { queueReductions, touchSamples } from './job-rows.ts';
+
+export type FileRow = typeof files.$inferSelect;
+export type ScanRow = typeof scans.$inferSelect;
+
+export async function loadFile(ports: Ports, fileId: string): Promise<FileRow | undefined> {
+  return (await ports.database.read.select().from(files).where(eq(files.id, fileId)))[0];
+}
+
+const scanSamples = (fileId: string) => sql`select sample from scans where file_id = ${fileId} and role = 'sample'`;
+
+/** A data file was read: its scans go on. */
+export function saveReadFile(
+  db: LibSQLDatabase,
+  file: FileRow,
+  now: number,
+  read: { columnsKey: string; highestRateKPerS: number; flags: Flag[] },
+): Statement[] {
+  return [
+    db
+      .update(files)
+      .set({ state: 'read', reason: null, ...read })
+      .where(eq(files.id, file.id)),
+    db.run(sql`update scans set status = 'read' where file_id = ${file.id} and status = 'received'`),
+    // A faster scan may make a chip of what was taken for a furnace.
+    db.run(sql`
+      update instruments set inputs_revision = inputs_revision + 1
+      where campaign_id = ${file.campaignId} and highest_rate_k_per_s < ${read.highestRateKPerS}
+        and json_extract(sheet_row, '$.kind') is null and calibration is not null
+        and instrument in (select instrument from scans where file_id = ${file.id} and disposition = 'assigned')`),
+    ...queueReductions(db, file.campaignId, now, { fileId: file.id }),
+  ];
+}
+
+/** A data file, sheet or archive could not be read: it and its scans are set aside with the reason. */
+export function saveRefusedFile(db: LibSQLDatabase, file: FileRow, reason: string, flags: Flag[]): Statement[] {
+  return [
+    db.update(files).set({ state: 'refused', reason, flags }).where(eq(files.id, file.id)),
+    db
+      .update(scans)
+      .set({ status: 'set_aside', reason })
+      .where(and(eq(scans.fileId, file.id), sql`status in ('received', 'read', 'unassigned')`)),
+    touchSamples(db, file.campaignId, scanSamples(file.id)),
+  ];
+}
+
+/** The job of a file gave up. */
+export function saveFailedFile(db: LibSQLDatabase, campaignId: string, fileId: string, reason: string): Statement[] {
+  return [
+    db.update(files).set({ state: 'failed', reason }).where(eq(files.id, fileId)),
+    db
+      .update(scans)
+      .set({ status: 'failed', reason })
+      .where(and(eq(scans.fileId, fileId), sql`status in ('received', 'read', 'unassigned')`)),
+    touchSamples(db, campaignId, scanSamples(fileId)),
+  ];
+}
+
+export interface ReductionRows {
+  scan: ScanRow;
+  file: FileRow;
+  calibration: InstrumentCalibration | null;
+  sampleRow: SampleSheetRow | undefined;
+}
+
+export async function loadReduction(ports: Ports, scanId: string): Promise<ReductionRows | undefined> {
+  const [row] = await ports.database.read
+    .select({ scan: scans, file: files, calibration: instruments.calibration })
+    .from(scans)
+    .innerJoin(files, eq(files.id, scans.fileId))
+    .leftJoin(
+      instruments,
+      and(eq(instruments.campaignId, scans.campaignId), eq(instruments.instrument, scans.instrument)),
+    )
+    .where(eq(scans.id, scanId));
+  if (!row) return undefined;
+  return { ...row, sampleRow: await loadSampleRow(ports, row.scan.campaignId, row.scan.sample) };
+}
+
+/** The row of samples.csv for one sample: the first, in the order of the assignment. */
+export async function loadSampleRow(
+  ports: Ports,
+  campaignId: string,
+  sample: string | null,
+): Promise<SampleSheetRow | undefined> {
+  if (sample === null) return undefined;
+  return (await loadSheetRows<SampleSheetRow>(ports, campaignId, 'samples', sample))[0];
+}
+
+/** Stores what a reduction found, unless the scan's inputs have changed since they were loaded. */
+export function saveReduction(
+  db: LibSQLDatabase,
+  scan: ScanRow,
+  found: {
+    status: 'reduced' | 'set_aside';
+    reason: string | null;
+    reducedKey: string;
+    result: ReducedSummary | null;
+    flags: Flag[];
+  },
+): Statement[] {
+  return [
+    db
+      .update(scans)
+      .set(found)
+      .where(and(eq(scans.id, scan.id), eq(scans.inputsRevision, scan.inputsRevision), eq(scans.status, 'read'))),
+    ...(scan.role === 'sample' ? [touchSamples(db, scan.campaignId, sql`${scan.sample}`)] : []),
+  ];
+}
+
+export function saveFailedScan(db: LibSQLDatabase, campaignId: string, scanId: string, reason: string): Statement[] {
+  return [
+    db
+      .update(scans)
+      .set({ status: 'failed', reason })
+      .where(and(eq(scans.id, scanId), eq(scans.status, 'read'))),
+    touchSamples(db, campaignId, sql`select sample from scans where id = ${scanId} and role = 'sample'`),
+  ];
+}
