@@ -101,7 +101,8 @@ export function integrate(
       } else {
         wanted = h * factor;
       }
-      if (++steps > STEP_LIMIT || t + h / 1e6 === t) throw new Error(`integrator stuck at t = ${t} with step ${h}`);
+      // The step that is wanted counts, not the one taken: what is left to an output time may rightly be tiny.
+      if (++steps > STEP_LIMIT || t + wanted === t) throw new Error(`integrator stuck at t = ${t} with step ${wanted}`);
     }
     visit(index, t, y);
   }

@@ -1,0 +1,219 @@
+import { reduceScan } from '../../jobs/reduction/index.ts';
+import type { InstrumentCalibration, ReadScan } from '../../schema/wire/scan.ts';
+import {
+  arrheniusLawWithPeak,
+  eventTruths,
+  jmakLaw,
+  programmeLimits,
+  R,
+  type Random,
+  type RecordingSettings,
+  rampProgramme,
+  recordScan,
+  type SampleModel,
+  type ScanModel,
+  samplingTimes,
+  seededRandom,
+  solveScan,
+} from './generator/index.ts';
+import type { StudyOptions } from './registry.ts';
+import { markdownTable, percent, quantile } from './table.ts';
+
+/** One hard feature at a time on top of the plain case; what is left out is as in PLAIN. */
+export interface Difficulty {
+  name: string;
+  recording?: Partial<RecordingSettings>;
+  points?: number;
+  uneven?: { jitter: number; lost: number };
+  /** Response ÷ width in time, told to the reduction */
+  response?: number;
+  /** Heat capacity in units of ΔH/FWHM: what plain warming shows beside the event */
+  heatCapacity?: number;
+  /** Crystal's step of the heat capacity, the same unit */
+  crystalStep?: number;
+  /** Glass transition this many widths below the peak: step as above, logistic width a tenth of the event's */
+  glassTransition?: { widthsBelow: number; step: number; overshoot?: number };
+  /** Melting this many widths above the peak, of the event's own heat, a third as wide */
+  meltingAbove?: number;
+  /** S of METHODS 4.8 */
+  selfHeating?: number;
+}
+
+const PLAIN = { noise: 0.003, drift: 0.05, points: 100 };
+
+export const DIFFICULTIES: Difficulty[] = [
+  { name: 'no noise, no drift', recording: { noise: 0, drift: 0 } },
+  { name: 'plain: noise 0.3 %, drift 5 %, 100 points' },
+  { name: 'noise 1 %', recording: { noise: 0.01 } },
+  { name: 'noise 2 %', recording: { noise: 0.02 } },
+  { name: 'noise 5 %', recording: { noise: 0.05 } },
+  { name: 'pink noise 0.3 %', recording: { pinkNoise: 0.003 } },
+  { name: 'drift 5 %, parabola', recording: { driftOrder: 2 } },
+  { name: 'drift 20 %, parabola', recording: { drift: 0.2, driftOrder: 2 } },
+  { name: 'drift 20 %', recording: { drift: 0.2 } },
+  { name: 'drift 100 %', recording: { drift: 1 } },
+  { name: 'noise 1 %, drift 20 %', recording: { noise: 0.01, drift: 0.2 } },
+  { name: '1000 points', points: 1000 },
+  { name: '20 points', points: 20 },
+  { name: '10 points', points: 10 },
+  { name: '6 points', points: 6 },
+  { name: 'uneven sampling, 10 % lost', uneven: { jitter: 0.45, lost: 0.1 } },
+  { name: 'spikes: 5 of 3 heights', recording: { spikes: { count: 5, height: 3 } } },
+  { name: 'response 0.1 of the width', response: 0.1 },
+  { name: 'response 0.3 of the width', response: 0.3 },
+  { name: 'response 0.8 of the width', response: 0.8 },
+  { name: 'warming as high as the event', heatCapacity: 1 },
+  { name: 'crystal step −5 %', crystalStep: -0.05 },
+  { name: 'glass transition 3 widths below', glassTransition: { widthsBelow: 3, step: 0.15 } },
+  { name: 'glass transition 1.5 widths below', glassTransition: { widthsBelow: 1.5, step: 0.15 } },
+  { name: 'melting 3 widths above', meltingAbove: 3 },
+  { name: 'melting 1.5 widths above', meltingAbove: 1.5 },
+  { name: 'self-heating S = 0.1', selfHeating: 0.1 },
+  { name: 'self-heating S = 0.5', selfHeating: 0.5 },
+];
+
+/** Errors of temperatures in units of the event's true width, of ΔH relative; missing where nothing came. */
+export interface ReductionErrors {
+  peak?: number;
+  early?: number;
+  half?: number;
+  late?: number;
+  enthalpy?: number;
+  /** What stopped it */
+  reason?: string;
+}
+
+interface Drawn {
+  model: ScanModel;
+  rateKPerS: number;
+}
+
+/** A scan at 0.03 … 40 000 K/s with E/(R Tp) between 20 and 70. */
+function drawScan(difficulty: Difficulty, random: Random): Drawn {
+  const rateKPerS = random.betweenLog(0.03, 40_000);
+  const peakK = random.between(380, 850);
+  const energy = R * peakK * random.between(20, 70);
+  const exponent = random.between(1.5, 4);
+  const enthalpyJPerKg = random.betweenLog(10e3, 120e3);
+  const temperature = arrheniusLawWithPeak(energy, peakK, rateKPerS);
+  const widthK = (2.446 * R * peakK ** 2) / (exponent * energy);
+  const widthS = widthK / rateKPerS;
+  const unit = enthalpyJPerKg / widthK;
+  const { glassTransition: glass, meltingAbove } = difficulty;
+  const sample: SampleModel = {
+    events: [{ temperature, rate: jmakLaw(exponent), enthalpyJPerKg }],
+    heatCapacity: { jPerKgK: (difficulty.heatCapacity ?? 0) * unit, slopeJPerKgK2: 0, referenceK: peakK },
+    crystalStepJPerKgK: (difficulty.crystalStep ?? 0) * unit,
+    glassTransition: glass && {
+      temperatureK: peakK - glass.widthsBelow * widthK,
+      widthK: widthK / 10,
+      stepJPerKgK: glass.step * unit,
+      overshootJPerKg: (glass.overshoot ?? 0) * enthalpyJPerKg,
+    },
+    melting:
+      meltingAbove === undefined
+        ? undefined
+        : { temperatureK: peakK + meltingAbove * widthK, widthK: widthK / 10, enthalpyJPerKg },
+  };
+  const limits = programmeLimits(temperature, exponent, [rateKPerS], 4);
+  const model: ScanModel = {
+    sample,
+    instrument: {
+      offsetK: random.between(-1, 1),
+      shiftS: 0.1 * widthS,
+      responseS: (difficulty.response ?? 0) * widthS,
+    },
+    programme: rampProgramme(
+      glass ? Math.min(limits.startK, peakK - (glass.widthsBelow + 3) * widthK) : limits.startK,
+      meltingAbove ? Math.max(limits.endK, peakK + (meltingAbove + 4) * widthK) : limits.endK,
+      rateKPerS,
+    ),
+    massKg: rateKPerS < 10 ? 8e-6 : 50e-12,
+  };
+  if (difficulty.selfHeating !== undefined) {
+    const heatCapacityJPerKgK = 1500;
+    // S = contact (ΔH/c_p) (dα/dt)_max E/(R T²), (dα/dt)_max ≈ n/(e) × E β/(R T²) from K R T²/(E β) = 1 at the peak
+    const sharpness = energy / (R * peakK ** 2);
+    const steepest = (exponent / Math.E) * sharpness * rateKPerS;
+    const contactS = difficulty.selfHeating / ((enthalpyJPerKg / heatCapacityJPerKgK) * steepest * sharpness);
+    model.selfHeating = { contactS, heatCapacityJPerKgK };
+  }
+  return { model, rateKPerS };
+}
+
+/** Simulates and reduces one scan; `index` and `seed` fix it whatever the difficulty, so that columns compare like with like. */
+export function reduceSimulated(difficulty: Difficulty, seed: string, index: number): ReductionErrors {
+  const random = seededRandom(`reduction/${seed}/${index}`);
+  const { model, rateKPerS } = drawScan(difficulty, random);
+  const [truth] = eventTruths(model);
+  const { endS } = model.programme;
+  const points = difficulty.points ?? PLAIN.points;
+  const rows = Math.max(40, Math.round((endS / truth.widthS) * points));
+  const uneven = difficulty.uneven && { ...difficulty.uneven, random: random.fork('sampling') };
+  const solution = solveScan(model, samplingTimes(0, endS, rows, uneven));
+  const { instrument, massKg } = model;
+  const recorded = recordScan(solution, instrument.offsetK, { ...PLAIN, ...difficulty.recording }, random);
+  const scan: ReadScan = {
+    timeS: recorded.timeS,
+    temperatureK: recorded.temperatureK,
+    heatFlow: recorded.heatFlowW,
+    heatFlowUnit: 'W',
+    columns: [],
+    dialect: 'simulated',
+    flags: [],
+  };
+  const calibration: InstrumentCalibration = {
+    instrument: 'simulated',
+    kind: rateKPerS < 10 ? 'furnace' : 'chip',
+    source: 'sheet',
+    offsetK: instrument.offsetK,
+    offsetSeK: 0.1,
+    lagS: instrument.shiftS + instrument.responseS,
+    lagSeS: 0.05 * instrument.shiftS,
+    responseS: instrument.responseS,
+    standards: 0,
+  };
+  const outcome = reduceScan(scan, {
+    file: `simulated-${index}`,
+    sample: 'simulated',
+    role: 'sample',
+    rateNominalKPerS: rateKPerS,
+    massKg,
+    exotherm: 'up',
+    calibration,
+  });
+  if (!outcome.ok) return { reason: outcome.code };
+  const { events, flags } = outcome.reduced;
+  if (events.length === 0) return { reason: flags.map(({ code }) => code).join('+') || 'no event' };
+  // The event nearest to the truth, should more than one have been found
+  const event = events.reduce((a, b) => (Math.abs(b.peakK - truth.peakK) < Math.abs(a.peakK - truth.peakK) ? b : a));
+  const at = (conversion: number): number | undefined =>
+    event.curve &&
+    (event.curve.temperatureK[Math.round(conversion * 100) - 1] - truth.temperatureAtK[conversion]) / truth.widthK;
+  return {
+    peak: (event.peakK - truth.peakK) / truth.widthK,
+    early: at(0.1),
+    half: at(0.5),
+    late: at(0.9),
+    enthalpy: event.enthalpyJPerKg && event.enthalpyJPerKg / model.sample.events[0].enthalpyJPerKg - 1,
+    reason: event.curve ? undefined : 'no curve',
+  };
+}
+
+export function reductionStudy({ count = 40, seed }: StudyOptions): string {
+  const columns = ['peak', 'early', 'half', 'late', 'enthalpy'] as const;
+  const rows = DIFFICULTIES.map((difficulty) => {
+    const results = Array.from({ length: count }, (_, index) => reduceSimulated(difficulty, seed, index));
+    const cells = columns.map((column) => {
+      const errors = results.flatMap((result) => (result[column] === undefined ? [] : [Math.abs(result[column])]));
+      return `${percent(quantile(errors, 0.5), 1)} / ${percent(quantile(errors, 0.95), 1)}`;
+    });
+    const reasons = new Map<string, number>();
+    for (const { reason } of results) if (reason) reasons.set(reason, (reasons.get(reason) ?? 0) + 1);
+    return [difficulty.name, ...cells, [...reasons].map(([reason, times]) => `${times} × ${reason}`).join(', ')];
+  });
+  return [
+    `Median / 95th percentile of |error| over ${count} scans at 0.03 … 40 000 K/s; temperatures in units of the event's full width at half maximum.`,
+    markdownTable(['feature', 'Tp', 'T(0.1)', 'T(0.5)', 'T(0.9)', 'ΔH', 'not reduced'], rows),
+  ].join('\n\n');
+}

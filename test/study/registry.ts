@@ -1,0 +1,27 @@
+import { generatorsAgree } from './generators-agree.ts';
+import { reductionStudy } from './reduction.ts';
+import { roundTripStudy } from './round-trip.ts';
+
+export interface StudyOptions {
+  /** Number of samples, scans or settings; each study has its own default. */
+  count?: number;
+  seed: string;
+}
+
+/** A study computes and returns Markdown; it prints nothing itself. */
+export type Study = (options: StudyOptions) => string;
+
+export const STUDIES: Record<string, { about: string; run: Study }> = {
+  'round-trip': {
+    about: 'simulated campaigns through reading, reduction and fits: error of E by method, and of n',
+    run: roundTripStudy,
+  },
+  'generators-agree': {
+    about: 'the two sources of simulated truth against each other, noise-free',
+    run: generatorsAgree,
+  },
+  reduction: {
+    about: 'single simulated scans: error of Tp, T(α) and ΔH against noise, drift and points',
+    run: reductionStudy,
+  },
+};
