@@ -12,15 +12,17 @@ export function createTableQueue(): Queue {
       if (delaySeconds > 0) setTimeout(ring, delaySeconds * 1000).unref();
       else ring();
     },
-    heard(timeoutMs) {
+    heard(timeoutMs, signal) {
       return new Promise((resolve) => {
         const done = () => {
           clearTimeout(timer);
           waiting.delete(done);
+          signal.removeEventListener('abort', done);
           resolve();
         };
         const timer = setTimeout(done, timeoutMs);
         waiting.add(done);
+        signal.addEventListener('abort', done);
       });
     },
   };

@@ -37,8 +37,8 @@ export class BlobMissing extends Error {
 /** A wake-up: the job row is the record, a message holds only its id and may be lost or doubled. */
 export interface Queue {
   wake(jobId: string, delaySeconds: number): Promise<void>;
-  /** Resolves at the next wake-up that this process hears of, or after `timeoutMs`; absent where wake-ups are delivered from outside. */
-  heard?(timeoutMs: number): Promise<void>;
+  /** Resolves at the next wake-up that this process hears of, after `timeoutMs`, or when `signal` aborts; absent where wake-ups are delivered from outside. */
+  heard?(timeoutMs: number, signal: AbortSignal): Promise<void>;
 }
 
 export interface Clock {

@@ -32,22 +32,19 @@ export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions
   const cache = new ColumnsCache();
   const inFlight = new Map<string, { job: ClaimedJob; end: Promise<void> }>();
   const stopping = new AbortController();
-  let heartbeat: Promise<void> | undefined;
+  const stopped = new Promise<void>((resolve) => stopping.signal.addEventListener('abort', () => resolve()));
+  let emptied = new AbortController();
   let sweptAt = Number.NEGATIVE_INFINITY;
   let background: Promise<void> | undefined;
 
   /** Extends leases while anything is in flight. A lease lost meanwhile shows at the write-back, which then fails whole. */
-  async function keepLeases(): Promise<void> {
-    const done = new AbortController();
-    while (inFlight.size > 0) {
-      const idle = Promise.all([...inFlight.values()].map(({ end }) => end)).then(() => done.abort());
-      await Promise.race([idle, ports.clock.sleep(HEARTBEAT_MS, done.signal)]);
-      await extendLeases(
-        ports,
-        [...inFlight.values()].map(({ job }) => job),
-      ).catch(() => undefined);
+  async function keepLeases(signal: AbortSignal): Promise<void> {
+    while (!signal.aborted) {
+      await ports.clock.sleep(HEARTBEAT_MS, signal);
+      if (signal.aborted) return;
+      const held = [...inFlight.values()].map(({ job }) => job);
+      await extendLeases(ports, held).catch(() => undefined);
     }
-    heartbeat = undefined;
   }
 
   function launch(job: ClaimedJob): void {
@@ -56,9 +53,13 @@ export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions
       .catch(() => undefined)
       .then(() => {
         inFlight.delete(job.id);
+        if (inFlight.size === 0) emptied.abort();
       });
+    if (inFlight.size === 0) {
+      emptied = new AbortController();
+      void keepLeases(emptied.signal);
+    }
     inFlight.set(job.id, { job, end });
-    heartbeat ??= keepLeases();
   }
 
   /** Fills the free places. Returns whether anything was taken. */
@@ -75,19 +76,19 @@ export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions
     return taken.length > 0;
   }
 
-  /** Until a job ends, a wake-up is heard, or the time is over. */
-  async function rest(ms: number, signal?: AbortSignal): Promise<void> {
-    const heard = ports.queue.heard?.(ms) ?? ports.clock.sleep(ms, signal);
-    await Promise.race(
-      [heard, ...[...inFlight.values()].map(({ end }) => end), aborted(signal)].filter((p) => p !== undefined),
-    );
+  /** Until a job ends, a wake-up is heard, the runner is stopped, or the time is over. */
+  async function rest(ms: number): Promise<void> {
+    const over = new AbortController();
+    const heard = ports.queue.heard?.(ms, over.signal) ?? ports.clock.sleep(ms, over.signal);
+    await Promise.race([heard, stopped, ...[...inFlight.values()].map(({ end }) => end)]);
+    over.abort();
   }
 
   async function loop(): Promise<void> {
     while (!stopping.signal.aborted) {
       const took = await fill().catch(() => false);
       if (took && inFlight.size < concurrency) continue;
-      await rest(POLL_MS, stopping.signal);
+      await rest(POLL_MS);
     }
     await Promise.all([...inFlight.values()].map(({ end }) => end));
   }
@@ -114,8 +115,4 @@ export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions
       await background;
     },
   };
-}
-
-function aborted(signal: AbortSignal | undefined): Promise<void> | undefined {
-  return signal && new Promise((resolve) => signal.addEventListener('abort', () => resolve(), { once: true }));
 }

@@ -1,6 +1,12 @@
+import { and, asc, eq, sql } from 'drizzle-orm';
+import { campaigns, samples, scans } from '../../schema/tables/index.ts';
 import type { ReducedScan } from '../../schema/wire/reduced.ts';
+import { decodeReduceOutcome } from '../../schema/wire/reduced-blob.ts';
+import type { SampleState } from '../../schema/wire/states.ts';
 import type { Ports } from '../ports/index.ts';
+import { LOCAL_LAB } from './campaigns.ts';
 import type { ResultRow } from './tables/index.ts';
+import { loadScanRecords, scanRowsOf } from './tables/scan-table.ts';
 
 export interface ScanView {
   id: string;
@@ -14,33 +20,72 @@ export interface ScanView {
 }
 
 /** One scan within a lab, or undefined. */
-export async function findScan(_ports: Ports, _scanId: string, _lab?: string): Promise<ScanView | undefined> {
-  throw new Error('not written yet');
+export async function findScan(ports: Ports, scanId: string, lab = LOCAL_LAB): Promise<ScanView | undefined> {
+  const [owner] = await ports.database.read
+    .select({ campaignId: scans.campaignId })
+    .from(scans)
+    .innerJoin(campaigns, eq(campaigns.id, scans.campaignId))
+    .where(and(eq(scans.id, scanId), eq(campaigns.lab, lab)));
+  const [scan] = owner ? await loadScanRecords(ports, { scanId }) : [];
+  if (!owner || !scan) return undefined;
+  return {
+    id: scanId,
+    campaignId: owner.campaignId,
+    rows: scanRowsOf(scan),
+    originalKey: scan.blobKey,
+    bytes: scan.bytes,
+    reducedKey: scan.reducedKey,
+  };
 }
 
 /** The reduced curves of a scan, or undefined when it has none. */
-export async function readReducedScan(_ports: Ports, _scanId: string): Promise<ReducedScan | undefined> {
-  throw new Error('not written yet');
+export async function readReducedScan(ports: Ports, scanId: string): Promise<ReducedScan | undefined> {
+  const [scan] = await ports.database.read
+    .select({ key: scans.reducedKey })
+    .from(scans)
+    .where(and(eq(scans.id, scanId), eq(scans.status, 'reduced')));
+  if (!scan?.key) return undefined;
+  const outcome = decodeReduceOutcome(await ports.blobs.bytes(scan.key));
+  return outcome.ok ? outcome.reduced : undefined;
 }
 
 export interface SampleView {
   id: string;
   campaignId: string;
   sample: string;
-  state: string;
+  state: SampleState;
   reason: string | null;
 }
 
+const SAMPLE_VIEW = {
+  id: samples.id,
+  campaignId: samples.campaignId,
+  sample: samples.sample,
+  state: samples.state,
+  reason: samples.reason,
+};
+
 /** One sample within a lab, or undefined. */
-export async function findSample(_ports: Ports, _sampleId: string, _lab?: string): Promise<SampleView | undefined> {
-  throw new Error('not written yet');
+export async function findSample(ports: Ports, sampleId: string, lab = LOCAL_LAB): Promise<SampleView | undefined> {
+  const [row] = await ports.database.read
+    .select(SAMPLE_VIEW)
+    .from(samples)
+    .innerJoin(campaigns, eq(campaigns.id, samples.campaignId))
+    .where(and(eq(samples.id, sampleId), eq(campaigns.lab, lab)));
+  return row;
 }
 
-export async function listSamples(_ports: Ports, _campaignId: string): Promise<SampleView[]> {
-  throw new Error('not written yet');
+/** Samples of a campaign by name. */
+export function listSamples(ports: Ports, campaignId: string): Promise<SampleView[]> {
+  return ports.database.read
+    .select(SAMPLE_VIEW)
+    .from(samples)
+    .where(eq(samples.campaignId, campaignId))
+    .orderBy(asc(samples.sample));
 }
 
 /** Answers when database and blob store can be reached, else throws what stopped them. */
-export async function checkStores(_ports: Ports): Promise<void> {
-  throw new Error('not written yet');
+export async function checkStores(ports: Ports): Promise<void> {
+  await ports.database.read.run(sql`select 1 from campaigns limit 1`);
+  await ports.blobs.has('derived/reachable');
 }

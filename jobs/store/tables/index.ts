@@ -1,5 +1,9 @@
 import type { Cell, ResultTable } from '../../../schema/wire/result-tables.ts';
 import type { Ports } from '../../ports/index.ts';
+import { readConversionTable } from './conversion-table.ts';
+import { readFlagTable } from './flag-table.ts';
+import { readInstrumentTable, readParameterTable, readPlanTable } from './parameter-table.ts';
+import { readScanTable } from './scan-table.ts';
 
 export type ResultRow = Record<string, Cell>;
 
@@ -19,11 +23,41 @@ export interface TableFilter {
  * `conversion` reads the stored curves one scan at a time.
  */
 export async function* readTable(
-  _ports: Pick<Ports, 'database' | 'blobs'>,
-  _campaignId: string,
-  _table: ResultTable,
-  _filter: TableFilter = {},
+  ports: Pick<Ports, 'database' | 'blobs'>,
+  campaignId: string,
+  table: ResultTable,
+  filter: TableFilter = {},
 ): AsyncGenerator<ResultRow> {
-  yield* [];
-  throw new Error('not written yet');
+  const { offset = 0, limit = Number.POSITIVE_INFINITY } = filter;
+  let position = 0;
+  if (limit <= 0) return;
+  for await (const row of await rowsOf(ports, campaignId, table, filter)) {
+    if (position++ < offset) continue;
+    yield row;
+    if (position >= offset + limit) return;
+  }
+}
+
+async function rowsOf(
+  ports: Pick<Ports, 'database' | 'blobs'>,
+  campaignId: string,
+  table: ResultTable,
+  filter: TableFilter,
+): Promise<Iterable<ResultRow> | AsyncIterable<ResultRow>> {
+  const { sample } = filter;
+  switch (table) {
+    case 'parameters':
+      return readParameterTable(ports, campaignId, filter);
+    case 'scans':
+      return readScanTable(ports, campaignId, sample);
+    case 'conversion':
+      return readConversionTable(ports, campaignId, sample);
+    case 'instruments':
+      return readInstrumentTable(ports, campaignId);
+    case 'coverage':
+    case 'gaps':
+      return readPlanTable(ports, campaignId, table, sample);
+    case 'flags':
+      return (await readFlagTable(ports, campaignId)).filter((row) => sample === undefined || row.sample === sample);
+  }
 }

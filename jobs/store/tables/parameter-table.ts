@@ -1,0 +1,80 @@
+import { and, asc, eq } from 'drizzle-orm';
+import { instruments, parameters, plans } from '../../../schema/tables/index.ts';
+import type { Ports } from '../../ports/index.ts';
+import type { ResultRow, TableFilter } from './index.ts';
+import { compareCells } from './scan-table.ts';
+
+/** By sample, then as the fit ordered them. */
+export async function readParameterTable(
+  ports: Pick<Ports, 'database'>,
+  campaignId: string,
+  { sample, quantity, method, event }: TableFilter,
+): Promise<ResultRow[]> {
+  const rows = await ports.database.read
+    .select()
+    .from(parameters)
+    .where(
+      and(
+        eq(parameters.campaignId, campaignId),
+        sample === undefined ? undefined : eq(parameters.sample, sample),
+        quantity === undefined ? undefined : eq(parameters.quantity, quantity),
+        method === undefined ? undefined : eq(parameters.method, method),
+        event === undefined ? undefined : eq(parameters.event, event),
+      ),
+    )
+    .orderBy(asc(parameters.sample), asc(parameters.position));
+  return rows.map((row) => ({
+    sample: row.sample,
+    event: row.event,
+    quantity: row.quantity,
+    method: row.method,
+    conversion: row.conversion,
+    temperature_K: row.temperatureK,
+    value: row.value,
+    unit: row.unit,
+    lower95: row.lower95,
+    upper95: row.upper95,
+    scan_count: row.scanCount,
+    rate_min_K_per_s: row.rateMinKPerS,
+    rate_max_K_per_s: row.rateMaxKPerS,
+    flags: row.flags,
+    interval: row.interval,
+    variant: row.variant,
+  }));
+}
+
+/** Calibrated instruments by name. */
+export async function readInstrumentTable(ports: Pick<Ports, 'database'>, campaignId: string): Promise<ResultRow[]> {
+  const rows = await ports.database.read
+    .select({ calibration: instruments.calibration })
+    .from(instruments)
+    .where(eq(instruments.campaignId, campaignId));
+  const calibrations = rows.flatMap((row) => row.calibration ?? []);
+  calibrations.sort((a, b) => compareCells(a.instrument, b.instrument));
+  return calibrations.map((row) => ({
+    instrument: row.instrument,
+    kind: row.kind,
+    offset_K: row.offsetK,
+    offset_se_K: row.offsetSeK,
+    lag_s: row.lagS,
+    lag_se_s: row.lagSeS,
+    heat_factor: null,
+    heat_factor_se: null,
+    standards: row.standards,
+    source: row.source,
+    offset_slope: null,
+    response_time_s: row.responseS ?? null,
+  }));
+}
+
+/** Coverage or gaps of the last plan, in the plan's order. */
+export async function readPlanTable(
+  ports: Pick<Ports, 'database'>,
+  campaignId: string,
+  part: 'coverage' | 'gaps',
+  sample?: string,
+): Promise<ResultRow[]> {
+  const [plan] = await ports.database.read.select().from(plans).where(eq(plans.campaignId, campaignId));
+  const rows: { sample: string }[] = plan?.[part] ?? [];
+  return rows.filter((row) => sample === undefined || row.sample === sample) as unknown as ResultRow[];
+}

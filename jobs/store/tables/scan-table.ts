@@ -1,0 +1,183 @@
+import { and, eq, sql } from 'drizzle-orm';
+import { files, scans } from '../../../schema/tables/index.ts';
+import type { Flag } from '../../../schema/wire/flags.ts';
+import type { ReducedSummary } from '../../../schema/wire/reduced-blob.ts';
+import type { Ports } from '../../ports/index.ts';
+import type { ResultRow } from './index.ts';
+
+export interface ScanRecord {
+  scanId: string;
+  fileId: string;
+  path: string;
+  sha256: string;
+  bytes: number;
+  blobKey: string;
+  sample: string | null;
+  instrument: string | null;
+  role: string;
+  segment: number | null;
+  sheetRow: { rateKPerS?: number; massKg?: number; replicate?: string } | null;
+  status: string;
+  reason: string | null;
+  reducedKey: string | null;
+  result: ReducedSummary | null;
+  flags: Flag[];
+  fileFlags: Flag[];
+}
+
+/** Text by code unit, missing first: the same order on every machine. */
+export const compareCells = (a: string | number | null, b: string | number | null): number => {
+  if (a === b) return 0;
+  if (a === null) return -1;
+  if (b === null) return 1;
+  return a < b ? -1 : 1;
+};
+
+/** Scans of a campaign, or one of them, in the order of scans.csv: by path, bytes, segment, sample, instrument. */
+export async function loadScanRecords(
+  ports: Pick<Ports, 'database'>,
+  where: { campaignId: string; sample?: string } | { scanId: string },
+): Promise<ScanRecord[]> {
+  const rows: ScanRecord[] = await ports.database.read
+    .select({
+      scanId: scans.id,
+      fileId: files.id,
+      path: files.path,
+      sha256: files.sha256,
+      bytes: files.bytes,
+      blobKey: files.blobKey,
+      sample: scans.sample,
+      instrument: scans.instrument,
+      role: scans.role,
+      segment: scans.segment,
+      sheetRow: scans.sheetRow,
+      status: scans.status,
+      reason: scans.reason,
+      reducedKey: scans.reducedKey,
+      result: scans.result,
+      flags: scans.flags,
+      fileFlags: files.flags,
+    })
+    .from(scans)
+    .innerJoin(files, eq(files.id, scans.fileId))
+    .where(
+      'scanId' in where
+        ? eq(scans.id, where.scanId)
+        : and(
+            eq(scans.campaignId, where.campaignId),
+            where.sample === undefined ? undefined : eq(scans.sample, where.sample),
+          ),
+    );
+  return rows.sort(
+    (a, b) =>
+      compareCells(a.path, b.path) ||
+      compareCells(a.sha256, b.sha256) ||
+      compareCells(a.segment, b.segment) ||
+      compareCells(a.sample, b.sample) ||
+      compareCells(a.instrument, b.instrument),
+  );
+}
+
+/** Files without a scan that must still be seen: archives that could not be unpacked. */
+async function loadRefusedArchives(ports: Pick<Ports, 'database'>, campaignId: string): Promise<ResultRow[]> {
+  const rows = await ports.database.read
+    .select()
+    .from(files)
+    .where(
+      and(
+        eq(files.campaignId, campaignId),
+        eq(files.kind, 'archive'),
+        eq(files.superseded, false),
+        sql`state in ('refused', 'failed')`,
+      ),
+    );
+  return rows.map((file) => ({
+    ...EMPTY_ROW,
+    file: file.path,
+    sha256: file.sha256,
+    status: file.state === 'refused' ? 'set_aside' : 'failed',
+    reason: file.reason,
+    flags: codesOf(file.flags),
+  }));
+}
+
+const EMPTY_ROW: ResultRow = {
+  file: null,
+  sha256: null,
+  sample: null,
+  instrument: null,
+  role: null,
+  event: null,
+  status: null,
+  reason: null,
+  rate_nominal_K_per_s: null,
+  rate_K_per_s: null,
+  mass_mg: null,
+  glass_transition_K: null,
+  onset_K: null,
+  peak_K: null,
+  end_K: null,
+  width_K: null,
+  enthalpy_J_per_g: null,
+  flags: [],
+  segment: null,
+  replicate: null,
+  centroid_K: null,
+};
+
+const codesOf = (flags: readonly Flag[], event?: number): string[] => [
+  ...new Set(flags.filter((f) => f.event === undefined || event === undefined || f.event === event).map((f) => f.code)),
+];
+
+const KG_TO_MG = 1e6;
+const J_PER_KG_TO_J_PER_G = 1e-3;
+
+/** Rows of scans.csv of one scan: one an event, or one with an empty event. */
+export function scanRowsOf(scan: ScanRecord): ResultRow[] {
+  const { result, sheetRow } = scan;
+  const analysed = result?.segments.find((segment) => segment.segment === result.segment);
+  const massKg = result?.massKg ?? sheetRow?.massKg;
+  const flags = [...scan.fileFlags, ...scan.flags];
+  const common: ResultRow = {
+    ...EMPTY_ROW,
+    file: scan.path,
+    sha256: scan.sha256,
+    sample: scan.sample,
+    instrument: scan.instrument,
+    role: scan.sample === null ? null : scan.role,
+    status: scan.status,
+    reason: scan.reason,
+    rate_nominal_K_per_s: sheetRow?.rateKPerS ?? null,
+    rate_K_per_s: analysed?.rateKPerS ?? null,
+    mass_mg: massKg === undefined ? null : massKg * KG_TO_MG,
+    glass_transition_K: result?.glassTransitionK ?? null,
+    segment: result?.segment ?? scan.segment,
+    replicate: sheetRow?.replicate ?? null,
+  };
+  if (!result || result.events.length === 0) return [{ ...common, flags: codesOf(flags) }];
+  return result.events.map((event) => ({
+    ...common,
+    event: event.event,
+    rate_K_per_s: event.rateKPerS,
+    onset_K: event.onsetK,
+    peak_K: event.peakK,
+    end_K: event.endK,
+    width_K: event.widthK,
+    centroid_K: event.centroidK,
+    enthalpy_J_per_g: event.enthalpyJPerKg === undefined ? null : event.enthalpyJPerKg * J_PER_KG_TO_J_PER_G,
+    flags: codesOf(flags, event.event),
+  }));
+}
+
+export async function readScanTable(
+  ports: Pick<Ports, 'database'>,
+  campaignId: string,
+  sample?: string,
+): Promise<ResultRow[]> {
+  const rows = (await loadScanRecords(ports, { campaignId, sample })).flatMap(scanRowsOf);
+  if (sample !== undefined) return rows;
+  // The sort is stable: rows of one file keep their order.
+  return [...rows, ...(await loadRefusedArchives(ports, campaignId))].sort((a, b) =>
+    compareCells(a.file as string, b.file as string),
+  );
+}
