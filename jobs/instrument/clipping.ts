@@ -18,16 +18,26 @@ export interface ClippedRun {
 
 /** The longest run at the maximum and at the minimum, where it is one of clipping; `length` sums all such runs there. */
 export function clippedRuns(signal: Float64Array): ClippedRun[] {
-  let maximum = Number.NEGATIVE_INFINITY;
-  let minimum = Number.POSITIVE_INFINITY;
+  let maximum = signal[0];
+  let minimum = signal[0];
   let smallestStep = Number.POSITIVE_INFINITY;
-  for (let i = 0; i < signal.length; i++) {
+  let before = signal[0];
+  let run = 1;
+  let longest = 1;
+  for (let i = 1; i < signal.length; i++) {
     const value = signal[i];
+    if (value === before) {
+      if (++run > longest) longest = run;
+      continue;
+    }
+    run = 1;
     if (value > maximum) maximum = value;
-    if (value < minimum) minimum = value;
-    const step = i === 0 ? 0 : Math.abs(value - signal[i - 1]);
-    if (step > 0 && step < smallestStep) smallestStep = step;
+    else if (value < minimum) minimum = value;
+    const step = value > before ? value - before : before - value;
+    if (step < smallestStep) smallestStep = step;
+    before = value;
   }
+  if (longest < SHORTEST_RUN) return [];
   if (!(maximum - minimum >= FEWEST_LEVELS * smallestStep)) return [];
   return [longestRun(signal, 'maximum', maximum), longestRun(signal, 'minimum', minimum)].filter(
     (run) => run !== undefined,

@@ -162,9 +162,9 @@ function unitProblem(
   unitCells: string[],
 ): NonNullable<Candidate['unitProblem']> {
   const { cell, index } = option;
-  const underneath = unitCells[index] ?? '';
+  const underneath = (unitCells[index] ?? '').replace(/^[[(](.*)[\])]$/, '$1').trim();
   if (underneath !== '' && below !== undefined && cell.unknownUnit === undefined)
-    return { cell: underneath, line: below.line, quantity: cell.quantity, unit: underneath };
+    return { cell: cell.text, line: below.line, quantity: cell.quantity, unit: underneath };
   return { cell: cell.text, line: line.line, quantity: cell.quantity, unit: cell.unknownUnit };
 }
 
@@ -216,10 +216,13 @@ const HEADER_ADVICE =
 function refusalOf(nearest: Candidate | undefined, lines: readonly HeadLine[]): ReadRefusal {
   if (nearest?.unitProblem !== undefined) {
     const { cell, line, quantity, unit } = nearest.unitProblem;
-    const found = unit === undefined ? 'states no unit' : `has the unit ${quote(unit)}, which is not known`;
+    const column = `the ${quantity} column ${quote(cell)}`;
     return {
       code: 'unit-unknown',
-      reason: `the ${quantity} column ${quote(cell)} (line ${line}) ${found}`,
+      reason:
+        unit === undefined
+          ? `${column} (line ${line}) states no unit`
+          : `the unit ${quote(unit)} (line ${line}) of ${column} is not known`,
       action: `Write one of ${offeredUnits(quantity)} in square brackets behind the column's name or in the row below it, and send the file again.`,
       line,
     };

@@ -5,7 +5,7 @@ import { clippedRuns } from './clipping.ts';
 import type { ColumnsBuffer } from './columns-buffer.ts';
 import type { ScanHeader } from './header.ts';
 import { addToTally, type BadLine, createTally, type LineTally, type OddRows } from './odd-rows.ts';
-import { toSi, type Unit } from './units.ts';
+import type { Unit } from './units.ts';
 
 /** Share of bad rows that may be dropped (METHODS 2). */
 export const BAD_ROW_SHARE = 0.001;
@@ -41,12 +41,13 @@ export function finishScan(raw: RawRows): ReadOutcome {
   }));
 
   const bad = odd.bad;
-  const repeats = dropImpossibleRows(columns, bad);
+  const sound = isSound(columns);
+  const repeats = sound ? createTally() : dropImpossibleRows(columns, bad);
   const allowed = Math.floor(total * BAD_ROW_SHARE);
   const cutLine = raw.openLine !== undefined && raw.openLine === odd.lastBadLine ? raw.openLine : undefined;
   if (bad.count > allowed) return refuse(tooManyBadRows(bad, total, allowed, cutLine));
   const rowsBefore = columns.rows;
-  averageRepeats(columns);
+  if (!sound) averageRepeats(columns);
   const rows = columns.rows;
   if (rows < FEWEST_ROWS) return refuse(tooFewRows(rows, rowsBefore, header));
 
@@ -101,9 +102,21 @@ export function finishScan(raw: RawRows): ReadOutcome {
   return { ok: true, scan };
 }
 
-function columnToSi(column: Float64Array, rows: number, unit: Unit): void {
-  if (unit.offset === 0 && unit.scale === 1 && unit.per === 1) return;
-  for (let i = 0; i < rows; i++) column[i] = toSi(column[i], unit);
+function columnToSi(column: Float64Array, rows: number, { offset, scale, per }: Unit): void {
+  if (offset !== 0) for (let i = 0; i < rows; i++) column[i] += offset;
+  if (scale !== 1) for (let i = 0; i < rows; i++) column[i] *= scale;
+  if (per !== 1) for (let i = 0; i < rows; i++) column[i] /= per;
+}
+
+/** Nothing to repair: time strictly increasing, temperature above 0 K. */
+function isSound({ time, temperature, rows }: ColumnsBuffer): boolean {
+  let before = Number.NEGATIVE_INFINITY;
+  for (let i = 0; i < rows; i++) {
+    const t = time[i];
+    if (!(t > before && temperature[i] > 0)) return false;
+    before = t;
+  }
+  return true;
 }
 
 /**
