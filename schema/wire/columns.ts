@@ -42,8 +42,8 @@ export function decodeColumns(bytes: Uint8Array): Columns {
   const columns: Record<string, Float64Array> = {};
   let at = 12 + length;
   for (const [name, n] of head.columns) {
-    // A copy, so that the alignment of the blob in its buffer does not matter.
-    columns[name] = new Float64Array(bytes.slice(at, at + n * 8).buffer);
+    // A copy, so that the alignment of the blob in its buffer does not matter; `slice` would be a view where the bytes are a Node buffer.
+    columns[name] = new Float64Array(new Uint8Array(bytes.subarray(at, at + n * 8)).buffer);
     at += n * 8;
   }
   return { meta: head.meta, columns };
