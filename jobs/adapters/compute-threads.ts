@@ -5,11 +5,11 @@ import { transferableBuffers } from './transfer.ts';
 
 /** The computations in `workers` threads. A thread that dies or runs out of memory rejects its task and is replaced. */
 export function createComputeThreads(workers: number): Compute {
-  // Run from the sources, a thread needs the TypeScript loader; in the built package it is a file beside this one.
+  // In the built package a thread's file lies beside this one; run from the sources it needs the TypeScript loader first.
   const fromSources = import.meta.url.endsWith('.ts');
   const pool = new Piscina({
     filename: fileURLToPath(new URL(fromSources ? './compute-thread.ts' : './compute-thread.js', import.meta.url)),
-    execArgv: fromSources ? ['--import', 'tsx'] : [],
+    execArgv: fromSources ? ['--import', new URL('./typescript-loader.mjs', import.meta.url).href] : [],
     minThreads: workers,
     maxThreads: workers,
   });

@@ -58,7 +58,10 @@ export function createFileBlobs(root: string): BlobStore {
       const handle = await open(pathOf(key)).catch(missing(key));
       return Readable.toWeb(createReadStream('', { fd: handle })) as ReadableStream<Uint8Array>;
     },
-    bytes: (key) => readFile(pathOf(key)).catch(missing(key)),
+    async bytes(key) {
+      const { buffer, byteOffset, byteLength } = await readFile(pathOf(key)).catch(missing(key));
+      return new Uint8Array(buffer, byteOffset, byteLength);
+    },
     async has(key) {
       return (
         (await stat(pathOf(key)).catch((error) => (isMissing(error) ? undefined : Promise.reject(error)))) !== undefined
