@@ -81,6 +81,8 @@ export interface ReductionErrors {
   enthalpy?: number;
   /** What stopped it */
   reason?: string;
+  /** Codes of the flags raised */
+  flags: string[];
 }
 
 interface Drawn {
@@ -182,9 +184,10 @@ export function reduceSimulated(difficulty: Difficulty, seed: string, index: num
     exotherm: 'up',
     calibration,
   });
-  if (!outcome.ok) return { reason: outcome.code };
-  const { events, flags } = outcome.reduced;
-  if (events.length === 0) return { reason: flags.map(({ code }) => code).join('+') || 'no event' };
+  if (!outcome.ok) return { reason: outcome.code, flags: [] };
+  const { events } = outcome.reduced;
+  const flags = [...new Set(outcome.reduced.flags.map(({ code }) => code))];
+  if (events.length === 0) return { reason: 'no event', flags };
   // The event nearest to the truth, should more than one have been found
   const event = events.reduce((a, b) => (Math.abs(b.peakK - truth.peakK) < Math.abs(a.peakK - truth.peakK) ? b : a));
   const at = (conversion: number): number | undefined =>
@@ -197,6 +200,7 @@ export function reduceSimulated(difficulty: Difficulty, seed: string, index: num
     late: at(0.9),
     enthalpy: event.enthalpyJPerKg && event.enthalpyJPerKg / model.sample.events[0].enthalpyJPerKg - 1,
     reason: event.curve ? undefined : 'no curve',
+    flags,
   };
 }
 
@@ -208,12 +212,18 @@ export function reductionStudy({ count = 40, seed }: StudyOptions): string {
       const errors = results.flatMap((result) => (result[column] === undefined ? [] : [Math.abs(result[column])]));
       return `${percent(quantile(errors, 0.5), 1)} / ${percent(quantile(errors, 0.95), 1)}`;
     });
-    const reasons = new Map<string, number>();
-    for (const { reason } of results) if (reason) reasons.set(reason, (reasons.get(reason) ?? 0) + 1);
-    return [difficulty.name, ...cells, [...reasons].map(([reason, times]) => `${times} × ${reason}`).join(', ')];
+    const reasons = results.flatMap(({ reason }) => reason ?? []);
+    return [difficulty.name, ...cells, tally(reasons), tally(results.flatMap(({ flags }) => flags))];
   });
   return [
     `Median / 95th percentile of |error| over ${count} scans at 0.03 … 40 000 K/s; temperatures in units of the event's full width at half maximum.`,
-    markdownTable(['feature', 'Tp', 'T(0.1)', 'T(0.5)', 'T(0.9)', 'ΔH', 'not reduced'], rows),
+    markdownTable(['feature', 'Tp', 'T(0.1)', 'T(0.5)', 'T(0.9)', 'ΔH', 'not reduced', 'flags'], rows),
   ].join('\n\n');
+}
+
+/** `3 × this, 1 × that` */
+function tally(words: readonly string[]): string {
+  const counts = new Map<string, number>();
+  for (const word of words) counts.set(word, (counts.get(word) ?? 0) + 1);
+  return [...counts].map(([word, times]) => `${times} × ${word}`).join(', ');
 }

@@ -79,3 +79,40 @@ test('the Šesták–Berggren law obeys the balance dα/dt = K α^M (1 − α)^N
   expect(ratePerS[0][1]).toBeGreaterThan(ratePerS[0][0]);
   expect(ratePerS[0][1]).toBeGreaterThan(ratePerS[0][2]);
 });
+
+// Two parallel first-order reactions of equal weight, A = 1e10 and 1e15 1/min, E = 80 and 120 kJ/mol (kinetics of Brown
+// et al., Thermochim. Acta 355 (2000) 125, sets 7 and 8), computed with mpmath at 40 digits: reference set B3, file
+// isoconversional/B3_two_parallel_first_order_exact.json. Rate K/min, conversion, T in K, dα/dt in 1/min.
+test.each([
+  [1, 0.1, 354.662875, 0.007792599766],
+  [1, 0.9, 396.880351, 0.01685599414],
+  [8, 0.5, 405.505213, 0.2019855322],
+])('two events side by side: %d K/min at α = %d', (ratePerMin, conversion, temperatureK, ratePerMinute) => {
+  const event = (energy: number, perMinute: number) => ({
+    temperature: arrheniusLaw(energy, Math.log(perMinute / 60)),
+    rate: jmakLaw(1),
+    enthalpyJPerKg: 1,
+  });
+  const startK = 200;
+  const programme = rampProgramme(startK, 500, ratePerMin / 60);
+  const model: ScanModel = {
+    sample: { events: [event(80e3, 1e10), event(120e3, 1e15)] },
+    instrument: IDEAL,
+    programme,
+    massKg: 1,
+  };
+  const timeS = ((temperatureK - startK) / ratePerMin) * 60;
+  const solution = solveScan(model, Float64Array.of(timeS));
+  const mean = (columns: Float64Array[]): number => (columns[0][0] + columns[1][0]) / 2;
+  expect(Math.abs(mean(solution.conversion) - conversion)).toBeLessThan(1e-7);
+  expect((mean(solution.ratePerS) * 60) / ratePerMinute).toBeCloseTo(1, 6);
+});
+
+test('cooling down a ramp converts as much as heating up it: ∫K dT is the same', () => {
+  const up = scanOf(3, 550, 660, 0.5);
+  const down: ScanModel = { ...up, programme: rampProgramme(660, 550, 0.5) };
+  const end = Float64Array.of(up.programme.endS);
+  const [heated, cooled] = [up, down].map((model) => solveScan(model, end).conversion[0][0]);
+  expect(heated).toBeGreaterThan(0.1);
+  expect(cooled).toBeCloseTo(heated, 10);
+});

@@ -46,7 +46,7 @@ export function eventTruths(model: ScanModel, conversions: readonly number[] = [
     }
     return {
       ...peak,
-      widthK: at(fine.sampleK, fall) - at(fine.sampleK, rise),
+      widthK: Math.abs(at(fine.sampleK, fall) - at(fine.sampleK, rise)),
       widthS: at(times, fall) - at(times, rise),
       temperatureAtK,
     };
