@@ -26,15 +26,18 @@ export const CURVE_AXES: Record<CurveKind, Pick<Curves, 'x' | 'y'>> = {
   energy: { x: CONVERSION, y: { quantity: 'activation energy', unit: 'kJ/mol' } },
 };
 
-/** Heat flow, or the baseline under it, of each scan as it was analysed. */
+/** Heat flow of each scan as it was analysed, or the baseline under its event: not a number elsewhere, so left out there. */
 export function traceSeries(scans: ReducedSampleScan[], column: 'heatFlow' | 'baseline'): CurveSeries[] {
-  return scans.map(({ id, file, instrument, reduced: { trace } }) => ({
-    name: file,
-    instrument,
-    scan_id: id,
-    x: [...trace.temperatureK],
-    y: [...trace[column]],
-  }));
+  return scans.map(({ id, file, instrument, reduced: { trace } }) => {
+    const known = (_: number, i: number) => Number.isFinite(trace[column][i]);
+    return {
+      name: file,
+      instrument,
+      scan_id: id,
+      x: [...trace.temperatureK.filter(known)],
+      y: [...trace[column].filter(known)],
+    };
+  });
 }
 
 /** α(T) of every event that has a curve. */

@@ -6,7 +6,7 @@ import { createPlatformQueue, type WakeMessage } from '../jobs/adapters/platform
 import { createBucketBlobs } from '../jobs/adapters/r2-blobs.ts';
 import { systemClock } from '../jobs/adapters/system-clock.ts';
 import type { Ports } from '../jobs/ports/index.ts';
-import { consumeWake, failLostJob, sweep } from '../jobs/runner/index.ts';
+import { consumeWake, sweepWakes } from '../jobs/runner/index.ts';
 import { createApp } from './app.ts';
 import type { ApiApp } from './openapi.ts';
 
@@ -19,7 +19,7 @@ interface Env {
   ASSETS?: Fetcher;
 }
 
-/** Messages that the platform gave up on. */
+/** Messages that the platform gave up on: their rows are looked through like after a loss. */
 const LOST_QUEUE = 'ratespan-jobs-lost';
 
 /** Each look at the database is a request of its own here, and their number is limited: look less often than on Node. */
@@ -56,13 +56,11 @@ export default {
   /** One message, one step. What the row says counts: an error that reaches the platform is a crash, and it retries. */
   async queue(batch: MessageBatch<WakeMessage>, env: Env): Promise<void> {
     const { ports } = homeOf(env);
-    for (const message of batch.messages) {
-      const { jobId } = message.body;
-      await (batch.queue === LOST_QUEUE ? failLostJob(ports, jobId) : consumeWake(ports, jobId));
-      message.ack();
-    }
+    if (batch.queue === LOST_QUEUE) await sweepWakes(ports);
+    else for (const { id, body } of batch.messages) await consumeWake(ports, body.jobId, `message ${id}`);
+    batch.ackAll();
   },
 
-  /** Finds jobs whose message was lost and blobs that no row names. */
-  scheduled: (_event: unknown, env: Env): Promise<void> => sweep(homeOf(env).ports),
+  /** Finds jobs whose message was lost or whose worker vanished. */
+  scheduled: (_event: unknown, env: Env): Promise<void> => sweepWakes(homeOf(env).ports),
 };
