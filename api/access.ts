@@ -11,7 +11,10 @@ export interface ApiEnv {
   Variables: { access: Access };
 }
 
-/** Open mode: no tokens, loopback only. `port` is ours; without it (serverless emulation) the port of the request counts. */
+/**
+ * Open mode: no tokens, loopback only. `port` is ours. Without it (serverless runtime) the host and port are those of the
+ * request's URL, which the platform vouches for, so that a public address is refused.
+ */
 export interface AccessOptions {
   port?: () => number;
 }
@@ -43,12 +46,16 @@ function splitHost(host: string | undefined): { name: string; port: number } | u
 /**
  * Refuses what a browser page of another site, a rebound name or a proxy could send to an open server.
  * Returns the refusal, or undefined when the request may pass.
+ * @param ownPort the port of `written` where not given @param written host and port as asked for
  */
-export function refuseForeignRequest(headers: Headers, ownPort?: number): Problem | undefined {
+export function refuseForeignRequest(
+  headers: Headers,
+  ownPort?: number,
+  written = headers.get('host') ?? undefined,
+): Problem | undefined {
   for (const name of headers.keys())
     if (name === 'forwarded' || name === 'via' || name.startsWith('x-forwarded-'))
       return new Problem('proxy-refused', `the header ${name} says that the request was passed on`);
-  const written = headers.get('host') ?? undefined;
   const host = splitHost(written);
   const port = ownPort ?? host?.port;
   if (!host || !LOOPBACK_NAMES.includes(host.name) || host.port !== port)
@@ -66,7 +73,10 @@ export function refuseForeignRequest(headers: Headers, ownPort?: number): Proble
 /** Checks every request, pages included, and says on whose behalf the routes act. */
 export function guardAccess(options: AccessOptions): MiddlewareHandler<ApiEnv> {
   return async (c, next) => {
-    const refusal = refuseForeignRequest(c.req.raw.headers, options.port?.());
+    const { headers, url } = c.req.raw;
+    const refusal = options.port
+      ? refuseForeignRequest(headers, options.port())
+      : refuseForeignRequest(headers, undefined, new URL(url).host);
     if (refusal) throw refusal;
     c.set('access', OPEN_ACCESS);
     await next();

@@ -26,6 +26,8 @@ export async function runtimeProblem(): Promise<string | undefined> {
 
 export interface Runtime {
   miniflare: Miniflare;
+  /** Where it listens. */
+  url: URL;
   database: Database;
   close(): Promise<void>;
 }
@@ -64,9 +66,10 @@ export async function startRuntime(): Promise<Runtime> {
       [lost]: { maxBatchSize: 10, maxBatchTimeout: 0 },
     },
   });
-  await miniflare.ready;
+  const url = await miniflare.ready;
   return {
     miniflare,
+    url,
     database,
     close: async () => {
       await miniflare.dispose();

@@ -12,11 +12,11 @@ describe.skipIf(problem)('the serverless program in the real runtime', () => {
   let id: string;
   const files = smallCampaign([5, 10, 20]);
 
-  const send = (method: string, path: string, body?: string | Uint8Array, headers: Record<string, string> = {}) =>
-    runtime.miniflare.dispatchFetch(`http://localhost:8787${path}`, { method, body, headers });
+  const send = (method: string, path: string, body?: BodyInit, headers: Record<string, string> = {}) =>
+    fetch(new URL(path, runtime.url), { method, body, headers });
   const get = async (path: string): Promise<Body> => (await send('GET', path)).json();
   const upload = async (path: string, bytes: Uint8Array): Promise<Body> =>
-    (await send('PUT', `/v1/campaigns/${id}/files?path=${encodeURIComponent(path)}`, bytes)).json();
+    (await send('PUT', `/v1/campaigns/${id}/files?path=${encodeURIComponent(path)}`, bytes as BodyInit)).json();
   const settled = () =>
     vi.waitFor(
       async () => {
@@ -40,7 +40,11 @@ describe.skipIf(problem)('the serverless program in the real runtime', () => {
     const made = await send('POST', '/v1/campaigns', '{"name":"serverless"}', { 'content-type': 'application/json' });
     expect(made.status).toBe(201);
     id = ((await made.json()) as Body).id;
-    for (const [path, bytes] of files) expect((await upload(path, bytes)).outcome).toMatch(/^(sheet|accepted)$/);
+    for (const [path, bytes] of files)
+      expect(await upload(path, bytes)).toMatchObject({
+        file: path,
+        outcome: expect.stringMatching(/^(sheet|accepted)$/),
+      });
     const status = await settled();
     expect(status.scans.reduced).toBe(3);
     expect(status.samples).toMatchObject([{ sample: 'glass', state: 'fitted' }]);
@@ -69,6 +73,8 @@ describe.skipIf(problem)('the serverless program in the real runtime', () => {
       db.run(sql`update jobs set state = 'queued', attempts = 0, finished_at = null, next_try_at = 0, woken = 0
         where step = 'plan-campaign' and campaign_id = ${id}`),
     );
+    // Control: nothing else wakes it.
+    await new Promise((resolve) => setTimeout(resolve, 300));
     expect((await get(`/v1/campaigns/${id}/status`)).settled).toBe(false);
     const worker = await runtime.miniflare.getWorker();
     expect((await worker.scheduled({ cron: '*/5 * * * *' })).outcome).toBe('ok');
