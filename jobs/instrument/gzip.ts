@@ -1,8 +1,6 @@
 /** gzip data (RFC 1952), one member or several in a row. */
 import { Gunzip } from 'fflate';
-import { type Budget, crc32, joined } from './inflate.ts';
-
-const STEP_BYTES = 16_384;
+import { type Budget, crc32, joined, STEP_BYTES } from './inflate.ts';
 
 /**
  * Unpacks gzip data; length and, for a single member, checksum are held against the trailer.

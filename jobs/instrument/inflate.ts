@@ -1,8 +1,8 @@
 /** Inflating with limits that hold WHILE bytes come out, so that a small archive cannot fill the memory. */
 import { Inflate } from 'fflate';
 
-/** Compressed bytes fed at a time: deflate expands at most 1032-fold (RFC 1951), so one step yields at most 17 MB. */
-const STEP_BYTES = 16_384;
+/** Compressed bytes fed at a time: deflate expands at most 1032-fold (RFC 1951), so one step yields at most 8.5 MB. */
+export const STEP_BYTES = 8192;
 /** Below so many unpacked bytes the ratio is not asked: a short file of equal lines packs very well. */
 const RATIO_FLOOR_BYTES = 1_000_000;
 

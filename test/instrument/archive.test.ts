@@ -158,9 +158,11 @@ describe('limits hold before and while inflating', () => {
   });
 
   function secondsUntilRefused(bytes: Uint8Array, path: string): number {
-    const start = performance.now();
+    // Time of the processor: other work on the machine must not fail this test.
+    const start = process.cpuUsage();
     expect(() => unpack(bytes, path)).toThrow(ArchiveRefused);
-    return (performance.now() - start) / 1000;
+    const { user, system } = process.cpuUsage(start);
+    return (user + system) / 1e6;
   }
 });
 
