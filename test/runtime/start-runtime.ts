@@ -1,4 +1,4 @@
-import { mkdtemp, readFile, rm } from 'node:fs/promises';
+import { mkdir, mkdtemp, readFile, rm, writeFile } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { build } from 'esbuild';
@@ -48,6 +48,9 @@ export async function startRuntime(): Promise<Runtime> {
     external: ['node:*', 'cloudflare:*'],
   });
   const folder = await mkdtemp(join(tmpdir(), 'ratespan-runtime-'));
+  const pages = join(folder, 'pages');
+  await mkdir(pages);
+  await writeFile(join(pages, 'index.html'), '<!doctype html><title>page</title>');
   const bridge = await startHranaBridge(join(folder, 'remote.db'), 'bridge-token');
   const database = openRemoteDatabase(bridge.url, 'bridge-token');
   await migrateDatabase(database);
@@ -59,6 +62,12 @@ export async function startRuntime(): Promise<Runtime> {
     compatibilityDate: setting('compatibility_date'),
     compatibilityFlags: ['nodejs_compat'],
     bindings: { DB_URL: bridge.url, DB_TOKEN: 'bridge-token' },
+    assets: {
+      directory: pages,
+      binding: 'ASSETS',
+      routerConfig: { has_user_worker: true, invoke_user_worker_ahead_of_assets: true },
+      assetConfig: { not_found_handling: 'single-page-application' },
+    },
     r2Buckets: ['BLOBS'],
     queueProducers: { JOBS: queue },
     queueConsumers: {

@@ -90,9 +90,21 @@ describe.skipIf(problem)('the serverless program in the real runtime', () => {
     expect(result.ackAll).toBe(true);
   });
 
+  test('the page is served for every path outside the API, with the headers of the program', async () => {
+    for (const path of ['/', '/campaigns/c_1']) {
+      const page = await send('GET', path);
+      expect([page.status, await page.text()]).toEqual([200, '<!doctype html><title>page</title>']);
+      expect(page.headers.get('content-security-policy')).toMatch(/^default-src 'none'; script-src 'self'/);
+      expect(page.headers.get('x-frame-options')).toBe('DENY');
+    }
+    expect((await send('GET', '/v1/nothing')).headers.get('content-type')).toBe('application/problem+json');
+  });
+
   test('a public address gets nothing', async () => {
-    const response = await runtime.miniflare.dispatchFetch('https://ratespan.example/v1/campaigns');
-    expect(response.status).toBe(403);
-    expect(((await response.json()) as Body).type).toBe('/v1/reference#host-refused');
+    for (const path of ['/v1/campaigns', '/v1/openapi.json', '/']) {
+      const response = await runtime.miniflare.dispatchFetch(`https://ratespan.example${path}`);
+      expect(response.status).toBe(403);
+      expect(((await response.json()) as Body).type).toBe('/v1/reference#host-refused');
+    }
   });
 });
