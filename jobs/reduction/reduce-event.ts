@@ -81,6 +81,7 @@ export function reduceEvent(
   const stepK = (rate * (timeS[to - 1] - timeS[from])) / (to - from);
   const event: ReducedEvent = {
     event: 1,
+    kind: 'heating',
     rateKPerS: rate,
     onsetK: T(marks.onsetS),
     peakK: T(marks.peakS),

@@ -20,6 +20,11 @@ export interface ReducedCurve {
 
 export interface ReducedEvent {
   event: number;
+  /** Kind of the segment it lies in; heating, cooling and hold never share a fit */
+  kind: 'heating' | 'cooling' | 'hold';
+  /** Hold only: its mean temperature over the event, K, and the time it was reached, s, on the clock of the curve */
+  holdK?: number;
+  holdReachedS?: number;
   rateKPerS: number;
   onsetK: number;
   peakK: number;
@@ -65,12 +70,33 @@ export interface ReducedTrace {
   baseline: Float64Array;
 }
 
+/** Melting of a calibration standard on one scan, uncorrected for offset and lag. */
+export interface StandardMelting {
+  rateKPerS: number;
+  /** K: tangent at the steepest point of the leading edge meets the baseline before the peak (ISO 11357-1) */
+  onsetK: number;
+  onsetErrorK: number;
+  peakK: number;
+  /** J (heat flow in W) or J/kg */
+  area: number;
+  areaError: number;
+  /** s: time constant of the exponential tail behind the peak, where it can be fitted */
+  tailS?: number;
+  tailErrorS?: number;
+}
+
 export interface ReducedScan {
   segments: Segment[];
   /** Segment analysed, 1-based */
   segment: number;
   massKg?: number;
+  /** Half-height midpoint (ISO 11357-2) and extrapolated onset of the glass transition, K */
   glassTransitionK?: number;
+  glassTransitionOnsetK?: number;
+  /** Extrapolated onset of melting, where seen, K */
+  meltingOnsetK?: number;
+  /** Scans of a standard only: its melting as measured, no correction applied */
+  standard?: StandardMelting;
   events: ReducedEvent[];
   trace: ReducedTrace;
   flags: Flag[];

@@ -68,6 +68,7 @@ export function exactScan(
     instrument: 'furnace',
     event: {
       event: 1,
+      kind: 'heating',
       rateKPerS,
       onsetK: temperatures[9] + shiftK,
       peakK: peak + shiftK,

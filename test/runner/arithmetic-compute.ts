@@ -1,0 +1,145 @@
+import { createHash } from 'node:crypto';
+import type { Compute } from '../../jobs/ports/index.ts';
+import type { FitInput, FitResult } from '../../schema/wire/parameters.ts';
+import { CONVERSION_GRID, type ReduceOutcome } from '../../schema/wire/reduced.ts';
+import type { ReadOutcome, ReadScan } from '../../schema/wire/scan.ts';
+import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
+
+/** How often each computation ran: a look-up runs none. */
+export interface Counts {
+  readScan: number;
+  reduceScan: number;
+  fitSample: number;
+}
+
+export interface ArithmeticCompute extends Compute {
+  counts: Counts;
+}
+
+/**
+ * Computations in place of the science, for tests of the pipeline: cheap, and their results depend on everything that goes
+ * in, so that a wrong or stale input shows. A text `bad…` is refused, `poison…` throws, `dull…` has no known direction,
+ * `rate R` heats at R K/s.
+ */
+export function createArithmeticCompute(): ArithmeticCompute {
+  const counts: Counts = { readScan: 0, reduceScan: 0, fitSample: 0 };
+  return {
+    counts,
+    async readScan(bytes, file) {
+      counts.readScan++;
+      return readText(new TextDecoder().decode(bytes), file);
+    },
+    async reduceScan(scan, input) {
+      counts.reduceScan++;
+      return reduce(scan, input);
+    },
+    async fitSample(input) {
+      counts.fitSample++;
+      return fitScans(input);
+    },
+    async close() {},
+  };
+}
+
+function readText(text: string, file: string): ReadOutcome {
+  if (text.startsWith('poison')) throw new Error(`the reader stumbled over ${file}`);
+  if (text.startsWith('bad')) {
+    return { ok: false, refusal: { code: 'file-damaged', reason: `«${text}» is no scan`, action: 'Send another.' } };
+  }
+  const rate = Number(/rate ([\d.]+)/.exec(text)?.[1] ?? 1);
+  const seed = createHash('sha256').update(text).digest()[0];
+  const timeS = Float64Array.from({ length: 40 }, (_, i) => i);
+  return {
+    ok: true,
+    scan: {
+      timeS,
+      temperatureK: timeS.map((t) => 300 + rate * t),
+      heatFlow: timeS.map((t) => (text.startsWith('dull') ? 0 : seed + t)),
+      heatFlowUnit: 'W',
+      columns: [],
+      dialect: 'test',
+      flags: [],
+    },
+  };
+}
+
+function reduce(scan: ReadScan, input: ReduceInput): ReduceOutcome {
+  if (scan.heatFlow[0] === 0) {
+    return { ok: false, code: 'sign-unknown', reason: 'no direction', action: 'State it.', flags: [] };
+  }
+  const rateKPerS = scan.temperatureK[1] - scan.temperatureK[0];
+  const grid = Float64Array.from(CONVERSION_GRID);
+  const peakK =
+    500 + scan.heatFlow[0] + (input.massKg ?? 0) * 1e6 + input.calibration.offsetK + (input.meltingK ?? 0) / 1000;
+  return {
+    ok: true,
+    reduced: {
+      segments: [{ segment: 1, kind: 'heating', from: 0, to: 40, rateKPerS, startK: 300, endK: 340 }],
+      segment: input.segment ?? 1,
+      massKg: input.massKg,
+      events: [
+        {
+          event: 1,
+          kind: 'heating',
+          rateKPerS,
+          onsetK: peakK - 5,
+          peakK,
+          endK: peakK + 5,
+          widthK: 6,
+          centroidK: peakK,
+          peakErrorK: 0.1,
+          area: 1,
+          areaError: 0.1,
+          usableFrom: 0.01,
+          usableTo: 0.99,
+          pointsOverWidth: 20,
+          noiseFraction: 0.01,
+          rampStartK: 300,
+          curve: {
+            timeS: grid,
+            temperatureK: grid.map((a) => peakK + a),
+            ratePerS: grid,
+            baselineErrorK: grid,
+            programmeTimeS: grid.slice(0, 5),
+            programmeTemperatureK: grid.slice(0, 5),
+          },
+        },
+      ],
+      trace: { temperatureK: grid.slice(), heatFlow: grid.slice(), baseline: grid.slice() },
+      flags: [],
+    },
+  };
+}
+
+function fitScans({ sample, scans, instruments, seed }: FitInput): FitResult {
+  if (scans.length < 2) {
+    return { state: 'insufficient', reason: `${scans.length} scans`, parameters: [], reports: [], flags: [] };
+  }
+  const inputs = createHash('sha256').update(JSON.stringify([seed, instruments]));
+  for (const { sha256, event } of scans) inputs.update(`${sha256} ${event.peakK} ${event.curve?.temperatureK.join()}`);
+  return {
+    state: 'fitted',
+    parameters: [
+      {
+        sample,
+        event: 1,
+        quantity: 'activation_energy',
+        method: 'kissinger',
+        conversion: null,
+        temperature_K: null,
+        value: inputs.digest().readUInt32LE(0),
+        unit: 'kJ/mol',
+        lower95: null,
+        upper95: null,
+        scan_count: scans.length,
+        rate_min_K_per_s: Math.min(...scans.map((scan) => scan.event.rateKPerS)),
+        rate_max_K_per_s: Math.max(...scans.map((scan) => scan.event.rateKPerS)),
+        flags: [],
+        interval: 'monte_carlo',
+        variant: '',
+      },
+    ],
+    reports: [],
+    flags: [],
+  };
+}
