@@ -25,11 +25,13 @@ const HUES = 6;
 /** A mark of an instrument: shape and colour by its place in the list of instruments (both repeat, never together within 42). */
 export function InstrumentMark(props: { instrument: number; look: MarkLook; x: number; y: number }) {
   const { instrument, look, x, y } = props;
+  const transform = `translate(${x.toFixed(1)} ${y.toFixed(1)})`;
+  const shape = SHAPES[instrument % SHAPES.length] ?? undefined;
   return (
-    <g class={`mark hue-${instrument % HUES} look-${look}`} transform={`translate(${x.toFixed(1)} ${y.toFixed(1)})`}>
-      <path class="mark-shape" d={SHAPES[instrument % SHAPES.length] ?? undefined} />
-      {look === 'struck' && <path class="mark-strike" d="M-7.500 7.500 7.500-7.500" />}
-    </g>
+    <>
+      <path class={`mark hue-${instrument % HUES} look-${look}`} d={shape} transform={transform} />
+      {look === 'struck' && <path class="mark-strike" d="M-7.500 7.500 7.500-7.500" transform={transform} />}
+    </>
   );
 }
 

@@ -9,8 +9,9 @@ export interface IntervalScale {
 }
 
 const PADDING = 16;
-/** Least distance between two tick labels, px. */
-const LABEL_DISTANCE = 38;
+/** Generous width of one digit of a tick label, and the room between two labels, px. */
+const DIGIT_WIDTH = 7.5;
+const LABEL_ROOM = 6;
 
 /** Covers every value; intervals too, unless one is so wide that it would squeeze the rest (then it runs out of the plot). */
 export function createIntervalScale(
@@ -26,14 +27,20 @@ export function createIntervalScale(
   const low = Math.min(...rows.map((row, i) => row.value - Math.min(halves[i], reach)));
   const high = Math.max(...rows.map((row, i) => row.value + Math.min(halves[i], reach)));
   const scale = scaleLinear([low, high], [PADDING, width - PADDING]);
-  let ticks: number[] = [];
-  let count = 4;
   // Fewer ticks until their labels have room.
-  do ticks = scale.ticks(count);
-  while (count-- > 1 && ticks.length > 1 && scale(ticks[1]) - scale(ticks[0]) < LABEL_DISTANCE);
-  const step = ticks.length > 1 ? ticks[1] - ticks[0] : 1;
+  for (let count = 4; ; count--) {
+    const ticks = labelTicks(scale.ticks(count)).map(({ value, label }) => ({ x: scale(value), label }));
+    const room = ticks.length > 1 ? ticks[1].x - ticks[0].x : width;
+    const wanted = Math.max(...ticks.map(({ label }) => label.length)) * DIGIT_WIDTH + LABEL_ROOM;
+    if (room >= wanted || count === 1) return { width, x: scale, ticks };
+  }
+}
+
+/** Equal steps with as many decimals as the step needs. */
+function labelTicks(values: readonly number[]): { value: number; label: string }[] {
+  const step = values.length > 1 ? values[1] - values[0] : 1;
   const decimals = Math.max(0, -Math.floor(Math.log10(step) + 1e-9));
-  return { width, x: scale, ticks: ticks.map((value) => ({ x: scale(value), label: formatFixed(value, decimals) })) };
+  return values.map((value) => ({ value, label: formatFixed(value, decimals) }));
 }
 
 const HEIGHT = 24;

@@ -6,18 +6,17 @@ import type { StripLayout } from './strip-layout.ts';
 /** Generous width of one letter of a label, px. */
 const LABEL_WIDTH = 7;
 
-/** Logarithmic ruling as tall as the figure it lies under. */
+/** Taller than any strip, px: the figure around it cuts the lines off. */
+const RULED_HEIGHT = 4000;
+
+/** Logarithmic ruling for a figure of any height. */
 export function RateRuling({ scale }: { scale: RateScale }) {
-  const ruled = (xs: readonly number[], kind: string) =>
-    xs.map((x) => <line key={x} class={kind} x1={x.toFixed(1)} x2={x.toFixed(1)} y1="0" y2="100%" />);
+  const lines = (xs: readonly number[]): string => xs.map((x) => `M${x.toFixed(1)} 0V${RULED_HEIGHT}`).join('');
   return (
     <>
-      {ruled(scale.steps, 'grid-step')}
-      {ruled(
-        scale.decades.map((decade) => decade.x),
-        'grid-decade',
-      )}
-      {scale.start > 0 && ruled([scale.start], 'grid-edge')}
+      <path class="grid-step" d={lines(scale.steps)} />
+      <path class="grid-decade" d={lines(scale.decades.map((decade) => decade.x))} />
+      {scale.start > 0 && <path class="grid-edge" d={lines([scale.start])} />}
     </>
   );
 }

@@ -16,11 +16,7 @@ const POLL_EVERY_MS = 2_000;
 /** Polls between two tries of the stream. */
 const POLLS_PER_TRY = 5;
 
-const pause = (ms: number, signal: AbortSignal): Promise<void> =>
-  new Promise((resolve) => {
-    setTimeout(resolve, ms);
-    signal.addEventListener('abort', () => resolve(), { once: true });
-  });
+const pause = (ms: number): Promise<void> => new Promise((resolve) => setTimeout(resolve, ms));
 
 /** Follows a campaign until the signal aborts: the stream first, resumed when it ends; polling while it cannot be had. */
 export async function followStatus(id: string, listener: StatusListener, signal: AbortSignal): Promise<void> {
@@ -39,8 +35,8 @@ export async function followStatus(id: string, listener: StatusListener, signal:
       for (let piece = await reader.read(); !piece.done; piece = await reader.read()) {
         parse(decoder.decode(piece.value, { stream: true }));
       }
-      // The server ends a stream after a minute. One that ends at once is not asked for again in a tight loop.
-      if (performance.now() - started < POLL_EVERY_MS) await pause(POLL_EVERY_MS, signal);
+      // The server ends a stream after a minute; one that ends at once is broken.
+      if (performance.now() - started < POLL_EVERY_MS) throw new Error('the event stream ended at once');
     } catch {
       for (let i = 0; i < POLLS_PER_TRY && !signal.aborted; i++) {
         try {
@@ -50,7 +46,7 @@ export async function followStatus(id: string, listener: StatusListener, signal:
           if (signal.aborted) return;
           listener.onLink('offline', asProblem(error));
         }
-        await pause(POLL_EVERY_MS, signal);
+        await pause(POLL_EVERY_MS);
       }
     }
   }

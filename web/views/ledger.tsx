@@ -18,7 +18,7 @@ export interface ActiveMark {
   mark: number;
 }
 
-const FIRST_WIDTH = 600;
+const NOTHING: readonly LedgerRow[] = [];
 
 /** The coverage map: samples down, heating rate across, one mark a scan; beside it the fit and its headline numbers. */
 export function Ledger(props: {
@@ -28,7 +28,8 @@ export function Ledger(props: {
   unassigned: readonly ScanRow[];
 }) {
   const { campaign, rows, instruments, unassigned } = props;
-  const width = useSignal(FIRST_WIDTH);
+  /** px; 0 until measured, and nothing is drawn before */
+  const width = useSignal(0);
   const active = useSignal<ActiveMark | undefined>(undefined);
   /** The one strip in the tab order */
   const tabRow = useSignal(0);
@@ -36,6 +37,7 @@ export function Ledger(props: {
   const list = useRef<HTMLUListElement>(null);
   useLayoutEffect(() => {
     if (!axis.current) return;
+    width.value = Math.floor(axis.current.clientWidth);
     const observer = new ResizeObserver(([entry]) => {
       width.value = Math.floor(entry.contentRect.width);
     });
@@ -52,7 +54,8 @@ export function Ledger(props: {
       ),
     [rows, width.value, units.value],
   );
-  const layouts = useMemo(() => rows.map((row) => layoutStrip(row.marks, scale)), [rows, scale]);
+  const drawn = width.value > 0 ? rows : NOTHING;
+  const layouts = useMemo(() => drawn.map((row) => layoutStrip(row.marks, scale)), [drawn, scale]);
   const activeMark = useComputed(() => {
     const at = active.value;
     const row = at && rows[at.row];
@@ -100,7 +103,7 @@ export function Ledger(props: {
               Heating rate, {scale.unit}
               <span class="unseen">, logarithmic. Use the arrow keys to move from scan to scan.</span>
             </p>
-            <RateAxis scale={scale} />
+            {width.value > 0 && <RateAxis scale={scale} />}
           </div>
           <span>
             Activation energy <i>E</i>
@@ -110,7 +113,7 @@ export function Ledger(props: {
           </span>
         </div>
         <ul class="ledger-rows" ref={list}>
-          {rows.map((row, i) => (
+          {drawn.map((row, i) => (
             <LedgerEntry
               key={`${row.role} ${row.sample}`}
               row={row}

@@ -1,3 +1,4 @@
+import { useSignal } from '@preact/signals';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { createIntervalScale, IntervalAxis, IntervalMark } from '../charts/interval-plot.tsx';
 import type { Campaign } from '../client/rows.ts';
@@ -9,12 +10,16 @@ import { units } from '../state/units.ts';
 import { Downloads } from './download.tsx';
 
 const PLOT_WIDTH = 150;
+/** Tables drawn before they are asked for: a large campaign has hundreds. */
+const FIRST_TABLES = 12;
 
 /** The consolidated numbers of each sample and event, by method, drawn on one scale so that disagreement shows. */
 export function Numbers({ campaign, rows }: { campaign: Campaign; rows: readonly LedgerRow[] }) {
   const events = rows.flatMap((row) =>
     row.numbers.map((numbers) => ({ sample: row.sample, of: row.numbers.length, numbers })),
   );
+  const showsAll = useSignal(false);
+  const shown = showsAll.value ? events : events.slice(0, FIRST_TABLES);
   return (
     <section class="numbers" aria-labelledby="numbers-title">
       <div class="section-head">
@@ -28,10 +33,22 @@ export function Numbers({ campaign, rows }: { campaign: Campaign; rows: readonly
         </p>
       ) : (
         <div class="number-tables">
-          {events.map(({ sample, of, numbers }) => (
+          {shown.map(({ sample, of, numbers }) => (
             <EventTable key={`${sample} ${numbers.event}`} sample={sample} isOnly={of === 1} numbers={numbers} />
           ))}
         </div>
+      )}
+      {shown.length < events.length && (
+        <p class="show-all">
+          <button
+            type="button"
+            onClick={() => {
+              showsAll.value = true;
+            }}
+          >
+            Show all {events.length} tables
+          </button>
+        </p>
       )}
       {events.length > 0 && (
         <p class="small">
