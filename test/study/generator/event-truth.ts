@@ -17,9 +17,9 @@ export interface EventTruth {
   temperatureAtK: Record<string, number>;
 }
 
-const GRID = 4000;
+const GRID = 1500;
 
-/** Truth of every event of a scan. The peak is exact; width and T(α) are interpolated on a fine grid (about 1e-6 of the span). */
+/** Truth of every event of a scan. The peak is exact; width and T(α) are interpolated on a fine grid (to about 1e-5 of the width). */
 export function eventTruths(model: ScanModel, conversions: readonly number[] = [0.1, 0.5, 0.9]): EventTruth[] {
   const { endS, legs } = model.programme;
   const grid = Float64Array.from({ length: GRID + 1 }, (_, k) => (endS * k) / GRID);
