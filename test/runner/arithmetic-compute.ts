@@ -83,6 +83,7 @@ function reduce(scan: ReadScan, input: ReduceInput): ReduceOutcome {
           kind: 'heating',
           rateKPerS,
           onsetK: peakK - 5,
+          kind: 'heating',
           peakK,
           endK: peakK + 5,
           widthK: 6,
