@@ -10,7 +10,8 @@ const PATTERN_BYTES = 1024;
 
 /**
  * Finds the encoding from the head of a file. UTF-16 without a byte-order mark is known by its zero bytes (text of Latin script
- * has one in nearly every second place); bytes that are not valid UTF-8 are Latin-1, where every byte has a meaning (° is B0, µ is B5).
+ * has one in nearly every second place); bytes that are not UTF-8 are Latin-1, where every byte has a
+ * meaning (° is B0, µ is B5). A ° or µ written as UTF-8 (C2 B0, C2 B5) decides for UTF-8 even beside damaged bytes: in Latin-1 it would read Â°.
  */
 export function detectEncoding(head: Uint8Array): TextEncoding {
   if (head[0] === 0xef && head[1] === 0xbb && head[2] === 0xbf) return { name: 'UTF-8', markLength: 3 };
@@ -25,13 +26,10 @@ export function detectEncoding(head: Uint8Array): TextEncoding {
   }
   if (pairs >= 2 && oddZeros > 0.7 * pairs && evenZeros < 0.05 * pairs) return { name: 'UTF-16 LE', markLength: 0 };
   if (pairs >= 2 && evenZeros > 0.7 * pairs && oddZeros < 0.05 * pairs) return { name: 'UTF-16 BE', markLength: 0 };
-  try {
-    // `stream` lets a character cut by the end of the head pass.
-    new TextDecoder('utf-8', { fatal: true }).decode(head, { stream: true });
-    return { name: 'UTF-8', markLength: 0 };
-  } catch {
-    return { name: 'Latin-1', markLength: 0 };
-  }
+  // `stream` lets a character cut by the end of the head pass.
+  const text = new TextDecoder('utf-8').decode(head, { stream: true });
+  if (!text.includes('\ufffd') || /[°µ]/.test(text)) return { name: 'UTF-8', markLength: 0 };
+  return { name: 'Latin-1', markLength: 0 };
 }
 
 /** Turns UTF-16 chunks (cut anywhere) into UTF-8 chunks; undefined for encodings whose bytes can be parsed as they are. */

@@ -144,6 +144,16 @@ describe('dialects', () => {
     },
   );
 
+  it('one damaged byte in UTF-8 does not cost the ° of the header', () => {
+    const bytes = encode(`operator X\n${plainScan(30)}`, 'utf8');
+    bytes[9] = 0xe4;
+    expect(read(bytes).dialect).toContain('UTF-8');
+    // The same byte in a text without UTF-8 sequences is an ä.
+    const latin = encode(`operator X\n${plainScan(30)}`, 'latin1');
+    latin[9] = 0xe4;
+    expect(read(latin).dialect).toContain('Latin-1');
+  });
+
   it('reads quoted cells, a typographic minus, and numbers padded with blanks', () => {
     const lines = Array.from({ length: 25 }, (_, i) =>
       i === 3 ? '"3", 3.0e2 ,\u22122.5' : i === 4 ? '"4","301,5","1,5"' : `${i},30${i % 10},1`,
