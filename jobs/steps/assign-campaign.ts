@@ -41,16 +41,21 @@ export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<voi
   }));
   const changes = diffScans(rows.scans, wanted);
   const placed = (scan: HashedScan): AssignedScan => placeScan(scan, fileOf.get(scan.fileId) as StoredFile);
-  await completeJob(ports, job, (db, now) => [
-    ...changes.insert.map((scan) => insertScan(db, job.campaignId, placed(scan))),
-    ...changes.update.map(({ id, wanted: scan }) => reassignScan(db, id, placed(scan))),
-    ...changes.remove.map((scan) => deleteScan(db, scan.id)),
-    ...followFiles(db, job.campaignId),
-    ...settleSamples(db, job.campaignId, namedSamples(wanted), changedNames(changes, 'sample')),
-    ...settleInstruments(db, job.campaignId, instrumentChanges(rows, wanted, changes)),
-    ...replaceFlags(db, job.campaignId, 'assign', flags),
-    ...queueReductions(db, job.campaignId, now),
-  ]);
+  await completeJob(
+    ports,
+    job,
+    (db, now) => [
+      ...changes.insert.map((scan) => insertScan(db, job.campaignId, placed(scan))),
+      ...changes.update.map(({ id, wanted: scan }) => reassignScan(db, id, placed(scan))),
+      ...changes.remove.map((scan) => deleteScan(db, scan.id)),
+      ...followFiles(db, job.campaignId),
+      ...settleSamples(db, job.campaignId, namedSamples(wanted), changedNames(changes, 'sample')),
+      ...settleInstruments(db, job.campaignId, instrumentChanges(rows, wanted, changes)),
+      ...replaceFlags(db, job.campaignId, 'assign', flags),
+      ...queueReductions(db, job.campaignId, now),
+    ],
+    { instruments: true, samples: true },
+  );
 }
 
 /** Of several rows with one name the first counts; the others are said. */

@@ -20,13 +20,19 @@ export async function readScanFile(ports: Ports, job: ClaimedJob, cache: Columns
   if (!outcome.ok) {
     const { code, reason, action } = outcome.refusal;
     const flags = [flag(code, reason, action, { file: file.path })];
-    return completeJob(ports, job, (db) => saveRefusedFile(db, file, reason, flags));
+    return completeJob(ports, job, (db) => saveRefusedFile(db, file, reason, flags), {
+      instruments: true,
+      samples: true,
+    });
   }
   const { scan } = outcome;
   const highestRateKPerS = highestHeatingRate(scan.timeS, scan.temperatureK);
   cache.keep(columnsKey, scan);
-  await completeJob(ports, job, (db, now) =>
-    saveReadFile(db, file, now, { columnsKey, highestRateKPerS, flags: scan.flags }),
+  await completeJob(
+    ports,
+    job,
+    (db, now) => saveReadFile(db, file, now, { columnsKey, highestRateKPerS, flags: scan.flags }),
+    { instruments: true },
   );
 }
 

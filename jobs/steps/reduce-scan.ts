@@ -38,7 +38,7 @@ export async function reduceStoredScan(ports: Ports, job: ClaimedJob, cache: Col
         result: null,
         flags: refusalFlags(outcome, input),
       };
-  await completeJob(ports, job, (db) => saveReduction(db, scan, found));
+  await completeJob(ports, job, (db) => saveReduction(db, scan, found), { samples: true });
 }
 
 function reduceInputOf({ scan, file, calibration, sampleRow }: ReductionRows): ReduceInput | undefined {

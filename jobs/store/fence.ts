@@ -48,5 +48,5 @@ export function runBatch(db: LibSQLDatabase, statements: Statement[]): Promise<u
  * itself: the count of its changes is inserted under the check `ok = 1`.
  */
 export function guarded(db: LibSQLDatabase, guard: Statement, rest: Statement[]): Statement[] {
-  return [guard, db.run(sql`insert into fence (ok) select changes()`), db.run(sql`delete from fence`), ...rest];
+  return [guard, db.run(sql`insert into fence (ok) select changes() where true on conflict (ok) do nothing`), ...rest];
 }

@@ -56,35 +56,67 @@ function insertJobsFor(db: LibSQLDatabase, campaignId: string, step: Step, now: 
     from (${from})`);
 }
 
+/** What a write-back may have made due. */
+export interface DueCheck {
+  /** Scans were read or assigned, so an instrument may have all of its scans read. */
+  instruments?: boolean;
+  /** Scans were settled or assigned, so a sample may have all of its scans settled. */
+  samples?: boolean;
+}
+
 /**
- * Queues what has become due in a campaign, at the end of every write-back: instruments whose scans are all read,
- * samples whose scans are all settled, and the plan once nothing else is open. Whatever holds one back ends in a
- * write-back of its own, so nothing waits for ever.
+ * Ends every write-back: counts a change of the campaign and queues what has become due in it: instruments whose scans are
+ * all read, samples whose scans are all settled, and the plan once nothing else is open. Whatever holds one back ends in a
+ * write-back that checks again, so nothing waits for ever.
  */
-export function queueDueJobs(db: LibSQLDatabase, campaignId: string, now: number): Statement[] {
-  const open = sql`exists (select 1 from jobs where campaign_id = ${campaignId} and state in ('queued', 'running') and step in ${OPENING_STEPS})`;
-  // Without a kind on its sheet an instrument is told by its fastest scan, so all of them have to be read first.
-  const instruments = sql`instruments.campaign_id = ${campaignId} and inputs_revision > queued_revision and not ${open}
-    and (json_extract(sheet_row, '$.kind') is not null or not exists (
-      select 1 from scans s where s.campaign_id = ${campaignId} and s.instrument = instruments.instrument and s.status = 'received'))`;
-  const samples = sql`samples.campaign_id = ${campaignId} and inputs_revision > queued_revision and not ${open}
-    and not exists (select 1 from scans s where s.campaign_id = ${campaignId} and s.sample = samples.sample
-      and s.status in ('received', 'read') and s.role = 'sample')`;
-  const campaign = sql`campaigns.id = ${campaignId} and inputs_revision > queued_revision and not exists (
-    select 1 from jobs where campaign_id = ${campaignId} and state in ('queued', 'running') and step <> 'plan-campaign')`;
+export function queueDueJobs(
+  db: LibSQLDatabase,
+  campaignId: string,
+  now: number,
+  { instruments = false, samples = false }: DueCheck,
+): Statement[] {
   return [
+    ...(instruments ? queueCalibrations(db, campaignId, now) : []),
+    ...(samples ? queueFits(db, campaignId, now) : []),
+    db.run(sql`
+      update campaigns set revision = revision + 1, inputs_revision = inputs_revision + 1,
+        queued_revision = case when ${nothingOpen(campaignId)} then inputs_revision + 1 else queued_revision end
+      where id = ${campaignId}`),
     insertJobsFor(
       db,
       campaignId,
-      'calibrate-instrument',
+      'plan-campaign',
       now,
-      sql`select id as subject from instruments where ${instruments}`,
+      sql`select id as subject from campaigns where id = ${campaignId} and inputs_revision = queued_revision and ${nothingOpen(campaignId)}`,
     ),
-    db.run(sql`update instruments set queued_revision = inputs_revision where ${instruments}`),
-    insertJobsFor(db, campaignId, 'fit-sample', now, sql`select id as subject from samples where ${samples}`),
-    db.run(sql`update samples set queued_revision = inputs_revision, state = 'queued' where ${samples}`),
-    insertJobsFor(db, campaignId, 'plan-campaign', now, sql`select id as subject from campaigns where ${campaign}`),
-    db.run(sql`update campaigns set queued_revision = inputs_revision where ${campaign}`),
+  ];
+}
+
+const nothingOpen = (campaignId: string) => sql`not exists (
+  select 1 from jobs where campaign_id = ${campaignId} and state in ('queued', 'running') and step <> 'plan-campaign')`;
+
+const scansOpen = (campaignId: string) => sql`exists (
+  select 1 from jobs where campaign_id = ${campaignId} and state in ('queued', 'running') and step in ${OPENING_STEPS})`;
+
+function queueCalibrations(db: LibSQLDatabase, campaignId: string, now: number): Statement[] {
+  // Without a kind on its sheet an instrument is told by its fastest scan, so all of them have to be read first.
+  const due = sql`instruments.campaign_id = ${campaignId} and inputs_revision > queued_revision and not ${scansOpen(campaignId)}
+    and (json_extract(sheet_row, '$.kind') is not null or not exists (
+      select 1 from scans s where s.campaign_id = ${campaignId} and s.instrument = instruments.instrument and s.status = 'received'))`;
+  return [
+    insertJobsFor(db, campaignId, 'calibrate-instrument', now, sql`select id as subject from instruments where ${due}`),
+    db.run(sql`update instruments set queued_revision = inputs_revision where ${due}`),
+  ];
+}
+
+function queueFits(db: LibSQLDatabase, campaignId: string, now: number): Statement[] {
+  const due = sql`samples.campaign_id = ${campaignId} and state in ('waiting', 'stale') and inputs_revision > queued_revision
+    and not ${scansOpen(campaignId)} and not exists (
+      select 1 from scans s where s.campaign_id = ${campaignId} and s.sample = samples.sample
+        and s.status in ('received', 'read') and s.role = 'sample')`;
+  return [
+    insertJobsFor(db, campaignId, 'fit-sample', now, sql`select id as subject from samples where ${due}`),
+    db.run(sql`update samples set queued_revision = inputs_revision, state = 'queued' where ${due}`),
   ];
 }
 

@@ -132,8 +132,7 @@ export async function refitCampaign(ports: Ports, campaignId: string): Promise<n
       db.run(
         sql`update samples set inputs_revision = inputs_revision + 1, state = 'stale' where campaign_id = ${campaignId}`,
       ),
-      touchCampaign(db, campaignId, true),
-      ...queueDueJobs(db, campaignId, now),
+      ...queueDueJobs(db, campaignId, now, { samples: true }),
     ])) as { rowsAffected: number }[];
     return marked.rowsAffected;
   });

@@ -4,7 +4,7 @@ import { samples } from '../../schema/tables/index.ts';
 import type { Ports } from '../ports/index.ts';
 import { guarded, isFenceBreak, LateWorker, runBatch, type Statement } from './fence.ts';
 import { hashOf } from './ids.ts';
-import { queueDueJobs, type Step, touchCampaign } from './job-rows.ts';
+import { type DueCheck, queueDueJobs, type Step, touchCampaign } from './job-rows.ts';
 
 /** A worker that says nothing for this long has lost its job. */
 export const LEASE_MS = 30_000;
@@ -49,8 +49,10 @@ export async function claimJobs(ports: Ports, options: ClaimOptions): Promise<Cl
         leased_by = ${owner}, leased_until = ${now + LEASE_MS}
       where id in (
         select id from (
-          select id, priority, rowid as row from jobs where state = 'queued' and ${due} and ${within}
-            and not exists (select 1 from jobs twin where twin.step = jobs.step and twin.subject = jobs.subject and twin.state = 'running')
+          select * from (
+            select id, priority, rowid as row from jobs where state = 'queued' and ${due} and ${within}
+              and not exists (select 1 from jobs twin where twin.step = jobs.step and twin.subject = jobs.subject and twin.state = 'running')
+            order by priority, rowid limit ${limit})
           union all
           select id, priority, rowid as row from jobs
           where state = 'running' and leased_until < ${now} and attempts < ${MAX_ATTEMPTS} and ${within}
@@ -107,16 +109,19 @@ export function completeJob(
   ports: Ports,
   job: ClaimedJob,
   results: (db: LibSQLDatabase, now: number) => Statement[] = () => [],
+  check: DueCheck = {},
 ): Promise<void> {
   const now = ports.clock.now();
   return writeBack(ports, job, (db) =>
-    guarded(db, guardOf(db, job, now), [
-      ...results(db, now),
-      touchCampaign(db, job.campaignId, job.step !== 'plan-campaign'),
-      ...queueDueJobs(db, job.campaignId, now),
-    ]),
+    guarded(db, guardOf(db, job, now), [...results(db, now), ...followUp(db, job, now, check)]),
   );
 }
+
+/** A plan changes what the campaign shows and nothing that another plan would be made from. */
+const followUp = (db: LibSQLDatabase, job: ClaimedJob, now: number, check: DueCheck): Statement[] =>
+  job.step === 'plan-campaign'
+    ? [touchCampaign(db, job.campaignId, false)]
+    : queueDueJobs(db, job.campaignId, now, check);
 
 /** Wait before the next attempt, ms: doubling, ± 50 %, spread by the job's own id so that a burst of failures does not return as a burst. */
 export function backOffMs(jobId: string, attempts: number): number {
@@ -142,11 +147,7 @@ export async function failAttempt(
         db.run(sql`
           update jobs set state = 'failed', finished_at = ${now}, leased_by = null, leased_until = null, last_error = ${error}
           where id = ${job.id} and generation = ${job.generation} and state = 'running'`),
-        [
-          ...subjectFailed(db, now),
-          touchCampaign(db, job.campaignId, job.step !== 'plan-campaign'),
-          ...queueDueJobs(db, job.campaignId, now),
-        ],
+        [...subjectFailed(db, now), ...followUp(db, job, now, { instruments: true, samples: true })],
       ),
     );
     return;

@@ -10,7 +10,7 @@ CREATE TABLE `campaigns` (
 --> statement-breakpoint
 CREATE UNIQUE INDEX `campaigns_name` ON `campaigns` (`lab`,`name`);--> statement-breakpoint
 CREATE TABLE `fence` (
-	`ok` integer NOT NULL,
+	`ok` integer PRIMARY KEY NOT NULL,
 	CONSTRAINT "fence_ok" CHECK("fence"."ok" = 1)
 );
 --> statement-breakpoint
@@ -79,7 +79,7 @@ CREATE TABLE `jobs` (
 	FOREIGN KEY (`campaign_id`) REFERENCES `campaigns`(`id`) ON UPDATE no action ON DELETE cascade
 );
 --> statement-breakpoint
-CREATE INDEX `jobs_due` ON `jobs` (`state`,`priority`,`next_try_at`);--> statement-breakpoint
+CREATE INDEX `jobs_due` ON `jobs` (`state`,`priority`);--> statement-breakpoint
 CREATE UNIQUE INDEX `jobs_one_waiting` ON `jobs` (`step`,`subject`) WHERE state = 'queued';--> statement-breakpoint
 CREATE INDEX `jobs_running` ON `jobs` (`step`,`subject`) WHERE state = 'running';--> statement-breakpoint
 CREATE INDEX `jobs_campaign` ON `jobs` (`campaign_id`,`state`);--> statement-breakpoint

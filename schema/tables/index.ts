@@ -236,7 +236,8 @@ export const jobs = sqliteTable(
     finishedAt: integer('finished_at'),
   },
   (t) => [
-    index('jobs_due').on(t.state, t.priority, t.nextTryAt),
+    // with the row id that ends every index entry this is the order of claiming
+    index('jobs_due').on(t.state, t.priority),
     // at most one waiting job for the same work: a burst of uploads makes one refit
     uniqueIndex('jobs_one_waiting').on(t.step, t.subject).where(sql`state = 'queued'`),
     index('jobs_running').on(t.step, t.subject).where(sql`state = 'running'`),
@@ -244,7 +245,7 @@ export const jobs = sqliteTable(
   ],
 );
 
-/** A guarded batch inserts changes() here: a late worker's batch fails whole on the check (STACK, last paragraph). */
-export const fence = sqliteTable('fence', { ok: integer('ok').notNull() }, (t) => [
+/** A guarded batch inserts changes() here: a late worker's batch fails whole on the check. The one row 1 stays. */
+export const fence = sqliteTable('fence', { ok: integer('ok').primaryKey() }, (t) => [
   check('fence_ok', sql`${t.ok} = 1`),
 ]);

@@ -80,7 +80,6 @@ function reduce(scan: ReadScan, input: ReduceInput): ReduceOutcome {
       events: [
         {
           event: 1,
-          kind: 'heating',
           rateKPerS,
           onsetK: peakK - 5,
           kind: 'heating',
