@@ -89,10 +89,11 @@ export function nameAndUnit(text: string): { name: string; unit?: string }[] {
   return readings;
 }
 
-/** Names in one form: lower case, single spaces, no marks. */
+/** Names in one form: lower case, single spaces, no marks; `HeatFlow` is two words. */
 export function plainName(name: string): string {
   return name
     .normalize('NFKC')
+    .replace(/(\p{Ll}{2})(?=\p{Lu})/gu, '$1 ')
     .toLowerCase()
     .replace(/[_\-.:#"'*%/!,;]+/g, ' ')
     .replace(/\s+/g, ' ')

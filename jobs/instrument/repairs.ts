@@ -49,7 +49,7 @@ export function finishScan(raw: RawRows): ReadOutcome {
   const rowsBefore = columns.rows;
   if (!sound) averageRepeats(columns);
   const rows = columns.rows;
-  if (rows < FEWEST_ROWS) return refuse(tooFewRows(rows, rowsBefore, header));
+  if (rows < FEWEST_ROWS) return refuse(tooFewRows(rows, rowsBefore, raw));
 
   const flags: Flag[] = [];
   const where = { file };
@@ -210,11 +210,11 @@ function tooManyBadRows(bad: LineTally, total: number, allowed: number, cutLine:
   };
 }
 
-function tooFewRows(rows: number, before: number, header: ScanHeader): ReadRefusal {
+function tooFewRows(rows: number, before: number, { header, openLine }: RawRows): ReadRefusal {
   const merged = before > rows ? ` (${before} before repeated times were averaged)` : '';
   return {
     code: 'file-damaged',
-    reason: `only ${rows} rows of numbers${merged} under the header on line ${header.line}; a scan needs ${FEWEST_ROWS}`,
+    reason: `only ${rows} rows of numbers${merged} under the header on line ${header.line}; a scan needs ${FEWEST_ROWS}${openLine === undefined ? '' : `; line ${openLine} ends without a line end, the copy may be incomplete`}`,
     action: 'Export the whole scan with every sampled point, and the time with enough digits to tell rows apart.',
     line: header.line,
   };

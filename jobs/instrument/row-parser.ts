@@ -185,12 +185,12 @@ export class RowParser {
         decimal = this.odd.decimalByte();
         ({ time, temperature, heatFlow } = columns);
       }
-      this.line++;
-      p += b[p] === CR && p + 1 < to && b[p + 1] === LF ? 2 : 1;
       if (columns.rows > ROW_LIMIT) {
         this.stop = 'rows';
         return;
       }
+      this.line++;
+      p += b[p] === CR && p + 1 < to && b[p + 1] === LF ? 2 : 1;
     }
   }
 }

@@ -31,6 +31,7 @@ export interface Unit {
 }
 
 /** Words that mean one unit symbol each; compared as written, then in lower case for words of three letters and more. */
+// biome-ignore format: one unit a line reads better
 const SYMBOLS: Record<string, string> = {
   s: 's', S: 's', sec: 's', secs: 's', second: 's', seconds: 's',
   ms: 'ms', msec: 'ms', millisecond: 'ms', milliseconds: 'ms',
@@ -45,7 +46,7 @@ const SYMBOLS: Record<string, string> = {
   kg: 'kg', g: 'g', mg: 'mg', ug: 'ug', ng: 'ng', pg: 'pg',
   V: 'V', mV: 'mV', uV: 'uV', nV: 'nV', uv: 'uV',
   mol: 'mol', m: 'm', cm: 'cm', mm: 'mm', um: 'um', nm: 'nm', '%': '%', '1': '1', '-': '1',
-}; // biome-ignore format: one unit a line reads better
+};
 
 const SECONDS: Record<string, number> = { s: 1, ms: 1e-3, us: 1e-6, min: 60, h: 3600 };
 const KILOGRAMS: Record<string, number> = { kg: 1, g: 1e-3, mg: 1e-6, ug: 1e-9, ng: 1e-12, pg: 1e-15 };

@@ -30,6 +30,7 @@ describe('header', () => {
     ['Time (min),Temp. (°C),Heat Flow (mW)', ['min', '°C', 'mW']],
     ['t/s,T/K,Φ/mW', ['s', 'K', 'mW']],
     ['T/K,t/ms,dsc/(mW/mg)', ['ms', 'K', 'mW/mg']],
+    ['ElapsedTime[s],SampleTemperature[K],HeatFlow[mW]', ['s', 'K', 'mW']],
     ['# Time/min,Temp./°C,DSC/(mW/mg)', ['min', '°C', 'mW/mg']],
     ['TIME [MIN],TEMPERATURE [C],HEAT FLOW [W/g]', ['min', '°C', 'W/g']],
     ['time [µs],temperature [degC],heat_flow [nW]', ['µs', '°C', 'nW']],
@@ -220,6 +221,15 @@ describe('files that are no scans', () => {
   it('binary bytes, with what they look like', () => {
     expect(refusal(new Uint8Array([0x50, 0x4b, 3, 4, 1, 2, 3])).reason).toContain('a zip archive or a workbook');
     expect(refusal(Uint8Array.from({ length: 5000 }, (_, i) => (i * 7919) % 256)).reason).toContain('binary data');
+  });
+
+  it('more than five million rows', () => {
+    const reader = createScanReader('S/I/a.txt');
+    reader.push(utf8(plainScan(100)));
+    const rows = utf8('7,7,7\n'.repeat(50_000));
+    for (let i = 0; i < 100; i++) reader.push(rows);
+    const outcome = reader.end();
+    expect(outcome.ok ? undefined : outcome.refusal.reason).toBe('more than 5000000 rows (line 5000002)');
   });
 
   it('lines beyond 64 kB, in the head and among the rows', () => {
