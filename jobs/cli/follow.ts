@@ -27,7 +27,7 @@ export async function followCampaign(
       return status;
     }
     terminal.progress(progressText(status));
-    const pause = sleep(LOOK_EVERY_MS, undefined, { signal: terminal.interrupt }).catch(() => undefined);
+    const pause = sleep(LOOK_EVERY_MS);
     await (work ? Promise.race([work, pause]) : pause);
   }
 }
