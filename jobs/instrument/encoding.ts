@@ -48,9 +48,9 @@ export function decodeText(bytes: Uint8Array, encoding: TextEncoding): string {
 }
 
 /** A whole small file (a sheet) as text, without its byte-order mark. */
-export function decodeFile(bytes: Uint8Array): { text: string; encoding: TextEncoding } {
+export function decodeFile(bytes: Uint8Array): string {
   const encoding = detectEncoding(bytes);
   const body = bytes.subarray(encoding.markLength);
   const transcode = createTranscoder(encoding);
-  return { text: decodeText(transcode === undefined ? body : transcode(body, true), encoding), encoding };
+  return decodeText(transcode === undefined ? body : transcode(body, true), encoding);
 }

@@ -8,9 +8,9 @@ import { addToTally, type BadLine, createTally, type LineTally, type OddRows } f
 import type { Unit } from './units.ts';
 
 /** Share of bad rows that may be dropped (METHODS 2). */
-export const BAD_ROW_SHARE = 0.001;
+const BAD_ROW_SHARE = 0.001;
 /** Fewest rows of a scan. */
-export const FEWEST_ROWS = 20;
+const FEWEST_ROWS = 20;
 /** How many line numbers a sentence lists. */
 const LISTED_LINES = 8;
 

@@ -54,7 +54,7 @@ const THOUSANDS = /^[+-]?[1-9]\d{0,2}(,\d{3})+$/;
 export function readSheet(bytes: Uint8Array, file: string, columns: readonly SheetColumn[]): SheetTable {
   const flags: Flag[] = [];
   const damaged = (detail: string, action: string) => flags.push(flag('sheet-damaged', detail, action, { file }));
-  const { text } = decodeFile(bytes);
+  const text = decodeFile(bytes);
   const required = columns.filter((c) => c.required).map((c) => c.name);
   if (text.includes('\0')) {
     damaged(
