@@ -1,3 +1,4 @@
+import { FLAG_CODES, type FlagCode } from '../schema/wire/flags.ts';
 import type { SampleState, ScanState } from '../schema/wire/states.ts';
 
 /** Names of methods, in the order in which they are listed. A code without a name is shown as it is, last. */
@@ -62,6 +63,9 @@ const GAP_NAMES: Record<string, string> = {
 };
 
 export const gapName = (code: string): string => GAP_NAMES[code] ?? code.replaceAll('-', ' ');
+
+/** What a flag says, in words; a code of a newer server is shown as it is. */
+export const flagMeaning = (code: FlagCode): string => FLAG_CODES[code]?.[1] ?? code;
 
 /** First letter as a capital and no line break before a unit, for sentences made of table texts. */
 export const sentence = (text: string): string =>

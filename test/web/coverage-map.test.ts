@@ -33,7 +33,7 @@ const scan = (file: string, row: Partial<ScanRow> = {}): ScanRow => ({
 });
 
 const ledgerOf = (scans: ScanRow[], rest: Partial<LedgerTables> = {}) =>
-  buildLedger({ scans, coverage: [], gaps: [], parameters: [], ...rest }, undefined);
+  buildLedger({ scans, coverage: [], gaps: [], flags: [], parameters: [], ...rest }, undefined);
 
 describe('rows and marks', () => {
   test('one mark a scan, however many events it has', () => {

@@ -1,8 +1,9 @@
 import { expect, test } from 'vitest';
+import type { CampaignStatus } from '../../schema/wire/campaign.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { FlagRow } from '../../web/client/rows.ts';
 import { consolidate, headlineEnergy, numbersBySample } from '../../web/model/headline.ts';
-import { groupFlags } from '../../web/model/next-steps.ts';
+import { groupFlags, tellableNow } from '../../web/model/next-steps.ts';
 
 const flagRow = (row: Partial<FlagRow>): FlagRow => ({
   severity: 'warn',
@@ -77,4 +78,21 @@ test('events come in order, and the headline is Vyazovkin where there is one', (
   expect(events?.map((e) => e.event)).toEqual([1, 2]);
   expect(events?.map((e) => headlineEnergy(e)?.value)).toEqual([205, 200]);
   expect(events?.[0].exponents).toHaveLength(1);
+});
+
+test('what is missing is told only where no scan is still coming in', () => {
+  const status: CampaignStatus = {
+    settled: false,
+    scans: { received: 1, read: 0, reduced: 3, set_aside: 0, failed: 0, unassigned: 0, excluded: 0, superseded: 0 },
+    samples: [
+      { sample: 'glass', state: 'waiting' },
+      { sample: 'metal', state: 'fitted' },
+    ],
+    jobs: { queued: 1, running: 0, failed: 0, oldest_age_s: null },
+    eta_s: null,
+  };
+  const gaps = ['glass', 'metal', ''].map((sample) => ({ sample, code: 'few-rates', detail: '', action: '' }));
+  const flags = [{ code: 'file-missing' }, { code: 'spike' }];
+  expect(tellableNow(flags, gaps, status)).toEqual({ flags: [flags[1]], gaps: [gaps[1]] });
+  expect(tellableNow(flags, gaps, { ...status, settled: true })).toEqual({ flags, gaps });
 });

@@ -4,7 +4,7 @@ import type { RateScale } from './rate-scale.ts';
 import type { StripLayout } from './strip-layout.ts';
 
 /** Generous width of one letter of a label, px. */
-const LABEL_WIDTH = 7;
+const LABEL_WIDTH = 7.5;
 
 /** Taller than any strip, px: the figure around it cuts the lines off. */
 const RULED_HEIGHT = 4000;

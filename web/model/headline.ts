@@ -32,7 +32,9 @@ export function consolidate(rows: readonly ParameterRow[]): ParameterRow[] {
 /** Numbers of each event of each sample, events in order. */
 export function numbersBySample(rows: readonly ParameterRow[]): Map<string, EventNumbers[]> {
   const samples = new Map<string, EventNumbers[]>();
-  const consolidated = consolidate(rows).sort((a, b) => methodRank(a.method) - methodRank(b.method));
+  const consolidated = consolidate(rows).sort(
+    (a, b) => methodRank(a.method) - methodRank(b.method) || a.variant.length - b.variant.length,
+  );
   for (const row of consolidated) {
     let events = samples.get(row.sample);
     if (!events) samples.set(row.sample, (events = []));

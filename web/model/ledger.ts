@@ -1,7 +1,8 @@
 import type { CampaignStatus, CoverageRow, GapRow } from '../../schema/wire/campaign.ts';
 import { FLAG_CODES } from '../../schema/wire/flags.ts';
 import type { Role, SampleState, ScanState } from '../../schema/wire/states.ts';
-import type { ScanRow } from '../client/rows.ts';
+import type { FlagRow, ScanRow } from '../client/rows.ts';
+import { flagMeaning } from '../words.ts';
 import type { EventNumbers } from './headline.ts';
 import { numbersBySample } from './headline.ts';
 
@@ -32,6 +33,8 @@ export interface LedgerRow {
   gaps: GapRow[];
   emptySpans: EmptySpan[];
   numbers: EventNumbers[];
+  /** What asks for a look at the sample as a whole, in words. */
+  concerns: string[];
 }
 
 const LOOKS: Record<ScanState, MarkLook | undefined> = {
@@ -85,10 +88,18 @@ export function emptySpans(rows: readonly CoverageRow[]): EmptySpan[] {
   });
 }
 
+/** Meanings of the warnings that belong to a sample and to no single file, gaps left out. */
+function concernsOf(sample: string, flags: readonly FlagRow[], gaps: readonly GapRow[]): string[] {
+  const own = flags.filter((flag) => flag.sample === sample && !flag.file && flag.severity !== 'note');
+  const codes = own.map((flag) => flag.code).filter((code) => !gaps.some((gap) => gap.code === code));
+  return [...new Set(codes)].map(flagMeaning);
+}
+
 export interface LedgerTables {
   scans: readonly ScanRow[];
   coverage: readonly CoverageRow[];
   gaps: readonly GapRow[];
+  flags: readonly FlagRow[];
   parameters: Parameters<typeof numbersBySample>[0];
 }
 
@@ -98,7 +109,7 @@ export function buildLedger(tables: LedgerTables, status: CampaignStatus | undef
   const rowOf = (sample: string, role: Role): LedgerRow => {
     const key = `${role}\u0000${sample}`;
     let row = rows.get(key);
-    if (!row) rows.set(key, (row = { sample, role, marks: [], gaps: [], emptySpans: [], numbers: [] }));
+    if (!row) rows.set(key, (row = { sample, role, marks: [], gaps: [], emptySpans: [], numbers: [], concerns: [] }));
     return row;
   };
   for (const { sample, state, reason } of status?.samples ?? [])
@@ -122,6 +133,7 @@ export function buildLedger(tables: LedgerTables, status: CampaignStatus | undef
     row.marks.sort((a, b) => (a.rateKPerS ?? 0) - (b.rateKPerS ?? 0) || (a.instrument < b.instrument ? -1 : 1));
     if (row.role !== 'sample') continue;
     row.gaps = tables.gaps.filter((gap) => gap.sample === row.sample);
+    row.concerns = concernsOf(row.sample, tables.flags, row.gaps);
     row.emptySpans = emptySpans(tables.coverage.filter((c) => c.sample === row.sample));
     row.numbers = numbers.get(row.sample) ?? [];
   }

@@ -1,6 +1,7 @@
-import type { GapRow } from '../../schema/wire/campaign.ts';
-import { FLAG_CODES, type Severity } from '../../schema/wire/flags.ts';
+import type { CampaignStatus, GapRow } from '../../schema/wire/campaign.ts';
+import type { Severity } from '../../schema/wire/flags.ts';
 import type { FlagRow } from '../client/rows.ts';
+import { flagMeaning } from '../words.ts';
 
 /** Flags that say the same and ask for the same. */
 export interface FlagGroup {
@@ -24,7 +25,7 @@ export function groupFlags(flags: readonly FlagRow[], gaps: readonly GapRow[]): 
     const group = groups.get(key);
     if (group) group.flags.push(flag);
     else {
-      const meaning = FLAG_CODES[flag.code]?.[1] ?? flag.code;
+      const meaning = flagMeaning(flag.code);
       groups.set(key, { code: flag.code, severity: flag.severity, meaning, action: flag.action, flags: [flag] });
     }
   }
@@ -33,6 +34,23 @@ export function groupFlags(flags: readonly FlagRow[], gaps: readonly GapRow[]): 
     stop: sorted.filter((g) => g.severity === 'stop'),
     warn: sorted.filter((g) => g.severity === 'warn'),
     note: sorted.filter((g) => g.severity === 'note'),
+  };
+}
+
+/**
+ * Gaps and flags that can be told now: what is missing from a sample is not known while its scans still come in, nor is a
+ * missing file while jobs run.
+ */
+export function tellableNow<Flag extends { code: string }>(
+  flags: readonly Flag[],
+  gaps: readonly GapRow[],
+  status: CampaignStatus | undefined,
+): { flags: Flag[]; gaps: GapRow[] } {
+  const waiting = new Set(status?.samples.filter((s) => s.state === 'waiting').map((s) => s.sample));
+  const isSettled = status?.settled ?? false;
+  return {
+    flags: flags.filter((flag) => isSettled || flag.code !== 'file-missing'),
+    gaps: gaps.filter((gap) => isSettled || (gap.sample !== '' && !waiting.has(gap.sample))),
   };
 }
 

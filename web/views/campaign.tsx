@@ -1,5 +1,6 @@
 import { useEffect, useMemo } from 'preact/hooks';
 import { buildLedger, instrumentNames } from '../model/ledger.ts';
+import { tellableNow } from '../model/next-steps.ts';
 import { openCampaign } from '../state/live-campaign.ts';
 import { createUploads } from '../state/uploads.ts';
 import { FileDesk, Outcomes } from './file-desk.tsx';
@@ -24,7 +25,11 @@ export function CampaignView({ id }: { id: string }) {
     document.title = `${campaign?.name ?? 'Campaign'} – ratespan`;
   }, [campaign?.name]);
 
-  const rows = useMemo(() => (tables ? buildLedger(tables, status) : []), [tables, status]);
+  const told = useMemo(() => tellableNow(tables?.flags ?? [], tables?.gaps ?? [], status), [tables, status]);
+  const rows = useMemo(
+    () => (tables ? buildLedger({ ...tables, gaps: told.gaps }, status) : []),
+    [tables, told, status],
+  );
   const instruments = useMemo(
     () => instrumentNames(rows, tables?.instruments.map((row) => row.instrument) ?? []),
     [rows, tables],
@@ -60,7 +65,7 @@ export function CampaignView({ id }: { id: string }) {
       {tables && !isEmpty && (
         <>
           <Ledger campaign={campaign} rows={rows} instruments={instruments} unassigned={unassigned} />
-          <NextSteps campaign={campaign} flags={tables.flags} gaps={tables.gaps} isSettled={status?.settled ?? false} />
+          <NextSteps campaign={campaign} flags={told.flags} gaps={told.gaps} isSettled={status?.settled ?? false} />
           <Numbers campaign={campaign} rows={rows} />
           <InstrumentTable campaign={campaign} rows={tables.instruments} names={instruments} />
         </>

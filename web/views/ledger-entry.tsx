@@ -8,7 +8,7 @@ import { describeEstimate, describeMark } from '../model/describe.ts';
 import { headlineEnergy, headlineExponent } from '../model/headline.ts';
 import type { LedgerRow } from '../model/ledger.ts';
 import { units } from '../state/units.ts';
-import { gapName, SAMPLE_STATE_NAMES } from '../words.ts';
+import { gapName, SAMPLE_STATE_NAMES, sentence } from '../words.ts';
 import type { ActiveMark } from './ledger.tsx';
 
 /** One sample of the coverage map: name and state, strip of marks, headline numbers. */
@@ -46,6 +46,11 @@ export function LedgerEntry(props: {
           </p>
         )}
         {row.reason && row.state !== 'fitted' && <p class="entry-reason">{row.reason}</p>}
+        {row.concerns.map((concern) => (
+          <p key={concern} class="entry-concern">
+            {sentence(concern)}
+          </p>
+        ))}
         {row.gaps.length > 0 && (
           <p class="entry-gaps">Missing: {[...new Set(row.gaps.map((gap) => gapName(gap.code)))].join(', ')}</p>
         )}

@@ -127,7 +127,7 @@ export function Ledger(props: {
             />
           ))}
         </ul>
-        <Readout active={activeMark} instruments={instruments} />
+        <Readout active={activeMark} instruments={instruments} rows={rows} />
       </div>
       {unassigned.length > 0 && (
         <details class="unassigned">

@@ -24,11 +24,11 @@ export function NextSteps(props: {
         <h2 id="next-title">What to do next</h2>
         <Downloads campaign={campaign} tables={['flags', 'gaps']} />
       </div>
-      {isClear && (
-        <p class="waiting">
-          {isSettled
-            ? 'Nothing is missing and nothing was flagged.'
-            : 'Nothing so far; the scans are still being worked on.'}
+      {isSettled && isClear && <p class="waiting">Nothing is missing and nothing was flagged.</p>}
+      {!isSettled && (
+        <p class="waiting still-working">
+          The scans are still being worked on. Missing files and missing measurements are listed once it is known what
+          came.
         </p>
       )}
       <div class="step-columns">

@@ -1,4 +1,5 @@
 import { useSignal } from '@preact/signals';
+import { FLAG_CODES, type FlagCode } from '../../schema/wire/flags.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { createIntervalScale, IntervalAxis, IntervalMark } from '../charts/interval-plot.tsx';
 import type { Campaign } from '../client/rows.ts';
@@ -7,6 +8,7 @@ import { describeEstimate } from '../model/describe.ts';
 import type { EventNumbers } from '../model/headline.ts';
 import type { LedgerRow } from '../model/ledger.ts';
 import { units } from '../state/units.ts';
+import { flagMeaning, sentence } from '../words.ts';
 import { Downloads } from './download.tsx';
 
 const PLOT_WIDTH = 150;
@@ -104,6 +106,7 @@ function Quantity({ title, unit, rows }: { title: string; unit: string; rows: re
             </td>
             <td class="number">
               {value} <span class="spread">{spread}</span>
+              <Concern flags={row.flags} />
             </td>
           </tr>
         );
@@ -118,5 +121,18 @@ function Quantity({ title, unit, rows }: { title: string; unit: string; rows: re
         </tr>
       )}
     </tbody>
+  );
+}
+
+/** A sign beside a number that its own flags put in doubt. */
+function Concern({ flags }: { flags: readonly FlagCode[] }) {
+  const meanings = flags.filter((code) => FLAG_CODES[code]?.[0] !== 'note').map(flagMeaning);
+  if (meanings.length === 0) return null;
+  const words = meanings.join('; ');
+  return (
+    <span class="concern tone-warn" title={sentence(words)}>
+      <span aria-hidden="true">●</span>
+      <span class="unseen">, flagged: {words}</span>
+    </span>
   );
 }

@@ -1,11 +1,10 @@
 import type { ReadonlySignal } from '@preact/signals';
 import type { ComponentChildren } from 'preact';
-import { FLAG_CODES } from '../../schema/wire/flags.ts';
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
-import { formatFixed, formatRate, formatSignificant, formatTemperature } from '../format.ts';
-import type { ScanMark } from '../model/ledger.ts';
+import { formatCount, formatFixed, formatRate, formatSignificant, formatTemperature } from '../format.ts';
+import type { LedgerRow, ScanMark } from '../model/ledger.ts';
 import { units } from '../state/units.ts';
-import { SCAN_STATE_NAMES } from '../words.ts';
+import { flagMeaning, SCAN_STATE_NAMES } from '../words.ts';
 
 function Field({ name, children }: { name: string; children: ComponentChildren }) {
   return (
@@ -20,11 +19,13 @@ function Field({ name, children }: { name: string; children: ComponentChildren }
 export function Readout(props: {
   active: ReadonlySignal<{ sample: string; mark: ScanMark } | undefined>;
   instruments: readonly string[];
+  rows: readonly LedgerRow[];
 }) {
   const at = props.active.value;
   if (!at) {
     return (
       <div class="readout is-idle">
+        <Summary rows={props.rows} />
         <p>Point at a mark to read its scan here, or reach the map with Tab and move with the arrow keys.</p>
       </div>
     );
@@ -33,6 +34,21 @@ export function Readout(props: {
     <div class="readout" aria-live="polite">
       <MarkDetail sample={at.sample} mark={at.mark} instruments={props.instruments} />
     </div>
+  );
+}
+
+/** What the whole map holds, while nothing is pointed at. */
+function Summary({ rows }: { rows: readonly LedgerRow[] }) {
+  const marks = rows.flatMap((row) => row.marks);
+  const rates = marks.map((mark) => mark.rateKPerS).filter((rate) => rate !== null);
+  if (rates.length === 0) return null;
+  const low = rates.reduce((a, b) => Math.min(a, b));
+  const high = rates.reduce((a, b) => Math.max(a, b));
+  return (
+    <p class="readout-summary">
+      {formatCount(marks.length, 'scan')}, {formatRate(low, units.value)} to {formatRate(high, units.value)}:{' '}
+      {formatFixed(Math.log10(high / low), 1)} decades of heating rate
+    </p>
   );
 }
 
@@ -76,9 +92,7 @@ function MarkDetail(props: { sample: string; mark: ScanMark; instruments: readon
               )}
             </Field>
           ))}
-        {flags.length > 0 && (
-          <Field name="flags">{flags.map((code) => FLAG_CODES[code]?.[1] ?? code).join('; ')}</Field>
-        )}
+        {flags.length > 0 && <Field name="flags">{flags.map(flagMeaning).join('; ')}</Field>}
       </dl>
     </>
   );
