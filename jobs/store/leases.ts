@@ -175,11 +175,12 @@ export function findLostJobs(ports: Ports): Promise<ClaimedJob[]> {
 }
 
 /** Sends wake-ups for jobs that were queued inside a write-back. Where wake-ups are heard in this process one is enough. */
-async function wakeNewJobs(ports: Ports, { id: doneId, campaignId }: ClaimedJob): Promise<void> {
+async function wakeNewJobs(ports: Ports, { id: doneId, campaignId, step, subject }: ClaimedJob): Promise<void> {
   if (ports.queue.heard) return ports.queue.wake(doneId, 0);
+  // A twin that waited for this job may have been woken in vain while it ran.
   const rows = await ports.database.write((db) =>
     db.all<{ id: string; nextTryAt: number }>(sql`
-      update jobs set woken = 1 where campaign_id = ${campaignId} and state = 'queued' and woken = 0
+      update jobs set woken = 1 where campaign_id = ${campaignId} and state = 'queued' and (woken = 0 or (step = ${step} and subject = ${subject}))
       returning id, next_try_at as nextTryAt`),
   );
   const now = ports.clock.now();
