@@ -2,14 +2,14 @@ import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 import { type ArrheniusIntegral, addArrheniusIntegral, addStretch } from '../laws/arrhenius-integral.ts';
 import { type JmakEstimate, JmakFit } from './avrami/non-isothermal.ts';
 import { CONVERSION_COUNT, type EventColumns, type EventData, GRID_INDEX } from './event-data.ts';
-import { fitFriedman } from './isoconversional/friedman.ts';
 import { fitVyazovkin } from './isoconversional/vyazovkin.ts';
 import {
   augisBennettExponent,
   BOSWELL,
+  energyFromSlopes,
   fitAugisBennett,
-  fitEnergyLine,
-  fitOzawaFlynnWall,
+  flynnFactor,
+  inverseSlopes,
   KISSINGER,
   kissingerLnPrefactor,
   STARINK,
@@ -129,44 +129,46 @@ export interface EstimateSettings {
 /**
  * Makes the function that computes all peak, isoconversional and JMAK estimates from the columns as they stand when it is called: buffers
  * are made once and the columns may be overwritten between calls (Monte Carlo).
- * The function's argument: parameters of a neighbouring JMAK fit to start from; without it JMAK is fitted from a rough start.
+ * The function's argument: neighbouring estimates to start from; without them JMAK is fitted from a rough start.
  */
 export function createEstimator(
   d: EventColumns,
   s: EstimateSettings,
   integrals: ProgrammeIntegrals,
-): (warmJmak?: Float64Array) => Estimates {
+): (warm?: Estimates) => Estimates {
   const m = s.curves.length;
-  const rate = new Float64Array(m);
   const T = new Float64Array(m);
-  const lnRate = new Float64Array(m);
+  const lnReaction = new Float64Array(m);
+  const lnRate = Float64Array.from(s.curves, (i) => Math.log(d.rate[i]));
+  const peakLnRate = d.rate.map(Math.log);
   const work: ArrheniusIntegral[] = Array.from({ length: m }, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
-  for (let j = 0; j < m; j++) rate[j] = d.rate[s.curves[j]];
   const jmak = new JmakFit(m, s.curveWeights, s.x0, (e, o) => integrals.cumulative(e, s.x0, o));
 
-  return (warmJmak) => {
-    const out = peakEstimates(d, s);
+  return (warm) => {
+    const out = peakEstimates(d, s, peakLnRate);
     if (!s.curveMethods) return out;
     for (let k = 0; k < CONVERSION_COUNT; k++) {
-      let inverse = 0;
       for (let j = 0; j < m; j++) {
         const at = s.curves[j] * CONVERSION_COUNT + k;
         T[j] = d.temperatureK[at];
-        lnRate[j] = d.lnRate[at];
-        inverse += 1 / T[j] / m;
+        lnReaction[j] = d.lnRate[at];
       }
-      const kas = fitEnergyLine(rate, T, KISSINGER.power, KISSINGER.factor, s.curveWeights).energy;
+      const slopes = inverseSlopes(lnRate, T, s.curveWeights, lnReaction);
+      const kas = energyFromSlopes(slopes, KISSINGER.power, KISSINGER.factor);
+      const uncorrected = energyFromSlopes(slopes, 0, 1);
       out.kissingerAkahiraSunose[k] = kas;
-      out.friedman[k] = fitFriedman(lnRate, T, s.curveWeights).energy;
-      out.starink[k] = fitEnergyLine(rate, T, STARINK.power, STARINK.factor, s.curveWeights).energy;
-      out.ozawaFlynnWallCurve[k] = fitOzawaFlynnWall(rate, T, s.curveWeights).energy;
-      const v = fitVyazovkin((e, o) => integrals.step(e, inverse, k, o), s.curveWeights, kas, work);
+      out.friedman[k] = -GAS_CONSTANT * slopes.lnReaction;
+      out.starink[k] = energyFromSlopes(slopes, STARINK.power, STARINK.factor);
+      out.ozawaFlynnWallCurve[k] = uncorrected / flynnFactor(uncorrected, slopes.inverse);
+      // In a draw the two energies move together: their ratio in the estimate is the better start.
+      const start = warm ? (kas * warm.vyazovkin[k]) / warm.kissingerAkahiraSunose[k] : kas;
+      const v = fitVyazovkin((e, o) => integrals.step(e, slopes.inverse, k, o), s.curveWeights, start, work);
       out.vyazovkin[k] = v.energy;
       out.vyazovkinConverged &&= v.converged;
     }
     // ln K at x0 from Kissinger's peak condition ln β = ln K + ln(R T²/E), n from the width.
-    out.jmak = warmJmak
-      ? jmak.fitFrom(warmJmak)
+    out.jmak = warm?.jmak
+      ? jmak.fitFrom(warm.jmak.fit.parameters)
       : jmak.fitFromScratch(
           Float64Array.of(
             out.kissinger,
@@ -178,15 +180,18 @@ export function createEstimator(
   };
 }
 
-function peakEstimates(d: EventColumns, s: EstimateSettings): Estimates {
-  const kissinger = fitEnergyLine(d.rate, d.peakK, KISSINGER.power, KISSINGER.factor, s.weights);
+function peakEstimates(d: EventColumns, s: EstimateSettings, lnRate: Float64Array): Estimates {
+  const slopes = inverseSlopes(lnRate, d.peakK, s.weights);
+  const kissinger = energyFromSlopes(slopes, KISSINGER.power, KISSINGER.factor);
+  const uncorrected = energyFromSlopes(slopes, 0, 1);
+  const intercept = slopes.meanLnRate - 2 * slopes.meanLnTemperature + (kissinger / GAS_CONSTANT) * slopes.inverse;
   return {
-    kissinger: kissinger.energy,
-    kissingerLnPrefactor: kissingerLnPrefactor(kissinger),
-    boswell: fitEnergyLine(d.rate, d.peakK, BOSWELL.power, BOSWELL.factor, s.weights).energy,
-    ozawaFlynnWall: fitOzawaFlynnWall(d.rate, d.peakK, s.weights).energy,
+    kissinger,
+    kissingerLnPrefactor: kissingerLnPrefactor({ energy: kissinger, intercept }),
+    boswell: energyFromSlopes(slopes, BOSWELL.power, BOSWELL.factor),
+    ozawaFlynnWall: uncorrected / flynnFactor(uncorrected, slopes.inverse),
     augisBennett: s.augisBennett ? fitAugisBennett(d.rate, d.peakK, d.rampStartK, s.weights).energy : Number.NaN,
-    augisBennettExponent: augisBennettExponent(d.peakK, d.widthK, kissinger.energy, s.weights),
+    augisBennettExponent: augisBennettExponent(d.peakK, d.widthK, kissinger, s.weights),
     friedman: new Float64Array(CONVERSION_COUNT),
     kissingerAkahiraSunose: new Float64Array(CONVERSION_COUNT),
     starink: new Float64Array(CONVERSION_COUNT),

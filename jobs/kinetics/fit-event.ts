@@ -95,11 +95,10 @@ function runDraws(
 ): Estimates[] {
   const columns = drawBuffer(model.data);
   const estimator = createEstimator(columns, settings, rampIntegrals(columns, settings.curves));
-  const warm = estimate.jmak?.fit.parameters;
   const out: Estimates[] = [];
   for (let d = 0; d < draws; d++) {
     drawColumns(model, random, columns);
-    out.push(estimator(warm));
+    out.push(estimator(estimate));
   }
   return out;
 }

@@ -46,7 +46,8 @@ export const BOSWELL = { power: 1, factor: 1 } as const;
 export const STARINK = { power: 1.92, factor: 1.0008 } as const;
 
 /** ln A (A in 1/s) from Kissinger's intercept ln(A R/E). */
-export const kissingerLnPrefactor = (k: EnergyEstimate): number => k.intercept + Math.log(k.energy / GAS_CONSTANT);
+export const kissingerLnPrefactor = (k: Pick<EnergyEstimate, 'energy' | 'intercept'>): number =>
+  k.intercept + Math.log(k.energy / GAS_CONSTANT);
 
 /** Doyle's slope of −ln p(x) as the start, then −d ln p/dx = 1/h(x) at the mean temperature, repeated (Flynn 1983, J. Thermal Anal. 27:95). */
 const DOYLE_SLOPE = 1.0516;
@@ -61,14 +62,80 @@ export function fitOzawaFlynnWall(
   const line = fitEnergyLine(rate, temperature, 0, 1, weights);
   let inverse = 0;
   for (let i = 0; i < temperature.length; i++) inverse += 1 / temperature[i] / temperature.length;
+  const factor = flynnFactor(line.energy, inverse);
+  return { ...line, energy: line.energy / factor, energyError: line.energyError / factor };
+}
+
+/** @param energy −R × slope of ln β against 1/T, J/mol   @param inverse mean 1/T */
+export function flynnFactor(energy: number, inverse: number): number {
   let factor = DOYLE_SLOPE;
   for (let round = 0; round < FLYNN_ROUNDS; round++) {
-    const x = (line.energy / factor / GAS_CONSTANT) * inverse;
+    const x = (energy / factor / GAS_CONSTANT) * inverse;
     if (!(x > 1)) break;
     factor = 1 / temperatureIntegralFactorFast(x);
   }
-  return { ...line, energy: line.energy / factor, energyError: line.energyError / factor };
+  return factor;
 }
+
+/**
+ * Weighted least-squares slopes against 1/T of ln β, ln T and ln(dα/dt), K: every line method is a mix of them, so one pass serves all
+ * (Monte Carlo draws need the energies only).
+ */
+export interface InverseSlopes {
+  lnRate: number;
+  lnTemperature: number;
+  lnReaction: number;
+  /** weighted means */
+  inverse: number;
+  meanLnRate: number;
+  meanLnTemperature: number;
+}
+
+/** @param lnReaction ln(dα/dt), or nothing for peaks */
+export function inverseSlopes(
+  lnRate: Float64Array,
+  temperature: Float64Array,
+  weights: Float64Array,
+  lnReaction?: Float64Array,
+): InverseSlopes {
+  const n = temperature.length;
+  let sw = 0;
+  let sx = 0;
+  let sb = 0;
+  for (let i = 0; i < n; i++) {
+    sw += weights[i];
+    sx += weights[i] / temperature[i];
+    sb += weights[i] * lnRate[i];
+  }
+  const inverse = sx / sw;
+  let xx = 0;
+  let xb = 0;
+  let xT = 0;
+  let xr = 0;
+  let sT = 0;
+  for (let i = 0; i < n; i++) {
+    const dx = 1 / temperature[i] - inverse;
+    const lnT = Math.log(temperature[i]);
+    const w = weights[i] * dx;
+    xx += w * dx;
+    xb += w * lnRate[i];
+    xT += w * lnT;
+    sT += weights[i] * lnT;
+    if (lnReaction) xr += w * lnReaction[i];
+  }
+  return {
+    lnRate: xb / xx,
+    lnTemperature: xT / xx,
+    lnReaction: xr / xx,
+    inverse,
+    meanLnRate: sb / sw,
+    meanLnTemperature: sT / sw,
+  };
+}
+
+/** E of `fitEnergyLine` from the slopes, J/mol. */
+export const energyFromSlopes = (s: InverseSlopes, power: number, factor: number): number =>
+  (-GAS_CONSTANT / factor) * (s.lnRate - power * s.lnTemperature);
 
 /** A ramp that starts above this part of the peak temperature spoils Augis & Bennett's energy (trial: −17 % at 0.92). */
 export const LATEST_START = 0.75;

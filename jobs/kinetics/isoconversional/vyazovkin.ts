@@ -10,10 +10,17 @@ export interface VyazovkinEstimate {
   evaluations: number;
 }
 
-/** Bracket of the search, J/mol, and the step at which it has converged, relative. */
-const LOWEST = 1e3;
-const HIGHEST = 2e6;
-const TOLERANCE = 1e-10;
+/** Bracket of the search, J/mol. */
+export interface EnergyBracket {
+  lowest: number;
+  highest: number;
+}
+const HEATING_BRACKET: EnergyBracket = { lowest: 1e3, highest: 2e6 };
+/** Effective energies on cooling fall below zero near the melting point (METHODS 7). */
+export const COOLING_BRACKET: EnergyBracket = { lowest: -1e6, highest: 1e6 };
+/** The Newton step, relative to E or 1 kJ/mol, after which the next would be below rounding (convergence is quadratic). */
+const TOLERANCE = 1e-6;
+const LEAST_SCALE = 1e3;
 
 /**
  * Vyazovkin 2001 (J. Comput. Chem. 22:178): the E that minimises Φ = Σ_{i≠j} J_i/J_j = (Σ J)(Σ 1/J) − n, here with weights on scans of
@@ -26,6 +33,7 @@ export function fitVyazovkin(
   weights: ArrayLike<number>,
   start: number,
   work: ArrheniusIntegral[],
+  { lowest, highest }: EnergyBracket = HEATING_BRACKET,
 ): VyazovkinEstimate {
   let evaluations = 0;
   const slopes = (energy: number): { first: number; second: number } => {
@@ -50,18 +58,20 @@ export function fitVyazovkin(
     }
     return { first: a1 * b + a * b1, second: a2 * b + 2 * a1 * b1 + a * b2 };
   };
-  let energy = Math.min(HIGHEST, Math.max(LOWEST, start));
+  let energy = Math.min(highest, Math.max(lowest, start));
   for (let i = 0; i < 12; i++) {
     const { first, second } = slopes(energy);
     if (!(second > 0) || !Number.isFinite(first)) break;
     const next = energy - first / second;
-    if (!(next > LOWEST && next < HIGHEST)) break;
+    if (!(next > lowest && next < highest)) break;
     const step = Math.abs(next - energy);
     energy = next;
-    if (step < TOLERANCE * energy) return { energy, converged: true, evaluations };
+    if (step < TOLERANCE * Math.max(LEAST_SCALE, Math.abs(energy))) return { energy, converged: true, evaluations };
   }
   try {
-    energy = findRoot((e) => slopes(e).first, Math.max(LOWEST, start / 4), Math.min(HIGHEST, start * 4), 1e-6 * start);
+    const reach = 3 * Math.max(LEAST_SCALE, Math.abs(start));
+    const low = Math.max(lowest, start - (lowest > 0 ? reach / 4 : reach));
+    energy = findRoot((e) => slopes(e).first, low, Math.min(highest, start + reach), 1e-6 * LEAST_SCALE);
     return { energy, converged: true, evaluations };
   } catch {
     return { energy: start, converged: false, evaluations };
