@@ -4,17 +4,16 @@ import type { Ports } from '../ports/index.ts';
 import { type FitRows, type FitScanRow, loadFit, markFitted, saveFit } from '../store/fit-rows.ts';
 import { hashOf } from '../store/ids.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
+import { listSamples } from '../store/views.ts';
 import { compareText } from './assign-scans.ts';
 import { readDerived } from './columns-store.ts';
 import { FIT_DRAWS, STEP_VERSIONS } from './settings.ts';
 
 /** Step `fit-sample`: every law on the reduced scans of one sample. The same inputs as the stored fit: only looked up. */
 export async function fitStoredSample(ports: Ports, job: ClaimedJob): Promise<void> {
-  const rows = await loadFit(ports, job.subject);
+  const rows = await loadOrderedFit(ports, job.subject);
   if (!rows) return completeJob(ports, job);
   const { sample } = rows;
-  rows.scans.sort((a, b) => compareText(orderOf(a), orderOf(b)));
-  rows.calibrations.sort((a, b) => compareText(a.instrument, b.instrument));
   const fitKey = fitKeyOf(rows);
   if (sample.fitKey === fitKey) {
     const fit = await readDerived(ports, blobKeyOf(rows, fitKey), decodeFit);
@@ -22,6 +21,24 @@ export async function fitStoredSample(ports: Ports, job: ClaimedJob): Promise<vo
   }
   const fit = await fitOrLookUp(ports, rows, fitKey);
   await completeJob(ports, job, (db) => saveFit(db, sample, fitKey, fit));
+}
+
+/** Seeds of the draws by sample, as the stored fits had them: for the record of a run. A sample without a reduced scan has none. */
+export async function readSampleSeeds(ports: Ports, campaignId: string): Promise<Record<string, string>> {
+  const seeds: [string, string][] = [];
+  for (const { id, sample } of await listSamples(ports, campaignId)) {
+    const rows = await loadOrderedFit(ports, id);
+    if (rows && rows.scans.length > 0) seeds.push([sample, seedOf(rows)]);
+  }
+  return Object.fromEntries(seeds.sort((a, b) => compareText(a[0], b[0])));
+}
+
+/** Order by content, not by arrival. */
+async function loadOrderedFit(ports: Ports, sampleId: string): Promise<FitRows | undefined> {
+  const rows = await loadFit(ports, sampleId);
+  rows?.scans.sort((a, b) => compareText(orderOf(a), orderOf(b)));
+  rows?.calibrations.sort((a, b) => compareText(a.instrument, b.instrument));
+  return rows;
 }
 
 const decodeFit = (bytes: Uint8Array) => JSON.parse(new TextDecoder().decode(bytes)) as FitResult;

@@ -4,8 +4,11 @@ import { availableParallelism } from 'node:os';
 import { basename, dirname, join, resolve } from 'node:path';
 import { Readable } from 'node:stream';
 import type { CampaignStatus } from '../../../schema/wire/campaign.ts';
+import { ARCHIVE_LIMITS } from '../../instrument/index.ts';
 import type { Ports } from '../../ports/index.ts';
 import { createRunner } from '../../runner/index.ts';
+import { readSampleSeeds } from '../../steps/fit-sample.ts';
+import { FIT_DRAWS, STEP_VERSIONS } from '../../steps/settings.ts';
 import {
   CAMPAIGN_NAME_LIMIT,
   type Campaign,
@@ -69,6 +72,8 @@ export async function run([folder]: string[], values: Values, terminal: Terminal
       program: PROGRAM,
       version: VERSION,
       campaign: campaign.name,
+      settings: { draws: FIT_DRAWS, step_versions: STEP_VERSIONS, unpack: ARCHIVE_LIMITS },
+      seed: await readSampleSeeds(ports, campaign.id),
       inputs,
       refused,
       counts: { scans: status.scans, samples: countStates(status), failed_jobs: status.jobs.failed, rows },
