@@ -3,6 +3,7 @@ import type { FitReport, FitScan, ParameterRow } from '../../schema/wire/paramet
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import type { Random } from '../numeric/random.ts';
 import { mean } from '../numeric/statistics.ts';
+import { ozawaTemperatures } from './avrami/ozawa.ts';
 import {
   createEstimator,
   type EstimateSettings,
@@ -10,11 +11,16 @@ import {
   measuredIntegrals,
   rampIntegrals,
 } from './estimate.ts';
-import { CONVERSIONS, collectEvent, distinctRates } from './event-data.ts';
+import { CONVERSIONS, collectEvent, distinctRates, POOLED } from './event-data.ts';
+import { createFurtherEstimator, type FurtherEstimates, type FurtherPlan } from './further-estimates.ts';
+import { addAnalyticRows, addFurtherRows } from './further-rows.ts';
 import { findOutliers, judgeEnergy, judgeJmak } from './judge-event.ts';
+import { judgeTops, noteExponent, plotModels, reportFurther, reportModels } from './judge-model.ts';
 import { drawBuffer, drawColumns, modelScatter, type ScatterModel } from './monte-carlo.ts';
 import { RowBuilder } from './parameter-rows.ts';
 import { LATEST_START } from './peak-methods.ts';
+import { findNonMonotonicSeries, findOnsetsAbovePeak, findRateIndependence } from './series-checks.ts';
+import { assumeFullResponse, unknownResponses, variantRows } from './variants.ts';
 
 export interface EventFit {
   parameters: ParameterRow[];
@@ -25,8 +31,39 @@ export interface EventFit {
 /** Fewer distinct rates than this and no method applies (ICTAC 2011: at least three programmes). */
 export const LEAST_RATES = 3;
 
-/** All estimates of one event with their intervals. The caller has made sure of three distinct rates. */
+/**
+ * All estimates of one event with their intervals, and beside them what they would be without its outliers and, where it is not known how
+ * much of a lag smears, with all of it smearing (variants). The caller has made sure of three distinct rates.
+ * @param makeRandom a fresh generator for each fit
+ */
 export function fitEvent(
+  sample: string,
+  event: number,
+  scans: FitScan[],
+  calibrations: InstrumentCalibration[],
+  makeRandom: () => Random,
+  draws: number,
+): EventFit {
+  const fit = fitScans(sample, event, scans, calibrations, makeRandom(), draws);
+  const parameters = [...fit.parameters];
+  const again = (part: FitScan[], variant: ParameterRow['variant']) => {
+    if (distinctRates(part.map((s) => s.event.rateKPerS)).length < LEAST_RATES) return;
+    const other = fitScans(sample, event, part, calibrations, makeRandom(), draws);
+    parameters.push(...variantRows(other.parameters, variant));
+  };
+  const outliers = fit.flags.filter((f) => f.code === 'outlier').map((f) => f.file);
+  if (outliers.length > 0)
+    again(
+      scans.filter((s) => !outliers.includes(s.file)),
+      'without_outliers',
+    );
+  const smearing = unknownResponses(scans, calibrations);
+  if (smearing.length > 0) again(assumeFullResponse(scans, calibrations, smearing), 'full_response');
+  return { ...fit, parameters };
+}
+
+/** One fit of the scans given. */
+function fitScans(
   sample: string,
   event: number,
   scans: FitScan[],
@@ -36,7 +73,12 @@ export function fitEvent(
 ): EventFit {
   const data = collectEvent(event, scans, calibrations);
   const where = { sample, event };
-  const flags: Flag[] = [];
+  const independent = findRateIndependence(data, where);
+  if (independent) {
+    const report = notComputed(event, 'kissinger', 'the temperature does not rise with heating rate', data.n);
+    return { parameters: [], reports: [report], flags: [independent] };
+  }
+  const flags: Flag[] = [...findOnsetsAbovePeak(data, where), ...findNonMonotonicSeries(data, where)];
   const curves = Uint16Array.from(Array.from(data.hasCurve.keys()).filter((i) => data.hasCurve[i] === 1));
   const curveRates = distinctRates(Array.from(curves, (i) => data.rate[i]));
   const curveMethods = curveRates.length >= LEAST_RATES;
@@ -71,37 +113,70 @@ export function fitEvent(
     );
   }
 
-  const estimate = createEstimator(data, settings, measuredIntegrals(data, curves))();
-  const drawn = runDraws(model, settings, estimate, random, draws);
+  const measured = measuredIntegrals(data, curves);
+  const estimate = createEstimator(data, settings, measured)();
+  const plots = curveMethods ? plotModels(data, curves, mean(estimate.vyazovkin.subarray(POOLED.from, POOLED.to))) : [];
+  const avrami = curveMethods ? judgeJmak(estimate, where) : [];
+  const tops = curveMethods && judgeTops(data, curves, plots, where);
+  if (tops && !avrami.some((f) => f.code === 'not-avrami')) avrami.push(tops);
+  const plan: FurtherPlan = {
+    ozawaTemperatures: curveMethods ? ozawaTemperatures(data, curves) : [],
+    sestakBerggren: avrami.some((f) => f.code === 'not-avrami'),
+  };
+  const { drawn, further } = runDraws(model, settings, plan, estimate, random, draws);
   flags.push(...findOutliers(model, where));
   const builder = new RowBuilder(sample, data, curves, model, drawn);
+  const reports = reportFits(event, estimate, curves.length);
+  if (late >= 0) reports.push(notComputed(event, 'augis_bennett', 'a ramp starts too near its peak', data.n));
   builder.peakRows(estimate, settings);
   if (curveMethods) {
     const varies = judgeEnergy(estimate, drawn, model, where);
     if (varies) flags.push(varies);
     builder.curveRows(estimate, varies ? ['energy-varies'] : []);
-    flags.push(...judgeJmak(estimate, where));
+    addAnalyticRows(builder, data, settings, estimate, measured);
+    const more = createFurtherEstimator(data, settings, plan)(estimate);
+    addFurtherRows(builder, more, further);
+    const told = reportFurther(event, more, plan, curves.length * CONVERSIONS.length, where);
+    reports.push(...told.reports, ...reportModels(event, plots));
+    flags.push(...avrami, ...told.flags);
+    const n = builder.rows.find((r) => r.quantity === 'avrami_exponent' && r.method === 'jmak');
+    if (!plan.sestakBerggren) flags.push(...noteExponent(n, where));
   }
   builder.enthalpyRow();
-  return { parameters: builder.rows, reports: reportFits(event, estimate, curves.length), flags };
+  return { parameters: builder.rows, reports, flags };
 }
 
 function runDraws(
   model: ScatterModel,
   settings: EstimateSettings,
+  plan: FurtherPlan,
   estimate: Estimates,
   random: Random,
   draws: number,
-): Estimates[] {
+): { drawn: Estimates[]; further: FurtherEstimates[] } {
   const columns = drawBuffer(model.data);
   const estimator = createEstimator(columns, settings, rampIntegrals(columns, settings.curves));
-  const out: Estimates[] = [];
+  const furtherEstimator = createFurtherEstimator(columns, settings, plan);
+  const drawn: Estimates[] = [];
+  const further: FurtherEstimates[] = [];
   for (let d = 0; d < draws; d++) {
     drawColumns(model, random, columns);
-    out.push(estimator(estimate));
+    const main = estimator(estimate);
+    drawn.push(main);
+    if (settings.curveMethods) further.push(furtherEstimator(main));
   }
-  return out;
+  return { drawn, further };
 }
+
+const notComputed = (event: number, method: string, message: string, rows: number): FitReport => ({
+  event,
+  method,
+  converged: false,
+  message,
+  evaluations: 0,
+  residualRms: null,
+  rows,
+});
 
 function reportFits(event: number, e: Estimates, curveScans: number): FitReport[] {
   const out: FitReport[] = [];

@@ -28,7 +28,14 @@ export function fitSample(input: FitInput): FitResult {
       continue;
     }
     fits.push(
-      fitEvent(input.sample, event, scans, input.instruments, createRandom(`${input.seed}:${event}`), input.draws),
+      fitEvent(
+        input.sample,
+        event,
+        scans,
+        input.instruments,
+        () => createRandom(`${input.seed}:${event}`),
+        input.draws,
+      ),
     );
   }
   for (const c of input.instruments) {

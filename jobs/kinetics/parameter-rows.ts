@@ -14,13 +14,14 @@ import {
   KISSINGER,
 } from './peak-methods.ts';
 
-interface Where {
+export interface Where {
   quantity: string;
   method: string;
   unit: string;
   conversion?: number;
   variant?: ParameterRow['variant'];
   flags?: FlagCode[];
+  temperatureK?: number;
 }
 
 /** Turns estimates and draws into table rows. */
@@ -50,9 +51,14 @@ export class RowBuilder {
     log: boolean,
     onCurves: boolean,
   ): void {
-    const value = of(estimate) * scale;
+    const drawn = this.drawn.map((d) => of(d) * scale);
+    this.addDrawn(where, of(estimate) * scale, drawn, log, onCurves);
+  }
+
+  /** A row with the Monte Carlo interval from values in the unit printed; nothing for a value that is not finite. */
+  addDrawn(where: Where, value: number, drawn: number[], log: boolean, onCurves: boolean): void {
     if (!Number.isFinite(value)) return;
-    const spread = standardDeviation(this.drawn.map((d) => (log ? Math.log(of(d) * scale) : of(d) * scale)));
+    const spread = standardDeviation(log ? drawn.map(Math.log) : drawn);
     const bounded = Number.isFinite(spread) && (!log || value > 0);
     this.push(
       where,
@@ -67,7 +73,7 @@ export class RowBuilder {
     );
   }
 
-  private push(
+  push(
     where: Where,
     value: number,
     interval: readonly [number, number] | undefined,
@@ -81,7 +87,7 @@ export class RowBuilder {
       quantity: where.quantity,
       method: where.method,
       conversion: where.conversion ?? null,
-      temperature_K: null,
+      temperature_K: where.temperatureK ?? null,
       value,
       unit: where.unit,
       lower95: interval ? interval[0] : null,

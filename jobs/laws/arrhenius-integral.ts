@@ -7,7 +7,8 @@ import { temperatureIntegralFactorFast } from './temperature-integral.ts';
  *   J   = Δt/ΔT [T h(x)/x · e^(x0 E/R − x)],  x = E/(R T),  h the temperature integral's factor,
  *   J'  = −(1/R) Δt/ΔT [e^(…)(1/x − h/x²)]    (E1 in place of p), and
  *   J'' = Δt/(R E ΔT) [e^(…)],
- * differences between the ends of the stretch; the scale itself is not differentiated. E ≤ 0 is not covered.
+ * differences between the ends of the stretch; the scale itself is not differentiated. Below x = 10, and so for every E ≤ 0 (the
+ * effective energy of crystallisation on cooling), the closed form loses digits or does not exist: there Gauss–Legendre panels are summed.
  */
 export interface ArrheniusIntegral {
   value: number;
@@ -17,6 +18,14 @@ export interface ArrheniusIntegral {
 
 /** Below this E ΔT/(R T²) the difference of the closed form loses digits and the middle of the stretch is as good (error z²/24). */
 const SHORT_STRETCH = 2e-3;
+/** Below this x the rational factor is off by more than 1e-6. */
+const LEAST_X = 10;
+/** Panels of the quadrature are at most this long in x; five nodes then leave less than 1e-11. */
+const PANEL = 0.5;
+const NODES = [0, 0.5384693101056831, -0.5384693101056831, 0.906179845938664, -0.906179845938664];
+const NODE_WEIGHTS = [
+  0.5688888888888889, 0.47862867049936647, 0.47862867049936647, 0.23692688505618908, 0.23692688505618908,
+];
 
 /** Sums over rows from … to (inclusive) of a programme; adds to `out`. */
 export function addArrheniusIntegral(
@@ -46,6 +55,10 @@ export function addStretch(T1: number, T2: number, dt: number, c: number, shift:
     out.byEnergy2 += k / (GAS_CONSTANT * T) ** 2;
     return;
   }
+  if (!(x1 > LEAST_X && x2 > LEAST_X)) {
+    addByQuadrature(T1, T2, dt, c, shift, out);
+    return;
+  }
   const e1 = Math.exp(shift - x1);
   const e2 = Math.exp(shift - x2);
   const h1 = temperatureIntegralFactorFast(x1) / x1;
@@ -54,4 +67,21 @@ export function addStretch(T1: number, T2: number, dt: number, c: number, shift:
   out.value += perKelvin * (T2 * h2 * e2 - T1 * h1 * e1);
   out.byEnergy -= (perKelvin / GAS_CONSTANT) * ((e2 * (1 - h2)) / x2 - (e1 * (1 - h1)) / x1);
   out.byEnergy2 += (perKelvin / (GAS_CONSTANT * GAS_CONSTANT * c)) * (e2 - e1);
+}
+
+/** Five-point Gauss–Legendre over panels of the stretch: any sign of c, all terms of one sign, so nothing cancels. */
+function addByQuadrature(T1: number, T2: number, dt: number, c: number, shift: number, out: ArrheniusIntegral): void {
+  const panels = Math.ceil(Math.abs(c / T1 - c / T2) / PANEL);
+  const half = (T2 - T1) / panels / 2;
+  const perNode = dt / panels / 2;
+  for (let p = 0; p < panels; p++) {
+    const middle = T1 + (2 * p + 1) * half;
+    for (let q = 0; q < NODES.length; q++) {
+      const T = middle + half * NODES[q];
+      const k = perNode * NODE_WEIGHTS[q] * Math.exp(shift - c / T);
+      out.value += k;
+      out.byEnergy -= k / (GAS_CONSTANT * T);
+      out.byEnergy2 += k / (GAS_CONSTANT * T) ** 2;
+    }
+  }
 }

@@ -61,3 +61,17 @@ export function studentQuantile(probability: number, degrees: number): number {
   );
   return (root * Math.sqrt(degrees)) / Math.sqrt(1 - root * root);
 }
+
+/**
+ * Quantile of Fisher's F distribution: the F with P(≤ F) = probability, 0 < probability < 1, by its incomplete beta function
+ * (Abramowitz & Stegun 26.6.2).
+ * @throws RangeError outside that range or for degrees ≤ 0
+ */
+export function fisherQuantile(probability: number, degrees1: number, degrees2: number): number {
+  if (!(probability > 0 && probability < 1)) throw new RangeError(`probability not in (0, 1): ${probability}`);
+  if (!(degrees1 > 0 && degrees2 > 0)) {
+    throw new RangeError(`degrees of freedom not above 0: ${degrees1}, ${degrees2}`);
+  }
+  const x = findRoot((v) => incompleteBeta(v, degrees1 / 2, degrees2 / 2) - probability, 0, 1, 1e-15);
+  return (x * degrees2) / ((1 - x) * degrees1);
+}

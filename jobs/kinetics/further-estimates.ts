@@ -1,0 +1,54 @@
+import type { ArrheniusIntegral } from '../laws/arrhenius-integral.ts';
+import { mean } from '../numeric/statistics.ts';
+import { fitMatusitaSakka, type MatusitaSakkaEstimate } from './avrami/matusita-sakka.ts';
+import { fitOzawa } from './avrami/ozawa.ts';
+import type { EstimateSettings, Estimates } from './estimate.ts';
+import { CONVERSION_COUNT, type EventColumns, POOLED } from './event-data.ts';
+import { fitVyazovkinLinear } from './isoconversional/vyazovkin-linear.ts';
+import { compensationLnPrefactor } from './models/compensation.ts';
+import { fitSestakBerggren, type SestakBerggrenEstimate } from './models/sestak-berggren.ts';
+
+/** What the curve methods beside the main ones give, estimate or draw. */
+export interface FurtherEstimates {
+  vyazovkinLinear: Float64Array;
+  friedmanLnPrefactor: number;
+  /** NaN where no temperature has three rates */
+  ozawaExponent: number;
+  matusitaSakka: MatusitaSakkaEstimate;
+  sestakBerggren?: SestakBerggrenEstimate;
+}
+
+export interface FurtherPlan {
+  ozawaTemperatures: readonly number[];
+  /** the JMAK law does not hold: fit α^M (1−α)^N in its place */
+  sestakBerggren: boolean;
+}
+
+/** Makes the function that computes them from the columns as they stand when it is called; buffers are made once. */
+export function createFurtherEstimator(
+  d: EventColumns,
+  { curves, curveWeights }: EstimateSettings,
+  plan: FurtherPlan,
+): (main: Estimates) => FurtherEstimates {
+  const m = curves.length;
+  const rate = Float64Array.from(curves, (i) => d.rate[i]);
+  const lnRate = rate.map(Math.log);
+  const T = new Float64Array(m);
+  const work: ArrheniusIntegral[] = Array.from({ length: m }, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
+  return (main) => {
+    const vyazovkinLinear = new Float64Array(CONVERSION_COUNT);
+    for (let k = 0; k < CONVERSION_COUNT; k++) {
+      for (let j = 0; j < m; j++) T[j] = d.temperatureK[curves[j] * CONVERSION_COUNT + k];
+      vyazovkinLinear[k] = fitVyazovkinLinear(rate, T, curveWeights, main.starink[k], work).energy;
+    }
+    const energy = mean(main.friedman.subarray(POOLED.from, POOLED.to));
+    const sestakBerggren = plan.sestakBerggren ? fitSestakBerggren(d, curves, curveWeights) : undefined;
+    return {
+      vyazovkinLinear,
+      friedmanLnPrefactor: compensationLnPrefactor(d, curves, curveWeights, energy),
+      ozawaExponent: fitOzawa(d, curves, lnRate, curveWeights, plan.ozawaTemperatures),
+      matusitaSakka: fitMatusitaSakka(d, curves, lnRate, curveWeights),
+      ...(sestakBerggren && { sestakBerggren }),
+    };
+  };
+}
