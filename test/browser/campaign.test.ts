@@ -63,6 +63,8 @@ describe.skipIf(!executable)('a campaign on the page', () => {
   }, 150_000);
 
   test('shows every scan on the coverage map with its instrument, rate and state', async () => {
+    // The tables follow the status by a second or two.
+    await expect.poll(() => page.getByRole('option', { name: /waiting/ }).count(), { timeout: 15_000 }).toBe(0);
     await page.locator('.readout-summary', { hasText: `${scanFiles.length} scans` }).waitFor();
     const samples = [...new Set(scanFiles.map(({ path }) => path.split('/')[0]))];
     const names = new Map<string, string[]>();
@@ -122,8 +124,8 @@ describe.skipIf(!executable)('a campaign on the page', () => {
   });
 
   test('remembers the units', async () => {
-    await page.getByRole('group', { name: 'Unit of heating rate' }).getByText('K/s').click();
-    await page.getByRole('group', { name: 'Unit of temperature' }).getByText('K', { exact: true }).click();
+    await page.getByRole('group', { name: 'Unit of heating rate' }).getByLabel('K/s').check();
+    await page.getByRole('group', { name: 'Unit of temperature' }).getByLabel('K', { exact: true }).check();
     await page.reload();
     const name = await page.getByRole('option').first().getAttribute('aria-label', { timeout: 10_000 });
     expect(name).toMatch(/\u00a0K\/s, reduced, peak [\d.]+\u00a0K/);
