@@ -1,199 +1,160 @@
 import { solveSymmetric } from '../numeric/linear-solve.ts';
-import type { EventWindow } from './window.ts';
+import type { FlankSums } from './flank-sums.ts';
 
 /**
- * The conversion-weighted baseline under an event: b = p0 + p1 u + p2 u² + α (s0 + s1 u), u = (t − peak)/width.
- * Before the event α = 0, behind it α = 1, so its five coefficients follow from the two flanks alone by linear least squares, and only
- * the evaluation under the event needs α(t), found by iteration. s0 is the step between glass or liquid and crystal, s1 its slope,
- * p2 a curvature common to both sides (instrument drift): with p2 = 0 this is the tangent baseline of METHODS 4.3.
- * p2 is fitted where both flanks are long, else p2 and s1 only where they stand out of the noise, since a needless term costs precision
- * under the event.
+ * The baseline under an event: b = p0 + p1 u + p2 u² + p3 u³ + α (s0 + s1 u), u = (t − peak)/width. s0 is the step between glass or
+ * liquid and crystal, s1 its slope, p2 and p3 a curvature common to both sides (drift of the instrument). Before the event α = 0, behind
+ * it α = 1, so the coefficients follow from the two flanks alone by linear least squares, and only the evaluation under the event needs
+ * α(t), found by iteration; with p2 = p3 = 0 this is the tangent baseline of METHODS 4.3.
+ *
+ * Which terms a pair of flanks bears cannot be read off one test without jumps, so the models are averaged with weights exp(−BIC/2)
+ * (Schwarz 1978; Hoeting et al. 1999, Statist. Sci. 14:382); the spread between them is part of the covariance.
  */
 export interface Baseline {
   peakS: number;
   widthS: number;
+  /** p0 p1 p2 p3 s0 s1, signal units */
   coefficients: Float64Array;
+  /** 6 × 6: noise of the flanks and choice of the model */
+  covariance: Float64Array;
   leftS: number;
   rightS: number;
-  /** root mean square residual of the flanks, signal units */
-  residual: number;
+  /** α is taken from the event, or the baseline of one side is followed throughout */
+  side: 'both' | 'left' | 'right';
 }
 
-/** Longest flanks, in widths; the first that fit to the noise are taken, so that a glass transition or melting nearby is left out. */
-const FLANKS = [3, 2, 1.3, 0.8, 0.5];
-/** Both flanks at least this long: a common curvature is always fitted, widths. */
-const CURVATURE_FROM = 1.2;
-/** Least signal-to-error of an optional term for it to be kept. */
-const TERM_SIGMAS = 4;
-/** No curvature or slope step is looked for with a flank shorter than this, widths. */
-const SHORTEST_FOR_TERMS = 0.5;
-/** A flank is good when its block means stay within this many errors, plus this part of the event's height. */
-const BLOCK_SIGMAS = 3.5;
-const BLOCK_HEIGHT_PART = 0.004;
+export const TERMS = 6;
+
+/** Index sets of the models, simplest first. */
+const MODELS: readonly (readonly number[])[] = [
+  [0, 1],
+  [0, 1, 2],
+  [0, 1, 4],
+  [0, 1, 2, 3],
+  [0, 1, 2, 4],
+  [0, 1, 4, 5],
+  [0, 1, 2, 3, 4],
+  [0, 1, 2, 4, 5],
+];
+const WITHOUT_STEP = [MODELS[0], MODELS[1], MODELS[3]];
+const ONE_FLANK: readonly (readonly number[])[] = [[0], [0, 1], [0, 1, 2]];
+const STEP_TO_RIGHT = [MODELS[2], MODELS[4]];
+
+/** Flanks shorter than this bear no curvature of third order and no slope step, widths. */
+const SHORT_FLANK = 0.9;
+/** Blocks of this length are independent of one another, and not known better than this part of the event's height. */
+export const BLOCK_WIDTHS = 1 / 6;
+export const BLOCK_HEIGHT_PART = 4e-4;
+
+export interface Flanks {
+  /** bins [from, to) of either flank; empty when from ≥ to */
+  left: readonly [number, number];
+  right: readonly [number, number];
+}
 
 /**
- * Fits the flanks beside [leftS, rightS].
- * @returns undefined when a side has fewer than four bins: the event is cut there
+ * @param variance of one bin, what is systematic within a block included
+ * @param steps which models: `free` all, `none` without a step, `right` with a step, evaluated as the right side's baseline
+ * @returns undefined when the flanks together hold fewer than four bins
  */
 export function fitBaseline(
-  w: EventWindow,
-  peakS: number,
-  widthS: number,
-  leftS: number,
-  rightS: number,
-  height: number,
+  sums: FlankSums,
+  flanks: Flanks,
+  limits: { leftS: number; rightS: number },
+  variance: number,
+  steps: 'free' | 'none' | 'right',
 ): Baseline | undefined {
-  let best: Baseline | undefined;
-  let bestScore = Number.POSITIVE_INFINITY;
-  for (const left of FLANKS) {
-    for (const right of FLANKS) {
-      const tried = tryFlanks(w, peakS, widthS, leftS, rightS, left, right, height);
-      if (!tried) continue;
-      if (tried.score <= 1) return tried.baseline;
-      // No flank is clean: the least bad one, longer ones preferred (they come first).
-      if (tried.score < bestScore) {
-        bestScore = tried.score;
-        best = tried.baseline;
+  const { left, right } = flanks;
+  const nLeft = Math.max(0, left[1] - left[0]);
+  const nRight = Math.max(0, right[1] - right[0]);
+  if (nLeft + nRight < 4) return undefined;
+  const shorter = Math.min(sums.lengthOf(left), sums.lengthOf(right));
+  const oneSided = nLeft < 3 || nRight < 3;
+  const models = oneSided
+    ? ONE_FLANK
+    : steps === 'none'
+      ? WITHOUT_STEP
+      : steps === 'right'
+        ? STEP_TO_RIGHT
+        : MODELS.filter((m) => shorter >= SHORT_FLANK || !(m.includes(3) || m.includes(5)));
+  const normal = new Float64Array(TERMS * TERMS);
+  const rhs = new Float64Array(TERMS);
+  const squares = sums.fillNormal(left, right, normal, rhs);
+  const solved = models.flatMap((used) => {
+    if (used.length + 1 > nLeft + nRight) return [];
+    const fit = solveModel(normal, rhs, squares, used);
+    return fit ? [{ ...fit, used }] : [];
+  });
+  if (solved.length === 0) return undefined;
+  // What even the fullest model leaves sets the noise where it is not white.
+  const n = nLeft + nRight;
+  const least = Math.min(...solved.map((m) => m.chi / Math.max(1, n - m.used.length)));
+  const v = Math.max(variance, least);
+  const effective = Math.max(4, n * Math.min(1, sums.noiseVariance / v));
+  const scores = solved.map((m) => m.chi / v + m.used.length * Math.log(effective));
+  const best = Math.min(...scores);
+  const weights = scores.map((s) => Math.exp(-(s - best) / 2));
+  const total = weights.reduce((a, b) => a + b, 0);
+  const coefficients = new Float64Array(TERMS);
+  solved.forEach((m, k) => {
+    for (let i = 0; i < TERMS; i++) coefficients[i] += (weights[k] / total) * m.coefficients[i];
+  });
+  const covariance = new Float64Array(TERMS * TERMS);
+  solved.forEach((m, k) => {
+    if (weights[k] < 1e-9 * total) return;
+    for (let i = 0; i < TERMS; i++) {
+      for (let j = 0; j < TERMS; j++) {
+        const apart = (m.coefficients[i] - coefficients[i]) * (m.coefficients[j] - coefficients[j]);
+        covariance[i * TERMS + j] += (weights[k] / total) * (m.inverse[i * TERMS + j] * v + apart);
       }
     }
-  }
-  return best;
+  });
+  coefficients[0] += sums.level;
+  const side = oneSided ? (nLeft < 3 ? 'right' : 'left') : steps === 'right' ? 'right' : 'both';
+  return { peakS: sums.peakS, widthS: sums.widthS, coefficients, covariance, ...limits, side };
 }
 
-function tryFlanks(
-  w: EventWindow,
-  peakS: number,
-  widthS: number,
-  leftS: number,
-  rightS: number,
-  leftWidths: number,
-  rightWidths: number,
-  height: number,
-): { baseline: Baseline; score: number } | undefined {
-  const from = leftS - leftWidths * widthS;
-  const to = rightS + rightWidths * widthS;
-  const rows: number[] = [];
-  let nLeft = 0;
-  let nRight = 0;
-  for (let i = 0; i < w.t.length; i++) {
-    const t = w.t[i];
-    if (t >= from && t <= leftS) nLeft++;
-    else if (t >= rightS && t <= to) nRight++;
-    else continue;
-    rows.push(i);
-  }
-  if (nLeft < 4 || nRight < 4) return undefined;
-  const leftLength = (leftS - Math.max(from, w.t[0])) / widthS;
-  const rightLength = (Math.min(to, w.t[w.t.length - 1]) - rightS) / widthS;
-  const shorter = Math.min(leftLength, rightLength);
-  const solveWith = (curvature: boolean, slopeStep: boolean) =>
-    solve(w, rows, nLeft, peakS, widthS, curvature, slopeStep);
-  let solved = solveWith(shorter >= CURVATURE_FROM, false);
-  if (shorter >= SHORTEST_FOR_TERMS) {
-    // A term that a long flank takes anyway, or that no flank must have, is kept where it stands out of the noise.
-    if (shorter < CURVATURE_FROM) solved = keepIfSeen(solved, solveWith(true, false), 2);
-    const curvature = solved !== undefined && solved.coefficients[2] !== 0;
-    solved = keepIfSeen(solved, solveWith(curvature, true), 4);
-  }
-  if (!solved) return undefined;
-  const baseline: Baseline = {
-    peakS,
-    widthS,
-    coefficients: solved.coefficients,
-    leftS,
-    rightS,
-    residual: solved.residual,
-  };
-  return { baseline, score: blockScore(w, rows, nLeft, solved.residuals, height) };
-}
-
-interface Solved {
-  coefficients: Float64Array;
-  errors: Float64Array;
-  residuals: Float64Array;
-  residual: number;
-}
-
-function keepIfSeen(without: Solved | undefined, withTerm: Solved | undefined, term: number): Solved | undefined {
-  if (!withTerm) return without;
-  return Math.abs(withTerm.coefficients[term]) > TERM_SIGMAS * withTerm.errors[term] ? withTerm : without;
-}
-
-function solve(
-  w: EventWindow,
-  rows: number[],
-  nLeft: number,
-  peakS: number,
-  widthS: number,
-  curved: boolean,
-  slopeStep: boolean,
-): Solved | undefined {
-  const used = curved ? (slopeStep ? [0, 1, 2, 3, 4] : [0, 1, 2, 3]) : slopeStep ? [0, 1, 3, 4] : [0, 1, 3];
+function solveModel(
+  normal: Float64Array,
+  rhs: Float64Array,
+  squares: number,
+  used: readonly number[],
+): { coefficients: Float64Array; inverse: Float64Array; chi: number } | undefined {
   const p = used.length;
-  const normal = new Float64Array(p * p);
-  const rhs = new Float64Array(p);
-  const term = new Float64Array(5);
-  const fill = (k: number) => {
-    const u = (w.t[rows[k]] - peakS) / widthS;
-    const a = k < nLeft ? 0 : 1;
-    term[0] = 1;
-    term[1] = u;
-    term[2] = u * u;
-    term[3] = a;
-    term[4] = a * u;
-  };
-  for (let k = 0; k < rows.length; k++) {
-    fill(k);
-    const y = w.y[rows[k]];
-    for (let i = 0; i < p; i++) {
-      rhs[i] += term[used[i]] * y;
-      for (let j = 0; j <= i; j++) normal[i * p + j] += term[used[i]] * term[used[j]];
-    }
+  const a = new Float64Array(p * p);
+  const b = new Float64Array(p);
+  for (let i = 0; i < p; i++) {
+    b[i] = rhs[used[i]];
+    for (let j = 0; j < p; j++) a[i * p + j] = normal[used[i] * TERMS + used[j]];
   }
-  for (let i = 0; i < p; i++) for (let j = 0; j < i; j++) normal[j * p + i] = normal[i * p + j];
-  if (!solveSymmetric(normal, rhs, p)) return undefined;
-  const coefficients = new Float64Array(5);
-  used.forEach((c, i) => {
-    coefficients[c] = rhs[i];
-  });
-  const residuals = new Float64Array(rows.length);
-  let sum = 0;
-  for (let k = 0; k < rows.length; k++) {
-    fill(k);
-    let b = 0;
-    for (let c = 0; c < 5; c++) b += coefficients[c] * term[c];
-    residuals[k] = w.y[rows[k]] - b;
-    sum += residuals[k] ** 2;
+  if (!solveSymmetric(a, b, p)) return undefined;
+  const coefficients = new Float64Array(TERMS);
+  const inverse = new Float64Array(TERMS * TERMS);
+  let explained = 0;
+  for (let i = 0; i < p; i++) {
+    coefficients[used[i]] = b[i];
+    explained += b[i] * rhs[used[i]];
+    for (let j = 0; j < p; j++) inverse[used[i] * TERMS + used[j]] = a[i * p + j];
   }
-  const variance = sum / Math.max(1, rows.length - p);
-  const errors = new Float64Array(5);
-  used.forEach((c, i) => {
-    errors[c] = Math.sqrt(normal[i * p + i] * variance);
-  });
-  return { coefficients, errors, residuals, residual: Math.sqrt(sum / rows.length) };
+  return { coefficients, inverse, chi: Math.max(0, squares - explained) };
 }
 
-/** Largest block mean of the flank residuals ÷ what noise allows; up to 1 the flanks hold nothing but baseline. */
-function blockScore(w: EventWindow, rows: number[], nLeft: number, residuals: Float64Array, height: number): number {
-  let worst = 0;
-  for (const [from, to] of [
-    [0, nLeft],
-    [nLeft, rows.length],
-  ]) {
-    const size = Math.max(4, Math.floor((to - from) / 8));
-    for (let b = from; b + size <= to; b += size) {
-      let sum = 0;
-      for (let k = b; k < b + size; k++) sum += residuals[k];
-      const allowed = (BLOCK_SIGMAS * w.noise) / Math.sqrt(size) + BLOCK_HEIGHT_PART * height;
-      worst = Math.max(worst, Math.abs(sum / size) / allowed);
-    }
-  }
-  return worst;
+/** Values of the six terms at time t (s) and conversion α. */
+export function fillTerms(b: Baseline, t: number, alpha: number, terms: Float64Array): void {
+  const u = (t - b.peakS) / b.widthS;
+  const a = b.side === 'both' ? alpha : b.side === 'right' ? 1 : 0;
+  terms[0] = 1;
+  terms[1] = u;
+  terms[2] = u * u;
+  terms[3] = u * u * u;
+  terms[4] = a;
+  terms[5] = a * u;
 }
 
 /** Baseline at time t (s) and conversion α. */
 export function baselineAt(b: Baseline, t: number, alpha: number): number {
   const u = (t - b.peakS) / b.widthS;
   const c = b.coefficients;
-  return c[0] + u * (c[1] + u * c[2]) + alpha * (c[3] + c[4] * u);
+  const a = b.side === 'both' ? alpha : b.side === 'right' ? 1 : 0;
+  return c[0] + u * (c[1] + u * (c[2] + u * c[3])) + a * (c[4] + c[5] * u);
 }

@@ -1,6 +1,5 @@
 import { fitLocalPolynomial } from '../numeric/local-polynomial.ts';
-import type { EventShape } from './conversion.ts';
-import { trueSignal } from './conversion.ts';
+import { binAt, type EventShape, trueSignal } from './conversion.ts';
 import type { Excess } from './excess.ts';
 import type { EventWindow } from './window.ts';
 
@@ -18,7 +17,6 @@ export interface Landmarks {
 
 /** Half width of the cubic through the top, full widths: wide enough to average noise, its bias is 2e-3 of the width. */
 const TOP_HALF_WIDTH = 1 / 5;
-const PROBES = 60;
 
 /**
  * Onset and end are where the tangents at the steepest points of the flanks meet the baseline (ISO 11357-1), the peak is the top of a
@@ -40,22 +38,24 @@ export function findLandmarks(w: EventWindow, x: Excess, shape: EventShape): Lan
     peakErrorS = (w.noise * f.slopeNoise) / Math.abs(bend);
     if (Math.abs(step) < 1e-7 * shape.widthS) break;
   }
-  const leftS = w.t[x.from];
-  const rightS = w.t[x.to - 1];
-  const height = trueSignal(w, x, shape, peakS).value;
-  const rising = steepest(w, x, shape, leftS, peakS, 1);
-  const falling = steepest(w, x, shape, peakS, rightS, -1);
-  const { left, right } = halfHeightTimes(w, x, shape, peakS, leftS, rightS, height / 2);
+  const top = binAt(w, x, peakS);
+  const height = trueSignal(w, shape, peakS, top).value;
+  const rising = steepest(w, x, shape, top, -1);
+  const falling = steepest(w, x, shape, top, 1);
   let first = 0;
   for (let i = x.from + 1; i < x.to; i++) {
     const dt = w.t[i] - w.t[i - 1];
     first += 0.5 * dt * ((w.t[i] - peakS) * x.e[i] + (w.t[i - 1] - peakS) * x.e[i - 1]);
   }
+  // What lies before the left limit falls off within a third of a width; what a melting hides sits about as far behind the right one.
+  const beside = shape.widthS / 3;
+  first += x.cumulative[x.from] * (w.t[x.from] - beside - peakS);
+  first += (x.area - x.cumulative[x.to - 1]) * (w.t[x.to - 1] + beside - peakS);
   return {
     onsetS: rising.t - rising.value / rising.slope,
     endS: falling.t - falling.value / falling.slope,
     peakS,
-    widthS: right - left,
+    widthS: crossing(w, x, shape, top, height / 2, 1) - crossing(w, x, shape, top, height / 2, -1),
     // A first-order response delays the centroid by exactly τ_r.
     centroidS: peakS + first / x.area - r,
     peakErrorS,
@@ -63,45 +63,27 @@ export function findLandmarks(w: EventWindow, x: Excess, shape: EventShape): Lan
   };
 }
 
-function steepest(w: EventWindow, x: Excess, shape: EventShape, fromS: number, toS: number, sign: 1 | -1) {
-  let best = { t: fromS, value: 0, slope: 0 };
-  // Within two and a half widths of the peak: further out only noise could be steeper.
-  const from = Math.max(fromS, toS - 2.5 * shape.widthS * (sign > 0 ? 1 : 1e9));
-  const to = sign > 0 ? toS : Math.min(toS, fromS + 2.5 * shape.widthS);
-  for (let k = 0; k <= PROBES; k++) {
-    const t = from + ((to - from) * k) / PROBES;
-    const s = trueSignal(w, x, shape, t);
-    if (sign * s.slope > sign * best.slope) best = { t, value: s.value, slope: s.slope };
+/** Steepest bin on one side of the top, within two and a half widths: further out only noise could be steeper. */
+function steepest(w: EventWindow, x: Excess, shape: EventShape, top: number, direction: -1 | 1) {
+  let best = { t: w.t[top], value: 0, slope: 0 };
+  for (let i = top; i >= x.from && i < x.to; i += direction) {
+    if (Math.abs(w.t[i] - w.t[top]) > 2.5 * shape.widthS) break;
+    const s = trueSignal(w, shape, w.t[i], i);
+    if (direction * s.slope < direction * best.slope) best = { t: w.t[i], value: s.value, slope: s.slope };
   }
-  return best.slope === 0 ? { t: sign > 0 ? fromS : toS, value: 0, slope: 1 } : best;
+  return best.slope === 0 ? { t: w.t[direction < 0 ? x.from : x.to - 1], value: 0, slope: 1 } : best;
 }
 
-function halfHeightTimes(
-  w: EventWindow,
-  x: Excess,
-  shape: EventShape,
-  peakS: number,
-  leftS: number,
-  rightS: number,
-  half: number,
-): { left: number; right: number } {
-  const f = (t: number) => trueSignal(w, x, shape, t).value - half;
-  const search = (direction: -1 | 1, limit: number) => {
-    const step = shape.widthS / 24;
-    let inside = peakS;
-    while (direction * (limit - inside) > 0) {
-      let outside = inside + direction * step;
-      if (f(outside) <= 0) {
-        for (let k = 0; k < 30; k++) {
-          const mid = (inside + outside) / 2;
-          if (f(mid) > 0) inside = mid;
-          else outside = mid;
-        }
-        return (inside + outside) / 2;
-      }
-      inside = outside;
+/** Time at which the signal falls through `level` on one side of the top. */
+function crossing(w: EventWindow, x: Excess, shape: EventShape, top: number, level: number, direction: -1 | 1): number {
+  let inside = trueSignal(w, shape, w.t[top], top).value;
+  for (let i = top + direction; i >= x.from && i < x.to; i += direction) {
+    const { value } = trueSignal(w, shape, w.t[i], i);
+    if (value <= level) {
+      const before = w.t[i - direction];
+      return before + ((inside - level) / (inside - value)) * (w.t[i] - before);
     }
-    return limit;
-  };
-  return { left: search(-1, leftS), right: search(1, rightS) };
+    inside = value;
+  }
+  return w.t[direction < 0 ? x.from : x.to - 1];
 }

@@ -1,7 +1,8 @@
 import { CONVERSION_GRID } from '../../schema/wire/reduced.ts';
 import { fitLocalPolynomial, interpolate } from '../numeric/local-polynomial.ts';
-import { fitBaseline } from './baseline.ts';
-import { type Excess, subtractBaseline } from './excess.ts';
+import { fillTerms, TERMS } from './baseline.ts';
+import type { Bell, Excess } from './excess.ts';
+import { type Smoothed, smoothExcess, valueAt } from './smooth.ts';
 import type { EventWindow } from './window.ts';
 
 /**
@@ -12,25 +13,27 @@ export interface EventShape {
   peakS: number;
   widthS: number;
   responseS: number;
+  smoothed: Smoothed;
 }
 
 /** Half width of the local cubic that gives the signal and its slope, in full widths: its bias on a JMAK event is 3e-4 of the height. */
 const SMOOTHING_HALF_WIDTH = 1 / 7;
 
-/** Signal freed of response, its slope, and the noise factors at time t. */
+export function shapeEvent(w: EventWindow, x: Excess, { peakS, leftS, rightS }: Bell, responseS: number): EventShape {
+  const widthS = leftS + rightS;
+  return { peakS, widthS, responseS, smoothed: smoothExcess(w, x, SMOOTHING_HALF_WIDTH * widthS) };
+}
+
+/** Signal freed of response and its slope at time t; `hint` is a bin near it. */
 export function trueSignal(
   w: EventWindow,
-  x: Excess,
   shape: EventShape,
   t: number,
-): { value: number; slope: number; valueNoise: number } {
-  const f = fitLocalPolynomial(w.t, x.e, t, SMOOTHING_HALF_WIDTH * shape.widthS, 3);
+  hint: number,
+): { value: number; slope: number } {
+  const f = valueAt(w, shape.smoothed, t, hint);
   const r = shape.responseS;
-  return {
-    value: f.value + r * f.slope,
-    slope: f.slope + r * f.curvature,
-    valueNoise: Math.hypot(f.valueNoise, r > 0 ? r * f.slopeNoise : 0),
-  };
+  return { value: f.value + r * f.slope, slope: f.slope + r * f.curvature };
 }
 
 /** α(t) on the bins of the window. */
@@ -38,13 +41,17 @@ export function conversionOfTime(w: EventWindow, x: Excess, shape: EventShape): 
   const alpha = new Float64Array(w.t.length);
   const r = shape.responseS;
   for (let i = 0; i < alpha.length; i++) {
-    let a = x.cumulative[i];
-    if (r > 0 && i >= x.from && i < x.to) {
-      a += r * fitLocalPolynomial(w.t, x.e, w.t[i], (SMOOTHING_HALF_WIDTH / 2) * shape.widthS, 2, i).value;
-    }
-    alpha[i] = a / x.area;
+    const delayed = r > 0 && i >= x.from && i < x.to ? r * shape.smoothed.value[i] : 0;
+    alpha[i] = (x.cumulative[i] + delayed) / x.area;
   }
   return alpha;
+}
+
+/** Bin at or just behind time t. */
+export function binAt(w: EventWindow, x: Excess, t: number): number {
+  let i = x.from;
+  while (i < x.to - 1 && w.t[i] < t) i++;
+  return i;
 }
 
 /**
@@ -52,8 +59,7 @@ export function conversionOfTime(w: EventWindow, x: Excess, shape: EventShape): 
  * @returns s, 99 values
  */
 export function timesOfGrid(w: EventWindow, x: Excess, alpha: Float64Array, peakS: number): Float64Array {
-  let top = x.from;
-  while (top < x.to - 1 && w.t[top] < peakS) top++;
+  const top = binAt(w, x, peakS);
   const out = new Float64Array(CONVERSION_GRID.length);
   const at = (i: number, a: number) => {
     const d = alpha[i + 1] - alpha[i];
@@ -78,33 +84,67 @@ export function timesOfGrid(w: EventWindow, x: Excess, alpha: Float64Array, peak
 }
 
 /**
- * One standard error of T(α) from the choice of limits, K: each limit moved by ± (10 % of the width + one bin), shifts of both
- * sides added in quadrature.
- * @param betaKPerS heating rate
+ * One standard error of t(α), s, and of the area, from the baseline: the covariance of its coefficients (noise of the flanks, choice of
+ * the model) carried through α = ∫e/area, and each limit moved by ± (10 % of the width + one bin) and the flanks fitted anew. All in
+ * quadrature.
+ * @param times of the conversion grid
+ * @param refit the event with limits moved by seconds
  */
 export function baselineError(
   w: EventWindow,
   x: Excess,
   shape: EventShape,
-  height: number,
-  betaKPerS: number,
+  times: Float64Array,
+  refit: (leftShiftS: number, rightShiftS: number) => Excess,
 ): { error: Float64Array; areaError: number } {
+  const plain = { ...shape, responseS: 0 };
   const step = 0.1 * shape.widthS + (w.t[1] - w.t[0]);
-  const b = x.baseline;
   const moved = (left: number, right: number) => {
-    const fitted = fitBaseline(w, b.peakS, b.widthS, b.leftS + left, b.rightS + right, height) ?? b;
-    const m = subtractBaseline(w, fitted);
-    return { times: timesOfGrid(w, m, conversionOfTime(w, m, { ...shape, responseS: 0 }), shape.peakS), area: m.area };
+    const m = refit(left, right);
+    return { times: timesOfGrid(w, m, conversionOfTime(w, m, plain), shape.peakS), area: m.area };
   };
-  const sides = [
+  const pairs = [
     [moved(step, 0), moved(-step, 0)],
     [moved(0, step), moved(0, -step)],
   ];
-  const error = new Float64Array(CONVERSION_GRID.length);
-  for (let k = 0; k < error.length; k++) {
-    error[k] = (betaKPerS * Math.hypot(...sides.map(([p, m]) => p.times[k] - m.times[k]))) / 2;
+  // ∫ term dt on the grid: a coefficient's error δ moves α by δ (−I(t) + α I(end))/area, and t(α) by that over dα/dt.
+  const c = x.baseline.covariance;
+  const terms = new Float64Array(TERMS);
+  const before = new Float64Array(TERMS);
+  const integral = new Float64Array(TERMS);
+  const rows: Float64Array[] = [];
+  let k = 0;
+  for (let i = x.from; i < x.to; i++) {
+    fillTerms(x.baseline, w.t[i], Math.min(1, Math.max(0, x.cumulative[i] / x.area)), terms);
+    const share = x.share ? x.share[i] : 1;
+    const dt = i > x.from ? w.t[i] - w.t[i - 1] : 0;
+    for (let j = 0; j < TERMS; j++) {
+      const value = share * terms[j];
+      integral[j] += 0.5 * dt * (value + before[j]);
+      before[j] = value;
+    }
+    while (k < times.length && (w.t[i] >= times[k] || i === x.to - 1)) {
+      rows.push(integral.slice());
+      k++;
+    }
   }
-  return { error, areaError: Math.hypot(...sides.map(([p, m]) => p.area - m.area)) / 2 };
+  const spread = (g: Float64Array) => {
+    let sum = 0;
+    for (let i = 0; i < TERMS; i++) for (let j = 0; j < TERMS; j++) sum += g[i] * g[j] * c[i * TERMS + j];
+    return Math.sqrt(Math.max(0, sum));
+  };
+  const g = new Float64Array(TERMS);
+  const error = new Float64Array(times.length);
+  for (let n = 0; n < times.length; n++) {
+    for (let j = 0; j < TERMS; j++) g[j] = rows[n][j] - CONVERSION_GRID[n] * integral[j];
+    const signal = Math.max(
+      trueSignal(w, shape, times[n], binAt(w, x, times[n])).value,
+      0.02 * (x.area / shape.widthS),
+    );
+    const moves = pairs.map(([p, m]) => (p.times[n] - m.times[n]) / 2);
+    error[n] = Math.hypot(spread(g) / signal, ...moves);
+  }
+  return { error, areaError: Math.hypot(spread(integral), ...pairs.map(([p, m]) => (p.area - m.area) / 2)) };
 }
 
 /** Temperature at time t from the bins around it, K. */

@@ -2,24 +2,32 @@ import { type Flag, flag } from '../../schema/wire/flags.ts';
 import type { Segment } from '../../schema/wire/reduced.ts';
 import type { ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
-import { interpolate } from '../numeric/local-polynomial.ts';
-import { findExcursions } from './find-event.ts';
+import { interpolate, lowerBound } from '../numeric/local-polynomial.ts';
+import { findExcursions, noiseSigma } from './find-event.ts';
+import { findGlassTransition } from './glass-transition.ts';
 
 /** +1 when the file's signal is exotherm up, −1 when it is down; `said` is false when it had to be worked out. */
 export type Direction = { ok: true; sign: 1 | -1; flag?: Flag } | { ok: false; reason: string };
 
 /** A second event counts as real, for telling the direction, from this part of the larger one on. */
 const COUNTER_EVENT_PART = 0.1;
+/** The glass transition is looked for up to this many half widths before the earliest event. */
+const GLASS_BEFORE = 2.2;
 
 /**
- * Direction of the exotherm: the sheet's word, else the file's own, else inferred where physics allows: of two opposite events the one
- * at lower temperature is the exotherm (crystals form before they melt); a single event is one only below the sheet's melting
- * temperature. The larger event is no guide: melting is larger than crystallisation (METHODS 2).
+ * Direction of the exotherm: the sheet's word, else the file's own, else inferred where physics allows: a glass transition's step is
+ * endothermic; of two opposite events the one at lower temperature is the exotherm (crystals form before they melt); a single event is
+ * one only below the sheet's melting temperature. The larger event is no guide: melting is larger than crystallisation (METHODS 2).
  */
-export function findDirection(scan: ReadScan, input: ReduceInput, heating: Segment[]): Direction {
+export function findDirection(
+  scan: ReadScan,
+  heatFlow: Float64Array,
+  input: ReduceInput,
+  heating: Segment[],
+): Direction {
   const said = input.exotherm ?? scan.exotherm;
   if (said) return { ok: true, sign: said === 'up' ? 1 : -1 };
-  const { timeS, temperatureK, heatFlow } = scan;
+  const { timeS, temperatureK } = scan;
   const flipped = heatFlow.map((v) => -v);
   for (const s of heating) {
     const up = findExcursions(timeS, heatFlow, s.from, s.to)[0];
@@ -28,6 +36,16 @@ export function findDirection(scan: ReadScan, input: ReduceInput, heating: Segme
     const T = (t: number) => interpolate(timeS, temperatureK, t);
     const where = { file: input.file, sample: input.sample, instrument: input.calibration.instrument };
     const action = 'Write up or down in the exotherm column of scans.csv; the scan is then reduced again.';
+    const earliest = !up ? down : !down ? up : up.peakS < down.peakS ? up : down;
+    const before = lowerBound(timeS, earliest.peakS - GLASS_BEFORE * earliest.leftS);
+    const noise = noiseSigma(heatFlow, s.from, before);
+    const foot = { ...earliest, height: earliest.prominence };
+    const steps = [heatFlow, flipped].map((y) => findGlassTransition(timeS, y, s.from, before, noise, foot));
+    const step = steps[0] ?? steps[1];
+    if (step && !(steps[0] && steps[1])) {
+      const detail = `No exotherm direction was given; the step at ${T(step.midpointS).toFixed(1)} K was taken for a glass transition, which is endothermic.`;
+      return { ok: true, sign: steps[0] ? 1 : -1, flag: flag('sign-inferred', detail, action, where) };
+    }
     if (
       up &&
       down &&

@@ -1,19 +1,21 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
-import type { ReducedEvent, ReduceOutcome, Segment } from '../../schema/wire/reduced.ts';
+import type { ReducedEvent, ReducedScan, ReduceOutcome, Segment } from '../../schema/wire/reduced.ts';
 import type { ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
+import { analyseSegment, findEvents } from './analyse-segment.ts';
+import { chooseSegments } from './choose-segments.ts';
 import { findDirection } from './direction.ts';
-import { type Excursion, findExcursions } from './find-event.ts';
-import { reduceEvent } from './reduce-event.ts';
+import { subtractReference } from './reference.ts';
+import { createContext, type ScanContext } from './scan-context.ts';
 import { findSegments } from './segments.ts';
+import { bridgeSpikes } from './spikes.ts';
 import { makeTrace } from './trace.ts';
 
-/** A second excursion of at least this part of the first is told to the user: only the strongest event is analysed. */
-const SECOND_EVENT_PART = 0.25;
+type Refused = Extract<ReduceOutcome, { ok: false }>;
 
 /**
- * Reduces one scan: segments, direction, the strongest exothermic event of the analysed heating segment, baseline, conversion grid and
- * characteristic temperatures, with lag, offset and response of the instrument removed (METHODS 3 and 4).
+ * Reduces one scan: segments, direction, the exothermic events of the analysed segment with baseline, conversion grid and characteristic
+ * temperatures, with lag, offset and response of the instrument removed (METHODS 3 and 4).
  * @param scan columns in SI as read   @param input sheet values and the instrument's correction
  * @returns a reduced scan (with `no-event` where there is none), or the reason why it cannot be used
  */
@@ -22,114 +24,129 @@ export function reduceScan(scan: ReadScan, input: ReduceInput): ReduceOutcome {
   const where = { file: input.file, sample: input.sample, instrument: calibration.instrument };
   const flags: Flag[] = [];
   const segments = findSegments(scan.timeS, scan.temperatureK);
+  const refuse = (code: Refused['code'], reason: string, action: string): Refused => ({
+    ok: false,
+    code,
+    reason,
+    action,
+    flags: [flag(code, sentence(reason), action, where)],
+  });
 
   if (scan.heatFlowUnit === 'V' && calibration.sensitivityVPerW === undefined) {
-    return {
-      ok: false,
-      code: 'file-damaged',
-      reason: 'the signal is a voltage and the instrument has no sensitivity',
-      action: `Give the instrument ${calibration.instrument} a sensitivity [µV/mW] in instruments.csv.`,
-      flags,
-    };
+    return refuse(
+      'file-damaged',
+      'the signal is a voltage and the instrument has no sensitivity',
+      `Give the instrument ${calibration.instrument} a sensitivity [µV/mW] in instruments.csv.`,
+    );
   }
   const chosen = chooseSegments(segments, input.segment);
-  if ('reason' in chosen) return { ok: false, code: 'file-damaged', ...chosen, flags };
+  if ('reason' in chosen) return refuse('file-damaged', chosen.reason, chosen.action);
   if (input.role !== 'sample') {
     const s = chosen.candidates[0];
     const trace = makeTrace(scan.timeS, scan.temperatureK, scan.heatFlow, s.from, s.to, 0);
     return { ok: true, reduced: { segments, segment: s.segment, events: [], trace, flags } };
   }
 
-  const direction = findDirection(scan, input, chosen.candidates);
+  const bridged = bridgeSpikes(scan.heatFlow);
+  if (bridged.rows.length > 0) flags.push(spikeFlag(scan, bridged.rows, where));
+  let heatFlow = bridged.y;
+  if (input.reference) {
+    const subtracted = subtractReference(scan, heatFlow, input.reference);
+    if ('reason' in subtracted) return refuse('file-damaged', subtracted.reason, subtracted.action);
+    heatFlow = subtracted.heatFlow;
+  }
+  const direction = findDirection(scan, heatFlow, input, chosen.candidates);
   if (!direction.ok) {
-    const action = 'Write up or down in the exotherm column of scans.csv for this file.';
-    return {
-      ok: false,
-      code: 'sign-unknown',
-      reason: direction.reason,
-      action,
-      flags: [flag('sign-unknown', sentence(direction.reason), action, where)],
-    };
+    return refuse(
+      'sign-unknown',
+      direction.reason,
+      'Write up or down in the exotherm column of scans.csv for this file.',
+    );
   }
   if (direction.flag) flags.push(direction.flag);
   const factor = direction.sign / (scan.heatFlowUnit === 'V' ? (calibration.sensitivityVPerW ?? 1) : 1);
-  const y = factor === 1 ? scan.heatFlow : scan.heatFlow.map((v) => factor * v);
+  const y = factor === 1 ? heatFlow : heatFlow.map((v) => factor * v);
+  const context = createContext(scan, y, input, flags);
+  return { ok: true, reduced: reduceChosen(context, segments, chosen.candidates) };
+}
 
-  let segment: Segment = chosen.candidates[0];
-  let excursions: Excursion[] = [];
-  for (const s of chosen.candidates) {
-    excursions = findExcursions(scan.timeS, y, s.from, s.to);
-    segment = s;
-    if (excursions.length > 0) break;
-  }
-  const mass = input.massKg;
-  const shiftK = -calibration.offsetK - (calibration.lagS - (calibration.responseS ?? 0)) * segment.rateKPerS;
-  if (excursions.length === 0) {
-    if (chosen.candidates.length > 0) segment = chosen.candidates[0];
+function reduceChosen(c: ScanContext, segments: Segment[], candidates: Segment[]): ReducedScan {
+  const { scan, y, flags, input } = c;
+  const shown = candidates.find((s) => findEvents(c, s).length > 0);
+  const segment = shown ?? candidates[0];
+  const found = analyseSegment(c, segment);
+  if (!shown) {
     flags.push(
       flag(
         'no-event',
         `No exotherm stands out of the noise in segment ${segment.segment} (${segment.startK.toFixed(1)} to ${segment.endK.toFixed(1)} K).`,
         'Check the segment and the exotherm direction in scans.csv, or scan further; the scan stays out of the kinetics.',
-        where,
+        c.where,
       ),
     );
-    const trace = makeTrace(scan.timeS, scan.temperatureK, y, segment.from, segment.to, shiftK);
-    return {
-      ok: true,
-      reduced: { segments, segment: segment.segment, ...(mass && { massKg: mass }), events: [], trace, flags },
-    };
   }
-  if (excursions[1] && excursions[1].prominence > SECOND_EVENT_PART * excursions[0].prominence) {
+  if (segment.kind === 'cooling') {
     flags.push(
       flag(
-        'baseline-doubt',
-        `A second exotherm of ${Math.round((100 * excursions[1].prominence) / excursions[0].prominence)} % of the strongest was seen; only the strongest event is analysed.`,
-        'Look at the thermogram; if the events overlap, treat this scan with care.',
-        where,
+        'cooling',
+        `Segment ${segment.segment} cools at ${Math.abs(segment.rateKPerS).toPrecision(3)} K/s; methods for heating scans leave it out.`,
+        'Nothing; Friedman, incremental Vyazovkin and Ozawa 1971 use it.',
+        c.where,
       ),
     );
   }
-
-  const done = reduceEvent(scan, y, segment, excursions[0], input, flags);
-  const events: ReducedEvent[] = done ? [done.event] : [];
-  const trace = makeTrace(scan.timeS, scan.temperatureK, y, segment.from, segment.to, shiftK, done?.shown);
+  const massKg = input.massKg ?? massFromEnthalpy(c, found.events);
+  const { events, glass, meltingOnsetK } = found;
+  const trace = makeTrace(
+    scan.timeS,
+    scan.temperatureK,
+    y,
+    segment.from,
+    segment.to,
+    c.shiftAt(segment.rateKPerS),
+    found.shown,
+  );
   return {
-    ok: true,
-    reduced: { segments, segment: segment.segment, ...(mass && { massKg: mass }), events, trace, flags },
+    segments,
+    segment: segment.segment,
+    ...(massKg !== undefined && { massKg }),
+    ...(glass && { glassTransitionK: glass.midpointK, glassTransitionOnsetK: glass.onsetK }),
+    ...(meltingOnsetK !== undefined && { meltingOnsetK }),
+    events,
+    trace,
+    flags,
   };
 }
 
-const sentence = (text: string): string => `${text[0].toUpperCase()}${text.slice(1)}.`;
-
-/** The heating segments to look at, in order, or why the one asked for cannot be used. */
-function chooseSegments(
-  segments: Segment[],
-  asked: number | undefined,
-): { candidates: Segment[] } | { reason: string; action: string } {
-  const list = segments.map((s) => `${s.segment} ${s.kind}`).join(', ');
-  if (asked !== undefined) {
-    const s = segments[asked - 1];
-    if (!s) {
-      return {
-        reason: `segment ${asked} was asked for, but the file has ${segments.length}: ${list}`,
-        action: 'Correct the segment column of scans.csv.',
-      };
-    }
-    if (s.kind !== 'heating') {
-      return {
-        reason: `segment ${asked} is a ${s.kind} segment; only heating segments are analysed so far (the file has ${list})`,
-        action: 'Name a heating segment in scans.csv.',
-      };
-    }
-    return { candidates: [s] };
-  }
-  const candidates = segments.filter((s) => s.kind === 'heating');
-  if (candidates.length === 0) {
-    return {
-      reason: `the file holds no heating segment (it has ${list})`,
-      action: 'Check the temperature column; only heating scans are analysed so far.',
-    };
-  }
-  return { candidates };
+/** Mass as heat ÷ reference enthalpy where none was given (METHODS 3: an estimate; kinetics never needs it). Tells the user either way. */
+function massFromEnthalpy(c: ScanContext, events: ReducedEvent[]): number | undefined {
+  if (c.scan.heatFlowUnit === 'W/kg' || events.length === 0) return undefined;
+  const enthalpy = c.input.crystallizationEnthalpyJPerKg;
+  const whole = events.filter((e) => e.curve);
+  const massKg =
+    enthalpy !== undefined && whole.length > 0 ? whole.reduce((sum, e) => sum + e.area, 0) / enthalpy : undefined;
+  c.flags.push(
+    flag(
+      'mass-unknown',
+      massKg === undefined
+        ? 'No mass was given, so there is no enthalpy per gram; kinetics does not need it.'
+        : `No mass was given; heat ÷ the sheet’s enthalpy of ${((enthalpy ?? 0) / 1e3).toPrecision(4)} J/g makes it ${(massKg * 1e6).toPrecision(3)} mg, an estimate.`,
+      'Give the mass in scans.csv if the enthalpy matters.',
+      c.where,
+    ),
+  );
+  return massKg;
 }
+
+function spikeFlag(scan: ReadScan, rows: number[], where: object): Flag {
+  const times = rows.slice(0, 3).map((i) => `${scan.timeS[i].toPrecision(5)} s`);
+  const more = rows.length > 3 ? ' …' : '';
+  return flag(
+    'spike',
+    `${rows.length} single-point ${rows.length === 1 ? 'spike was' : 'spikes were'} bridged, at ${times.join(', ')}${more}.`,
+    'Nothing, unless there are many: then look at the cables and the purge.',
+    where,
+  );
+}
+
+const sentence = (text: string): string => `${text[0].toUpperCase()}${text.slice(1)}.`;

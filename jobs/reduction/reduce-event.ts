@@ -1,251 +1,206 @@
-import { type Flag, flag } from '../../schema/wire/flags.ts';
-import { CONVERSION_GRID, type ReducedCurve, type ReducedEvent, type Segment } from '../../schema/wire/reduced.ts';
-import type { ReadScan } from '../../schema/wire/scan.ts';
-import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
+import { flag } from '../../schema/wire/flags.ts';
+import { CONVERSION_GRID, type ReducedEvent, type Segment } from '../../schema/wire/reduced.ts';
 import { lowerBound } from '../numeric/local-polynomial.ts';
 import { findLandmarks, type Landmarks } from './characteristic.ts';
-import {
-  baselineError,
-  conversionOfTime,
-  type EventShape,
-  temperatureAt,
-  timesOfGrid,
-  trueSignal,
-} from './conversion.ts';
-import { type Excess, isolateEvent, straightLineArea } from './excess.ts';
-import { type Excursion, noiseSigma } from './find-event.ts';
-import { slopeOf } from './segments.ts';
+import { baselineError, conversionOfTime, shapeEvent, temperatureAt, timesOfGrid } from './conversion.ts';
+import { makeCurve } from './curve.ts';
+import { FEW_POINTS, judgeEvent, TOO_FEW_POINTS } from './event-flags.ts';
+import { type Bell, type Excess, straightLineArea } from './excess.ts';
+import { noiseSigma } from './find-event.ts';
+import { type Isolated, type Room, widthOf } from './isolate.ts';
+import { eventRate } from './rate.ts';
+import type { ScanContext } from './scan-context.ts';
+import { ASSUMED_HEAT_CAPACITY, selfHeatingNumber } from './self-heating.ts';
+import { separateEvents } from './separate-events.ts';
 import { averageWindow, type EventWindow } from './window.ts';
 
-/** Rows kept of the programme before α = 0.01, spaced by the square of their distance in time to it. */
-const PROGRAMME_ROWS = 50;
-/** Half width of the event's surroundings that is looked at, full widths: limits and the longest flanks fit in. */
+/** Half width of the surroundings that are looked at, full widths: limits and the longest flanks fit in. */
 const SURROUNDINGS = { before: 8, behind: 7 };
-const FEW_POINTS = 20;
-const TOO_FEW_POINTS = 8;
-const OFF_NOMINAL = 0.02;
-const UNSTEADY = 0.05;
-/** Areas above both baselines that differ by more than this raise `baseline-doubt`. */
-const BASELINE_DOUBT = 0.05;
+const USABLE = { glass: 0.1, melting: 0.8 };
 
-interface Reduced {
-  event: ReducedEvent;
-  shown?: { window: EventWindow; excess: Excess };
+export interface Shown {
+  window: EventWindow;
+  excess: Excess;
 }
 
 /**
- * One event: limits, baseline, landmarks and, where the data bear it, the conversion grid.
- * @param y heat flow with exotherm up, W or W/kg   @param flags findings are added here
+ * Events that stand together: one, or several that overlap. Limits, baseline, landmarks and, where the data bear it, the conversion grid.
+ * @param bells rough, in order of time   @param first number of the first event
  */
-export function reduceEvent(
-  scan: ReadScan,
-  y: Float64Array,
+export function reduceEvents(
+  c: ScanContext,
   segment: Segment,
-  found: Excursion,
-  input: ReduceInput,
-  flags: Flag[],
-): Reduced | undefined {
-  const { timeS, temperatureK } = scan;
-  const { calibration } = input;
-  const where = { file: input.file, sample: input.sample, instrument: calibration.instrument, event: 1 };
-  const roughWidth = found.leftS + found.rightS;
-  const from = Math.max(segment.from, lowerBound(timeS, found.peakS - SURROUNDINGS.before * roughWidth));
-  const to = Math.min(segment.to, lowerBound(timeS, found.peakS + SURROUNDINGS.behind * roughWidth));
-  const w = averageWindow(timeS, temperatureK, y, from, to, roughWidth, noiseSigma(y, from, to));
-  const isolated = isolateEvent(w, { ...found, height: found.prominence });
-
-  if ('cut' in isolated) {
-    const peakK = temperatureAt(w, found.peakS, roughWidth / 10);
-    flags.push(
-      flag(
-        'event-cut',
-        `The event at ${peakK.toFixed(1)} K is cut ${isolated.cut === 'before' ? 'by the start' : 'by the end'} of the segment (${segment.startK.toFixed(1)} to ${segment.endK.toFixed(1)} K); it is not normalised and stays out of the conversion methods.`,
-        isolated.cut === 'before' ? 'Start the scan lower.' : 'Scan to a higher temperature.',
-        where,
-      ),
-    );
-    return undefined;
+  bells: Bell[],
+  room: Room,
+  first: number,
+): { events: ReducedEvent[]; shown?: Shown } {
+  const { timeS } = c.scan;
+  const width = widthOf(bells);
+  const [begin, last] = [bells[0], bells[bells.length - 1]];
+  const from = Math.max(segment.from, lowerBound(timeS, begin.peakS - SURROUNDINGS.before * width));
+  const to = Math.min(segment.to, lowerBound(timeS, last.peakS + SURROUNDINGS.behind * width));
+  const w = averageWindow(timeS, c.scan.temperatureK, c.y, from, to, width, noiseSigma(c.y, from, to));
+  const separated = separateEvents(w, bells, room);
+  if ('cut' in separated) {
+    const events = bells.map((bell, i) => cutEvent(c, w, segment, bell, separated.cut, first + i));
+    return { events };
   }
+  const { isolated, parts } = separated;
+  const events = parts.map((x, i) => completeEvent(c, w, segment, isolated, x, i, room, first + i, parts.length));
+  return { events, shown: { window: w, excess: isolated.excess } };
+}
 
-  const x = isolated.excess;
-  const b = x.baseline;
+function completeEvent(
+  c: ScanContext,
+  w: EventWindow,
+  segment: Segment,
+  isolated: Isolated,
+  x: Excess,
+  index: number,
+  room: Room,
+  number: number,
+  together: number,
+): ReducedEvent {
+  const { input, scan } = c;
+  const { calibration } = input;
+  const where = { ...c.where, event: number };
   const responseS = Math.max(0, calibration.responseS ?? 0);
-  const shape: EventShape = { peakS: b.peakS, widthS: b.widthS, responseS };
+  const bell = isolated.bells[index];
+  const shape = shapeEvent(w, x, bell, responseS);
   const marks = findLandmarks(w, x, shape);
-  const rate = eventRate(timeS, temperatureK, marks, input, where, flags);
-  const shiftK = -calibration.offsetK - (calibration.lagS - responseS) * rate;
-  const T = (t: number) => temperatureAt(w, t, b.widthS / 10) + shiftK;
-  const points = Math.round((marks.widthS / (timeS[to - 1] - timeS[from])) * (to - from));
-  const area = x.area;
-  const { error, areaError } = baselineError(w, x, shape, isolated.height, rate);
-  const stepK = (rate * (timeS[to - 1] - timeS[from])) / (to - from);
+  const rate = eventRate(c, marks, where);
+  const shiftK = c.shiftAt(rate);
+  const T = (t: number) => temperatureAt(w, t, shape.widthS / 10) + shiftK;
+  const perSecond = 1 / ((w.t[1] - w.t[0]) / w.binSize);
+  const points = Math.round(marks.widthS * perSecond);
+  const times = timesOfGrid(w, x, conversionOfTime(w, x, shape), shape.peakS);
+  const refit = (left: number, right: number) => {
+    const moved = isolated.refit(left, right);
+    return x.share ? partOf(moved, x.share, w) : moved;
+  };
+  const baseline = baselineError(w, x, shape, times, refit);
+  const stepK = Math.abs(rate) / perSecond;
+  const binS = w.t[1] - w.t[0];
   const event: ReducedEvent = {
-    event: 1,
-    kind: 'heating',
+    event: number,
+    kind: segment.kind,
     rateKPerS: rate,
     onsetK: T(marks.onsetS),
     peakK: T(marks.peakS),
     endK: T(marks.endS),
-    widthK: marks.widthS * rate,
+    widthK: marks.widthS * Math.abs(rate),
     centroidK: T(marks.centroidS),
-    peakErrorK: Math.max(rate * marks.peakErrorS, points < TOO_FEW_POINTS ? stepK / Math.sqrt(12) : 0),
-    area,
-    areaError: Math.hypot(areaError, w.noise * Math.sqrt((x.to - x.from) * (w.t[1] - w.t[0]) ** 2)),
-    usableFrom: CONVERSION_GRID[0],
-    usableTo: CONVERSION_GRID[CONVERSION_GRID.length - 1],
+    peakErrorK: Math.max(Math.abs(rate) * marks.peakErrorS, points < TOO_FEW_POINTS ? stepK / Math.sqrt(12) : 0),
+    area: x.area,
+    areaError: Math.hypot(
+      baseline.areaError,
+      w.noise * Math.sqrt((x.to - x.from) * binS ** 2),
+      separationError(x, together),
+    ),
+    usableFrom: isolated.glassOverlap ? USABLE.glass : CONVERSION_GRID[0],
+    usableTo: isolated.meltingOverlap ? USABLE.melting : CONVERSION_GRID[CONVERSION_GRID.length - 1],
     pointsOverWidth: points,
     noiseFraction: (w.noise * Math.sqrt(w.binSize)) / marks.height,
     rampStartK: segment.startK + shiftK,
   };
-  if (scan.heatFlowUnit === 'W/kg') event.enthalpyJPerKg = area;
-  else if (input.massKg) event.enthalpyJPerKg = area / input.massKg;
-  judgeEvent(event, straightLineArea(w, x), calibration.lagS * rate, calibration.responseS === undefined, where, flags);
-  if (points >= FEW_POINTS && area > 5 * event.areaError) {
-    event.curve = makeCurve(w, x, shape, T, rate, error, scan, segment, shiftK);
+  if (scan.heatFlowUnit === 'W/kg') event.enthalpyJPerKg = x.area;
+  else if (c.massKg) event.enthalpyJPerKg = x.area / c.massKg;
+  const error = baseline.error.map((s) => s * Math.abs(rate));
+  if (points >= FEW_POINTS && x.area > 5 * event.areaError) {
+    event.curve = makeCurve(c, w, x, shape, times, T, error, segment, shiftK);
+    const enthalpy = event.enthalpyJPerKg ?? input.crystallizationEnthalpyJPerKg;
+    const contactS = calibration.lagS - responseS;
+    if (enthalpy !== undefined && contactS > 0 && rate > 0) {
+      const top = Math.max(...event.curve.ratePerS);
+      const heatCapacity = input.heatCapacityJPerKgK ?? ASSUMED_HEAT_CAPACITY;
+      event.selfHeating = selfHeatingNumber(contactS, enthalpy, heatCapacity, event.curve, top);
+    }
   }
-  return { event, shown: { window: w, excess: x } };
+  c.flags.push(
+    ...judgeEvent(
+      event,
+      {
+        straightArea: straightLineArea(w, x),
+        lagK: calibration.lagS * rate,
+        responseUnknown: calibration.responseS === undefined,
+        heatCapacityAssumed: input.heatCapacityJPerKgK === undefined,
+        glassOverlap: isolated.glassOverlap,
+        meltingOverlap: isolated.meltingOverlap,
+        knownArea: room.knownArea !== undefined,
+        mergedWith: together - 1,
+      },
+      where,
+    ),
+  );
+  return event;
 }
 
-function eventRate(
-  timeS: Float64Array,
-  temperatureK: Float64Array,
-  m: Landmarks,
-  input: ReduceInput,
-  where: object,
-  flags: Flag[],
-): number {
-  const a = lowerBound(timeS, m.peakS - 1.5 * m.widthS);
-  const c = Math.max(a + 3, lowerBound(timeS, m.peakS + 1.5 * m.widthS));
-  const rate = slopeOf(timeS, temperatureK, a, c);
-  const middle = (a + c) >> 1;
-  const drift = slopeOf(timeS, temperatureK, middle, c) / slopeOf(timeS, temperatureK, a, middle) - 1;
-  if (c - a >= 40 && Math.abs(drift) > UNSTEADY) {
-    flags.push(
-      flag(
-        'rate-unsteady',
-        `The heating rate changes by ${(100 * drift).toFixed(1)} % within the event (limit 5 %).`,
-        'Check the instrument’s control at this rate; the measured programme is used, peak methods are less certain.',
-        where,
-      ),
-    );
+/** Share of an area that the separation of overlapping events leaves open, from trials at one width apart (study `reduction`). */
+const SEPARATION_PART = 0.02;
+const separationError = (x: Excess, together: number): number => (together > 1 ? SEPARATION_PART * x.area : 0);
+
+/** The part of a refitted excess that belongs to one of several events. */
+function partOf(moved: Excess, share: Float64Array, w: EventWindow): Excess {
+  const e = moved.e.map((v, i) => v * share[i]);
+  const cumulative = new Float64Array(e.length);
+  let sum = 0;
+  for (let i = moved.from + 1; i < moved.to; i++) {
+    sum += 0.5 * (e[i] + e[i - 1]) * (w.t[i] - w.t[i - 1]);
+    cumulative[i] = sum;
   }
-  const nominal = input.rateNominalKPerS;
-  if (nominal !== undefined && Math.abs(rate / nominal - 1) > OFF_NOMINAL) {
-    flags.push(
-      flag(
-        'rate-off-nominal',
-        `The measured rate ${rate.toPrecision(4)} K/s is ${(100 * (rate / nominal - 1)).toFixed(1)} % off the nominal ${nominal.toPrecision(4)} K/s (limit 2 %).`,
-        'The measured rate is used; correct the rate column of scans.csv if it is a slip.',
-        where,
-      ),
-    );
-  }
-  return rate;
+  cumulative.fill(sum, moved.to);
+  return { ...moved, e, cumulative, area: sum, share };
 }
 
-function judgeEvent(
-  e: ReducedEvent,
-  straightArea: number,
-  lagK: number,
-  responseUnknown: boolean,
-  where: object,
-  flags: Flag[],
-): void {
-  if (e.pointsOverWidth < FEW_POINTS) {
-    flags.push(
-      flag(
-        'few-points',
-        `Only ${e.pointsOverWidth} points lie over the event’s width (20 are needed for conversion methods).`,
-        'Sample faster or scan slower.',
-        where,
-      ),
-    );
-  }
-  if (e.area < 5 * e.areaError) {
-    flags.push(
-      flag(
-        'event-small',
-        `The area ${e.area.toPrecision(3)} is below five times its error ${e.areaError.toPrecision(2)}; only temperatures are used.`,
-        'Use more mass or a higher rate.',
-        where,
-      ),
-    );
-  }
-  const difference = straightArea / e.area - 1;
-  if (Math.abs(difference) > BASELINE_DOUBT) {
-    flags.push(
-      flag(
-        'baseline-doubt',
-        `A straight baseline gives an area ${(100 * difference).toFixed(1)} % different from the conversion-weighted one (limit 5 %).`,
-        'Look at the thermogram and its limits.',
-        where,
-      ),
-    );
-  }
-  if (e.enthalpyJPerKg === undefined) {
-    flags.push(
-      flag(
-        'mass-unknown',
-        'No mass was given, so there is no enthalpy per gram; kinetics does not need it.',
-        'Give the mass in scans.csv if the enthalpy matters.',
-        where,
-      ),
-    );
-  }
-  if (responseUnknown && Math.abs(lagK) > 0.1 * e.widthK) {
-    flags.push(
-      flag(
-        'response-unknown',
-        `The lag shifts the event by ${lagK.toFixed(2)} K, more than a tenth of its width ${e.widthK.toFixed(2)} K, and it is not known how much of it smears the signal.`,
-        'Give the response time [s] in instruments.csv, or run standards.',
-        where,
-      ),
-    );
-  }
-}
-
-function makeCurve(
+/** Temperatures of an event that is not there as a whole: its peak where the signal turns, no curve. */
+function cutEvent(
+  c: ScanContext,
   w: EventWindow,
-  x: Excess,
-  shape: EventShape,
-  T: (t: number) => number,
-  rate: number,
-  baselineErrorK: Float64Array,
-  scan: ReadScan,
   segment: Segment,
-  shiftK: number,
-): ReducedCurve {
-  const times = timesOfGrid(w, x, conversionOfTime(w, x, shape), shape.peakS);
-  const temperatureK = times.map((t) => T(t));
-  const ratePerS = times.map((t) => Math.max(trueSignal(w, x, shape, t).value / x.area, 1e-9 * (rate / shape.widthS)));
-  const start = scan.timeS[segment.from];
-  const programmeTimeS = new Float64Array(PROGRAMME_ROWS);
-  const programmeTemperatureK = new Float64Array(PROGRAMME_ROWS);
-  for (let k = 0; k < PROGRAMME_ROWS; k++) {
-    const f = (PROGRAMME_ROWS - 1 - k) / (PROGRAMME_ROWS - 1);
-    const t = times[0] - f * f * (times[0] - start);
-    programmeTimeS[k] = t;
-    programmeTemperatureK[k] =
-      k === PROGRAMME_ROWS - 1 ? temperatureK[0] : meanTemperature(scan, segment, t, shape.widthS / 20) + shiftK;
-  }
-  return { timeS: times, temperatureK, ratePerS, baselineErrorK, programmeTimeS, programmeTemperatureK };
-}
-
-/** Temperature at t from a line through the rows within ± half, kept inside the segment: quiet, and true on a ramp. */
-function meanTemperature(scan: ReadScan, segment: Segment, t: number, half: number): number {
-  const { timeS, temperatureK } = scan;
-  let a = Math.max(segment.from, lowerBound(timeS, t - half));
-  let c = Math.min(segment.to, lowerBound(timeS, t + half) + 1);
-  if (c - a < 2) {
-    a = Math.max(segment.from, Math.min(a, segment.to - 2) - 1);
-    c = Math.min(segment.to, a + 3);
-  }
-  let st = 0;
-  let sT = 0;
-  for (let i = a; i < c; i++) {
-    st += timeS[i];
-    sT += temperatureK[i];
-  }
-  const n = c - a;
-  return sT / n + slopeOf(timeS, temperatureK, a, c) * (t - st / n);
+  bell: Bell,
+  side: 'before' | 'behind',
+  number: number,
+): ReducedEvent {
+  const width = bell.leftS + bell.rightS;
+  const marks: Landmarks = {
+    onsetS: bell.peakS - 1.5 * bell.leftS,
+    peakS: bell.peakS,
+    endS: bell.peakS + 1.5 * bell.rightS,
+    widthS: width,
+    centroidS: bell.peakS,
+    peakErrorS: 0.05 * width,
+    height: bell.height,
+  };
+  const where = { ...c.where, event: number };
+  const rate = eventRate(c, marks, where);
+  const shiftK = c.shiftAt(rate);
+  const T = (t: number) => temperatureAt(w, t, width / 10) + shiftK;
+  c.flags.push(
+    flag(
+      'event-cut',
+      `The event at ${T(bell.peakS).toFixed(1)} K is cut ${side === 'before' ? 'by the start' : 'by the end'} of the segment (${segment.startK.toFixed(1)} to ${segment.endK.toFixed(1)} K); it is not normalised and stays out of the conversion methods.`,
+      side === 'before' ? 'Start the scan lower.' : 'Scan to a higher temperature.',
+      where,
+    ),
+  );
+  // A bell of this height and width: an order of magnitude, with an error to match.
+  const area = bell.height * width;
+  return {
+    event: number,
+    kind: segment.kind,
+    rateKPerS: rate,
+    onsetK: T(marks.onsetS),
+    peakK: T(marks.peakS),
+    endK: T(Math.min(marks.endS, w.t[w.t.length - 1])),
+    widthK: width * Math.abs(rate),
+    centroidK: T(marks.centroidS),
+    peakErrorK: marks.peakErrorS * Math.abs(rate),
+    area,
+    areaError: area,
+    usableFrom: 0,
+    usableTo: 0,
+    pointsOverWidth: Math.round((width * w.binSize) / (w.t[1] - w.t[0])),
+    noiseFraction: (w.noise * Math.sqrt(w.binSize)) / bell.height,
+    rampStartK: segment.startK + shiftK,
+  };
 }

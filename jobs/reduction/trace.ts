@@ -18,7 +18,7 @@ export function makeTrace(
   from: number,
   to: number,
   shiftK: number,
-  event?: { window: EventWindow; excess: Excess },
+  shown: { window: EventWindow; excess: Excess }[] = [],
 ): ReducedTrace {
   const n = to - from;
   const blocks = Math.min(n, MOST_POINTS / 2);
@@ -43,16 +43,18 @@ export function makeTrace(
     heatFlow: new Float64Array(rows.length),
     baseline: new Float64Array(rows.length).fill(Number.NaN),
   };
-  let bin = 0;
   rows.forEach((i, k) => {
     trace.temperatureK[k] = T[i] + shiftK;
     trace.heatFlow[k] = y[i];
-    if (!event) return;
-    const { window: w, excess: x } = event;
-    const { leftS, rightS } = x.baseline;
-    if (t[i] < leftS || t[i] > rightS) return;
-    while (bin < w.t.length - 1 && w.t[bin] < t[i]) bin++;
-    trace.baseline[k] = baselineAt(x.baseline, t[i], Math.min(1, Math.max(0, x.cumulative[bin] / x.area)));
   });
+  for (const { window: w, excess: x } of shown) {
+    const { leftS, rightS } = x.baseline;
+    let bin = 0;
+    rows.forEach((i, k) => {
+      if (t[i] < leftS || t[i] > rightS) return;
+      while (bin < w.t.length - 1 && w.t[bin] < t[i]) bin++;
+      trace.baseline[k] = baselineAt(x.baseline, t[i], Math.min(1, Math.max(0, x.cumulative[bin] / x.area)));
+    });
+  }
   return trace;
 }

@@ -1,4 +1,4 @@
-import type { InstrumentCalibration } from './scan.ts';
+import type { InstrumentCalibration, ReadScan } from './scan.ts';
 import type { ExothermDirection, Role } from './states.ts';
 
 /** What `reduce-scan` needs beside the columns. */
@@ -14,4 +14,7 @@ export interface ReduceInput {
   calibration: InstrumentCalibration;
   meltingK?: number;
   crystallizationEnthalpyJPerKg?: number;
+  heatCapacityJPerKgK?: number;
+  /** Blank or rescan of the crystallised sample on the same programme: subtracted row by row */
+  reference?: ReadScan;
 }

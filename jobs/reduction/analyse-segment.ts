@@ -1,0 +1,102 @@
+import type { ReducedEvent, Segment } from '../../schema/wire/reduced.ts';
+import { interpolate, lowerBound } from '../numeric/local-polynomial.ts';
+import type { Bell } from './excess.ts';
+import { type Excursion, findExcursions, noiseSigma } from './find-event.ts';
+import { findGlassTransition } from './glass-transition.ts';
+import { reduceHold } from './hold.ts';
+import type { Room } from './isolate.ts';
+import { findMelting } from './melting.ts';
+import { reduceEvents, type Shown } from './reduce-event.ts';
+import type { ScanContext } from './scan-context.ts';
+
+/** A further exotherm counts as an event from this part of the strongest one on. */
+const LEAST_PART = 0.06;
+/** Reach of an event's foot and tail in half widths, and the flank two events need between them to stand apart, widths. */
+const FOOT = 4;
+const TAIL = 2.8;
+const FLANK_BETWEEN = 0.35;
+/** The glass transition is looked for up to this many half widths before the first event. */
+const GLASS_BEFORE = 1.7;
+
+export interface SegmentFindings {
+  events: ReducedEvent[];
+  glass?: { midpointK: number; onsetK: number };
+  meltingOnsetK?: number;
+  shown: Shown[];
+}
+
+/** Exotherms of a segment in order of time. */
+export function findEvents(c: ScanContext, segment: Segment): Excursion[] {
+  const all = findExcursions(c.scan.timeS, c.y, segment.from, segment.to);
+  return all.filter((x) => x.prominence >= LEAST_PART * all[0].prominence).sort((a, b) => a.peakS - b.peakS);
+}
+
+/** Events, glass transition and melting of one segment. */
+export function analyseSegment(c: ScanContext, segment: Segment): SegmentFindings {
+  const { timeS, temperatureK } = c.scan;
+  const bells: Bell[] = findEvents(c, segment).map((x) => ({ ...x, height: x.prominence }));
+  if (segment.kind === 'hold') return reduceHold(c, segment, bells);
+  const first = bells[0];
+  const glassEnd = first ? lowerBound(timeS, first.peakS - GLASS_BEFORE * first.leftS) : segment.to;
+  const glass =
+    segment.kind === 'heating'
+      ? findGlassTransition(timeS, c.y, segment.from, glassEnd, noiseSigma(c.y, segment.from, glassEnd), first)
+      : undefined;
+  const groups = groupBells(bells);
+  const endS = timeS[segment.to - 1];
+  const events: ReducedEvent[] = [];
+  const shown: Shown[] = [];
+  let meltingS: number | undefined;
+  groups.forEach((group, g) => {
+    const last = group[group.length - 1];
+    const before = groups[g - 1]?.[groups[g - 1].length - 1];
+    const after = groups[g + 1]?.[0];
+    const toS = after ? after.peakS - FOOT * after.leftS : endS;
+    const melting =
+      segment.kind === 'heating'
+        ? findMelting(timeS, c.y, lowerBound(timeS, last.peakS), lowerBound(timeS, toS), last.height)
+        : undefined;
+    meltingS ??= melting?.onsetS;
+    const room: Room = {
+      fromS: before ? before.peakS + TAIL * before.rightS : timeS[segment.from],
+      toS,
+      ...(g === 0 && glass && { glass }),
+      ...(melting && { melting }),
+      responseS: Math.max(0, c.input.calibration.responseS ?? 0),
+      ...knownArea(c, groups.length === 1 && group.length === 1),
+    };
+    const done = reduceEvents(c, segment, group, room, events.length + 1);
+    events.push(...done.events);
+    if (done.shown) shown.push(done.shown);
+  });
+  const T = (t: number) => interpolate(timeS, temperatureK, t);
+  // A step or an onset comes late by the whole lag: the response delays it like everything else.
+  const lateK = c.input.calibration.offsetK + c.input.calibration.lagS * segment.rateKPerS;
+  return {
+    events,
+    shown,
+    ...(glass && { glass: { midpointK: T(glass.midpointS) - lateK, onsetK: T(glass.onsetS) - lateK } }),
+    ...(meltingS !== undefined && { meltingOnsetK: T(meltingS) - lateK }),
+  };
+}
+
+/** Whole area of the event, W s or J/kg, where enthalpy (and mass) say it. */
+function knownArea(c: ScanContext, single: boolean): { knownArea?: number } {
+  const enthalpy = c.input.crystallizationEnthalpyJPerKg;
+  if (!single || enthalpy === undefined) return {};
+  if (c.scan.heatFlowUnit === 'W/kg') return { knownArea: enthalpy };
+  return c.massKg === undefined ? {} : { knownArea: enthalpy * c.massKg };
+}
+
+/** Neighbours without room for a flank between them belong together. */
+function groupBells(bells: Bell[]): Bell[][] {
+  const groups: Bell[][] = [];
+  for (const b of bells) {
+    const group = groups[groups.length - 1];
+    const a = group?.[group.length - 1];
+    const between = a && b.peakS - FOOT * b.leftS - (a.peakS + TAIL * a.rightS);
+    if (a && between < FLANK_BETWEEN * Math.min(a.leftS + a.rightS, b.leftS + b.rightS)) group.push(b);
+    else groups.push([b]);
+  }
+  return groups;
+}

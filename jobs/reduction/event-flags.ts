@@ -1,0 +1,88 @@
+import { type Flag, flag } from '../../schema/wire/flags.ts';
+import type { ReducedEvent } from '../../schema/wire/reduced.ts';
+
+export const FEW_POINTS = 20;
+export const TOO_FEW_POINTS = 8;
+/** Areas above both baselines that differ by more than this raise `baseline-doubt`. */
+const BASELINE_DOUBT = 0.05;
+const SELF_HEATING = { told: 0.1, out: 1 };
+
+export interface Judged {
+  straightArea: number;
+  lagK: number;
+  responseUnknown: boolean;
+  heatCapacityAssumed: boolean;
+  glassOverlap: boolean;
+  meltingOverlap: boolean;
+  knownArea: boolean;
+  mergedWith: number;
+}
+
+/** Everything that a user should know about one event, with the number that says it. */
+export function judgeEvent(e: ReducedEvent, about: Judged, where: object): Flag[] {
+  const flags: Flag[] = [];
+  const tell = (code: Flag['code'], detail: string, action: string) => flags.push(flag(code, detail, action, where));
+  if (e.pointsOverWidth < FEW_POINTS) {
+    tell(
+      'few-points',
+      `Only ${e.pointsOverWidth} points lie over the event’s width (20 are needed for conversion methods).`,
+      'Sample faster or scan slower.',
+    );
+  }
+  if (e.area < 5 * e.areaError) {
+    tell(
+      'event-small',
+      `The area ${e.area.toPrecision(3)} is below five times its error ${e.areaError.toPrecision(2)}; only temperatures are used.`,
+      'Use more mass or a higher rate.',
+    );
+  }
+  if (about.glassOverlap) {
+    tell(
+      'glass-transition-overlap',
+      'The glass transition ends less than one width before the event, so there is no baseline between them: the one behind the event is extrapolated and conversions below 0.1 are left out.',
+      'Nothing, or a rate at which the two lie further apart.',
+    );
+  }
+  if (about.meltingOverlap) {
+    const how = about.knownArea ? 'the enthalpy given in the sheet' : 'a JMAK-shaped tail';
+    tell(
+      'melting-overlap',
+      `Melting begins before the signal is back at the baseline; conversion is normalised by ${how} and left out above ${e.usableTo}.`,
+      about.knownArea
+        ? 'Nothing.'
+        : 'Give crystallization enthalpy and mass, or a rate at which the two lie further apart.',
+    );
+  }
+  if (about.mergedWith > 0) {
+    tell(
+      'events-merged',
+      `The signal does not return to the baseline between this event and ${about.mergedWith === 1 ? 'its neighbour' : `${about.mergedWith} others`}; they were separated by fitted Fraser–Suzuki peaks.`,
+      'Look at the thermogram; areas and early and late conversions carry the doubt of the separation.',
+    );
+  }
+  const difference = about.straightArea / e.area - 1;
+  if (about.mergedWith === 0 && !about.glassOverlap && !about.meltingOverlap && Math.abs(difference) > BASELINE_DOUBT) {
+    tell(
+      'baseline-doubt',
+      `A straight baseline gives an area ${(100 * difference).toFixed(1)} % different from the conversion-weighted one (limit 5 %).`,
+      'Look at the thermogram and its limits.',
+    );
+  }
+  if (e.selfHeating !== undefined && e.selfHeating > SELF_HEATING.told) {
+    const assumed = about.heatCapacityAssumed ? ' (heat capacity taken as 0.5 J/(g K); none is given)' : '';
+    const out = e.selfHeating > SELF_HEATING.out;
+    tell(
+      'self-heating',
+      `The event warms its own sample: S = ${e.selfHeating.toPrecision(2)}${assumed}, told above 0.1${out ? '; above 1 the scan stays out of the kinetics' : ''}.`,
+      'Use less mass or a lower rate.',
+    );
+  }
+  if (about.responseUnknown && Math.abs(about.lagK) > 0.1 * e.widthK) {
+    tell(
+      'response-unknown',
+      `The lag shifts the event by ${about.lagK.toFixed(2)} K, more than a tenth of its width ${e.widthK.toFixed(2)} K, and it is not known how much of it smears the signal.`,
+      'Give the response time [s] in instruments.csv, or run standards.',
+    );
+  }
+  return flags;
+}

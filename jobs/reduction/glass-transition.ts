@@ -1,0 +1,143 @@
+import type { Foot } from './shape.ts';
+import { footAt } from './shape.ts';
+
+/** A step of the heat capacity as it shows on a scan: endothermic, times in s. */
+export interface GlassTransition {
+  /** half-height midpoint and extrapolated onset (ISO 11357-2), s */
+  midpointS: number;
+  onsetS: number;
+  midpointErrorS: number;
+  /** where the step begins and where the signal is the liquid's again */
+  fromS: number;
+  toS: number;
+  /** signal units, negative (exotherm up) */
+  step: number;
+}
+
+/** Bins of the coarse trace. */
+const BINS = 240;
+/** A step must stand this many errors out of noise and beat a cubic drift by this much of −2 ln likelihood. */
+const LEAST_SIGMAS = 7;
+const LEAST_GAIN = 14;
+/** A logistic step is over this many of its widths from its middle; an aged glass overshoots behind it. */
+const BEFORE_WIDTHS = 4;
+const BEHIND_WIDTHS = 6;
+
+/**
+ * Looks for one endothermic step in rows [from, to) by least squares: quadratic baseline + step × logistic((t − midpoint)/width), the
+ * foot of the event behind it with free height. Midpoint and width are searched, the rest is linear.
+ * @param y heat flow, exotherm up   @param noise of one row   @param foot of the event that follows, if one does
+ * @returns undefined where a cubic drift without a step explains the rows as well
+ */
+export function findGlassTransition(
+  t: Float64Array,
+  y: Float64Array,
+  from: number,
+  to: number,
+  noise: number,
+  foot?: Foot,
+): GlassTransition | undefined {
+  const size = Math.max(1, Math.ceil((to - from) / BINS));
+  const n = Math.floor((to - from) / size);
+  if (n < 16) return undefined;
+  const time = new Float64Array(n);
+  const r = new Float64Array(n);
+  for (let b = 0; b < n; b++) {
+    for (let i = from + b * size; i < from + (b + 1) * size; i++) {
+      time[b] += t[i] / size;
+      r[b] += y[i] / size;
+    }
+  }
+  const [start, span] = [time[0], time[n - 1] - time[0]];
+  const base: Float64Array[] = [0, 1, 2].map((k) => time.map((s) => ((2 * (s - start)) / span - 1) ** k));
+  if (foot) base.push(time.map((s) => footAt({ ...foot, height: 1 }, s)));
+  const q = orthonormal(base);
+  for (const column of q) remove(r, column);
+  const cubic = orthonormal([...q, time.map((s) => ((2 * (s - start)) / span - 1) ** 3)])[q.length];
+  const cubicGain = cubic ? dot(cubic, r) ** 2 : 0;
+  const logistic = new Float64Array(n);
+  const tried = (middle: number, width: number) => {
+    for (let i = 0; i < n; i++) logistic[i] = 1 / (1 + Math.exp(-(time[i] - middle) / width));
+    return gainOf(logistic, r, q);
+  };
+
+  // A sharp step first, by running sums; then the logistic around the best place.
+  let sharp = { gain: 0, at: 0 };
+  const tail = q.map(() => 0);
+  let rest = 0;
+  for (let c = n - 1; c > 2; c--) {
+    rest += r[c];
+    let size2 = n - c;
+    q.forEach((column, k) => {
+      tail[k] += column[c];
+      size2 -= tail[k] ** 2;
+    });
+    if (rest < 0 && size2 > 0.05 && rest ** 2 / size2 > sharp.gain) sharp = { gain: rest ** 2 / size2, at: c };
+  }
+  if (sharp.at === 0) return undefined;
+  const step = span / (n - 1);
+  let best = { middle: time[sharp.at] - step / 2, width: step, gain: 0, height: 0 };
+  let [reach, stretch] = [span / 12, 2.5];
+  for (let round = 0; round < 12; round++) {
+    const { middle, width } = best;
+    for (const m of [middle - reach, middle, middle + reach]) {
+      for (const w of [width / stretch, width, width * stretch]) {
+        if (w < step / 2 || w > span / 8 || m < start || m > start + span) continue;
+        const found = tried(m, w);
+        if (found.height < 0 && found.gain > best.gain) best = { middle: m, width: w, ...found };
+      }
+    }
+    if (best.middle === middle && best.width === width) {
+      reach /= 2;
+      stretch = Math.sqrt(stretch);
+    }
+  }
+  if (best.gain === 0) return undefined;
+  const variance = Math.max(noise ** 2 / size, (dot(r, r) - best.gain) / n, 1e-30);
+  const cut = best.middle - 2.5 * best.width < start || best.middle + 1.5 * best.width > start + span;
+  if (cut || best.gain < LEAST_SIGMAS ** 2 * variance || best.gain - cubicGain < LEAST_GAIN * variance)
+    return undefined;
+  return {
+    midpointS: best.middle,
+    // The tangent at the middle of a logistic rises from the line before two widths earlier.
+    onsetS: best.middle - 2 * best.width,
+    // d(step)/d(middle) has the norm² step²/(6 width) per unit of time.
+    midpointErrorS: Math.sqrt((variance * 6 * best.width * step) / best.height ** 2),
+    fromS: best.middle - BEFORE_WIDTHS * best.width,
+    toS: best.middle + BEHIND_WIDTHS * best.width,
+    step: best.height,
+  };
+}
+
+/** Drop of the sum of squares, and the height, when `column` joins the basis. */
+function gainOf(column: Float64Array, r: Float64Array, q: Float64Array[]): { gain: number; height: number } {
+  let size = dot(column, column);
+  for (const known of q) size -= dot(known, column) ** 2;
+  if (!(size > 1e-3)) return { gain: 0, height: 0 };
+  const along = dot(column, r);
+  return { gain: along ** 2 / size, height: along / size };
+}
+
+/** Gram–Schmidt; columns that hang on earlier ones are left out. */
+function orthonormal(columns: readonly Float64Array[]): Float64Array[] {
+  const out: Float64Array[] = [];
+  for (const column of columns) {
+    const c = Float64Array.from(column);
+    const before = Math.sqrt(dot(c, c));
+    for (let pass = 0; pass < 2; pass++) for (const known of out) remove(c, known);
+    const norm = Math.sqrt(dot(c, c));
+    if (norm > 1e-7 * before) out.push(c.map((v) => v / norm));
+  }
+  return out;
+}
+
+function remove(from: Float64Array, unit: Float64Array): void {
+  const along = dot(from, unit);
+  for (let i = 0; i < from.length; i++) from[i] -= along * unit[i];
+}
+
+function dot(a: Float64Array, b: Float64Array): number {
+  let sum = 0;
+  for (let i = 0; i < a.length; i++) sum += a[i] * b[i];
+  return sum;
+}
