@@ -95,7 +95,7 @@ export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions
 
   return {
     async drain(campaignId) {
-      for (;;) {
+      while (!stopping.signal.aborted) {
         if (await fill(campaignId)) continue;
         if (inFlight.size > 0) {
           await rest(POLL_MS);
@@ -106,6 +106,7 @@ export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions
         // Held by another process, or waiting for its next attempt.
         await ports.clock.sleep(Math.min(POLL_MS, Math.max(1, (nextTryAt ?? 0) - ports.clock.now())));
       }
+      await Promise.all([...inFlight.values()].map(({ end }) => end));
     },
     start() {
       background ??= loop();
