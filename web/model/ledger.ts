@@ -88,6 +88,12 @@ export function emptySpans(rows: readonly CoverageRow[]): EmptySpan[] {
   });
 }
 
+/** The mark under the pointer or the keyboard: places in the rows and in the marks of that row. */
+export interface ActiveMark {
+  row: number;
+  mark: number;
+}
+
 /** Meanings of the warnings that belong to a sample and to no single file, gaps left out. */
 function concernsOf(sample: string, flags: readonly FlagRow[], gaps: readonly GapRow[]): string[] {
   const own = flags.filter((flag) => flag.sample === sample && !flag.file && flag.severity !== 'note');

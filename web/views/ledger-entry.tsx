@@ -6,10 +6,9 @@ import { StateGlyph } from '../charts/state-glyph.tsx';
 import { nearestMark, type StripLayout } from '../charts/strip-layout.ts';
 import { describeEstimate, describeMark } from '../model/describe.ts';
 import { headlineEnergy, headlineExponent } from '../model/headline.ts';
-import type { LedgerRow } from '../model/ledger.ts';
+import type { ActiveMark, LedgerRow } from '../model/ledger.ts';
 import { units } from '../state/units.ts';
 import { gapName, SAMPLE_STATE_NAMES, sentence } from '../words.ts';
-import type { ActiveMark } from './ledger.tsx';
 
 /** One sample of the coverage map: name and state, strip of marks, headline numbers. */
 export function LedgerEntry(props: {

@@ -6,17 +6,11 @@ import { createRateScale } from '../charts/rate-scale.ts';
 import { layoutStrip } from '../charts/strip-layout.ts';
 import type { Campaign, ScanRow } from '../client/rows.ts';
 import { formatCount } from '../format.ts';
-import type { LedgerRow } from '../model/ledger.ts';
+import type { ActiveMark, LedgerRow } from '../model/ledger.ts';
 import { units } from '../state/units.ts';
 import { Downloads } from './download.tsx';
 import { LedgerEntry } from './ledger-entry.tsx';
 import { Readout } from './readout.tsx';
-
-/** The mark under the pointer or the keyboard. */
-export interface ActiveMark {
-  row: number;
-  mark: number;
-}
 
 const NOTHING: readonly LedgerRow[] = [];
 

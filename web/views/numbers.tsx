@@ -8,10 +8,12 @@ import { describeEstimate } from '../model/describe.ts';
 import type { EventNumbers } from '../model/headline.ts';
 import type { LedgerRow } from '../model/ledger.ts';
 import { units } from '../state/units.ts';
+import { isNarrow } from '../state/viewport.ts';
 import { flagMeaning, sentence } from '../words.ts';
 import { Downloads } from './download.tsx';
 
 const PLOT_WIDTH = 150;
+const NARROW_PLOT_WIDTH = 100;
 /** Tables drawn before they are asked for: a large campaign has hundreds. */
 const FIRST_TABLES = 12;
 
@@ -87,7 +89,8 @@ function EventTable(props: { sample: string; isOnly: boolean; numbers: EventNumb
 
 function Quantity({ title, unit, rows }: { title: string; unit: string; rows: readonly ParameterRow[] }) {
   if (rows.length === 0) return null;
-  const scale = rows.length > 1 ? createIntervalScale(rows, PLOT_WIDTH) : undefined;
+  const scale =
+    rows.length > 1 ? createIntervalScale(rows, isNarrow.value ? NARROW_PLOT_WIDTH : PLOT_WIDTH) : undefined;
   return (
     <tbody>
       <tr>
