@@ -10,7 +10,8 @@ const TABLES = Object.keys(RESULT_TABLES) as ResultTable[];
 const CHUNK = 1 << 16;
 
 /**
- * Writes every result table as `TABLE.csv`. Each file is written beside its place and renamed over it whole, so that a
+ * Writes every result table as `TABLE.csv`, of what is there now: scans of files that were replaced or are gone are left
+ * out. Each file is written beside its place and renamed over it whole, so that a
  * reader never sees half a table and an interrupted run leaves the older one.
  * @returns rows written a table
  */
@@ -27,6 +28,7 @@ export async function writeResultTables(
       let text = csvHeader(table);
       let rows = 0;
       for await (const row of readTable(ports, campaignId, table)) {
+        if (table === 'scans' && row.status === 'superseded') continue;
         text += csvRow(table, row);
         rows++;
         if (text.length < CHUNK) continue;

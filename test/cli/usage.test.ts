@@ -3,7 +3,7 @@ import { describe, expect, test } from 'vitest';
 import { parseVerbArguments, wholeNumber } from '../../jobs/cli/arguments.ts';
 import { UsageError } from '../../jobs/cli/exit.ts';
 import { generalHelp, VERBS, type VerbName, verbHelp } from '../../jobs/cli/help.ts';
-import { runCli, temporaryFolder, writeTree } from './helpers.ts';
+import { runCli, runHere, temporaryFolder, writeTree } from './helpers.ts';
 
 describe('arguments', () => {
   test.each<[VerbName, string[], string]>([
@@ -32,15 +32,15 @@ describe('arguments', () => {
   });
 });
 
-describe('exit codes of the process', () => {
+describe('exit codes', () => {
   test('wrong usage is 2 with one sentence, help is 0, an unreachable server is 4', async () => {
     const folder = await temporaryFolder();
     await writeTree(folder, { 'a.txt': 'x' });
     const [bogus, help, missing, unreachable] = await Promise.all([
       runCli(['bogus']),
-      runCli(['run', '--help']),
-      runCli(['run', join(folder, 'nowhere'), '--out', join(folder, 'out')]),
-      runCli(['send', folder, '--campaign', 'c', '--to', 'http://127.0.0.1:1']),
+      runHere(['run', '--help']),
+      runHere(['run', join(folder, 'nowhere'), '--out', join(folder, 'out')]),
+      runHere(['send', folder, '--campaign', 'c', '--to', 'http://127.0.0.1:1']),
     ]);
     expect([bogus.code, bogus.out]).toEqual([2, '']);
     expect(bogus.err).toBe(

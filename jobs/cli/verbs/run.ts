@@ -61,7 +61,7 @@ export async function run([folder]: string[], values: Values, terminal: Terminal
     const campaign = await openCampaign(ports, folder);
     const refused = await takeFiles(ports, campaign, listed, terminal);
     const taken = performance.now();
-    const status = await runJobs(ports, campaign, workers, terminal);
+    const status = describeNow(await runJobs(ports, campaign, workers, terminal));
     const computed = performance.now();
     const rows = await writeResultTables(ports, campaign.id, out);
     const inputs = [];
@@ -149,6 +149,11 @@ async function runJobs(ports: Ports, campaign: Campaign, workers: number, termin
     await done.catch(() => undefined);
     throw error;
   }
+}
+
+/** Without the scans of files that were replaced or are gone. */
+function describeNow(status: CampaignStatus): CampaignStatus {
+  return { ...status, scans: { ...status.scans, superseded: 0 } };
 }
 
 function countStates(status: CampaignStatus): Record<string, number> {
