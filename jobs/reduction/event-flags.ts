@@ -1,17 +1,19 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
 import type { ReducedEvent } from '../../schema/wire/reduced.ts';
+import type { SelfHeating } from './self-heating.ts';
 
 export const FEW_POINTS = 20;
 export const TOO_FEW_POINTS = 8;
 /** Areas above both baselines that differ by more than this raise `baseline-doubt`. */
 const BASELINE_DOUBT = 0.05;
-const SELF_HEATING = { told: 0.1, out: 1 };
+/** S above which it is told, told where only a bound is known, and kept out of the kinetics (METHODS 4.8) */
+const SELF_HEATING = { told: 0.1, boundTold: 1, out: 1 };
 
 export interface Judged {
   straightArea: number;
   lagK: number;
   responseUnknown: boolean;
-  heatCapacityAssumed: boolean;
+  selfHeating?: SelfHeating;
   glassOverlap: boolean;
   meltingOverlap: boolean;
   knownArea: boolean;
@@ -68,13 +70,19 @@ export function judgeEvent(e: ReducedEvent, about: Judged, where: object): Flag[
       'Look at the thermogram and its limits.',
     );
   }
-  if (e.selfHeating !== undefined && e.selfHeating > SELF_HEATING.told) {
-    const assumed = about.heatCapacityAssumed ? ' (heat capacity taken as 0.5 J/(g K); none is given)' : '';
-    const out = e.selfHeating > SELF_HEATING.out;
+  const heating = about.selfHeating;
+  if (heating && heating.number > (heating.bound ? SELF_HEATING.boundTold : SELF_HEATING.told)) {
+    const assumed = heating.heatCapacityAssumed
+      ? ' with a heat capacity taken as 0.5 J/(g K), since none is given'
+      : '';
+    const out =
+      !heating.bound && heating.number > SELF_HEATING.out ? '; above 1 the event stays out of the kinetics' : '';
     tell(
       'self-heating',
-      `The event warms its own sample: S = ${e.selfHeating.toPrecision(2)}${assumed}, told above 0.1${out ? '; above 1 the scan stays out of the kinetics' : ''}.`,
-      'Use less mass or a lower rate.',
+      `The event ${heating.bound ? 'may warm' : 'warms'} its own sample: S is ${heating.bound ? 'at most ' : ''}${heating.number.toPrecision(2)}${assumed} (it matters above 0.1${out}).`,
+      heating.bound
+        ? 'Run standards, which tell the sample’s part of the lag; or use less mass.'
+        : 'Use less mass or a lower rate.',
     );
   }
   if (about.responseUnknown && Math.abs(about.lagK) > 0.1 * e.widthK) {

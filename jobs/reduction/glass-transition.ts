@@ -16,9 +16,9 @@ export interface GlassTransition {
 
 /** Bins of the coarse trace. */
 const BINS = 240;
-/** A step must stand this many errors out of noise and beat a cubic drift by this much of −2 ln likelihood. */
+/** A step must stand this many errors out of noise, and this part of the event's height. */
 const LEAST_SIGMAS = 7;
-const LEAST_GAIN = 14;
+const LEAST_HEIGHT_PART = 0.01;
 /** A logistic step is over this many of its widths from its middle; an aged glass overshoots behind it. */
 const BEFORE_WIDTHS = 4;
 const BEHIND_WIDTHS = 6;
@@ -27,7 +27,7 @@ const BEHIND_WIDTHS = 6;
  * Looks for one endothermic step in rows [from, to) by least squares: quadratic baseline + step × logistic((t − midpoint)/width), the
  * foot of the event behind it with free height. Midpoint and width are searched, the rest is linear.
  * @param y heat flow, exotherm up   @param noise of one row   @param foot of the event that follows, if one does
- * @returns undefined where a cubic drift without a step explains the rows as well
+ * @returns undefined where a smooth drift explains the rows as well
  */
 export function findGlassTransition(
   t: Float64Array,
@@ -53,12 +53,17 @@ export function findGlassTransition(
   if (foot) base.push(time.map((s) => footAt({ ...foot, height: 1 }, s)));
   const q = orthonormal(base);
   for (const column of q) remove(r, column);
-  const cubic = orthonormal([...q, time.map((s) => ((2 * (s - start)) / span - 1) ** 3)])[q.length];
-  const cubicGain = cubic ? dot(cubic, r) ** 2 : 0;
+  // What else could look like a step: a drift of third or fourth order, a foot of another steepness. The step must stand without them.
+  const rivals = [3, 4].map((k) => time.map((s) => ((2 * (s - start)) / span - 1) ** k));
+  if (foot)
+    for (const f of [0.8, 1.25]) rivals.push(time.map((s) => footAt({ ...foot, height: 1, leftS: f * foot.leftS }, s)));
+  const wide = orthonormal([...q, ...rivals]);
+  const left = Float64Array.from(r);
+  for (const column of wide.slice(q.length)) remove(left, column);
   const logistic = new Float64Array(n);
-  const tried = (middle: number, width: number) => {
+  const tried = (middle: number, width: number, data = r, basis = q) => {
     for (let i = 0; i < n; i++) logistic[i] = 1 / (1 + Math.exp(-(time[i] - middle) / width));
-    return gainOf(logistic, r, q);
+    return gainOf(logistic, data, basis);
   };
 
   // A sharp step first, by running sums; then the logistic around the best place.
@@ -93,10 +98,11 @@ export function findGlassTransition(
     }
   }
   if (best.gain === 0) return undefined;
-  const variance = Math.max(noise ** 2 / size, (dot(r, r) - best.gain) / n, 1e-30);
+  const { gain, height } = tried(best.middle, best.width, left, wide);
+  const variance = Math.max(noise ** 2 / size, (dot(left, left) - gain) / n, 1e-30);
   const cut = best.middle - 2.5 * best.width < start || best.middle + 1.5 * best.width > start + span;
-  if (cut || best.gain < LEAST_SIGMAS ** 2 * variance || best.gain - cubicGain < LEAST_GAIN * variance)
-    return undefined;
+  if (cut || !(height < 0) || gain < LEAST_SIGMAS ** 2 * variance) return undefined;
+  if (foot && -best.height < LEAST_HEIGHT_PART * foot.height) return undefined;
   return {
     midpointS: best.middle,
     // The tangent at the middle of a logistic rises from the line before two widths earlier.

@@ -36,6 +36,7 @@ const LEFT_REACH = { far: 5, near: 3.3 };
 const RIGHT_REACH = { far: 3.2, near: 2.4 };
 /** The tail of a response: 0.25 % are left after six time constants. */
 const RESPONSE_TAILS = 6;
+const LEAST_RESPONSE_TAILS = 3.5;
 /** Flank wished for, shortest one that counts, and the longest looked at, widths. */
 const FLANK = { wished: 0.8, least: 0.35, longest: 4.5 };
 /** Lengths tried when the longest flank is no smooth baseline. */
@@ -46,6 +47,8 @@ const SMOOTH_RATIO = 1.8;
 const TAIL_HEIGHT_PART = 0.003;
 const TAIL_SIGMAS = 4;
 const ROUNDS = 7;
+/** Rough bells on a strong drift come out too wide: narrower ones are tried before an event counts as cut. */
+const NARROWER = [1, 0.6, 0.35];
 
 /**
  * Finds limits, baseline and shape of an event, or of several that overlap, together.
@@ -56,6 +59,22 @@ export function isolateEvents(
   start: Bell[],
   room: Room,
   shapeOf: (w: EventWindow, x: Excess, before: Bell[]) => Bell[] | undefined = oneBell,
+): Isolation {
+  let found: Isolation = { cut: 'behind' };
+  for (const factor of NARROWER) {
+    const bells = start.map((b) => ({ ...b, leftS: factor * b.leftS, rightS: factor * b.rightS }));
+    const tried = isolateFrom(w, bells, room, shapeOf);
+    if (!('cut' in tried)) return tried;
+    if (factor === 1) found = tried;
+  }
+  return found;
+}
+
+function isolateFrom(
+  w: EventWindow,
+  start: Bell[],
+  room: Room,
+  shapeOf: (w: EventWindow, x: Excess, before: Bell[]) => Bell[] | undefined,
 ): Isolation {
   let bells = start;
   let found: Isolated | undefined;
@@ -123,7 +142,6 @@ function placeLimits(
   const width = widthOf(bells);
   const bin = (w.t[n - 1] - w.t[0]) / (n - 1);
   const least = Math.max(FLANK.least * width, 3 * bin);
-  const tail = RESPONSE_TAILS * room.responseS;
 
   const edgeLeft = Math.max(room.fromS, w.t[0]);
   const glassEnd = room.glass && room.glass.toS > edgeLeft ? room.glass.toS : edgeLeft;
@@ -142,8 +160,9 @@ function placeLimits(
 
   const edgeRight = Math.min(room.toS, w.t[n - 1]);
   const meltingStart = room.melting && room.melting.fromS < edgeRight ? room.melting.fromS : edgeRight;
-  const nearRight = last.peakS + Math.max(RIGHT_REACH.near * last.rightS, tail);
-  const farRight = last.peakS + Math.max((RIGHT_REACH.far + extra.right) * last.rightS, tail);
+  const nearRight = last.peakS + Math.max(RIGHT_REACH.near * last.rightS, LEAST_RESPONSE_TAILS * room.responseS);
+  const farRight =
+    last.peakS + Math.max((RIGHT_REACH.far + extra.right) * last.rightS, RESPONSE_TAILS * room.responseS);
   let toS = meltingStart;
   let rightS = Math.max(nearRight, Math.min(farRight, toS - FLANK.wished * width));
   let meltingOverlap = false;

@@ -10,7 +10,7 @@ import { noiseSigma } from './find-event.ts';
 import { type Isolated, type Room, widthOf } from './isolate.ts';
 import { eventRate } from './rate.ts';
 import type { ScanContext } from './scan-context.ts';
-import { ASSUMED_HEAT_CAPACITY, selfHeatingNumber } from './self-heating.ts';
+import { type SelfHeating, selfHeatingOf } from './self-heating.ts';
 import { separateEvents } from './separate-events.ts';
 import { averageWindow, type EventWindow } from './window.ts';
 
@@ -105,15 +105,14 @@ function completeEvent(
   };
   if (scan.heatFlowUnit === 'W/kg') event.enthalpyJPerKg = x.area;
   else if (c.massKg) event.enthalpyJPerKg = x.area / c.massKg;
+  let selfHeating: SelfHeating | undefined;
   const error = baseline.error.map((s) => s * Math.abs(rate));
   if (points >= FEW_POINTS && x.area > 5 * event.areaError) {
     event.curve = makeCurve(c, w, x, shape, times, T, error, segment, shiftK);
-    const enthalpy = event.enthalpyJPerKg ?? input.crystallizationEnthalpyJPerKg;
-    const contactS = calibration.lagS - responseS;
-    if (enthalpy !== undefined && contactS > 0 && rate > 0) {
-      const top = Math.max(...event.curve.ratePerS);
-      const heatCapacity = input.heatCapacityJPerKgK ?? ASSUMED_HEAT_CAPACITY;
-      event.selfHeating = selfHeatingNumber(contactS, enthalpy, heatCapacity, event.curve, top);
+    if (rate > 0) {
+      const enthalpy = event.enthalpyJPerKg ?? input.crystallizationEnthalpyJPerKg;
+      selfHeating = selfHeatingOf(c, event.curve, marks.height, enthalpy);
+      if (selfHeating && !selfHeating.bound) event.selfHeating = selfHeating.number;
     }
   }
   c.flags.push(
@@ -123,7 +122,7 @@ function completeEvent(
         straightArea: straightLineArea(w, x),
         lagK: calibration.lagS * rate,
         responseUnknown: calibration.responseS === undefined,
-        heatCapacityAssumed: input.heatCapacityJPerKgK === undefined,
+        ...(selfHeating && { selfHeating }),
         glassOverlap: isolated.glassOverlap,
         meltingOverlap: isolated.meltingOverlap,
         knownArea: room.knownArea !== undefined,

@@ -85,6 +85,8 @@ export interface StandardMelting {
   /** s: time constant of the exponential tail behind the peak, where it can be fitted */
   tailS?: number;
   tailErrorS?: number;
+  /** K/W: rate ÷ slope of the leading edge; heat flow in W only */
+  resistanceKPerW?: number;
 }
 
 export interface ReducedScan {

@@ -94,5 +94,16 @@ export interface InstrumentCalibration {
   responseS?: number;
   /** V/W */
   sensitivityVPerW?: number;
+  /** Number of standards scans behind it */
   standards: number;
+  /** K/K: the offset at temperature T is offsetK + offsetSlope (T − offsetAtK); two or more metals only */
+  offsetSlope?: number;
+  offsetAtK?: number;
+  /** Covariance of (offset, lag, offset slope), row-major 3 × 3, K, s and K/K */
+  covariance?: number[];
+  /** True heat ÷ measured heat (ASTM E968) */
+  heatFactor?: number;
+  heatFactorSe?: number;
+  /** Thermal resistance between sample and sensor, from the leading edges of the standards, K/W */
+  resistanceKPerW?: number;
 }

@@ -174,6 +174,9 @@ export function reduceSimulated(difficulty: Difficulty, seed: string, index: num
     lagSeS: 0.05 * instrument.shiftS,
     responseS: instrument.responseS,
     standards: 0,
+    ...(model.selfHeating && {
+      resistanceKPerW: model.selfHeating.contactS / (massKg * model.selfHeating.heatCapacityJPerKgK),
+    }),
   };
   const outcome = reduceScan(scan, {
     file: `simulated-${index}`,
