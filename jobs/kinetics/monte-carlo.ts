@@ -135,7 +135,7 @@ export function drawColumns(model: ScatterModel, random: Random, out: EventColum
 }
 
 /** Errors of offset and lag; an instrument without standards or sheet values has a lag of unknown size that can only be positive. */
-function drawCalibration(c: InstrumentCalibration, random: Random): { offset: number; lag: number } {
+export function drawCalibration(c: InstrumentCalibration, random: Random): { offset: number; lag: number } {
   const lag = random.normal() * c.lagSeS;
   return { offset: random.normal() * c.offsetSeK, lag: c.source === 'prior' ? Math.abs(lag) : lag };
 }

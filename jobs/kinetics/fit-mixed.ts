@@ -1,0 +1,62 @@
+import { flag } from '../../schema/wire/flags.ts';
+import type { FitScan } from '../../schema/wire/parameters.ts';
+import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
+import type { Random } from '../numeric/random.ts';
+import { CONVERSION_COUNT, collectEvent, distinctRates } from './event-data.ts';
+import { type EventFit, LEAST_RATES } from './fit-event.ts';
+import { distinctTemperatures } from './fit-holds.ts';
+import { fitProgrammes } from './isoconversional/programmes.ts';
+import { RowList } from './row-list.ts';
+
+/**
+ * Friedman and incremental Vyazovkin over the holds of an event, together with its heating ramps where there are some (METHODS 6: any
+ * programme, holds included). Nothing when fewer than three distinct programmes have a curve.
+ */
+export function fitMixed(
+  sample: string,
+  event: number,
+  ramps: FitScan[],
+  holds: FitScan[],
+  calibrations: InstrumentCalibration[],
+  random: Random,
+  draws: number,
+): EventFit | undefined {
+  const scans = [...ramps, ...holds].filter((s) => s.event.curve);
+  const rates = distinctRates(scans.filter((s) => s.event.kind === 'heating').map((s) => s.event.rateKPerS));
+  const temperatures = distinctTemperatures(scans.flatMap((s) => s.event.holdK ?? []));
+  if (temperatures.length === 0 || rates.length + temperatures.length < LEAST_RATES) return undefined;
+  const data = collectEvent(event, scans, calibrations);
+  // A hold's own slope is noise; its offset is what moves it.
+  data.scans.forEach((s, i) => {
+    if (s.event.kind === 'hold') data.rate[i] = 0;
+  });
+  const { estimate, drawn } = fitProgrammes(data, undefined, random, draws);
+  const list = new RowList(sample, event, data);
+  list.programmes(estimate, drawn, rates.length > 0 ? ['mixed-programmes'] : []);
+  const kinds = `${rates.length > 0 ? `${scans.length - holds.length} ramps and ` : ''}${temperatures.length} hold temperatures`;
+  return {
+    parameters: list.rows,
+    reports: [
+      {
+        event,
+        method: 'vyazovkin',
+        converged: estimate.converged,
+        message: estimate.converged ? `${kinds} in one fit` : `no minimum at some conversion (${kinds})`,
+        evaluations: 0,
+        residualRms: null,
+        rows: data.n * CONVERSION_COUNT,
+      },
+    ],
+    flags:
+      rates.length > 0
+        ? [
+            flag(
+              'mixed-programmes',
+              `Friedman and incremental Vyazovkin take ${kinds} of event ${event} in one fit; every other method takes ramps or holds alone.`,
+              'Nothing to do; exclude the holds to see the ramps alone.',
+              { sample, event },
+            ),
+          ]
+        : [],
+  };
+}
