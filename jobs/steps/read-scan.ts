@@ -1,58 +1,67 @@
 import { flag } from '../../schema/wire/flags.ts';
-import type { ReadOutcome, ReadScan } from '../../schema/wire/scan.ts';
+import type { ReadScan } from '../../schema/wire/scan.ts';
 import type { Ports } from '../ports/index.ts';
-import { hashOf } from '../store/ids.ts';
+import { queueReductions } from '../store/job-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
-import { type FileRow, loadFile, saveReadFile, saveRefusedFile } from '../store/scan-rows.ts';
-import { type ColumnsCache, decodeReadScan, encodeReadScan, readDerived } from './columns-store.ts';
+import {
+  loadFile,
+  loadReadyReductions,
+  type ReductionRows,
+  type ScanRow,
+  saveReadFile,
+  saveReduction,
+  saveRefusedFile,
+} from '../store/scan-rows.ts';
+import { columnsKeyOf, readOrLookUp } from './columns.ts';
+import type { ColumnsCache } from './columns-store.ts';
 import { highestHeatingRate } from './highest-rate.ts';
-import { STEP_VERSIONS } from './settings.ts';
+import { type FoundReduction, reduceRows } from './reduce-scan.ts';
 
-export const columnsKeyOf = ({ campaignId, sha256, path }: FileRow): string =>
-  `derived/${campaignId}/columns-${hashOf(['read-scan', STEP_VERSIONS['read-scan'], sha256, path])}`;
-
-/** Step `read-scan`: the bytes of a data file to columns, kept as a blob, or the file set aside with the reason. */
+/**
+ * Step `read-scan`: the bytes of a data file to columns, kept as a blob, or the file set aside with the reason. Scans whose
+ * instrument is calibrated already are reduced in the same go, which spares them a job and reading the columns back.
+ */
 export async function readScanFile(ports: Ports, job: ClaimedJob, cache: ColumnsCache): Promise<void> {
   const file = await loadFile(ports, job.subject);
   if (file?.state !== 'unread') return completeJob(ports, job);
-  const columnsKey = columnsKeyOf(file);
-  const outcome = await readOrLookUp(ports, file, columnsKey);
+  const outcome = await readOrLookUp(ports, file);
   if (!outcome.ok) {
     const { code, reason, action } = outcome.refusal;
     const flags = [flag(code, reason, action, { file: file.path })];
-    return completeJob(ports, job, (db) => saveRefusedFile(db, file, reason, flags), {
-      instruments: true,
-      samples: true,
-    });
+    const check = { instruments: true, samples: true };
+    return completeJob(ports, job, (db) => saveRefusedFile(db, file, reason, flags), check);
   }
   const { scan } = outcome;
+  const { flags } = scan;
+  const columnsKey = columnsKeyOf(file);
   const highestRateKPerS = highestHeatingRate(scan.timeS, scan.temperatureK);
-  cache.keep(columnsKey, scan);
+  const ready = await loadReadyReductions(ports, file, highestRateKPerS);
+  if (ready.length === 0) cache.keep(columnsKey, scan);
+  const reductions = await reduceAtOnce(ports, ready, scan);
   await completeJob(
     ports,
     job,
-    (db, now) => saveReadFile(db, file, now, { columnsKey, highestRateKPerS, flags: scan.flags }),
-    { instruments: true },
+    (db, now) => [
+      ...saveReadFile(db, file, { columnsKey, highestRateKPerS, flags }),
+      ...reductions.flatMap((reduction) => saveReduction(db, reduction.scan, reduction.found)),
+      ...queueReductions(db, file.campaignId, now, { fileId: file.id }),
+    ],
+    { instruments: true, samples: reductions.length > 0 },
   );
 }
 
-async function readOrLookUp(ports: Ports, file: FileRow, columnsKey: string): Promise<ReadOutcome> {
-  const stored = await readDerived(ports, columnsKey, decodeReadScan);
-  return stored ? { ok: true, scan: stored } : readAndStore(ports, file, columnsKey);
-}
-
-async function readAndStore(ports: Ports, file: FileRow, columnsKey: string): Promise<ReadOutcome> {
-  const outcome = await ports.compute.readScan(await ports.blobs.bytes(file.blobKey), file.path);
-  if (outcome.ok) await ports.blobs.put(columnsKey, encodeReadScan(outcome.scan));
-  return outcome;
-}
-
-/** The columns of a file that was read: from memory, from their blob, or from the original once more. */
-export async function loadColumns(ports: Ports, file: FileRow, cache: ColumnsCache): Promise<ReadScan> {
-  const key = file.columnsKey ?? columnsKeyOf(file);
-  const kept = cache.take(key);
-  if (kept) return kept;
-  const outcome = await readOrLookUp(ports, file, key);
-  if (!outcome.ok) throw new Error(`${file.path} was read before and is refused now: ${outcome.refusal.reason}`);
-  return outcome.scan;
+/** Gives the columns away where it reduces anything. A reduction that throws is left to a job of its own. */
+async function reduceAtOnce(
+  ports: Ports,
+  ready: readonly ReductionRows[],
+  columns: ReadScan,
+): Promise<{ scan: ScanRow; found: FoundReduction }[]> {
+  const reductions: { scan: ScanRow; found: FoundReduction }[] = [];
+  for (const [i, rows] of ready.entries()) {
+    // Each reduction may hand the columns' memory to another thread; all but the last get a copy.
+    const given = () => (i === ready.length - 1 ? columns : structuredClone(columns));
+    const found = await reduceRows(ports, rows, given).catch(() => undefined);
+    if (found) reductions.push({ scan: rows.scan, found });
+  }
+  return reductions;
 }

@@ -1,44 +1,50 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
 import type { ReduceOutcome } from '../../schema/wire/reduced.ts';
 import { decodeReduceOutcome, encodeReduceOutcome, summarizeReduced } from '../../schema/wire/reduced-blob.ts';
+import type { ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
 import type { Ports } from '../ports/index.ts';
 import { hashOf } from '../store/ids.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
 import { loadReduction, type ReductionRows, saveReduction } from '../store/scan-rows.ts';
+import { loadColumns } from './columns.ts';
 import { type ColumnsCache, readDerived } from './columns-store.ts';
-import { loadColumns } from './read-scan.ts';
 import { STEP_VERSIONS } from './settings.ts';
+
+/** What a reduction stores on its scan. */
+export type FoundReduction = Parameters<typeof saveReduction>[2];
 
 /** Step `reduce-scan`: one scan to events and curves, kept as a blob under the hash of everything that went in. */
 export async function reduceStoredScan(ports: Ports, job: ClaimedJob, cache: ColumnsCache): Promise<void> {
   const rows = await loadReduction(ports, job.subject);
-  const input = rows && reduceInputOf(rows);
-  if (!rows || !input || rows.scan.status !== 'read') return completeJob(ports, job);
-  const { scan, file } = rows;
-  const hash = hashOf(['reduce-scan', STEP_VERSIONS['reduce-scan'], STEP_VERSIONS['read-scan'], file.sha256, input]);
-  const reducedKey = `derived/${scan.campaignId}/reduced-${hash}`;
+  if (rows?.scan.status !== 'read') return completeJob(ports, job);
+  const found = await reduceRows(ports, rows, () => loadColumns(ports, rows.file, cache));
+  if (!found) return completeJob(ports, job);
+  await completeJob(ports, job, (db) => saveReduction(db, rows.scan, found), { samples: true });
+}
+
+/** Reduces the scan of these rows or looks the result up; undefined where it has no sample or calibration yet. */
+export async function reduceRows(
+  ports: Ports,
+  rows: ReductionRows,
+  columns: () => ReadScan | Promise<ReadScan>,
+): Promise<FoundReduction | undefined> {
+  const input = reduceInputOf(rows);
+  if (!input) return undefined;
+  const { campaignId, sha256 } = rows.file;
+  const hash = hashOf(['reduce-scan', STEP_VERSIONS['reduce-scan'], STEP_VERSIONS['read-scan'], sha256, input]);
+  const reducedKey = `derived/${campaignId}/reduced-${hash}`;
   let outcome = await readDerived(ports, reducedKey, decodeReduceOutcome);
   if (!outcome) {
-    outcome = await ports.compute.reduceScan(await loadColumns(ports, file, cache), input);
+    outcome = await ports.compute.reduceScan(await columns(), input);
     await ports.blobs.put(reducedKey, encodeReduceOutcome(outcome));
   }
-  const found = outcome.ok
-    ? {
-        status: 'reduced' as const,
-        reason: null,
-        reducedKey,
-        result: summarizeReduced(outcome.reduced),
-        flags: outcome.reduced.flags,
-      }
-    : {
-        status: 'set_aside' as const,
-        reason: outcome.reason,
-        reducedKey,
-        result: null,
-        flags: refusalFlags(outcome, input),
-      };
-  await completeJob(ports, job, (db) => saveReduction(db, scan, found), { samples: true });
+  if (!outcome.ok) {
+    const flags = refusalFlags(outcome, input);
+    return { status: 'set_aside', reason: outcome.reason, reducedKey, result: null, flags };
+  }
+  const { reduced } = outcome;
+  return { status: 'reduced', reason: null, reducedKey, result: summarizeReduced(reduced), flags: reduced.flags };
 }
 
 function reduceInputOf({ scan, file, calibration, sampleRow }: ReductionRows): ReduceInput | undefined {

@@ -1,11 +1,12 @@
 import { and, eq, sql } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
-import { type FileKind, files, scans, sheetRows } from '../../schema/tables/index.ts';
+import { campaigns, type FileKind, files, scans, sheetRows } from '../../schema/tables/index.ts';
 import type { ScanSheetRow } from '../../schema/wire/scan.ts';
 import type { Ports } from '../ports/index.ts';
 import { isConstraint, runBatch, type Statement } from './fence.ts';
 import { createId } from './ids.ts';
 import { ASSIGN_DELAY_MS, insertJob, touchCampaign } from './job-rows.ts';
+import { StoreRefusal } from './refusals.ts';
 
 export interface FileReceipt {
   /** The path as sent. */
@@ -28,7 +29,10 @@ export interface ArrivedFile {
   archiveId?: string;
 }
 
-/** Decides what a file is to its campaign, stores its bytes where they are not stored yet, and writes its rows and job in one batch. */
+/**
+ * Decides what a file is to its campaign, stores its bytes where they are not stored yet, and writes its rows and job in one
+ * batch. Throws StoreRefusal `campaign-unknown`.
+ */
 export async function acceptFile(ports: Ports, campaignId: string, file: ArrivedFile): Promise<FileReceipt> {
   // A second sender may insert the same path in between: the unique index says so, and the second look finds its row.
   for (let tries = 1; ; tries++) {
@@ -42,8 +46,10 @@ export async function acceptFile(ports: Ports, campaignId: string, file: Arrived
     try {
       await ports.database.write((db) => runBatch(db, plan.statements(db)));
     } catch (error) {
-      if (isConstraint(error) && tries < 5) continue;
-      throw error;
+      if (!isConstraint(error)) throw error;
+      await requireCampaign(ports, campaignId, file.blobKey);
+      if (tries >= 5) throw error;
+      continue;
     }
     if (plan.sharedBlob && !file.bytes) await ports.blobs.delete(file.blobKey);
     for (const jobId of plan.jobIds) await ports.queue.wake(jobId, 0);
@@ -56,6 +62,17 @@ export async function acceptFile(ports: Ports, campaignId: string, file: Arrived
       ...(plan.jobIds.length > 0 && { job_id: plan.jobIds[0] }),
     };
   }
+}
+
+/** Throws StoreRefusal `campaign-unknown`, after taking the bytes back, where there is no such campaign. */
+async function requireCampaign(ports: Ports, campaignId: string, blobKey: string): Promise<void> {
+  const found = await ports.database.read
+    .select({ id: campaigns.id })
+    .from(campaigns)
+    .where(eq(campaigns.id, campaignId));
+  if (found.length > 0) return;
+  await ports.blobs.delete(blobKey);
+  throw new StoreRefusal('campaign-unknown', `there is no campaign ${campaignId}`);
 }
 
 const outcomeOf = (kind: FileKind, replaces: boolean, known: boolean): FileReceipt['outcome'] => {

@@ -1,10 +1,7 @@
 import { createHash } from 'node:crypto';
-import { eq } from 'drizzle-orm';
-import { campaigns } from '../../schema/tables/index.ts';
 import type { Ports } from '../ports/index.ts';
 import { type ArrivedFile, acceptFile, type FileReceipt } from './arrivals.ts';
 import { createId, sha256Hex } from './ids.ts';
-import { StoreRefusal } from './refusals.ts';
 
 /** Largest file taken, bytes (INTERFACES, Limits). */
 export const FILE_LIMIT_BYTES = 100e6;
@@ -34,11 +31,6 @@ export async function receiveFile(
   if (problem !== undefined) return refused(problem);
   const announced = body instanceof Uint8Array ? body.byteLength : length;
   if (announced !== undefined && announced > FILE_LIMIT_BYTES) return refused(tooLarge(announced));
-  const [campaign] = await ports.database.read
-    .select({ id: campaigns.id })
-    .from(campaigns)
-    .where(eq(campaigns.id, campaignId));
-  if (!campaign) throw new StoreRefusal('campaign-unknown', `there is no campaign ${campaignId}`);
 
   let file: ArrivedFile;
   try {

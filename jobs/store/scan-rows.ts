@@ -1,13 +1,13 @@
-import { and, eq, sql } from 'drizzle-orm';
+import { and, eq, inArray, sql } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
-import { files, instruments, scans } from '../../schema/tables/index.ts';
+import { files, instruments, scans, sheetRows } from '../../schema/tables/index.ts';
 import type { Flag } from '../../schema/wire/flags.ts';
 import type { ReducedSummary } from '../../schema/wire/reduced-blob.ts';
 import type { InstrumentCalibration, SampleSheetRow } from '../../schema/wire/scan.ts';
 import type { Ports } from '../ports/index.ts';
 import { loadSheetRows } from './assignment-rows.ts';
 import type { Statement } from './fence.ts';
-import { queueReductions, touchSamples } from './job-rows.ts';
+import { touchSamples } from './job-rows.ts';
 
 export type FileRow = typeof files.$inferSelect;
 export type ScanRow = typeof scans.$inferSelect;
@@ -22,7 +22,6 @@ const scanSamples = (fileId: string) => sql`select sample from scans where file_
 export function saveReadFile(
   db: LibSQLDatabase,
   file: FileRow,
-  now: number,
   read: { columnsKey: string; highestRateKPerS: number; flags: Flag[] },
 ): Statement[] {
   return [
@@ -37,7 +36,6 @@ export function saveReadFile(
       where campaign_id = ${file.campaignId} and highest_rate_k_per_s < ${read.highestRateKPerS}
         and json_extract(sheet_row, '$.kind') is null and calibration is not null
         and instrument in (select instrument from scans where file_id = ${file.id} and disposition = 'assigned')`),
-    ...queueReductions(db, file.campaignId, now, { fileId: file.id }),
   ];
 }
 
@@ -69,21 +67,43 @@ export interface ReductionRows {
   scan: ScanRow;
   file: FileRow;
   calibration: InstrumentCalibration | null;
-  sampleRow: SampleSheetRow | undefined;
+  sampleRow: SampleSheetRow | null;
 }
 
-export async function loadReduction(ports: Ports, scanId: string): Promise<ReductionRows | undefined> {
-  const [row] = await ports.database.read
-    .select({ scan: scans, file: files, calibration: instruments.calibration })
+const selectReductions = (ports: Ports) =>
+  ports.database.read
+    .select({
+      scan: scans,
+      file: files,
+      calibration: instruments.calibration,
+      sampleRow: sql<SampleSheetRow | null>`(
+        select ${sheetRows.body} from ${sheetRows} inner join ${files} sheet on sheet.id = ${sheetRows.fileId}
+        where ${sheetRows.campaignId} = ${scans.campaignId} and ${sheetRows.sheet} = 'samples'
+          and json_extract(${sheetRows.body}, '$.sample') = ${scans.sample}
+        order by sheet.path, ${sheetRows.position} limit 1)`.mapWith((text: string) => JSON.parse(text)),
+    })
     .from(scans)
     .innerJoin(files, eq(files.id, scans.fileId))
     .leftJoin(
       instruments,
       and(eq(instruments.campaignId, scans.campaignId), eq(instruments.instrument, scans.instrument)),
-    )
-    .where(eq(scans.id, scanId));
-  if (!row) return undefined;
-  return { ...row, sampleRow: await loadSampleRow(ports, row.scan.campaignId, row.scan.sample) };
+    );
+
+export async function loadReduction(ports: Ports, scanId: string): Promise<ReductionRows | undefined> {
+  return (await selectReductions(ports).where(eq(scans.id, scanId)))[0];
+}
+
+/** Scans of a file just read that can be reduced at once: assigned, and on an instrument that this file's rate does not change. */
+export function loadReadyReductions(ports: Ports, file: FileRow, highestRateKPerS: number): Promise<ReductionRows[]> {
+  return selectReductions(ports).where(
+    and(
+      eq(scans.fileId, file.id),
+      eq(scans.disposition, 'assigned'),
+      inArray(scans.status, ['received', 'read']),
+      eq(instruments.calibratedRevision, instruments.inputsRevision),
+      sql`(json_extract(${instruments.sheetRow}, '$.kind') is not null or ${instruments.highestRateKPerS} >= ${highestRateKPerS})`,
+    ),
+  );
 }
 
 /** The row of samples.csv for one sample: the first, in the order of the assignment. */

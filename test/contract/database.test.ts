@@ -7,7 +7,7 @@ import { eq, sql } from 'drizzle-orm';
 import { afterEach, beforeEach, describe, expect, it } from 'vitest';
 import { openFileDatabase } from '../../jobs/adapters/libsql-node.ts';
 import { openRemoteDatabase } from '../../jobs/adapters/libsql-web.ts';
-import { migrateDatabase } from '../../jobs/adapters/node-ports.ts';
+import { migrateDatabase } from '../../jobs/adapters/migrate.ts';
 import type { Database } from '../../jobs/ports/index.ts';
 import { guarded, isConstraint, isFenceBreak, runBatch } from '../../jobs/store/fence.ts';
 import { campaigns, fence, flags } from '../../schema/tables/index.ts';

@@ -1,7 +1,11 @@
 import { mkdtemp, rm } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { closePorts, openNodePorts } from '../../jobs/adapters/node-ports.ts';
+import { createFileBlobs } from '../../jobs/adapters/file-blobs.ts';
+import { openFileDatabase } from '../../jobs/adapters/libsql-node.ts';
+import { migrateDatabase } from '../../jobs/adapters/migrate.ts';
+import { pathRules } from '../../jobs/adapters/path-rules.ts';
+import { createTableQueue } from '../../jobs/adapters/table-queue.ts';
 import type { Clock, Ports } from '../../jobs/ports/index.ts';
 import { createRunner } from '../../jobs/runner/index.ts';
 import { createCampaign, type FileReceipt, readTable, receiveFile } from '../../jobs/store/index.ts';
@@ -50,14 +54,18 @@ export interface TestPorts extends Ports {
 /** Ports on a folder of their own, with a clock moved by hand and arithmetic in place of the science. */
 export async function openTestPorts(): Promise<TestPorts> {
   const dataDir = await mkdtemp(join(tmpdir(), 'ratespan-test-'));
-  const ports = await openNodePorts({ dataDir, workers: 0 });
+  const database = await openFileDatabase(join(dataDir, 'ratespan.db'));
+  await migrateDatabase(database);
   return {
-    ...ports,
+    database,
+    blobs: createFileBlobs(join(dataDir, 'blobs')),
+    queue: createTableQueue(),
+    paths: pathRules,
     clock: createHandClock(),
     compute: createArithmeticCompute(),
     dataDir,
     async close() {
-      await closePorts(ports);
+      database.close();
       await rm(dataDir, { recursive: true, force: true });
     },
   };
