@@ -15,15 +15,17 @@ export interface ServerSettings {
   workers?: number;
   /** Take a free port when the wanted one is taken, and say so. */
   anyPort: boolean;
+  /** Serve the dashboard too; built first when it is missing. */
+  page: boolean;
 }
 
 /** API, page and job runner in this process; `stop` ends all three in order. */
 export async function startEverything(
   verb: string,
-  { stores, port, host, workers = availableParallelism(), anyPort }: ServerSettings,
+  { stores, port, host, workers = availableParallelism(), anyPort, page }: ServerSettings,
   terminal: Terminal,
 ): Promise<{ url: string; stop(): Promise<void> }> {
-  const webDir = await findWebPage(terminal);
+  const webDir = page ? await findWebPage(terminal) : undefined;
   const ports = await openNodePorts({ ...stores, workers });
   const listen = (at: number): Promise<RunningServer> => startServer({ ports, port: at, host, webDir });
   let server: RunningServer;

@@ -1,4 +1,5 @@
 import { existsSync } from 'node:fs';
+import { rename, rm } from 'node:fs/promises';
 import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import type { Terminal } from './terminal.ts';
@@ -19,6 +20,12 @@ export async function findWebPage(terminal: Terminal): Promise<string | undefine
   if (!existsSync(configFile)) return undefined;
   terminal.note('building the page, once …');
   const { build } = await import('vite');
-  await build({ configFile, logLevel: 'error' });
+  // Built beside its place and renamed, so that of two processes that start together neither sees half a page.
+  const outDir = `${fromSources}-${process.pid}`;
+  await build({ configFile, logLevel: 'error', build: { outDir } });
+  await rename(outDir, fromSources).catch(async (error) => {
+    await rm(outDir, { recursive: true, force: true });
+    if (!isBuilt(fromSources)) throw error;
+  });
   return fromSources;
 }

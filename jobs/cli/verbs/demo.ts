@@ -30,7 +30,12 @@ export async function demo(
   terminal.note(`synthetic campaign written to ${folder} (${campaign.files.length} files)`);
   const store = await takeStore(home);
   const stores = { dataDir: store.folder };
-  const server = await startEverything('demo', { stores, port, host: '127.0.0.1', workers, anyPort: true }, terminal);
+  const page = values.once !== true;
+  const server = await startEverything(
+    'demo',
+    { stores, port, host: '127.0.0.1', workers, anyPort: true, page },
+    terminal,
+  );
   try {
     const failures = await sendAndCompare(new Client(server.url), campaign, folder, terminal);
     for (const failure of failures) terminal.warn(`expected, but: ${failure}`);

@@ -19,6 +19,7 @@ export async function serve(
       host: String(values.host ?? '127.0.0.1'),
       workers: wholeNumber('serve', 'workers', values.workers, [0, 256]),
       anyPort: false,
+      page: true,
     },
     terminal,
   );
