@@ -50,7 +50,7 @@ export interface Clock {
 
 /** What a path alone says (INTERFACES, path rules and names of sheets): the reading rooms know, the store asks. */
 export interface PathRules {
-  /** Why the path is not allowed, or undefined. */
+  /** Why the path is not allowed, in words that follow it in a sentence, or undefined. */
   problem(path: string): string | undefined;
   kind(path: string): 'data' | 'sheet' | 'archive';
   /** The folder layout SAMPLE/INSTRUMENT/file. */

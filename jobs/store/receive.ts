@@ -1,4 +1,5 @@
 import { createHash } from 'node:crypto';
+import { quote } from '../../schema/wire/flags.ts';
 import type { Ports } from '../ports/index.ts';
 import { type ArrivedFile, acceptFile, type FileReceipt } from './arrivals.ts';
 import { createId, sha256Hex } from './ids.ts';
@@ -28,7 +29,7 @@ export async function receiveFile(
     return { file: path, outcome: 'refused', reason };
   };
   const problem = ports.paths.problem(path);
-  if (problem !== undefined) return refused(problem);
+  if (problem !== undefined) return refused(`the path ${quote(path)} ${problem}`);
   const announced = body instanceof Uint8Array ? body.byteLength : length;
   if (announced !== undefined && announced > FILE_LIMIT_BYTES) return refused(tooLarge(announced));
 
