@@ -1,7 +1,7 @@
 import { CONVERSION_GRID } from '../../../schema/wire/reduced.ts';
 import { decodeReduceOutcome } from '../../../schema/wire/reduced-blob.ts';
 import type { Ports } from '../../ports/index.ts';
-import type { ResultRow } from './index.ts';
+import type { ResultRow } from './result-row.ts';
 import { loadScanRecords } from './scan-table.ts';
 
 /** The reduced curves on the conversion grid, in the order of scans.csv; one scan's blob is in memory at a time. */

@@ -3,7 +3,7 @@ import { files, flags, scans } from '../../../schema/tables/index.ts';
 import type { Flag } from '../../../schema/wire/flags.ts';
 import type { Ports } from '../../ports/index.ts';
 import { canonicalJson } from '../ids.ts';
-import type { ResultRow } from './index.ts';
+import type { ResultRow } from './result-row.ts';
 import { compareCells } from './scan-table.ts';
 
 const SEVERITY_ORDER = { stop: 0, warn: 1, note: 2 } as const;

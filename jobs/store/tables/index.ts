@@ -1,22 +1,12 @@
-import type { Cell, ResultTable } from '../../../schema/wire/result-tables.ts';
+import type { ResultTable } from '../../../schema/wire/result-tables.ts';
 import type { Ports } from '../../ports/index.ts';
 import { readConversionTable } from './conversion-table.ts';
 import { readFlagTable } from './flag-table.ts';
 import { readInstrumentTable, readParameterTable, readPlanTable } from './parameter-table.ts';
+import type { ResultRow, TableFilter } from './result-row.ts';
 import { readScanTable } from './scan-table.ts';
 
-export type ResultRow = Record<string, Cell>;
-
-export interface TableFilter {
-  sample?: string;
-  /** `parameters` only */
-  quantity?: string;
-  method?: string;
-  event?: number;
-  /** Rows to skip and to give: the order is fixed, so an offset is a position. */
-  offset?: number;
-  limit?: number;
-}
+export type { ResultRow, TableFilter } from './result-row.ts';
 
 /**
  * The rows of a result table in their fixed order, keyed by the column names of RESULT_TABLES; missing is null, `rates` and `flags` are arrays.

@@ -1,7 +1,7 @@
 import { and, asc, eq } from 'drizzle-orm';
 import { instruments, parameters, plans } from '../../../schema/tables/index.ts';
 import type { Ports } from '../../ports/index.ts';
-import type { ResultRow, TableFilter } from './index.ts';
+import type { ResultRow, TableFilter } from './result-row.ts';
 import { compareCells } from './scan-table.ts';
 
 /** By sample, then as the fit ordered them. */

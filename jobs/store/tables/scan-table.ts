@@ -3,7 +3,7 @@ import { files, scans } from '../../../schema/tables/index.ts';
 import type { Flag } from '../../../schema/wire/flags.ts';
 import type { ReducedSummary } from '../../../schema/wire/reduced-blob.ts';
 import type { Ports } from '../../ports/index.ts';
-import type { ResultRow } from './index.ts';
+import type { ResultRow } from './result-row.ts';
 
 export interface ScanRecord {
   scanId: string;
