@@ -6,6 +6,7 @@ import { CONVERSION_COUNT, collectEvent, distinctRates } from './event-data.ts';
 import { type EventFit, LEAST_RATES } from './fit-event.ts';
 import { distinctTemperatures } from './fit-holds.ts';
 import { fitProgrammes } from './isoconversional/programmes.ts';
+import { COOLING_BRACKET } from './isoconversional/vyazovkin.ts';
 import { RowList } from './row-list.ts';
 
 /**
@@ -30,9 +31,28 @@ export function fitMixed(
   data.scans.forEach((s, i) => {
     if (s.event.kind === 'hold') data.rate[i] = 0;
   });
-  const { estimate, drawn } = fitProgrammes(data, undefined, random, draws);
+  const { estimate, drawn } = fitProgrammes(data, rates.length > 0 ? undefined : COOLING_BRACKET, random, draws);
   const list = new RowList(sample, event, data);
   list.programmes(estimate, drawn, rates.length > 0 ? ['mixed-programmes'] : []);
+  const pooled = list.rows.find((r) => r.method === 'friedman' && r.conversion === null);
+  const rows = data.n * CONVERSION_COUNT;
+  if (pooled && (pooled.lower95 ?? 0) < 0 && (pooled.upper95 ?? 0) > 0) {
+    const message = `the 95 % interval of Friedman’s E, ${pooled.value.toFixed(0)} kJ/mol (${pooled.lower95?.toFixed(0)} to ${pooled.upper95?.toFixed(0)}), holds zero`;
+    const fit = { converged: false, message, evaluations: 0, residualRms: null, rows };
+    return {
+      parameters: [],
+      reports: [
+        { event, method: 'friedman', ...fit },
+        { event, method: 'vyazovkin', ...fit },
+      ],
+      flags: [
+        flag('energy-undetermined', `No isoconversional energy: ${message}.`, 'Add holds, wider apart.', {
+          sample,
+          event,
+        }),
+      ],
+    };
+  }
   const kinds = `${rates.length > 0 ? `${scans.length - holds.length} ramps and ` : ''}${temperatures.length} hold temperatures`;
   return {
     parameters: list.rows,
@@ -44,7 +64,7 @@ export function fitMixed(
         message: estimate.converged ? `${kinds} in one fit` : `no minimum at some conversion (${kinds})`,
         evaluations: 0,
         residualRms: null,
-        rows: data.n * CONVERSION_COUNT,
+        rows,
       },
     ],
     flags:

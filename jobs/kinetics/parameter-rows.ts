@@ -80,6 +80,8 @@ export class RowBuilder {
     kind: ParameterRow['interval'],
     onCurves: boolean,
   ): void {
+    // A table of peaks alone has no widths and no start of the ramp: what needs them is missing, not a number.
+    if (!Number.isFinite(value)) return;
     const rates = onCurves ? Array.from(this.curves, (i) => this.data.rate[i]) : Array.from(this.data.rate);
     this.rows.push({
       sample: this.sample,
