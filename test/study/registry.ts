@@ -1,4 +1,5 @@
 import { generatorsAgree } from './generators-agree.ts';
+import { intervalsStudy } from './intervals.ts';
 import { reductionStudy } from './reduction.ts';
 import { roundTripStudy } from './round-trip.ts';
 
@@ -19,6 +20,11 @@ export const STUDIES: Record<string, { about: string; run: Study }> = {
   'generators-agree': {
     about: 'the two sources of simulated truth against each other, noise-free',
     run: generatorsAgree,
+  },
+  intervals: {
+    about:
+      'coverage and width of the 95 % intervals of E and n over settings of rates, replicates, noise and instruments',
+    run: intervalsStudy,
   },
   reduction: {
     about: 'single simulated scans: error of Tp, T(α) and ΔH against noise, drift and points',
