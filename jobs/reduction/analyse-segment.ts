@@ -2,7 +2,7 @@ import type { ReducedEvent, Segment } from '../../schema/wire/reduced.ts';
 import { interpolate, lowerBound } from '../numeric/local-polynomial.ts';
 import type { Bell } from './excess.ts';
 import { type Excursion, findExcursions, noiseSigma } from './find-event.ts';
-import { findGlassTransition } from './glass-transition.ts';
+import { findGlassTransition, GLASS_BEFORE } from './glass-transition.ts';
 import { reduceHold } from './hold.ts';
 import type { Room } from './isolate.ts';
 import { findMelting } from './melting.ts';
@@ -15,8 +15,9 @@ const LEAST_PART = 0.06;
 const FOOT = 4;
 const TAIL = 2.8;
 const FLANK_BETWEEN = 0.35;
-/** The glass transition is looked for up to this many half widths before the first event. */
-const GLASS_BEFORE = 1.7;
+
+/** Left half width of an event on a ramp ÷ the right one, at most (JMAK: 1.48). */
+const MOST_LEFT = 1.6;
 
 export interface SegmentFindings {
   events: ReducedEvent[];
@@ -36,13 +37,15 @@ export function analyseSegment(c: ScanContext, segment: Segment): SegmentFinding
   const { timeS, temperatureK } = c.scan;
   const bells: Bell[] = findEvents(c, segment).map((x) => ({ ...x, height: x.prominence }));
   if (segment.kind === 'hold') return reduceHold(c, segment, bells);
-  const first = bells[0];
+  // A step before the event makes its rough left half width come out too large.
+  const first = bells[0] && { ...bells[0], leftS: Math.min(bells[0].leftS, MOST_LEFT * bells[0].rightS) };
   const glassEnd = first ? lowerBound(timeS, first.peakS - GLASS_BEFORE * first.leftS) : segment.to;
   const glass =
     segment.kind === 'heating'
       ? findGlassTransition(timeS, c.y, segment.from, glassEnd, noiseSigma(c.y, segment.from, glassEnd), first)
       : undefined;
   const groups = groupBells(bells);
+  const highest = Math.max(...bells.map((b) => b.height));
   const endS = timeS[segment.to - 1];
   const events: ReducedEvent[] = [];
   const shown: Shown[] = [];
@@ -54,7 +57,14 @@ export function analyseSegment(c: ScanContext, segment: Segment): SegmentFinding
     const toS = after ? after.peakS - FOOT * after.leftS : endS;
     const melting =
       segment.kind === 'heating'
-        ? findMelting(timeS, c.y, lowerBound(timeS, last.peakS), lowerBound(timeS, toS), last.height)
+        ? findMelting(
+            timeS,
+            c.y,
+            lowerBound(timeS, last.peakS),
+            lowerBound(timeS, toS),
+            highest,
+            last.leftS + last.rightS,
+          )
         : undefined;
     meltingS ??= melting?.onsetS;
     const room: Room = {

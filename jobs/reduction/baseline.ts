@@ -19,8 +19,14 @@ export interface Baseline {
   covariance: Float64Array;
   leftS: number;
   rightS: number;
-  /** α is taken from the event, or the baseline of one side is followed throughout */
-  side: 'both' | 'left' | 'right';
+  /** What turns the left side's baseline into the right one's: the event's α, nothing (one side is followed), or a glass transition */
+  side: 'both' | 'left' | 'right' | LogisticStep;
+}
+
+/** 1/(1 + exp(−(t − middle)/width)), s */
+export interface LogisticStep {
+  middleS: number;
+  scaleS: number;
 }
 
 export const TERMS = 6;
@@ -38,7 +44,7 @@ const MODELS: readonly (readonly number[])[] = [
 ];
 const WITHOUT_STEP = [MODELS[0], MODELS[1], MODELS[3]];
 const ONE_FLANK: readonly (readonly number[])[] = [[0], [0, 1], [0, 1, 2]];
-const STEP_TO_RIGHT = [MODELS[2], MODELS[4]];
+const GLASS_STEP = [MODELS[2], MODELS[4]];
 
 /** Flanks shorter than this bear no curvature of third order and no slope step, widths. */
 const SHORT_FLANK = 0.9;
@@ -54,7 +60,7 @@ export interface Flanks {
 
 /**
  * @param variance of one bin, what is systematic within a block included
- * @param steps which models: `free` all, `none` without a step, `right` with a step, evaluated as the right side's baseline
+ * @param steps which models: `free` all, `none` without a step, or with the step of a glass transition between the flanks
  * @returns undefined when the flanks together hold fewer than four bins
  */
 export function fitBaseline(
@@ -62,7 +68,7 @@ export function fitBaseline(
   flanks: Flanks,
   limits: { leftS: number; rightS: number },
   variance: number,
-  steps: 'free' | 'none' | 'right',
+  steps: 'free' | 'none' | LogisticStep,
 ): Baseline | undefined {
   const { left, right } = flanks;
   const nLeft = Math.max(0, left[1] - left[0]);
@@ -74,8 +80,8 @@ export function fitBaseline(
     ? ONE_FLANK
     : steps === 'none'
       ? WITHOUT_STEP
-      : steps === 'right'
-        ? STEP_TO_RIGHT
+      : typeof steps === 'object'
+        ? GLASS_STEP
         : MODELS.filter((m) => shorter >= SHORT_FLANK || !(m.includes(3) || m.includes(5)));
   const normal = new Float64Array(TERMS * TERMS);
   const rhs = new Float64Array(TERMS);
@@ -110,7 +116,7 @@ export function fitBaseline(
     }
   });
   coefficients[0] += sums.level;
-  const side = oneSided ? (nLeft < 3 ? 'right' : 'left') : steps === 'right' ? 'right' : 'both';
+  const side = oneSided ? (nLeft < 3 ? 'right' : 'left') : typeof steps === 'object' ? steps : 'both';
   return { peakS: sums.peakS, widthS: sums.widthS, coefficients, covariance, ...limits, side };
 }
 
@@ -142,7 +148,7 @@ function solveModel(
 /** Values of the six terms at time t (s) and conversion α. */
 export function fillTerms(b: Baseline, t: number, alpha: number, terms: Float64Array): void {
   const u = (t - b.peakS) / b.widthS;
-  const a = b.side === 'both' ? alpha : b.side === 'right' ? 1 : 0;
+  const a = stepShare(b, t, alpha);
   terms[0] = 1;
   terms[1] = u;
   terms[2] = u * u;
@@ -155,6 +161,12 @@ export function fillTerms(b: Baseline, t: number, alpha: number, terms: Float64A
 export function baselineAt(b: Baseline, t: number, alpha: number): number {
   const u = (t - b.peakS) / b.widthS;
   const c = b.coefficients;
-  const a = b.side === 'both' ? alpha : b.side === 'right' ? 1 : 0;
+  const a = stepShare(b, t, alpha);
   return c[0] + u * (c[1] + u * (c[2] + u * c[3])) + a * (c[4] + c[5] * u);
+}
+
+function stepShare({ side }: Baseline, t: number, alpha: number): number {
+  if (side === 'both') return alpha;
+  if (side === 'right') return 1;
+  return side === 'left' ? 0 : 1 / (1 + Math.exp(-(t - side.middleS) / side.scaleS));
 }

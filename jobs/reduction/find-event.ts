@@ -8,6 +8,8 @@ export interface Excursion {
   /** Half widths at half prominence, s */
   leftS: number;
   rightS: number;
+  /** Full width at half prominence as it is, s */
+  spanS: number;
 }
 
 /** Bins of the coarse trace on which events are looked for. */
@@ -16,6 +18,8 @@ const COARSE = 1200;
 const LEAST_SIGMAS = 8;
 /** … and be narrower than this part of the segment: wider is baseline. */
 const WIDEST_PART = 0.4;
+/** Half widths of one event differ by no more than this factor. */
+const MOST_LOPSIDED = 3;
 
 /**
  * Exothermic excursions, most prominent first.
@@ -43,10 +47,12 @@ export function findExcursions(t: Float64Array, y: Float64Array, from: number, t
     while (hl > l && by[hl] > half) hl--;
     let hr = i;
     while (hr < r && by[hr] > half) hr++;
-    const leftS = bt[i] - bt[hl];
-    const rightS = bt[hr] - bt[i];
+    // On a slope or beside a step one side finds half height far away: the other then tells the width.
+    const [toLeft, toRight] = [bt[i] - bt[hl], bt[hr] - bt[i]];
+    const leftS = Math.min(toLeft, MOST_LOPSIDED * toRight);
+    const rightS = Math.min(toRight, MOST_LOPSIDED * toLeft);
     if (hr - hl < 3 || leftS + rightS > WIDEST_PART * span) continue;
-    found.push({ peakS: bt[i], prominence, leftS, rightS });
+    found.push({ peakS: bt[i], prominence, leftS, rightS, spanS: toLeft + toRight });
   }
   return found.sort((a, b) => b.prominence - a.prominence);
 }

@@ -7,6 +7,8 @@ export interface GlassTransition {
   midpointS: number;
   onsetS: number;
   midpointErrorS: number;
+  /** scale of the logistic step, s */
+  scaleS: number;
   /** where the step begins and where the signal is the liquid's again */
   fromS: number;
   toS: number;
@@ -16,9 +18,13 @@ export interface GlassTransition {
 
 /** Bins of the coarse trace. */
 const BINS = 240;
+/** Places tried for a broad step. */
+const GRID = 14;
 /** A step must stand this many errors out of noise, and this part of the event's height. */
 const LEAST_SIGMAS = 7;
 const LEAST_HEIGHT_PART = 0.01;
+/** The transition is looked for up to this many half widths before the event that follows. */
+export const GLASS_BEFORE = 1.3;
 /** A logistic step is over this many of its widths from its middle; an aged glass overshoots behind it. */
 const BEFORE_WIDTHS = 4;
 const BEHIND_WIDTHS = 6;
@@ -49,6 +55,7 @@ export function findGlassTransition(
     }
   }
   const [start, span] = [time[0], time[n - 1] - time[0]];
+  const step = span / (n - 1);
   const base: Float64Array[] = [0, 1, 2].map((k) => time.map((s) => ((2 * (s - start)) / span - 1) ** k));
   if (foot) base.push(time.map((s) => footAt({ ...foot, height: 1 }, s)));
   const q = orthonormal(base);
@@ -62,43 +69,24 @@ export function findGlassTransition(
   for (const column of wide.slice(q.length)) remove(left, column);
   const logistic = new Float64Array(n);
   const tried = (middle: number, width: number, data = r, basis = q) => {
+    if (width < step / 2 || width > span / 8 || middle < start || middle > start + span) return { gain: 0, height: 0 };
     for (let i = 0; i < n; i++) logistic[i] = 1 / (1 + Math.exp(-(time[i] - middle) / width));
     return gainOf(logistic, data, basis);
   };
 
-  // A sharp step first, by running sums; then the logistic around the best place.
-  let sharp = { gain: 0, at: 0 };
-  const tail = q.map(() => 0);
-  let rest = 0;
-  for (let c = n - 1; c > 2; c--) {
-    rest += r[c];
-    let size2 = n - c;
-    q.forEach((column, k) => {
-      tail[k] += column[c];
-      size2 -= tail[k] ** 2;
-    });
-    if (rest < 0 && size2 > 0.05 && rest ** 2 / size2 > sharp.gain) sharp = { gain: rest ** 2 / size2, at: c };
-  }
-  if (sharp.at === 0) return undefined;
-  const step = span / (n - 1);
-  let best = { middle: time[sharp.at] - step / 2, width: step, gain: 0, height: 0 };
-  let [reach, stretch] = [span / 12, 2.5];
-  for (let round = 0; round < 12; round++) {
-    const { middle, width } = best;
-    for (const m of [middle - reach, middle, middle + reach]) {
-      for (const w of [width / stretch, width, width * stretch]) {
-        if (w < step / 2 || w > span / 8 || m < start || m > start + span) continue;
-        const found = tried(m, w);
-        if (found.height < 0 && found.gain > best.gain) best = { middle: m, width: w, ...found };
-      }
-    }
-    if (best.middle === middle && best.width === width) {
-      reach /= 2;
-      stretch = Math.sqrt(stretch);
+  // Sharp steps by running sums, broad ones on a coarse grid; then the logistic around the best place.
+  let best = sharpestStep(time, left, wide);
+  for (let k = 1; k < GRID; k++) {
+    for (const width of [span / 60, span / 20]) {
+      const middle = start + (span * k) / GRID;
+      const found = tried(middle, width, left, wide);
+      if (found.height < 0 && found.gain > best.gain) best = { middle, width, ...found };
     }
   }
   if (best.gain === 0) return undefined;
-  const { gain, height } = tried(best.middle, best.width, left, wide);
+  best = refine(best, (m, w) => tried(m, w, left, wide));
+  const { gain, height } = best;
+  best = refine({ ...best, ...tried(best.middle, best.width) }, tried);
   const variance = Math.max(noise ** 2 / size, (dot(left, left) - gain) / n, 1e-30);
   const cut = best.middle - 2.5 * best.width < start || best.middle + 1.5 * best.width > start + span;
   if (cut || !(height < 0) || gain < LEAST_SIGMAS ** 2 * variance) return undefined;
@@ -107,12 +95,65 @@ export function findGlassTransition(
     midpointS: best.middle,
     // The tangent at the middle of a logistic rises from the line before two widths earlier.
     onsetS: best.middle - 2 * best.width,
+    scaleS: best.width,
     // d(step)/d(middle) has the norm² step²/(6 width) per unit of time.
     midpointErrorS: Math.sqrt((variance * 6 * best.width * step) / best.height ** 2),
     fromS: best.middle - BEFORE_WIDTHS * best.width,
     toS: best.middle + BEHIND_WIDTHS * best.width,
     step: best.height,
   };
+}
+
+interface Step {
+  middle: number;
+  width: number;
+  gain: number;
+  height: number;
+}
+
+/** Downward step between two bins that lowers the sum of squares most, from running sums over r and the basis q. */
+function sharpestStep(time: Float64Array, r: Float64Array, q: Float64Array[]): Step {
+  const n = time.length;
+  const best: Step = { middle: 0, width: (time[n - 1] - time[0]) / (n - 1), gain: 0, height: 0 };
+  const tail = q.map(() => 0);
+  let rest = 0;
+  for (let c = n - 1; c > 2; c--) {
+    rest += r[c];
+    let size = n - c;
+    for (let k = 0; k < q.length; k++) {
+      tail[k] += q[k][c];
+      size -= tail[k] ** 2;
+    }
+    if (!(rest < 0 && size > 0.05 && rest ** 2 / size > best.gain)) continue;
+    best.gain = rest ** 2 / size;
+    best.height = rest / size;
+    best.middle = (time[c] + time[c - 1]) / 2;
+  }
+  return best;
+}
+
+/** Pattern search over middle and logarithm of the width, halving where nothing near is better. */
+function refine(from: Step, tried: (middle: number, width: number) => { gain: number; height: number }): Step {
+  let best = from;
+  let reach = 2 * from.width;
+  let stretch = 2;
+  for (let round = 0; round < 14; round++) {
+    const { middle, width } = best;
+    for (const [m, w] of [
+      [middle - reach, width],
+      [middle + reach, width],
+      [middle, width / stretch],
+      [middle, width * stretch],
+    ]) {
+      const found = tried(m, w);
+      if (found.height < 0 && found.gain > best.gain) best = { middle: m, width: w, ...found };
+    }
+    if (best.middle === middle && best.width === width) {
+      reach /= 2.5;
+      stretch = Math.sqrt(stretch);
+    }
+  }
+  return best;
 }
 
 /** Drop of the sum of squares, and the height, when `column` joins the basis. */

@@ -1,7 +1,7 @@
 import { type Baseline, BLOCK_HEIGHT_PART, BLOCK_WIDTHS, baselineAt, type Flanks, fitBaseline } from './baseline.ts';
 import { type Bell, type Excess, halfWidths, subtractBaseline } from './excess.ts';
 import { FlankSums } from './flank-sums.ts';
-import type { GlassTransition } from './glass-transition.ts';
+import { findGlassTransition, GLASS_BEFORE, type GlassTransition } from './glass-transition.ts';
 import type { Melting } from './melting.ts';
 import { CONVERSION_AT_PEAK, CONVERSION_AT_RIGHT_HALF, footArea, footAt } from './shape.ts';
 import type { EventWindow } from './window.ts';
@@ -73,11 +73,12 @@ export function isolateEvents(
 function isolateFrom(
   w: EventWindow,
   start: Bell[],
-  room: Room,
+  around: Room,
   shapeOf: (w: EventWindow, x: Excess, before: Bell[]) => Bell[] | undefined,
 ): Isolation {
   let bells = start;
   let found: Isolated | undefined;
+  let room = around;
   const extra = { left: 0, right: 0 };
   for (let round = 0; round < ROUNDS; round++) {
     const placed = placeLimits(w, bells, room, extra);
@@ -96,6 +97,13 @@ function isolateFrom(
     bells = next;
     found = { ...fitted, bells };
     if (!settled) continue;
+    if (found.glassOverlap && room === around) {
+      // Now that the event's foot is known, the step can be told from it better.
+      const end = binsBetween(w, bells[0].peakS - GLASS_BEFORE * bells[0].leftS, bells[0].peakS)[0];
+      const glass = findGlassTransition(w.t, w.y, 0, end, w.noise, bells[0]);
+      room = { ...room, ...(glass && { glass }) };
+      continue;
+    }
     const before = placed.freeLeft && tailStands(w, found, 'left');
     const behind = placed.freeRight && tailStands(w, found, 'right');
     if (!before && !behind) break;
@@ -155,7 +163,7 @@ function placeLimits(
     // The glass transition reaches into the event: its own glass side gives slope and curvature, the level comes from the right.
     glassOverlap = true;
     fromS = edgeLeft;
-    leftS = Math.min(room.glass!.fromS, nearLeft);
+    leftS = room.glass!.fromS;
   }
 
   const edgeRight = Math.min(room.toS, w.t[n - 1]);
@@ -189,7 +197,7 @@ function fitOnce(w: EventWindow, bells: Bell[], room: Room, limits: Limits): Omi
   const top = bells.reduce((a, c) => (c.height > a.height ? c : a));
   const width = widthOf(bells);
   const { glassOverlap, meltingOverlap } = limits;
-  const sums = new FlankSums(w, top.peakS, width, glassOverlap ? undefined : first);
+  const sums = new FlankSums(w, top.peakS, width, first);
   const bin = (w.t[w.t.length - 1] - w.t[0]) / (w.t.length - 1);
   const variance = w.noise ** 2 + Math.max(1, (BLOCK_WIDTHS * width) / bin) * (BLOCK_HEIGHT_PART * top.height) ** 2;
   const least = Math.max(FLANK.least * width, 3 * bin);
@@ -207,13 +215,16 @@ function fitOnce(w: EventWindow, bells: Bell[], room: Room, limits: Limits): Omi
       variance,
     ),
   });
-  const steps = glassOverlap ? 'right' : meltingOverlap ? 'none' : 'free';
+  const { glass } = room;
+  const steps =
+    glassOverlap && glass ? { middleS: glass.midpointS, scaleS: glass.scaleS } : meltingOverlap ? 'none' : 'free';
   const fitAt = (leftS: number, rightS: number): Excess | undefined => {
     const baseline = fitBaseline(sums, flanksAt(leftS, rightS), { leftS, rightS }, variance, steps);
     if (!baseline) return undefined;
     if (meltingOverlap) return cutAtMelting(w, baseline, top, room);
-    const limited = glassOverlap ? { ...baseline, leftS: first.peakS - LEFT_REACH.near * first.leftS } : baseline;
-    return subtractBaseline(w, limited, glassOverlap ? 0 : footArea(first, leftS));
+    // The step being part of the baseline, the event may begin under it.
+    const limited = glassOverlap ? { ...baseline, leftS: first.peakS - LEFT_REACH.far * first.leftS } : baseline;
+    return subtractBaseline(w, limited, footArea(first, limited.leftS));
   };
   const excess = fitAt(limits.leftS, limits.rightS);
   if (!excess) return undefined;

@@ -12,6 +12,8 @@ export interface Melting {
 
 /** An endotherm counts from this part of the event's height on. */
 const LEAST_PART = 0.15;
+/** … and up to this many of its widths: wider is drift. */
+const WIDEST = 3;
 /** Its tails are gone this many half widths from its bottom (a logistic melting has fallen to 0.2 %). */
 const TAIL_HALF_WIDTHS = 5;
 
@@ -22,10 +24,11 @@ export function findMelting(
   from: number,
   to: number,
   height: number,
+  widthS: number,
 ): Melting | undefined {
   const flipped = y.subarray(from, to).map((v) => -v);
   const found = findExcursions(t.subarray(from, to), flipped, 0, to - from)
-    .filter((x) => x.prominence > LEAST_PART * height)
+    .filter((x) => x.prominence > LEAST_PART * height && x.spanS < WIDEST * widthS)
     .sort((a, b) => a.peakS - b.peakS)[0];
   if (!found) return undefined;
   return {

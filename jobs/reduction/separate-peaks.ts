@@ -16,6 +16,9 @@ export interface SeparatedPeak {
 }
 
 const ASYMMETRY = { middle: -0.2, reach: 0.45 };
+/** A JMAK event on a ramp has s = −0.39; several peaks are held near it by this weight, so that a shoulder does not take any shape it likes. */
+const JMAK_TURN = Math.tan(((-0.39 - ASYMMETRY.middle) / ASYMMETRY.reach) * (Math.PI / 2));
+const HELD_WITH_OTHERS = 0.6;
 const PER_PEAK = 4;
 /** Bins used in the fit: more only costs time. */
 const MOST_ROWS = 400;
@@ -39,11 +42,11 @@ export function separatePeaks(w: EventWindow, x: Excess, start: Bell[]): Separat
   const parameters = new Float64Array(p);
   start.forEach((b, k) => {
     parameters.set(
-      [Math.log(b.height / scaleY), (b.peakS - origin) / unit, Math.log((b.leftS + b.rightS) / unit), 0],
+      [Math.log(b.height / scaleY), (b.peakS - origin) / unit, Math.log((b.leftS + b.rightS) / unit), JMAK_TURN],
       k * PER_PEAK,
     );
   });
-  const fit = new LeastSquares(rows.length, p, (q, residuals, jacobian) => {
+  const fit = new LeastSquares(rows.length + start.length, p, (q, residuals, jacobian) => {
     for (let r = 0; r < rows.length; r++) {
       const t = (w.t[rows[r]] - origin) / unit;
       residuals[r] = -x.e[rows[r]] / scaleY;
@@ -69,6 +72,13 @@ export function separatePeaks(w: EventWindow, x: Excess, start: Bell[]): Separat
         const byS = (2 * Math.LN2 * l * l * y) / s ** 3 + (byL / z) * ((2 * (t - q[at + 1])) / omega);
         jacobian[row + 3] = byS * (ASYMMETRY.reach / (1 + turn * turn)) * (2 / Math.PI);
       }
+    }
+    for (let k = 0; k < start.length; k++) {
+      const row = rows.length + k;
+      const heldBy = start.length > 1 ? HELD_WITH_OTHERS : 0;
+      residuals[row] = heldBy * (q[k * PER_PEAK + 3] - JMAK_TURN);
+      jacobian.fill(0, row * p, (row + 1) * p);
+      jacobian[row * p + k * PER_PEAK + 3] = heldBy;
     }
   });
   const scale = new Float64Array(p).fill(1);
