@@ -33,9 +33,9 @@ export function findEvents(c: ScanContext, segment: Segment): Excursion[] {
 }
 
 /** Events, glass transition and melting of one segment. */
-export function analyseSegment(c: ScanContext, segment: Segment): SegmentFindings {
+export function analyseSegment(c: ScanContext, segment: Segment, excursions: Excursion[]): SegmentFindings {
   const { timeS, temperatureK } = c.scan;
-  const bells: Bell[] = findEvents(c, segment).map((x) => ({ ...x, height: x.prominence }));
+  const bells: Bell[] = excursions.map((x) => ({ ...x, height: x.prominence }));
   if (segment.kind === 'hold') return reduceHold(c, segment, bells);
   // A step before the event makes its rough left half width come out too large.
   const first = bells[0] && { ...bells[0], leftS: Math.min(bells[0].leftS, MOST_LEFT * bells[0].rightS) };

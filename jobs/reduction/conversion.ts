@@ -1,5 +1,5 @@
 import { CONVERSION_GRID } from '../../schema/wire/reduced.ts';
-import { fitLocalPolynomial, interpolate } from '../numeric/local-polynomial.ts';
+import { fitLocalPolynomial, interpolate, lowerBound } from '../numeric/local-polynomial.ts';
 import { fillTerms, TERMS } from './baseline.ts';
 import type { Bell, Excess } from './excess.ts';
 import { type Smoothed, smoothExcess, valueAt } from './smooth.ts';
@@ -49,9 +49,7 @@ export function conversionOfTime(w: EventWindow, x: Excess, shape: EventShape): 
 
 /** Bin at or just behind time t. */
 export function binAt(w: EventWindow, x: Excess, t: number): number {
-  let i = x.from;
-  while (i < x.to - 1 && w.t[i] < t) i++;
-  return i;
+  return Math.min(x.to - 1, Math.max(x.from, lowerBound(w.t, t)));
 }
 
 /**

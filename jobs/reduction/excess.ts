@@ -1,3 +1,4 @@
+import { lowerBound } from '../numeric/local-polynomial.ts';
 import { type Baseline, baselineAt } from './baseline.ts';
 import type { EventWindow } from './window.ts';
 
@@ -25,20 +26,22 @@ const ROUNDS = 12;
  */
 export function subtractBaseline(w: EventWindow, baseline: Baseline, foot: number, total?: number): Excess {
   const n = w.t.length;
-  let from = 0;
-  while (from < n && w.t[from] < baseline.leftS) from++;
-  let to = n;
-  while (to > from && w.t[to - 1] > baseline.rightS) to--;
+  const from = lowerBound(w.t, baseline.leftS);
+  const to = Math.max(from, lowerBound(w.t, baseline.rightS));
   const e = new Float64Array(n);
   const cumulative = new Float64Array(n);
   // First round: conversion as the share of time passed; the fixed point does not depend on it.
   for (let i = from; i < to; i++) cumulative[i] = (i - from) / Math.max(1, to - 1 - from);
   const stepped = baseline.side === 'both' && (baseline.coefficients[4] !== 0 || baseline.coefficients[5] !== 0);
+  // The baseline of the left side once, then only the step under the event changes from round to round.
+  const c = baseline.coefficients;
+  for (let i = from; i < to; i++) e[i] = w.y[i] - baselineAt(baseline, w.t[i], 0);
+  const above = stepped ? e.slice(from, to) : undefined;
   let area = 1;
   for (let round = 0; round < (stepped ? ROUNDS : 1); round++) {
-    for (let i = from; i < to; i++) {
+    for (let i = from; above && i < to; i++) {
       const alpha = Math.min(1, Math.max(0, cumulative[i] / area));
-      e[i] = w.y[i] - baselineAt(baseline, w.t[i], alpha);
+      e[i] = above[i - from] - alpha * (c[4] + (c[5] * (w.t[i] - baseline.peakS)) / baseline.widthS);
     }
     let sum = foot;
     cumulative[from] = foot;
@@ -48,7 +51,7 @@ export function subtractBaseline(w: EventWindow, baseline: Baseline, foot: numbe
     }
     const change = Math.abs(sum - area) / Math.abs(sum || 1);
     area = sum;
-    if (!(area > 0) || (round > 0 && change < 1e-8)) break;
+    if (!(area > 0) || (round > 0 && change < 1e-7)) break;
     if (total !== undefined) area = total;
   }
   if (total !== undefined) area = total;

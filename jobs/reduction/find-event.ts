@@ -75,14 +75,16 @@ function coarse(t: Float64Array, y: Float64Array, from: number, to: number): { b
   return { bt, by };
 }
 
+const MOST_DIFFERENCES = 1000;
+
 /**
  * Noise of one point from second differences (which a smooth curve hardly enters): 1.4826 × median |d²| ÷ √6, exact for white noise.
  */
 export function noiseSigma(y: Float64Array, from = 0, to = y.length): number {
   const n = to - from - 2;
   if (n < 3) return 0;
-  // A few thousand differences settle the median; a longer file is sampled evenly.
-  const step = Math.max(1, Math.floor(n / 4000));
+  // A thousand differences tell the noise to 4 %; a longer file is sampled evenly.
+  const step = Math.max(1, Math.floor(n / MOST_DIFFERENCES));
   const d = new Float64Array(Math.floor((n - 1) / step) + 1);
   for (let k = 0; k < d.length; k++) {
     const i = from + 1 + k * step;

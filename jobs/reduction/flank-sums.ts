@@ -5,6 +5,8 @@ import type { EventWindow } from './window.ts';
 
 /** Highest power of u in a normal matrix of cubics. */
 const POWERS = 7;
+/** Half widths after which 1e-6 of an event's height is left. */
+const FOOT_REACH = 10;
 
 /**
  * Running sums over the bins of a window from which the normal equations of any flank follow without touching its bins again:
@@ -35,10 +37,11 @@ export class FlankSums {
     this.level = w.y[0];
     this.noiseVariance = w.noise ** 2;
     const { powers, moments, squares } = this;
+    const footS = foot ? foot.peakS - FOOT_REACH * foot.leftS : 0;
     for (let i = 0; i < n; i++) {
       const u = (w.t[i] - peakS) / widthS;
       this.u[i] = u;
-      const y = w.y[i] - this.level - (foot && u < 0 ? footAt(foot, w.t[i]) : 0);
+      const y = w.y[i] - this.level - (foot && u < 0 && w.t[i] > footS ? footAt(foot, w.t[i]) : 0);
       let power = 1;
       for (let k = 0; k < POWERS; k++) {
         powers[k][i + 1] = powers[k][i] + power;

@@ -17,7 +17,7 @@ export interface GlassTransition {
 }
 
 /** Bins of the coarse trace. */
-const BINS = 240;
+const BINS = 160;
 /** Places tried for a broad step. */
 const GRID = 14;
 /** A step must stand this many errors out of noise, and this part of the event's height. */
@@ -84,12 +84,14 @@ export function findGlassTransition(
     }
   }
   if (best.gain === 0) return undefined;
+  const variance = (gain: number) => Math.max(noise ** 2 / size, (dot(left, left) - gain) / n, 1e-30);
+  // Most scans show none: no more work on what is not half way to a detection.
+  if (best.gain < (LEAST_SIGMAS ** 2 / 2) * variance(best.gain)) return undefined;
   best = refine(best, (m, w) => tried(m, w, left, wide));
   const { gain, height } = best;
   best = refine({ ...best, ...tried(best.middle, best.width) }, tried);
-  const variance = Math.max(noise ** 2 / size, (dot(left, left) - gain) / n, 1e-30);
   const cut = best.middle - 2.5 * best.width < start || best.middle + 1.5 * best.width > start + span;
-  if (cut || !(height < 0) || gain < LEAST_SIGMAS ** 2 * variance) return undefined;
+  if (cut || !(height < 0) || gain < LEAST_SIGMAS ** 2 * variance(gain)) return undefined;
   if (foot && -best.height < LEAST_HEIGHT_PART * foot.height) return undefined;
   return {
     midpointS: best.middle,
@@ -97,7 +99,7 @@ export function findGlassTransition(
     onsetS: best.middle - 2 * best.width,
     scaleS: best.width,
     // d(step)/d(middle) has the norm² step²/(6 width) per unit of time.
-    midpointErrorS: Math.sqrt((variance * 6 * best.width * step) / best.height ** 2),
+    midpointErrorS: Math.sqrt((variance(gain) * 6 * best.width * step) / best.height ** 2),
     fromS: best.middle - BEFORE_WIDTHS * best.width,
     toS: best.middle + BEHIND_WIDTHS * best.width,
     step: best.height,
@@ -149,6 +151,7 @@ function refine(from: Step, tried: (middle: number, width: number) => { gain: nu
       if (found.height < 0 && found.gain > best.gain) best = { middle: m, width: w, ...found };
     }
     if (best.middle === middle && best.width === width) {
+      if (reach < width / 20) break;
       reach /= 2.5;
       stretch = Math.sqrt(stretch);
     }

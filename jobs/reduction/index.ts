@@ -72,9 +72,14 @@ export function reduceScan(scan: ReadScan, input: ReduceInput): ReduceOutcome {
 
 function reduceChosen(c: ScanContext, segments: Segment[], candidates: Segment[]): ReducedScan {
   const { scan, y, flags, input } = c;
-  const shown = candidates.find((s) => findEvents(c, s).length > 0);
-  const segment = shown ?? candidates[0];
-  const found = analyseSegment(c, segment);
+  let segment = candidates[0];
+  let excursions = findEvents(c, segment);
+  const shown = candidates.find((s) => {
+    const seen = s === segment ? excursions : findEvents(c, s);
+    if (seen.length > 0) [segment, excursions] = [s, seen];
+    return seen.length > 0;
+  });
+  const found = analyseSegment(c, segment, excursions);
   if (!shown) {
     flags.push(
       flag(

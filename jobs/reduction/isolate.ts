@@ -1,3 +1,4 @@
+import { lowerBound } from '../numeric/local-polynomial.ts';
 import { type Baseline, BLOCK_HEIGHT_PART, BLOCK_WIDTHS, baselineAt, type Flanks, fitBaseline } from './baseline.ts';
 import { type Bell, type Excess, halfWidths, subtractBaseline } from './excess.ts';
 import { FlankSums } from './flank-sums.ts';
@@ -258,11 +259,8 @@ function cutAtMelting(w: EventWindow, baseline: Baseline, top: Bell, room: Room)
 }
 
 const binsBetween = (w: EventWindow, fromS: number, toS: number): [number, number] => {
-  let a = 0;
-  while (a < w.t.length && w.t[a] < fromS) a++;
-  let b = a;
-  while (b < w.t.length && w.t[b] <= toS) b++;
-  return [a, b];
+  const a = lowerBound(w.t, fromS);
+  return [a, Math.max(a, lowerBound(w.t, toS))];
 };
 
 /** The longest part next to the event that a cubic describes as well as it does a short part: steps and peaks further out stay out. */

@@ -1,7 +1,7 @@
 import type { Segment } from '../../schema/wire/reduced.ts';
 
 /** Blocks the programme is looked at in: fine enough for short holds, coarse enough for temperature noise. */
-const BLOCKS = 400;
+const BLOCKS = 240;
 /** A block is a hold when its slope is below this fraction of the fastest sustained slope. */
 const HOLD_FRACTION = 0.03;
 /** Shorter runs than this many blocks belong to their neighbours (overshoot at a corner, noise). */

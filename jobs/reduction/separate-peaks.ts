@@ -21,7 +21,7 @@ const JMAK_TURN = Math.tan(((-0.39 - ASYMMETRY.middle) / ASYMMETRY.reach) * (Mat
 const HELD_WITH_OTHERS = 0.6;
 const PER_PEAK = 4;
 /** Bins used in the fit: more only costs time. */
-const MOST_ROWS = 400;
+const MOST_ROWS = { one: 120, several: 400 };
 
 export interface Separation {
   peaks: SeparatedPeak[];
@@ -31,7 +31,7 @@ export interface Separation {
 
 /** @param start rough bells in order of time */
 export function separatePeaks(w: EventWindow, x: Excess, start: Bell[]): Separation | undefined {
-  const stride = Math.max(1, Math.ceil((x.to - x.from) / MOST_ROWS));
+  const stride = Math.max(1, Math.ceil((x.to - x.from) / (start.length > 1 ? MOST_ROWS.several : MOST_ROWS.one)));
   const rows: number[] = [];
   for (let i = x.from; i < x.to; i += stride) rows.push(i);
   const p = PER_PEAK * start.length;

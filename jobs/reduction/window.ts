@@ -12,8 +12,8 @@ export interface EventWindow {
   binSize: number;
 }
 
-/** Bins over the full width at half maximum: the averaging error is then about 1e-5 of the height. */
-const BINS_OVER_WIDTH = 120;
+/** Bins over the full width at half maximum: the averaging error is then about 2e-5 of the height. */
+const BINS_OVER_WIDTH = 80;
 
 /**
  * @param rows [from, to) of the columns to take   @param widthS full width at half maximum, s
