@@ -20,8 +20,9 @@ export interface ArrheniusIntegral {
 const SHORT_STRETCH = 2e-3;
 /** Below this x the rational factor is off by more than 1e-6. */
 const LEAST_X = 10;
-/** Panels of the quadrature are at most this long in x; five nodes then leave less than 1e-11. */
+/** Panels of the quadrature are at most this long in x and in ln T; five nodes then leave less than 1e-9. */
 const PANEL = 0.5;
+const PANEL_LN_T = 0.2;
 const NODES = [0, 0.5384693101056831, -0.5384693101056831, 0.906179845938664, -0.906179845938664];
 const NODE_WEIGHTS = [
   0.5688888888888889, 0.47862867049936647, 0.47862867049936647, 0.23692688505618908, 0.23692688505618908,
@@ -47,16 +48,16 @@ export function addArrheniusIntegral(
 export function addStretch(T1: number, T2: number, dt: number, c: number, shift: number, out: ArrheniusIntegral): void {
   const x1 = c / T1;
   const x2 = c / T2;
+  if (!(x1 > LEAST_X && x2 > LEAST_X)) {
+    addByQuadrature(T1, T2, dt, c, shift, out);
+    return;
+  }
   if (Math.abs(x1 - x2) < SHORT_STRETCH) {
     const T = (T1 + T2) / 2;
     const k = dt * Math.exp(shift - c / T);
     out.value += k;
     out.byEnergy -= k / (GAS_CONSTANT * T);
     out.byEnergy2 += k / (GAS_CONSTANT * T) ** 2;
-    return;
-  }
-  if (!(x1 > LEAST_X && x2 > LEAST_X)) {
-    addByQuadrature(T1, T2, dt, c, shift, out);
     return;
   }
   const e1 = Math.exp(shift - x1);
@@ -71,7 +72,11 @@ export function addStretch(T1: number, T2: number, dt: number, c: number, shift:
 
 /** Five-point Gauss–Legendre over panels of the stretch: any sign of c, all terms of one sign, so nothing cancels. */
 function addByQuadrature(T1: number, T2: number, dt: number, c: number, shift: number, out: ArrheniusIntegral): void {
-  const panels = Math.ceil(Math.abs(c / T1 - c / T2) / PANEL);
+  const panels = Math.max(
+    1,
+    Math.ceil(Math.abs(c / T1 - c / T2) / PANEL),
+    Math.ceil(Math.abs(Math.log(T2 / T1)) / PANEL_LN_T),
+  );
   const half = (T2 - T1) / panels / 2;
   const perNode = dt / panels / 2;
   for (let p = 0; p < panels; p++) {
