@@ -82,7 +82,7 @@ CREATE TABLE `jobs` (
 CREATE INDEX `jobs_due` ON `jobs` (`state`,`priority`);--> statement-breakpoint
 CREATE UNIQUE INDEX `jobs_one_waiting` ON `jobs` (`step`,`subject`) WHERE state = 'queued';--> statement-breakpoint
 CREATE INDEX `jobs_running` ON `jobs` (`step`,`subject`) WHERE state = 'running';--> statement-breakpoint
-CREATE INDEX `jobs_campaign` ON `jobs` (`campaign_id`,`state`);--> statement-breakpoint
+CREATE INDEX `jobs_campaign` ON `jobs` (`campaign_id`,`state`,`step`);--> statement-breakpoint
 CREATE TABLE `parameters` (
 	`campaign_id` text NOT NULL,
 	`sample` text NOT NULL,

@@ -241,7 +241,7 @@ export const jobs = sqliteTable(
     // at most one waiting job for the same work: a burst of uploads makes one refit
     uniqueIndex('jobs_one_waiting').on(t.step, t.subject).where(sql`state = 'queued'`),
     index('jobs_running').on(t.step, t.subject).where(sql`state = 'running'`),
-    index('jobs_campaign').on(t.campaignId, t.state),
+    index('jobs_campaign').on(t.campaignId, t.state, t.step),
   ],
 );
 
