@@ -25,12 +25,18 @@ const TABLE_QUERY = {
     .openapi({ description: '`csv` gives the whole table, whatever limit and after say.' }),
 };
 
+const SAMPLE_FILTER = { sample: textOf(200).optional() };
+
 const PARAMETER_FILTERS = {
-  sample: textOf(200).optional(),
+  ...SAMPLE_FILTER,
   quantity: textOf(80).optional(),
   method: textOf(80).optional(),
   event: z.coerce.number({ error: eventError }).int({ error: eventError }).min(1, { error: eventError }).optional(),
 };
+
+/** What the rows of a table can be narrowed to. */
+const filtersOf = (table: ResultTable) =>
+  table === 'parameters' ? PARAMETER_FILTERS : table === 'instruments' ? {} : SAMPLE_FILTER;
 
 const SUMMARIES: Record<ResultTable, string> = {
   parameters: 'The consolidated kinetic parameters.',
@@ -79,7 +85,7 @@ async function answerTable(c: Context<ApiEnv>, ports: Ports, id: string, table: 
 
 export function addTableRoutes(app: ApiApp, ports: Ports): void {
   for (const table of Object.keys(RESULT_TABLES) as ResultTable[]) {
-    const query = strict(table === 'parameters' ? { ...TABLE_QUERY, ...PARAMETER_FILTERS } : TABLE_QUERY);
+    const query = strict({ ...TABLE_QUERY, ...filtersOf(table) });
     const route = createRoute({
       method: 'get',
       path: `/v1/campaigns/{id}/${table}` as const,
