@@ -55,7 +55,10 @@ export const FLAG_CODES = {
   outlier: ['warn', 'a scan lies far from the fit of its fellows'],
   'rate-independent': ['stop', 'the temperature of the event does not rise with heating rate'],
   'onset-above-peak': ['warn', 'the onset of a scan lies above its peak'],
-  'series-not-monotonic': ['warn', 'a temperature falls where the rate rises, or a rate constant does not follow temperature'],
+  'series-not-monotonic': [
+    'warn',
+    'a temperature falls where the rate rises, or a rate constant does not follow temperature',
+  ],
   'energy-undetermined': ['warn', 'the data do not determine an activation energy'],
   'negative-energy': ['note', 'the rate falls with rising temperature'],
   'hold-late': ['warn', 'much had crystallised before the hold temperature was reached'],
@@ -70,6 +73,13 @@ export const FLAG_CODES = {
   'sheet-column-unused': ['note', 'a column of a sheet has a header that no sheet column has'],
   'archive-member-skipped': ['note', 'an entry of an archive that holds no data was left out'],
   'same-bytes': ['note', 'the same bytes came again under another name and count once'],
+  'forecasts-disagree': ['warn', 'model-free forecast and shared law differ by more than a factor of three'],
+  extrapolates: ['warn', 'a forecast lies outside the measured temperatures'],
+  'crosses-glass-transition': ['warn', 'a forecast lies on the other side of the glass transition than the data'],
+  'forecast-straight': ['warn', 'a model-free forecast is straight while the material’s law bends'],
+  'not-reached': ['note', 'a conversion is not reached within the programme or below any temperature'],
+  'quench-nuclei': ['warn', 'a critical cooling rate from heating data counts the nuclei of the quench'],
+  'driving-force-ignored': ['warn', 'no melting data: the driving force of crystallisation counts as full'],
 } as const satisfies Record<string, readonly [Severity, string]>;
 
 export type FlagCode = keyof typeof FLAG_CODES;

@@ -1,0 +1,68 @@
+import type { ForecastSource } from '../../schema/wire/forecasts.ts';
+import { type Kinetics, TEMPERATURE_RANGE } from './kinetics.ts';
+import { modelFreeKinetics } from './model-free-kinetics.ts';
+import { drawnParameters, type LawParameters, sharedRateCurve, straightRateCurve } from './rate-curve.ts';
+import { findFastest, sharedKinetics } from './shared-kinetics.ts';
+
+/** One method's law with its numbers filled in: the estimate, every draw, and the pessimistic law where there is one. */
+export interface Instances {
+  method: 'shared_law' | 'model_free';
+  estimate: Kinetics;
+  draws: Kinetics[];
+  /** The straight law beside a frozen one, and below which temperature it bounds the answer, K */
+  pessimistic?: { kinetics: Kinetics; belowK: number };
+}
+
+const MELTING_LIMIT: Pick<Kinetics, 'fastestK'> = { fastestK: TEMPERATURE_RANGE.highest };
+
+/** The methods that a source supports, shared law first. */
+export function instancesOf(source: ForecastSource): Instances[] {
+  const out: Instances[] = [];
+  const shared = sharedInstances(source);
+  if (shared) out.push(shared);
+  const free = modelFreeInstances(source);
+  if (free) out.push(free);
+  return out;
+}
+
+function sharedInstances({ law, lawDraws, melting }: ForecastSource): Instances | undefined {
+  if (!law || !isWhole([law.lnRateAtMiddle, law.energyJPerMol, law.bend, law.avramiExponent])) return undefined;
+  // Above melting nothing crystallises; where the driving force is known the rate has its top below that.
+  const make = (p: LawParameters, of: typeof sharedRateCurve) => {
+    const curve = of(law, p, melting);
+    const fastestK = melting
+      ? findFastest(curve.lnRate, law.lowestMeasuredK, melting.meltingK)
+      : MELTING_LIMIT.fastestK;
+    return sharedKinetics(curve, fastestK);
+  };
+  const draws: Kinetics[] = [];
+  for (let d = 0; d < (lawDraws?.bend.length ?? 0); d++) {
+    const p = drawnParameters(lawDraws!, d);
+    if (isWhole([p.lnRateAtMiddle, p.energyJPerMol, p.bend, p.avramiExponent])) draws.push(make(p, sharedRateCurve));
+  }
+  return {
+    method: 'shared_law',
+    estimate: make(law, sharedRateCurve),
+    draws,
+    pessimistic: { kinetics: make(law, straightRateCurve), belowK: law.frozenBelowK },
+  };
+}
+
+function modelFreeInstances({ modelFree, modelFreeDraws }: ForecastSource): Instances | undefined {
+  if (!modelFree || !isWhole(modelFree.energyJPerMol) || !isWhole(modelFree.lnStep) || !isWhole(modelFree.share))
+    return undefined;
+  const count = modelFree.conversions.length;
+  const draws: Kinetics[] = [];
+  const total = (modelFreeDraws?.lnStep.length ?? 0) / count;
+  for (let d = 0; d < total; d++) {
+    const energy = modelFreeDraws!.energyJPerMol.subarray(d * count, (d + 1) * count);
+    const lnStep = modelFreeDraws!.lnStep.subarray(d * count, (d + 1) * count);
+    if (isWhole(energy) && isWhole(lnStep)) draws.push(modelFreeKinetics(modelFree, energy, lnStep));
+  }
+  return { method: 'model_free', estimate: modelFreeKinetics(modelFree), draws };
+}
+
+function isWhole(values: ArrayLike<number>): boolean {
+  for (let i = 0; i < values.length; i++) if (!Number.isFinite(values[i])) return false;
+  return values.length > 0;
+}

@@ -1,0 +1,223 @@
+import type { ProgrammeTable } from '../../schema/wire/forecasts.ts';
+import { GAS_CONSTANT } from '../../schema/wire/units.ts';
+import type { RateCurve } from './rate-curve.ts';
+
+/**
+ * Time integrals of exp(g(T(t))) along a programme that is linear between its rows, by Gauss–Legendre panels. A panel is so short that the
+ * exponent moves by at most z = `exponentSpan` over it. The rule's error for e^z is z^2m (m!)⁴/((2m+1) ((2m)!)³) of the panel (Abramowitz & Stegun
+ * 25.4.30): below 1e-15 with five nodes and z = 0.5, 5e-7 with three nodes and z = 1, which is enough for a draw.
+ */
+export interface Panels {
+  name: string;
+  endS: number;
+  endK: number;
+  /** Start and length in time, s, temperatures at both ends, K: one a panel */
+  startS: Float64Array;
+  lengthS: Float64Array;
+  fromK: Float64Array;
+  toK: Float64Array;
+  rule: GaussRule;
+  /** Temperatures at the nodes, panel-major, K */
+  nodeK: Float64Array;
+}
+
+export interface GaussRule {
+  /** on 0 … 1 */
+  nodes: readonly number[];
+  weights: readonly number[];
+  exponentSpan: number;
+}
+
+/** Abramowitz & Stegun 1964, table 25.4, moved to 0 … 1. */
+export const FINE: GaussRule = {
+  nodes: [
+    0.5,
+    0.5 + 0.5384693101056831 / 2,
+    0.5 - 0.5384693101056831 / 2,
+    0.5 + 0.906179845938664 / 2,
+    0.5 - 0.906179845938664 / 2,
+  ],
+  weights: [
+    0.5688888888888889 / 2,
+    0.47862867049936647 / 2,
+    0.47862867049936647 / 2,
+    0.23692688505618908 / 2,
+    0.23692688505618908 / 2,
+  ],
+  exponentSpan: 0.5,
+};
+export const COARSE: GaussRule = {
+  nodes: [0.5, 0.5 + Math.sqrt(0.6) / 2, 0.5 - Math.sqrt(0.6) / 2],
+  weights: [4 / 9, 5 / 18, 5 / 18],
+  exponentSpan: 1,
+};
+
+/** Most panels of one programme: a table that needs more is refused rather than left to run for minutes. */
+const MOST_PANELS = 2_000_000;
+
+/** @throws RangeError for a table that is no programme, with the row (counted from 1) */
+export function checkProgramme({ name, timeS, temperatureK }: ProgrammeTable): void {
+  const what = name === '' ? 'the programme' : `the programme ${name}`;
+  if (timeS.length !== temperatureK.length || timeS.length < 2)
+    throw new RangeError(`${what} has ${timeS.length} rows; at least 2 with a time and a temperature each are needed`);
+  for (let i = 0; i < timeS.length; i++) {
+    if (!(temperatureK[i] > 0 && temperatureK[i] < 1e4))
+      throw new RangeError(`${what}, row ${i + 1}: temperature not in 0 … 10 000 K: ${temperatureK[i]} K`);
+    if (!Number.isFinite(timeS[i]) || (i > 0 && !(timeS[i] > timeS[i - 1])))
+      throw new RangeError(`${what}, row ${i + 1}: time ${timeS[i]} s does not come after ${timeS[i - 1]} s`);
+  }
+}
+
+/** @param steepness J/mol, as of a RateCurve; the larger of a stretch's two ends counts */
+export function layPanels(
+  programme: ProgrammeTable,
+  steepness: (temperatureK: number) => number,
+  breaksK: readonly number[],
+  rule: GaussRule,
+): Panels {
+  checkProgramme(programme);
+  const { name, timeS, temperatureK } = programme;
+  const cuts: number[] = [];
+  const at: number[] = [];
+  const add = (t: number, T: number) => {
+    if (at.length > 0 && t <= at[at.length - 1]) return;
+    at.push(t);
+    cuts.push(T);
+  };
+  add(0, temperatureK[0]);
+  for (let i = 1; i < timeS.length; i++) {
+    const [t1, t2] = [timeS[i - 1] - timeS[0], timeS[i] - timeS[0]];
+    const [T1, T2] = [temperatureK[i - 1], temperatureK[i]];
+    const inside = breaksK.filter((T) => T > Math.min(T1, T2) && T < Math.max(T1, T2));
+    inside.sort((a, b) => (T2 > T1 ? a - b : b - a));
+    let [t, T] = [t1, T1];
+    for (const to of [...inside, T2]) {
+      const end = to === T2 ? t2 : t1 + ((to - T1) / (T2 - T1)) * (t2 - t1);
+      const span = (Math.max(steepness(T), steepness(to)) / GAS_CONSTANT) * Math.abs(1 / T - 1 / to);
+      const count = Math.max(1, Math.ceil(span / rule.exponentSpan));
+      if (at.length + count > MOST_PANELS)
+        throw new RangeError(
+          `the programme ${name} needs more than ${MOST_PANELS} panels of integration; give it fewer rows`,
+        );
+      for (let k = 1; k < count; k++) add(t + ((end - t) * k) / count, T + ((to - T) * k) / count);
+      add(end, to);
+      [t, T] = [end, to];
+    }
+  }
+  const count = at.length - 1;
+  const out: Panels = {
+    name,
+    endS: at[count],
+    endK: cuts[count],
+    startS: Float64Array.from(at.slice(0, count)),
+    lengthS: new Float64Array(count),
+    fromK: Float64Array.from(cuts.slice(0, count)),
+    toK: Float64Array.from(cuts.slice(1)),
+    rule,
+    nodeK: new Float64Array(count * rule.nodes.length),
+  };
+  for (let p = 0; p < count; p++) {
+    out.lengthS[p] = at[p + 1] - at[p];
+    rule.nodes.forEach((u, k) => {
+      out.nodeK[p * rule.nodes.length + k] = cuts[p] + u * (cuts[p + 1] - cuts[p]);
+    });
+  }
+  return out;
+}
+
+/** ∫ K dt from the start to the end of each panel, all divided by e^lnScale so that nothing under- or overflows. */
+export interface Accumulated {
+  lnScale: number;
+  /** one a panel, ascending */
+  sums: Float64Array;
+}
+
+export function accumulate(panels: Panels, lnRate: (temperatureK: number) => number): Accumulated {
+  const { nodes, weights } = panels.rule;
+  const m = nodes.length;
+  const values = panels.nodeK.map(lnRate);
+  let lnScale = Number.NEGATIVE_INFINITY;
+  for (const v of values) if (v > lnScale) lnScale = v;
+  const sums = new Float64Array(panels.startS.length);
+  if (lnScale === Number.NEGATIVE_INFINITY) return { lnScale, sums };
+  let sum = 0;
+  for (let p = 0; p < sums.length; p++) {
+    let mean = 0;
+    for (let k = 0; k < m; k++) mean += weights[k] * Math.exp(values[p * m + k] - lnScale);
+    sum += panels.lengthS[p] * mean;
+    sums[p] = sum;
+  }
+  return { lnScale, sums };
+}
+
+/** ln ∫ K dt over the whole programme; −∞ where K is 0 throughout. */
+export function lnIntegral({ lnScale, sums }: Accumulated): number {
+  return lnScale + Math.log(sums[sums.length - 1]);
+}
+
+/**
+ * Time at which ∫ K dt reaches e^lnTarget, s from the start. Behind its end the programme is taken to stay at its last temperature, so that
+ * the answer is a smooth function of the law; the caller compares with `endS`. +∞ where K is 0 there.
+ */
+export function timeOfIntegral(
+  panels: Panels,
+  done: Accumulated,
+  lnRate: (temperatureK: number) => number,
+  lnTarget: number,
+): number {
+  const target = Math.exp(lnTarget - done.lnScale);
+  const { sums } = done;
+  const last = sums.length - 1;
+  if (!(sums[last] >= target)) {
+    if (done.lnScale === Number.NEGATIVE_INFINITY) return Number.POSITIVE_INFINITY;
+    return panels.endS + (target - sums[last]) * Math.exp(done.lnScale - lnRate(panels.endK));
+  }
+  let low = 0;
+  let high = last;
+  while (low < high) {
+    const middle = (low + high) >> 1;
+    if (sums[middle] >= target) high = middle;
+    else low = middle + 1;
+  }
+  const before = low === 0 ? 0 : sums[low - 1];
+  const u = partOfPanel(panels, low, (T) => Math.exp(lnRate(T) - done.lnScale), target - before);
+  return panels.startS[low] + u * panels.lengthS[low];
+}
+
+/** Part u of panel p over which ∫ rate dt reaches `target` (Newton with a bracket; the integral of a part is again a Gauss sum). */
+export function partOfPanel(
+  panels: Panels,
+  p: number,
+  rate: (temperatureK: number) => number,
+  target: number,
+  from = 0,
+): number {
+  const { nodes, weights } = panels.rule;
+  const T1 = panels.fromK[p];
+  const dT = panels.toK[p] - T1;
+  const length = panels.lengthS[p];
+  let [low, high] = [from, 1];
+  let u = (from + 1) / 2;
+  for (let i = 0; i < 60; i++) {
+    let sum = 0;
+    for (let k = 0; k < nodes.length; k++) sum += weights[k] * rate(T1 + dT * (from + (u - from) * nodes[k]));
+    const excess = sum * (u - from) * length - target;
+    if (excess > 0) high = u;
+    else low = u;
+    const slope = rate(T1 + dT * u) * length;
+    let next = u - excess / slope;
+    if (!(next > low && next < high)) next = (low + high) / 2;
+    if (Math.abs(next - u) <= 1e-13 * Math.max(u, 1e-3) || high - low < 1e-15) return next;
+    u = next;
+  }
+  return u;
+}
+
+/** What a programme's panels need of a set of laws: the steepest of them at each temperature. */
+export function steepestOf(curves: readonly RateCurve[]): (temperatureK: number) => number {
+  return (T) => {
+    let most = 0;
+    for (const curve of curves) most = Math.max(most, curve.steepness(T));
+    return most;
+  };
+}
