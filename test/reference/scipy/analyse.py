@@ -44,7 +44,7 @@ def energy_line(beta, T, power, factor, w):
 
 def ozawa_flynn_wall(beta, T, w):
     raw, error, _ = energy_line(beta, T, 0, 1, w)
-    inverse = np.mean(1 / T)
+    inverse = np.average(1 / T, weights=w)
     factor = optimize.brentq(lambda f: f - 1 / h(raw / f / R * inverse), 0.9, 1.6, xtol=1e-14)
     return raw / factor, error / factor
 

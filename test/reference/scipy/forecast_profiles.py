@@ -127,3 +127,14 @@ if __name__ == "__main__":
     f = lambda T: math.exp(ln_rate(T, LAW))
     print(f"bent: ln K(560) {ln_rate(560.0, LAW):.12f} ln K(680) {ln_rate(680.0, LAW):.12f}")
     print(f"bent ramp 550-690 K at 0.5 K/s: {integral([(0, 550.0), (280.0, 690.0)], f, (600.0,)):.12e}")
+    # Critical rate and nose of an exact synthetic: Arrhenius, driving force (Turnbull) above 700 K up to melting at 1000 K, n = 3, X = 0.01.
+    E, lnA, H, Tm, Th = 250e3, 36.0, 20e3, 1000.0, 700.0
+    drive = lambda T: -math.expm1(-H / R * (1 / T - 1 / Tm))
+    K = lambda T: math.exp(lnA - E / (R * T)) * (drive(T) / drive(Th) if T > Th else 1)
+    whole = quad(K, 150, Th, epsabs=0, epsrel=1e-13, limit=400)[0] + quad(K, Th, Tm, epsabs=0, epsrel=1e-13, limit=400)[0]
+    g = (-math.log1p(-0.01)) ** (1 / 3)
+    # d ln K/dT = 0: E = H/(e^g - 1)
+    nose = brentq(lambda T: E - H / math.expm1(H / R * (1 / T - 1 / Tm)), 800, 999.9, xtol=1e-11)
+    print(f"critical rate {whole / g:.12e} nose {nose:.9f} time there {g / K(nose):.12e}")
+    ramp = lambda T: quad(K, 150, T, epsabs=0, epsrel=1e-13, limit=400)[0] / 2.0
+    print(f"temperature of 0.5 at 2 K/s: {brentq(lambda T: ramp(T) - math.log(2) ** (1 / 3), 600, 900, xtol=1e-11):.9f}")

@@ -1,0 +1,94 @@
+import { describe, expect, test } from 'vitest';
+import { criticalRateRows, drawHeating, drawTransformation, findCriticalRates } from '../../jobs/forecast/index.ts';
+import { GAS_CONSTANT as R } from '../../schema/wire/units.ts';
+import { LAW, sourceOf, straightLaw } from './sources.ts';
+
+const law = { ...straightLaw(250e3, 36, 3, 600, 700), frozenBelowK: 600 };
+const CRITICAL = 5.936772450986e3;
+const NOSE_K = 968.997426396;
+const NOSE_S = 1.301424998511e-2;
+const HEATED_K = 787.497255926;
+const melting = { meltingK: 1000, enthalpyJPerMol: 20e3 };
+const source = sourceOf(law, { sdExponent: 0.02 }, { melting });
+
+describe('critical rates by the integral', () => {
+  // Exact synthetic (no published critical cooling rate with all its kinetics at hand): SciPy 1.17.1, test/reference/scipy/forecast_profiles.py.
+  test('rate and nose to 1e-7', () => {
+    const found = findCriticalRates(source)!;
+    expect(Math.abs(found.heatingKPerS.value / CRITICAL - 1)).toBeLessThan(1e-7);
+    expect(found.coolingKPerS!.value).toBe(found.heatingKPerS.value);
+    expect(found.nose!.temperatureK).toBeCloseTo(NOSE_K, 3);
+    expect(Math.abs(found.nose!.timeS / NOSE_S - 1)).toBeLessThan(1e-8);
+    expect(found.heatingKPerS.lower95!).toBeLessThan(CRITICAL);
+    expect(found.heatingKPerS.upper95!).toBeGreaterThan(CRITICAL);
+    expect(found.flags.map((f) => f.code)).toEqual(['quench-nuclei']);
+  });
+  test('no cooling rate without an enthalpy, nothing at all without a melting temperature', () => {
+    const bare = findCriticalRates({ ...source, melting: { meltingK: 1000 } })!;
+    expect(bare.coolingKPerS).toBeUndefined();
+    expect(bare.nose).toBeUndefined();
+    expect(bare.flags.map((f) => f.code)).toEqual(['driving-force-ignored']);
+    // Without the driving force the law runs up to melting unchecked.
+    expect(bare.heatingKPerS.value).toBeGreaterThan(CRITICAL);
+    expect(findCriticalRates({ ...source, melting: undefined })).toBeUndefined();
+  });
+  test('rows of the consolidated table', () => {
+    const { parameters } = criticalRateRows(source, { count: 8, rateMinKPerS: 0.05, rateMaxKPerS: 5 });
+    expect(parameters.map((p) => [p.quantity, p.unit, p.conversion, p.flags])).toEqual([
+      ['critical_heating_rate', 'K/s', null, []],
+      ['critical_cooling_rate', 'K/s', null, ['quench-nuclei']],
+    ]);
+  });
+});
+
+describe('the nose of published glasses', () => {
+  // Liquidus, VFT viscosity and temperature of the largest growth rate: data.csv of supp_code_jezica, Jiusti et al., J. Am. Ceram. Soc. 103 (2020) 921.
+  // Enthalpies of melting: from memory. With pre-existing nuclei the nose is where growth ∝ [1 − exp(−Δμ/RT)]/η is fastest.
+  test.each([
+    ['diopside CaO·MgO·2SiO2', 4874.5, 689.9, 1664, 137.7e3, 1614],
+    ['Li2O·2SiO2', 3082.4, 509.6, 1303, 61e3, 1210],
+  ])('%s: within 3 %% of the measured temperature', (_, B, T0, liquidusK, enthalpyJPerMol, fastestK) => {
+    // The bent law that touches 1/η at 0.9 of the liquidus: E_loc = R B ln 10/(1 − T0 x)², d ln E_loc/dx = 2 T0/(1 − T0 x).
+    const x0PerK = 1 / (0.9 * liquidusK);
+    const dxPerK = 0.05 * x0PerK;
+    const viscous = {
+      ...LAW,
+      x0PerK,
+      dxPerK,
+      energyJPerMol: (R * B * Math.LN10) / (1 - T0 * x0PerK) ** 2,
+      bend: (dxPerK * 2 * T0) / (1 - T0 * x0PerK),
+      lowestMeasuredK: 0.8 * liquidusK,
+      highestMeasuredK: 0.9 * liquidusK,
+      frozenBelowK: 0.6 * liquidusK,
+    };
+    const { nose } = findCriticalRates(sourceOf(viscous, {}, { melting: { meltingK: liquidusK, enthalpyJPerMol } }))!;
+    expect(Math.abs(nose!.temperatureK / fastestK - 1)).toBeLessThan(0.03);
+  });
+});
+
+describe('diagrams', () => {
+  test('time–temperature–transformation turns back at the nose and is the forecast at each temperature', () => {
+    const line = drawTransformation(source, [0.01]).find((l) => l.method === 'shared_law')!;
+    expect(line.x.length).toBeGreaterThan(70);
+    let fastest = 0;
+    line.y.forEach((t, i) => {
+      if (t < line.y[fastest]) fastest = i;
+      expect(line.lower[i]).toBeLessThanOrEqual(t);
+      expect(line.upper[i]).toBeGreaterThanOrEqual(t);
+    });
+    expect(Math.abs(line.x[fastest] - NOSE_K)).toBeLessThan(6);
+    expect(fastest).toBeLessThan(line.x.length - 1);
+  });
+  test('constant heating: the temperature of α = 0.5 at 2 K/s to 1e-6 K', () => {
+    const [line] = drawHeating(source, [2, 0.2], [0.5]);
+    expect(Array.from(line.x)).toEqual([0.2, 2]);
+    expect(Math.abs(line.y[1] - HEATED_K)).toBeLessThan(1e-4);
+    expect(line.y[0]).toBeLessThan(line.y[1]);
+    expect(line.lower[1]).toBeLessThan(line.y[1]);
+  });
+  test('a source without a law draws the model-free lines only', () => {
+    const free = { ...source, law: undefined, lawDraws: undefined };
+    expect(drawHeating(free, [1])).toEqual([]);
+    expect(new Set(drawTransformation(free).map((l) => l.method))).toEqual(new Set(['model_free']));
+  });
+});
