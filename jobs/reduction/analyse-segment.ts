@@ -1,7 +1,7 @@
 import type { ReducedEvent, Segment } from '../../schema/wire/reduced.ts';
 import { interpolate, lowerBound } from '../numeric/local-polynomial.ts';
 import type { Bell } from './excess.ts';
-import { type Excursion, findExcursions, noiseSigma } from './find-event.ts';
+import { type Excursion, findExcursions } from './find-event.ts';
 import { findGlassTransition, GLASS_BEFORE } from './glass-transition.ts';
 import { reduceHold } from './hold.ts';
 import type { Room } from './isolate.ts';
@@ -41,9 +41,7 @@ export function analyseSegment(c: ScanContext, segment: Segment, excursions: Exc
   const first = bells[0] && { ...bells[0], leftS: Math.min(bells[0].leftS, MOST_LEFT * bells[0].rightS) };
   const glassEnd = first ? lowerBound(timeS, first.peakS - GLASS_BEFORE * first.leftS) : segment.to;
   const glass =
-    segment.kind === 'heating'
-      ? findGlassTransition(timeS, c.y, segment.from, glassEnd, noiseSigma(c.y, segment.from, glassEnd), first)
-      : undefined;
+    segment.kind === 'heating' ? findGlassTransition(timeS, c.y, segment.from, glassEnd, c.noise, first) : undefined;
   const groups = groupBells(bells);
   const highest = Math.max(...bells.map((b) => b.height));
   const endS = timeS[segment.to - 1];

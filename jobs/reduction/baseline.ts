@@ -71,6 +71,7 @@ export function fitBaseline(
   steps: 'free' | 'none' | LogisticStep,
 ): Baseline | undefined {
   const { left, right } = flanks;
+  const p = TERMS;
   const nLeft = Math.max(0, left[1] - left[0]);
   const nRight = Math.max(0, right[1] - right[0]);
   if (nLeft + nRight < 4) return undefined;
@@ -83,8 +84,8 @@ export function fitBaseline(
       : typeof steps === 'object'
         ? GLASS_STEP
         : MODELS.filter((m) => shorter >= SHORT_FLANK || !(m.includes(3) || m.includes(5)));
-  const normal = new Float64Array(TERMS * TERMS);
-  const rhs = new Float64Array(TERMS);
+  const normal = new Float64Array(p * p);
+  const rhs = new Float64Array(p);
   const squares = sums.fillNormal(left, right, normal, rhs);
   const solved = models.flatMap((used) => {
     if (used.length + 1 > nLeft + nRight) return [];
@@ -101,17 +102,17 @@ export function fitBaseline(
   const best = Math.min(...scores);
   const weights = scores.map((s) => Math.exp(-(s - best) / 2));
   const total = weights.reduce((a, b) => a + b, 0);
-  const coefficients = new Float64Array(TERMS);
+  const coefficients = new Float64Array(p);
   solved.forEach((m, k) => {
-    for (let i = 0; i < TERMS; i++) coefficients[i] += (weights[k] / total) * m.coefficients[i];
+    for (let i = 0; i < p; i++) coefficients[i] += (weights[k] / total) * m.coefficients[i];
   });
-  const covariance = new Float64Array(TERMS * TERMS);
+  const covariance = new Float64Array(p * p);
   solved.forEach((m, k) => {
     if (weights[k] < 1e-9 * total) return;
-    for (let i = 0; i < TERMS; i++) {
-      for (let j = 0; j < TERMS; j++) {
+    for (let i = 0; i < p; i++) {
+      for (let j = 0; j < p; j++) {
         const apart = (m.coefficients[i] - coefficients[i]) * (m.coefficients[j] - coefficients[j]);
-        covariance[i * TERMS + j] += (weights[k] / total) * (m.inverse[i * TERMS + j] * v + apart);
+        covariance[i * p + j] += (weights[k] / total) * (m.inverse[i * p + j] * v + apart);
       }
     }
   });

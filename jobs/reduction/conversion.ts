@@ -107,16 +107,17 @@ export function baselineError(
   ];
   // ∫ term dt on the grid: a coefficient's error δ moves α by δ (−I(t) + α I(end))/area, and t(α) by that over dα/dt.
   const c = x.baseline.covariance;
-  const terms = new Float64Array(TERMS);
-  const before = new Float64Array(TERMS);
-  const integral = new Float64Array(TERMS);
+  const p = TERMS;
+  const terms = new Float64Array(p);
+  const before = new Float64Array(p);
+  const integral = new Float64Array(p);
   const rows: Float64Array[] = [];
   let k = 0;
   for (let i = x.from; i < x.to; i++) {
     fillTerms(x.baseline, w.t[i], Math.min(1, Math.max(0, x.cumulative[i] / x.area)), terms);
     const share = x.share ? x.share[i] : 1;
     const dt = i > x.from ? w.t[i] - w.t[i - 1] : 0;
-    for (let j = 0; j < TERMS; j++) {
+    for (let j = 0; j < p; j++) {
       const value = share * terms[j];
       integral[j] += 0.5 * dt * (value + before[j]);
       before[j] = value;
@@ -128,21 +129,21 @@ export function baselineError(
   }
   const spread = (g: Float64Array) => {
     let sum = 0;
-    for (let i = 0; i < TERMS; i++) for (let j = 0; j < TERMS; j++) sum += g[i] * g[j] * c[i * TERMS + j];
+    for (let i = 0; i < p; i++) for (let j = 0; j < p; j++) sum += g[i] * g[j] * c[i * p + j];
     return Math.sqrt(Math.max(0, sum));
   };
-  const g = new Float64Array(TERMS);
+  const g = new Float64Array(p);
   const error = new Float64Array(times.length);
   for (let n = 0; n < times.length; n++) {
-    for (let j = 0; j < TERMS; j++) g[j] = rows[n][j] - CONVERSION_GRID[n] * integral[j];
+    for (let j = 0; j < p; j++) g[j] = rows[n][j] - CONVERSION_GRID[n] * integral[j];
     const signal = Math.max(
       trueSignal(w, shape, times[n], binAt(w, x, times[n])).value,
       0.02 * (x.area / shape.widthS),
     );
-    const moves = pairs.map(([p, m]) => (p.times[n] - m.times[n]) / 2);
+    const moves = pairs.map(([out, back]) => (out.times[n] - back.times[n]) / 2);
     error[n] = Math.hypot(spread(g) / signal, ...moves);
   }
-  return { error, areaError: Math.hypot(spread(integral), ...pairs.map(([p, m]) => (p.area - m.area) / 2)) };
+  return { error, areaError: Math.hypot(spread(integral), ...pairs.map(([out, back]) => (out.area - back.area) / 2)) };
 }
 
 /** Temperature at time t from the bins around it, K. */

@@ -67,17 +67,18 @@ export class FlankSums {
     const between = (sums: Float64Array, [from, to]: readonly [number, number]) =>
       to > from ? sums[to] - sums[from] : 0;
     const { powers, moments, squares } = this;
+    const p = TERMS;
     for (let i = 0; i < 4; i++) {
       rhs[i] = between(moments[i], left) + between(moments[i], right);
-      for (let j = 0; j < 4; j++) normal[i * TERMS + j] = between(powers[i + j], left) + between(powers[i + j], right);
+      for (let j = 0; j < 4; j++) normal[i * p + j] = between(powers[i + j], left) + between(powers[i + j], right);
     }
     for (let i = 0; i < 2; i++) {
       rhs[4 + i] = between(moments[i], right);
       for (let j = 0; j < 4; j++) {
-        normal[(4 + i) * TERMS + j] = between(powers[i + j], right);
-        normal[j * TERMS + 4 + i] = normal[(4 + i) * TERMS + j];
+        normal[(4 + i) * p + j] = between(powers[i + j], right);
+        normal[j * p + 4 + i] = normal[(4 + i) * p + j];
       }
-      for (let j = 0; j < 2; j++) normal[(4 + i) * TERMS + 4 + j] = between(powers[i + j], right);
+      for (let j = 0; j < 2; j++) normal[(4 + i) * p + 4 + j] = between(powers[i + j], right);
     }
     return between(squares, left) + between(squares, right);
   }

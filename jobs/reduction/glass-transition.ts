@@ -17,7 +17,7 @@ export interface GlassTransition {
 }
 
 /** Bins of the coarse trace. */
-const BINS = 160;
+const BINS = 120;
 /** Places tried for a broad step. */
 const GRID = 14;
 /** A step must stand this many errors out of noise, and this part of the event's height. */
@@ -75,7 +75,11 @@ export function findGlassTransition(
   };
 
   // Sharp steps by running sums, broad ones on a coarse grid; then the logistic around the best place.
+  const variance = (gain: number) => Math.max(noise ** 2 / size, (dot(left, left) - gain) / n, 1e-30);
+  const least = LEAST_SIGMAS ** 2;
+  // Most scans show no step: no more work on what is not on its way to a detection.
   let best = sharpestStep(time, left, wide);
+  if (best.gain < 0.3 * least * variance(best.gain)) return undefined;
   for (let k = 1; k < GRID; k++) {
     for (const width of [span / 60, span / 20]) {
       const middle = start + (span * k) / GRID;
@@ -83,15 +87,11 @@ export function findGlassTransition(
       if (found.height < 0 && found.gain > best.gain) best = { middle, width, ...found };
     }
   }
-  if (best.gain === 0) return undefined;
-  const variance = (gain: number) => Math.max(noise ** 2 / size, (dot(left, left) - gain) / n, 1e-30);
-  // Most scans show none: no more work on what is not half way to a detection.
-  if (best.gain < (LEAST_SIGMAS ** 2 / 2) * variance(best.gain)) return undefined;
   best = refine(best, (m, w) => tried(m, w, left, wide));
   const { gain, height } = best;
   best = refine({ ...best, ...tried(best.middle, best.width) }, tried);
   const cut = best.middle - 2.5 * best.width < start || best.middle + 1.5 * best.width > start + span;
-  if (cut || !(height < 0) || gain < LEAST_SIGMAS ** 2 * variance(gain)) return undefined;
+  if (cut || !(height < 0) || gain < least * variance(gain)) return undefined;
   if (foot && -best.height < LEAST_HEIGHT_PART * foot.height) return undefined;
   return {
     midpointS: best.middle,

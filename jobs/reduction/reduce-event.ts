@@ -6,7 +6,6 @@ import { baselineError, conversionOfTime, shapeEvent, temperatureAt, timesOfGrid
 import { makeCurve } from './curve.ts';
 import { FEW_POINTS, judgeEvent, TOO_FEW_POINTS } from './event-flags.ts';
 import { type Bell, type Excess, straightLineArea } from './excess.ts';
-import { noiseSigma } from './find-event.ts';
 import { type Isolated, type Room, widthOf } from './isolate.ts';
 import { eventRate } from './rate.ts';
 import type { ScanContext } from './scan-context.ts';
@@ -39,7 +38,7 @@ export function reduceEvents(
   const [begin, last] = [bells[0], bells[bells.length - 1]];
   const from = Math.max(segment.from, lowerBound(timeS, begin.peakS - SURROUNDINGS.before * width));
   const to = Math.min(segment.to, lowerBound(timeS, last.peakS + SURROUNDINGS.behind * width));
-  const w = averageWindow(timeS, c.scan.temperatureK, c.y, from, to, width, noiseSigma(c.y, from, to));
+  const w = averageWindow(timeS, c.scan.temperatureK, c.y, from, to, width, c.noise);
   const separated = separateEvents(w, bells, room);
   if ('cut' in separated) {
     const events = bells.map((bell, i) => cutEvent(c, w, segment, bell, separated.cut, first + i));

@@ -1,12 +1,15 @@
 import type { Flag } from '../../schema/wire/flags.ts';
 import type { ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
+import { noiseSigma } from './find-event.ts';
 
 /** What every part of a reduction needs to know of its scan. */
 export interface ScanContext {
   scan: ReadScan;
   /** heat flow, exotherm up, spikes bridged, reference subtracted; W or W/kg */
   y: Float64Array;
+  /** of one row, one standard deviation, unit of y */
+  noise: number;
   input: ReduceInput;
   massKg?: number;
   where: { file: string; sample: string; instrument: string };
@@ -21,6 +24,7 @@ export function createContext(scan: ReadScan, y: Float64Array, input: ReduceInpu
   return {
     scan,
     y,
+    noise: noiseSigma(y),
     input,
     ...(massKg !== undefined && { massKg }),
     where: { file, sample, instrument: calibration.instrument },

@@ -25,18 +25,12 @@ export function smoothExcess(w: EventWindow, x: Excess, half: number): Smoothed 
   const step = (w.t[n - 1] - w.t[0]) / (n - 1);
   const m = Math.floor(half / step + 1e-9);
   const weights = m >= 2 && isEven(w.t, step) ? cubicWeights(m, step) : undefined;
+  const { e } = x;
   for (let i = x.from; i < x.to; i++) {
     if (weights && i >= m && i + m < n) {
-      let [value, slope, curvature] = [0, 0, 0];
-      for (let k = -m; k <= m; k++) {
-        const y = x.e[i + k];
-        value += weights.value[k + m] * y;
-        slope += weights.slope[k + m] * y;
-        curvature += weights.curvature[k + m] * y;
-      }
-      out.value[i] = value;
-      out.slope[i] = slope;
-      out.curvature[i] = curvature;
+      out.value[i] = weigh(weights.value, e, i - m);
+      out.slope[i] = weigh(weights.slope, e, i - m);
+      out.curvature[i] = weigh(weights.curvature, e, i - m);
     } else {
       const f = fitLocalPolynomial(w.t, x.e, w.t[i], half, 3, i);
       out.value[i] = f.value;
@@ -47,6 +41,12 @@ export function smoothExcess(w: EventWindow, x: Excess, half: number): Smoothed 
   const middle = Math.min(n - 1, (x.from + x.to) >> 1);
   const { valueNoise, slopeNoise } = fitLocalPolynomial(w.t, x.e, w.t[middle], half, 3, middle);
   return { ...out, valueNoise, slopeNoise };
+}
+
+function weigh(weights: Float64Array, y: Float64Array, from: number): number {
+  let sum = 0;
+  for (let k = 0; k < weights.length; k++) sum += weights[k] * y[from + k];
+  return sum;
 }
 
 function isEven(t: Float64Array, step: number): boolean {
