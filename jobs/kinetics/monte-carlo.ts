@@ -37,6 +37,9 @@ export function modelScatter(data: EventData, curves: Uint16Array, distinct: num
   const span = Math.max(...data.rate) / Math.min(...data.rate);
   const bent = distinct >= BENT_FROM_RATES && span >= BENT_FROM_SPAN && n >= 5;
   const trendParameters = bent ? 3 : 2;
+  // Too few of the scans may have curves to bear the bent trend that the peaks bear.
+  const bentCurves = bent && curves.length >= 5;
+  const hasTrend = curves.length > 2;
   let weights: Float64Array = new Float64Array(n).fill(1);
   let sigmaK: Float64Array = new Float64Array(data.instruments.length);
   const pick = (from: Float64Array, k: number) => Float64Array.from(curves, (i) => from[i * CONVERSION_COUNT + k]);
@@ -44,12 +47,11 @@ export function modelScatter(data: EventData, curves: Uint16Array, distinct: num
   // Weights follow from the scatter about a trend that is fitted with them: a few rounds settle that.
   for (let round = 0; round < (data.instruments.length > 1 ? 4 : 1); round++) {
     const peak = fitTemperatureTrend(data.rate, data.peakK, weights, bent);
-    const curve =
-      curves.length > trendParameters
-        ? [POOLED.from, 9, POOLED.to - 1].map((k) =>
-            fitTemperatureTrend(some(data.rate), pick(data.temperatureK, k), some(weights), bent),
-          )
-        : [];
+    const curve = hasTrend
+      ? [POOLED.from, 9, POOLED.to - 1].map((k) =>
+          fitTemperatureTrend(some(data.rate), pick(data.temperatureK, k), some(weights), bentCurves),
+        )
+      : [];
     sigmaK = instrumentScatter(data, [peak, ...curve], curves);
     if (data.instruments.length > 1) weights = Float64Array.from(data.instrument, (at) => 1 / sigmaK[at] ** 2);
   }
@@ -59,10 +61,10 @@ export function modelScatter(data: EventData, curves: Uint16Array, distinct: num
   const w = some(weights);
   const temperature: Trend[] = [];
   const lnRate: Trend[] = [];
-  for (let k = 0; k < CONVERSION_COUNT && curves.length > trendParameters; k++) {
-    const T = fitTemperatureTrend(rate, pick(data.temperatureK, k), w, bent);
+  for (let k = 0; k < CONVERSION_COUNT && hasTrend; k++) {
+    const T = fitTemperatureTrend(rate, pick(data.temperatureK, k), w, bentCurves);
     temperature.push(T);
-    lnRate.push(fitRateTrend(rate, T.fitted, pick(data.lnRate, k), w, bent));
+    lnRate.push(fitRateTrend(rate, T.fitted, pick(data.lnRate, k), w, bentCurves));
   }
   return {
     data,
@@ -121,7 +123,7 @@ export function drawColumns(model: ScatterModel, random: Random, out: EventColum
     );
     const j = curveOf[i];
     const f = curveOf[from];
-    if (j < 0) continue;
+    if (j < 0 || model.temperature.length === 0) continue;
     for (let k = 0; k < CONVERSION_COUNT; k++) {
       const T = model.temperature[k];
       const r = model.lnRate[k];

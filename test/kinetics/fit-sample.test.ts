@@ -174,4 +174,12 @@ describe('refusals and flags', () => {
     expect(fit.parameters.some((p) => p.method === 'friedman')).toBe(false);
     expect(fit.flags.some((f) => f.code === 'few-rates' && /conversion curves/.test(f.detail))).toBe(true);
   });
+  test('curves on three scans only, among ten: both kinds of methods run, with intervals', () => {
+    const scans = ramps([2, 2, 5, 5, 10, 10, 20, 20, 40, 40]).map((s, i) =>
+      [0, 4, 8].includes(i) ? s : { ...s, event: { ...s.event, curve: undefined } },
+    );
+    const fit = fitSample(input(scans));
+    expect(row(fit, 'activation_energy', 'kissinger').scan_count).toBe(10);
+    expect(row(fit, 'activation_energy', 'friedman')).toMatchObject({ scan_count: 3, lower95: expect.any(Number) });
+  });
 });
