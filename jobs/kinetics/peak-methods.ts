@@ -61,12 +61,17 @@ export function fitOzawaFlynnWall(
 ): EnergyEstimate {
   const line = fitEnergyLine(rate, temperature, 0, 1, weights);
   let inverse = 0;
-  for (let i = 0; i < temperature.length; i++) inverse += 1 / temperature[i] / temperature.length;
-  const factor = flynnFactor(line.energy, inverse);
+  let sw = 0;
+  for (let i = 0; i < temperature.length; i++) {
+    const w = weights ? weights[i] : 1;
+    sw += w;
+    inverse += w / temperature[i];
+  }
+  const factor = flynnFactor(line.energy, inverse / sw);
   return { ...line, energy: line.energy / factor, energyError: line.energyError / factor };
 }
 
-/** @param energy −R × slope of ln β against 1/T, J/mol   @param inverse mean 1/T */
+/** @param energy −R × slope of ln β against 1/T, J/mol   @param inverse weighted mean of 1/T */
 export function flynnFactor(energy: number, inverse: number): number {
   let factor = DOYLE_SLOPE;
   for (let round = 0; round < FLYNN_ROUNDS; round++) {

@@ -22,8 +22,9 @@ import {
   kissingerLnPrefactor,
   STARINK,
 } from '../../jobs/kinetics/peak-methods.ts';
-import type { ArrheniusIntegral } from '../../jobs/laws/arrhenius-integral.ts';
+import { type ArrheniusIntegral, addStretch } from '../../jobs/laws/arrhenius-integral.ts';
 import { studentQuantile } from '../../jobs/numeric/distributions.ts';
+import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 
 /**
  * The same analyses by SciPy (scipy/analyse.py, written from the formulas with SciPy's tools alone) and by the project, on ten data sets.
@@ -113,17 +114,24 @@ function analyseRamps(s: Ramps): Numbers {
     friedman: friedman.map((f) => f.energy),
     friedman_error: friedman.map((f) => f.energyError),
   };
-  const programme = rampIntegrals(d, curves);
   const ozawa = (lnRate: Float64Array) => fitOzawa(d, curves, lnRate, weights, s.ozawaK);
   if (s.ozawaK.length > 0) out.ozawa_exponent = ozawa(d.rate.map((b) => Math.log(Math.abs(b))));
   if (s.kind === 'cooling') {
+    const step = (k: number) => (energy: number, o: ArrheniusIntegral[]) => {
+      const c = energy / GAS_CONSTANT;
+      for (let i = 0; i < d.n; i++) {
+        Object.assign(o[i], { value: 0, byEnergy: 0, byEnergy2: 0 });
+        const to = d.temperatureK[i * CONVERSION_COUNT + k];
+        const from = k === 0 ? d.rampStartK[i] : d.temperatureK[i * CONVERSION_COUNT + k - 1];
+        addStretch(from, to, (to - from) / d.rate[i], c, c / 430, o[i]);
+      }
+    };
     out.vyazovkin = friedman.map(
-      (f, k) =>
-        fitVyazovkin((E, o) => programme.step(E, 1 / 430, k, o), weights, f.energy, integrals(d.n), COOLING_BRACKET)
-          .energy,
+      (f, k) => fitVyazovkin(step(k), weights, f.energy, integrals(d.n), COOLING_BRACKET).energy,
     );
     return out;
   }
+  const programme = rampIntegrals(d, curves);
   const x0 = at(d.temperatureK, 9).reduce((sum, T) => sum + 1 / T / d.n, 0);
   const settings = { curves, weights, curveWeights: weights, augisBennett: false, curveMethods: true, x0 };
   const e = createEstimator(d, settings, programme)();
