@@ -49,6 +49,8 @@ export interface CampaignWish {
   /** scales the scatter between scans; 1 = 0.2 K furnace, 0.6 K chip */
   scatter?: number;
   instruments?: 'both' | 'furnace' | 'chip';
+  /** share of the event's height */
+  noise?: number;
   bend?: number;
   fragility?: number;
   lagFactor?: number;
@@ -64,7 +66,7 @@ export function drawCampaign(random: Random, seed: string, wish: CampaignWish = 
   const tg = random.between(350, 800);
   const material = drawMaterial(kind, tg, random, wish);
   const rates: [number[], number[]] = [logSteps(0.05, bridged ? 8 : 5, 5), logSteps(bridged ? 8 : 50, 30000, 6)];
-  const noise = random.betweenLog(0.003, 0.02);
+  const noise = wish.noise ?? random.betweenLog(0.003, 0.02);
   const spread = wish.scatter ?? random.between(0.5, 1.5);
   const scatterK = [0.2 * spread, 0.6 * spread];
   const response = random.pick([0, 0.5, 1]);
@@ -178,19 +180,21 @@ function drawMaterial(kind: VerdictCampaign['kind'], tg: number, random: Random,
   const energy = R * peakK * random.between(30, 60);
   if (kind === 'straight') return { law: arrheniusLawWithPeak(energy, peakK, TEN_K_PER_MIN), facts: {}, fastestK: 4000 };
   const bend = wish.bend ?? random.betweenLog(0.05, 2.3);
-  const lnKCentre = (centreK: number) => Math.log((100 * energy) / (R * centreK ** 2));
-  const centreK = peakK * 1.12;
-  let law = bentLaw({ energyJPerMol: energy, bend, centreK, halfSpanPerK: 0.12 / peakK, lnKCentre: lnKCentre(centreK) });
-  // The wished bend is meant over the span from 0.05 to 30 000 K/s: u has to be ±1 there.
-  for (let i = 0; i < 30; i++) {
-    const [low, high] = [0.05, 30000].map((rate) => 1 / roughTemperature(law, rate, 1, 4000));
-    law = bentLaw({
-      energyJPerMol: energy,
-      bend,
-      centreK: 2 / (low + high),
-      halfSpanPerK: (low - high) / 2,
-      lnKCentre: lnKCentre(2 / (low + high)),
-    });
+  // The wished bend is meant over 0.05 to 30 000 K/s: u has to be ±1 there; and however large, E/(R T) stays that of a real event (≥ 15).
+  let settings = { energyJPerMol: energy, bend, centreK: 1.12 * peakK, halfSpanPerK: 0.05 / peakK, lnKCentre: 0 };
+  const place = (): TemperatureLaw => {
+    settings.lnKCentre = Math.log((40 * settings.energyJPerMol) / (R * settings.centreK ** 2));
+    return bentLaw(settings);
+  };
+  let law = place();
+  for (let i = 0; i < 60; i++) {
+    const [low, high] = [0.05, 30000].map((rate) => roughTemperature(law, rate, 1, 4000));
+    settings = {
+      ...settings,
+      halfSpanPerK: Math.sqrt(settings.halfSpanPerK * ((1 / low - 1 / high) / 2)),
+      energyJPerMol: Math.max(settings.energyJPerMol, 15 * R * high * Math.exp(bend / 2)),
+    };
+    law = place();
   }
   return { law, facts: {}, fastestK: 4000 };
 }

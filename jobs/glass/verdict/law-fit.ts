@@ -1,7 +1,7 @@
 import type { BentScale } from '../../laws/bend.ts';
 import { LeastSquares } from '../../numeric/least-squares.ts';
 import { solveSymmetric } from '../../numeric/linear-solve.ts';
-import { type ConditionValue, solveCondition } from './condition.ts';
+import type { Condition, ConditionValue } from './condition.ts';
 
 /** One characteristic temperature of each scan of an event, all instruments. */
 export interface LawData {
@@ -19,7 +19,7 @@ export interface LawData {
   /** K/s, fastest scan of each instrument */
   topRate: Float64Array;
   scale: BentScale;
-  kappa: number;
+  condition: Condition;
 }
 
 export type LagMode = 'free' | 'calibrated';
@@ -103,8 +103,10 @@ export function fitLaw(
   const layout = layoutOf(d, s);
   const { p, rows } = layout;
   const fixed = s.bend === 'free' ? 0 : s.bend;
-  const condition: ConditionValue = { value: 0, byTemperature: 0, byLogEnergy: 0, byBend: 0 };
+  const at: ConditionValue = { value: 0, byTemperature: 0, byLogEnergy: 0, byBend: 0 };
   const lnRate = d.rate.map(Math.log);
+  // Each solution of the condition starts from the one before.
+  const last = Float64Array.from(temperatureK);
   const root = d.variance.map((v) => 1 / Math.sqrt(v));
   const model = (x: Float64Array, r: Float64Array, J: Float64Array): void => {
     const q = layout.bend >= 0 ? x[2] : fixed;
@@ -117,25 +119,26 @@ export function fitLaw(
       const j = d.instrument[i];
       const stateAt = layout.state >= 0 && j > 0 ? layout.state + j - 1 : -1;
       const lnK0 = x[0] + (stateAt >= 0 ? x[stateAt] : 0);
-      const T = solveCondition(lnRate[i], temperatureK[i], lnK0, x[1], q, d.scale, d.kappa, condition);
+      const T = d.condition.solve(lnRate[i], last[i], lnK0, x[1], q, d.scale, at);
+      if (T > 0) last[i] = T;
       const w = root[i];
       const lagAt = layout.lag[j];
       const share = d.rate[i] / d.topRate[j];
       r[i] = w * (T + x[layout.offset + j] + (lagAt >= 0 ? x[lagAt] * share : 0) - temperatureK[i]);
-      const per = -w / condition.byTemperature;
+      const per = -w / at.byTemperature;
       const row = i * p;
       J[row] = per;
-      J[row + 1] = per * condition.byLogEnergy;
-      if (layout.bend >= 0) J[row + 2] = per * condition.byBend;
+      J[row + 1] = per * at.byLogEnergy;
+      if (layout.bend >= 0) J[row + 2] = per * at.byBend;
       J[row + layout.offset + j] = w;
       if (lagAt >= 0) J[row + lagAt] = w * share;
       if (stateAt >= 0) J[row + stateAt] = per;
     }
     let row = d.n;
     for (let j = 0; j < d.instruments; j++) {
-      const prior = (at: number, se: number) => {
-        r[row] = x[at] / se - (priorDraws ? priorDraws[row - d.n] : 0);
-        J[row * p + at] = 1 / se;
+      const prior = (parameter: number, se: number) => {
+        r[row] = x[parameter] / se - (priorDraws ? priorDraws[row - d.n] : 0);
+        J[row * p + parameter] = 1 / se;
         row++;
       };
       prior(layout.offset + j, d.offsetSeK[j]);

@@ -11,8 +11,9 @@ const SHRINK = 1;
 const LEAST_DEGREES = 0.5;
 
 /**
- * Scatter about a fit, per instrument: Σ residual²/(n_j − Σ leverage), drawn towards the pooled value where the scans of an instrument are
- * few. Relative to what each temperature's own error explains: variance of scan i = own² + scatter².
+ * Scatter about a fit, per instrument: the s² at which Σ residual²/(own² + s²) equals the degrees of freedom n_j − Σ leverage (Paule & Mandel
+ * 1982, J. Res. NBS 87:377), drawn towards that of all scans where those of an instrument are few. Weighted, since a scan with a wide event
+ * says little about the scatter of the sharp ones.
  */
 export function estimateScatter(
   d: LawData,
@@ -20,24 +21,38 @@ export function estimateScatter(
   residualK: ArrayLike<number>,
   leverage: ArrayLike<number>,
 ): Scatter {
-  const sums = new Float64Array(d.instruments);
   const degrees = new Float64Array(d.instruments);
-  const known = new Float64Array(d.instruments);
-  const count = new Float64Array(d.instruments);
-  for (let i = 0; i < d.n; i++) {
-    const j = d.instrument[i];
-    sums[j] += residualK[i] ** 2;
-    degrees[j] += 1 - leverage[i];
-    known[j] += own[i] ** 2;
-    count[j]++;
-  }
+  for (let i = 0; i < d.n; i++) degrees[d.instrument[i]] += 1 - leverage[i];
   const total = degrees.reduce((a, b) => a + b, 0);
-  const pooled = sums.reduce((a, b) => a + b, 0) / Math.max(LEAST_DEGREES, total);
-  const varianceK2 = sums.map((s, j) => {
-    const seen = (s + SHRINK * pooled) / (degrees[j] + SHRINK);
-    return Math.max(0, seen - known[j] / count[j]);
+  const pooled = matchScatter(d, own, residualK, Math.max(LEAST_DEGREES, total), -1);
+  const varianceK2 = degrees.map((v, j) => {
+    if (d.instruments === 1) return pooled;
+    return (v * matchScatter(d, own, residualK, Math.max(LEAST_DEGREES, v), j) + SHRINK * pooled) / (v + SHRINK);
   });
   return { varianceK2, degrees: degrees.map((v) => Math.max(LEAST_DEGREES, v)) };
+}
+
+/** s² of one instrument, or of all (−1), by Newton from below on a convex falling function: it cannot overshoot. */
+function matchScatter(d: LawData, own: Float64Array, residualK: ArrayLike<number>, degrees: number, j: number): number {
+  let s2 = 0;
+  for (let round = 0; round < 40; round++) {
+    let sum = 0;
+    let slope = 0;
+    for (let i = 0; i < d.n; i++) {
+      if (j >= 0 && d.instrument[i] !== j) continue;
+      const v = own[i] * own[i] + s2;
+      const term = (residualK[i] * residualK[i]) / v;
+      sum += term;
+      slope += term / v;
+    }
+    if (sum <= degrees) break;
+    const step = (sum - degrees) / slope;
+    // In 1/(own² + s²) the function is nearly straight: Newton in that variable is a step longer by sum/degrees.
+    const longer = step * (sum / degrees);
+    s2 += longer;
+    if (longer < 1e-4 * s2) break;
+  }
+  return s2;
 }
 
 /** Sets the variance of every temperature from its own error and its instrument's scatter. */
