@@ -1,10 +1,14 @@
 import { GAS_CONSTANT } from '../../../schema/wire/units.ts';
+import { mean } from '../../numeric/statistics.ts';
 import { CONVERSION_COUNT, CONVERSIONS, type EventColumns } from '../event-data.ts';
 import { REACTION_MODELS } from './reaction-models.ts';
 
 const COUNT = REACTION_MODELS.length;
 /** ln f(α), model-major over the 19 conversions. */
 const LN_F = Float64Array.from(REACTION_MODELS.flatMap((m) => CONVERSIONS.map((a) => Math.log(m.rate(a)))));
+const MEAN_LN_F = Float64Array.from({ length: COUNT }, (_, f) =>
+  mean(LN_F.subarray(f * CONVERSION_COUNT, (f + 1) * CONVERSION_COUNT)),
+);
 
 /**
  * ln A at a model-free E by the compensation line (ICTAC 2011, section 5): each model's line ln[(dα/dt)/f(α)] = ln A − E/(R T) on one
@@ -18,6 +22,7 @@ export function compensationLnPrefactor(
   weights: ArrayLike<number>,
   energy: number,
 ): number {
+  const x = new Float64Array(CONVERSION_COUNT);
   let total = 0;
   let sw = 0;
   for (let j = 0; j < curves.length; j++) {
@@ -25,30 +30,26 @@ export function compensationLnPrefactor(
     let mx = 0;
     let mr = 0;
     for (let k = 0; k < CONVERSION_COUNT; k++) {
-      mx += 1 / d.temperatureK[at + k] / CONVERSION_COUNT;
+      x[k] = 1 / d.temperatureK[at + k];
+      mx += x[k] / CONVERSION_COUNT;
       mr += d.lnRate[at + k] / CONVERSION_COUNT;
     }
     let xx = 0;
     let xr = 0;
     for (let k = 0; k < CONVERSION_COUNT; k++) {
-      const x = 1 / d.temperatureK[at + k] - mx;
-      xx += x * x;
-      xr += x * (d.lnRate[at + k] - mr);
+      x[k] -= mx;
+      xx += x[k] * x[k];
+      xr += x[k] * d.lnRate[at + k];
     }
     let sE = 0;
     let sA = 0;
     let sEE = 0;
     let sEA = 0;
     for (let f = 0; f < COUNT; f++) {
-      let mf = 0;
       let xf = 0;
-      for (let k = 0; k < CONVERSION_COUNT; k++) {
-        const v = LN_F[f * CONVERSION_COUNT + k];
-        mf += v / CONVERSION_COUNT;
-        xf += (1 / d.temperatureK[at + k] - mx) * v;
-      }
+      for (let k = 0; k < CONVERSION_COUNT; k++) xf += x[k] * LN_F[f * CONVERSION_COUNT + k];
       const E = (-GAS_CONSTANT * (xr - xf)) / xx / energy;
-      const lnA = mr - mf + (E * energy * mx) / GAS_CONSTANT;
+      const lnA = mr - MEAN_LN_F[f] + (E * energy * mx) / GAS_CONSTANT;
       sE += E / COUNT;
       sA += lnA / COUNT;
       sEE += (E * E) / COUNT;
