@@ -118,6 +118,8 @@ export interface EstimateSettings {
   /** weights of all scans, and of the curve scans */
   weights: Float64Array;
   curveWeights: Float64Array;
+  /** scatter of each curve scan's temperature, K */
+  curveSigmaK: Float64Array;
   /** Augis–Bennett's energy applies */
   augisBennett: boolean;
   /** curve methods apply (three distinct rates among the curve scans) */
@@ -142,7 +144,11 @@ export function createEstimator(
   const lnRate = Float64Array.from(s.curves, (i) => Math.log(d.rate[i]));
   const peakLnRate = d.rate.map(Math.log);
   const work: ArrheniusIntegral[] = Array.from({ length: m }, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
-  const jmak = new JmakFit(m, s.curveWeights, s.x0, (e, o) => integrals.cumulative(e, s.x0, o));
+  const temperatureAt = (row: number): number => {
+    const j = (row / CONVERSION_COUNT) | 0;
+    return d.temperatureK[s.curves[j] * CONVERSION_COUNT + (row - j * CONVERSION_COUNT)];
+  };
+  const jmak = new JmakFit(s.curveSigmaK, s.x0, temperatureAt, (e, o) => integrals.cumulative(e, s.x0, o));
 
   return (warm) => {
     const out = peakEstimates(d, s, peakLnRate);

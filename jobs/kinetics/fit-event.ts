@@ -88,6 +88,7 @@ function fitScans(
     curves,
     weights: model.weights,
     curveWeights: Float64Array.from(curves, (i) => model.weights[i]),
+    curveSigmaK: Float64Array.from(curves, (i) => model.sigmaK[data.instrument[i]]),
     augisBennett: late < 0,
     curveMethods,
     x0: mean(Array.from(curves.length ? curves : data.scans.keys(), (i) => 1 / data.peakK[i])),
@@ -123,18 +124,25 @@ function fitScans(
     ozawaTemperatures: curveMethods ? ozawaTemperatures(data, curves) : [],
     sestakBerggren: avrami.some((f) => f.code === 'not-avrami'),
   };
-  const { drawn, further } = runDraws(model, settings, plan, estimate, random, draws);
+  const more = curveMethods ? createFurtherEstimator(data, settings, plan)(estimate) : undefined;
+  const { drawn, further, calibrationErrors } = runDraws(
+    model,
+    settings,
+    plan,
+    { main: estimate, further: more },
+    random,
+    draws,
+  );
   flags.push(...findOutliers(model, where));
-  const builder = new RowBuilder(sample, data, curves, model, drawn);
+  const builder = new RowBuilder(sample, data, curves, model, drawn, calibrationErrors);
   const reports = reportFits(event, estimate, curves.length);
   if (late >= 0) reports.push(notComputed(event, 'augis_bennett', 'a ramp starts too near its peak', data.n));
   builder.peakRows(estimate, settings);
-  if (curveMethods) {
+  if (more) {
     const varies = judgeEnergy(estimate, drawn, model, where);
     if (varies) flags.push(varies);
     builder.curveRows(estimate, varies ? ['energy-varies'] : []);
     addAnalyticRows(builder, data, settings, estimate, measured);
-    const more = createFurtherEstimator(data, settings, plan)(estimate);
     addFurtherRows(builder, more, further);
     const told = reportFurther(event, more, plan, curves.length * CONVERSIONS.length, where);
     reports.push(...told.reports, ...reportModels(event, plots));
@@ -150,22 +158,23 @@ function runDraws(
   model: ScatterModel,
   settings: EstimateSettings,
   plan: FurtherPlan,
-  estimate: Estimates,
+  estimate: { main: Estimates; further: FurtherEstimates | undefined },
   random: Random,
   draws: number,
-): { drawn: Estimates[]; further: FurtherEstimates[] } {
+): { drawn: Estimates[]; further: FurtherEstimates[]; calibrationErrors: Float64Array[] } {
   const columns = drawBuffer(model.data);
   const estimator = createEstimator(columns, settings, rampIntegrals(columns, settings.curves));
   const furtherEstimator = createFurtherEstimator(columns, settings, plan);
   const drawn: Estimates[] = [];
   const further: FurtherEstimates[] = [];
+  const calibrationErrors: Float64Array[] = [];
   for (let d = 0; d < draws; d++) {
-    drawColumns(model, random, columns);
-    const main = estimator(estimate);
+    calibrationErrors.push(drawColumns(model, random, columns));
+    const main = estimator(estimate.main);
     drawn.push(main);
-    if (settings.curveMethods) further.push(furtherEstimator(main));
+    if (estimate.further) further.push(furtherEstimator(main, { main: estimate.main, further: estimate.further }));
   }
-  return { drawn, further };
+  return { drawn, further, calibrationErrors };
 }
 
 const notComputed = (event: number, method: string, message: string, rows: number): FitReport => ({

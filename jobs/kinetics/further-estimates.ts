@@ -24,22 +24,29 @@ export interface FurtherPlan {
   sestakBerggren: boolean;
 }
 
+/** Estimates near by: in a draw energies move together, so their ratio there is the better start. */
+export interface Neighbour {
+  main: Estimates;
+  further: FurtherEstimates;
+}
+
 /** Makes the function that computes them from the columns as they stand when it is called; buffers are made once. */
 export function createFurtherEstimator(
   d: EventColumns,
   { curves, curveWeights }: EstimateSettings,
   plan: FurtherPlan,
-): (main: Estimates) => FurtherEstimates {
+): (main: Estimates, warm?: Neighbour) => FurtherEstimates {
   const m = curves.length;
   const rate = Float64Array.from(curves, (i) => d.rate[i]);
   const lnRate = rate.map(Math.log);
   const T = new Float64Array(m);
   const work: ArrheniusIntegral[] = Array.from({ length: m }, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
-  return (main) => {
+  return (main, warm) => {
     const vyazovkinLinear = new Float64Array(CONVERSION_COUNT);
     for (let k = 0; k < CONVERSION_COUNT; k++) {
       for (let j = 0; j < m; j++) T[j] = d.temperatureK[curves[j] * CONVERSION_COUNT + k];
-      vyazovkinLinear[k] = fitVyazovkinLinear(rate, T, curveWeights, main.starink[k], work).energy;
+      const ratio = warm ? warm.further.vyazovkinLinear[k] / warm.main.starink[k] : 1;
+      vyazovkinLinear[k] = fitVyazovkinLinear(rate, T, curveWeights, main.starink[k] * ratio, work).energy;
     }
     const energy = mean(main.friedman.subarray(POOLED.from, POOLED.to));
     const sestakBerggren = plan.sestakBerggren ? fitSestakBerggren(d, curves, curveWeights) : undefined;

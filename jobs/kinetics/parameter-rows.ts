@@ -2,6 +2,7 @@ import type { FlagCode } from '../../schema/wire/flags.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import { mean, standardDeviation } from '../numeric/statistics.ts';
+import { DrawSpread } from './draw-spread.ts';
 import type { EstimateSettings, Estimates } from './estimate.ts';
 import { CONVERSIONS, type EventData, POOLED } from './event-data.ts';
 import type { ScatterModel } from './monte-carlo.ts';
@@ -27,7 +28,7 @@ export interface Where {
 /** Turns estimates and draws into table rows. */
 export class RowBuilder {
   readonly rows: ParameterRow[] = [];
-  private readonly t: number;
+  private readonly spread: DrawSpread;
 
   constructor(
     private readonly sample: string,
@@ -35,12 +36,13 @@ export class RowBuilder {
     private readonly curves: Uint16Array,
     model: ScatterModel,
     private readonly drawn: Estimates[],
+    calibrationErrors: readonly Float64Array[],
   ) {
-    this.t = studentQuantile(0.975, Math.max(1, data.n - model.trendParameters));
+    this.spread = new DrawSpread(calibrationErrors, Math.max(1, data.n - model.trendParameters));
   }
 
   /**
-   * A row with the Monte Carlo interval: estimate ± t(0.975, n − p) × spread of the draws, on a log scale for positive quantities.
+   * A row with the Monte Carlo interval: estimate ± t × spread of the draws (`DrawSpread`), on a log scale for positive quantities.
    * @param scale of the unit printed, e.g. 1e-3 for kJ
    */
   private add(
@@ -58,16 +60,12 @@ export class RowBuilder {
   /** A row with the Monte Carlo interval from values in the unit printed; nothing for a value that is not finite. */
   addDrawn(where: Where, value: number, drawn: number[], log: boolean, onCurves: boolean): void {
     if (!Number.isFinite(value)) return;
-    const spread = standardDeviation(log ? drawn.map(Math.log) : drawn);
-    const bounded = Number.isFinite(spread) && (!log || value > 0);
+    const half = this.spread.halfWidth(log ? drawn.map(Math.log) : drawn);
+    const bounded = Number.isFinite(half) && (!log || value > 0);
     this.push(
       where,
       value,
-      bounded
-        ? log
-          ? [value * Math.exp(-this.t * spread), value * Math.exp(this.t * spread)]
-          : [value - this.t * spread, value + this.t * spread]
-        : undefined,
+      bounded ? (log ? [value * Math.exp(-half), value * Math.exp(half)] : [value - half, value + half]) : undefined,
       'monte_carlo',
       onCurves,
     );

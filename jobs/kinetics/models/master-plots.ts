@@ -21,7 +21,7 @@ export interface MasterPlots {
  * Master plots of one scan (Málek 1992, Thermochim. Acta 200:257) for any programme: y(α) = (dα/dt) e^(E/RT) ∝ f(α) and
  * z(α) = (dα/dt) e^(E/RT) ∫ e^(−E/RT) dt = f(α) g(α), the integral from the start of the programme on the measured T(t) (on a ramp it is
  * Málek's π(x) T/β).
- * @param energy J/mol, from an isoconversional method
+ * @param energy J/mol, from an isoconversional method   @returns undefined without a whole curve
  */
 export function masterPlots(data: EventData, scan: number, energy: number): MasterPlots | undefined {
   const p = data.programmes[scan];
@@ -44,7 +44,7 @@ export function masterPlots(data: EventData, scan: number, energy: number): Mast
     y[k] /= y5;
     z[k] /= z5;
   }
-  return { y, z, ...topOf(z) };
+  return z.every(Number.isFinite) ? { y, z, ...topOf(z) } : undefined;
 }
 
 /** z(α) of an exact JMAK process, n (1−α)[−ln(1−α)] for every n: its top is at 1 − 1/e, where a parabola reads 0.009 lower. */
