@@ -1,11 +1,21 @@
 import { sql } from 'drizzle-orm';
 import { check, index, integer, primaryKey, real, sqliteTable, text, uniqueIndex } from 'drizzle-orm/sqlite-core';
 import type { CoverageRow, GapRow } from '../wire/campaign.ts';
+import type { CorrectionField, CorrectionValue } from '../wire/corrections.ts';
 import type { Flag } from '../wire/flags.ts';
+import type {
+  AdviceRow,
+  ForecastRow,
+  GoalRow,
+  PeakSheetRow,
+  ProgramSheetRow,
+  ViscositySheetRow,
+} from '../wire/forecasts.ts';
 import type { FitReport, ParameterRow } from '../wire/parameters.ts';
 import type { ReducedSummary } from '../wire/reduced-blob.ts';
 import type { InstrumentCalibration, InstrumentSheetRow, SampleSheetRow, ScanSheetRow } from '../wire/scan.ts';
 import type { JobState, Role, SampleState, ScanState } from '../wire/states.ts';
+import type { VerdictRow } from '../wire/verdicts.ts';
 
 /**
  * Times are ms since the epoch. Ids are random, prefixed by kind. JSON columns hold types of schema/wire.
@@ -18,8 +28,15 @@ export type FileKind = 'data' | 'sheet' | 'archive';
 export type FileState = 'unread' | 'read' | 'parsed' | 'expanded' | 'refused' | 'failed';
 /** What the sheets say of a scan: it has a sample and an instrument, nobody names it, or it repeats the bytes of another. */
 export type Disposition = 'waiting' | 'assigned' | 'unassigned' | 'duplicate';
-export type ReadSheetName = 'scans' | 'instruments' | 'samples';
-export type SheetRowBody = ScanSheetRow | InstrumentSheetRow | SampleSheetRow;
+export type ReadSheetName = 'scans' | 'instruments' | 'samples' | 'peaks' | 'viscosity' | 'goal' | 'program';
+export type SheetRowBody =
+  | ScanSheetRow
+  | InstrumentSheetRow
+  | SampleSheetRow
+  | PeakSheetRow
+  | ViscositySheetRow
+  | GoalRow
+  | ProgramSheetRow;
 
 export const campaigns = sqliteTable(
   'campaigns',
@@ -101,7 +118,9 @@ export const scans = sqliteTable(
     role: text('role').$type<Role>().notNull().default('sample'),
     /** As asked by the sheet; the analysed one is in `result`. */
     segment: integer('segment'),
-    /** Null when assigned by folder. */
+    /** What the sheet or the folder says of it, before corrections. */
+    said: text('said', { mode: 'json' }).$type<Partial<ScanSheetRow>>(),
+    /** The row that counts, corrections included. Null when assigned by folder and not corrected. */
     sheetRow: text('sheet_row', { mode: 'json' }).$type<ScanSheetRow>(),
     /** Hash of what the sheets say about this scan: a corrected sheet re-queues only the scans where it changed. */
     sheetHash: text('sheet_hash').notNull().default(''),
@@ -121,7 +140,45 @@ export const scans = sqliteTable(
   ],
 );
 
-/** Samples that some scan names with the role `sample`. */
+/**
+ * Fields of a scan that were corrected by hand and stand over its sheet. A correction belongs to what the sheet says, not to a
+ * row's id: to the file's bytes and the sample, instrument and segment named for them, so that it survives a renamed file.
+ */
+export const corrections = sqliteTable(
+  'corrections',
+  {
+    id: text('id').primaryKey(),
+    campaignId: campaignId(),
+    sha256: text('sha256').notNull(),
+    sample: text('sample'),
+    instrument: text('instrument'),
+    segment: integer('segment'),
+    field: text('field').$type<CorrectionField>().notNull(),
+    value: text('value', { mode: 'json' }).$type<CorrectionValue>().notNull(),
+    /** The sheet's cell when the correction was made, null where it was empty: another one later ends the correction. */
+    said: text('said', { mode: 'json' }).$type<CorrectionValue>(),
+  },
+  (t) => [index('corrections_campaign').on(t.campaignId, t.sha256)],
+);
+
+/** What corrections changed on a scan, oldest first. */
+export const scanHistory = sqliteTable(
+  'scan_history',
+  {
+    position: integer('position').primaryKey({ autoIncrement: true }),
+    campaignId: campaignId(),
+    scanId: text('scan_id').notNull(),
+    field: text('field').$type<CorrectionField>().notNull(),
+    before: text('before', { mode: 'json' }).$type<CorrectionValue>(),
+    after: text('after', { mode: 'json' }).$type<CorrectionValue>(),
+    /** A request, or a later sheet whose cell is another. */
+    cause: text('cause').$type<'correction' | 'sheet'>().notNull(),
+    at: integer('at').notNull(),
+  },
+  (t) => [index('scan_history_scan').on(t.scanId)],
+);
+
+/** Samples that some scan names with the role `sample`, or a row of peaks.csv. */
 export const samples = sqliteTable(
   'samples',
   {
@@ -135,6 +192,11 @@ export const samples = sqliteTable(
     /** Hash of the inputs of the stored fit. */
     fitKey: text('fit_key'),
     reports: text('reports', { mode: 'json' }).$type<FitReport[]>().notNull().default([]),
+    /** Hash of the inputs of the stored verdicts, and of the stored forecasts. */
+    judgeKey: text('judge_key'),
+    forecastKey: text('forecast_key'),
+    /** Hash of its rows of peaks.csv. */
+    peaksHash: text('peaks_hash').notNull().default(''),
   },
   (t) => [uniqueIndex('samples_name').on(t.campaignId, t.sample), index('samples_state').on(t.campaignId, t.state)],
 );
@@ -164,7 +226,7 @@ export const parameters = sqliteTable(
   {
     campaignId: campaignId(),
     sample: text('sample').notNull(),
-    /** Order within the sample. */
+    /** Order within the event; each step has a range of its own, see jobs/store/parameter-rows.ts. */
     position: integer('position').notNull(),
     event: integer('event').notNull(),
     quantity: text('quantity').notNull(),
@@ -188,6 +250,40 @@ export const parameters = sqliteTable(
   ],
 );
 
+/** One row an event. */
+export const verdicts = sqliteTable(
+  'verdicts',
+  {
+    campaignId: campaignId(),
+    sample: text('sample').notNull(),
+    position: integer('position').notNull(),
+    body: text('body', { mode: 'json' }).$type<VerdictRow>().notNull(),
+  },
+  (t) => [primaryKey({ columns: [t.campaignId, t.sample, t.position] })],
+);
+
+export const forecasts = sqliteTable(
+  'forecasts',
+  {
+    campaignId: campaignId(),
+    sample: text('sample').notNull(),
+    position: integer('position').notNull(),
+    body: text('body', { mode: 'json' }).$type<ForecastRow>().notNull(),
+  },
+  (t) => [primaryKey({ columns: [t.campaignId, t.sample, t.position] })],
+);
+
+/** Goals set through the API; those of goal.csv are sheet rows. */
+export const goals = sqliteTable(
+  'goals',
+  {
+    campaignId: campaignId(),
+    position: integer('position').notNull(),
+    body: text('body', { mode: 'json' }).$type<GoalRow>().notNull(),
+  },
+  (t) => [primaryKey({ columns: [t.campaignId, t.position] })],
+);
+
 /** Flags of fits, sheets and assignment; flags of a file or scan live on their rows. */
 export const flags = sqliteTable(
   'flags',
@@ -201,13 +297,14 @@ export const flags = sqliteTable(
   (t) => [primaryKey({ columns: [t.campaignId, t.source, t.position] })],
 );
 
-/** Coverage and gap rows of the last plan. */
+/** Coverage, gap and advice rows of the last plan. */
 export const plans = sqliteTable('plans', {
   campaignId: text('campaign_id')
     .primaryKey()
     .references(() => campaigns.id, { onDelete: 'cascade' }),
   coverage: text('coverage', { mode: 'json' }).$type<CoverageRow[]>().notNull(),
   gaps: text('gaps', { mode: 'json' }).$type<GapRow[]>().notNull(),
+  advice: text('advice', { mode: 'json' }).$type<AdviceRow[]>().notNull().default([]),
 });
 
 /** The job row is the record; a queue message is a wake-up holding its id. */

@@ -72,6 +72,7 @@ export const FLAG_CODES = {
   'sheet-unused': ['note', 'a sheet came that no step of this version reads'],
   'sheet-column-unused': ['note', 'a column of a sheet has a header that no sheet column has'],
   'archive-member-skipped': ['note', 'an entry of an archive that holds no data was left out'],
+  'correction-replaced': ['note', 'a later sheet changed a cell that had been corrected by hand: the sheet counts'],
   'same-bytes': ['note', 'the same bytes came again under another name and count once'],
   'forecasts-disagree': ['warn', 'model-free forecast and shared law differ by more than a factor of three'],
   extrapolates: ['warn', 'a forecast lies outside the measured temperatures'],

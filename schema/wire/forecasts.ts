@@ -163,6 +163,12 @@ export interface ViscositySheetRow {
   line: number;
 }
 
+/** A `programs/*.csv` that was read; its rows stay in the file. */
+export interface ProgramSheetRow {
+  program: string;
+  rows: number;
+}
+
 /** One row of advice.csv. Intervals are full 95 % widths in `unit`: kJ/mol (energy), 1 (bend B), decades of time (forecast). */
 export interface AdviceRow {
   sample: string;

@@ -43,6 +43,11 @@ export interface ScanSheetRow {
   segment?: number;
   reference?: string;
   note?: string;
+  /** By correction only: where the event's baseline is tied, K, lower and upper */
+  limitsK?: [number, number];
+  /** By correction only: why the scan stays out */
+  excluded?: string;
+  /** 0 where no sheet has such a row */
   line: number;
 }
 

@@ -11,6 +11,8 @@ export interface ReduceInput {
   exotherm?: ExothermDirection;
   /** 1-based over all segments; empty = the first heating segment that shows an event */
   segment?: number;
+  /** Where the baseline is tied, K on the corrected scale, lower and upper: stands in the place of the automatic limits */
+  limitsK?: [number, number];
   calibration: InstrumentCalibration;
   meltingK?: number;
   crystallizationEnthalpyJPerKg?: number;
