@@ -133,7 +133,15 @@ function analyseRamps(s: Ramps): Numbers {
   }
   const programme = rampIntegrals(d, curves);
   const x0 = at(d.temperatureK, 9).reduce((sum, T) => sum + 1 / T / d.n, 0);
-  const settings = { curves, weights, curveWeights: weights, augisBennett: false, curveMethods: true, x0 };
+  const settings = {
+    curves,
+    weights,
+    curveWeights: weights,
+    curveSigmaK: weights.map((w) => 0.3 / Math.sqrt(w)),
+    augisBennett: false,
+    curveMethods: true,
+    x0,
+  };
   const e = createEstimator(d, settings, programme)();
   const plan = { ozawaTemperatures: s.ozawaK, sestakBerggren: true };
   const more = createFurtherEstimator(d, settings, plan)(e);
@@ -147,7 +155,6 @@ function analyseRamps(s: Ramps): Numbers {
     jmak: e.jmak!.energy,
     jmak_ln_prefactor: e.jmak!.lnPrefactor,
     jmak_exponent: e.jmak!.exponent,
-    jmak_rms: e.jmak!.residualRms,
     compensation_ln_prefactor: more.friedmanLnPrefactor,
     matusita_sakka_exponent: more.matusitaSakka.exponent,
     matusita_sakka_scaled_energy: more.matusitaSakka.scaledEnergy,

@@ -141,28 +141,33 @@ def ozawa(T, rate, w, temperatures):
     return -top / bottom
 
 
-def jmak(beta, T, start, w):
+CURVE_SIGMA = 0.005
+
+
+def jmak(beta, T, start, w, sigma):
+    """Least squares over E, ln K at x0, n and a temperature shift of each scan that is held by its scatter sigma (K)."""
     x0 = np.mean(1 / T[:, 9])
-    weights = np.repeat(np.sqrt(w * len(w) / np.sum(w)), 19)
+    scans = len(beta)
 
     def ln_integral(E):
         part = lambda t: t * special.expn(2, E / R / t) * np.exp(E / R * x0)
-        return np.log((part(T) - part(start)[:, None]) / beta[:, None]).ravel()
+        return np.log((part(T) - part(start)[:, None]) / beta[:, None])
 
     def residual(p):
-        E, lnK, n = p * np.array([1e5, 1, 1])
-        return weights * (1 - np.exp(-np.exp(n * (lnK + ln_integral(E)))) - np.tile(ALPHA, len(beta)))
+        E, lnK, n = p[0] * 1e5, p[1], p[2]
+        shift = p[3:, None]
+        model = 1 - np.exp(-np.exp(n * (lnK + ln_integral(E) - E / R / T**2 * shift)))
+        return np.concatenate([(model - ALPHA).ravel(), CURVE_SIGMA / sigma * p[3:]])
 
-    # From several starts to the least: the last digits by Gauss-Newton on a central-difference Jacobian.
     best = None
     for E in [1.0, 1.8, 2.6]:
         lnK = -np.median(ln_integral(E * 1e5))
-        fit = optimize.least_squares(residual, [E, lnK, 2.0], jac="3-point", x_scale=[1, 1, 1], method="lm", **TIGHT)
+        first = [E, lnK, 2.0] + [0.0] * scans
+        fit = optimize.least_squares(residual, first, jac="3-point", x_scale=[1, 1, 1] + [1.0] * scans, method="lm", **TIGHT)
         if best is None or fit.cost < best.cost:
             best = fit
-    E, lnK, n = best.x * np.array([1e5, 1, 1])
-    return {"jmak": E, "jmak_ln_prefactor": lnK + E / R * x0, "jmak_exponent": n,
-            "jmak_rms": np.sqrt(2 * best.cost / T.size)}
+    E, lnK, n = best.x[:3] * np.array([1e5, 1, 1])
+    return {"jmak": E, "jmak_ln_prefactor": lnK + E / R * x0, "jmak_exponent": n}
 
 
 MODELS = [
@@ -217,7 +222,7 @@ def ramps(s, cooling=False):
         out[name] = [energy_line(rate, T[:, k], power, factor, w)[0] for k in range(19)]
     out["ozawa_flynn_wall"] = [ozawa_flynn_wall(rate, T[:, k], w)[0] for k in range(19)]
     out["vyazovkin_linear"] = [linear_vyazovkin(rate, T[:, k], w, out["starink"][k]) for k in range(19)]
-    out.update(jmak(rate, T, start, w))
+    out.update(jmak(rate, T, start, w, 0.3 / np.sqrt(w)))
     out["compensation_ln_prefactor"] = compensation(T, lnr, w, np.mean(friedman[1:18]))
     # Matusita-Sakka and Sestak-Berggren: one linear least squares over all scans and conversions.
     row = np.repeat(w, 19) ** 0.5
