@@ -55,4 +55,5 @@ ALTER TABLE `plans` ADD `advice` text DEFAULT '[]' NOT NULL;--> statement-breakp
 ALTER TABLE `samples` ADD `judge_key` text;--> statement-breakpoint
 ALTER TABLE `samples` ADD `forecast_key` text;--> statement-breakpoint
 ALTER TABLE `samples` ADD `peaks_hash` text DEFAULT '' NOT NULL;--> statement-breakpoint
-ALTER TABLE `scans` ADD `said` text;
+ALTER TABLE `scans` ADD `said` text;--> statement-breakpoint
+UPDATE `scans` SET `said` = coalesce(`sheet_row`, case when `sample` is not null then json_object('sample', `sample`, 'instrument', `instrument`, 'role', `role`) end);

@@ -14,7 +14,7 @@ import type {
 import type { FitReport, ParameterRow } from '../wire/parameters.ts';
 import type { ReducedSummary } from '../wire/reduced-blob.ts';
 import type { InstrumentCalibration, InstrumentSheetRow, SampleSheetRow, ScanSheetRow } from '../wire/scan.ts';
-import type { JobState, Role, SampleState, ScanState } from '../wire/states.ts';
+import type { JobState, Role, SampleState, ScanState, TokenRole } from '../wire/states.ts';
 import type { VerdictRow } from '../wire/verdicts.ts';
 
 /**
@@ -346,3 +346,44 @@ export const jobs = sqliteTable(
 export const fence = sqliteTable('fence', { ok: integer('ok').primaryKey() }, (t) => [
   check('fence_ok', sql`${t.ok} = 1`),
 ]);
+
+/** Access tokens of labs. The token itself is shown once and never stored. */
+export const tokens = sqliteTable(
+  'tokens',
+  {
+    id: text('id').primaryKey(),
+    lab: text('lab').notNull(),
+    role: text('role').$type<TokenRole>().notNull(),
+    /** SHA-256 of the token, hex: 256 random bits need no slow hash. */
+    hash: text('hash').notNull(),
+    createdAt: integer('created_at').notNull(),
+    expiresAt: integer('expires_at').notNull(),
+    revokedAt: integer('revoked_at'),
+  },
+  (t) => [uniqueIndex('tokens_hash').on(t.hash)],
+);
+
+/** Answers to POST requests that named an Idempotency-Key, for a day. */
+export const replies = sqliteTable(
+  'replies',
+  {
+    lab: text('lab').notNull(),
+    key: text('key').notNull(),
+    /** Hash of method, path and body: the key with another request is refused. */
+    request: text('request').notNull(),
+    /** Null while the first request is still being answered. */
+    status: integer('status'),
+    contentType: text('content_type'),
+    location: text('location'),
+    body: text('body'),
+    createdAt: integer('created_at').notNull(),
+  },
+  (t) => [primaryKey({ columns: [t.lab, t.key] }), index('replies_age').on(t.createdAt)],
+);
+
+/** The one row names this database; the blob `marker/<id>` says that a blob store belongs to it. */
+export const identity = sqliteTable(
+  'identity',
+  { one: integer('one').primaryKey(), id: text('id').notNull() },
+  (t) => [check('identity_one', sql`${t.one} = 1`)],
+);

@@ -34,3 +34,7 @@ export type InstrumentKind = (typeof INSTRUMENT_KINDS)[number];
 
 export const EXOTHERM_DIRECTIONS = ['up', 'down'] as const;
 export type ExothermDirection = (typeof EXOTHERM_DIRECTIONS)[number];
+
+/** What a token allows: each role also what the ones before it do (INTERFACES, "Access"). */
+export const TOKEN_ROLES = ['reader', 'sender', 'keeper'] as const;
+export type TokenRole = (typeof TOKEN_ROLES)[number];
