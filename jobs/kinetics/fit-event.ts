@@ -190,14 +190,14 @@ const notComputed = (event: number, method: string, message: string, rows: numbe
 function reportFits(event: number, e: Estimates, curveScans: number): FitReport[] {
   const out: FitReport[] = [];
   if (e.jmak) {
-    const { fit, residualRms } = e.jmak;
+    const { fit, quality } = e.jmak;
     out.push({
       event,
       method: 'jmak',
       converged: fit.converged,
       message: fit.message,
       evaluations: fit.evaluations,
-      residualRms,
+      residualRms: quality?.residualRms ?? null,
       rows: curveScans * CONVERSIONS.length,
     });
   }

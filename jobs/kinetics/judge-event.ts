@@ -11,6 +11,8 @@ const ENERGY_VARIES = 0.1;
 const OUTLIER_SIGMAS = 4;
 /** A global JMAK fit with a residual above this in α does not describe the curves. */
 const JMAK_RESIDUAL = 0.03;
+/** … and one whose scans lie, in the mean, this many times their scatter from where the law puts them does not place them. */
+const JMAK_SHIFTS = 4;
 
 /** Scans far from the trend of the others: told, never dropped. */
 export function findOutliers(model: ScatterModel, where: { sample: string; event: number }): Flag[] {
@@ -81,12 +83,23 @@ export function judgeJmak(estimate: Estimates, where: { sample: string; event: n
       ),
     ];
   }
-  if (jmak.residualRms > JMAK_RESIDUAL) {
+  const quality = jmak.quality;
+  if (quality && quality.residualRms > JMAK_RESIDUAL) {
     return [
       flag(
         'not-avrami',
-        `One JMAK law with one energy leaves a residual of ${jmak.residualRms.toFixed(3)} in conversion (limit ${JMAK_RESIDUAL}).`,
+        `One JMAK law with one energy leaves a residual of ${quality.residualRms.toFixed(3)} in conversion (limit ${JMAK_RESIDUAL}).`,
         'Use the isoconversional energies; its n and E describe no single process. A rate law that bends over many decades does this too.',
+        where,
+      ),
+    ];
+  }
+  if (quality && quality.shiftRms > JMAK_SHIFTS) {
+    return [
+      flag(
+        'not-avrami',
+        `One JMAK law with one energy leaves the scans ${quality.shiftRms.toFixed(1)} times their own scatter from their places (limit ${JMAK_SHIFTS}).`,
+        'The shape of the curves may still be JMAK; a rate law that bends over many decades does this. Do not use its one E for a forecast.',
         where,
       ),
     ];

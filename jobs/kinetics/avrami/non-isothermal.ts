@@ -11,11 +11,16 @@ export interface JmakEstimate {
   /** ln A, A in 1/s */
   lnPrefactor: number;
   exponent: number;
+  /** Of a fit from scratch only */
+  quality?: JmakQuality;
+  fit: LeastSquaresResult;
+}
+
+export interface JmakQuality {
   /** root mean square residual in α, each scan at its own shift */
   residualRms: number;
   /** root mean square of the scans' shifts in units of their scatter: far above 1, one energy does not place the scans */
   shiftRms: number;
-  fit: LeastSquaresResult;
 }
 
 /** Size of a meaningful change of (E, ln K at x0, n). */
@@ -150,7 +155,8 @@ export class JmakFit {
       SCALE,
       this.curveRows + this.sigmaK.length,
     );
-    return this.result(this.solver.solve(near, SCALE));
+    const result = this.result(this.solver.solve(near, SCALE));
+    return { ...result, quality: this.judge(result.fit.parameters) };
   }
 
   /** From a neighbouring answer (Monte Carlo draws). */
@@ -160,19 +166,13 @@ export class JmakFit {
 
   private result(fit: LeastSquaresResult): JmakEstimate {
     const [energy, lnK0, exponent] = fit.parameters;
+    return { energy, lnPrefactor: lnK0 + (energy * this.x0) / GAS_CONSTANT, exponent, fit };
+  }
+
+  private judge(parameters: Float64Array): JmakQuality {
     const r = new Float64Array(this.curveRows + this.sigmaK.length);
-    this.evaluate(fit.parameters, r);
-    let onCurves = 0;
-    let shifts = 0;
-    for (let row = 0; row < this.curveRows; row++) onCurves += r[row] ** 2;
-    for (let row = this.curveRows; row < r.length; row++) shifts += (r[row] / CURVE_SIGMA) ** 2;
-    return {
-      energy,
-      lnPrefactor: lnK0 + (energy * this.x0) / GAS_CONSTANT,
-      exponent,
-      residualRms: Math.sqrt(onCurves / this.curveRows),
-      shiftRms: Math.sqrt(shifts / this.sigmaK.length),
-      fit,
-    };
+    this.evaluate(parameters, r);
+    const rms = (v: Float64Array) => Math.sqrt(v.reduce((sum, x) => sum + x * x, 0) / v.length);
+    return { residualRms: rms(r.subarray(0, this.curveRows)), shiftRms: rms(r.subarray(this.curveRows)) / CURVE_SIGMA };
   }
 }
