@@ -4,4 +4,5 @@ export { type CriticalRates, criticalRateRows, findCriticalRates } from './criti
 export { type DiagramLine, drawHeating, drawTransformation } from './diagrams.ts';
 export { forecastTable, standardTemperatures } from './forecast-table.ts';
 export { TEMPERATURE_RANGE } from './kinetics.ts';
+export { drawnParameters, lnTimeGradient, sharedRateCurve } from './rate-curve.ts';
 export { timeText } from './wording.ts';

@@ -102,3 +102,20 @@ function withDrive(curve: RateCurve, highestMeasuredK: number, melting?: Melting
     breaksK: [...curve.breaksK, fromK, melting.meltingK],
   };
 }
+
+/** Derivatives of ln t (any conversion, constant temperature) by (ln K0, ln E0, q), central differences: the law is smooth in all three. */
+export function lnTimeGradient(law: SharedLaw, temperatureK: number): [number, number, number] {
+  const lnTime = (lnK: number, lnE: number, q: number) =>
+    -sharedRateCurve(law, {
+      lnRateAtMiddle: law.lnRateAtMiddle + lnK,
+      energyJPerMol: law.energyJPerMol * Math.exp(lnE),
+      bend: law.bend + q,
+      avramiExponent: law.avramiExponent,
+    }).lnRate(temperatureK);
+  const h = 1e-4;
+  return [
+    (lnTime(h, 0, 0) - lnTime(-h, 0, 0)) / (2 * h),
+    (lnTime(0, h, 0) - lnTime(0, -h, 0)) / (2 * h),
+    (lnTime(0, 0, h) - lnTime(0, 0, -h)) / (2 * h),
+  ];
+}
