@@ -32,11 +32,16 @@ export function findEvents(c: ScanContext, segment: Segment): Excursion[] {
   return all.filter((x) => x.prominence >= LEAST_PART * all[0].prominence).sort((a, b) => a.peakS - b.peakS);
 }
 
-/** Events, glass transition and melting of one segment. */
-export function analyseSegment(c: ScanContext, segment: Segment, excursions: Excursion[]): SegmentFindings {
+/** Events, glass transition and melting of one segment; `before` is the segment that leads to it. */
+export function analyseSegment(
+  c: ScanContext,
+  segment: Segment,
+  before: Segment | undefined,
+  excursions: Excursion[],
+): SegmentFindings {
   const { timeS, temperatureK } = c.scan;
   const bells: Bell[] = excursions.map((x) => ({ ...x, height: x.prominence }));
-  if (segment.kind === 'hold') return reduceHold(c, segment, bells);
+  if (segment.kind === 'hold') return reduceHold(c, segment, before, bells);
   // A step before the event makes its rough left half width come out too large.
   const first = bells[0] && { ...bells[0], leftS: Math.min(bells[0].leftS, MOST_LEFT * bells[0].rightS) };
   const glassEnd = first ? lowerBound(timeS, first.peakS - GLASS_BEFORE * first.leftS) : segment.to;
@@ -50,7 +55,7 @@ export function analyseSegment(c: ScanContext, segment: Segment, excursions: Exc
   let meltingS: number | undefined;
   groups.forEach((group, g) => {
     const last = group[group.length - 1];
-    const before = groups[g - 1]?.[groups[g - 1].length - 1];
+    const previous = groups[g - 1]?.[groups[g - 1].length - 1];
     const after = groups[g + 1]?.[0];
     const toS = after ? after.peakS - FOOT * after.leftS : endS;
     const melting =
@@ -66,7 +71,7 @@ export function analyseSegment(c: ScanContext, segment: Segment, excursions: Exc
         : undefined;
     meltingS ??= melting?.onsetS;
     const room: Room = {
-      fromS: before ? before.peakS + TAIL * before.rightS : timeS[segment.from],
+      fromS: previous ? previous.peakS + TAIL * previous.rightS : timeS[segment.from],
       toS,
       ...(g === 0 && glass && { glass }),
       ...(melting && { melting }),

@@ -43,7 +43,8 @@ const MODELS: readonly (readonly number[])[] = [
   [0, 1, 2, 4, 5],
 ];
 const WITHOUT_STEP = [MODELS[0], MODELS[1], MODELS[3]];
-const ONE_FLANK: readonly (readonly number[])[] = [[0], [0, 1], [0, 1, 2]];
+/** One flank alone is extrapolated: no curvature. */
+const ONE_FLANK: readonly (readonly number[])[] = [[0], [0, 1]];
 const GLASS_STEP = [MODELS[2], MODELS[4]];
 
 /** Flanks shorter than this bear no curvature of third order and no slope step, widths. */
@@ -56,6 +57,8 @@ export interface Flanks {
   /** bins [from, to) of either flank; empty when from ≥ to */
   left: readonly [number, number];
   right: readonly [number, number];
+  /** Weight of the left bins: below 1 for the start of a hold, which is nearly baseline */
+  leftWeight?: number;
 }
 
 /**
@@ -79,14 +82,12 @@ export function fitBaseline(
   const oneSided = nLeft < 3 || nRight < 3;
   const models = oneSided
     ? ONE_FLANK
-    : steps === 'none'
-      ? WITHOUT_STEP
-      : typeof steps === 'object'
-        ? GLASS_STEP
-        : MODELS.filter((m) => shorter >= SHORT_FLANK || !(m.includes(3) || m.includes(5)));
+    : (steps === 'none' ? WITHOUT_STEP : typeof steps === 'object' ? GLASS_STEP : MODELS).filter(
+        (m) => shorter >= SHORT_FLANK || !(m.includes(3) || m.includes(5)),
+      );
   const normal = new Float64Array(p * p);
   const rhs = new Float64Array(p);
-  const squares = sums.fillNormal(left, right, normal, rhs);
+  const squares = sums.fillNormal(left, right, normal, rhs, flanks.leftWeight ?? 1);
   const solved = models.flatMap((used) => {
     if (used.length + 1 > nLeft + nRight) return [];
     const fit = solveModel(normal, rhs, squares, used);

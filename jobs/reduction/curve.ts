@@ -9,6 +9,14 @@ import type { EventWindow } from './window.ts';
 
 /** Rows kept of the programme before α = 0.01, spaced by the square of their distance in time to it. */
 const PROGRAMME_ROWS = 50;
+/** Part of them on the ramp before a hold. */
+const RAMP_SHARE = 0.4;
+
+/** What led to an event: rows of the ramp and, on a hold, the time it ended, s. */
+export interface Programme {
+  rows: Segment;
+  cornerS?: number;
+}
 
 /** An event on the conversion grid, with the programme from the start of its segment. */
 export function makeCurve(
@@ -19,22 +27,31 @@ export function makeCurve(
   times: Float64Array,
   T: (t: number) => number,
   baselineErrorK: Float64Array,
-  segment: Segment,
+  programme: Programme,
   shiftK: number,
 ): ReducedCurve {
   const { scan } = c;
   const temperatureK = times.map(T);
   const least = 1e-9 / shape.widthS;
   const ratePerS = times.map((t) => Math.max(trueSignal(w, shape, t, binAt(w, x, t)).value / x.area, least));
-  const start = scan.timeS[segment.from];
+  const { rows, cornerS } = programme;
+  const start = scan.timeS[rows.from];
+  // A corner is kept sharp: nodes on both sides of it, no averaging over rows across it.
+  const half = cornerS === undefined ? shape.widthS / 20 : 0;
+  const ramped = PROGRAMME_ROWS * RAMP_SHARE;
   const programmeTimeS = new Float64Array(PROGRAMME_ROWS);
   const programmeTemperatureK = new Float64Array(PROGRAMME_ROWS);
   for (let k = 0; k < PROGRAMME_ROWS; k++) {
     const f = (PROGRAMME_ROWS - 1 - k) / (PROGRAMME_ROWS - 1);
-    const t = times[0] - f * f * (times[0] - start);
+    const t =
+      cornerS === undefined || cornerS >= times[0]
+        ? times[0] - f * f * (times[0] - start)
+        : k < ramped
+          ? start + (k / ramped) * (cornerS - start)
+          : cornerS + ((k - ramped) / (PROGRAMME_ROWS - 1 - ramped)) * (times[0] - cornerS);
     programmeTimeS[k] = t;
     programmeTemperatureK[k] =
-      k === PROGRAMME_ROWS - 1 ? temperatureK[0] : meanTemperature(scan, segment, t, shape.widthS / 20) + shiftK;
+      k === PROGRAMME_ROWS - 1 ? temperatureK[0] : meanTemperature(scan, rows, t, half) + shiftK;
   }
   return { timeS: times, temperatureK, ratePerS, baselineErrorK, programmeTimeS, programmeTemperatureK };
 }

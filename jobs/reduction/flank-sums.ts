@@ -63,14 +63,16 @@ export class FlankSums {
     right: readonly [number, number],
     normal: Float64Array,
     rhs: Float64Array,
+    leftWeight: number,
   ): number {
     const between = (sums: Float64Array, [from, to]: readonly [number, number]) =>
       to > from ? sums[to] - sums[from] : 0;
     const { powers, moments, squares } = this;
     const p = TERMS;
     for (let i = 0; i < 4; i++) {
-      rhs[i] = between(moments[i], left) + between(moments[i], right);
-      for (let j = 0; j < 4; j++) normal[i * p + j] = between(powers[i + j], left) + between(powers[i + j], right);
+      rhs[i] = leftWeight * between(moments[i], left) + between(moments[i], right);
+      for (let j = 0; j < 4; j++)
+        normal[i * p + j] = leftWeight * between(powers[i + j], left) + between(powers[i + j], right);
     }
     for (let i = 0; i < 2; i++) {
       rhs[4 + i] = between(moments[i], right);
@@ -80,7 +82,7 @@ export class FlankSums {
       }
       for (let j = 0; j < 2; j++) normal[(4 + i) * p + 4 + j] = between(powers[i + j], right);
     }
-    return between(squares, left) + between(squares, right);
+    return leftWeight * between(squares, left) + between(squares, right);
   }
 
   /** Residual variance of a polynomial of `degree` over bins [from, to): what a smooth baseline cannot be. */

@@ -79,7 +79,7 @@ function reduceChosen(c: ScanContext, segments: Segment[], candidates: Segment[]
     if (seen.length > 0) [segment, excursions] = [s, seen];
     return seen.length > 0;
   });
-  const found = analyseSegment(c, segment, excursions);
+  const found = analyseSegment(c, segment, segments[segment.segment - 2], excursions);
   if (!shown) {
     flags.push(
       flag(

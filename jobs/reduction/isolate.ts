@@ -16,6 +16,8 @@ export interface Room {
   melting?: Melting;
   /** First-order response of the signal, s: an exponential tail */
   responseS: number;
+  /** An isothermal event or a metal's melting: no exponential foot, a longer tail, no step of the heat capacity, no need of a flank before it */
+  footless?: boolean;
   /** Area of the whole event where mass and enthalpy are known, signal units × s; used where its end is hidden */
   knownArea?: number;
 }
@@ -33,11 +35,17 @@ export interface Isolated {
 export type Isolation = Isolated | { cut: 'before' | 'behind' };
 
 /** Limits in half widths from the peak, where there is room and where there is not: 0.2 % and 3 % of the height, 0.1 % and 1 % are left. */
-const LEFT_REACH = { far: 5, near: 3.3 };
-const RIGHT_REACH = { far: 3.2, near: 2.4 };
+const RAMP_REACH = { left: { far: 5, near: 3.3 }, right: { far: 3.2, near: 2.4 } };
+/** On a hold a JMAK event of n ≤ 4 begins at most 2.4 left half widths before its peak; 0.1 % are left 2.4 (n = 3) to 3.6 (n = 1.5) right ones behind it. */
+const HOLD_REACH = { left: { far: 3.5, near: 2.5 }, right: { far: 4.2, near: 2.7 } };
 /** The tail of a response: 0.25 % are left after six time constants. */
 const RESPONSE_TAILS = 6;
 const LEAST_RESPONSE_TAILS = 3.5;
+/**
+ * A JMAK event with n ≥ 2 begins at rate 0 and rises at most linearly: the first piece of a hold is baseline to this part of the height,
+ * unless it stands out of the baseline behind the event (n = 1.5: by a third of the height).
+ */
+const HOLD_START = { widths: 0.05, heightPart: 0.03, mostPart: 0.2 };
 /** Flank wished for, shortest one that counts, and the longest looked at, widths. */
 const FLANK = { wished: 0.8, least: 0.35, longest: 4.5 };
 /** Lengths tried when the longest flank is no smooth baseline. */
@@ -105,7 +113,7 @@ function isolateFrom(
       room = { ...room, ...(glass && { glass }) };
       continue;
     }
-    const before = placed.freeLeft && tailStands(w, found, 'left');
+    const before = placed.freeLeft && !room.footless && tailStands(w, found, 'left');
     const behind = placed.freeRight && tailStands(w, found, 'right');
     if (!before && !behind) break;
     if (before) extra.left += 1;
@@ -152,26 +160,27 @@ function placeLimits(
   const bin = (w.t[n - 1] - w.t[0]) / (n - 1);
   const least = Math.max(FLANK.least * width, 3 * bin);
 
+  const reach = room.footless ? HOLD_REACH : RAMP_REACH;
   const edgeLeft = Math.max(room.fromS, w.t[0]);
   const glassEnd = room.glass && room.glass.toS > edgeLeft ? room.glass.toS : edgeLeft;
-  const nearLeft = first.peakS - LEFT_REACH.near * first.leftS;
-  const farLeft = first.peakS - (LEFT_REACH.far + extra.left) * first.leftS;
+  const nearLeft = first.peakS - reach.left.near * first.leftS;
+  const farLeft = first.peakS - (reach.left.far + extra.left) * first.leftS;
   let fromS = glassEnd;
   let leftS = Math.min(nearLeft, Math.max(farLeft, fromS + FLANK.wished * width));
   let glassOverlap = false;
   if (leftS - fromS < least) {
-    if (fromS === edgeLeft) return { cut: 'before' };
-    // The glass transition reaches into the event: its own glass side gives slope and curvature, the level comes from the right.
-    glassOverlap = true;
+    if (fromS === edgeLeft && !room.footless) return { cut: 'before' };
+    // On a hold the event may begin at once. On a ramp the glass transition reaches into the event: its own glass side gives slope and curvature, the level comes from the right.
+    glassOverlap = !room.footless;
     fromS = edgeLeft;
-    leftS = room.glass!.fromS;
+    leftS = room.glass?.fromS ?? edgeLeft;
   }
 
   const edgeRight = Math.min(room.toS, w.t[n - 1]);
   const meltingStart = room.melting && room.melting.fromS < edgeRight ? room.melting.fromS : edgeRight;
-  const nearRight = last.peakS + Math.max(RIGHT_REACH.near * last.rightS, LEAST_RESPONSE_TAILS * room.responseS);
+  const nearRight = last.peakS + Math.max(reach.right.near * last.rightS, LEAST_RESPONSE_TAILS * room.responseS);
   const farRight =
-    last.peakS + Math.max((RIGHT_REACH.far + extra.right) * last.rightS, RESPONSE_TAILS * room.responseS);
+    last.peakS + Math.max((reach.right.far + extra.right) * last.rightS, RESPONSE_TAILS * room.responseS);
   let toS = meltingStart;
   let rightS = Math.max(nearRight, Math.min(farRight, toS - FLANK.wished * width));
   let meltingOverlap = false;
@@ -198,39 +207,49 @@ function fitOnce(w: EventWindow, bells: Bell[], room: Room, limits: Limits): Omi
   const top = bells.reduce((a, c) => (c.height > a.height ? c : a));
   const width = widthOf(bells);
   const { glassOverlap, meltingOverlap } = limits;
-  const sums = new FlankSums(w, top.peakS, width, first);
+  const sums = new FlankSums(w, top.peakS, width, room.footless ? undefined : first);
   const bin = (w.t[w.t.length - 1] - w.t[0]) / (w.t.length - 1);
   const variance = w.noise ** 2 + Math.max(1, (BLOCK_WIDTHS * width) / bin) * (BLOCK_HEIGHT_PART * top.height) ** 2;
   const least = Math.max(FLANK.least * width, 3 * bin);
-  const flanksAt = (leftS: number, rightS: number): Flanks => ({
-    left: smoothFlank(
-      sums,
-      binsBetween(w, Math.max(limits.fromS, leftS - FLANK.longest * width), leftS),
-      'left',
-      variance,
-    ),
-    right: smoothFlank(
-      sums,
-      binsBetween(w, rightS, Math.min(limits.toS, rightS + FLANK.longest * width)),
-      'right',
-      variance,
-    ),
-  });
+  const flanksAt = (leftS: number, rightS: number): Flanks => {
+    const right = binsBetween(w, rightS, Math.min(limits.toS, rightS + FLANK.longest * width));
+    const fromS = Math.max(limits.fromS, leftS - FLANK.longest * width);
+    const start = { left: binsBetween(w, fromS, fromS + HOLD_START.widths * width + 3 * bin) };
+    if (room.footless && leftS - fromS < least) {
+      const count = start.left[1] - start.left[0];
+      const alone: Flanks = { left: [0, 0], right: smoothFlank(sums, right, 'right', variance) };
+      const first = fitBaseline(sums, alone, { leftS, rightS }, variance, 'none');
+      const above = first ? meanAbove(w, first, start.left) : 0;
+      if (above > HOLD_START.mostPart * top.height) return alone;
+      const leftWeight = Math.min(1, variance / (count * (HOLD_START.heightPart * top.height) ** 2));
+      return { ...alone, ...start, leftWeight };
+    }
+    return {
+      left: smoothFlank(sums, binsBetween(w, fromS, leftS), 'left', variance),
+      right: smoothFlank(sums, right, 'right', variance),
+    };
+  };
   const { glass } = room;
   const steps =
-    glassOverlap && glass ? { middleS: glass.midpointS, scaleS: glass.scaleS } : meltingOverlap ? 'none' : 'free';
+    glassOverlap && glass
+      ? { middleS: glass.midpointS, scaleS: glass.scaleS }
+      : meltingOverlap || room.footless
+        ? 'none'
+        : 'free';
   const fitAt = (leftS: number, rightS: number): Excess | undefined => {
     const baseline = fitBaseline(sums, flanksAt(leftS, rightS), { leftS, rightS }, variance, steps);
     if (!baseline) return undefined;
     if (meltingOverlap) return cutAtMelting(w, baseline, top, room);
     // The step being part of the baseline, the event may begin under it.
-    const limited = glassOverlap ? { ...baseline, leftS: first.peakS - LEFT_REACH.far * first.leftS } : baseline;
-    return subtractBaseline(w, limited, footArea(first, limited.leftS));
+    const limited = glassOverlap ? { ...baseline, leftS: first.peakS - RAMP_REACH.left.far * first.leftS } : baseline;
+    return subtractBaseline(w, limited, room.footless ? 0 : footArea(first, limited.leftS));
   };
   const excess = fitAt(limits.leftS, limits.rightS);
   if (!excess) return undefined;
   const refit = (left: number, right: number) => {
-    const leftS = Math.max(limits.leftS + left, limits.fromS + least);
+    // Without a flank on the left there is no limit to move: the event begins with the hold.
+    const alone = limits.leftS - limits.fromS < least;
+    const leftS = alone ? limits.leftS : Math.max(limits.leftS + left, limits.fromS + least);
     const rightS = Math.min(limits.rightS + right, limits.toS - least);
     return fitAt(leftS, rightS) ?? excess;
   };
@@ -262,6 +281,12 @@ const binsBetween = (w: EventWindow, fromS: number, toS: number): [number, numbe
   const a = lowerBound(w.t, fromS);
   return [a, Math.max(a, lowerBound(w.t, toS))];
 };
+
+function meanAbove(w: EventWindow, b: Baseline, [from, to]: readonly [number, number]): number {
+  let sum = 0;
+  for (let i = from; i < to; i++) sum += w.y[i] - baselineAt(b, w.t[i], 0);
+  return to > from ? sum / (to - from) : 0;
+}
 
 /** The longest part next to the event that a cubic describes as well as it does a short part: steps and peaks further out stay out. */
 function smoothFlank(

@@ -1,4 +1,5 @@
 import { flag } from '../../schema/wire/flags.ts';
+import type { Segment } from '../../schema/wire/reduced.ts';
 import { lowerBound } from '../numeric/local-polynomial.ts';
 import type { ScanContext } from './scan-context.ts';
 import { slopeOf } from './segments.ts';
@@ -9,11 +10,17 @@ const UNSTEADY = 0.05;
 const ROWS_FOR_DRIFT = 40;
 
 /** Measured rate over an event, K/s, signed; flags when it is unsteady or off the nominal one. */
-export function eventRate(c: ScanContext, m: { peakS: number; widthS: number }, where: object): number {
+export function eventRate(
+  c: ScanContext,
+  m: { peakS: number; widthS: number },
+  segment: Segment,
+  where: object,
+): number {
   const { timeS, temperatureK } = c.scan;
-  const a = lowerBound(timeS, m.peakS - 1.5 * m.widthS);
-  const b = Math.min(timeS.length, Math.max(a + 3, lowerBound(timeS, m.peakS + 1.5 * m.widthS)));
+  const a = Math.min(segment.to - 3, Math.max(segment.from, lowerBound(timeS, m.peakS - 1.5 * m.widthS)));
+  const b = Math.min(segment.to, Math.max(a + 3, lowerBound(timeS, m.peakS + 1.5 * m.widthS)));
   const rate = slopeOf(timeS, temperatureK, a, b);
+  if (segment.kind === 'hold') return rate;
   const middle = (a + b) >> 1;
   const drift = slopeOf(timeS, temperatureK, middle, b) / slopeOf(timeS, temperatureK, a, middle) - 1;
   if (b - a >= ROWS_FOR_DRIFT && Math.abs(drift) > UNSTEADY) {

@@ -3,7 +3,7 @@ import { CONVERSION_GRID, type ReducedEvent, type Segment } from '../../schema/w
 import { lowerBound } from '../numeric/local-polynomial.ts';
 import { findLandmarks, type Landmarks } from './characteristic.ts';
 import { baselineError, conversionOfTime, shapeEvent, temperatureAt, timesOfGrid } from './conversion.ts';
-import { makeCurve } from './curve.ts';
+import { makeCurve, type Programme } from './curve.ts';
 import { FEW_POINTS, judgeEvent, TOO_FEW_POINTS } from './event-flags.ts';
 import { type Bell, type Excess, straightLineArea } from './excess.ts';
 import { type Isolated, type Room, widthOf } from './isolate.ts';
@@ -25,6 +25,7 @@ export interface Shown {
 /**
  * Events that stand together: one, or several that overlap. Limits, baseline, landmarks and, where the data bear it, the conversion grid.
  * @param bells rough, in order of time   @param first number of the first event
+ * @param programme what leads there; by default the segment itself
  */
 export function reduceEvents(
   c: ScanContext,
@@ -32,6 +33,7 @@ export function reduceEvents(
   bells: Bell[],
   room: Room,
   first: number,
+  programme: Programme = { rows: segment },
 ): { events: ReducedEvent[]; shown?: Shown } {
   const { timeS } = c.scan;
   const width = widthOf(bells);
@@ -45,7 +47,9 @@ export function reduceEvents(
     return { events };
   }
   const { isolated, parts } = separated;
-  const events = parts.map((x, i) => completeEvent(c, w, segment, isolated, x, i, room, first + i, parts.length));
+  const events = parts.map((x, i) =>
+    completeEvent(c, w, segment, isolated, x, i, room, first + i, parts.length, programme),
+  );
   return { events, shown: { window: w, excess: isolated.excess } };
 }
 
@@ -59,6 +63,7 @@ function completeEvent(
   room: Room,
   number: number,
   together: number,
+  programme: Programme,
 ): ReducedEvent {
   const { input, scan } = c;
   const { calibration } = input;
@@ -67,7 +72,7 @@ function completeEvent(
   const bell = isolated.bells[index];
   const shape = shapeEvent(w, x, bell, responseS);
   const marks = findLandmarks(w, x, shape);
-  const rate = eventRate(c, marks, where);
+  const rate = eventRate(c, marks, segment, where);
   const shiftK = c.shiftAt(rate);
   const T = (t: number) => temperatureAt(w, t, shape.widthS / 10) + shiftK;
   const perSecond = 1 / ((w.t[1] - w.t[0]) / w.binSize);
@@ -100,15 +105,15 @@ function completeEvent(
     usableTo: isolated.meltingOverlap ? USABLE.melting : CONVERSION_GRID[CONVERSION_GRID.length - 1],
     pointsOverWidth: points,
     noiseFraction: (w.noise * Math.sqrt(w.binSize)) / marks.height,
-    rampStartK: segment.startK + shiftK,
+    rampStartK: programme.rows.startK + shiftK,
   };
   if (scan.heatFlowUnit === 'W/kg') event.enthalpyJPerKg = x.area;
   else if (c.massKg) event.enthalpyJPerKg = x.area / c.massKg;
   let selfHeating: SelfHeating | undefined;
   const error = baseline.error.map((s) => s * Math.abs(rate));
   if (points >= FEW_POINTS && x.area > 5 * event.areaError) {
-    event.curve = makeCurve(c, w, x, shape, times, T, error, segment, shiftK);
-    if (rate > 0) {
+    event.curve = makeCurve(c, w, x, shape, times, T, error, programme, shiftK);
+    if (segment.kind === 'heating') {
       const enthalpy = event.enthalpyJPerKg ?? input.crystallizationEnthalpyJPerKg;
       selfHeating = selfHeatingOf(c, event.curve, marks.height, enthalpy);
       if (selfHeating && !selfHeating.bound) event.selfHeating = selfHeating.number;
@@ -170,7 +175,7 @@ function cutEvent(
     height: bell.height,
   };
   const where = { ...c.where, event: number };
-  const rate = eventRate(c, marks, where);
+  const rate = eventRate(c, marks, segment, where);
   const shiftK = c.shiftAt(rate);
   const T = (t: number) => temperatureAt(w, t, width / 10) + shiftK;
   c.flags.push(

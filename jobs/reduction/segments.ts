@@ -1,9 +1,14 @@
 import type { Segment } from '../../schema/wire/reduced.ts';
+import { median } from '../numeric/statistics.ts';
 
 /** Blocks the programme is looked at in: fine enough for short holds, coarse enough for temperature noise. */
 const BLOCKS = 240;
-/** A block is a hold when its slope is below this fraction of the fastest sustained slope. */
+/** A block is a hold when its slope is below this fraction of the whole temperature span ÷ the whole time. */
 const HOLD_FRACTION = 0.03;
+/** A run that covers this part of the span is never too short: a fast ramp before a long hold takes few rows. */
+const SPAN_PART = 0.2;
+/** A ramp is split where its rate changes by this part, over runs as long as below. */
+const RATE_CHANGE = 0.25;
 /** Shorter runs than this many blocks belong to their neighbours (overshoot at a corner, noise). */
 const SHORTEST_RUN = 5;
 
@@ -25,11 +30,15 @@ export function findSegments(timeS: Float64Array, temperatureK: Float64Array): S
     // Neighbours on both sides are taken in: three blocks' slope is quieter and corners move by less than a block.
     slopes[b] = slopeOf(timeS, temperatureK, Math.max(0, from - size), Math.min(n, to + size));
   }
-  const fastest = Float64Array.from(slopes, Math.abs).sort()[Math.floor(0.95 * (count - 1))];
+  const block = (b: number) => temperatureK[Math.min(n - 1, b * size)];
+  const levels = Float64Array.from({ length: count + 1 }, (_, b) => block(b)).sort();
+  const spanK = levels[count] - levels[0];
+  const usual = spanK / (timeS[n - 1] - timeS[0]);
   const kinds: Kind[] = Array.from(slopes, (s) =>
-    Math.abs(s) < HOLD_FRACTION * fastest || fastest === 0 ? 'hold' : s > 0 ? 'heating' : 'cooling',
+    Math.abs(s) <= HOLD_FRACTION * usual ? 'hold' : s > 0 ? 'heating' : 'cooling',
   );
-  const runs = mergeShortRuns(kinds);
+  const covers = (run: Run) => Math.abs(block(run.to) - block(run.from)) > SPAN_PART * spanK;
+  const runs = mergeShortRuns(kinds, covers).flatMap((run) => splitByRate(run, slopes));
   return runs.map((run, i) => {
     const from = run.from * size;
     const to = i === runs.length - 1 ? n : run.to * size;
@@ -51,7 +60,31 @@ interface Run {
   to: number;
 }
 
-function mergeShortRuns(kinds: Kind[]): Run[] {
+/** Splits a ramp once or more where the slope of its blocks jumps and stays; a slow drift of the rate is no jump. */
+function splitByRate(run: Run, slopes: Float64Array): Run[] {
+  const length = run.to - run.from;
+  if (run.kind === 'hold' || length < 4 * SHORTEST_RUN) return [run];
+  let best = { at: 0, change: 0 };
+  for (let at = run.from + SHORTEST_RUN; at <= run.to - SHORTEST_RUN; at++) {
+    // Slopes of blocks reach over their neighbours: two blocks at the corner are looked past.
+    const before = median(slopes.subarray(at - SHORTEST_RUN, at - 1));
+    const behind = median(slopes.subarray(at + 1, at + SHORTEST_RUN));
+    const change = Math.abs(behind / before - 1);
+    if (change > best.change) best = { at, change };
+  }
+  if (!(best.change > RATE_CHANGE)) return [run];
+  const { at } = best;
+  const sides = [
+    { ...run, to: at },
+    { ...run, from: at },
+  ];
+  const [before, behind] = sides.map((r) => median(slopes.subarray(r.from, r.to)));
+  // Noise of a slow programme jumps back: only a change between the whole sides counts.
+  if (Math.abs(behind / before - 1) < RATE_CHANGE) return [run];
+  return sides.flatMap((side) => splitByRate(side, slopes));
+}
+
+function mergeShortRuns(kinds: Kind[], covers: (run: Run) => boolean): Run[] {
   let runs: Run[] = [];
   for (let b = 0; b < kinds.length; b++) {
     const last = runs[runs.length - 1];
@@ -63,7 +96,8 @@ function mergeShortRuns(kinds: Kind[]): Run[] {
     if (runs.length === 1) return runs;
     let at = -1;
     runs.forEach((run, i) => {
-      if (run.to - run.from < shortest && (at < 0 || run.to - run.from < runs[at].to - runs[at].from)) at = i;
+      if (run.to - run.from < shortest && !covers(run) && (at < 0 || run.to - run.from < runs[at].to - runs[at].from))
+        at = i;
     });
     if (at < 0) return runs;
     const before = runs[at - 1];
