@@ -14,7 +14,7 @@ import {
 import { CONVERSIONS, collectEvent, distinctRates, POOLED } from './event-data.ts';
 import { createFurtherEstimator, type FurtherEstimates, type FurtherPlan } from './further-estimates.ts';
 import { addAnalyticRows, addFurtherRows } from './further-rows.ts';
-import { findOutliers, judgeEnergy, judgeJmak } from './judge-event.ts';
+import { findOutliers, JMAK_RESIDUAL, judgeEnergy, judgeJmak } from './judge-event.ts';
 import { judgeTops, noteExponent, plotModels, reportFurther, reportModels } from './judge-model.ts';
 import { drawBuffer, drawColumns, modelScatter, type ScatterModel } from './monte-carlo.ts';
 import { RowBuilder } from './parameter-rows.ts';
@@ -120,9 +120,11 @@ function fitScans(
   const avrami = curveMethods ? judgeJmak(estimate, where) : [];
   const tops = curveMethods && judgeTops(data, curves, plots, where);
   if (tops && !avrami.some((f) => f.code === 'not-avrami')) avrami.push(tops);
+  // Scans out of place, as a bent law leaves them, say nothing against the shape.
+  const misshapen = Boolean(tops) || (estimate.jmak?.quality?.residualRms ?? 0) > JMAK_RESIDUAL;
   const plan: FurtherPlan = {
     ozawaTemperatures: curveMethods ? ozawaTemperatures(data, curves) : [],
-    sestakBerggren: avrami.some((f) => f.code === 'not-avrami'),
+    sestakBerggren: misshapen,
   };
   const more = curveMethods ? createFurtherEstimator(data, settings, plan)(estimate) : undefined;
   const { drawn, further, calibrationErrors } = runDraws(
@@ -148,7 +150,7 @@ function fitScans(
     reports.push(...told.reports, ...reportModels(event, plots));
     flags.push(...avrami, ...told.flags);
     const n = builder.rows.find((r) => r.quantity === 'avrami_exponent' && r.method === 'jmak');
-    if (!plan.sestakBerggren) flags.push(...noteExponent(n, where));
+    if (!misshapen) flags.push(...noteExponent(n, where));
   }
   builder.enthalpyRow();
   return { parameters: builder.rows, reports, flags };

@@ -10,7 +10,7 @@ const ENERGY_VARIES = 0.1;
 /** A scan this many robust sigmas from the trend is told. */
 const OUTLIER_SIGMAS = 4;
 /** A global JMAK fit with a residual above this in α does not describe the curves. */
-const JMAK_RESIDUAL = 0.03;
+export const JMAK_RESIDUAL = 0.03;
 /** … and one whose scans lie, in the mean, this many times their scatter from where the law puts them does not place them. */
 const JMAK_SHIFTS = 4;
 
