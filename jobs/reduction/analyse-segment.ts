@@ -7,7 +7,7 @@ import { reduceHold } from './hold.ts';
 import type { Room } from './isolate.ts';
 import { findMelting } from './melting.ts';
 import { reduceEvents, type Shown } from './reduce-event.ts';
-import type { ScanContext } from './scan-context.ts';
+import { offsetAt, type ScanContext } from './scan-context.ts';
 
 /** A further exotherm counts as an event from this part of the strongest one on. */
 const LEAST_PART = 0.06;
@@ -84,12 +84,13 @@ export function analyseSegment(
   });
   const T = (t: number) => interpolate(timeS, temperatureK, t);
   // A step or an onset comes late by the whole lag: the response delays it like everything else.
-  const lateK = c.input.calibration.offsetK + c.input.calibration.lagS * segment.rateKPerS;
+  const { calibration } = c.input;
+  const trueK = (t: number) => T(t) - offsetAt(calibration, T(t)) - calibration.lagS * segment.rateKPerS;
   return {
     events,
     shown,
-    ...(glass && { glass: { midpointK: T(glass.midpointS) - lateK, onsetK: T(glass.onsetS) - lateK } }),
-    ...(meltingS !== undefined && { meltingOnsetK: T(meltingS) - lateK }),
+    ...(glass && { glass: { midpointK: trueK(glass.midpointS), onsetK: trueK(glass.onsetS) } }),
+    ...(meltingS !== undefined && { meltingOnsetK: trueK(meltingS) }),
   };
 }
 

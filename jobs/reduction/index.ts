@@ -9,6 +9,7 @@ import { subtractReference } from './reference.ts';
 import { createContext, type ScanContext } from './scan-context.ts';
 import { findSegments } from './segments.ts';
 import { bridgeSpikes } from './spikes.ts';
+import { reduceStandard } from './standard.ts';
 import { makeTrace } from './trace.ts';
 
 type Refused = Extract<ReduceOutcome, { ok: false }>;
@@ -44,7 +45,9 @@ export function reduceScan(scan: ReadScan, input: ReduceInput): ReduceOutcome {
   if (input.role !== 'sample') {
     const s = chosen.candidates[0];
     const trace = makeTrace(scan.timeS, scan.temperatureK, scan.heatFlow, s.from, s.to, 0);
-    return { ok: true, reduced: { segments, segment: s.segment, events: [], trace, flags } };
+    const standard = input.role === 'standard' ? standardOf(scan, input, s) : undefined;
+    const reduced = { segments, segment: s.segment, ...(standard && { standard }), events: [], trace, flags };
+    return { ok: true, reduced };
   }
 
   const bridged = bridgeSpikes(scan.heatFlow);
@@ -64,7 +67,9 @@ export function reduceScan(scan: ReadScan, input: ReduceInput): ReduceOutcome {
     );
   }
   if (direction.flag) flags.push(direction.flag);
-  const factor = direction.sign / (scan.heatFlowUnit === 'V' ? (calibration.sensitivityVPerW ?? 1) : 1);
+  const factor =
+    (direction.sign * (calibration.heatFactor ?? 1)) /
+    (scan.heatFlowUnit === 'V' ? (calibration.sensitivityVPerW ?? 1) : 1);
   const y = factor === 1 ? heatFlow : heatFlow.map((v) => factor * v);
   const context = createContext(scan, y, input, flags);
   return { ok: true, reduced: reduceChosen(context, segments, chosen.candidates) };
@@ -108,7 +113,7 @@ function reduceChosen(c: ScanContext, segments: Segment[], candidates: Segment[]
     y,
     segment.from,
     segment.to,
-    c.shiftAt(segment.rateKPerS),
+    c.shiftAt(segment.rateKPerS, (segment.startK + segment.endK) / 2),
     found.shown,
   );
   return {
@@ -141,6 +146,13 @@ function massFromEnthalpy(c: ScanContext, events: ReducedEvent[]): number | unde
     ),
   );
   return massKg;
+}
+
+function standardOf(scan: ReadScan, input: ReduceInput, segment: Segment) {
+  const { y } = bridgeSpikes(scan.heatFlow);
+  const perWatt = scan.heatFlowUnit === 'V' ? (input.calibration.sensitivityVPerW ?? 1) : 1;
+  const said = input.exotherm ?? scan.exotherm;
+  return reduceStandard(scan, perWatt === 1 ? y : y.map((v) => v / perWatt), segment, said && said === 'up');
 }
 
 function spikeFlag(scan: ReadScan, rows: number[], where: object): Flag {

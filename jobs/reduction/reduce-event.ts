@@ -73,7 +73,7 @@ function completeEvent(
   const shape = shapeEvent(w, x, bell, responseS);
   const marks = findLandmarks(w, x, shape);
   const rate = eventRate(c, marks, segment, where);
-  const shiftK = c.shiftAt(rate);
+  const shiftK = c.shiftAt(rate, temperatureAt(w, marks.peakS, shape.widthS / 10));
   const T = (t: number) => temperatureAt(w, t, shape.widthS / 10) + shiftK;
   const perSecond = 1 / ((w.t[1] - w.t[0]) / w.binSize);
   const points = Math.round(marks.widthS * perSecond);
@@ -176,7 +176,7 @@ function cutEvent(
   };
   const where = { ...c.where, event: number };
   const rate = eventRate(c, marks, segment, where);
-  const shiftK = c.shiftAt(rate);
+  const shiftK = c.shiftAt(rate, temperatureAt(w, bell.peakS, width / 10));
   const T = (t: number) => temperatureAt(w, t, width / 10) + shiftK;
   c.flags.push(
     flag(

@@ -1,5 +1,5 @@
 import type { Flag } from '../../schema/wire/flags.ts';
-import type { ReadScan } from '../../schema/wire/scan.ts';
+import type { InstrumentCalibration, ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
 import { noiseSigma } from './find-event.ts';
 
@@ -15,8 +15,8 @@ export interface ScanContext {
   where: { file: string; sample: string; instrument: string };
   /** findings are added here */
   flags: Flag[];
-  /** K to add to a measured temperature at a rate (K/s): offset and the shift part of the lag off */
-  shiftAt: (rateKPerS: number) => number;
+  /** K to add to a measured temperature near `atK` at a rate (K/s): offset and the shift part of the lag off */
+  shiftAt: (rateKPerS: number, atK: number) => number;
 }
 
 export function createContext(scan: ReadScan, y: Float64Array, input: ReduceInput, flags: Flag[]): ScanContext {
@@ -29,6 +29,11 @@ export function createContext(scan: ReadScan, y: Float64Array, input: ReduceInpu
     ...(massKg !== undefined && { massKg }),
     where: { file, sample, instrument: calibration.instrument },
     flags,
-    shiftAt: (rate) => -calibration.offsetK - (calibration.lagS - Math.max(0, calibration.responseS ?? 0)) * rate,
+    shiftAt: (rate, atK) =>
+      -offsetAt(calibration, atK) - (calibration.lagS - Math.max(0, calibration.responseS ?? 0)) * rate,
   };
 }
+
+/** Offset at a temperature, K: linear where standards of several metals say so. */
+export const offsetAt = ({ offsetK, offsetSlope, offsetAtK }: InstrumentCalibration, atK: number): number =>
+  offsetK + (offsetSlope === undefined || offsetAtK === undefined ? 0 : offsetSlope * (atK - offsetAtK));

@@ -1,0 +1,146 @@
+import type { StandardMelting } from '../../schema/wire/reduced.ts';
+import type { InstrumentCalibration, InstrumentSheetRow } from '../../schema/wire/scan.ts';
+import { studentQuantile } from '../numeric/distributions.ts';
+import { solveSymmetric } from '../numeric/linear-solve.ts';
+import { mean, median, standardDeviation } from '../numeric/statistics.ts';
+import { calibrationFromSheet } from './sheet.ts';
+
+/** One scan of a standard with what is known of the substance. */
+export interface StandardObservation {
+  melting: StandardMelting;
+  /** K and J/kg, from the built-in list or samples.csv */
+  meltingK: number;
+  enthalpyJPerKg?: number;
+  heatCapacityJPerKgK?: number;
+  massKg?: number;
+  /** the area is J/kg already */
+  perMass: boolean;
+}
+
+/** Scatter between scans that noise does not know of (contact, position), K. */
+const SCATTER_K = 0.02;
+/** A linear offset needs metals this far apart and this many scans more than parameters. */
+const SLOPE = { apartK: 40, spare: 2 };
+/** Another mass and contact than the standard's: the error of the lag is this much wider (METHODS 3). */
+const OTHER_MASS = 1.3;
+/** A tail is a response where it is this much slower than the standard's own contact lets it be. */
+const SLOWER_THAN_CONTACT = 1.3;
+
+/**
+ * Offset, lag and heat factor of an instrument: T_onset − T_melting = a + b (T − T̄) + τ β by weighted least squares (METHODS 3), b only
+ * with metals far enough apart, τ only with two distinct rates (else the sheet's or the prior's is kept). The covariance is scaled by the
+ * residuals and by Student's t ÷ normal quantile, so that ± 1.96 standard errors hold 95 %.
+ * @param highestRateKPerS of the instrument's scans, K/s
+ * @returns the sheet's calibration when there is no observation
+ */
+export function calibrateFromStandards(
+  instrument: string,
+  row: InstrumentSheetRow | undefined,
+  highestRateKPerS: number,
+  observations: readonly StandardObservation[],
+): InstrumentCalibration {
+  const sheet = calibrationFromSheet(instrument, row, highestRateKPerS);
+  if (observations.length === 0) return sheet;
+  const rates = observations.map(({ melting }) => melting.rateKPerS);
+  const manyRates = Math.max(...rates) > 1.2 * Math.min(...rates);
+  const temperatures = observations.map(({ meltingK }) => meltingK);
+  const middleK = mean(temperatures);
+  const n = observations.length;
+  const apart = Math.max(...temperatures) - Math.min(...temperatures) > SLOPE.apartK;
+  const terms = [() => 1, ...(manyRates ? [(i: number) => rates[i]] : [])];
+  if (apart && n >= terms.length + 1 + SLOPE.spare) terms.push((i) => temperatures[i] - middleK);
+  const withSlope = terms.length > (manyRates ? 2 : 1);
+  const late = observations.map(
+    ({ melting, meltingK }) => melting.onsetK - meltingK - (manyRates ? 0 : sheet.lagS * melting.rateKPerS),
+  );
+  const fit = fitWeighted(
+    terms,
+    late,
+    observations.map(({ melting }) => Math.hypot(melting.onsetErrorK, SCATTER_K)),
+  );
+  if (!fit) return sheet;
+  const at = { offset: 0, lag: manyRates ? 1 : -1, slope: withSlope ? terms.length - 1 : -1 };
+  const places = [at.offset, at.lag, at.slope];
+  const covariance = places.flatMap((i) =>
+    places.map((j) => (i < 0 || j < 0 ? 0 : fit.covariance[i * terms.length + j])),
+  );
+  const lagS = manyRates ? fit.solution[at.lag] : sheet.lagS;
+  const resistances = observations.flatMap(({ melting }) => melting.resistanceKPerW ?? []);
+  const responseS = row?.responseS ?? responseFromTails(observations, lagS);
+  const { responseS: _unused, ...plain } = sheet;
+  return {
+    ...plain,
+    source: 'standards',
+    offsetK: fit.solution[at.offset],
+    offsetSeK: Math.sqrt(covariance[0]),
+    lagS,
+    lagSeS: manyRates ? OTHER_MASS * Math.sqrt(covariance[4]) : sheet.lagSeS,
+    ...(responseS !== undefined && { responseS }),
+    standards: n,
+    ...(withSlope && { offsetSlope: fit.solution[at.slope], offsetAtK: middleK }),
+    covariance,
+    ...heatFactorOf(observations),
+    ...(resistances.length > 0 && { resistanceKPerW: median(resistances) }),
+  };
+}
+
+function fitWeighted(
+  terms: readonly ((i: number) => number)[],
+  values: readonly number[],
+  errors: readonly number[],
+): { solution: Float64Array; covariance: Float64Array } | undefined {
+  const p = terms.length;
+  const covariance = new Float64Array(p * p);
+  const solution = new Float64Array(p);
+  values.forEach((value, k) => {
+    const weight = 1 / errors[k] ** 2;
+    for (let i = 0; i < p; i++) {
+      solution[i] += weight * terms[i](k) * value;
+      for (let j = 0; j < p; j++) covariance[i * p + j] += weight * terms[i](k) * terms[j](k);
+    }
+  });
+  if (!solveSymmetric(covariance, solution, p)) return undefined;
+  const degrees = values.length - p;
+  let scale = 1;
+  if (degrees > 0) {
+    let chi = 0;
+    values.forEach((value, k) => {
+      let fitted = 0;
+      for (let i = 0; i < p; i++) fitted += solution[i] * terms[i](k);
+      chi += ((value - fitted) / errors[k]) ** 2;
+    });
+    scale = (chi / degrees) * (studentQuantile(0.975, degrees) / NORMAL_975) ** 2;
+  }
+  return { solution, covariance: covariance.map((v) => v * scale) };
+}
+
+const NORMAL_975 = 1.959964;
+
+/** True heat ÷ measured heat from the areas (ASTM E968), and its standard error. */
+function heatFactorOf(observations: readonly StandardObservation[]): { heatFactor?: number; heatFactorSe?: number } {
+  const factors = observations.flatMap(({ melting, enthalpyJPerKg, massKg, perMass }) => {
+    const heat =
+      enthalpyJPerKg === undefined ? undefined : perMass ? enthalpyJPerKg : massKg && massKg * enthalpyJPerKg;
+    return heat ? [heat / melting.area] : [];
+  });
+  if (factors.length === 0) return {};
+  const heatFactor = mean(factors);
+  const single = Math.max(...observations.map(({ melting }) => melting.areaError / melting.area)) * heatFactor;
+  const heatFactorSe = factors.length > 1 ? standardDeviation(factors) / Math.sqrt(factors.length) : single;
+  return { heatFactor, heatFactorSe };
+}
+
+/**
+ * First-order response from the tails behind the peaks, which fall as exp(−t/τ_r) (METHODS 4.7), where they cannot be the standard's own
+ * contact: that falls with R_th m c_p, R_th being the leading edge's resistance.
+ */
+function responseFromTails(observations: readonly StandardObservation[], lagS: number): number | undefined {
+  const responses = observations.flatMap(({ melting, massKg, heatCapacityJPerKgK }) => {
+    if (melting.tailS === undefined || melting.resistanceKPerW === undefined) return [];
+    if (massKg === undefined || heatCapacityJPerKgK === undefined) return [];
+    const contactS = melting.resistanceKPerW * massKg * heatCapacityJPerKgK;
+    return melting.tailS > SLOWER_THAN_CONTACT * contactS ? [melting.tailS] : [];
+  });
+  if (responses.length < Math.ceil(observations.length / 2)) return undefined;
+  return Math.min(median(responses), Math.max(0, lagS));
+}
