@@ -1,7 +1,7 @@
-import { pathToFileURL } from 'node:url';
-import { type Client, createClient, type InStatement } from '@libsql/client';
+import type { Client, InStatement } from '@libsql/client';
 import { drizzle } from 'drizzle-orm/libsql';
 import type { Database } from '../ports/index.ts';
+import { createFileClient } from './file-client.ts';
 
 /** The driver waits for a lock inside the event loop, so it waits only this long; the rest of the waiting is asynchronous. */
 const BUSY_TIMEOUT_MS = 25;
@@ -31,15 +31,10 @@ async function retryBusy<T>(client: Client, work: () => Promise<T>): Promise<T> 
     } catch (error) {
       if (!isBusy(error)) throw error;
       await client.reconnect();
-      await prepareConnection(client);
       if (tries >= WRITE_TRIES) throw error;
       await pause();
     }
   }
-}
-
-async function prepareConnection(client: Client): Promise<void> {
-  await client.execute(`pragma synchronous = normal`);
 }
 
 /** The same client, each call of which is repeated when busy, and whose batches take the write lock at their start. */
@@ -73,13 +68,9 @@ function withWriteBatches(client: Client): Client {
  * whole while other processes hold the lock: hand it one statement or one batch.
  */
 export async function openFileDatabase(path: string): Promise<Database> {
-  const url = pathToFileURL(path).href;
-  const writer = createClient({ url, timeout: BUSY_TIMEOUT_MS, concurrency: 1 });
-  await retryBusy(writer, async () => {
-    await writer.execute('pragma journal_mode = wal');
-    await prepareConnection(writer);
-  });
-  const reader = createClient({ url, timeout: BUSY_TIMEOUT_MS });
+  const writer = createFileClient(path, BUSY_TIMEOUT_MS);
+  await retryBusy(writer, () => writer.execute('pragma journal_mode = wal'));
+  const reader = createFileClient(path, BUSY_TIMEOUT_MS);
   const write = drizzle(withWriteBatches(writer));
   let last: Promise<unknown> = Promise.resolve();
   return {
