@@ -1,7 +1,7 @@
 import type { FitScan } from '../../schema/wire/parameters.ts';
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import type { SharedLaw, SharedLawDraws } from '../../schema/wire/shared-law.ts';
-import type { InstrumentRange } from '../../schema/wire/verdicts.ts';
+import type { InstrumentRange, Verdict } from '../../schema/wire/verdicts.ts';
 
 /** What the next scan is to narrow. `now`: the 95 % width that the results show, in the unit of advice.csv; without it the linearised one is taken. */
 export type AdviceGoal =
@@ -20,6 +20,8 @@ export interface AdviceInput {
   /** J/mol, E at α = 0.5 */
   energyJPerMol: number;
   avramiExponent: number;
+  /** Which law the forecasts rest on; without one the bend and all lags count as free */
+  verdict?: Verdict;
   meltingK?: number;
   law?: SharedLaw;
   lawDraws?: SharedLawDraws;

@@ -4,7 +4,9 @@ import { analyseBend, degreesLeft } from '../glass/verdict/analyse.ts';
 import { collectJudged, lawData } from '../glass/verdict/collect.ts';
 import type { ConditionValue } from '../glass/verdict/condition.ts';
 import type { LawData, LawFit } from '../glass/verdict/law-fit.ts';
+import { fitSharedLaw } from '../glass/verdict/shared-law.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
+import { createRandom } from '../numeric/random.ts';
 import { standardDeviation } from '../numeric/statistics.ts';
 import type { Candidate } from './advice-candidates.ts';
 import type { AdviceInput } from './advice-input.ts';
@@ -18,33 +20,30 @@ export interface AdviceAnalysis {
   sigmaK: readonly number[];
   /** B = q × span */
   span: number;
-  /** false where the fit holds the bend at 0 */
-  bendFree: boolean;
 }
 
 /**
- * The fit behind the shared law, made again from the scans: bend and lags free, or straight with lags as calibrated where the law is straight.
+ * The fit behind a goal, made again from the scans: for the bend the law with bend and lags free, for a forecast the shared law of the verdict.
  * @returns undefined where the scans are too few for it
  */
-export function analyseForAdvice({ event, scans, instruments, law }: AdviceInput): AdviceAnalysis | undefined {
+export function analyseForAdvice(
+  { sample, event, scans, instruments, verdict }: AdviceInput,
+  goal: 'bend' | 'forecast',
+): AdviceAnalysis | undefined {
   const judged = collectJudged(event, scans, instruments);
   const { data, own } = lawData(judged, judged.hasCentroid ? 'centroid' : 'peak');
   if (degreesLeft(data) < 1) return undefined;
   const found = analyseBend(data, own, undefined, 0);
   if (!found) return undefined;
-  const straight = law?.bend === 0;
+  const fit =
+    goal === 'bend'
+      ? found.full
+      : fitSharedLaw(sample, judged, found, verdict ?? 'undecided', undefined, createRandom(''), 0).fit;
   const sigmaK = judged.instruments.map((_, j) => {
     const errors = own.filter((__, i) => data.instrument[i] === j);
     return Math.sqrt(found.scatter.varianceK2[j] + errors.reduce((s, v) => s + v * v, 0) / errors.length);
   });
-  return {
-    data,
-    fit: straight ? found.laws.A : found.full,
-    instruments: judged.instruments.map((c) => c.instrument),
-    sigmaK,
-    span: found.span,
-    bendFree: !straight,
-  };
+  return { data, fit, instruments: judged.instruments.map((c) => c.instrument), sigmaK, span: found.span };
 }
 
 /** The forecast of a time at a constant temperature as a goal: derivatives of log10 t, and the exponent's share of its variance. */

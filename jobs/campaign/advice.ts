@@ -93,14 +93,13 @@ export function scansToReach(width: Width, { instrument, rateKPerS }: Candidate,
 /** The width of a goal as a function of further scans; the fits behind it are made once. */
 export function widthOf(input: AdviceInput, goal: AdviceGoal): Width {
   if (goal.goal === 'energy') return energyWidth(input);
-  const analysis = analyseForAdvice(input);
+  const analysis = analyseForAdvice(input, goal.goal);
   if (!analysis) return () => undefined;
   const precision = new LawPrecision(analysis);
   const wanted: LawGoal =
     goal.goal === 'bend'
       ? { gradient: [0, 0, analysis.span], exponentVariance: 0 }
       : forecastGoal(analysis, goal.conversion, goal.temperatureK, input);
-  if (goal.goal === 'bend' && !analysis.bendFree) return () => undefined;
   return (more) => precision.width(wanted, more);
 }
 

@@ -1,6 +1,7 @@
 import type { MeltingData } from '../../schema/wire/forecasts.ts';
 import type { SharedLaw, SharedLawDraws } from '../../schema/wire/shared-law.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
+import { lnDrivingFactor, turnbullDrivingForce } from '../glass/driving-force.ts';
 import { bentLogRate, localEnergy } from '../laws/bend.ts';
 
 /** ln K(T), K in 1/s, with what an integration along a programme must know of it. */
@@ -79,15 +80,11 @@ export function straightRateCurve(law: SharedLaw, p: LawParameters, melting?: Me
   );
 }
 
-/**
- * ln[1 − exp(−Δμ/RT)] with Δμ = ΔH_m (T_m − T)/T_m (Turnbull 1950, J. Appl. Phys. 21:1022); −∞ from the melting temperature up. Without an
- * enthalpy the factor is 1 below melting.
- */
-export function lnDrivingForce({ meltingK, enthalpyJPerMol }: MeltingData, temperatureK: number): number {
+/** ln[1 − exp(−Δμ/RT)]; −∞ from the melting temperature up. Without an enthalpy the factor is 1 below melting. */
+function lnDrivingForce({ meltingK, enthalpyJPerMol }: MeltingData, temperatureK: number): number {
   if (temperatureK >= meltingK) return Number.NEGATIVE_INFINITY;
   if (enthalpyJPerMol === undefined) return 0;
-  const drive = (enthalpyJPerMol / GAS_CONSTANT) * (1 / temperatureK - 1 / meltingK);
-  return Math.log(-Math.expm1(-drive));
+  return lnDrivingFactor(turnbullDrivingForce({ temperatureK: meltingK, enthalpyJPerMol }, temperatureK), temperatureK);
 }
 
 /** The law was fitted with the driving force in it: it enters only above the measured temperatures, relative to its value at the highest. */
