@@ -19,7 +19,12 @@ import { judgeTops, noteExponent, plotModels, reportFurther, reportModels } from
 import { drawBuffer, drawColumns, modelScatter, type ScatterModel } from './monte-carlo.ts';
 import { RowBuilder } from './parameter-rows.ts';
 import { LATEST_START } from './peak-methods.ts';
-import { findNonMonotonicSeries, findOnsetsAbovePeak, findRateIndependence } from './series-checks.ts';
+import {
+  findNonMonotonicSeries,
+  findOnsetsAbovePeak,
+  findRateIndependence,
+  findUndeterminedEnergy,
+} from './series-checks.ts';
 import { assumeFullResponse, unknownResponses, variantRows } from './variants.ts';
 
 export interface EventFit {
@@ -140,6 +145,8 @@ function fitScans(
   const reports = reportFits(event, estimate, curves.length);
   if (late >= 0) reports.push(notComputed(event, 'augis_bennett', 'a ramp starts too near its peak', data.n));
   builder.peakRows(estimate, settings);
+  const undetermined = findUndeterminedEnergy(builder.rows, where);
+  if (undetermined) flags.push(undetermined);
   if (more) {
     const varies = judgeEnergy(estimate, drawn, model, where);
     if (varies) flags.push(varies);

@@ -1,4 +1,5 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
+import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { fitLine } from '../numeric/line.ts';
 import type { EventData } from './event-data.ts';
 
@@ -25,6 +26,20 @@ export function findRateIndependence(data: EventData, where: Where): Flag | unde
     'rate-independent',
     `The temperature of event ${where.event} does not rise with heating rate: ${slope.toFixed(2)} ± ${slopeError.toFixed(2)} K for each factor e in rate, where a crystallisation shifts by 5 to 50 K. No activation energy was computed.`,
     'Check that this is the exotherm meant: melting and other equilibrium transitions do not move with rate. Measure over a wider span of rates if it is.',
+    where,
+  );
+}
+
+/** A Kissinger energy whose interval by Student's t holds zero: a number is given, but the data do not determine it. */
+export function findUndeterminedEnergy(rows: readonly ParameterRow[], where: Where): Flag | undefined {
+  const row = rows.find(
+    (r) => r.quantity === 'activation_energy' && r.method === 'kissinger' && r.interval === 'student_t',
+  );
+  if (!row || row.lower95 === null || row.lower95 > 0) return undefined;
+  return flag(
+    'energy-undetermined',
+    `Kissinger’s E of event ${where.event}, ${row.value.toFixed(0)} kJ/mol, has a 95 % interval by Student’s t of ± ${(row.value - row.lower95).toFixed(0)} kJ/mol on ${row.scan_count} scans: it holds zero.`,
+    'Measure more rates over a wider span, or repeat these; do not quote this E.',
     where,
   );
 }

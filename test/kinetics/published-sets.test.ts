@@ -128,6 +128,15 @@ describe('traps are told, not fitted in silence', () => {
     expect(fit.reason).toMatch(/does not rise with heating rate/);
     expect(fit.reports[0]).toMatchObject({ method: 'kissinger', converged: false });
   });
+  test('Ge-Ga-Se, x = 0.5 (10.1016/S0022-3093(01)01127-9): 167.8 with a standard error of 23.1 (apart) on three rates is not determined', () => {
+    // t(0.975, 1) = 12.706 (NIST/SEMATECH e-Handbook 1.3.6.7.2): ± 293 kJ/mol.
+    const told = fitOf(peakTable([5, 10, 20], kelvin([476, 490, 513]))).flags.find(
+      (f) => f.code === 'energy-undetermined',
+    );
+    expect(told?.detail).toMatch(/168 kJ\/mol.*± 293/);
+    const sure = fitOf(peakTable([5, 10, 20], kelvin([452, 473, 494])));
+    expect(codes(sure)).not.toContain('energy-undetermined');
+  });
   test('Zr54Cu46 at 15 K/min: the printed Tx 706.4 lies above the printed peak 705.4', () => {
     const fit = fitOf(peakTable([5, 10, 15, 20], [695.2, 700.7, 705.4, 711.3], [689.5, 697.2, 706.4, 708.0]));
     const told = fit.flags.filter((f) => f.code === 'onset-above-peak');
