@@ -1,3 +1,5 @@
+import { FORECAST_TABLES } from './forecasts.ts';
+
 /**
  * Columns of the result files, in order (INTERFACES, "Result files of run"). The CSV files of `run`, the `?format=csv`
  * answers and the JSON keys of the API all come from this one place. Add columns at the end; never rename.
@@ -71,8 +73,27 @@ export const RESULT_TABLES = {
   ],
   coverage: ['sample', 'decade_low_K_per_s', 'decade_high_K_per_s', 'instrument', 'scan_count', 'rates'],
   gaps: ['sample', 'code', 'detail', 'action'],
+  ...FORECAST_TABLES,
   flags: ['severity', 'code', 'sample', 'instrument', 'file', 'event', 'detail', 'action'],
 } as const satisfies Record<string, readonly string[]>;
+
+/** Columns of verdicts.csv; joins RESULT_TABLES with the step that stores verdicts. */
+export const VERDICT_COLUMNS = [
+  'sample',
+  'event',
+  'verdict',
+  'bend',
+  'bend_lower99',
+  'bend_upper99',
+  'p_value',
+  'delta_aicc',
+  'energy_low_rate_kJ_per_mol',
+  'energy_high_rate_kJ_per_mol',
+  'instruments',
+  'rate_min_K_per_s',
+  'rate_max_K_per_s',
+  'decides_next',
+] as const;
 
 export type ResultTable = keyof typeof RESULT_TABLES;
 

@@ -81,11 +81,22 @@ export function drawCampaign(random: Random, seed: string, wish: CampaignWish = 
     const chip = j === 1;
     const offsetSeK = known ? (chip ? 0.5 : 0.1) : chip ? 1 : 0.5;
     const wrong = lags === 'wrong' && (chip || random.uniform() < 0.3);
-    const lagS = !known ? 0 : wrong ? (random.uniform() < 0.75 ? trueLag[j] / factor : trueLag[j] * Math.min(factor, 3)) : trueLag[j];
+    const lagS = !known
+      ? 0
+      : wrong
+        ? random.uniform() < 0.75
+          ? trueLag[j] / factor
+          : trueLag[j] * Math.min(factor, 3)
+        : trueLag[j];
     const lagSeS = known ? 0.05 * lagS : chip ? 0.3e-3 : 3;
     // A file that was corrected before it came has no lag left; self-heating makes the sample lead its sensor.
     const actual = lags === 'negative' ? 0 : lags === 'self-heating' ? -0.4 * trueLag[j] : trueLag[j];
-    const stated = lags === 'negative' ? lagS : lags === 'self-heating' ? 0 : lagS * (known && !wrong ? 1 + 0.05 * random.normal() : 1);
+    const stated =
+      lags === 'negative'
+        ? lagS
+        : lags === 'self-heating'
+          ? 0
+          : lagS * (known && !wrong ? 1 + 0.05 * random.normal() : 1);
     truth.push({ offsetK: offsetSeK * random.normal(), lagS: actual, responseShare: actual > 0 ? response : 0 });
     net[j] = actual - stated;
     instruments.push({
@@ -109,9 +120,12 @@ export function drawCampaign(random: Random, seed: string, wish: CampaignWish = 
   };
   const used = wish.instruments === 'furnace' ? [0] : wish.instruments === 'chip' ? [1] : [0, 1];
   const scans = used.flatMap((j) =>
-    rates[j].flatMap((rate) => Array.from({ length: replicates }, (_, r) => measure(INSTRUMENTS[j], rate, String(r + 1)))),
+    rates[j].flatMap((rate) =>
+      Array.from({ length: replicates }, (_, r) => measure(INSTRUMENTS[j], rate, String(r + 1))),
+    ),
   );
-  const ideal = (rate: number) => exactEvent(material.law, exponent, rate, { offsetK: 0, lagS: 0, responseShare: 0 }, material.fastestK);
+  const ideal = (rate: number) =>
+    exactEvent(material.law, exponent, rate, { offsetK: 0, lagS: 0, responseShare: 0 }, material.fastestK);
   const lowK = ideal(rates[used[0]][0]).centroidK;
   const highK = ideal(rates[used[used.length - 1]].at(-1)!).centroidK;
   return {
@@ -178,7 +192,8 @@ function drawMaterial(kind: VerdictCampaign['kind'], tg: number, random: Random,
     };
   }
   const energy = R * peakK * random.between(30, 60);
-  if (kind === 'straight') return { law: arrheniusLawWithPeak(energy, peakK, TEN_K_PER_MIN), facts: {}, fastestK: 4000 };
+  if (kind === 'straight')
+    return { law: arrheniusLawWithPeak(energy, peakK, TEN_K_PER_MIN), facts: {}, fastestK: 4000 };
   const bend = wish.bend ?? random.betweenLog(0.05, 2.3);
   // The wished bend is meant over 0.05 to 30 000 K/s: u has to be ±1 there; and however large, E/(R T) stays that of a real event (≥ 15).
   let settings = { energyJPerMol: energy, bend, centreK: 1.12 * peakK, halfSpanPerK: 0.05 / peakK, lnKCentre: 0 };

@@ -19,7 +19,13 @@ export interface BendAnalysis {
   bend: number;
   lower99: number;
   upper99: number;
+  /** from the linear error, for the test that there is no bend */
+  lower95: number;
+  upper95: number;
   halfWidth99: number;
+  /** of q, and degrees of freedom behind it */
+  standardError: number;
+  degrees: number;
   pValue: number;
   degreesOfFreedom: number;
   stateDiffers: boolean;
@@ -106,7 +112,8 @@ export function analyseBend(
     if (!full.converged) return undefined;
   }
   const near = [full.lnK0, full.lnEnergy, full.q];
-  const fit = (bend: LawSettings['bend'], lags: LagMode) => fitLaw(d, { bend, lags: modes(d, lags), state: false }, near);
+  const fit = (bend: LawSettings['bend'], lags: LagMode) =>
+    fitLaw(d, { bend, lags: modes(d, lags), state: false }, near);
   const laws = {
     A: bestOf(d, { bend: 0, lags: modes(d, 'calibrated'), state: false }, near, start),
     L: bestOf(d, { bend: 0, lags: modes(d, 'free'), state: false }, near, start),
@@ -121,9 +128,11 @@ export function analyseBend(
   const observed = Math.sqrt(Math.max(0, straight.deviance - full.deviance));
   let limits: [number, number] = [full.q - t * se, full.q + t * se];
   let pValue = Number.NaN;
+  let inflation = 1;
   if (random) {
     const boot = bootstrapBend(d, own, full, degrees, observed, random, draws);
     pValue = boot.pValue;
+    inflation = boot.inflation;
     limits = profileLimits(d, full, t * boot.inflation, se);
   }
   const beyond = (bend: LawSettings['bend'], free: LawFit) =>
@@ -143,6 +152,10 @@ export function analyseBend(
     bend: full.q * span,
     lower99: Math.min(limits[0] * span, limits[1] * span),
     upper99: Math.max(limits[0] * span, limits[1] * span),
+    lower95: (full.q - studentQuantile(0.975, degrees) * inflation * se) * span,
+    upper95: (full.q + studentQuantile(0.975, degrees) * inflation * se) * span,
+    standardError: se,
+    degrees,
     halfWidth99: (Math.abs(limits[1] - limits[0]) / 2) * span,
     pValue,
     degreesOfFreedom: degreesLeft(d, state !== undefined),

@@ -80,4 +80,3 @@ export function effectiveDegrees(d: LawData, fit: LawFit, at: number, degrees: F
   for (let j = 0; j < d.instruments; j++) sum += shares[j] ** 2 / degrees[j];
   return Math.max(1, Math.min(1e4, (total * total) / sum));
 }
-

@@ -1,0 +1,150 @@
+import type { SharedLaw, SharedLawDraws } from '../../../schema/wire/shared-law.ts';
+import type { Verdict } from '../../../schema/wire/verdicts.ts';
+import { localEnergy } from '../../laws/bend.ts';
+import type { Random } from '../../numeric/random.ts';
+import { mean, median } from '../../numeric/statistics.ts';
+import { type BendAnalysis, trueLimits } from './analyse.ts';
+import { exponentOfCurve, exponentOfWidth, type JudgedEvent } from './collect.ts';
+import { Condition, type ConditionValue } from './condition.ts';
+import { fitLaw, type LagMode, type LawFit, type LawSettings } from './law-fit.ts';
+
+export interface SharedFit {
+  law: SharedLaw;
+  draws: SharedLawDraws;
+  fit: LawFit;
+  /** temperature of the material at each scan, offset and lag taken out, K */
+  trueK: Float64Array;
+  /** n of each scan's curve (of its width where it has none) */
+  exponents: Float64Array;
+  /** n − p of the fit, for Student's t on the draws */
+  degrees: number;
+}
+
+/**
+ * The law that goes into forecasts: JMAK with the verdict's K(T) over all scans of the event. ln K0, E0 and q come from the characteristic
+ * temperatures, each instrument's offset and lag within what calibration allows, lags free where calibration is contradicted or knows
+ * nothing; n from the shape of every curve under that law, so that a lag, which moves a curve as a whole, cannot reach it.
+ * `straight` and `instrument` hold q at 0, `material` leaves it free; `undecided` takes the law that AICc favours.
+ */
+export function fitSharedLaw(
+  sample: string,
+  judged: JudgedEvent,
+  a: BendAnalysis,
+  verdict: Verdict,
+  glassTransitionK: number | undefined,
+  random: Random,
+  draws: number,
+): SharedFit {
+  const { data: d } = a;
+  const settings = settingsOf(a, judged, verdict);
+  const fit = fitLaw(d, settings, [a.full.lnK0, a.full.lnEnergy, a.full.q]);
+  const trueK = Float64Array.from({ length: d.n }, (_, i) =>
+    materialK(d.temperatureK[i] - fit.residualK[i], fit, d, i),
+  );
+  const exponents = exponentsUnder(judged, a, fit);
+  const exponent = median(exponents);
+  const { low, high } = trueLimits(d, fit);
+  const drawn: SharedLawDraws = {
+    lnRateAtMiddle: new Float64Array(draws),
+    energyJPerMol: new Float64Array(draws),
+    bend: new Float64Array(draws),
+    avramiExponent: new Float64Array(draws),
+  };
+  const T = new Float64Array(d.n);
+  const priors = new Float64Array(fit.layout.rows - d.n);
+  const pick = new Float64Array(d.n);
+  for (let k = 0; k < draws; k++) {
+    resample(a, fit, random, T);
+    for (let i = 0; i < priors.length; i++) priors[i] = random.normal();
+    for (let i = 0; i < d.n; i++) pick[i] = exponents[random.integer(d.n)];
+    const f = fitLaw(d, settings, fit.parameters, T, priors);
+    const ok = f.converged;
+    drawn.lnRateAtMiddle[k] = ok ? f.lnK0 : fit.lnK0;
+    drawn.energyJPerMol[k] = Math.exp(ok ? f.lnEnergy : fit.lnEnergy);
+    drawn.bend[k] = ok ? f.q : fit.q;
+    drawn.avramiExponent[k] = mean(pick);
+  }
+  return {
+    law: {
+      sample,
+      event: judged.event,
+      lnRateAtMiddle: fit.lnK0,
+      energyJPerMol: Math.exp(fit.lnEnergy),
+      bend: fit.q,
+      x0PerK: d.scale.x0,
+      dxPerK: d.scale.dx,
+      avramiExponent: exponent,
+      frozenBelowK: Math.min(low, glassTransitionK ?? Number.POSITIVE_INFINITY),
+      lowestMeasuredK: low,
+      highestMeasuredK: high,
+      ...(glassTransitionK !== undefined && { glassTransitionK }),
+    },
+    draws: drawn,
+    fit,
+    trueK,
+    exponents,
+    degrees: Math.max(1, d.n - fit.layout.p + d.instruments),
+  };
+}
+
+function settingsOf(a: BendAnalysis, judged: JudgedEvent, verdict: Verdict): LawSettings {
+  if (verdict === 'undecided') return { ...favoured(a).settings, state: a.stateDiffers };
+  const bent = verdict === 'material';
+  const beyond = bent ? a.lagBeyond.bent : a.lagBeyond.straight;
+  const lags = judged.instruments.map((c, j): LagMode => {
+    if (beyond[j]) return 'free';
+    return c.source === 'prior' && bent ? 'free' : 'calibrated';
+  });
+  return { bend: bent ? 'free' : 0, lags, state: a.stateDiffers };
+}
+
+/** Of the four laws the one with the lowest AICc; the plainest where the scans are too few for the others. */
+function favoured({ data: d, laws }: BendAnalysis): LawFit {
+  let best = laws.A;
+  let lowest = Number.POSITIVE_INFINITY;
+  for (const [fit, k] of [
+    [laws.A, 2],
+    [laws.L, 2 + d.instruments],
+    [laws.G, 3],
+    [laws.GL, 3 + d.instruments],
+  ] as const) {
+    const room = d.n - k - 1;
+    const aicc = room > 0 ? fit.deviance + 2 * k + (2 * k * (k + 1)) / room : Number.POSITIVE_INFINITY;
+    if (aicc < lowest) {
+      lowest = aicc;
+      best = fit;
+    }
+  }
+  return best;
+}
+
+const materialK = (T: number, fit: LawFit, d: BendAnalysis['data'], i: number): number =>
+  T - fit.offsetK[d.instrument[i]] - fit.lagS[d.instrument[i]] * d.rate[i];
+
+/** n a scan under a fitted law: from its curve, or from its width where it has no curve. */
+export function exponentsUnder(judged: JudgedEvent, { data: d }: BendAnalysis, fit: LawFit): Float64Array {
+  const half = new Condition('half', 1);
+  const at: ConditionValue = { value: 0, byTemperature: 0, byLogEnergy: 0, byBend: 0 };
+  return Float64Array.from(judged.scans, (scan, i) => {
+    const shift = -fit.offsetK[d.instrument[i]] - fit.lagS[d.instrument[i]] * d.rate[i] - fit.residualK[i];
+    const fromCurve = exponentOfCurve(scan, (T) => {
+      half.evaluate(T + shift, fit.lnK0, fit.lnEnergy, fit.q, d.scale, at);
+      return at.value;
+    });
+    if (fromCurve !== undefined) return fromCurve;
+    const trueK = d.temperatureK[i] + shift;
+    return exponentOfWidth(scan.event.widthK, trueK, localEnergy(1 / trueK, Math.exp(fit.lnEnergy), fit.q, d.scale));
+  });
+}
+
+/**
+ * Whole residuals of randomly chosen scans, divided by their own standard error and multiplied by the target's, times 1/√(1 − leverage), on
+ * the law's temperatures (METHODS 11). Residuals come from the law with bend and lags free, so that neither counts as scatter.
+ */
+function resample({ data: d, full }: BendAnalysis, fit: LawFit, random: Random, out: Float64Array): void {
+  for (let i = 0; i < d.n; i++) {
+    const from = random.integer(d.n);
+    const lift = Math.sqrt(d.variance[i] / (d.variance[from] * (1 - full.leverage[from])));
+    out[i] = d.temperatureK[i] - fit.residualK[i] + lift * full.residualK[from];
+  }
+}
