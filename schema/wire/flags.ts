@@ -80,6 +80,11 @@ export const FLAG_CODES = {
   'forecast-straight': ['warn', 'a model-free forecast is straight while the material’s law bends'],
   'not-reached': ['note', 'a conversion is not reached within the programme or below any temperature'],
   'quench-nuclei': ['warn', 'a critical cooling rate from heating data counts the nuclei of the quench'],
+  'too-few-scans': ['warn', 'too few scans to tell a bend of the material from a lag'],
+  'lag-beyond-calibration': ['warn', 'an instrument lags by more than its calibration allows'],
+  'state-differs': ['warn', 'the sample behaves as if it were in another state on another instrument'],
+  'opinions-differ': ['warn', 'peak or mid-conversion temperatures give another bend than the time centroids'],
+  'glass-history': ['note', 'no fragility from heating scans that were not cooled at their own rate'],
   'driving-force-ignored': ['warn', 'no melting data: the driving force of crystallisation counts as full'],
 } as const satisfies Record<string, readonly [Severity, string]>;
 
