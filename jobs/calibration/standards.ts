@@ -2,6 +2,7 @@ import type { StandardMelting } from '../../schema/wire/reduced.ts';
 import type { InstrumentCalibration, InstrumentSheetRow } from '../../schema/wire/scan.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import { solveSymmetric } from '../numeric/linear-solve.ts';
+import { findRoot } from '../numeric/root.ts';
 import { mean, median, standardDeviation } from '../numeric/statistics.ts';
 import { calibrationFromSheet } from './sheet.ts';
 
@@ -17,8 +18,9 @@ export interface StandardObservation {
   perMass: boolean;
 }
 
-/** Scatter between scans that noise does not know of (contact, position), K. */
-const SCATTER_K = 0.02;
+/** Scatter between scans that noise does not know of (contact, position), K: least, and where there are too few scans to tell. */
+const LEAST_SCATTER_K = 0.003;
+const SCATTER_K = 0.05;
 /** A linear offset needs metals this far apart and this many scans more than parameters. */
 const SLOPE = { apartK: 40, spare: 2 };
 /** Another mass and contact than the standard's: the error of the lag is this much wider (METHODS 3). */
@@ -28,8 +30,8 @@ const SLOWER_THAN_CONTACT = 1.3;
 
 /**
  * Offset, lag and heat factor of an instrument: T_onset − T_melting = a + b (T − T̄) + τ β by weighted least squares (METHODS 3), b only
- * with metals far enough apart, τ only with two distinct rates (else the sheet's or the prior's is kept). The covariance is scaled by the
- * residuals and by Student's t ÷ normal quantile, so that ± 1.96 standard errors hold 95 %.
+ * with metals far enough apart, τ only with two distinct rates (else the sheet's or the prior's is kept). The covariance knows the
+ * scatter of the residuals and is widened by Student's t ÷ normal quantile, so that ± 1.96 standard errors hold 95 %.
  * @param highestRateKPerS of the instrument's scans, K/s
  * @returns the sheet's calibration when there is no observation
  */
@@ -53,10 +55,10 @@ export function calibrateFromStandards(
   const late = observations.map(
     ({ melting, meltingK }) => melting.onsetK - meltingK - (manyRates ? 0 : sheet.lagS * melting.rateKPerS),
   );
-  const fit = fitWeighted(
+  const fit = fitWithScatter(
     terms,
     late,
-    observations.map(({ melting }) => Math.hypot(melting.onsetErrorK, SCATTER_K)),
+    observations.map(({ melting }) => melting.onsetErrorK),
   );
   if (!fit) return sheet;
   const at = { offset: 0, lag: manyRates ? 1 : -1, slope: withSlope ? terms.length - 1 : -1 };
@@ -84,34 +86,49 @@ export function calibrateFromStandards(
   };
 }
 
-function fitWeighted(
+/**
+ * Weighted least squares with a scatter between scans, the same for all, that makes χ² equal its degrees of freedom (Paule & Mandel 1982,
+ * J. Res. NBS 87:377): neither quiet slow scans nor noisy fast ones carry the fit alone.
+ */
+function fitWithScatter(
   terms: readonly ((i: number) => number)[],
   values: readonly number[],
   errors: readonly number[],
 ): { solution: Float64Array; covariance: Float64Array } | undefined {
+  const degrees = values.length - terms.length;
+  if (degrees <= 0) return fitWeighted(terms, values, errors, SCATTER_K);
+  const excess = (scatter: number) => (fitWeighted(terms, values, errors, scatter)?.chi ?? 0) - degrees;
+  const largest = 10 * Math.max(SCATTER_K, ...values.map(Math.abs));
+  const scatter = excess(LEAST_SCATTER_K) <= 0 ? LEAST_SCATTER_K : findRoot(excess, LEAST_SCATTER_K, largest, 1e-5);
+  const fit = fitWeighted(terms, values, errors, scatter);
+  const widened = (studentQuantile(0.975, degrees) / NORMAL_975) ** 2;
+  return fit && { ...fit, covariance: fit.covariance.map((v) => v * widened) };
+}
+
+function fitWeighted(
+  terms: readonly ((i: number) => number)[],
+  values: readonly number[],
+  errors: readonly number[],
+  scatter: number,
+): { solution: Float64Array; covariance: Float64Array; chi: number } | undefined {
   const p = terms.length;
   const covariance = new Float64Array(p * p);
   const solution = new Float64Array(p);
+  const weights = errors.map((error) => 1 / (error ** 2 + scatter ** 2));
   values.forEach((value, k) => {
-    const weight = 1 / errors[k] ** 2;
     for (let i = 0; i < p; i++) {
-      solution[i] += weight * terms[i](k) * value;
-      for (let j = 0; j < p; j++) covariance[i * p + j] += weight * terms[i](k) * terms[j](k);
+      solution[i] += weights[k] * terms[i](k) * value;
+      for (let j = 0; j < p; j++) covariance[i * p + j] += weights[k] * terms[i](k) * terms[j](k);
     }
   });
   if (!solveSymmetric(covariance, solution, p)) return undefined;
-  const degrees = values.length - p;
-  let scale = 1;
-  if (degrees > 0) {
-    let chi = 0;
-    values.forEach((value, k) => {
-      let fitted = 0;
-      for (let i = 0; i < p; i++) fitted += solution[i] * terms[i](k);
-      chi += ((value - fitted) / errors[k]) ** 2;
-    });
-    scale = (chi / degrees) * (studentQuantile(0.975, degrees) / NORMAL_975) ** 2;
-  }
-  return { solution, covariance: covariance.map((v) => v * scale) };
+  let chi = 0;
+  values.forEach((value, k) => {
+    let fitted = 0;
+    for (let i = 0; i < p; i++) fitted += solution[i] * terms[i](k);
+    chi += weights[k] * (value - fitted) ** 2;
+  });
+  return { solution, covariance, chi };
 }
 
 const NORMAL_975 = 1.959964;
@@ -125,8 +142,10 @@ function heatFactorOf(observations: readonly StandardObservation[]): { heatFacto
   });
   if (factors.length === 0) return {};
   const heatFactor = mean(factors);
-  const single = Math.max(...observations.map(({ melting }) => melting.areaError / melting.area)) * heatFactor;
-  const heatFactorSe = factors.length > 1 ? standardDeviation(factors) / Math.sqrt(factors.length) : single;
+  // What baseline and limits leave open is common to all scans of an instrument: it does not average out.
+  const common = median(observations.map(({ melting }) => melting.areaError / melting.area)) * heatFactor;
+  const scatter = factors.length > 1 ? standardDeviation(factors) / Math.sqrt(factors.length) : 0;
+  const heatFactorSe = Math.hypot(common, scatter);
   return { heatFactor, heatFactorSe };
 }
 

@@ -2,8 +2,8 @@ import type { Segment, StandardMelting } from '../../schema/wire/reduced.ts';
 import type { ReadScan } from '../../schema/wire/scan.ts';
 import { fitLine } from '../numeric/line.ts';
 import { interpolate, lowerBound } from '../numeric/local-polynomial.ts';
-import { binAt } from './conversion.ts';
-import type { Excess } from './excess.ts';
+import { baselineAt } from './baseline.ts';
+import type { Bell, Excess } from './excess.ts';
 import { type Excursion, findExcursions, noiseSigma } from './find-event.ts';
 import { isolateEvents } from './isolate.ts';
 import { slopeOf } from './segments.ts';
@@ -11,8 +11,11 @@ import { averageWindow, type EventWindow } from './window.ts';
 
 /** Surroundings of the peak that are looked at, full widths. */
 const SURROUNDINGS = { before: 8, behind: 12 };
-/** The tangent is a line over this part of the rise, slid over it from the height FROM on. */
-const TANGENT = { part: 0.25, from: 0.15 };
+/**
+ * The leading edge of a pure metal behind a thermal resistance only grows steeper up to the end of melting: its steepest part is the upper
+ * one. One fixed stretch, in parts of the height, since picking the steepest of many favours noise.
+ */
+const TANGENT = { from: 0.45, to: 0.92 };
 const FEWEST_BINS = 4;
 /** The exponential tail is read between these parts of the height. */
 const TAIL = { high: 0.35, low: 0.04 };
@@ -37,12 +40,17 @@ export function reduceStandard(
   const found: Excursion | undefined = !up ? down : !down ? up : up.prominence > down.prominence ? up : down;
   if (!found) return undefined;
   const heat = found === up ? y : flipped;
-  const width = found.leftS + found.rightS;
+  // A rise of many tail lengths is usual here: the half widths as they are.
+  const small = Math.min(found.leftS, found.rightS);
+  const large = found.spanS - small;
+  const [leftS, rightS] = found.leftS < found.rightS ? [small, large] : [large, small];
+  const width = found.spanS;
+  const noise = noiseSigma(heat, segment.from, segment.to);
   const from = Math.max(segment.from, lowerBound(timeS, found.peakS - SURROUNDINGS.before * width));
   const to = Math.min(segment.to, lowerBound(timeS, found.peakS + SURROUNDINGS.behind * width));
-  const w = averageWindow(timeS, temperatureK, heat, from, to, width, noiseSigma(heat, from, to));
+  const w = averageWindow(timeS, temperatureK, heat, from, to, width, noise);
   const room = { fromS: timeS[segment.from], toS: timeS[segment.to - 1], responseS: 0, footless: true };
-  const isolated = isolateEvents(w, [{ ...found, height: found.prominence }], room);
+  const isolated = isolateEvents(w, [{ peakS: found.peakS, leftS, rightS, height: found.prominence }], room);
   if ('cut' in isolated) return undefined;
   const { excess: x, refit } = isolated;
   const [bell] = isolated.bells;
@@ -60,11 +68,11 @@ export function reduceStandard(
     area: x.area,
     areaError: Math.hypot(...moved, w.noise * Math.sqrt(x.to - x.from) * (w.t[1] - w.t[0])),
     ...(scan.heatFlowUnit !== 'W/kg' && { resistanceKPerW: rate / edge.slope }),
-    ...tailOf(w, x, bell.height),
+    ...tailOf(timeS, heat, noise, x, bell),
   };
 }
 
-/** Line of the greatest slope over the rise, and where it meets the baseline. */
+/** Line through the upper part of the rise, and where it meets the baseline. */
 function steepestEdge(
   w: EventWindow,
   x: Excess,
@@ -72,37 +80,41 @@ function steepestEdge(
 ): { onsetS: number; errorS: number; slope: number } | undefined {
   let top = x.from;
   for (let i = x.from; i < x.to; i++) if (x.e[i] > x.e[top]) top = i;
-  let first = top;
-  while (first > x.from && x.e[first - 1] > TANGENT.from * height) first--;
-  const length = Math.max(FEWEST_BINS, Math.round(TANGENT.part * (top - first)));
-  let best: { onsetS: number; errorS: number; slope: number } | undefined;
-  for (let i = Math.max(x.from, Math.min(first, top - length + 1)); i + length <= top + 1; i++) {
-    const line = fitLine(w.t.subarray(i, i + length), x.e.subarray(i, i + length));
-    if (best && line.slope <= best.slope) continue;
-    const onsetS = -line.intercept / line.slope;
-    // Error of the crossing from noise: a line's height error at distance d from its middle.
-    const middle = (w.t[i] + w.t[i + length - 1]) / 2;
-    const spread = ((w.t[i + length - 1] - w.t[i]) ** 2 * (length + 1)) / (12 * Math.max(1, length - 1));
-    const errorS =
-      ((w.noise / line.slope) * Math.sqrt(1 + (onsetS - middle) ** 2 / Math.max(spread, 1e-300))) / Math.sqrt(length);
-    best = { onsetS, errorS, slope: line.slope };
-  }
-  return best && best.slope > 0 ? best : undefined;
+  let to = top;
+  while (to > x.from && x.e[to - 1] > TANGENT.to * height) to--;
+  let from = to;
+  while (from > x.from && x.e[from - 1] > TANGENT.from * height) from--;
+  from = Math.max(x.from, Math.min(from, to - FEWEST_BINS));
+  if (to - from < FEWEST_BINS) return undefined;
+  const line = fitLine(w.t.subarray(from, to), x.e.subarray(from, to));
+  if (!(line.slope > 0)) return undefined;
+  const onsetS = -line.intercept / line.slope;
+  // A line's height error at distance d from its middle is σ √((1 + d²/spread)/n).
+  const n = to - from;
+  const [first, last] = [w.t[from], w.t[to - 1]];
+  const spread = ((last - first) ** 2 * (n + 1)) / (12 * (n - 1));
+  const distance = onsetS - (first + last) / 2;
+  return { onsetS, slope: line.slope, errorS: (w.noise / line.slope) * Math.sqrt((1 + distance ** 2 / spread) / n) };
 }
 
-/** Time constant of the tail: ln of the excess against time, weighted by its square (the noise of a logarithm is 1/e). */
-function tailOf(w: EventWindow, x: Excess, height: number): { tailS?: number; tailErrorS?: number } {
-  let top = x.from;
-  for (let i = x.from; i < x.to; i++) if (x.e[i] > x.e[top]) top = i;
-  let from = top;
-  while (from < x.to && x.e[from] > TAIL.high * height) from++;
+/** Time constant of the tail from the rows: ln of the excess against time, weighted by its square (the noise of a logarithm is 1/e). */
+function tailOf(
+  t: Float64Array,
+  heat: Float64Array,
+  noise: number,
+  x: Excess,
+  bell: Bell,
+): { tailS?: number; tailErrorS?: number } {
+  const above = (i: number) => heat[i] - baselineAt(x.baseline, t[i], 1);
+  let from = lowerBound(t, bell.peakS);
+  while (from < t.length && t[from] < x.baseline.rightS && above(from) > TAIL.high * bell.height) from++;
   let to = from;
-  const least = Math.max(TAIL.low * height, 3 * w.noise);
-  while (to < x.to && x.e[to] > least) to++;
-  if (to - from < FEWEST_BINS || binAt(w, x, w.t[from]) >= x.to - 1) return {};
-  const e = x.e.subarray(from, to);
+  const least = Math.max(TAIL.low * bell.height, 3 * noise);
+  while (to < t.length && t[to] < x.baseline.rightS && above(to) > least) to++;
+  if (to - from < FEWEST_BINS) return {};
+  const e = Float64Array.from({ length: to - from }, (_, k) => above(from + k));
   const line = fitLine(
-    w.t.subarray(from, to),
+    t.subarray(from, to),
     e.map(Math.log),
     e.map((v) => v * v),
   );

@@ -2,6 +2,8 @@ import { generatorsAgree } from './generators-agree.ts';
 import { intervalsStudy } from './intervals.ts';
 import { reductionStudy } from './reduction.ts';
 import { roundTripStudy } from './round-trip.ts';
+import { verdictStudy } from './verdict.ts';
+import { standardsStudy } from './standards.ts';
 
 export interface StudyOptions {
   /** Number of samples, scans or settings; each study has its own default. */
@@ -29,5 +31,13 @@ export const STUDIES: Record<string, { about: string; run: Study }> = {
   reduction: {
     about: 'single simulated scans: error of Tp, T(α) and ΔH against noise, drift and points',
     run: reductionStudy,
+  },
+  standards: {
+    about: 'indium, tin and zinc at five rates: error and interval of offset, lag and heat factor',
+    run: standardsStudy,
+  },
+  verdict: {
+    about: 'simulated campaigns on furnace and chip: is the bend the material’s; local E, ξ, m',
+    run: verdictStudy,
   },
 };
