@@ -29,6 +29,7 @@ const REFUSALS: Record<StoreRefusalCode, ProblemCode> = {
   'campaign-unknown': 'not-found',
   'job-unknown': 'not-found',
   'scan-unknown': 'not-found',
+  'scan-superseded': 'scan-superseded',
   'sample-unknown': 'not-found',
   'instrument-unknown': 'not-found',
   'name-taken': 'name-taken',

@@ -22,6 +22,7 @@ export const PROBLEMS = {
   'not-found': [404, 'There is no such thing', 'List the collection to see what there is.'],
   'method-not-allowed': [405, 'The route does not take this method', 'Use one of the methods in the Allow header.'],
   'name-taken': [409, 'The name is taken', 'Choose another name, or use the campaign that has it.'],
+  'scan-superseded': [409, 'The scan was replaced', 'Correct the scan of the file that replaced it.'],
   'job-not-failed': [409, 'The job has not failed', 'Only a failed job can be tried again by hand.'],
   'length-required': [411, 'Content-Length is missing', 'Send the size of the body in Content-Length.'],
   'too-large': [413, 'The body is too large', 'Split it, or compress text files with gzip or zip.'],

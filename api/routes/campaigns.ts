@@ -1,5 +1,4 @@
 import { createRoute } from '@hono/zod-openapi';
-import { bodyLimit } from 'hono/body-limit';
 import type { Ports } from '../../jobs/ports/index.ts';
 import {
   CAMPAIGN_NAME_LIMIT,
@@ -11,6 +10,7 @@ import {
   renameCampaign,
 } from '../../jobs/store/index.ts';
 import { quote } from '../../schema/wire/flags.ts';
+import { limitJson } from '../json-body.ts';
 import {
   type ApiApp,
   answer,
@@ -25,15 +25,6 @@ import {
 import { Problem } from '../problems.ts';
 import { pageOf, requireCampaign } from '../results.ts';
 import { CampaignShape } from '../shapes/campaign.ts';
-
-/** Bytes of a JSON body. */
-const JSON_LIMIT = 1e6;
-const limitJson = bodyLimit({
-  maxSize: JSON_LIMIT,
-  onError: () => {
-    throw new Problem('too-large', `the body has more than ${JSON_LIMIT} bytes`);
-  },
-});
 
 const NAME_BODY = {
   required: true,

@@ -1,12 +1,22 @@
 import { createRoute, z } from '@hono/zod-openapi';
 import type { Context } from 'hono';
 import type { Ports } from '../../jobs/ports/index.ts';
-import { findScan, type ScanView } from '../../jobs/store/index.ts';
+import { correctScan, findScan, readScanHistory, type ScanView } from '../../jobs/store/index.ts';
+import type { CorrectionField, CorrectionValue } from '../../schema/wire/corrections.ts';
 import { quote } from '../../schema/wire/flags.ts';
 import type { ApiEnv } from '../access.ts';
-import { type ApiApp, answer, ID_PARAM, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
+import { limitJson } from '../json-body.ts';
+import { type ApiApp, answer, ID_PARAM, listOf, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
 import { Problem } from '../problems.ts';
 import { isUnchanged, requireCampaign, UNCHANGED_ANSWER } from '../results.ts';
+import {
+  CorrectedShape,
+  CorrectionsBody,
+  correctionsOf,
+  HistoryShape,
+  outsideName,
+  outsideValue,
+} from '../shapes/corrections.ts';
 import { ROW_SHAPES } from '../shapes/rows.ts';
 
 const ScanShape = z
@@ -15,6 +25,7 @@ const ScanShape = z
     campaign_id: z.string(),
     bytes: z.number().int().openapi({ description: 'Size of the original file.' }),
     rows: z.array(ROW_SHAPES.scans).openapi({ description: 'The rows of the scans table, one an event.' }),
+    corrections: CorrectedShape,
   })
   .openapi('Scan');
 
@@ -37,6 +48,45 @@ const originalRoute = createRoute({
   },
 });
 
+const correctRoute = createRoute({
+  method: 'patch',
+  path: '/v1/scans/{id}',
+  summary: 'Correct what the sheet says of a scan.',
+  description:
+    'Only what depends on the scan is computed again. A corrected field stands over the sheet until that cell changes in a later sheet; null takes a correction back.',
+  middleware: [limitJson] as const,
+  request: {
+    params: ID_PARAM,
+    query: NO_QUERY,
+    body: { required: true, content: { 'application/json': { schema: CorrectionsBody } } },
+  },
+  responses: {
+    202: answer(ScanShape, 'The scan; the jobs apply the correction next.'),
+    default: PROBLEM_ANSWER,
+  },
+});
+
+const historyRoute = createRoute({
+  method: 'get',
+  path: '/v1/scans/{id}/history',
+  summary: 'What was corrected on a scan, oldest first.',
+  request: { params: ID_PARAM, query: NO_QUERY },
+  responses: { 200: answer(listOf(HistoryShape), 'The corrections.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
+});
+
+const shapeOf = ({ id, campaignId, bytes, rows, corrections }: ScanView): z.infer<typeof ScanShape> => ({
+  id,
+  campaign_id: campaignId,
+  bytes,
+  rows: rows as z.infer<typeof ROW_SHAPES.scans>[],
+  corrections: Object.fromEntries(
+    Object.entries(corrections).map(([field, value]) => [
+      outsideName(field as CorrectionField),
+      outsideValue(field as CorrectionField, value as CorrectionValue),
+    ]),
+  ),
+});
+
 async function requireScan(c: Context<ApiEnv>, ports: Ports, id: string): Promise<ScanView> {
   const scan = await findScan(ports, id, c.get('access').lab);
   if (!scan) throw new Problem('not-found', `there is no scan ${quote(id)}`);
@@ -47,8 +97,30 @@ export function addScanRoutes(app: ApiApp, ports: Ports): void {
   app.openapi(scanRoute, async (c) => {
     const scan = await requireScan(c, ports, c.req.valid('param').id);
     if (isUnchanged(c, await requireCampaign(c, ports, scan.campaignId))) return c.body(null, 304);
-    const { id, campaignId, bytes, rows } = scan;
-    return c.json({ id, campaign_id: campaignId, bytes, rows: rows as z.infer<typeof ROW_SHAPES.scans>[] }, 200);
+    return c.json(shapeOf(scan), 200);
+  });
+
+  app.openapi(correctRoute, async (c) => {
+    const { id } = await requireScan(c, ports, c.req.valid('param').id);
+    const body = c.req.valid('json');
+    const problem = typeof body.reference === 'string' ? ports.paths.problem(body.reference) : undefined;
+    if (problem) throw new Problem('bad-path', `reference ${problem}`, { field: 'reference' });
+    await correctScan(ports, id, correctionsOf(body), c.get('access').lab);
+    return c.json(shapeOf(await requireScan(c, ports, id)), 202);
+  });
+
+  app.openapi(historyRoute, async (c) => {
+    const scan = await requireScan(c, ports, c.req.valid('param').id);
+    if (isUnchanged(c, await requireCampaign(c, ports, scan.campaignId))) return c.body(null, 304);
+    const entries = await readScanHistory(ports, scan.id);
+    const items = entries.map(({ field, before, after, cause, at }) => ({
+      field: outsideName(field),
+      before: outsideValue(field, before),
+      after: outsideValue(field, after),
+      cause,
+      at: new Date(at).toISOString(),
+    }));
+    return c.json({ items, next: null }, 200);
   });
 
   app.openapi(originalRoute, async (c) => {

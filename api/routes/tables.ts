@@ -2,6 +2,7 @@ import { createRoute, z } from '@hono/zod-openapi';
 import type { Context } from 'hono';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { type ResultRow, readTable, type TableFilter } from '../../jobs/store/index.ts';
+import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import { RESULT_TABLES, type ResultTable } from '../../schema/wire/result-tables.ts';
 import type { ApiEnv } from '../access.ts';
 import { csvStream } from '../csv-stream.ts';
@@ -43,6 +44,9 @@ const SUMMARIES: Record<ResultTable, string> = {
   scans: 'Every scan and what was found in it.',
   conversion: 'The reduced curves.',
   instruments: 'Instruments with their corrections.',
+  verdicts: 'Whether the bend of each event over the rates is the material’s, an instrument’s, or none.',
+  forecasts: `Times and conversions to come. ${FORECAST_CAUTION}`,
+  advice: `The scans that would narrow each interval most. ${FORECAST_CAUTION}`,
   coverage: 'Which decades of heating rate each sample has been measured in.',
   gaps: 'What is missing, and what to do about it.',
   flags: 'What to know and what to do.',

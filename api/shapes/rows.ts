@@ -2,6 +2,7 @@ import { z } from '@hono/zod-openapi';
 import type { ZodRawShape } from 'zod';
 import type { ResultTable } from '../../schema/wire/result-tables.ts';
 import { INSTRUMENT_KINDS, ROLES, SCAN_STATES } from '../../schema/wire/states.ts';
+import { VERDICTS } from '../../schema/wire/verdicts.ts';
 
 const text = z.string();
 const maybeText = z.string().nullable();
@@ -78,6 +79,54 @@ export const ROW_SHAPES = {
     source: z.enum(['standards', 'sheet', 'prior']),
     offset_slope: maybeNumber,
     response_time_s: maybeNumber,
+  }),
+  verdicts: z.object({
+    sample: text,
+    event: count,
+    verdict: z.enum(VERDICTS),
+    bend: maybeNumber,
+    bend_lower99: maybeNumber,
+    bend_upper99: maybeNumber,
+    p_value: maybeNumber,
+    delta_aicc: maybeNumber,
+    energy_low_rate_kJ_per_mol: maybeNumber,
+    energy_high_rate_kJ_per_mol: maybeNumber,
+    instruments: texts,
+    rate_min_K_per_s: number,
+    rate_max_K_per_s: number,
+    decides_next: text,
+  }),
+  forecasts: z.object({
+    sample: text,
+    event: count,
+    method: z.enum(['model_free', 'shared_law']),
+    conversion: maybeNumber,
+    temperature_C: maybeNumber,
+    program: text,
+    value: maybeNumber,
+    unit: z.enum(['s', '1', '°C']),
+    lower95: maybeNumber,
+    upper95: maybeNumber,
+    beyond_measured_K: number,
+    flags: texts,
+    question: z.enum(['time_to_conversion', 'conversion_at_end', 'temperature_limit']),
+    time_s: maybeNumber,
+    goal: z.enum(['met', 'not_met', 'cannot_say', '']),
+    beyond_measured_decades: number,
+    detail: text,
+  }),
+  advice: z.object({
+    sample: text,
+    rank: count,
+    instrument: text,
+    rate_K_per_s: number,
+    goal: z.enum(['energy', 'bend', 'forecast']),
+    interval_now: number,
+    interval_expected: number,
+    event: count,
+    unit: z.enum(['kJ/mol', '1', 'decades']),
+    scans_to_half: maybeNumber,
+    sentence: text,
   }),
   coverage: z.object({
     sample: text,

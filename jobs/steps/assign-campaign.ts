@@ -17,6 +17,7 @@ import {
   settleInstruments,
   settleSamples,
 } from '../store/assignment-rows.ts';
+import { endCorrections, loadCorrections, moveCorrections, type StoredCorrection } from '../store/correction-rows.ts';
 import { hashOf } from '../store/ids.ts';
 import { queueReductions } from '../store/job-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
@@ -29,7 +30,12 @@ export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<voi
   const fileOf = new Map(rows.files.map((file) => [file.id, file]));
   const dataFiles = rows.files.filter((file) => file.kind === 'data');
   const sheetPresent = rows.files.some((file) => file.kind === 'sheet' && sheetKind(file.path) === 'scans');
-  const { scans, flags } = assignScans(dataFiles, sheetPresent ? rows.sheets.scans : undefined, ports.paths.assignment);
+  const { scans, flags, ended, moved } = assignScans(
+    dataFiles,
+    sheetPresent ? rows.sheets.scans : undefined,
+    ports.paths.assignment,
+    await loadCorrections(ports, job.campaignId),
+  );
   const sampleRows = new Map([...rows.sheets.samples].reverse().map((row) => [row.sample, row]));
   flags.push(
     ...repeatedRows('samples', rows.sheets.samples, (row) => row.sample),
@@ -52,10 +58,23 @@ export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<voi
       ...settleSamples(db, job.campaignId, namedSamples(wanted), changedNames(changes, 'sample')),
       ...settleInstruments(db, job.campaignId, instrumentChanges(rows, wanted, changes)),
       ...replaceFlags(db, job.campaignId, 'assign', flags),
+      ...moveCorrections(db, moved),
+      ...endCorrections(
+        db,
+        job.campaignId,
+        now,
+        ended.map((end) => ({ ...end, scanId: scanOf(rows, end.correction) })),
+      ),
       ...queueReductions(db, job.campaignId, now),
     ],
     { instruments: true, samples: true },
   );
+}
+
+/** The stored scan that a correction was made on. */
+function scanOf(rows: AssignmentRows, { sha256, segment }: StoredCorrection): string | undefined {
+  const files = new Set(rows.files.filter((file) => file.sha256 === sha256).map((file) => file.id));
+  return rows.scans.find((scan) => files.has(scan.fileId) && (scan.said?.segment ?? null) === segment)?.id;
 }
 
 /** Of several rows with one name the first counts; the others are said. */
@@ -82,14 +101,15 @@ function repeatedRows<T extends { line: number }>(
 
 /** The state that a scan starts from in its new place. */
 function placeScan(
-  { fileId, disposition, sample, instrument, role, segment, sheetRow, sheetHash, reason, flags }: HashedScan,
+  { fileId, disposition, sample, instrument, role, segment, said, sheetRow, sheetHash, reason, flags }: HashedScan,
   file: StoredFile,
 ): AssignedScan {
-  const place = { fileId, disposition, sample, instrument, role, segment, sheetRow, sheetHash, flags };
+  const place = { fileId, disposition, sample, instrument, role, segment, said, sheetRow, sheetHash, flags };
   if (disposition === 'duplicate') return { ...place, status: 'set_aside', reason };
   if (file.state === 'refused') return { ...place, status: 'set_aside', reason: file.reason };
   if (file.state === 'failed') return { ...place, status: 'failed', reason: file.reason };
   if (disposition === 'unassigned') return { ...place, status: 'unassigned', reason };
+  if (sheetRow?.excluded !== undefined) return { ...place, status: 'excluded', reason: sheetRow.excluded };
   const status: ScanState = file.state === 'read' ? 'read' : 'received';
   return { ...place, status, reason: null };
 }

@@ -1,6 +1,8 @@
 import { type Flag, flag, quote } from '../../schema/wire/flags.ts';
 import type { ScanSheetRow } from '../../schema/wire/scan.ts';
 import type { Role } from '../../schema/wire/states.ts';
+import type { StoredCorrection } from '../store/correction-rows.ts';
+import { type AppliedCorrections, applyCorrections, type EndedCorrection } from './apply-corrections.ts';
 
 /** A live data file. */
 export interface AssignFile {
@@ -17,6 +19,8 @@ export interface WantedScan {
   instrument: string | null;
   role: Role;
   segment: number | null;
+  /** What the sheet or the folder says, before corrections. */
+  said: Partial<ScanSheetRow>;
   sheetRow: ScanSheetRow | null;
   reason: string | null;
   flags: Flag[];
@@ -26,12 +30,17 @@ export interface Assignment {
   scans: WantedScan[];
   /** Flags of the sheet itself: rows without a file, repeated rows. */
   flags: Flag[];
+  /** Corrections that a sheet has ended, and those whose row names another sample or instrument now. */
+  ended: EndedCorrection[];
+  moved: AppliedCorrections<SaidOfFile>['moved'];
 }
 
 interface Claim {
   file: AssignFile;
   sample: string;
   instrument: string;
+  /** Before corrections. */
+  said: Partial<ScanSheetRow>;
   row: ScanSheetRow | null;
 }
 
@@ -54,17 +63,22 @@ export function assignScans(
   files: readonly AssignFile[],
   rows: readonly ScanSheetRow[] | undefined,
   layout: (path: string) => { sample: string; instrument: string } | undefined,
+  corrections: readonly StoredCorrection[] = [],
 ): Assignment {
   const sorted = [...files].sort((a, b) => compareText(a.path, b.path));
   const flags: Flag[] = [];
-  const claims = rows === undefined ? claimByFolder(sorted, layout) : claimByRows(sorted, rows, flags);
+  const said = rows === undefined ? claimByFolder(sorted, layout) : claimByRows(sorted, rows, flags);
+  const named = new Set(said.map((claim) => claim.file.id));
+  const unnamed = sorted.filter((file) => !named.has(file.id)).map((file) => ({ file, row: {} }));
+  const applied = applyCorrections([...said, ...unnamed], corrections);
+  const claims = applied.corrected.flatMap(({ said, row }) => claimOf(said, row));
   claims.sort((a, b) => compareText(a.file.path, b.file.path));
 
   const scans: WantedScan[] = [];
   const firstOf = new Map<string, Claim>();
   const pathOfBytes = new Map<string, string>();
   for (const claim of claims) {
-    const { file, sample, instrument, row } = claim;
+    const { file, sample, instrument, said, row } = claim;
     const identity = JSON.stringify([file.sha256, sample, instrument, row?.segment ?? null]);
     const first = firstOf.get(identity);
     if (first && first.file.id === file.id) {
@@ -89,6 +103,7 @@ export function assignScans(
       instrument,
       role: row?.role ?? 'sample',
       segment: row?.segment ?? null,
+      said,
       sheetRow: row,
       ...(first ? sameBytes(file, first.file.path) : { reason: null, flags: [] }),
     });
@@ -105,38 +120,60 @@ export function assignScans(
       instrument: null,
       role: 'sample',
       segment: null,
+      said: {},
       sheetRow: null,
       ...(otherPath === undefined ? unassigned(file, rows !== undefined) : sameBytes(file, otherPath)),
     });
   }
-  return { scans, flags };
+  return { scans, flags, ended: applied.ended, moved: applied.moved };
+}
+
+/** A file with what a row or its folder says of it. */
+interface SaidOfFile {
+  file: AssignFile;
+  row: Partial<ScanSheetRow>;
+  /** Null where the folder says it. */
+  sheetRow?: ScanSheetRow | null;
+}
+
+/** A claim on a file, where sample and instrument are known; `corrected` is the row that counts. */
+function claimOf(
+  { file, row: said, sheetRow = null }: SaidOfFile,
+  corrected: Partial<ScanSheetRow> | undefined,
+): Claim[] {
+  const { sample, instrument } = corrected ?? said;
+  if (sample === undefined || instrument === undefined) return [];
+  const row = corrected
+    ? { file: file.path, role: 'sample' as const, line: 0, ...corrected, sample, instrument }
+    : sheetRow;
+  return [{ file, sample, instrument, said, row }];
 }
 
 function claimByFolder(
   files: readonly AssignFile[],
   layout: (path: string) => { sample: string; instrument: string } | undefined,
-): Claim[] {
+): SaidOfFile[] {
   return files.flatMap((file) => {
     const found = layout(file.path);
-    return found ? [{ file, ...found, row: null }] : [];
+    return found ? [{ file, row: { ...found, role: 'sample' as const } }] : [];
   });
 }
 
-function claimByRows(files: readonly AssignFile[], rows: readonly ScanSheetRow[], flags: Flag[]): Claim[] {
+function claimByRows(files: readonly AssignFile[], rows: readonly ScanSheetRow[], flags: Flag[]): SaidOfFile[] {
   const byPath = new Map(files.map((file) => [file.path, file]));
   const byBase = new Map<string, AssignFile[]>();
   for (const file of files) {
     const base = baseName(file.path);
     byBase.set(base, [...(byBase.get(base) ?? []), file]);
   }
-  const claims: Claim[] = [];
+  const claims: SaidOfFile[] = [];
   for (const row of rows) {
     const name = sheetPath(row.file);
     const exact = byPath.get(name);
     const found = exact ? [exact] : (byBase.get(name) ?? []);
     const contents = new Set(found.map((file) => file.sha256)).size;
     if (contents === 1) {
-      for (const file of found) claims.push({ file, sample: row.sample, instrument: row.instrument, row });
+      for (const file of found) claims.push({ file, row, sheetRow: row });
       continue;
     }
     const where = { file: row.file, sample: row.sample, instrument: row.instrument };

@@ -17,7 +17,7 @@ export async function planStoredCampaign(ports: Ports, job: ClaimedJob): Promise
       .filter((row) => used.has(row.instrument))
       .map(({ instrument, kind }) => ({ instrument, kind, standards: standards(instrument) })),
   });
-  await completeJob(ports, job, (db) => [savePlan(db, job.campaignId, plan)]);
+  await completeJob(ports, job, (db) => [savePlan(db, job.campaignId, { ...plan, advice: [] })]);
 }
 
 /** A heating scan at its measured rate. Coolings and holds fill no decade of heating rate. */

@@ -58,11 +58,13 @@ function reduceInputOf({ scan, file, calibration, sampleRow }: ReductionRows): R
     ...(row?.massKg !== undefined && { massKg: row.massKg }),
     ...(row?.exotherm !== undefined && { exotherm: row.exotherm }),
     ...(scan.segment !== null && { segment: scan.segment }),
+    ...(row?.limitsK !== undefined && { limitsK: row.limitsK }),
     calibration,
     ...(sampleRow?.meltingK !== undefined && { meltingK: sampleRow.meltingK }),
     ...(sampleRow?.crystallizationEnthalpyJPerKg !== undefined && {
       crystallizationEnthalpyJPerKg: sampleRow.crystallizationEnthalpyJPerKg,
     }),
+    ...(sampleRow?.heatCapacityJPerKgK !== undefined && { heatCapacityJPerKgK: sampleRow.heatCapacityJPerKgK }),
   };
 }
 

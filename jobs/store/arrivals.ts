@@ -7,6 +7,7 @@ import { isConstraint, runBatch, type Statement } from './fence.ts';
 import { createId } from './ids.ts';
 import { ASSIGN_DELAY_MS, insertJob, touchCampaign } from './job-rows.ts';
 import { StoreRefusal } from './refusals.ts';
+import { allRows, text } from './statement.ts';
 
 export interface FileReceipt {
   /** The path as sent. */
@@ -91,21 +92,12 @@ export interface Surroundings {
 }
 
 export async function lookAround(ports: Ports, campaignId: string, file: ArrivedFile): Promise<Surroundings> {
-  const rows = await ports.database.read
-    .select({
-      id: files.id,
-      path: files.path,
-      sha256: files.sha256,
-      blobKey: files.blobKey,
-      superseded: files.superseded,
-    })
-    .from(files)
-    .where(
-      and(
-        eq(files.campaignId, campaignId),
-        sql`(${files.path} = ${file.path} and ${files.superseded} = 0 or ${files.sha256} = ${file.sha256})`,
-      ),
-    );
+  const rows = await allRows<{ id: string; path: string; sha256: string; blobKey: string; superseded: 0 | 1 }>(
+    ports.database.read,
+    text`
+      select id, path, sha256, blob_key as blobKey, superseded from files
+      where campaign_id = ${campaignId} and (path = ${file.path} and superseded = 0 or sha256 = ${file.sha256})`,
+  );
   const here = rows.filter((row) => row.path === file.path);
   const elsewhere = rows.filter((row) => row.path !== file.path && row.sha256 === file.sha256 && !row.superseded);
   elsewhere.sort((a, b) => (a.path < b.path ? -1 : 1));
@@ -167,20 +159,16 @@ export function planArrival(campaignId: string, file: ArrivedFile, before: Surro
   return {
     statements: (db) => [
       ...supersede(db),
-      db.insert(files).values({
-        id: fileId,
-        campaignId,
-        path: file.path,
-        sha256: file.sha256,
-        bytes: file.size,
-        blobKey: sameBytes?.blobKey ?? file.blobKey,
-        kind: file.kind,
-        archiveId: file.archiveId,
-        state: 'unread',
-        createdAt: now,
-      }),
+      text`
+        insert into files (id, campaign_id, path, sha256, bytes, blob_key, kind, archive_id, state, created_at)
+        values (${fileId}, ${campaignId}, ${file.path}, ${file.sha256}, ${file.size}, ${sameBytes?.blobKey ?? file.blobKey},
+          ${file.kind}, ${file.archiveId}, 'unread', ${now})`,
       ...(file.kind === 'data'
-        ? [db.insert(scans).values({ id: scanId, campaignId, fileId, disposition: 'waiting', status: 'received' })]
+        ? [
+            text`
+              insert into scans (id, campaign_id, file_id, disposition, status)
+              values (${scanId}, ${campaignId}, ${fileId}, 'waiting', 'received')`,
+          ]
         : []),
       insertJob(db, { id: jobId, campaignId, step, subject: fileId, now }),
       // A sheet or an archive queues the assignment itself once it is read.

@@ -36,6 +36,7 @@ export interface StoredScan {
   instrument: string | null;
   role: Role;
   segment: number | null;
+  said: Partial<ScanSheetRow> | null;
   sheetHash: string;
   status: ScanState;
 }
@@ -99,6 +100,7 @@ export async function loadAssignment(ports: Ports, campaignId: string): Promise<
         instrument: scans.instrument,
         role: scans.role,
         segment: scans.segment,
+        said: scans.said,
         sheetHash: scans.sheetHash,
         status: scans.status,
       })
@@ -124,6 +126,7 @@ export interface AssignedScan {
   instrument: string | null;
   role: Role;
   segment: number | null;
+  said: Partial<ScanSheetRow>;
   sheetRow: ScanSheetRow | null;
   sheetHash: string;
   status: ScanState;

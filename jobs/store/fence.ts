@@ -1,9 +1,6 @@
-import { sql } from 'drizzle-orm';
-import type { BatchItem } from 'drizzle-orm/batch';
-import type { LibSQLDatabase } from 'drizzle-orm/libsql';
+import { type Statement, text } from './statement.ts';
 
-/** One statement of a batch. */
-export type Statement = BatchItem<'sqlite'>;
+export { runBatch, type Statement } from './statement.ts';
 
 /** The lease that a write-back must still hold. */
 export interface Lease {
@@ -39,14 +36,10 @@ export function isFenceBreak(error: unknown): boolean {
   return false;
 }
 
-export function runBatch(db: LibSQLDatabase, statements: Statement[]): Promise<unknown[]> {
-  return db.batch(statements as [Statement, ...Statement[]]);
-}
-
 /**
  * One batch that fails whole unless `guard` changes exactly one row. An UPDATE that hits nothing does not stop a batch by
  * itself: the count of its changes is inserted under the check `ok = 1`.
  */
-export function guarded(db: LibSQLDatabase, guard: Statement, rest: Statement[]): Statement[] {
-  return [guard, db.run(sql`insert into fence (ok) select changes() where true on conflict (ok) do nothing`), ...rest];
+export function guarded(guard: Statement, rest: Statement[]): Statement[] {
+  return [guard, text`insert into fence (ok) select changes() where true on conflict (ok) do nothing`, ...rest];
 }

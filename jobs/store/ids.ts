@@ -1,6 +1,15 @@
 import { createHash } from 'node:crypto';
 
-const PREFIXES = { campaign: 'c', file: 'f', scan: 's', sample: 'm', instrument: 'i', job: 'j', blob: 'b' } as const;
+const PREFIXES = {
+  campaign: 'c',
+  file: 'f',
+  scan: 's',
+  sample: 'm',
+  instrument: 'i',
+  job: 'j',
+  blob: 'b',
+  correction: 'k',
+} as const;
 
 /** A random id, 96 bits, prefixed by what it names. */
 export function createId(kind: keyof typeof PREFIXES): string {

@@ -12,6 +12,7 @@ export {
   type Page,
   renameCampaign,
 } from './campaigns.ts';
+export { type Corrections, correctScan, type HistoryEntry, readScanHistory } from './correction-rows.ts';
 export { type JobView, listJobs, refitCampaign, retryJob } from './job-views.ts';
 export { FILE_LIMIT_BYTES, receiveFile } from './receive.ts';
 export { StoreRefusal, type StoreRefusalCode } from './refusals.ts';

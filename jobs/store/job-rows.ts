@@ -1,7 +1,6 @@
-import { type SQL, sql } from 'drizzle-orm';
+import type { SQL } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
-import { jobs } from '../../schema/tables/index.ts';
-import type { Statement } from './fence.ts';
+import { type SqlText, type Statement, text } from './statement.ts';
 
 /** The steps and their priority, lower first: what decides over many scans goes before the scans, fits before further reading. */
 export const STEP_PRIORITY = {
@@ -20,7 +19,7 @@ export type Step = keyof typeof STEP_PRIORITY;
 export const ASSIGN_DELAY_MS = 200;
 
 /** Steps after which the set of scans may be another: nothing is calibrated or fitted while one is open. */
-const OPENING_STEPS = sql.raw(`('read-sheet', 'unpack-archive', 'assign-scans')`);
+const OPENING_STEPS = text`('read-sheet', 'unpack-archive', 'assign-scans')`;
 
 export interface NewJob {
   id: string;
@@ -32,28 +31,19 @@ export interface NewJob {
 }
 
 /** Queues a job unless one for the same step and subject waits already. */
-export function insertJob(db: LibSQLDatabase, { id, campaignId, step, subject, now, delayMs = 0 }: NewJob): Statement {
-  return db
-    .insert(jobs)
-    .values({
-      id,
-      campaignId,
-      step,
-      subject,
-      priority: STEP_PRIORITY[step],
-      state: 'queued',
-      nextTryAt: now + delayMs,
-      createdAt: now,
-    })
-    .onConflictDoNothing();
+export function insertJob(_db: LibSQLDatabase, { id, campaignId, step, subject, now, delayMs = 0 }: NewJob): Statement {
+  return text`
+    insert into jobs (id, campaign_id, step, subject, priority, state, next_try_at, created_at)
+    values (${id}, ${campaignId}, ${step}, ${subject}, ${STEP_PRIORITY[step]}, 'queued', ${now + delayMs}, ${now})
+    on conflict do nothing`;
 }
 
 /** Queues one job for each subject that `from` selects as `subject`; a waiting twin is enough. */
-function insertJobsFor(db: LibSQLDatabase, campaignId: string, step: Step, now: number, from: SQL): Statement {
-  return db.run(sql`
+function insertJobsFor(campaignId: string, step: Step, now: number, from: SqlText): Statement {
+  return text`
     insert or ignore into jobs (id, campaign_id, step, subject, priority, state, next_try_at, created_at)
     select 'j_' || lower(hex(randomblob(12))), ${campaignId}, ${step}, subject, ${STEP_PRIORITY[step]}, 'queued', ${now}, ${now}
-    from (${from})`);
+    from (${from})`;
 }
 
 /** What a write-back may have made due. */
@@ -70,88 +60,85 @@ export interface DueCheck {
  * write-back that checks again, so nothing waits for ever.
  */
 export function queueDueJobs(
-  db: LibSQLDatabase,
+  _db: LibSQLDatabase,
   campaignId: string,
   now: number,
   { instruments = false, samples = false }: DueCheck,
 ): Statement[] {
   return [
-    ...(instruments ? queueCalibrations(db, campaignId, now) : []),
-    ...(samples ? queueFits(db, campaignId, now) : []),
-    db.run(sql`
+    ...(instruments ? queueCalibrations(campaignId, now) : []),
+    ...(samples ? queueFits(campaignId, now) : []),
+    text`
       update campaigns set revision = revision + 1, inputs_revision = inputs_revision + 1,
         queued_revision = case when ${nothingOpen(campaignId)} then inputs_revision + 1 else queued_revision end
-      where id = ${campaignId}`),
+      where id = ${campaignId}`,
     insertJobsFor(
-      db,
       campaignId,
       'plan-campaign',
       now,
-      sql`select id as subject from campaigns where id = ${campaignId} and inputs_revision = queued_revision and ${nothingOpen(campaignId)}`,
+      text`select id as subject from campaigns where id = ${campaignId} and inputs_revision = queued_revision and ${nothingOpen(campaignId)}`,
     ),
   ];
 }
 
-const nothingOpen = (campaignId: string) => sql`not exists (
+const nothingOpen = (campaignId: string) => text`not exists (
   select 1 from jobs where campaign_id = ${campaignId} and state in ('queued', 'running') and step <> 'plan-campaign')`;
 
-const scansOpen = (campaignId: string) => sql`exists (
+const scansOpen = (campaignId: string) => text`exists (
   select 1 from jobs where campaign_id = ${campaignId} and state in ('queued', 'running') and step in ${OPENING_STEPS})`;
 
-function queueCalibrations(db: LibSQLDatabase, campaignId: string, now: number): Statement[] {
+function queueCalibrations(campaignId: string, now: number): Statement[] {
   // Without a kind on its sheet an instrument is told by its fastest scan, so all of them have to be read first.
-  const due = sql`instruments.campaign_id = ${campaignId} and inputs_revision > queued_revision and not ${scansOpen(campaignId)}
+  const due = text`instruments.campaign_id = ${campaignId} and inputs_revision > queued_revision and not ${scansOpen(campaignId)}
     and (json_extract(sheet_row, '$.kind') is not null or not exists (
       select 1 from scans s where s.campaign_id = ${campaignId} and s.instrument = instruments.instrument and s.status = 'received'))`;
   return [
-    insertJobsFor(db, campaignId, 'calibrate-instrument', now, sql`select id as subject from instruments where ${due}`),
-    db.run(sql`update instruments set queued_revision = inputs_revision where ${due}`),
+    insertJobsFor(campaignId, 'calibrate-instrument', now, text`select id as subject from instruments where ${due}`),
+    text`update instruments set queued_revision = inputs_revision where ${due}`,
   ];
 }
 
-function queueFits(db: LibSQLDatabase, campaignId: string, now: number): Statement[] {
-  const due = sql`samples.campaign_id = ${campaignId} and state in ('waiting', 'stale') and inputs_revision > queued_revision
+function queueFits(campaignId: string, now: number): Statement[] {
+  const due = text`samples.campaign_id = ${campaignId} and state in ('waiting', 'stale') and inputs_revision > queued_revision
     and not ${scansOpen(campaignId)} and not exists (
       select 1 from scans s where s.campaign_id = ${campaignId} and s.sample = samples.sample
         and s.status in ('received', 'read') and s.role = 'sample')`;
   return [
-    insertJobsFor(db, campaignId, 'fit-sample', now, sql`select id as subject from samples where ${due}`),
-    db.run(sql`update samples set queued_revision = inputs_revision, state = 'queued' where ${due}`),
+    insertJobsFor(campaignId, 'fit-sample', now, text`select id as subject from samples where ${due}`),
+    text`update samples set queued_revision = inputs_revision, state = 'queued' where ${due}`,
   ];
 }
 
 /** Queues the reduction of scans that are read, assigned, and on a calibrated instrument: of one file, of one instrument, or all. */
 export function queueReductions(
-  db: LibSQLDatabase,
+  _db: LibSQLDatabase,
   campaignId: string,
   now: number,
   { fileId, instrument }: { fileId?: string; instrument?: string } = {},
 ): Statement[] {
-  const ofFile = fileId === undefined ? sql`` : sql`and scans.file_id = ${fileId}`;
-  const ofInstrument = instrument === undefined ? sql`` : sql`and scans.instrument = ${instrument}`;
-  const due = sql`scans.campaign_id = ${campaignId} ${ofFile} ${ofInstrument} and scans.status = 'read' and disposition = 'assigned'
+  const ofFile = fileId === undefined ? text`` : text`and scans.file_id = ${fileId}`;
+  const ofInstrument = instrument === undefined ? text`` : text`and scans.instrument = ${instrument}`;
+  const due = text`scans.campaign_id = ${campaignId} ${ofFile} ${ofInstrument} and scans.status = 'read' and disposition = 'assigned'
     and inputs_revision > queued_revision and exists (
       select 1 from instruments i where i.campaign_id = ${campaignId} and i.instrument = scans.instrument
       and i.calibration is not null and i.calibrated_revision = i.inputs_revision)`;
   return [
-    insertJobsFor(db, campaignId, 'reduce-scan', now, sql`select id as subject from scans where ${due}`),
-    db.run(sql`update scans set queued_revision = inputs_revision where ${due}`),
+    insertJobsFor(campaignId, 'reduce-scan', now, text`select id as subject from scans where ${due}`),
+    text`update scans set queued_revision = inputs_revision where ${due}`,
   ];
 }
 
 /** Marks samples as having newer inputs than their fit; `names` is a subquery of sample names. */
-export function touchSamples(db: LibSQLDatabase, campaignId: string, names: SQL): Statement {
-  return db.run(sql`
+export function touchSamples(_db: LibSQLDatabase, campaignId: string, names: SqlText | SQL): Statement {
+  return text`
     update samples set inputs_revision = inputs_revision + 1,
       state = case when state in ('waiting', 'queued') and fit_key is null then 'waiting' else 'stale' end
-    where campaign_id = ${campaignId} and sample in (${names})`);
+    where campaign_id = ${campaignId} and sample in (${names})`;
 }
 
 /** Counts a change of what the campaign shows; of `inputs` too where a new plan may be due. */
-export function touchCampaign(db: LibSQLDatabase, campaignId: string, inputs: boolean): Statement {
-  return db.run(
-    inputs
-      ? sql`update campaigns set revision = revision + 1, inputs_revision = inputs_revision + 1 where id = ${campaignId}`
-      : sql`update campaigns set revision = revision + 1 where id = ${campaignId}`,
-  );
+export function touchCampaign(_db: LibSQLDatabase, campaignId: string, inputs: boolean): Statement {
+  return inputs
+    ? text`update campaigns set revision = revision + 1, inputs_revision = inputs_revision + 1 where id = ${campaignId}`
+    : text`update campaigns set revision = revision + 1 where id = ${campaignId}`;
 }

@@ -1,10 +1,9 @@
-import { and, eq, inArray, sql } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
-import { samples } from '../../schema/tables/index.ts';
 import type { Ports } from '../ports/index.ts';
 import { guarded, isFenceBreak, LateWorker, runBatch, type Statement } from './fence.ts';
 import { hashOf } from './ids.ts';
 import { type DueCheck, queueDueJobs, type Step, touchCampaign } from './job-rows.ts';
+import { allRows, text } from './statement.ts';
 
 /** A worker that says nothing for this long has lost its job. */
 export const LEASE_MS = 30_000;
@@ -40,11 +39,13 @@ export async function claimJobs(ports: Ports, options: ClaimOptions): Promise<Cl
   const { owner, limit, campaignId, jobId, eager = false } = options;
   const now = ports.clock.now();
   const due = eager
-    ? sql`(next_try_at <= ${now} or (step = 'assign-scans' and attempts = 0))`
-    : sql`next_try_at <= ${now}`;
-  const within = sql`${campaignId === undefined ? sql`1` : sql`campaign_id = ${campaignId}`} and ${jobId === undefined ? sql`1` : sql`id = ${jobId}`}`;
+    ? text`(next_try_at <= ${now} or (step = 'assign-scans' and attempts = 0))`
+    : text`next_try_at <= ${now}`;
+  const within = text`${campaignId === undefined ? text`1` : text`campaign_id = ${campaignId}`} and ${jobId === undefined ? text`1` : text`id = ${jobId}`}`;
   const rows = await ports.database.write((db) =>
-    db.all<ClaimedJob>(sql`
+    allRows<ClaimedJob>(
+      db,
+      text`
       update jobs set state = 'running', generation = generation + 1, attempts = attempts + 1, started_at = ${now},
         leased_by = ${owner}, leased_until = ${now + LEASE_MS}
       where id in (
@@ -57,15 +58,15 @@ export async function claimJobs(ports: Ports, options: ClaimOptions): Promise<Cl
           select id, priority, rowid as row from jobs
           where state = 'running' and leased_until < ${now} and attempts < ${MAX_ATTEMPTS} and ${within}
         ) order by priority, row limit ${limit})
-      returning id, campaign_id as campaignId, step, subject, attempts, generation`),
+      returning id, campaign_id as campaignId, step, subject, attempts, generation`,
+    ),
   );
   const fitted = rows.filter((row) => row.step === 'fit-sample').map((row) => row.subject);
   if (fitted.length > 0) {
     await ports.database.write((db) =>
-      db
-        .update(samples)
-        .set({ state: 'fitting' })
-        .where(and(inArray(samples.id, fitted), eq(samples.state, 'queued'))),
+      runBatch(db, [
+        text`update samples set state = 'fitting' where state = 'queued' and id in (select value from json_each(${JSON.stringify(fitted)}))`,
+      ]),
     );
   }
   return rows;
@@ -75,21 +76,21 @@ export async function claimJobs(ports: Ports, options: ClaimOptions): Promise<Cl
 export async function extendLeases(ports: Ports, held: readonly ClaimedJob[]): Promise<Set<string>> {
   if (held.length === 0) return new Set();
   const until = ports.clock.now() + LEASE_MS;
-  const pairs = sql.join(
-    held.map(({ id, generation }) => sql`(${id}, ${generation})`),
-    sql`, `,
-  );
+  const pairs = JSON.stringify(held.map(({ id, generation }) => [id, generation]));
   const rows = await ports.database.write((db) =>
-    db.all<{ id: string }>(sql`
-      update jobs set leased_until = ${until} where state = 'running' and (id, generation) in (values ${pairs}) returning id`),
+    allRows<{ id: string }>(
+      db,
+      text`
+      update jobs set leased_until = ${until} where state = 'running' and (id, generation) in (select value ->> 0, value ->> 1 from json_each(${pairs})) returning id`,
+    ),
   );
   return new Set(rows.map((row) => row.id));
 }
 
-const guardOf = (db: LibSQLDatabase, job: ClaimedJob, now: number): Statement =>
-  db.run(sql`
+const guardOf = (job: ClaimedJob, now: number): Statement =>
+  text`
     update jobs set state = 'done', finished_at = ${now}, leased_by = null, leased_until = null, last_error = null
-    where id = ${job.id} and generation = ${job.generation} and state = 'running'`);
+    where id = ${job.id} and generation = ${job.generation} and state = 'running'`;
 
 async function writeBack(ports: Ports, job: ClaimedJob, build: (db: LibSQLDatabase) => Statement[]): Promise<void> {
   try {
@@ -113,7 +114,7 @@ export function completeJob(
 ): Promise<void> {
   const now = ports.clock.now();
   return writeBack(ports, job, (db) =>
-    guarded(db, guardOf(db, job, now), [...results(db, now), ...followUp(db, job, now, check)]),
+    guarded(guardOf(job, now), [...results(db, now), ...followUp(db, job, now, check)]),
   );
 }
 
@@ -143,10 +144,9 @@ export async function failAttempt(
   if (job.attempts >= MAX_ATTEMPTS) {
     await writeBack(ports, job, (db) =>
       guarded(
-        db,
-        db.run(sql`
+        text`
           update jobs set state = 'failed', finished_at = ${now}, leased_by = null, leased_until = null, last_error = ${error}
-          where id = ${job.id} and generation = ${job.generation} and state = 'running'`),
+          where id = ${job.id} and generation = ${job.generation} and state = 'running'`,
         [...subjectFailed(db, now), ...followUp(db, job, now, { instruments: true, samples: true })],
       ),
     );
@@ -156,12 +156,11 @@ export async function failAttempt(
   // A newer job on the same subject waits already: it does the work, and only one may wait.
   await writeBack(ports, job, (db) =>
     guarded(
-      db,
-      db.run(sql`
+      text`
         update jobs set leased_by = null, leased_until = null, last_error = ${error}, next_try_at = ${now + delayMs}, woken = 0,
           state = case when exists (select 1 from jobs twin where twin.step = jobs.step and twin.subject = jobs.subject and twin.state = 'queued')
             then 'done' else 'queued' end
-        where id = ${job.id} and generation = ${job.generation} and state = 'running'`),
+        where id = ${job.id} and generation = ${job.generation} and state = 'running'`,
       [touchCampaign(db, job.campaignId, false)],
     ),
   );
@@ -169,9 +168,12 @@ export async function failAttempt(
 
 /** Jobs whose worker vanished on their last attempt: nobody may claim them, so the sweep fails them. */
 export function findLostJobs(ports: Ports): Promise<ClaimedJob[]> {
-  return ports.database.read.all<ClaimedJob>(sql`
+  return allRows<ClaimedJob>(
+    ports.database.read,
+    text`
     select id, campaign_id as campaignId, step, subject, attempts, generation from jobs
-    where state = 'running' and leased_until < ${ports.clock.now()} and attempts >= ${MAX_ATTEMPTS}`);
+    where state = 'running' and leased_until < ${ports.clock.now()} and attempts >= ${MAX_ATTEMPTS}`,
+  );
 }
 
 /** Sends wake-ups for jobs that were queued inside a write-back. Where wake-ups are heard in this process one is enough. */
@@ -179,9 +181,12 @@ async function wakeNewJobs(ports: Ports, { id: doneId, campaignId, step, subject
   if (ports.queue.heard) return ports.queue.wake(doneId, 0);
   // A twin that waited for this job may have been woken in vain while it ran.
   const rows = await ports.database.write((db) =>
-    db.all<{ id: string; nextTryAt: number }>(sql`
+    allRows<{ id: string; nextTryAt: number }>(
+      db,
+      text`
       update jobs set woken = 1 where campaign_id = ${campaignId} and state = 'queued' and (woken = 0 or (step = ${step} and subject = ${subject}))
-      returning id, next_try_at as nextTryAt`),
+      returning id, next_try_at as nextTryAt`,
+    ),
   );
   const now = ports.clock.now();
   for (const { id, nextTryAt } of rows) await ports.queue.wake(id, Math.max(0, (nextTryAt - now) / 1000));
@@ -190,17 +195,23 @@ async function wakeNewJobs(ports: Ports, { id: doneId, campaignId, step, subject
 /** Ids of due jobs, for the sweep of the serverless home: a lost wake-up is sent again. */
 export async function listDueJobIds(ports: Ports, limit: number): Promise<string[]> {
   const now = ports.clock.now();
-  const rows = await ports.database.read.all<{ id: string }>(sql`
+  const rows = await allRows<{ id: string }>(
+    ports.database.read,
+    text`
     select id from jobs where (state = 'queued' and next_try_at <= ${now}) or (state = 'running' and leased_until < ${now})
-    order by priority, rowid limit ${limit}`);
+    order by priority, rowid limit ${limit}`,
+  );
   return rows.map((row) => row.id);
 }
 
 /** How many jobs are open, and when the next waiting one is due (ms since the epoch). */
 export async function openJobs(ports: Ports, campaignId?: string): Promise<{ open: number; nextTryAt: number | null }> {
-  const within = campaignId === undefined ? sql`1` : sql`campaign_id = ${campaignId}`;
-  const [row] = await ports.database.read.all<{ open: number; nextTryAt: number | null }>(sql`
+  const within = campaignId === undefined ? text`1` : text`campaign_id = ${campaignId}`;
+  const [row] = await allRows<{ open: number; nextTryAt: number | null }>(
+    ports.database.read,
+    text`
     select count(*) as open, min(case when state = 'queued' then next_try_at else leased_until end) as nextTryAt
-    from jobs where state in ('queued', 'running') and ${within}`);
+    from jobs where state in ('queued', 'running') and ${within}`,
+  );
   return row;
 }

@@ -2,6 +2,7 @@ import { and, asc, eq } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
 import { instruments, plans, samples, scans } from '../../schema/tables/index.ts';
 import type { CoverageRow, GapRow } from '../../schema/wire/campaign.ts';
+import type { AdviceRow } from '../../schema/wire/forecasts.ts';
 import type { ReducedSummary } from '../../schema/wire/reduced-blob.ts';
 import type { InstrumentCalibration, SampleSheetRow, ScanSheetRow } from '../../schema/wire/scan.ts';
 import type { Role } from '../../schema/wire/states.ts';
@@ -52,9 +53,9 @@ export async function loadPlan(ports: Ports, campaignId: string): Promise<PlanRo
 export const savePlan = (
   db: LibSQLDatabase,
   campaignId: string,
-  plan: { coverage: CoverageRow[]; gaps: GapRow[] },
+  { coverage, gaps, advice }: { coverage: CoverageRow[]; gaps: GapRow[]; advice: AdviceRow[] },
 ): Statement =>
   db
     .insert(plans)
-    .values({ campaignId, coverage: plan.coverage, gaps: plan.gaps })
-    .onConflictDoUpdate({ target: plans.campaignId, set: { coverage: plan.coverage, gaps: plan.gaps } });
+    .values({ campaignId, coverage, gaps, advice })
+    .onConflictDoUpdate({ target: plans.campaignId, set: { coverage, gaps, advice } });

@@ -6,6 +6,7 @@ export type StoreRefusalCode =
   | 'job-unknown'
   | 'job-not-failed'
   | 'scan-unknown'
+  | 'scan-superseded'
   | 'sample-unknown'
   | 'instrument-unknown';
 

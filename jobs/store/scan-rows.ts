@@ -8,12 +8,21 @@ import type { Ports } from '../ports/index.ts';
 import { loadSheetRows } from './assignment-rows.ts';
 import type { Statement } from './fence.ts';
 import { touchSamples } from './job-rows.ts';
+import { json, preparedOnce, text } from './statement.ts';
 
 export type FileRow = typeof files.$inferSelect;
 export type ScanRow = typeof scans.$inferSelect;
 
-export async function loadFile(ports: Ports, fileId: string): Promise<FileRow | undefined> {
-  return (await ports.database.read.select().from(files).where(eq(files.id, fileId)))[0];
+const fileById = preparedOnce((db) =>
+  db
+    .select()
+    .from(files)
+    .where(eq(files.id, sql.placeholder('id')))
+    .prepare(),
+);
+
+export async function loadFile(ports: Ports, id: string): Promise<FileRow | undefined> {
+  return (await fileById(ports.database.read).all({ id }))[0];
 }
 
 const scanSamples = (fileId: string) => sql`select sample from scans where file_id = ${fileId} and role = 'sample'`;
@@ -25,17 +34,16 @@ export function saveReadFile(
   read: { columnsKey: string; highestRateKPerS: number; flags: Flag[] },
 ): Statement[] {
   return [
-    db
-      .update(files)
-      .set({ state: 'read', reason: null, ...read })
-      .where(eq(files.id, file.id)),
-    db.run(sql`update scans set status = 'read' where file_id = ${file.id} and status = 'received'`),
+    text`
+      update files set state = 'read', reason = null, columns_key = ${read.columnsKey},
+        highest_rate_k_per_s = ${read.highestRateKPerS}, flags = ${json(read.flags)} where id = ${file.id}`,
+    text`update scans set status = 'read' where file_id = ${file.id} and status = 'received'`,
     // A faster scan may make a chip of what was taken for a furnace.
-    db.run(sql`
+    text`
       update instruments set inputs_revision = inputs_revision + 1
       where campaign_id = ${file.campaignId} and highest_rate_k_per_s < ${read.highestRateKPerS}
         and json_extract(sheet_row, '$.kind') is null and calibration is not null
-        and instrument in (select instrument from scans where file_id = ${file.id} and disposition = 'assigned')`),
+        and instrument in (select instrument from scans where file_id = ${file.id} and disposition = 'assigned')`,
   ];
 }
 
@@ -70,8 +78,8 @@ export interface ReductionRows {
   sampleRow: SampleSheetRow | null;
 }
 
-const selectReductions = (ports: Ports) =>
-  ports.database.read
+const selectReductions = (db: LibSQLDatabase) =>
+  db
     .select({
       scan: scans,
       file: files,
@@ -90,20 +98,32 @@ const selectReductions = (ports: Ports) =>
     );
 
 export async function loadReduction(ports: Ports, scanId: string): Promise<ReductionRows | undefined> {
-  return (await selectReductions(ports).where(eq(scans.id, scanId)))[0];
+  return (await reductionOfScan(ports.database.read).all({ scanId }))[0];
 }
+
+const reductionOfScan = preparedOnce((db) =>
+  selectReductions(db)
+    .where(eq(scans.id, sql.placeholder('scanId')))
+    .prepare(),
+);
+
+const readyReductions = preparedOnce((db) =>
+  selectReductions(db)
+    .where(
+      and(
+        eq(scans.fileId, sql.placeholder('fileId')),
+        eq(scans.disposition, 'assigned'),
+        inArray(scans.status, ['received', 'read']),
+        eq(instruments.calibratedRevision, instruments.inputsRevision),
+        sql`(json_extract(${instruments.sheetRow}, '$.kind') is not null or ${instruments.highestRateKPerS} >= ${sql.placeholder('highestRateKPerS')})`,
+      ),
+    )
+    .prepare(),
+);
 
 /** Scans of a file just read that can be reduced at once: assigned, and on an instrument that this file's rate does not change. */
 export function loadReadyReductions(ports: Ports, file: FileRow, highestRateKPerS: number): Promise<ReductionRows[]> {
-  return selectReductions(ports).where(
-    and(
-      eq(scans.fileId, file.id),
-      eq(scans.disposition, 'assigned'),
-      inArray(scans.status, ['received', 'read']),
-      eq(instruments.calibratedRevision, instruments.inputsRevision),
-      sql`(json_extract(${instruments.sheetRow}, '$.kind') is not null or ${instruments.highestRateKPerS} >= ${highestRateKPerS})`,
-    ),
-  );
+  return readyReductions(ports.database.read).all({ fileId: file.id, highestRateKPerS });
 }
 
 /** The row of samples.csv for one sample: the first, in the order of the assignment. */
@@ -129,11 +149,11 @@ export function saveReduction(
   },
 ): Statement[] {
   return [
-    db
-      .update(scans)
-      .set(found)
-      .where(and(eq(scans.id, scan.id), eq(scans.inputsRevision, scan.inputsRevision), eq(scans.status, 'read'))),
-    ...(scan.role === 'sample' ? [touchSamples(db, scan.campaignId, sql`${scan.sample}`)] : []),
+    text`
+      update scans set status = ${found.status}, reason = ${found.reason}, reduced_key = ${found.reducedKey},
+        result = ${json(found.result)}, flags = ${json(found.flags)}
+      where id = ${scan.id} and inputs_revision = ${scan.inputsRevision} and status = 'read'`,
+    ...(scan.role === 'sample' ? [touchSamples(db, scan.campaignId, text`${scan.sample}`)] : []),
   ];
 }
 

@@ -12,8 +12,16 @@ export async function campaignStatus(ports: Ports, campaignId: string): Promise<
   const now = ports.clock.now();
   const counted = await read.all<{ status: ScanState; count: number }>(sql`
     select status, count(*) as count from scans where campaign_id = ${campaignId} group by status`);
-  const samples = await read.all<{ sample: string; state: SampleState; reason: string | null }>(sql`
-    select sample, state, reason from samples where campaign_id = ${campaignId} order by sample`);
+  const samples = await read.all<{
+    sample: string;
+    state: SampleState;
+    reason: string | null;
+    verdict: string | null;
+  }>(sql`
+    select sample, state, reason, (
+      select json_extract(body, '$.verdict') from verdicts v
+      where v.campaign_id = ${campaignId} and v.sample = samples.sample order by v.position limit 1) as verdict
+    from samples where campaign_id = ${campaignId} order by sample`);
   const [jobs] = await read.all<{ queued: number; running: number; failed: number; oldest: number | null }>(sql`
     select count(*) filter (where state = 'queued') as queued, count(*) filter (where state = 'running') as running,
       count(*) filter (where state = 'failed') as failed,
@@ -25,7 +33,12 @@ export async function campaignStatus(ports: Ports, campaignId: string): Promise<
   return {
     settled,
     scans,
-    samples: samples.map(({ sample, state, reason }) => ({ sample, state, ...(reason !== null && { reason }) })),
+    samples: samples.map(({ sample, state, reason, verdict }) => ({
+      sample,
+      state,
+      ...(reason !== null && { reason }),
+      ...(verdict !== null && { verdict }),
+    })),
     jobs: {
       queued: jobs.queued,
       running: jobs.running,

@@ -5,6 +5,7 @@ import { decodeReduceOutcome } from '../../schema/wire/reduced-blob.ts';
 import type { SampleState } from '../../schema/wire/states.ts';
 import type { Ports } from '../ports/index.ts';
 import { LOCAL_LAB } from './campaigns.ts';
+import { type Corrections, standingCorrections } from './correction-rows.ts';
 import type { ResultRow } from './tables/index.ts';
 import { loadScanRecords, scanRowsOf } from './tables/scan-table.ts';
 
@@ -17,6 +18,8 @@ export interface ScanView {
   originalKey: string;
   bytes: number;
   reducedKey: string | null;
+  /** Fields corrected by hand, with the value that counts. */
+  corrections: Corrections;
 }
 
 /** One scan within a lab, or undefined. */
@@ -35,6 +38,7 @@ export async function findScan(ports: Ports, scanId: string, lab = LOCAL_LAB): P
     originalKey: scan.blobKey,
     bytes: scan.bytes,
     reducedKey: scan.reducedKey,
+    corrections: await standingCorrections(ports, scanId),
   };
 }
 

@@ -1,5 +1,23 @@
 import { FORECAST_TABLES } from './forecasts.ts';
 
+/** Columns of verdicts.csv. */
+export const VERDICT_COLUMNS = [
+  'sample',
+  'event',
+  'verdict',
+  'bend',
+  'bend_lower99',
+  'bend_upper99',
+  'p_value',
+  'delta_aicc',
+  'energy_low_rate_kJ_per_mol',
+  'energy_high_rate_kJ_per_mol',
+  'instruments',
+  'rate_min_K_per_s',
+  'rate_max_K_per_s',
+  'decides_next',
+] as const;
+
 /**
  * Columns of the result files, in order (INTERFACES, "Result files of run"). The CSV files of `run`, the `?format=csv`
  * answers and the JSON keys of the API all come from this one place. Add columns at the end; never rename.
@@ -57,6 +75,7 @@ export const RESULT_TABLES = {
     'temperature_K',
     'rate_per_s',
   ],
+  verdicts: VERDICT_COLUMNS,
   instruments: [
     'instrument',
     'kind',
@@ -76,24 +95,6 @@ export const RESULT_TABLES = {
   ...FORECAST_TABLES,
   flags: ['severity', 'code', 'sample', 'instrument', 'file', 'event', 'detail', 'action'],
 } as const satisfies Record<string, readonly string[]>;
-
-/** Columns of verdicts.csv; joins RESULT_TABLES with the step that stores verdicts. */
-export const VERDICT_COLUMNS = [
-  'sample',
-  'event',
-  'verdict',
-  'bend',
-  'bend_lower99',
-  'bend_upper99',
-  'p_value',
-  'delta_aicc',
-  'energy_low_rate_kJ_per_mol',
-  'energy_high_rate_kJ_per_mol',
-  'instruments',
-  'rate_min_K_per_s',
-  'rate_max_K_per_s',
-  'decides_next',
-] as const;
 
 export type ResultTable = keyof typeof RESULT_TABLES;
 

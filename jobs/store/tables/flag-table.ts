@@ -2,6 +2,7 @@ import { and, eq } from 'drizzle-orm';
 import { files, flags, scans } from '../../../schema/tables/index.ts';
 import type { Flag } from '../../../schema/wire/flags.ts';
 import type { Ports } from '../../ports/index.ts';
+import { readEndedCorrections } from '../correction-rows.ts';
 import { canonicalJson } from '../ids.ts';
 import type { ResultRow } from './result-row.ts';
 import { compareCells } from './scan-table.ts';
@@ -36,6 +37,7 @@ export async function readFlagTable(ports: Pick<Ports, 'database'>, campaignId: 
       })),
     ),
     ...ofSteps.map((row) => row.body),
+    ...(await readEndedCorrections(ports, campaignId)),
   ];
   const distinct = [...new Map(all.map((f) => [canonicalJson(f), f])).values()];
   const rows = distinct.map(({ severity, code, sample, instrument, file, event, detail, action }) => ({

@@ -4,7 +4,7 @@ import type { Ports } from '../../ports/index.ts';
 import type { ResultRow, TableFilter } from './result-row.ts';
 import { compareCells } from './scan-table.ts';
 
-/** By sample, then as the fit ordered them. */
+/** By sample and event, then as the steps ordered them: fit, verdict, forecast. */
 export async function readParameterTable(
   ports: Pick<Ports, 'database'>,
   campaignId: string,
@@ -22,7 +22,7 @@ export async function readParameterTable(
         event === undefined ? undefined : eq(parameters.event, event),
       ),
     )
-    .orderBy(asc(parameters.sample), asc(parameters.position));
+    .orderBy(asc(parameters.sample), asc(parameters.event), asc(parameters.position));
   return rows.map((row) => ({
     sample: row.sample,
     event: row.event,
@@ -58,23 +58,23 @@ export async function readInstrumentTable(ports: Pick<Ports, 'database'>, campai
     offset_se_K: row.offsetSeK,
     lag_s: row.lagS,
     lag_se_s: row.lagSeS,
-    heat_factor: null,
-    heat_factor_se: null,
+    heat_factor: row.heatFactor ?? null,
+    heat_factor_se: row.heatFactorSe ?? null,
     standards: row.standards,
     source: row.source,
-    offset_slope: null,
+    offset_slope: row.offsetSlope ?? null,
     response_time_s: row.responseS ?? null,
   }));
 }
 
-/** Coverage or gaps of the last plan, in the plan's order. */
+/** Coverage, gaps or advice of the last plan, in the plan's order. */
 export async function readPlanTable(
   ports: Pick<Ports, 'database'>,
   campaignId: string,
-  part: 'coverage' | 'gaps',
+  part: 'coverage' | 'gaps' | 'advice',
   sample?: string,
 ): Promise<ResultRow[]> {
   const [plan] = await ports.database.read.select().from(plans).where(eq(plans.campaignId, campaignId));
-  const rows: { sample: string }[] = plan?.[part] ?? [];
+  const rows: readonly { sample: string }[] = plan?.[part] ?? [];
   return rows.filter((row) => sample === undefined || row.sample === sample) as unknown as ResultRow[];
 }
