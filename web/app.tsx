@@ -1,11 +1,44 @@
 import { path } from './router.ts';
+import { parseRoute } from './routes.ts';
 import { CampaignView } from './views/campaign.tsx';
 import { CampaignListView } from './views/campaign-list.tsx';
+import { lazyView } from './views/lazy-view.tsx';
 import { Masthead } from './views/masthead.tsx';
 import { Notice } from './views/notice.tsx';
 
+// The first page stays small: what is a step further in comes when it is asked for.
+const SampleView = lazyView(async () => (await import('./views/sample.tsx')).SampleView);
+const InstrumentView = lazyView(async () => (await import('./views/instrument.tsx')).InstrumentView);
+const JobsView = lazyView(async () => (await import('./views/jobs.tsx')).JobsView);
+
+function View() {
+  const route = parseRoute(path.value);
+  switch (route.view) {
+    case 'campaigns':
+      return <CampaignListView />;
+    case 'campaign':
+      return <CampaignView key={route.id} id={route.id} />;
+    case 'sample':
+      return <SampleView key={path.value} id={route.id} sample={route.sample} />;
+    case 'instrument':
+      return <InstrumentView key={path.value} id={route.id} instrument={route.instrument} />;
+    case 'jobs':
+      return <JobsView key={route.id} id={route.id} />;
+    case 'none':
+      return (
+        <Notice
+          tone="stop"
+          title="No page at this address"
+          detail={`Nothing is shown at ${path.value}.`}
+          action="Go to the list of campaigns and choose one."
+        >
+          <a href="/">All campaigns</a>
+        </Notice>
+      );
+  }
+}
+
 export function App() {
-  const campaignId = /^\/campaigns\/([^/]+)\/?$/.exec(path.value)?.[1];
   return (
     <>
       <a class="skip" href="#main">
@@ -13,20 +46,7 @@ export function App() {
       </a>
       <Masthead />
       <main id="main" tabIndex={-1}>
-        {campaignId ? (
-          <CampaignView key={campaignId} id={decodeURIComponent(campaignId)} />
-        ) : path.value === '/' ? (
-          <CampaignListView />
-        ) : (
-          <Notice
-            tone="stop"
-            title="No page at this address"
-            detail={`Nothing is shown at ${path.value}.`}
-            action="Go to the list of campaigns and choose one."
-          >
-            <a href="/">All campaigns</a>
-          </Notice>
-        )}
+        <View />
       </main>
     </>
   );

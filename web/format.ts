@@ -49,7 +49,11 @@ export function formatRate(rateKPerS: number, units: Units): string {
 
 /** A whole power of ten for an axis: plain from 0.001 to 1000, else as 10 with an exponent. */
 export function formatPowerOfTen(exponent: number): string {
-  if (exponent >= -3 && exponent <= 3) return formatSignificant(10 ** exponent, 1);
+  return exponent >= -3 && exponent <= 3 ? formatSignificant(10 ** exponent, 1) : formatExponent(exponent);
+}
+
+/** 10 with an exponent. */
+export function formatExponent(exponent: number): string {
   const digits = [...String(Math.abs(exponent))].map((d) => SUPERSCRIPTS[Number(d)]).join('');
   return `10${exponent < 0 ? '⁻' : ''}${digits}`;
 }

@@ -7,6 +7,8 @@ export function navigate(to: string): void {
   history.pushState(null, '', to);
   path.value = location.pathname;
   scrollTo(0, 0);
+  // Keyboard and screen reader go on in the new view, not where the link was.
+  document.getElementById('main')?.focus({ preventScroll: true });
 }
 
 addEventListener('popstate', () => {

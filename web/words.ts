@@ -52,6 +52,30 @@ export const SCAN_STATE_NAMES: Record<ScanState, string> = {
   superseded: 'replaced by newer bytes',
 };
 
+/** What the verdict on the bend of the Kissinger plot says, short. */
+const VERDICT_NAMES: Record<string, string> = {
+  straight: 'one straight law',
+  instrument: 'bend made by an instrument',
+  material: 'the material bends',
+  undecided: 'bend not decided',
+};
+
+export const verdictName = (verdict: string): string => VERDICT_NAMES[verdict] ?? verdict;
+
+const STEP_NAMES: Record<string, string> = {
+  'unpack-archive': 'unpack an archive',
+  'read-sheet': 'read a sheet',
+  'read-scan': 'read a scan',
+  'assign-scans': 'match files with sheets',
+  'reduce-scan': 'reduce a scan',
+  'calibrate-instrument': 'calibrate an instrument',
+  'fit-sample': 'fit a sample',
+  'judge-curvature': 'judge the bend',
+  'plan-campaign': 'plan the campaign',
+};
+
+export const stepName = (step: string): string => STEP_NAMES[step] ?? step.replaceAll('-', ' ');
+
 /** Short names of gaps, for the margin of the map. */
 const GAP_NAMES: Record<string, string> = {
   'few-rates': 'too few rates',

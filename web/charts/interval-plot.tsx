@@ -1,5 +1,5 @@
 import { scaleLinear } from 'd3-scale';
-import { formatFixed } from '../format.ts';
+import { labelTicks } from './plot-scale.ts';
 
 /** A linear scale shared by the rows of one small interval plot. */
 export interface IntervalScale {
@@ -34,13 +34,6 @@ export function createIntervalScale(
     const wanted = Math.max(...ticks.map(({ label }) => label.length)) * DIGIT_WIDTH + LABEL_ROOM;
     if (room >= wanted || count === 1) return { width, x: scale, ticks };
   }
-}
-
-/** Equal steps with as many decimals as the step needs. */
-function labelTicks(values: readonly number[]): { value: number; label: string }[] {
-  const step = values.length > 1 ? values[1] - values[0] : 1;
-  const decimals = Math.max(0, -Math.floor(Math.log10(step) + 1e-9));
-  return values.map((value) => ({ value, label: formatFixed(value, decimals) }));
 }
 
 const HEIGHT = 24;

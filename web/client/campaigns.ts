@@ -1,8 +1,11 @@
-import type { CampaignStatus, CoverageRow, GapRow } from '../../schema/wire/campaign.ts';
+import type { CoverageRow, GapRow } from '../../schema/wire/campaign.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { ResultTable } from '../../schema/wire/result-tables.ts';
+import type { CurveKind, Curves } from '../model/curves.ts';
 import { request, requestAll } from './request.ts';
-import type { Campaign, FileOutcome, FlagRow, InstrumentRow, ScanRow } from './rows.ts';
+import type { Campaign, FileOutcome, FlagRow, InstrumentRow, JobRow, SampleView, ScanRow, Status } from './rows.ts';
+import { copyText, saveFile } from './save.ts';
+import { tabsFromCsv } from './tabs.ts';
 
 /** Rows of each table as the API lists them. */
 export interface TableRows {
@@ -16,19 +19,44 @@ export interface TableRows {
 
 const route = (id: string): string => `/campaigns/${encodeURIComponent(id)}`;
 
-export const listCampaigns = (signal?: AbortSignal): Promise<Campaign[]> => requestAll<Campaign>('/campaigns', signal);
+export const listCampaigns = (signal?: AbortSignal): Promise<Campaign[]> =>
+  requestAll<Campaign>('/campaigns', {}, signal);
 
 export const loadCampaign = async (id: string, signal?: AbortSignal): Promise<Campaign> =>
   (await request(route(id), { signal })).json();
 
-export const loadStatus = async (id: string, signal?: AbortSignal): Promise<CampaignStatus> =>
+export const loadStatus = async (id: string, signal?: AbortSignal): Promise<Status> =>
   (await request(`${route(id)}/status`, { signal })).json();
+
+export interface TableFilter {
+  sample?: string;
+  quantity?: string;
+  method?: string;
+}
 
 export const loadTable = <Table extends keyof TableRows>(
   id: string,
   table: Table,
+  filter: Pick<TableFilter, 'sample'> = {},
   signal?: AbortSignal,
-): Promise<TableRows[Table][]> => requestAll<TableRows[Table]>(`${route(id)}/${table}`, signal);
+): Promise<TableRows[Table][]> => requestAll<TableRows[Table]>(`${route(id)}/${table}`, { ...filter }, signal);
+
+export const loadParameters = (id: string, filter: TableFilter, signal?: AbortSignal): Promise<ParameterRow[]> =>
+  requestAll<ParameterRow>(`${route(id)}/parameters`, { ...filter }, signal);
+
+const sampleRoute = (sampleId: string): string => `/samples/${encodeURIComponent(sampleId)}`;
+
+export const loadSample = async (sampleId: string, signal?: AbortSignal): Promise<SampleView> =>
+  (await request(sampleRoute(sampleId), { signal })).json();
+
+export const loadCurves = async (sampleId: string, kind: CurveKind, signal?: AbortSignal): Promise<Curves> =>
+  (await request(`${sampleRoute(sampleId)}/curves?kind=${kind}`, { signal })).json();
+
+export const loadJobs = (id: string, state: JobRow['state'], signal?: AbortSignal): Promise<JobRow[]> =>
+  requestAll<JobRow>('/jobs', { campaign: id, state }, signal);
+
+export const retryJob = async (jobId: string): Promise<JobRow> =>
+  (await request(`/jobs/${encodeURIComponent(jobId)}/retry`, { method: 'POST' })).json();
 
 export const openStatusStream = (id: string, lastEventId: string | undefined, signal: AbortSignal): Promise<Response> =>
   request(`${route(id)}/stream`, {
@@ -57,13 +85,24 @@ export const sendFile = async (id: string, path: string, file: File, signal?: Ab
     })
   ).json();
 
-/** A whole table as CSV, saved under `name-table.csv`. */
-export async function downloadTable(campaign: Campaign, table: ResultTable): Promise<void> {
-  const response = await request(`${route(campaign.id)}/${table}?format=csv`);
-  const url = URL.createObjectURL(await response.blob());
-  const link = document.createElement('a');
-  link.href = url;
-  link.download = `${campaign.name.replace(/[^\p{L}\p{N}]+/gu, '-')}-${table}.csv`;
-  link.click();
-  setTimeout(() => URL.revokeObjectURL(url), 10_000);
+const loadCsv = async (id: string, table: ResultTable, filter: Pick<TableFilter, 'sample'>): Promise<string> =>
+  (await request(`${route(id)}/${table}?${new URLSearchParams({ format: 'csv', ...filter })}`)).text();
+
+/** A whole table, or a sample's part of it, saved as CSV. */
+export async function downloadTable(
+  campaign: Campaign,
+  table: ResultTable,
+  filter: Pick<TableFilter, 'sample'> = {},
+): Promise<void> {
+  const text = await loadCsv(campaign.id, table, filter);
+  saveFile(new Blob([text], { type: 'text/csv' }), [campaign.name, filter.sample, table], 'csv');
+}
+
+/** The same to the clipboard, cells parted by tabs as spreadsheets take them. */
+export async function copyTable(
+  campaign: Campaign,
+  table: ResultTable,
+  filter: Pick<TableFilter, 'sample'> = {},
+): Promise<void> {
+  await copyText(loadCsv(campaign.id, table, filter).then(tabsFromCsv));
 }

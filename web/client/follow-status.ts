@@ -1,14 +1,14 @@
-import type { CampaignStatus } from '../../schema/wire/campaign.ts';
 import { loadStatus, openStatusStream } from './campaigns.ts';
 import { createEventParser } from './events.ts';
 import { asProblem, type Problem } from './request.ts';
+import type { Status } from './rows.ts';
 
 /** How the page hears of changes: by the event stream, by asking, or not at all. */
 export type Link = 'connecting' | 'live' | 'polling' | 'offline';
 
 export interface StatusListener {
   /** `isNews`: the server says that something changed; an answer to polling may be the same again. */
-  onStatus(status: CampaignStatus, isNews: boolean): void;
+  onStatus(status: Status, isNews: boolean): void;
   onLink(link: Link, problem?: Problem): void;
 }
 

@@ -58,11 +58,15 @@ export const asProblem = (error: unknown): Problem =>
     : new Problem(0, 'The page met an error', String(error), 'Reload the page; if it stays, report it with this text.');
 
 /** All items of a list route, page after page. */
-export async function requestAll<Item>(route: string, signal?: AbortSignal): Promise<Item[]> {
+export async function requestAll<Item>(
+  route: string,
+  filter: Record<string, string> = {},
+  signal?: AbortSignal,
+): Promise<Item[]> {
   const items: Item[] = [];
   let after: string | undefined;
   do {
-    const query = new URLSearchParams({ limit: '1000', ...(after === undefined ? {} : { after }) });
+    const query = new URLSearchParams({ ...filter, limit: '1000', ...(after === undefined ? {} : { after }) });
     const page = await (await request(`${route}?${query}`, { signal })).json();
     items.push(...page.items);
     after = page.next ?? undefined;

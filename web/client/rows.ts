@@ -1,6 +1,7 @@
+import type { CampaignStatus } from '../../schema/wire/campaign.ts';
 import type { FlagCode, Severity } from '../../schema/wire/flags.ts';
 import type { RESULT_TABLES, ResultTable } from '../../schema/wire/result-tables.ts';
-import type { Role, ScanState } from '../../schema/wire/states.ts';
+import type { JobState, Role, ScanState } from '../../schema/wire/states.ts';
 
 type Column<Table extends ResultTable> = (typeof RESULT_TABLES)[Table][number];
 
@@ -45,6 +46,30 @@ export interface Campaign {
   id: string;
   name: string;
   created_at: string;
+}
+
+/** The status as the API sends it: with the ids of the samples. */
+export type StatusSample = CampaignStatus['samples'][number] & { id: string };
+export type Status = Omit<CampaignStatus, 'samples'> & { samples: StatusSample[] };
+
+export interface SampleView {
+  id: string;
+  sample: string;
+  scans: { id: string; file: string; instrument: string; status: ScanState }[];
+}
+
+export interface JobRow {
+  id: string;
+  step: string;
+  /** Id of the file, scan, sample or campaign that the step works on */
+  subject: string;
+  state: JobState;
+  attempts: number;
+  last_error: string | null;
+  next_try_at: string;
+  created_at: string;
+  started_at: string | null;
+  finished_at: string | null;
 }
 
 export interface FileOutcome {

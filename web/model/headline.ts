@@ -52,6 +52,45 @@ export function numbersBySample(rows: readonly ParameterRow[]): Map<string, Even
   return samples;
 }
 
+/** E over conversion of one event by the first method of ENERGY_ORDER that follows conversion, in its Monte Carlo interval. */
+export interface EventEnergies {
+  event: number;
+  method: string;
+  conversion: number[];
+  value: number[];
+  lower: number[];
+  upper: number[];
+}
+
+export function energiesBySample(rows: readonly ParameterRow[]): Map<string, EventEnergies[]> {
+  const found = new Map<string, EventEnergies>();
+  for (const row of rows) {
+    if (row.quantity !== 'activation_energy' || row.conversion === null) continue;
+    if (row.variant !== '' || row.interval !== 'monte_carlo') continue;
+    const key = `${row.sample}\u0000${row.event}\u0000${row.method}`;
+    let energies = found.get(key);
+    if (!energies) {
+      energies = { event: row.event, method: row.method, conversion: [], value: [], lower: [], upper: [] };
+      found.set(key, energies);
+    }
+    energies.conversion.push(row.conversion);
+    energies.value.push(row.value);
+    energies.lower.push(row.lower95 ?? row.value);
+    energies.upper.push(row.upper95 ?? row.value);
+  }
+  const samples = new Map<string, EventEnergies[]>();
+  for (const [key, energies] of found) {
+    const [sample] = key.split('\u0000');
+    const own = samples.get(sample) ?? [];
+    const standing = own.findIndex((e) => e.event === energies.event);
+    const rank = ({ method }: EventEnergies): number => ENERGY_ORDER.indexOf(method) + 1 || Number.POSITIVE_INFINITY;
+    if (standing < 0) own.push(energies);
+    else if (rank(energies) < rank(own[standing])) own[standing] = energies;
+    samples.set(sample, own);
+  }
+  return samples;
+}
+
 const pick = (rows: readonly ParameterRow[], order: readonly string[]): ParameterRow | undefined =>
   order.map((method) => rows.find((row) => row.method === method)).find(Boolean) ?? rows[0];
 

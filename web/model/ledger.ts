@@ -3,8 +3,7 @@ import { FLAG_CODES } from '../../schema/wire/flags.ts';
 import type { Role, SampleState, ScanState } from '../../schema/wire/states.ts';
 import type { FlagRow, ScanRow } from '../client/rows.ts';
 import { flagMeaning } from '../words.ts';
-import type { EventNumbers } from './headline.ts';
-import { numbersBySample } from './headline.ts';
+import { type EventEnergies, type EventNumbers, energiesBySample, numbersBySample } from './headline.ts';
 
 /** How a mark is drawn: full when the scan gives results, hollow while it waits, struck out when it gives none. */
 export type MarkLook = 'full' | 'hollow' | 'struck';
@@ -29,10 +28,13 @@ export interface LedgerRow {
   role: Role;
   state?: SampleState;
   reason?: string;
+  verdict?: string;
   marks: ScanMark[];
   gaps: GapRow[];
   emptySpans: EmptySpan[];
   numbers: EventNumbers[];
+  /** E over conversion by the headline method */
+  energies: EventEnergies[];
   /** What asks for a look at the sample as a whole, in words. */
   concerns: string[];
 }
@@ -115,11 +117,15 @@ export function buildLedger(tables: LedgerTables, status: CampaignStatus | undef
   const rowOf = (sample: string, role: Role): LedgerRow => {
     const key = `${role}\u0000${sample}`;
     let row = rows.get(key);
-    if (!row) rows.set(key, (row = { sample, role, marks: [], gaps: [], emptySpans: [], numbers: [], concerns: [] }));
+    if (!row)
+      rows.set(
+        key,
+        (row = { sample, role, marks: [], gaps: [], emptySpans: [], numbers: [], energies: [], concerns: [] }),
+      );
     return row;
   };
-  for (const { sample, state, reason } of status?.samples ?? [])
-    Object.assign(rowOf(sample, 'sample'), { state, reason });
+  for (const { sample, state, reason, verdict } of status?.samples ?? [])
+    Object.assign(rowOf(sample, 'sample'), { state, reason, verdict });
 
   const scans = new Map<string, ScanRow[]>();
   for (const scan of tables.scans) {
@@ -135,6 +141,7 @@ export function buildLedger(tables: LedgerTables, status: CampaignStatus | undef
   }
 
   const numbers = numbersBySample(tables.parameters);
+  const energies = energiesBySample(tables.parameters);
   for (const row of rows.values()) {
     row.marks.sort((a, b) => (a.rateKPerS ?? 0) - (b.rateKPerS ?? 0) || (a.instrument < b.instrument ? -1 : 1));
     if (row.role !== 'sample') continue;
@@ -142,6 +149,7 @@ export function buildLedger(tables: LedgerTables, status: CampaignStatus | undef
     row.concerns = concernsOf(row.sample, tables.flags, row.gaps);
     row.emptySpans = emptySpans(tables.coverage.filter((c) => c.sample === row.sample));
     row.numbers = numbers.get(row.sample) ?? [];
+    row.energies = energies.get(row.sample) ?? [];
   }
   return [...rows.values()].sort((a, b) => Number(a.role !== 'sample') - Number(b.role !== 'sample'));
 }

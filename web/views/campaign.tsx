@@ -1,6 +1,7 @@
 import { useEffect, useMemo } from 'preact/hooks';
 import { buildLedger, instrumentNames } from '../model/ledger.ts';
 import { tellableNow } from '../model/next-steps.ts';
+import { jobsPath } from '../routes.ts';
 import { openCampaign } from '../state/live-campaign.ts';
 import { createUploads } from '../state/uploads.ts';
 import { FileDesk, Outcomes } from './file-desk.tsx';
@@ -19,7 +20,7 @@ export function CampaignView({ id }: { id: string }) {
 
   const campaign = live.campaign.value;
   const status = live.status.value;
-  const tables = live.tables.value;
+  const tables = live.data.value;
   const problem = live.problem.value;
   useEffect(() => {
     document.title = `${campaign?.name ?? 'Campaign'} – ratespan`;
@@ -48,6 +49,7 @@ export function CampaignView({ id }: { id: string }) {
     );
   }
   const isEmpty = tables !== undefined && rows.length === 0 && tables.scans.length === 0;
+  const numbered = rows.filter((row) => row.numbers.length > 0).map((row) => row.sample);
   const unassigned = tables?.scans.filter((scan) => scan.status === 'unassigned') ?? [];
   return (
     <>
@@ -56,7 +58,7 @@ export function CampaignView({ id }: { id: string }) {
           <h1>{campaign.name}</h1>
           {!isEmpty && <FileDesk uploads={uploads} isEmpty={false} />}
         </div>
-        {status && <Progress status={status} link={live.link.value} />}
+        {status && <Progress status={status} link={live.link.value} jobsHref={jobsPath(campaign.id)} />}
       </div>
       {problem && <ProblemNotice problem={problem} />}
       {isEmpty && <FileDesk uploads={uploads} isEmpty />}
@@ -66,7 +68,7 @@ export function CampaignView({ id }: { id: string }) {
         <>
           <Ledger campaign={campaign} rows={rows} instruments={instruments} unassigned={unassigned} />
           <NextSteps campaign={campaign} flags={told.flags} gaps={told.gaps} isSettled={status?.settled ?? false} />
-          <Numbers campaign={campaign} rows={rows} />
+          <Numbers campaign={campaign} samples={numbered} revision={tables} />
           <InstrumentTable campaign={campaign} rows={tables.instruments} names={instruments} />
         </>
       )}

@@ -1,33 +1,57 @@
 import { useSignal } from '@preact/signals';
 import type { ResultTable } from '../../schema/wire/result-tables.ts';
-import { downloadTable } from '../client/campaigns.ts';
+import { copyTable, downloadTable } from '../client/campaigns.ts';
 import { asProblem } from '../client/request.ts';
 import type { Campaign } from '../client/rows.ts';
 
-/** Buttons that save tables as CSV. */
-export function Downloads({ campaign, tables }: { campaign: Campaign; tables: readonly ResultTable[] }) {
-  const trouble = useSignal('');
-  const save = (table: ResultTable) => async () => {
-    trouble.value = '';
+export const SaveSign = () => (
+  <svg width="12" height="12" viewBox="0 0 12 12" aria-hidden="true">
+    <path d="M6 1v6.500M3 5l3 3 3-3M1 11h10" />
+  </svg>
+);
+
+const CopySign = () => (
+  <svg width="12" height="12" viewBox="0 0 12 12" aria-hidden="true">
+    <path d="M1 1h7v7h-7zM11 4v7h-7" />
+  </svg>
+);
+
+/** Buttons that save tables as CSV or put them on the clipboard, whole or for one sample. */
+export function Downloads(props: { campaign: Campaign; tables: readonly ResultTable[]; sample?: string }) {
+  const { campaign, tables, sample } = props;
+  const words = useSignal('');
+  const filter = sample === undefined ? {} : { sample };
+  const run = (table: ResultTable, act: typeof downloadTable, done: string, failed: string) => async () => {
+    words.value = '';
     try {
-      await downloadTable(campaign, table);
+      await act(campaign, table, filter);
+      words.value = done;
     } catch (error) {
       const { detail, action } = asProblem(error);
-      trouble.value = `${table}.csv was not saved: ${detail} ${action}`;
+      words.value = `${table}.csv was not ${failed}: ${detail} ${action}`;
     }
   };
   return (
     <div class="downloads">
       {tables.map((table) => (
-        <button key={table} type="button" class="quiet" onClick={save(table)}>
-          <svg width="12" height="12" viewBox="0 0 12 12" aria-hidden="true">
-            <path d="M6 1v6.500M3 5l3 3 3-3M1 11h10" />
-          </svg>
-          <span class="unseen">Save </span>
-          {table}.csv
-        </button>
+        <span key={table} class="download-pair">
+          <button type="button" class="quiet" onClick={run(table, downloadTable, '', 'saved')}>
+            <SaveSign />
+            <span class="unseen">Save </span>
+            {table}.csv
+          </button>
+          <button
+            type="button"
+            class="quiet copy"
+            title={`Copy ${table}, cells parted by tabs`}
+            onClick={run(table, copyTable, `${table} copied`, 'copied')}
+          >
+            <CopySign />
+            <span class="unseen">Copy {table}</span>
+          </button>
+        </span>
       ))}
-      {trouble.value && <p role="alert">{trouble.value}</p>}
+      {words.value && <p role="status">{words.value}</p>}
     </div>
   );
 }

@@ -1,16 +1,17 @@
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import type { Campaign, InstrumentRow } from '../client/rows.ts';
 import { formatEstimate } from '../format.ts';
+import { instrumentPath } from '../routes.ts';
 import { Downloads } from './download.tsx';
 
-const SOURCES: Record<InstrumentRow['source'], string> = {
+export const SOURCES: Record<InstrumentRow['source'], string> = {
   standards: 'scans of standards',
   sheet: 'instruments.csv',
   prior: 'nothing given: a guess with a wide error',
 };
 
 /** Two standard errors either side: close to the 95 % interval used elsewhere on the page. */
-const withError = (value: number | null, error: number | null, unit: string) => {
+export const withError = (value: number | null, error: number | null, unit: string) => {
   if (value === null) return '–';
   const spread = error === null ? null : 1.96 * error;
   const estimate = formatEstimate(
@@ -37,7 +38,7 @@ export function InstrumentTable(props: {
       {rows.length === 0 ? (
         <p class="waiting">Corrections are listed here once the first scan is reduced.</p>
       ) : (
-        <table class="instrument-table">
+        <table class="stack-table">
           <thead>
             <tr>
               <th scope="col">Instrument</th>
@@ -51,12 +52,17 @@ export function InstrumentTable(props: {
             {rows.map((row) => (
               <tr key={row.instrument}>
                 <th scope="row">
-                  <InstrumentKey instrument={names.indexOf(row.instrument)} /> {row.instrument}
+                  <InstrumentKey instrument={names.indexOf(row.instrument)} />{' '}
+                  <a href={instrumentPath(campaign.id, row.instrument)}>{row.instrument}</a>
                 </th>
-                <td>{row.kind ?? '–'}</td>
-                <td class="number">{withError(row.lag_s, row.lag_se_s, 's')}</td>
-                <td class="number">{withError(row.offset_K, row.offset_se_K, 'K')}</td>
-                <td>{SOURCES[row.source]}</td>
+                <td data-head="kind">{row.kind ?? '–'}</td>
+                <td class="number" data-head="lag">
+                  {withError(row.lag_s, row.lag_se_s, 's')}
+                </td>
+                <td class="number" data-head="offset">
+                  {withError(row.offset_K, row.offset_se_K, 'K')}
+                </td>
+                <td data-head="taken from">{SOURCES[row.source]}</td>
               </tr>
             ))}
           </tbody>

@@ -1,17 +1,20 @@
 import { type Signal, useComputed } from '@preact/signals';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
+import { EnergySpark } from '../charts/energy-spark.tsx';
 import type { RateScale } from '../charts/rate-scale.ts';
 import { RateRuling, StripGround, StripMarks } from '../charts/rate-strip.tsx';
 import { StateGlyph } from '../charts/state-glyph.tsx';
 import { nearestMark, type StripLayout } from '../charts/strip-layout.ts';
 import { describeEstimate, describeMark } from '../model/describe.ts';
-import { headlineEnergy, headlineExponent } from '../model/headline.ts';
+import { type EventEnergies, headlineEnergy, headlineExponent } from '../model/headline.ts';
 import type { ActiveMark, LedgerRow } from '../model/ledger.ts';
+import { samplePath } from '../routes.ts';
 import { units } from '../state/units.ts';
-import { gapName, SAMPLE_STATE_NAMES, sentence } from '../words.ts';
+import { gapName, SAMPLE_STATE_NAMES, sentence, verdictName } from '../words.ts';
 
 /** One sample of the coverage map: name and state, strip of marks, headline numbers. */
 export function LedgerEntry(props: {
+  campaignId: string;
   row: LedgerRow;
   index: number;
   scale: RateScale;
@@ -21,7 +24,7 @@ export function LedgerEntry(props: {
   tabRow: Signal<number>;
   onKeyDown(event: KeyboardEvent): void;
 }) {
-  const { row, index, scale, layout, instruments, active, tabRow, onKeyDown } = props;
+  const { campaignId, row, index, scale, layout, instruments, active, tabRow, onKeyDown } = props;
   const idPrefix = `mark-${index}`;
   const tabIndex = useComputed(() => (tabRow.value === index ? 0 : -1));
   const activeId = useComputed(() => {
@@ -36,7 +39,7 @@ export function LedgerEntry(props: {
   return (
     <li class="entry">
       <div class="entry-sample">
-        <h3>{row.sample}</h3>
+        <h3>{row.role === 'sample' ? <a href={samplePath(campaignId, row.sample)}>{row.sample}</a> : row.sample}</h3>
         {row.role !== 'sample' && <p class="entry-state">{row.role}</p>}
         {row.state && (
           <p class="entry-state">
@@ -44,6 +47,7 @@ export function LedgerEntry(props: {
             {SAMPLE_STATE_NAMES[row.state]}
           </p>
         )}
+        {row.verdict && <p class="entry-verdict">{verdictName(row.verdict)}</p>}
         {row.reason && row.state !== 'fitted' && <p class="entry-reason">{row.reason}</p>}
         {row.concerns.map((concern) => (
           <p key={concern} class="entry-concern">
@@ -86,7 +90,7 @@ export function LedgerEntry(props: {
           </svg>
         </div>
       </div>
-      <Headline rows={row.numbers.map(headlineEnergy)} name="E" unit="kJ/mol" />
+      <Headline rows={row.numbers.map(headlineEnergy)} name="E" unit="kJ/mol" energies={row.energies} />
       <Headline rows={row.numbers.map(headlineExponent)} name="n" unit="" />
     </li>
   );
@@ -99,7 +103,12 @@ function ActiveRing(props: { active: Signal<ActiveMark | undefined>; index: numb
 }
 
 /** One number an event, with its interval and method; a dash where there is none yet. */
-function Headline(props: { rows: readonly (ParameterRow | undefined)[]; name: string; unit: string }) {
+function Headline(props: {
+  rows: readonly (ParameterRow | undefined)[];
+  name: string;
+  unit: string;
+  energies?: readonly EventEnergies[];
+}) {
   const rows = props.rows.filter((row) => row !== undefined);
   return (
     <div class="entry-number">
@@ -109,6 +118,7 @@ function Headline(props: { rows: readonly (ParameterRow | undefined)[]; name: st
       {rows.length === 0 && <p class="no-number">–</p>}
       {rows.map((row) => {
         const { value, spread, method } = describeEstimate(row);
+        const energies = props.energies?.find((e) => e.event === row.event);
         return (
           <p key={row.event}>
             <span class="number">
@@ -118,6 +128,7 @@ function Headline(props: { rows: readonly (ParameterRow | undefined)[]; name: st
               {rows.length > 1 && `event ${row.event}, `}
               {method}
             </span>
+            {energies && <EnergySpark series={energies} />}
           </p>
         );
       })}

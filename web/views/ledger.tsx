@@ -110,6 +110,7 @@ export function Ledger(props: {
           {drawn.map((row, i) => (
             <LedgerEntry
               key={`${row.role} ${row.sample}`}
+              campaignId={campaign.id}
               row={row}
               index={i}
               scale={scale}

@@ -11,18 +11,20 @@ const OPEN_UP_TO = 3;
 /** What stops a result, what is missing, what looks wrong, what is worth knowing: each with what to do. */
 export function NextSteps(props: {
   campaign: Campaign;
+  /** Set on the page of one sample: what concerns it alone */
+  sample?: string;
   flags: readonly FlagRow[];
   gaps: readonly GapRow[];
   isSettled: boolean;
 }) {
-  const { campaign, flags, gaps, isSettled } = props;
+  const { campaign, sample, flags, gaps, isSettled } = props;
   const { stop, warn, note } = groupFlags(flags, gaps);
   const isClear = stop.length + warn.length + gaps.length === 0;
   return (
     <section class="next-steps" aria-labelledby="next-title">
       <div class="section-head">
         <h2 id="next-title">What to do next</h2>
-        <Downloads campaign={campaign} tables={['flags', 'gaps']} />
+        <Downloads campaign={campaign} tables={['flags', 'gaps']} sample={sample} />
       </div>
       {isSettled && isClear && <p class="waiting">Nothing is missing and nothing was flagged.</p>}
       {!isSettled && (

@@ -1,48 +1,55 @@
 import { useSignal } from '@preact/signals';
+import { useEffect } from 'preact/hooks';
 import { FLAG_CODES, type FlagCode } from '../../schema/wire/flags.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { createIntervalScale, IntervalAxis, IntervalMark } from '../charts/interval-plot.tsx';
+import { loadParameters } from '../client/campaigns.ts';
+import { asProblem, type Problem } from '../client/request.ts';
 import type { Campaign } from '../client/rows.ts';
 import { formatRate } from '../format.ts';
 import { describeEstimate } from '../model/describe.ts';
-import type { EventNumbers } from '../model/headline.ts';
-import type { LedgerRow } from '../model/ledger.ts';
+import { type EventNumbers, numbersBySample } from '../model/headline.ts';
 import { units } from '../state/units.ts';
 import { isNarrow } from '../state/viewport.ts';
 import { flagMeaning, sentence } from '../words.ts';
 import { Downloads } from './download.tsx';
+import { ProblemNotice } from './notice.tsx';
 
 const PLOT_WIDTH = 150;
 const NARROW_PLOT_WIDTH = 100;
-/** Tables drawn before they are asked for: a large campaign has hundreds. */
+/** Samples whose tables are drawn before they are asked for: a large campaign has hundreds. */
 const FIRST_TABLES = 12;
 
 /** The consolidated numbers of each sample and event, by method, drawn on one scale so that disagreement shows. */
-export function Numbers({ campaign, rows }: { campaign: Campaign; rows: readonly LedgerRow[] }) {
-  const events = rows.flatMap((row) =>
-    row.numbers.map((numbers) => ({ sample: row.sample, of: row.numbers.length, numbers })),
-  );
+export function Numbers(props: {
+  campaign: Campaign;
+  /** Samples that have numbers */
+  samples: readonly string[];
+  /** Another value once the numbers may have changed */
+  revision: unknown;
+}) {
+  const { campaign, samples, revision } = props;
   const showsAll = useSignal(false);
-  const shown = showsAll.value ? events : events.slice(0, FIRST_TABLES);
+  const shown = showsAll.value ? samples : samples.slice(0, FIRST_TABLES);
   return (
     <section class="numbers" aria-labelledby="numbers-title">
       <div class="section-head">
         <h2 id="numbers-title">Numbers</h2>
         <Downloads campaign={campaign} tables={['parameters']} />
       </div>
-      {events.length === 0 ? (
+      {samples.length === 0 ? (
         <p class="waiting">
           No sample is fitted yet. A fit starts when every scan of a sample is reduced or set aside, and needs three
           distinct heating rates.
         </p>
       ) : (
         <div class="number-tables">
-          {shown.map(({ sample, of, numbers }) => (
-            <EventTable key={`${sample} ${numbers.event}`} sample={sample} isOnly={of === 1} numbers={numbers} />
+          {shown.map((sample) => (
+            <SampleNumbers key={sample} campaign={campaign} sample={sample} revision={revision} />
           ))}
         </div>
       )}
-      {shown.length < events.length && (
+      {shown.length < samples.length && (
         <p class="show-all">
           <button
             type="button"
@@ -50,11 +57,11 @@ export function Numbers({ campaign, rows }: { campaign: Campaign; rows: readonly
               showsAll.value = true;
             }}
           >
-            Show all {events.length} tables
+            Show all {samples.length} samples
           </button>
         </p>
       )}
-      {events.length > 0 && (
+      {samples.length > 0 && (
         <p class="small">
           Value and 95 % interval. Methods that follow conversion are given as their mean over 0.1 to 0.9;
           parameters.csv has every conversion, other intervals and the values without outliers.
@@ -64,7 +71,35 @@ export function Numbers({ campaign, rows }: { campaign: Campaign; rows: readonly
   );
 }
 
-function EventTable(props: { sample: string; isOnly: boolean; numbers: EventNumbers }) {
+/** Tables of one sample, loaded when they are shown: the rows of a large campaign are many. */
+function SampleNumbers({ campaign, sample, revision }: { campaign: Campaign; sample: string; revision: unknown }) {
+  const numbers = useSignal<EventNumbers[] | undefined>(undefined);
+  const problem = useSignal<Problem | undefined>(undefined);
+  useEffect(() => {
+    const abort = new AbortController();
+    loadParameters(campaign.id, { sample }, abort.signal)
+      .then((rows) => {
+        numbers.value = numbersBySample(rows).get(sample) ?? [];
+        problem.value = undefined;
+      })
+      .catch((error) => {
+        if (!abort.signal.aborted) problem.value = asProblem(error);
+      });
+    return () => abort.abort();
+  }, [campaign.id, sample, revision]);
+  if (problem.value) return <ProblemNotice problem={problem.value} />;
+  const events = numbers.value;
+  if (!events) return <p class="waiting numbers-waiting">Loading the numbers of {sample}…</p>;
+  return (
+    <>
+      {events.map((event) => (
+        <EventTable key={event.event} sample={sample} isOnly={events.length === 1} numbers={event} />
+      ))}
+    </>
+  );
+}
+
+export function EventTable(props: { sample: string; isOnly: boolean; numbers: EventNumbers }) {
   const { sample, isOnly, numbers } = props;
   const any = numbers.energies[0] ?? numbers.exponents[0];
   return (

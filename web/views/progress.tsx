@@ -7,7 +7,7 @@ import { SCAN_STATE_NAMES } from '../words.ts';
 
 const ORDER: ScanState[] = ['reduced', 'read', 'received', 'set_aside', 'failed', 'excluded', 'unassigned'];
 
-const LINK_WORDS: Record<Link, string> = {
+export const LINK_WORDS: Record<Link, string> = {
   connecting: 'connecting…',
   live: 'live',
   polling: 'asking every 2 s',
@@ -15,7 +15,8 @@ const LINK_WORDS: Record<Link, string> = {
 };
 
 /** Where the campaign stands: a sentence, a bar of scans by state, and how the page hears of changes. */
-export function Progress({ status, link }: { status: CampaignStatus; link: Link }) {
+export function Progress(props: { status: CampaignStatus; link: Link; jobsHref: string }) {
+  const { status, link, jobsHref } = props;
   const { headline, work } = describeCampaign(status);
   const present = ORDER.filter((state) => status.scans[state] > 0);
   return (
@@ -25,6 +26,7 @@ export function Progress({ status, link }: { status: CampaignStatus; link: Link 
         {work && <span>{work}</span>}
         {status.settled && present.length > 0 && <span>nothing left to run</span>}
         {status.jobs.failed > 0 && <span class="tone-stop">{formatCount(status.jobs.failed, 'job')} failed</span>}
+        <a href={jobsHref}>Jobs</a>
         <span class={`link link-${link}`}>{LINK_WORDS[link]}</span>
       </p>
       {present.length > 0 && (

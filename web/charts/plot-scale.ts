@@ -1,0 +1,80 @@
+import { scaleLinear } from 'd3-scale';
+import { celsiusFromKelvin, kelvinFromCelsius } from '../../schema/wire/units.ts';
+import { formatFixed, type Units } from '../format.ts';
+
+/** A linear axis of a plot. Pure: the same on the page and on the server. */
+export interface PlotScale {
+  /** px of a value in the unit of the data */
+  at(value: number): number;
+  /** Value in the unit of the data at a px */
+  valueAt(px: number): number;
+  /** px where the axis begins and ends */
+  range: [number, number];
+  ticks: { at: number; label: string }[];
+}
+
+interface ScaleOptions {
+  /** Wanted count of ticks */
+  count?: number;
+  /** Shown number of a value; rising with it */
+  shown?(value: number): number;
+  hidden?(shown: number): number;
+}
+
+const same = (value: number): number => value;
+
+/** Covers `values` with a little room at both ends; a single value gets room in proportion to its size. */
+export function createPlotScale(
+  values: readonly number[],
+  range: [number, number],
+  { count = 5, shown = same, hidden = same }: ScaleOptions = {},
+): PlotScale {
+  let low = Number.POSITIVE_INFINITY;
+  let high = Number.NEGATIVE_INFINITY;
+  for (const value of values) {
+    if (!Number.isFinite(value)) continue;
+    if (value < low) low = value;
+    if (value > high) high = value;
+  }
+  if (low > high) [low, high] = [0, 1];
+  if (low === high) {
+    const room = Math.abs(low) * 0.05 || 1;
+    low -= room;
+    high += room;
+  }
+  const room = (high - low) * 0.03;
+  const scale = scaleLinear([shown(low - room), shown(high + room)], range);
+  const ticks = labelTicks(scale.ticks(count)).map(({ value, label }) => ({ at: scale(value), label }));
+  return { at: (value) => scale(shown(value)), valueAt: (px) => hidden(scale.invert(px)), range, ticks };
+}
+
+/** An axis of temperatures in K, labelled in the chosen unit. */
+export const createTemperatureScale = (
+  valuesK: readonly number[],
+  range: [number, number],
+  units: Units,
+  count = Math.max(2, Math.round(Math.abs(range[1] - range[0]) / 90)),
+): PlotScale =>
+  createPlotScale(valuesK, range, {
+    count,
+    ...(units.temperature === '°C' && { shown: celsiusFromKelvin, hidden: kelvinFromCelsius }),
+  });
+
+/** Equal steps with as many decimals as the step needs. */
+export function labelTicks(values: readonly number[]): { value: number; label: string }[] {
+  const step = values.length > 1 ? values[1] - values[0] : 1;
+  const decimals = Math.max(0, -Math.floor(Math.log10(Math.abs(step)) + 1e-9));
+  return values.map((value) => ({ value, label: formatFixed(value, decimals) }));
+}
+
+/** Lowest and highest finite number of several lists, as a list for `createPlotScale`. */
+export function extent(...lists: readonly (readonly number[])[]): number[] {
+  let low = Number.POSITIVE_INFINITY;
+  let high = Number.NEGATIVE_INFINITY;
+  for (const list of lists)
+    for (const value of list) {
+      if (value < low) low = value;
+      if (value > high) high = value;
+    }
+  return low <= high ? [low, high] : [];
+}

@@ -1,0 +1,96 @@
+import { formatRate, type Units } from '../format.ts';
+import type { ScanLane } from '../model/curves.ts';
+import { linePath } from './curve-path.ts';
+import { InstrumentMark } from './instrument-mark.tsx';
+import { createPlotBox, type PlotBox, PlotFrame } from './plot-frame.tsx';
+import { createPlotScale, createTemperatureScale, extent, type PlotScale } from './plot-scale.ts';
+
+export interface PlacedLane {
+  lane: ScanLane;
+  y: PlotScale;
+  /** px of the middle of the lane's own band */
+  middle: number;
+  path: string;
+  baselinePath: string;
+  /** px of each event's peak */
+  peaks: { x: number; y: number }[];
+}
+
+export interface LaneLayout {
+  box: PlotBox;
+  x: PlotScale;
+  laneHeight: number;
+  /** Slowest first, at the foot */
+  placed: PlacedLane[];
+}
+
+const TALLEST_LANE = 46;
+const SHORTEST_LANE = 15;
+const ALL_LANES = 620;
+const LABEL_WIDTH = 108;
+const NARROW_LABEL_WIDTH = 82;
+/** A curve may rise into the lane above by this share of a lane. */
+const OVERLAP = 0.5;
+
+/** Each scan in a lane of its own, slowest at the foot, every one scaled to its own height on one axis of temperature. */
+export function layoutLanes(lanes: readonly ScanLane[], width: number, units: Units): LaneLayout {
+  const laneHeight = Math.max(SHORTEST_LANE, Math.min(TALLEST_LANE, ALL_LANES / Math.max(1, lanes.length)));
+  const top = 26 + laneHeight * OVERLAP;
+  const left = width < 480 ? NARROW_LABEL_WIDTH : LABEL_WIDTH;
+  const box = { ...createPlotBox(width, top + lanes.length * laneHeight + 44, left, 26) };
+  const x = createTemperatureScale(extent(...lanes.map((lane) => lane.trace.x)), [box.left, box.right], units);
+  const placed = lanes.map((lane, i): PlacedLane => {
+    const foot = box.bottom - 4 - i * laneHeight;
+    const y = createPlotScale(extent(lane.trace.y), [foot, foot - laneHeight * (1 + OVERLAP)]);
+    return {
+      lane,
+      y,
+      middle: foot - laneHeight / 2,
+      path: linePath(lane.trace.x, lane.trace.y, x, y),
+      baselinePath: lane.baseline ? linePath(lane.baseline.x, lane.baseline.y, x, y) : '',
+      peaks: lane.rows.flatMap((row) => (row.peak_K === null ? [] : [peakOf(lane, row.peak_K, x, y)])),
+    };
+  });
+  return { box, x, laneHeight, placed };
+}
+
+/** The point of the trace nearest to a peak's temperature: the trace itself may be a hair off by smoothing. */
+function peakOf(lane: ScanLane, peakK: number, x: PlotScale, y: PlotScale): { x: number; y: number } {
+  let nearest = 0;
+  lane.trace.x.forEach((temperatureK, i) => {
+    if (Math.abs(temperatureK - peakK) < Math.abs(lane.trace.x[nearest] - peakK)) nearest = i;
+  });
+  return { x: x.at(peakK), y: y.at(lane.trace.y[nearest] ?? 0) };
+}
+
+/** Ground, curves, baselines and peaks of all lanes. */
+export function ThermogramLanes(props: { layout: LaneLayout; instruments: readonly string[]; units: Units }) {
+  const { layout, instruments, units } = props;
+  const { box, x, placed } = layout;
+  return (
+    <PlotFrame
+      box={box}
+      x={x}
+      xLabel={`Temperature, ${units.temperature}`}
+      yLabel="Heat flow, exothermic up, each scan to its own height"
+    >
+      {placed.map(({ lane, path, baselinePath, peaks, middle }) => {
+        const instrument = instruments.indexOf(lane.instrument);
+        return (
+          <g key={lane.key} class={`lane hue-${instrument % 6}`}>
+            <path class="curve" d={path} />
+            {baselinePath && <path class="baseline" d={baselinePath} />}
+            {peaks.map((peak) => (
+              <path key={peak.x} class="peak-tick" d={`M${peak.x.toFixed(1)} ${(peak.y - 3).toFixed(1)}v-7`} />
+            ))}
+            <InstrumentMark instrument={instrument} look="full" x={9} y={middle} />
+            <text class="lane-label" x={22} y={(middle + 4).toFixed(1)}>
+              {lane.rateKPerS === null ? 'no rate' : formatRate(lane.rateKPerS, units)}
+              {lane.isCooling && ' ↓'}
+            </text>
+          </g>
+        );
+      })}
+    </PlotFrame>
+  );
+}

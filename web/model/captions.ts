@@ -1,0 +1,28 @@
+import type { CurveKind } from './curves.ts';
+
+/** Title and words of each figure, on the page and in the report. */
+export const FIGURES: Record<Exclude<CurveKind, 'baseline'>, { title: string; caption: string }> = {
+  thermogram: {
+    title: 'Thermograms',
+    caption:
+      'Every scan on one axis of temperature, the fastest at the top, each drawn to its own height. Dashed: the baseline under the event, as far as the event reaches. A tick stands above each peak.',
+  },
+  conversion: {
+    title: 'Conversion',
+    caption:
+      'Conversion of each event from the area above its baseline. Lag and offset of the instrument are taken off the temperatures. The mark sits at one half.',
+  },
+  kissinger: {
+    title: 'Kissinger plot',
+    caption:
+      'One mark a scan. One activation energy over all rates makes a straight line of slope −E/R; a bend is either the material’s or an instrument’s lag.',
+  },
+  energy: {
+    title: 'Activation energy over conversion',
+    caption:
+      'One panel a method, all on the same axes, with its 95 % band; the other methods stand faint behind. The axis spans at least ±5 % of the mean.',
+  },
+  growth: { title: 'Growth rate', caption: 'Holds if nuclei exist before the scan begins.' },
+  viscosity: { title: 'Viscosity', caption: 'Measured or derived viscosity over temperature.' },
+  ttt: { title: 'Time, temperature, transformation', caption: 'Time to the conversion named at each temperature.' },
+};

@@ -1,0 +1,114 @@
+import type { ScanRow } from '../client/rows.ts';
+
+/** One curve or set of points. */
+export interface CurveSeries {
+  name: string;
+  instrument?: string;
+  scan_id?: string;
+  x: number[];
+  y: number[];
+  lower?: number[];
+  upper?: number[];
+}
+
+/** Kinds of curves a sample may have, in the order in which they are shown. */
+export type CurveKind =
+  | 'thermogram'
+  | 'baseline'
+  | 'conversion'
+  | 'kissinger'
+  | 'energy'
+  | 'growth'
+  | 'viscosity'
+  | 'ttt';
+
+/** Body of GET /samples/:id/curves. */
+export interface Curves {
+  kind: CurveKind;
+  x: { quantity: string; unit: string };
+  y: { quantity: string; unit: string };
+  series: CurveSeries[];
+}
+
+/** One scan of a sample with its curves and what was found on them. */
+export interface ScanLane {
+  key: string;
+  scanId?: string;
+  file: string;
+  instrument: string;
+  /** K/s, positive; null when not known */
+  rateKPerS: number | null;
+  isCooling: boolean;
+  trace: CurveSeries;
+  /** Missing where no event was found */
+  baseline?: CurveSeries;
+  rows: ScanRow[];
+}
+
+/**
+ * Thermograms with their baselines and rows, slowest first. Two segments of one file are told apart by their order, which is
+ * the order of time on both sides.
+ */
+export function buildLanes(thermogram: Curves, baseline: Curves, scans: readonly ScanRow[]): ScanLane[] {
+  const seen = new Map<string, number>();
+  return thermogram.series
+    .map((trace): ScanLane => {
+      const instrument = trace.instrument ?? '';
+      const ofFile = scans.filter((row) => row.file === trace.name && row.instrument === instrument);
+      const segments = [...new Set(ofFile.map((row) => row.segment))].sort((a, b) => (a ?? 0) - (b ?? 0));
+      const place = seen.get(`${trace.name}\u0000${instrument}`) ?? 0;
+      seen.set(`${trace.name}\u0000${instrument}`, place + 1);
+      const rows = ofFile.filter((row) => row.segment === (segments[place] ?? segments[0]));
+      const signed = rows[0]?.rate_K_per_s ?? rows[0]?.rate_nominal_K_per_s ?? null;
+      return {
+        key: trace.scan_id ?? `${trace.name} ${instrument} ${place}`,
+        scanId: trace.scan_id,
+        file: trace.name,
+        instrument,
+        rateKPerS: signed === null || signed === 0 ? null : Math.abs(signed),
+        isCooling: signed !== null && signed < 0,
+        trace,
+        baseline: baseline.series.find((series) => series.scan_id === trace.scan_id && series.x.length > 0),
+        rows,
+      };
+    })
+    .sort((a, b) => (a.rateKPerS ?? 0) - (b.rateKPerS ?? 0) || (a.file < b.file ? -1 : 1));
+}
+
+/** Event and the rest of a name of the form `event 2, rest`. */
+export function splitName(name: string): { event: number | undefined; rest: string } {
+  const [, number, rest] = /^event (\d+)(?:, )?(.*)$/s.exec(name) ?? [];
+  return number === undefined ? { event: undefined, rest: name } : { event: Number(number), rest };
+}
+
+/** The curves of each event, events in order; a series without an event belongs to all of them. */
+export function curvesByEvent(curves: Curves): { event: number; series: (CurveSeries & { rest: string })[] }[] {
+  const series = curves.series.map((s) => ({ ...s, ...splitName(s.name) }));
+  const events = [...new Set(series.map((s) => s.event).filter((event) => event !== undefined))].sort((a, b) => a - b);
+  return (events.length > 0 ? events : [1]).map((event) => ({
+    event,
+    series: series.filter((s) => s.event === undefined || s.event === event),
+  }));
+}
+
+/** Points of curves as rows for a CSV file. */
+export function curveRows(curves: Curves): { columns: string[]; rows: Record<string, string | number | null>[] } {
+  const hasBand = curves.series.some((s) => s.lower !== undefined);
+  const columns = [
+    'series',
+    'instrument',
+    `${curves.x.quantity} [${curves.x.unit}]`,
+    `${curves.y.quantity} [${curves.y.unit}]`,
+  ];
+  if (hasBand) columns.push('lower95', 'upper95');
+  const rows = curves.series.flatMap((s) =>
+    s.x.map((x, i) => ({
+      series: s.name,
+      instrument: s.instrument ?? null,
+      [columns[2]]: x,
+      [columns[3]]: s.y[i],
+      ...(hasBand && { lower95: s.lower?.[i] ?? null, upper95: s.upper?.[i] ?? null }),
+    })),
+  );
+  return { columns, rows };
+}

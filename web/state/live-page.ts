@@ -1,0 +1,101 @@
+import { type Signal, signal } from '@preact/signals';
+import { loadCampaign } from '../client/campaigns.ts';
+import { followStatus, type Link } from '../client/follow-status.ts';
+import { asProblem, type Problem } from '../client/request.ts';
+import type { Campaign, Status } from '../client/rows.ts';
+
+export interface LivePage<Data> {
+  campaign: Signal<Campaign | undefined>;
+  status: Signal<Status | undefined>;
+  /** What the page shows beside the status. */
+  data: Signal<Data | undefined>;
+  link: Signal<Link>;
+  /** Why the page as a whole, or its data, cannot be shown or may be old. */
+  problem: Signal<Problem | undefined>;
+  /** Loads the data again, e.g. after a correction. */
+  reload(): void;
+  close(): void;
+}
+
+/** Least time between two loads while jobs run. */
+const RELOAD_AFTER_MS = 1_000;
+const RETRY_AFTER_MS = 3_000;
+
+/** Opens a page of a campaign: its name, its status as it changes, and the page's data, loaded again after every change. */
+export function openLivePage<Data>(
+  id: string,
+  load: (status: Status, signal: AbortSignal) => Promise<Data>,
+): LivePage<Data> {
+  const abort = new AbortController();
+  let loading = false;
+  let changed = false;
+
+  const loadData = async (): Promise<void> => {
+    if (loading) {
+      changed = true;
+      return;
+    }
+    loading = true;
+    do {
+      changed = false;
+      const started = performance.now();
+      try {
+        if (live.status.value) live.data.value = await load(live.status.value, abort.signal);
+        live.problem.value = undefined;
+      } catch (error) {
+        if (abort.signal.aborted) return;
+        live.problem.value = asProblem(error);
+      }
+      // A large campaign is asked for less often: never more than a fifth of the time is spent loading.
+      const took = performance.now() - started;
+      await new Promise((resolve) => setTimeout(resolve, Math.max(RELOAD_AFTER_MS, 4 * took)));
+    } while (changed && !abort.signal.aborted);
+    loading = false;
+  };
+
+  const live: LivePage<Data> = {
+    campaign: signal(undefined),
+    status: signal(undefined),
+    data: signal(undefined),
+    link: signal('connecting'),
+    problem: signal(undefined),
+    reload: () => void loadData(),
+    close: () => abort.abort(),
+  };
+
+  const start = async (): Promise<void> => {
+    while (live.campaign.value === undefined) {
+      try {
+        live.campaign.value = await loadCampaign(id, abort.signal);
+      } catch (error) {
+        if (abort.signal.aborted) return;
+        const problem = asProblem(error);
+        live.problem.value = problem;
+        // A refusal stays one; a server that is away or busy may come back.
+        if (problem.status >= 400 && problem.status < 500 && problem.status !== 429) return;
+        live.link.value = 'offline';
+        await new Promise((resolve) => setTimeout(resolve, RETRY_AFTER_MS));
+      }
+    }
+    let seen = '';
+    await followStatus(
+      id,
+      {
+        onStatus(status, isNews) {
+          const { queued, running, failed } = status.jobs;
+          const text = JSON.stringify([status.scans, status.samples, status.settled, queued, running, failed]);
+          live.status.value = status;
+          if (isNews || text !== seen || live.problem.value) void loadData();
+          seen = text;
+        },
+        onLink(link, problem) {
+          live.link.value = link;
+          if (link === 'offline' && problem) live.problem.value = problem;
+        },
+      },
+      abort.signal,
+    );
+  };
+  void start();
+  return live;
+}

@@ -1,0 +1,174 @@
+import { useSignal } from '@preact/signals';
+import { useEffect, useMemo } from 'preact/hooks';
+import { StateGlyph } from '../charts/state-glyph.tsx';
+import { formatCount } from '../format.ts';
+import { FIGURES } from '../model/captions.ts';
+import { buildLanes, type CurveKind } from '../model/curves.ts';
+import { numbersBySample } from '../model/headline.ts';
+import { tellableNow } from '../model/next-steps.ts';
+import { samplePath } from '../routes.ts';
+import { openSample } from '../state/live-sample.ts';
+import { SAMPLE_STATE_NAMES, verdictName } from '../words.ts';
+import { Downloads } from './download.tsx';
+import { Figure } from './figure.tsx';
+import { Lanes } from './lanes.tsx';
+import { NextSteps } from './next-steps.tsx';
+import { ProblemNotice } from './notice.tsx';
+import { EventTable } from './numbers.tsx';
+import { NotYet, PageHead } from './page-head.tsx';
+import {
+  ConversionFigure,
+  EnergyFigures,
+  InstrumentKeys,
+  KissingerFigures,
+  OtherFigure,
+  ScanFigure,
+} from './sample-figures.tsx';
+import { ScanTable } from './scan-table.tsx';
+
+const OTHER_KINDS: CurveKind[] = ['growth', 'viscosity', 'ttt'];
+
+/** One sample: its scans, what they give, and what is in doubt. */
+export function SampleView({ id, sample: name }: { id: string; sample: string }) {
+  const live = useMemo(() => openSample(id, name), [id, name]);
+  useEffect(() => () => live.close(), [live]);
+  const pointed = useSignal<string | undefined>(undefined);
+  const chosen = useSignal<string | undefined>(undefined);
+  const campaign = live.campaign.value;
+  const data = live.data.value;
+  const problem = live.problem.value;
+  useEffect(() => {
+    document.title = `${name} – ${campaign?.name ?? 'ratespan'}`;
+  }, [name, campaign?.name]);
+
+  const lanes = useMemo(() => {
+    const { thermogram, baseline } = data?.curves ?? {};
+    return data && thermogram && baseline ? buildLanes(thermogram, baseline, data.scans) : [];
+  }, [data]);
+  const instruments = useMemo(() => {
+    const names = [...(data?.instruments ?? []), ...(data?.scans ?? [])].map((row) => row.instrument ?? '');
+    return [...new Set(names)].filter(Boolean).sort((a, b) => (a < b ? -1 : 1));
+  }, [data]);
+  if (!campaign || !data) return <NotYet problem={problem} what="the sample" campaignId={id} />;
+
+  const { sample, curves, scans } = data;
+  const told = tellableNow(data.flags, data.gaps, live.status.value);
+  const numbers = numbersBySample(data.parameters).get(sample.sample) ?? [];
+  const others = live.status.value?.samples ?? [];
+  const place = others.findIndex((s) => s.id === sample.id);
+  const neighbours = [
+    { words: '← ', to: others[place - 1], after: '' },
+    { words: '', to: others[place + 1], after: ' →' },
+  ];
+  const of = [campaign.name, sample.sample];
+  // Until one is chosen, a scan from the middle of the rates.
+  const shown = lanes.find((lane) => lane.key === chosen.value) ?? lanes[Math.floor(lanes.length / 2)];
+  const show = (key: string): void => {
+    chosen.value = key;
+    requestAnimationFrame(() => document.getElementById('scan-alone')?.scrollIntoView({ block: 'nearest' }));
+  };
+  return (
+    <>
+      <PageHead
+        campaign={campaign}
+        title={sample.sample}
+        link={live.link.value}
+        beside={
+          <nav class="neighbours" aria-label="Other samples">
+            {neighbours.map(
+              ({ words, to, after }) =>
+                to && (
+                  <a key={to.id} href={samplePath(id, to.sample)}>
+                    {words}
+                    {to.sample}
+                    {after}
+                  </a>
+                ),
+            )}
+          </nav>
+        }
+      >
+        <p class="sample-state" aria-live="polite">
+          <StateGlyph state={sample.state} />
+          {SAMPLE_STATE_NAMES[sample.state]}
+          {sample.verdict && <span class="verdict">{verdictName(sample.verdict)}</span>}
+          {sample.reason && <span class="entry-reason">{sample.reason}</span>}
+        </p>
+      </PageHead>
+      {problem && <ProblemNotice problem={problem} />}
+      <section class="figures" aria-labelledby="curves-title">
+        <h2 id="curves-title" class="unseen">
+          Curves
+        </h2>
+        {lanes.length === 0 ? (
+          <p class="waiting">No scan of this sample is reduced yet. Its curves are drawn here as soon as one is.</p>
+        ) : (
+          <>
+            <Figure
+              title={FIGURES.thermogram.title}
+              of={of}
+              curves={curves.thermogram}
+              caption={`${FIGURES.thermogram.caption} Choose a scan to see it by itself.`}
+              legend={<InstrumentKeys of={lanes.map((lane) => lane.trace)} instruments={instruments} />}
+              draw={(width) => (
+                <Lanes lanes={lanes} instruments={instruments} width={width} pointed={pointed} chosen={chosen} />
+              )}
+            />
+            <div class="figure-column">
+              {shown && (
+                <div id="scan-alone">
+                  <ScanFigure key={shown.key} lane={shown} of={of} instruments={instruments} />
+                </div>
+              )}
+              {curves.conversion && curves.conversion.series.length > 0 && (
+                <ConversionFigure curves={curves.conversion} of={of} instruments={instruments} pointed={pointed} />
+              )}
+            </div>
+          </>
+        )}
+        {curves.kissinger && curves.kissinger.series.length > 0 && (
+          <KissingerFigures curves={curves.kissinger} of={of} instruments={instruments} />
+        )}
+        {curves.energy && curves.energy.series.length > 0 && <EnergyFigures curves={curves.energy} of={of} />}
+        {OTHER_KINDS.map((kind) => {
+          const other = curves[kind];
+          return other && other.series.length > 0 ? (
+            <OtherFigure key={kind} curves={other} of={of} instruments={instruments} />
+          ) : null;
+        })}
+      </section>
+      <section class="numbers" aria-labelledby="numbers-title">
+        <div class="section-head">
+          <h2 id="numbers-title">Numbers</h2>
+          <Downloads campaign={campaign} tables={['parameters']} sample={sample.sample} />
+        </div>
+        {numbers.length === 0 ? (
+          <p class="waiting">Nothing is fitted yet. A fit needs three distinct heating rates.</p>
+        ) : (
+          <div class="number-tables">
+            {numbers.map((event) => (
+              <EventTable key={event.event} sample={sample.sample} isOnly={numbers.length === 1} numbers={event} />
+            ))}
+          </div>
+        )}
+      </section>
+      <NextSteps
+        campaign={campaign}
+        sample={sample.sample}
+        flags={told.flags}
+        gaps={told.gaps}
+        isSettled={live.status.value?.settled ?? false}
+      />
+      <ScanTable
+        campaign={campaign}
+        sample={sample.sample}
+        scans={scans}
+        lanes={lanes}
+        instruments={instruments}
+        pointed={pointed}
+        onShow={show}
+      />
+      <p class="small">{formatCount(scans.length, 'row')}, one a scan and event.</p>
+    </>
+  );
+}
