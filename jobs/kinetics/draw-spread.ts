@@ -2,61 +2,95 @@ import { studentQuantile } from '../numeric/distributions.ts';
 import { solveSymmetric } from '../numeric/linear-solve.ts';
 import { mean } from '../numeric/statistics.ts';
 
+/** What was drawn, beside what came of it: one row a draw. */
+export interface DrawCauses {
+  /** offset and lag error of each instrument: sizes that are given, not estimated */
+  calibration: Float64Array;
+  /** shift of each scan, K: its size was estimated from the scatter of its instrument's scans */
+  shifts: Float64Array;
+}
+
+/** Normal quantile 0.975. */
+const NORMAL = 1.959964;
+
 /**
- * Half widths of 95 % intervals from Monte Carlo draws whose variance has two parts: the scatter between scans, known from ν = n − p
- * residual degrees of freedom only, and the calibration errors, whose size is given. Student's t belongs to the first part alone: with
- * the variance split by regression on the calibration errors drawn, the Welch–Satterthwaite degrees of freedom of the sum are
- * ν (V/V_scatter)² (Welch 1947, Biometrika 34:28). Without the split, few scans and a large lag error gave intervals twice too wide.
+ * Half widths of 95 % intervals from Monte Carlo draws. The variance of a result is split by regression on its causes: calibration
+ * errors, whose size is given, get the normal quantile; the scatter of each instrument's scans, whose size was estimated from few of
+ * them, gets Student's t with that instrument's share of the residual degrees of freedom; the parts are added in quadrature. One t for
+ * the whole made intervals twice too wide where the lag error rules, and too narrow where two scans of a second instrument rule.
  */
 export class DrawSpread {
   private readonly inverse: Float64Array;
-  private readonly p: number;
-  private readonly centred: Float64Array[];
+  private readonly columns: Float64Array[] = [];
+  /** squared quantile that goes with each column */
+  private readonly quantiles: number[] = [];
+  private readonly rest: number;
 
   /**
-   * @param calibrationErrors one array a draw: the offset and lag errors drawn for each instrument, any units
-   * @param degrees residual degrees of freedom ν of the scatter, at least 1
+   * @param causes in the order of the draws   @param degrees ν = n − p of the whole, at least 1
+   * @param scanDegrees degrees of freedom behind the scatter of each scan's instrument
    */
-  constructor(
-    calibrationErrors: readonly Float64Array[],
-    private readonly degrees: number,
-  ) {
-    const draws = calibrationErrors.length;
-    const varied = Array.from(calibrationErrors[0] ?? [], (_, c) => c).filter((c) =>
-      calibrationErrors.some((e) => e[c] !== calibrationErrors[0][c]),
+  constructor(causes: readonly DrawCauses[], degrees: number, scanDegrees: readonly number[]) {
+    this.rest = studentQuantile(0.975, Math.max(1, degrees)) ** 2;
+    const take = (of: (c: DrawCauses) => Float64Array, quantile: (k: number) => number) => {
+      for (let k = 0; k < (causes.length > 0 ? of(causes[0]).length : 0); k++) {
+        const column = Float64Array.from(causes, (c) => of(c)[k]);
+        const m = mean(column);
+        const centred = column.map((v) => v - m);
+        if (centred.every((v) => Math.abs(v) < 1e-12)) continue;
+        this.columns.push(centred);
+        this.quantiles.push(quantile(k) ** 2);
+      }
+    };
+    take(
+      (c) => c.calibration,
+      () => NORMAL,
     );
-    this.centred = varied.map((c) => {
-      const column = Float64Array.from(calibrationErrors, (e) => e[c]);
-      const m = mean(column);
-      return column.map((v) => v - m);
-    });
-    this.p = draws > 4 * varied.length + 4 ? varied.length : 0;
-    const normal = new Float64Array(this.p * this.p);
-    for (let i = 0; i < this.p; i++) {
-      for (let j = 0; j < this.p; j++) {
-        for (let d = 0; d < draws; d++) normal[i * this.p + j] += this.centred[i][d] * this.centred[j][d];
+    const known = new Map<number, number>();
+    take(
+      (c) => c.shifts,
+      (k) => {
+        const nu = Math.max(1, scanDegrees[k]);
+        if (!known.has(nu)) known.set(nu, studentQuantile(0.975, nu));
+        return known.get(nu)!;
+      },
+    );
+    const p = this.columns.length;
+    const normal = new Float64Array(p * p);
+    for (let i = 0; i < p; i++) {
+      for (let j = 0; j <= i; j++) {
+        let sum = 0;
+        for (let d = 0; d < causes.length; d++) sum += this.columns[i][d] * this.columns[j][d];
+        normal[i * p + j] = sum;
+        normal[j * p + i] = sum;
       }
     }
-    if (this.p > 0 && !solveSymmetric(normal, new Float64Array(this.p), this.p)) this.p = 0;
+    // Too few draws to tell the causes apart: everything is counted as scatter.
+    if (causes.length < 2 * p + 10 || !solveSymmetric(normal, new Float64Array(p), p)) this.columns = [];
     this.inverse = normal;
   }
 
-  /** t(0.975, ν_eff) × standard deviation of the values, one a draw in the order of the constructor's. */
+  /** Half width for values given one a draw in the order of the constructor's; NaN where they have no spread to speak of. */
   halfWidth(values: readonly number[]): number {
-    const { p, centred, inverse } = this;
+    const { columns, inverse, quantiles } = this;
+    const p = columns.length;
     const n = values.length;
     const m = mean(values);
     let total = 0;
     for (const v of values) total += (v - m) ** 2;
     const moments = new Float64Array(p);
-    for (let i = 0; i < p; i++) for (let d = 0; d < n; d++) moments[i] += centred[i][d] * (values[d] - m);
+    for (let i = 0; i < p; i++) for (let d = 0; d < n; d++) moments[i] += columns[i][d] * (values[d] - m);
+    let sum = 0;
     let explained = 0;
-    for (let i = 0; i < p; i++) for (let j = 0; j < p; j++) explained += moments[i] * inverse[i * p + j] * moments[j];
-    const variance = total / (n - 1);
-    // Adjusted for the part that p regressors explain of pure chance.
-    const scatter = Math.min(variance, Math.max(0, (total - explained) / Math.max(1, n - 1 - p)));
-    if (!(variance > 0)) return variance === 0 ? 0 : Number.NaN;
-    const degrees = Math.min(1e6, this.degrees * (variance / Math.max(scatter, 1e-12 * variance)) ** 2);
-    return studentQuantile(0.975, degrees) * Math.sqrt(variance);
+    for (let i = 0; i < p; i++) {
+      let slope = 0;
+      for (let j = 0; j < p; j++) slope += inverse[i * p + j] * moments[j];
+      // The columns are drawn independently: each explains slope × moment, apart from chance.
+      const part = Math.max(0, slope * moments[i]);
+      explained += part;
+      sum += quantiles[i] * part;
+    }
+    const scale = explained > total ? total / explained : 1;
+    return Math.sqrt((scale * sum + this.rest * Math.max(0, total - explained)) / (n - 1));
   }
 }

@@ -4,6 +4,7 @@ import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import type { Random } from '../numeric/random.ts';
 import { mean } from '../numeric/statistics.ts';
 import { ozawaTemperatures } from './avrami/ozawa.ts';
+import type { DrawCauses } from './draw-spread.ts';
 import {
   createEstimator,
   type EstimateSettings,
@@ -132,16 +133,9 @@ function fitScans(
     sestakBerggren: misshapen,
   };
   const more = curveMethods ? createFurtherEstimator(data, settings, plan)(estimate) : undefined;
-  const { drawn, further, calibrationErrors } = runDraws(
-    model,
-    settings,
-    plan,
-    { main: estimate, further: more },
-    random,
-    draws,
-  );
+  const { drawn, further, causes } = runDraws(model, settings, plan, { main: estimate, further: more }, random, draws);
   flags.push(...findOutliers(model, where));
-  const builder = new RowBuilder(sample, data, curves, model, drawn, calibrationErrors);
+  const builder = new RowBuilder(sample, data, curves, model, drawn, causes);
   const reports = reportFits(event, estimate, curves.length);
   if (late >= 0) reports.push(notComputed(event, 'augis_bennett', 'a ramp starts too near its peak', data.n));
   builder.peakRows(estimate, settings);
@@ -170,20 +164,20 @@ function runDraws(
   estimate: { main: Estimates; further: FurtherEstimates | undefined },
   random: Random,
   draws: number,
-): { drawn: Estimates[]; further: FurtherEstimates[]; calibrationErrors: Float64Array[] } {
+): { drawn: Estimates[]; further: FurtherEstimates[]; causes: DrawCauses[] } {
   const columns = drawBuffer(model.data);
   const estimator = createEstimator(columns, settings, rampIntegrals(columns, settings.curves));
   const furtherEstimator = createFurtherEstimator(columns, settings, plan);
   const drawn: Estimates[] = [];
   const further: FurtherEstimates[] = [];
-  const calibrationErrors: Float64Array[] = [];
+  const causes: DrawCauses[] = [];
   for (let d = 0; d < draws; d++) {
-    calibrationErrors.push(drawColumns(model, random, columns));
+    causes.push(drawColumns(model, random, columns));
     const main = estimator(estimate.main);
     drawn.push(main);
     if (estimate.further) further.push(furtherEstimator(main, { main: estimate.main, further: estimate.further }));
   }
-  return { drawn, further, calibrationErrors };
+  return { drawn, further, causes };
 }
 
 const notComputed = (event: number, method: string, message: string, rows: number): FitReport => ({

@@ -1,5 +1,6 @@
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import type { Random } from '../numeric/random.ts';
+import type { DrawCauses } from './draw-spread.ts';
 import { CONVERSION_COUNT, type EventColumns, type EventData, emptyColumns, POOLED } from './event-data.ts';
 import { fitLogTrend, fitRateTrend, fitTemperatureTrend, type Trend } from './trend.ts';
 
@@ -28,6 +29,8 @@ const BENT_FROM_RATES = 4;
 const BENT_FROM_SPAN = 10;
 /** Scatter below this is rounding, K: keeps weights finite on noise-free data. */
 const LEAST_SIGMA_K = 1e-4;
+/** α = 0.5, where a scan's shift is read. */
+const MIDDLE = 9;
 /** An instrument's own scatter is shrunk towards that of all by this many scans' worth. */
 const SHRINK_SCANS = 1;
 
@@ -48,7 +51,7 @@ export function modelScatter(data: EventData, curves: Uint16Array, distinct: num
   for (let round = 0; round < (data.instruments.length > 1 ? 4 : 1); round++) {
     const peak = fitTemperatureTrend(data.rate, data.peakK, weights, bent);
     const curve = hasTrend
-      ? [POOLED.from, 9, POOLED.to - 1].map((k) =>
+      ? [POOLED.from, MIDDLE, POOLED.to - 1].map((k) =>
           fitTemperatureTrend(some(data.rate), pick(data.temperatureK, k), some(weights), bentCurves),
         )
       : [];
@@ -102,15 +105,16 @@ function instrumentScatter(data: EventData, trends: Trend[], curves: Uint16Array
  * One draw into `out`: shared calibration errors per instrument, a whole residual curve per scan (standardised by its own instrument's
  * scatter and leverage, scaled by the target's), and of the scan's baseline share what the scatter between scans does not hold already
  * (counting it twice gave 98 % coverage where noise was all there was).
- * @returns the calibration errors drawn: offset, lag of each instrument in turn
+ * @returns what was drawn, for the split of the variance
  */
-export function drawColumns(model: ScatterModel, random: Random, out: EventColumns): Float64Array {
+export function drawColumns(model: ScatterModel, random: Random, out: EventColumns): DrawCauses {
   const { data, curves } = model;
   const calibration = data.instruments.map((c) => drawCalibration(c, random));
   const curveOf = new Int32Array(data.n).fill(-1);
   curves.forEach((i, j) => {
     curveOf[i] = j;
   });
+  const shifts = new Float64Array(data.n);
   for (let i = 0; i < data.n; i++) {
     let from = random.integer(data.n);
     if (curveOf[i] >= 0) while (curveOf[from] < 0) from = random.integer(data.n);
@@ -125,7 +129,10 @@ export function drawColumns(model: ScatterModel, random: Random, out: EventColum
     );
     const j = curveOf[i];
     const f = curveOf[from];
+    shifts[i] = out.peakK[i] + shift - model.peak.fitted[i];
     if (j < 0 || model.temperature.length === 0) continue;
+    const middle = model.temperature[MIDDLE];
+    shifts[i] = lift(middle.leverage[f]) * middle.residuals[f];
     for (let k = 0; k < CONVERSION_COUNT; k++) {
       const T = model.temperature[k];
       const r = model.lnRate[k];
@@ -137,7 +144,7 @@ export function drawColumns(model: ScatterModel, random: Random, out: EventColum
       out.lnRate[cell] = r.fitted[j] + lift(r.leverage[f]) * r.residuals[f];
     }
   }
-  return Float64Array.from(calibration.flatMap((c) => [c.offset, c.lag]));
+  return { calibration: Float64Array.from(calibration.flatMap((c) => [c.offset, c.lag])), shifts };
 }
 
 /** Errors of offset and lag; an instrument without standards or sheet values has a lag of unknown size that can only be positive. */
@@ -153,4 +160,14 @@ export function drawBuffer(data: EventData): EventColumns {
   columns.rampStartK.set(data.rampStartK);
   columns.hasCurve.set(data.hasCurve);
   return columns;
+}
+
+/** Degrees of freedom behind the scatter of each scan's instrument: its share of n − p, and what the shrinkage adds. */
+export function scanDegrees(model: ScatterModel): number[] {
+  const { data } = model;
+  const whole = Math.max(1, data.n - model.trendParameters);
+  if (data.instruments.length < 2) return new Array<number>(data.n).fill(whole);
+  const count = new Array<number>(data.instruments.length).fill(0);
+  for (const at of data.instrument) count[at]++;
+  return Array.from(data.instrument, (at) => Math.min(whole, (count[at] * whole) / data.n + SHRINK_SCANS));
 }

@@ -2,10 +2,10 @@ import type { FlagCode } from '../../schema/wire/flags.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import { mean, standardDeviation } from '../numeric/statistics.ts';
-import { DrawSpread } from './draw-spread.ts';
+import { type DrawCauses, DrawSpread } from './draw-spread.ts';
 import type { EstimateSettings, Estimates } from './estimate.ts';
 import { CONVERSIONS, type EventData, POOLED } from './event-data.ts';
-import type { ScatterModel } from './monte-carlo.ts';
+import { type ScatterModel, scanDegrees } from './monte-carlo.ts';
 import {
   BOSWELL,
   type EnergyEstimate,
@@ -36,9 +36,9 @@ export class RowBuilder {
     private readonly curves: Uint16Array,
     model: ScatterModel,
     private readonly drawn: Estimates[],
-    calibrationErrors: readonly Float64Array[],
+    causes: readonly DrawCauses[],
   ) {
-    this.spread = new DrawSpread(calibrationErrors, Math.max(1, data.n - model.trendParameters));
+    this.spread = new DrawSpread(causes, data.n - model.trendParameters, scanDegrees(model));
   }
 
   /**
