@@ -12,6 +12,8 @@ import { bridgeSpikes } from './spikes.ts';
 import { reduceStandard } from './standard.ts';
 import { makeTrace } from './trace.ts';
 
+export { type EventMatching, type MatchScan, matchEvents } from './match-events.ts';
+
 type Refused = Extract<ReduceOutcome, { ok: false }>;
 
 /**
