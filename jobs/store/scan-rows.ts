@@ -29,7 +29,7 @@ const scanSamples = (fileId: string) => sql`select sample from scans where file_
 
 /** A data file was read: its scans go on. */
 export function saveReadFile(
-  db: LibSQLDatabase,
+  _db: LibSQLDatabase,
   file: FileRow,
   read: { columnsKey: string; highestRateKPerS: number; flags: Flag[] },
 ): Statement[] {

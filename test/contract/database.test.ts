@@ -83,7 +83,7 @@ describe.each(Object.entries(adapters))('database by %s', (_name, open) => {
       database.write((db) =>
         runBatch(
           db,
-          guarded(db, db.update(campaigns).set({ revision: 7 }).where(eq(campaigns.id, id)), [
+          guarded(db.update(campaigns).set({ revision: 7 }).where(eq(campaigns.id, id)), [
             db.insert(campaigns).values(campaign(`after ${id}`)),
           ]),
         ),

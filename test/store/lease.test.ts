@@ -1,6 +1,6 @@
 import { eq, sql } from 'drizzle-orm';
 import { afterEach, beforeEach, describe, expect, it } from 'vitest';
-import { LateWorker } from '../../jobs/store/fence.ts';
+import { LateWorker, runBatch } from '../../jobs/store/fence.ts';
 import { insertJob } from '../../jobs/store/job-rows.ts';
 import {
   backOffMs,
@@ -25,9 +25,7 @@ afterEach(() => ports.close());
 
 const queue = (id: string, subject = id) =>
   ports.database.write((db) =>
-    Promise.resolve(
-      insertJob(db, { id, campaignId: campaign, step: 'read-scan', subject, now: ports.clock.now() }) as never,
-    ),
+    runBatch(db, [insertJob(db, { id, campaignId: campaign, step: 'read-scan', subject, now: ports.clock.now() })]),
   );
 const claim = (owner: string, limit = 10) => claimJobs(ports, { owner, limit });
 const jobRow = async (id: string) => (await ports.database.read.select().from(jobs).where(eq(jobs.id, id)))[0];
