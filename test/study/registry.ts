@@ -1,9 +1,13 @@
+import { forecastStudy } from './forecast.ts';
+import { forecastAdviceStudy } from './forecast-advice.ts';
 import { generatorsAgree } from './generators-agree.ts';
+import { holdsStudy } from './holds.ts';
 import { intervalsStudy } from './intervals.ts';
 import { reductionStudy } from './reduction.ts';
 import { roundTripStudy } from './round-trip.ts';
-import { verdictStudy } from './verdict.ts';
 import { standardsStudy } from './standards.ts';
+import { twoEventsStudy } from './two-events.ts';
+import { verdictStudy } from './verdict.ts';
 
 export interface StudyOptions {
   /** Number of samples, scans or settings; each study has its own default. */
@@ -39,5 +43,21 @@ export const STUDIES: Record<string, { about: string; run: Study }> = {
   verdict: {
     about: 'simulated campaigns on furnace and chip: is the bend the material’s; local E, ξ, m',
     run: verdictStudy,
+  },
+  'two-events': {
+    about: 'two events 35 to 60 K apart at five rates: both Kissinger energies',
+    run: twoEventsStudy,
+  },
+  holds: {
+    about: 'isothermal holds at five temperatures with induction: n and E',
+    run: holdsStudy,
+  },
+  forecast: {
+    about: 'forecasts 20 to 80 K outside the data against the truth, and of simulated holds',
+    run: forecastStudy,
+  },
+  'forecast-advice': {
+    about: 'the suggested next scan run and compared with what was promised and with every other candidate',
+    run: forecastAdviceStudy,
   },
 };
