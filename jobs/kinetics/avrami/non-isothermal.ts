@@ -29,7 +29,8 @@ const SCALE = Float64Array.of(1e5, 1, 1);
 /** Standard deviation of one α of a curve about the law when the scan sits right: noise and baseline, about half a per cent. */
 const CURVE_SIGMA = 0.005;
 /** Gauss–Newton steps for a scan's own shift: it is nearly linear. */
-const SHIFT_STEPS = 3;
+const SHIFT_STEPS = 6;
+const SHIFT_SETTLED_K = 1e-5;
 
 /**
  * Johnson–Mehl–Avrami–Kolmogorov on all scans of an event at once: α = 1 − exp[−(∫K dt)^n], K = exp(ln K0 − (E/R)(1/T − x0)), by
@@ -47,6 +48,9 @@ export class JmakFit {
   private readonly curveRows: number;
   private readonly lnI: Float64Array;
   private readonly perKelvin: Float64Array;
+  /** each scan's shift at the last evaluation: the start of the next */
+  private readonly shifts: Float64Array;
+  private readonly slope = new Float64Array(CONVERSION_COUNT);
 
   /**
    * @param temperatureK at each conversion of each scan, scan-major; read at every fit   @param sigmaK scatter of each scan's temperature, K
@@ -62,6 +66,7 @@ export class JmakFit {
     this.integrals = Array.from({ length: this.curveRows }, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
     this.lnI = new Float64Array(this.curveRows);
     this.perKelvin = new Float64Array(this.curveRows);
+    this.shifts = new Float64Array(scanCount);
     // The last row of each scan is its shift against its scatter.
     this.solver = new LeastSquares(this.curveRows + scanCount, 3, (p, r, J) => this.evaluate(p, r, J));
   }
@@ -87,7 +92,7 @@ export class JmakFit {
     const { lnI, perKelvin, curveRows } = this;
     const from = i * CONVERSION_COUNT;
     const prior = CURVE_SIGMA / this.sigmaK[i];
-    let shift = 0;
+    let shift = this.shifts[i];
     for (let step = 0; step < SHIFT_STEPS; step++) {
       let gg = prior * prior;
       let gr = prior * prior * shift;
@@ -100,8 +105,10 @@ export class JmakFit {
       }
       const move = gr / gg;
       shift -= move;
-      if (Math.abs(move) < 1e-9 * (1 + Math.abs(shift))) break;
+      // The next move would be about this one squared over the width.
+      if (Math.abs(move) < SHIFT_SETTLED_K) break;
     }
+    this.shifts[i] = shift;
     let gg = prior * prior;
     let g0 = 0;
     let g1 = 0;
@@ -114,6 +121,7 @@ export class JmakFit {
       r[row] = 1 - left - CONVERSIONS[k];
       if (!J) continue;
       const slope = left * X;
+      this.slope[k] = slope;
       const { value, byEnergy } = this.integrals[row];
       const T = this.temperatureAt(row);
       // d/dE of the scaled integral: the scale e^(x0 E/R) counts here, and the shift's share.
@@ -131,8 +139,7 @@ export class JmakFit {
     if (!J) return;
     for (let k = 0; k < CONVERSION_COUNT; k++) {
       const row = from + k;
-      const X = Math.exp(n * (lnI[row] + perKelvin[row] * shift));
-      const g = (Math.exp(-X) * X * n * perKelvin[row]) / gg;
+      const g = (this.slope[k] * n * perKelvin[row]) / gg;
       J[row * 3] -= g * g0;
       J[row * 3 + 1] -= g * g1;
       J[row * 3 + 2] -= g * g2;
