@@ -1,0 +1,184 @@
+import { type WeighedScan, weighScans, widthOf } from '../../jobs/campaign/advice.ts';
+import type { AdviceGoal, AdviceInput } from '../../jobs/campaign/advice-input.ts';
+import { answerQuestion } from '../../jobs/forecast/index.ts';
+import { rampIntegrals } from '../../jobs/kinetics/estimate.ts';
+import { CONVERSION_COUNT, collectEvent, distinctRates } from '../../jobs/kinetics/event-data.ts';
+import { fitVyazovkin } from '../../jobs/kinetics/isoconversional/vyazovkin.ts';
+import { drawBuffer, drawColumns, modelScatter } from '../../jobs/kinetics/monte-carlo.ts';
+import { studentQuantile } from '../../jobs/numeric/distributions.ts';
+import { createRandom } from '../../jobs/numeric/random.ts';
+import { standardDeviation } from '../../jobs/numeric/statistics.ts';
+import type { FitScan } from '../../schema/wire/parameters.ts';
+import { drawForecastCampaign, type ForecastCampaign, sourceOfCampaign } from './forecast-campaigns.ts';
+import { seededRandom } from './generator/index.ts';
+import type { StudyOptions } from './registry.ts';
+import { markdownTable, percent, quantile } from './table.ts';
+
+/** Draws behind each width: known to 4 %. */
+const DRAWS = 300;
+const HALF = 9;
+
+export interface AdviceTrial {
+  goal: AdviceGoal['goal'];
+  /** width obtained with the top suggestion ÷ the width that the median candidate obtained */
+  topAgainstMedian: number;
+  /** width predicted for the top suggestion ÷ width obtained */
+  predicted: number;
+  /** width obtained with the top suggestion ÷ width before */
+  narrowing: number;
+  candidates: number;
+}
+
+/**
+ * One campaign, one goal: every candidate is run (simulated) and the width of its interval taken as the results would show it — E at α = 0.5 by
+ * Vyazovkin over Monte Carlo draws, the forecast's band over the draws of the shared law, the bend by its fit made again.
+ */
+export function tryAdvice(seed: string, goal: AdviceGoal['goal']): AdviceTrial | undefined {
+  const random = seededRandom(`advice/${seed}/${goal}`);
+  const campaign = drawForecastCampaign(`advice-${seed}`, goal === 'bend' ? 'bent' : 'straight', goal === 'bend');
+  const scans = goal === 'bend' ? campaign.scans : furnaceScans(campaign, seed);
+  const T = campaign.lowK - random.between(20, 60);
+  const wanted: AdviceGoal = goal === 'forecast' ? { goal, conversion: 0.01, temperatureK: T } : { goal };
+  const width = (all: FitScan[]) => obtainedWidth({ ...campaign, scans: all }, wanted, seed);
+  const now = width(scans);
+  if (now === undefined) return undefined;
+  const input = inputOf({ ...campaign, scans }, wanted, now);
+  const weighed = weighScans(input, input.goals[0]);
+  if (weighed.length < 3) return undefined;
+  const run = (w: WeighedScan) =>
+    width([
+      ...scans,
+      campaign.measure(w.instrument, w.rateKPerS, `next-${w.instrument}-${w.rateKPerS.toPrecision(4)}`),
+    ]);
+  const obtained = weighed.map(run).map((v) => v ?? Number.NaN);
+  return {
+    goal,
+    topAgainstMedian: obtained[0] / quantile(obtained.filter(Number.isFinite), 0.5),
+    predicted: weighed[0].expected / obtained[0],
+    narrowing: obtained[0] / now,
+    candidates: weighed.length,
+  };
+}
+
+/** Four to six rates over a factor of 6 to 20, one or two scans each: a campaign that has something left to gain. */
+function furnaceScans(campaign: ForecastCampaign, seed: string): FitScan[] {
+  const random = seededRandom(`advice-scans/${seed}`);
+  const low = random.betweenLog(0.05, 0.2);
+  const factor = random.between(6, 20);
+  const count = 4 + random.integer(3);
+  const replicates = 1 + random.integer(2);
+  return Array.from({ length: count }, (_, i) => low * factor ** (i / (count - 1))).flatMap((rate, i) =>
+    Array.from({ length: replicates }, (_, r) => campaign.measure('furnace-1', rate, `first-${i}-${r}`)),
+  );
+}
+
+function inputOf(c: ForecastCampaign, goal: AdviceGoal, now: number): AdviceInput {
+  const kinds = { 'furnace-1': [0.02, 8], 'chip-1': [5, 40000] } as Record<string, [number, number]>;
+  const made = goal.goal === 'forecast' ? sourceOfCampaign(c, 'input', 100, false) : undefined;
+  return {
+    sample: 'S',
+    event: 1,
+    scans: c.scans,
+    instruments: c.instruments,
+    ranges: c.instruments.map(({ instrument }) => ({
+      instrument,
+      rateMinKPerS: kinds[instrument][0],
+      rateMaxKPerS: kinds[instrument][1],
+    })),
+    energyJPerMol: energiesAtHalf(c, 'input', 0).energy,
+    avramiExponent: c.exponent,
+    verdict: c.kind === 'straight' ? 'straight' : 'material',
+    law: made?.source.law,
+    lawDraws: made?.source.lawDraws,
+    goals: [{ ...goal, now }],
+  };
+}
+
+function obtainedWidth(c: ForecastCampaign, goal: AdviceGoal, seed: string): number | undefined {
+  if (goal.goal === 'bend') return widthOf(inputOf(c, goal, 1), goal)([]);
+  if (goal.goal === 'energy') {
+    const { draws, degrees } = energiesAtHalf(c, seed, DRAWS);
+    return 2e-3 * studentQuantile(0.975, degrees) * standardDeviation(draws);
+  }
+  const made = sourceOfCampaign(c, seed, DRAWS, false);
+  if (!made) return undefined;
+  // The frozen point would move with the slowest scan: the band above it alone is compared.
+  const source = { ...made.source, law: { ...made.source.law!, frozenBelowK: 1 } };
+  const [row] = answerQuestion(source, {
+    question: 'time_to_conversion',
+    conversion: goal.conversion,
+    temperatureK: goal.temperatureK,
+  });
+  return Math.log10(row.upper95! / row.lower95!);
+}
+
+/** Vyazovkin's E at α = 0.5, J/mol: estimate from the ideal ramps, and the draws of the Monte Carlo. */
+function energiesAtHalf(c: Pick<ForecastCampaign, 'scans' | 'instruments'>, seed: string, draws: number) {
+  const data = collectEvent(1, c.scans, c.instruments);
+  const curves = Uint16Array.from(data.hasCurve.keys());
+  const model = modelScatter(data, curves, distinctRates(data.rate).length);
+  const work = Array.from(curves, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
+  const energyOf = (columns: Parameters<typeof rampIntegrals>[0], start: number) => {
+    const ramp = rampIntegrals(columns, curves);
+    let inverse = 0;
+    for (let i = 0; i < data.n; i++) inverse += 1 / columns.temperatureK[i * CONVERSION_COUNT + HALF] / data.n;
+    return fitVyazovkin((E, out) => ramp.step(E, inverse, HALF, out), model.weights, start, work).energy;
+  };
+  const energy = energyOf(data, 200e3);
+  const columns = drawBuffer(data);
+  const random = createRandom(`${seed}:energy`);
+  const drawn = Float64Array.from({ length: draws }, () => {
+    drawColumns(model, random, columns);
+    return energyOf(columns, energy);
+  });
+  return { energy, draws: drawn, degrees: data.n - model.trendParameters };
+}
+
+export function forecastAdviceStudy({ count = 100, seed }: StudyOptions): string {
+  const rows = (['energy', 'forecast', 'bend'] as const).map((goal) => {
+    const trials = Array.from({ length: count }, (_, i) => tryAdvice(`${seed}/${i}`, goal)).filter(
+      (t) => t !== undefined,
+    );
+    const share = (holds: (t: AdviceTrial) => boolean) => percent(trials.filter(holds).length / trials.length, 1);
+    return [
+      goal,
+      trials.length,
+      quantile(
+        trials.map((t) => t.candidates),
+        0.5,
+      ).toFixed(0),
+      share((t) => t.topAgainstMedian <= 1),
+      share((t) => Math.abs(t.predicted - 1) <= 0.25),
+      quantile(
+        trials.map((t) => t.predicted),
+        0.05,
+      ).toFixed(2),
+      quantile(
+        trials.map((t) => t.predicted),
+        0.5,
+      ).toFixed(2),
+      quantile(
+        trials.map((t) => t.predicted),
+        0.95,
+      ).toFixed(2),
+      quantile(
+        trials.map((t) => t.narrowing),
+        0.5,
+      ).toFixed(2),
+    ];
+  });
+  return markdownTable(
+    [
+      'goal',
+      'campaigns',
+      'candidates',
+      'top at least as narrow as the median candidate',
+      'predicted within 25 %',
+      'predicted ÷ obtained 5 %',
+      'median',
+      '95 %',
+      'width left',
+    ],
+    rows,
+  );
+}
