@@ -1,15 +1,24 @@
 import { randomBytes } from 'node:crypto';
-import { createReadStream } from 'node:fs';
-import { type FileHandle, mkdir, open, opendir, readFile, rename, rm, stat } from 'node:fs/promises';
+import * as fs from 'node:fs';
+import { mkdir, opendir, rename, rm, stat } from 'node:fs/promises';
 import { dirname, join, relative, sep } from 'node:path';
 import { Readable } from 'node:stream';
+import { promisify } from 'node:util';
 import { BlobMissing, type BlobStore } from '../ports/index.ts';
+
+// By file number: a handle object for each of many small files takes more time than the files.
+const open = promisify(fs.open);
+const write = promisify(fs.write) as (fd: number, bytes: Uint8Array) => Promise<{ bytesWritten: number }>;
+const datasync = promisify(fs.fdatasync);
+const close = promisify(fs.close);
+const readFile = promisify(fs.readFile);
 
 const isMissing = (error: unknown) => (error as { code?: string }).code === 'ENOENT';
 
 /**
- * Blobs as files below `root`. A blob is written under a temporary name, flushed to the disk and renamed, so that a key is
- * either absent or whole, also after a crash.
+ * Blobs as files below `root`. A blob is written under a temporary name and renamed, so that a key is either absent or
+ * whole, also after a crash of the process. Originals are flushed to the disk first, so that they outlast a power cut too;
+ * derived blobs are not: a damaged one is made again, and waiting for the disk twice a scan is what a campaign would wait for.
  */
 export function createFileBlobs(root: string): BlobStore {
   const partsFolder = join(root, 'parts');
@@ -41,12 +50,12 @@ export function createFileBlobs(root: string): BlobStore {
       await makeFolder(dirname(path));
       const part = join(partsFolder, randomBytes(12).toString('hex'));
       try {
-        const handle = await open(part, 'wx');
+        const file = await open(part, 'wx');
         try {
-          await writeBody(handle, key, body, length);
-          await handle.datasync();
+          await writeBody(file, key, body, length);
+          if (!isDerived(key)) await datasync(file);
         } finally {
-          await handle.close();
+          await close(file);
         }
         await rename(part, path);
       } catch (error) {
@@ -55,8 +64,8 @@ export function createFileBlobs(root: string): BlobStore {
       }
     },
     async get(key) {
-      const handle = await open(pathOf(key)).catch(missing(key));
-      return Readable.toWeb(createReadStream('', { fd: handle })) as ReadableStream<Uint8Array>;
+      const file = await open(pathOf(key), 'r').catch(missing(key));
+      return Readable.toWeb(fs.createReadStream('', { fd: file })) as ReadableStream<Uint8Array>;
     },
     async bytes(key) {
       const { buffer, byteOffset, byteLength } = await readFile(pathOf(key)).catch(missing(key));
@@ -87,19 +96,25 @@ export function createFileBlobs(root: string): BlobStore {
   };
 }
 
+const isDerived = (key: string): boolean => key.startsWith('derived/');
+
+async function writeAll(file: number, bytes: Uint8Array): Promise<void> {
+  for (let at = 0; at < bytes.byteLength; ) at += (await write(file, bytes.subarray(at))).bytesWritten;
+}
+
 async function writeBody(
-  handle: FileHandle,
+  file: number,
   key: string,
   body: ReadableStream<Uint8Array> | Uint8Array,
   length: number | undefined,
 ): Promise<void> {
   let size = 0;
   if (body instanceof Uint8Array) {
-    await handle.writeFile(body);
+    await writeAll(file, body);
     size = body.byteLength;
   } else {
     for await (const chunk of body as unknown as AsyncIterable<Uint8Array>) {
-      await handle.writeFile(chunk);
+      await writeAll(file, chunk);
       size += chunk.byteLength;
     }
   }

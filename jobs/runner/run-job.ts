@@ -1,7 +1,8 @@
 import type { Ports } from '../ports/index.ts';
-import { type ColumnsCache, failStep, runStep } from '../steps/index.ts';
+import { type ColumnsCache, DerivedLost, failStep, runStep } from '../steps/index.ts';
 import { LateWorker } from '../store/fence.ts';
 import type { ClaimedJob } from '../store/leases.ts';
+import { reduceAgain } from '../store/lost-blobs.ts';
 
 /** What became of one attempt. */
 export type JobEnd = 'done' | 'failed' | 'late';
@@ -17,6 +18,7 @@ export async function runJob(ports: Ports, job: ClaimedJob, cache: ColumnsCache)
   } catch (error) {
     if (error instanceof LateWorker) return 'late';
     try {
+      if (error instanceof DerivedLost) await reduceAgain(ports, job.campaignId, error.key);
       await failStep(ports, job, error);
       return 'failed';
     } catch (second) {

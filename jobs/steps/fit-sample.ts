@@ -6,7 +6,7 @@ import { hashOf } from '../store/ids.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
 import { listSamples } from '../store/views.ts';
 import { compareText } from './assign-scans.ts';
-import { readDerived } from './columns-store.ts';
+import { DerivedLost, readDerived } from './columns-store.ts';
 import { FIT_DRAWS, STEP_VERSIONS } from './settings.ts';
 
 /** Step `fit-sample`: every law on the reduced scans of one sample. The same inputs as the stored fit: only looked up. */
@@ -66,7 +66,8 @@ async function fitScansOf(
   ports: Ports,
   { path, sha256, instrument, sheetRow, reducedKey }: FitScanRow,
 ): Promise<FitScan[]> {
-  const outcome = decodeReduceOutcome(await ports.blobs.bytes(reducedKey));
+  const outcome = await readDerived(ports, reducedKey, decodeReduceOutcome);
+  if (!outcome) throw new DerivedLost(reducedKey);
   if (!outcome.ok)
     throw new Error(`${path} counts as reduced, but blob ${reducedKey} holds a refusal: ${outcome.reason}`);
   const { events, segment } = outcome.reduced;

@@ -7,6 +7,7 @@ import type { Ports } from '../ports/index.ts';
 import { replaceFlags } from './assignment-rows.ts';
 import type { Statement } from './fence.ts';
 import { loadSampleRow } from './scan-rows.ts';
+import { insertRows, json } from './statement.ts';
 
 export type SampleRow = typeof samples.$inferSelect;
 
@@ -62,8 +63,8 @@ export async function loadFit(ports: Ports, sampleId: string): Promise<FitRows |
   };
 }
 
-/** Rows of one statement: a row takes 17 values, a statement at most 32 766. */
-const ROWS_A_STATEMENT = 1_000;
+/** Rows of one statement: full ones have one text, which stays prepared. */
+const ROWS_A_STATEMENT = 50;
 
 /** Replaces the fit of a sample. Where inputs have changed since they were loaded the newer fit is waited for. */
 export function saveFit(db: LibSQLDatabase, sample: SampleRow, fitKey: string, fit: FitResult): Statement[] {
@@ -73,7 +74,13 @@ export function saveFit(db: LibSQLDatabase, sample: SampleRow, fitKey: string, f
   ];
   for (let at = 0; at < fit.parameters.length; at += ROWS_A_STATEMENT) {
     const part = fit.parameters.slice(at, at + ROWS_A_STATEMENT);
-    statements.push(db.insert(parameters).values(part.map((row, i) => parameterValues(campaignId, at + i, row))));
+    statements.push(
+      insertRows(
+        'parameters',
+        PARAMETER_COLUMNS,
+        part.map((row, i) => parameterValues(campaignId, at + i, row)),
+      ),
+    );
   }
   return [
     ...statements,
@@ -103,23 +110,26 @@ export const saveFailedSample = (db: LibSQLDatabase, sampleId: string, reason: s
   db.update(samples).set({ state: 'failed', reason }).where(eq(samples.id, sampleId)),
 ];
 
-const parameterValues = (campaignId: string, position: number, row: ParameterRow) => ({
+const PARAMETER_COLUMNS =
+  'campaign_id, sample, position, event, quantity, method, conversion, temperature_k, value, unit, lower95, upper95, scan_count, rate_min_k_per_s, rate_max_k_per_s, flags, interval, variant';
+
+const parameterValues = (campaignId: string, position: number, row: ParameterRow) => [
   campaignId,
-  sample: row.sample,
+  row.sample,
   position,
-  event: row.event,
-  quantity: row.quantity,
-  method: row.method,
-  conversion: row.conversion,
-  temperatureK: row.temperature_K,
-  value: row.value,
-  unit: row.unit,
-  lower95: row.lower95,
-  upper95: row.upper95,
-  scanCount: row.scan_count,
-  rateMinKPerS: row.rate_min_K_per_s,
-  rateMaxKPerS: row.rate_max_K_per_s,
-  flags: row.flags,
-  interval: row.interval,
-  variant: row.variant,
-});
+  row.event,
+  row.quantity,
+  row.method,
+  row.conversion,
+  row.temperature_K,
+  row.value,
+  row.unit,
+  row.lower95,
+  row.upper95,
+  row.scan_count,
+  row.rate_min_K_per_s,
+  row.rate_max_K_per_s,
+  json(row.flags),
+  row.interval,
+  row.variant,
+];

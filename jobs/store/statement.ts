@@ -45,6 +45,12 @@ export function text(strings: TemplateStringsArray, ...values: unknown[]): SqlTe
 export const json = (value: unknown): string | null =>
   value === null || value === undefined ? null : JSON.stringify(value);
 
+/** One INSERT of many rows; `columns` is part of the text, never from outside. */
+export function insertRows(table: string, columns: string, rows: readonly (readonly InValue[])[]): SqlText {
+  const places = `(${rows[0].map(() => '?').join(', ')})`;
+  return new SqlText(`insert into ${table} (${columns}) values ${rows.map(() => places).join(', ')}`, rows.flat());
+}
+
 type WithClient = LibSQLDatabase & {
   $client: {
     execute(statement: { sql: string; args: InValue[] }): Promise<{ rows: unknown[]; rowsAffected: number }>;

@@ -46,5 +46,6 @@ export function decodeColumns(bytes: Uint8Array): Columns {
     columns[name] = new Float64Array(new Uint8Array(bytes.subarray(at, at + n * 8)).buffer);
     at += n * 8;
   }
+  if (at !== bytes.byteLength) throw new RangeError(`a column blob of ${at} bytes has ${bytes.byteLength}`);
   return { meta: head.meta, columns };
 }
