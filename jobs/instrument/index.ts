@@ -1,6 +1,7 @@
 /** From the bytes of instrument files, sheets and archives to columns and rows in SI (METHODS 2). */
 
 export { type ArchiveMember, unpackArchive } from './archive.ts';
+export { readGoalSheet, readPeaksSheet, readProgram, readViscositySheet } from './further-sheets.ts';
 export { ARCHIVE_LIMITS, ArchiveRefused, type UnpackLimits } from './inflate.ts';
 export {
   type ArchiveKind,

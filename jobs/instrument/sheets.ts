@@ -1,50 +1,27 @@
 /** The three sheets of a campaign (INTERFACES, "A campaign folder") as typed rows in SI. */
-import { type Flag, flag, quote } from '../../schema/wire/flags.ts';
+import { type Flag, quote } from '../../schema/wire/flags.ts';
 import type { InstrumentSheetRow, SampleSheetRow, ScanSheetRow } from '../../schema/wire/scan.ts';
 import { EXOTHERM_DIRECTIONS, INSTRUMENT_KINDS, ROLES, type Role } from '../../schema/wire/states.ts';
-import { pathProblem, unpackedPath } from './paths.ts';
-import { type ColumnKind, readSheet, type SheetCells, type SheetColumn } from './sheet-table.ts';
-import type { Quantity } from './units.ts';
+import { unpackedPath } from './paths.ts';
+import {
+  above,
+  any,
+  counted,
+  firstOfEach,
+  fraction,
+  name,
+  notBelow,
+  path,
+  rate,
+  text,
+  withLine,
+} from './sheet-columns.ts';
+import { readSheet, type SheetColumn } from './sheet-table.ts';
 
 export interface SheetRows<Row> {
   rows: Row[];
   flags: Flag[];
 }
-
-/** Longest name of a sample, instrument or series, characters. */
-const NAME_LIMIT = 200;
-
-const text: ColumnKind = { kind: 'text' };
-const name: ColumnKind = { kind: 'text', check: nameProblem };
-const path: ColumnKind = { kind: 'text', check: pathProblem };
-
-const any = (quantity: Quantity): ColumnKind => ({ kind: 'number', quantity });
-const above = (quantity: Quantity, limit: number): ColumnKind => ({
-  kind: 'number',
-  quantity,
-  check: (value) => (value > limit ? undefined : `it must be above ${limit}`),
-});
-const notBelow = (quantity: Quantity): ColumnKind => ({
-  kind: 'number',
-  quantity,
-  check: (value) => (value >= 0 ? undefined : 'it must not be below 0'),
-});
-const rate: ColumnKind = {
-  kind: 'number',
-  quantity: 'rate',
-  check: (value) => (value === 0 ? 'a heating rate is not 0; leave it empty for a hold' : undefined),
-};
-const segment: ColumnKind = {
-  kind: 'number',
-  quantity: 'number',
-  check: (value) => (Number.isInteger(value) && value >= 1 ? undefined : 'segments are counted 1, 2, 3 …'),
-};
-const fraction: ColumnKind = {
-  kind: 'number',
-  quantity: 'number',
-  check: (value) =>
-    value >= 0 && value <= 1 ? undefined : 'it must lie in 0 … 1 (write % in the header for per cent)',
-};
 
 const SCAN_COLUMNS: readonly SheetColumn[] = [
   { key: 'file', name: 'file', kind: path, required: true },
@@ -55,7 +32,7 @@ const SCAN_COLUMNS: readonly SheetColumn[] = [
   { key: 'massKg', name: 'mass', kind: above('mass', 0) },
   { key: 'exotherm', name: 'exotherm', kind: { kind: 'choice', values: EXOTHERM_DIRECTIONS } },
   { key: 'replicate', name: 'replicate', kind: text },
-  { key: 'segment', name: 'segment', kind: segment },
+  { key: 'segment', name: 'segment', kind: counted },
   { key: 'reference', name: 'reference', kind: path },
   { key: 'note', name: 'note', kind: text },
 ];
@@ -121,42 +98,4 @@ export function readSamplesSheet(bytes: Uint8Array, file: string): SheetRows<Sam
     return row;
   });
   return { rows: firstOfEach(samples, (row) => quote(row.sample), file, flags), flags };
-}
-
-function withLine<Row>({ line, cells }: SheetCells): Row {
-  return { ...cells, line } as unknown as Row;
-}
-
-/** Rows without those that say again what an earlier row is about; a later row is flagged, even when it says the same. */
-function firstOfEach<Row extends { line: number }>(
-  rows: Row[],
-  keyOf: (row: Row) => string,
-  file: string,
-  flags: Flag[],
-): Row[] {
-  const seen = new Map<string, number>();
-  return rows.filter((row) => {
-    const key = keyOf(row);
-    const first = seen.get(key);
-    if (first === undefined) {
-      seen.set(key, row.line);
-      return true;
-    }
-    flags.push(
-      flag(
-        'sheet-damaged',
-        `line ${row.line} names ${key} again, as line ${first} does; only line ${first} counts`,
-        'Delete one of the two rows.',
-        { file },
-      ),
-    );
-    return false;
-  });
-}
-
-/** Names go into result files, where a cell must not start like a formula. */
-function nameProblem(value: string): string | undefined {
-  if (value.length > NAME_LIMIT) return `is longer than ${NAME_LIMIT} characters`;
-  if (/\p{Cc}/u.test(value)) return 'holds a control character or a line break';
-  return /^[=+\-@]/.test(value) ? `starts with ${value[0]}, like a formula in a spreadsheet` : undefined;
 }

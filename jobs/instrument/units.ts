@@ -17,6 +17,7 @@ export type Quantity =
   | 'molar mass'
   | 'velocity'
   | 'sensitivity'
+  | 'log10 viscosity'
   | 'number';
 
 export interface Unit {
@@ -45,6 +46,7 @@ const SYMBOLS: Record<string, string> = {
   J: 'J', mJ: 'mJ', uJ: 'uJ', kJ: 'kJ',
   kg: 'kg', g: 'g', mg: 'mg', ug: 'ug', ng: 'ng', pg: 'pg',
   V: 'V', mV: 'mV', uV: 'uV', nV: 'nV', uv: 'uV',
+  Pa: 'Pa', dPa: 'dPa', P: 'P', poise: 'P',
   mol: 'mol', m: 'm', cm: 'cm', mm: 'mm', um: 'um', nm: 'nm', '%': '%', '1': '1', '-': '1',
 };
 
@@ -93,6 +95,8 @@ const UNITS: Record<Quantity, Record<string, Entry>> = {
   'molar mass': quotients({ kg: 1, g: 1e-3 }, { mol: 1 }, 'kg/mol'),
   velocity: quotients({ m: 1, cm: 1e-2, mm: 1e-3, um: 1e-6, nm: 1e-9 }, SECONDS, 'm/s'),
   sensitivity: quotients(VOLTS, WATTS, 'V/W'),
+  // The logarithm of a number of poises (1 P = 0.1 Pa s) is one larger.
+  'log10 viscosity': { 'Pa s': [1, 'Pa s'], 'dPa s': [1, 'Pa s', -1], P: [1, 'Pa s', -1] },
   number: { '1': [1, '1'], '%': [1e-2, '1'] },
 };
 
@@ -109,6 +113,7 @@ const OFFERED: Record<Quantity, string> = {
   'molar mass': 'g/mol, kg/mol',
   velocity: 'm/s, mm/s, µm/s, nm/s',
   sensitivity: 'µV/mW, V/W',
+  'log10 viscosity': 'Pa s, P',
   number: '1, %',
 };
 

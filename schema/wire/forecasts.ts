@@ -145,12 +145,14 @@ export interface PeakSheetRow {
   instrument: string;
   event?: number;
   rateKPerS: number;
-  peakK: number;
+  /** At least one of the temperatures is there */
+  peakK?: number;
   onsetK?: number;
   glassTransitionK?: number;
   meltingK?: number;
   replicate?: string;
-  peakErrorK?: number;
+  /** 0.5 K where the sheet says nothing */
+  peakErrorK: number;
   line: number;
 }
 
@@ -159,7 +161,7 @@ export interface ViscositySheetRow {
   sample: string;
   temperatureK: number;
   /** log10 of the viscosity in Pa s */
-  log10Viscosity: number;
+  log10PaS: number;
   line: number;
 }
 
