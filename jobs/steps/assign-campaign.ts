@@ -1,6 +1,6 @@
 import { type Flag, flag, quote } from '../../schema/wire/flags.ts';
 import type { InstrumentSheetRow } from '../../schema/wire/scan.ts';
-import type { ScanState } from '../../schema/wire/states.ts';
+import type { Role, ScanState } from '../../schema/wire/states.ts';
 import { sheetKind } from '../instrument/index.ts';
 import type { Ports } from '../ports/index.ts';
 import {
@@ -37,13 +37,18 @@ export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<voi
     await loadCorrections(ports, job.campaignId),
   );
   const sampleRows = new Map([...rows.sheets.samples].reverse().map((row) => [row.sample, row]));
+  const instrumentRows = new Map([...rows.sheets.instruments].reverse().map((row) => [row.instrument, row]));
   flags.push(
     ...repeatedRows('samples', rows.sheets.samples, (row) => row.sample),
     ...repeatedRows('instruments', rows.sheets.instruments, (row) => row.instrument),
   );
   const wanted: HashedScan[] = scans.map((scan) => ({
     ...scan,
-    sheetHash: hashScanSheet(scan, scan.sample === null ? undefined : sampleRows.get(scan.sample)),
+    sheetHash: hashScanSheet(
+      scan,
+      scan.sample === null ? undefined : sampleRows.get(scan.sample),
+      scan.instrument === null ? undefined : instrumentRows.get(scan.instrument),
+    ),
   }));
   const changes = diffScans(rows.scans, wanted);
   const placed = (scan: HashedScan): AssignedScan => placeScan(scan, fileOf.get(scan.fileId) as StoredFile);
@@ -56,7 +61,7 @@ export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<voi
       ...changes.remove.map((scan) => deleteScan(db, scan.id)),
       ...followFiles(db, job.campaignId),
       ...settleSamples(db, job.campaignId, namedSamples(wanted), changedNames(changes, 'sample')),
-      ...settleInstruments(db, job.campaignId, instrumentChanges(rows, wanted, changes)),
+      ...settleInstruments(db, job.campaignId, instrumentChanges(rows, instrumentRows, wanted, changes)),
       ...replaceFlags(db, job.campaignId, 'assign', flags),
       ...moveCorrections(db, moved),
       ...endCorrections(
@@ -120,35 +125,38 @@ const isSampleScan = (scan: WantedScan) =>
 const namedSamples = (wanted: readonly WantedScan[]): string[] =>
   [...new Set(wanted.filter(isSampleScan).map((scan) => scan.sample as string))].sort();
 
-/** Samples or instruments that gained, lost or kept a changed scan. */
-function changedNames(changes: ScanChanges, field: 'sample' | 'instrument'): string[] {
-  const names = [
-    ...changes.insert.map((scan) => scan[field]),
-    ...changes.update.flatMap(({ before, wanted }) => [before[field], wanted[field]]),
-    ...changes.remove.map((scan) => scan[field]),
-  ];
-  return [...new Set(names.filter((name) => name !== null))].sort();
+/** Samples or instruments that gained, lost or kept a changed scan, of one role or of any. */
+function changedNames(changes: ScanChanges, field: 'sample' | 'instrument', role?: Role): string[] {
+  const touched = [
+    ...changes.insert,
+    ...changes.update.flatMap(({ before, wanted }) => [before, wanted]),
+    ...changes.remove,
+  ].filter((scan) => role === undefined || scan.role === role);
+  return [...new Set(touched.map((scan) => scan[field]).filter((name) => name !== null))].sort();
 }
 
 function instrumentChanges(
   rows: AssignmentRows,
+  sheet: ReadonlyMap<string, InstrumentSheetRow>,
   wanted: readonly WantedScan[],
   changes: ScanChanges,
 ): InstrumentChanges {
-  const sheet = new Map<string, InstrumentSheetRow>(
-    [...rows.sheets.instruments].reverse().map((row) => [row.instrument, row]),
-  );
   const used = wanted.filter((scan) => scan.disposition === 'assigned').map((scan) => scan.instrument as string);
   const names = new Set([...used, ...sheet.keys()]);
   const stored = new Map(rows.instruments.map((row) => [row.instrument, row]));
   const moved = new Set(changedNames(changes, 'instrument'));
+  const withStandards = new Set(changedNames(changes, 'instrument', 'standard'));
   const said = (row: InstrumentSheetRow | null | undefined) => hashOf(row ? { ...row, line: undefined } : null);
   const result: InstrumentChanges = { insert: [], update: [], remove: [] };
   for (const instrument of [...names].sort()) {
     const sheetRow = sheet.get(instrument) ?? null;
     const before = stored.get(instrument);
     if (!before) result.insert.push({ instrument, sheetRow });
-    else if (said(before.sheetRow) !== said(sheetRow) || (sheetRow?.kind === undefined && moved.has(instrument))) {
+    else if (
+      said(before.sheetRow) !== said(sheetRow) ||
+      (sheetRow?.kind === undefined && moved.has(instrument)) ||
+      withStandards.has(instrument)
+    ) {
       result.update.push({ id: before.id, sheetRow });
     }
   }

@@ -22,6 +22,8 @@ export interface WantedScan {
   /** What the sheet or the folder says, before corrections. */
   said: Partial<ScanSheetRow>;
   sheetRow: ScanSheetRow | null;
+  /** SHA-256 of the files that its `reference` means: one, unless the name is missing or not unique. */
+  referenceBytes: string[];
   reason: string | null;
   flags: Flag[];
 }
@@ -74,6 +76,9 @@ export function assignScans(
   const claims = applied.corrected.flatMap(({ said, row }) => claimOf(said, row));
   claims.sort((a, b) => compareText(a.file.path, b.file.path));
 
+  const filesOf = indexFiles(sorted);
+  const referencesOf = (row: ScanSheetRow | null) => (row?.reference === undefined ? [] : filesOf(row.reference));
+  const references = new Set(claims.flatMap(({ row }) => referencesOf(row).map((file) => file.id)));
   const scans: WantedScan[] = [];
   const firstOf = new Map<string, Claim>();
   const pathOfBytes = new Map<string, string>();
@@ -105,6 +110,7 @@ export function assignScans(
       segment: row?.segment ?? null,
       said,
       sheetRow: row,
+      referenceBytes: referencesOf(row).map((reference) => reference.sha256),
       ...(first ? sameBytes(file, first.file.path) : { reason: null, flags: [] }),
     });
   }
@@ -122,7 +128,12 @@ export function assignScans(
       segment: null,
       said: {},
       sheetRow: null,
-      ...(otherPath === undefined ? unassigned(file, rows !== undefined) : sameBytes(file, otherPath)),
+      referenceBytes: [],
+      ...(otherPath !== undefined
+        ? sameBytes(file, otherPath)
+        : references.has(file.id)
+          ? { reason: 'only named as the reference of other scans', flags: [] }
+          : unassigned(file, rows !== undefined)),
     });
   }
   return { scans, flags, ended: applied.ended, moved: applied.moved };
@@ -159,18 +170,28 @@ function claimByFolder(
   });
 }
 
-function claimByRows(files: readonly AssignFile[], rows: readonly ScanSheetRow[], flags: Flag[]): SaidOfFile[] {
+/** Finds the files that a name means: the one of that path, else all of that base name. */
+export function indexFiles<F extends { path: string }>(files: readonly F[]): (name: string) => F[] {
   const byPath = new Map(files.map((file) => [file.path, file]));
-  const byBase = new Map<string, AssignFile[]>();
+  const byBase = new Map<string, F[]>();
   for (const file of files) {
     const base = baseName(file.path);
-    byBase.set(base, [...(byBase.get(base) ?? []), file]);
+    const group = byBase.get(base);
+    if (group) group.push(file);
+    else byBase.set(base, [file]);
   }
+  return (name) => {
+    const wanted = sheetPath(name);
+    const exact = byPath.get(wanted);
+    return exact ? [exact] : (byBase.get(wanted) ?? []);
+  };
+}
+
+function claimByRows(files: readonly AssignFile[], rows: readonly ScanSheetRow[], flags: Flag[]): SaidOfFile[] {
+  const filesOf = indexFiles(files);
   const claims: SaidOfFile[] = [];
   for (const row of rows) {
-    const name = sheetPath(row.file);
-    const exact = byPath.get(name);
-    const found = exact ? [exact] : (byBase.get(name) ?? []);
+    const found = filesOf(row.file);
     const contents = new Set(found.map((file) => file.sha256)).size;
     if (contents === 1) {
       for (const file of found) claims.push({ file, row, sheetRow: row });

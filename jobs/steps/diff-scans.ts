@@ -1,4 +1,4 @@
-import type { SampleSheetRow } from '../../schema/wire/scan.ts';
+import type { InstrumentSheetRow, SampleSheetRow } from '../../schema/wire/scan.ts';
 import type { StoredScan } from '../store/assignment-rows.ts';
 import { hashOf } from '../store/ids.ts';
 import { compareText, type WantedScan } from './assign-scans.ts';
@@ -17,8 +17,12 @@ export interface ScanChanges {
  * Hash of what the sheets say about a scan and its sample. Line numbers and how the row spells the file's name are left out:
  * a row that only moved is not a changed row.
  */
-export function hashScanSheet(wanted: WantedScan, sampleRow: SampleSheetRow | undefined): string {
-  const { disposition, sample, instrument, role, segment, reason } = wanted;
+export function hashScanSheet(
+  wanted: WantedScan,
+  sampleRow: SampleSheetRow | undefined,
+  instrumentRow: InstrumentSheetRow | undefined,
+): string {
+  const { disposition, sample, instrument, role, segment, reason, referenceBytes } = wanted;
   const row = wanted.sheetRow && { ...wanted.sheetRow, line: undefined, file: undefined };
   return hashOf([
     disposition,
@@ -29,6 +33,9 @@ export function hashScanSheet(wanted: WantedScan, sampleRow: SampleSheetRow | un
     reason,
     row,
     sampleRow && { ...sampleRow, line: undefined },
+    referenceBytes,
+    // What a standard is reduced with before its instrument is calibrated.
+    role === 'standard' ? (instrumentRow?.sensitivityVPerW ?? null) : null,
   ]);
 }
 

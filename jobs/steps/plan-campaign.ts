@@ -8,14 +8,12 @@ import { loadPlan, type PlanRows, savePlan } from '../store/plan-rows.ts';
 export async function planStoredCampaign(ports: Ports, job: ClaimedJob): Promise<void> {
   const { samples, scans, calibrations } = await loadPlan(ports, job.campaignId);
   const used = new Set(scans.map((scan) => scan.instrument));
-  const standards = (instrument: string) =>
-    scans.filter((scan) => scan.role === 'standard' && scan.instrument === instrument).length;
   const plan = planCampaign({
     samples,
     scans: scans.filter((scan) => scan.role === 'sample').flatMap(coverageScanOf),
     instruments: calibrations
       .filter((row) => used.has(row.instrument))
-      .map(({ instrument, kind }) => ({ instrument, kind, standards: standards(instrument) })),
+      .map(({ instrument, kind, standards }) => ({ instrument, kind, standards })),
   });
   await completeJob(ports, job, (db) => [savePlan(db, job.campaignId, { ...plan, advice: [] })]);
 }

@@ -1,14 +1,15 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
 import type { ReduceOutcome } from '../../schema/wire/reduced.ts';
 import { decodeReduceOutcome, encodeReduceOutcome, summarizeReduced } from '../../schema/wire/reduced-blob.ts';
-import type { ReadScan } from '../../schema/wire/scan.ts';
+import type { InstrumentCalibration, InstrumentSheetRow, ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
 import type { Ports } from '../ports/index.ts';
 import { hashOf } from '../store/ids.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
-import { loadReduction, type ReductionRows, saveReduction } from '../store/scan-rows.ts';
-import { loadColumns } from './columns.ts';
+import { type FileRow, loadReduction, type ReductionRows, saveReduction } from '../store/scan-rows.ts';
+import { loadColumns, readOrLookUp } from './columns.ts';
 import { type ColumnsCache, readDerived } from './columns-store.ts';
+import { findReference, type ReferenceProblem, unreadable } from './find-reference.ts';
 import { STEP_VERSIONS } from './settings.ts';
 
 /** What a reduction stores on its scan. */
@@ -20,7 +21,8 @@ export async function reduceStoredScan(ports: Ports, job: ClaimedJob, cache: Col
   if (rows?.scan.status !== 'read') return completeJob(ports, job);
   const found = await reduceRows(ports, rows, () => loadColumns(ports, rows.file, cache));
   if (!found) return completeJob(ports, job);
-  await completeJob(ports, job, (db) => saveReduction(db, rows.scan, found), { samples: true });
+  const check = { samples: true, instruments: rows.scan.role === 'standard' };
+  await completeJob(ports, job, (db) => saveReduction(db, rows.scan, found), check);
 }
 
 /** Reduces the scan of these rows or looks the result up; undefined where it has no sample or calibration yet. */
@@ -32,11 +34,14 @@ export async function reduceRows(
   const input = reduceInputOf(rows);
   if (!input) return undefined;
   const { campaignId, sha256 } = rows.file;
-  const hash = hashOf(['reduce-scan', STEP_VERSIONS['reduce-scan'], STEP_VERSIONS['read-scan'], sha256, input]);
+  const reference = await findReference(ports, rows);
+  const subtracted = reference && ('problem' in reference ? reference : [reference.path, reference.sha256]);
+  const versions = [STEP_VERSIONS['reduce-scan'], STEP_VERSIONS['read-scan']];
+  const hash = hashOf(['reduce-scan', ...versions, sha256, input, ...(subtracted ? [subtracted] : [])]);
   const reducedKey = `derived/${campaignId}/reduced-${hash}`;
   let outcome = await readDerived(ports, reducedKey, decodeReduceOutcome);
   if (!outcome) {
-    outcome = await ports.compute.reduceScan(await columns(), input);
+    outcome = await reduceOrRefuse(ports, input, reference, columns);
     await ports.blobs.put(reducedKey, encodeReduceOutcome(outcome));
   }
   if (!outcome.ok) {
@@ -47,8 +52,44 @@ export async function reduceRows(
   return { status: 'reduced', reason: null, reducedKey, result: summarizeReduced(reduced), flags: reduced.flags };
 }
 
-function reduceInputOf({ scan, file, calibration, sampleRow }: ReductionRows): ReduceInput | undefined {
-  if (scan.sample === null || calibration === null) return undefined;
+async function reduceOrRefuse(
+  ports: Ports,
+  input: ReduceInput,
+  reference: FileRow | ReferenceProblem | undefined,
+  columns: () => ReadScan | Promise<ReadScan>,
+): Promise<ReduceOutcome> {
+  if (!reference) return ports.compute.reduceScan(await columns(), input);
+  const refuse = ({ problem, action }: ReferenceProblem): ReduceOutcome => ({
+    ok: false,
+    code: 'reference-unused',
+    reason: problem,
+    action,
+    flags: [],
+  });
+  if ('problem' in reference) return refuse(reference);
+  const read = await readOrLookUp(ports, reference);
+  if (!read.ok) return refuse(unreadable(reference.path, read.refusal.reason));
+  return ports.compute.reduceScan(await columns(), { ...input, reference: read.scan });
+}
+
+/** A standard is reduced before its instrument is calibrated: nothing of the correction is taken off. */
+const uncorrected = (instrument: string, row: InstrumentSheetRow | null): InstrumentCalibration => ({
+  instrument,
+  kind: 'furnace',
+  source: 'prior',
+  offsetK: 0,
+  offsetSeK: 0,
+  lagS: 0,
+  lagSeS: 0,
+  ...(row?.sensitivityVPerW !== undefined && { sensitivityVPerW: row.sensitivityVPerW }),
+  standards: 0,
+});
+
+function reduceInputOf(rows: ReductionRows): ReduceInput | undefined {
+  const { scan, file, sampleRow, instrumentRow } = rows;
+  if (scan.sample === null || scan.instrument === null) return undefined;
+  const calibration = scan.role === 'standard' ? uncorrected(scan.instrument, instrumentRow) : rows.calibration;
+  if (calibration === null) return undefined;
   const row = scan.sheetRow;
   return {
     file: file.path,

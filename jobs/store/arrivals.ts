@@ -192,6 +192,10 @@ export function supersedeFile(db: LibSQLDatabase, fileId: string): Statement[] {
     db.run(sql`
       update samples set inputs_revision = inputs_revision + 1, state = 'stale'
       where (campaign_id, sample) in (select campaign_id, sample from scans where file_id = ${fileId} and role = 'sample')`),
+    db.run(sql`
+      update instruments set inputs_revision = inputs_revision + 1
+      where (campaign_id, instrument) in (
+        select campaign_id, instrument from scans where file_id = ${fileId} and role = 'standard' and disposition = 'assigned')`),
   ];
 }
 

@@ -223,6 +223,9 @@ export function settleInstruments(db: LibSQLDatabase, campaignId: string, change
       db.update(instruments).set({ sheetRow, inputsRevision: sql`inputs_revision + 1` }).where(eq(instruments.id, id)),
     ),
     ...changes.remove.map((id) => db.delete(instruments).where(eq(instruments.id, id))),
+    db.run(sql`
+      delete from flags where campaign_id = ${campaignId} and source like 'calibrate:%'
+        and substr(source, 11) not in (select instrument from instruments where campaign_id = ${campaignId})`),
   ];
 }
 

@@ -1,17 +1,31 @@
-import { and, eq, sql } from 'drizzle-orm';
+import { and, asc, eq, sql } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
 import { files, instruments, scans } from '../../schema/tables/index.ts';
-import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
+import type { Flag } from '../../schema/wire/flags.ts';
+import type { ReducedSummary } from '../../schema/wire/reduced-blob.ts';
+import type { InstrumentCalibration, SampleSheetRow } from '../../schema/wire/scan.ts';
 import type { Ports } from '../ports/index.ts';
+import { loadSheetRows, replaceFlags } from './assignment-rows.ts';
 import type { Statement } from './fence.ts';
 import { queueReductions, touchSamples } from './job-rows.ts';
 
 export type InstrumentRow = typeof instruments.$inferSelect;
 
+/** A reduced scan of a standard. */
+export interface StandardScan {
+  path: string;
+  sha256: string;
+  sample: string;
+  segment: number | null;
+  massKg?: number;
+  result: ReducedSummary;
+  sampleRow: SampleSheetRow | undefined;
+}
+
 export async function loadInstrument(
   ports: Ports,
   instrumentId: string,
-): Promise<{ instrument: InstrumentRow; highestRateKPerS: number } | undefined> {
+): Promise<{ instrument: InstrumentRow; highestRateKPerS: number; standards: StandardScan[] } | undefined> {
   const [instrument] = await ports.database.read.select().from(instruments).where(eq(instruments.id, instrumentId));
   if (!instrument) return undefined;
   const [{ highest }] = await ports.database.read
@@ -26,7 +40,45 @@ export async function loadInstrument(
         eq(files.superseded, false),
       ),
     );
-  return { instrument, highestRateKPerS: highest ?? 0 };
+  return { instrument, highestRateKPerS: highest ?? 0, standards: await loadStandards(ports, instrument) };
+}
+
+/** In the order of their bytes, so that nothing depends on names or on who came first. */
+async function loadStandards(ports: Ports, { campaignId, instrument }: InstrumentRow): Promise<StandardScan[]> {
+  const rows = await ports.database.read
+    .select({
+      path: files.path,
+      sha256: files.sha256,
+      sample: scans.sample,
+      segment: scans.segment,
+      sheetRow: scans.sheetRow,
+      result: scans.result,
+    })
+    .from(scans)
+    .innerJoin(files, eq(files.id, scans.fileId))
+    .where(
+      and(
+        eq(scans.campaignId, campaignId),
+        eq(scans.instrument, instrument),
+        eq(scans.role, 'standard'),
+        eq(scans.status, 'reduced'),
+      ),
+    )
+    .orderBy(asc(files.sha256), asc(scans.segment), asc(scans.sample));
+  const sampleRows = rows.length === 0 ? [] : await loadSheetRows<SampleSheetRow>(ports, campaignId, 'samples');
+  return rows.flatMap(({ sheetRow, sample, result, ...row }) =>
+    sample === null || result === null
+      ? []
+      : [
+          {
+            ...row,
+            sample,
+            result,
+            ...(sheetRow?.massKg !== undefined && { massKg: sheetRow.massKg }),
+            sampleRow: sampleRows.find((found) => found.sample === sample),
+          },
+        ],
+  );
 }
 
 /** Stores a calibration; where it is another than before, every scan that it corrects is reduced again. */
@@ -34,10 +86,10 @@ export function saveCalibration(
   db: LibSQLDatabase,
   row: InstrumentRow,
   now: number,
-  found: { calibration: InstrumentCalibration; highestRateKPerS: number; changed: boolean },
+  found: { calibration: InstrumentCalibration; highestRateKPerS: number; changed: boolean; flags: Flag[] },
 ): Statement[] {
   const { calibration, highestRateKPerS, changed } = found;
-  const corrected = sql`campaign_id = ${row.campaignId} and instrument = ${row.instrument} and disposition = 'assigned'
+  const corrected = sql`campaign_id = ${row.campaignId} and instrument = ${row.instrument} and disposition = 'assigned' and role <> 'standard'
     and status in ('read', 'reduced', 'set_aside', 'failed')
     and file_id in (select id from files where campaign_id = ${row.campaignId} and state = 'read' and superseded = 0)`;
   return [
@@ -45,6 +97,7 @@ export function saveCalibration(
       .update(instruments)
       .set({ calibration, highestRateKPerS, calibratedRevision: row.inputsRevision })
       .where(eq(instruments.id, row.id)),
+    ...replaceFlags(db, row.campaignId, `calibrate:${row.instrument}`, found.flags),
     ...(changed
       ? [
           touchSamples(db, row.campaignId, sql`select sample from scans where ${corrected} and role = 'sample'`),

@@ -88,10 +88,14 @@ const scansOpen = (campaignId: string) => text`exists (
   select 1 from jobs where campaign_id = ${campaignId} and state in ('queued', 'running') and step in ${OPENING_STEPS})`;
 
 function queueCalibrations(campaignId: string, now: number): Statement[] {
-  // Without a kind on its sheet an instrument is told by its fastest scan, so all of them have to be read first.
+  // Without a kind on its sheet an instrument is told by its fastest scan, so all of them have to be read first; its
+  // standards have to be reduced.
   const due = text`instruments.campaign_id = ${campaignId} and inputs_revision > queued_revision and not ${scansOpen(campaignId)}
     and (json_extract(sheet_row, '$.kind') is not null or not exists (
-      select 1 from scans s where s.campaign_id = ${campaignId} and s.instrument = instruments.instrument and s.status = 'received'))`;
+      select 1 from scans s where s.campaign_id = ${campaignId} and s.instrument = instruments.instrument and s.status = 'received'))
+    and not exists (
+      select 1 from scans s where s.campaign_id = ${campaignId} and s.instrument = instruments.instrument
+        and s.status in ('received', 'read') and s.role = 'standard' and s.disposition = 'assigned')`;
   return [
     insertJobsFor(campaignId, 'calibrate-instrument', now, text`select id as subject from instruments where ${due}`),
     text`update instruments set queued_revision = inputs_revision where ${due}`,
@@ -109,7 +113,7 @@ function queueFits(campaignId: string, now: number): Statement[] {
   ];
 }
 
-/** Queues the reduction of scans that are read, assigned, and on a calibrated instrument: of one file, of one instrument, or all. */
+/** Queues the reduction of scans that are read, assigned, and standards or on a calibrated instrument: of one file, of one instrument, or all. */
 export function queueReductions(
   _db: LibSQLDatabase,
   campaignId: string,
@@ -119,9 +123,9 @@ export function queueReductions(
   const ofFile = fileId === undefined ? text`` : text`and scans.file_id = ${fileId}`;
   const ofInstrument = instrument === undefined ? text`` : text`and scans.instrument = ${instrument}`;
   const due = text`scans.campaign_id = ${campaignId} ${ofFile} ${ofInstrument} and scans.status = 'read' and disposition = 'assigned'
-    and inputs_revision > queued_revision and exists (
+    and inputs_revision > queued_revision and (role = 'standard' or exists (
       select 1 from instruments i where i.campaign_id = ${campaignId} and i.instrument = scans.instrument
-      and i.calibration is not null and i.calibrated_revision = i.inputs_revision)`;
+      and i.calibration is not null and i.calibrated_revision = i.inputs_revision))`;
   return [
     insertJobsFor(campaignId, 'reduce-scan', now, text`select id as subject from scans where ${due}`),
     text`update scans set queued_revision = inputs_revision where ${due}`,
@@ -135,6 +139,12 @@ export function touchSamples(_db: LibSQLDatabase, campaignId: string, names: Sql
       state = case when state in ('waiting', 'queued') and fit_key is null then 'waiting' else 'stale' end
     where campaign_id = ${campaignId} and sample in (${names})`;
 }
+
+/** Marks instruments as having newer standards than their calibration; `names` is a subquery of instrument names. */
+export const touchInstruments = (campaignId: string, names: SqlText): Statement =>
+  text`
+    update instruments set inputs_revision = inputs_revision + 1
+    where campaign_id = ${campaignId} and instrument in (${names})`;
 
 /** Counts a change of what the campaign shows; of `inputs` too where a new plan may be due. */
 export function touchCampaign(_db: LibSQLDatabase, campaignId: string, inputs: boolean): Statement {

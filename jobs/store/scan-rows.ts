@@ -3,11 +3,11 @@ import type { LibSQLDatabase } from 'drizzle-orm/libsql';
 import { files, instruments, scans, sheetRows } from '../../schema/tables/index.ts';
 import type { Flag } from '../../schema/wire/flags.ts';
 import type { ReducedSummary } from '../../schema/wire/reduced-blob.ts';
-import type { InstrumentCalibration, SampleSheetRow } from '../../schema/wire/scan.ts';
+import type { InstrumentCalibration, InstrumentSheetRow, SampleSheetRow } from '../../schema/wire/scan.ts';
 import type { Ports } from '../ports/index.ts';
 import { loadSheetRows } from './assignment-rows.ts';
 import type { Statement } from './fence.ts';
-import { touchSamples } from './job-rows.ts';
+import { touchInstruments, touchSamples } from './job-rows.ts';
 import { json, preparedOnce, text } from './statement.ts';
 
 export type FileRow = typeof files.$inferSelect;
@@ -75,6 +75,7 @@ export interface ReductionRows {
   scan: ScanRow;
   file: FileRow;
   calibration: InstrumentCalibration | null;
+  instrumentRow: InstrumentSheetRow | null;
   sampleRow: SampleSheetRow | null;
 }
 
@@ -84,6 +85,7 @@ const selectReductions = (db: LibSQLDatabase) =>
       scan: scans,
       file: files,
       calibration: instruments.calibration,
+      instrumentRow: instruments.sheetRow,
       sampleRow: sql<SampleSheetRow | null>`(
         select ${sheetRows.body} from ${sheetRows} inner join ${files} sheet on sheet.id = ${sheetRows.fileId}
         where ${sheetRows.campaignId} = ${scans.campaignId} and ${sheetRows.sheet} = 'samples'
@@ -114,16 +116,40 @@ const readyReductions = preparedOnce((db) =>
         eq(scans.fileId, sql.placeholder('fileId')),
         eq(scans.disposition, 'assigned'),
         inArray(scans.status, ['received', 'read']),
-        eq(instruments.calibratedRevision, instruments.inputsRevision),
-        sql`(json_extract(${instruments.sheetRow}, '$.kind') is not null or ${instruments.highestRateKPerS} >= ${sql.placeholder('highestRateKPerS')})`,
+        sql`(${scans.role} = 'standard' or ${instruments.calibratedRevision} = ${instruments.inputsRevision} and
+          (json_extract(${instruments.sheetRow}, '$.kind') is not null or ${instruments.highestRateKPerS} >= ${sql.placeholder('highestRateKPerS')}))`,
       ),
     )
     .prepare(),
 );
 
-/** Scans of a file just read that can be reduced at once: assigned, and on an instrument that this file's rate does not change. */
+/** Scans of a file just read that can be reduced at once: assigned, and standards or on an instrument that this file's rate does not change. */
 export function loadReadyReductions(ports: Ports, file: FileRow, highestRateKPerS: number): Promise<ReductionRows[]> {
   return readyReductions(ports.database.read).all({ fileId: file.id, highestRateKPerS });
+}
+
+/** A live data file that a `reference` cell may mean. */
+export interface ReferenceFile {
+  id: string;
+  path: string;
+  sha256: string;
+  row: FileRow;
+}
+
+/** Live data files whose path is `name` or ends with it. */
+export async function findNamedFiles(ports: Ports, campaignId: string, name: string): Promise<ReferenceFile[]> {
+  const rows = await ports.database.read
+    .select()
+    .from(files)
+    .where(
+      and(
+        eq(files.campaignId, campaignId),
+        eq(files.kind, 'data'),
+        eq(files.superseded, false),
+        sql`(${files.path} = ${name} or substr(${files.path}, -length(${name}) - 1) = '/' || ${name})`,
+      ),
+    );
+  return rows.map((row) => ({ id: row.id, path: row.path, sha256: row.sha256, row }));
 }
 
 /** The row of samples.csv for one sample: the first, in the order of the assignment. */
@@ -154,6 +180,7 @@ export function saveReduction(
         result = ${json(found.result)}, flags = ${json(found.flags)}
       where id = ${scan.id} and inputs_revision = ${scan.inputsRevision} and status = 'read'`,
     ...(scan.role === 'sample' ? [touchSamples(db, scan.campaignId, text`${scan.sample}`)] : []),
+    ...(scan.role === 'standard' ? [touchInstruments(scan.campaignId, text`${scan.instrument}`)] : []),
   ];
 }
 

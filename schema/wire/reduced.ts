@@ -108,4 +108,10 @@ export interface ReducedScan {
 
 export type ReduceOutcome =
   | { ok: true; reduced: ReducedScan }
-  | { ok: false; code: 'sign-unknown' | 'file-damaged'; reason: string; action: string; flags: Flag[] };
+  | {
+      ok: false;
+      code: 'sign-unknown' | 'file-damaged' | 'reference-unused';
+      reason: string;
+      action: string;
+      flags: Flag[];
+    };

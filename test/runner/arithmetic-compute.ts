@@ -19,7 +19,7 @@ export interface ArithmeticCompute extends Compute {
 /**
  * Computations in place of the science, for tests of the pipeline: cheap, and their results depend on everything that goes
  * in, so that a wrong or stale input shows. A text `bad…` is refused, `poison…` throws, `dull…` has no known direction,
- * `rate R` heats at R K/s.
+ * `rate R` heats at R K/s; `melts late A lag L` is a standard that melts A + L R above the melting point of indium.
  */
 export function createArithmeticCompute(): ArithmeticCompute {
   const counts: Counts = { readScan: 0, reduceScan: 0, fitSample: 0 };
@@ -48,6 +48,7 @@ function readText(text: string, file: string): ReadOutcome {
   }
   const rate = Number(/rate ([\d.]+)/.exec(text)?.[1] ?? 1);
   const seed = createHash('sha256').update(text).digest()[0];
+  const melts = /melts late ([\d.]+) lag ([\d.]+)/.exec(text);
   const timeS = Float64Array.from({ length: 40 }, (_, i) => i);
   return {
     ok: true,
@@ -57,7 +58,7 @@ function readText(text: string, file: string): ReadOutcome {
       heatFlow: timeS.map((t) => (text.startsWith('dull') ? 0 : seed + t)),
       heatFlowUnit: 'W',
       columns: [],
-      dialect: 'test',
+      dialect: melts ? `melts at ${429.7485 + Number(melts[1]) + Number(melts[2]) * rate}` : 'test',
       flags: [],
     },
   };
@@ -69,14 +70,32 @@ function reduce(scan: ReadScan, input: ReduceInput): ReduceOutcome {
   }
   const rateKPerS = scan.temperatureK[1] - scan.temperatureK[0];
   const grid = Float64Array.from(CONVERSION_GRID);
+  const meltsK = Number(/melts at (.*)/.exec(scan.dialect)?.[1] ?? 0);
   const peakK =
-    500 + scan.heatFlow[0] + (input.massKg ?? 0) * 1e6 + input.calibration.offsetK + (input.meltingK ?? 0) / 1000;
+    500 +
+    scan.heatFlow[0] +
+    (input.massKg ?? 0) * 1e6 +
+    input.calibration.offsetK +
+    (input.meltingK ?? 0) / 1000 -
+    (input.reference?.heatFlow[0] ?? 0) / 1000;
   return {
     ok: true,
     reduced: {
       segments: [{ segment: 1, kind: 'heating', from: 0, to: 40, rateKPerS, startK: 300, endK: 340 }],
       segment: input.segment ?? 1,
       massKg: input.massKg,
+      ...(input.role === 'standard' &&
+        meltsK > 0 && {
+          standard: {
+            rateKPerS,
+            onsetK: meltsK,
+            onsetErrorK: 0.01,
+            peakK: meltsK + 1,
+            area: 0.1,
+            areaError: 0.001,
+            resistanceKPerW: 50,
+          },
+        }),
       events: [
         {
           event: 1,
