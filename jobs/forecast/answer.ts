@@ -55,7 +55,7 @@ function answerBy(
     ask.answer(m.draws[Math.floor((d * m.draws.length) / count)], false),
   );
   const value = ask.answer(m.estimate, true);
-  const band = bandOf(value, drawn, source.degreesOfFreedom);
+  const band = bandOf(value, drawn, m.degreesOfFreedom);
   const [lowK, highK] = ask.activeK(m.estimate);
   const frozen = m.pessimistic !== undefined && lowK < m.pessimistic.belowK;
   if (frozen && m.pessimistic) widen(band, ask.answer(m.pessimistic.kinetics, true), question.question);

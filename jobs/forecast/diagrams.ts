@@ -47,7 +47,7 @@ export function drawTransformation(
       const pessimistic = m.pessimistic;
       return drawLine(m.method, conversion, grid, (T) => {
         const drawn = draws.map((k) => k.lnTime(conversion, T));
-        const band = bandOf(m.estimate.lnTime(conversion, T), drawn, source.degreesOfFreedom);
+        const band = bandOf(m.estimate.lnTime(conversion, T), drawn, m.degreesOfFreedom);
         if (pessimistic && T < pessimistic.belowK)
           band.lower = Math.min(band.lower ?? band.value, pessimistic.kinetics.lnTime(conversion, T));
         return [band.value, band.lower ?? band.value, band.upper ?? band.value];

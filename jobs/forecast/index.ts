@@ -5,4 +5,5 @@ export { type DiagramLine, drawHeating, drawTransformation } from './diagrams.ts
 export { forecastTable, standardTemperatures } from './forecast-table.ts';
 export { TEMPERATURE_RANGE } from './kinetics.ts';
 export { drawnParameters, lnTimeGradient, sharedRateCurve } from './rate-curve.ts';
+export { makeForecastSource, type SourceParts } from './source.ts';
 export { timeText } from './wording.ts';

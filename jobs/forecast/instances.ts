@@ -9,6 +9,7 @@ export interface Instances {
   method: 'shared_law' | 'model_free';
   estimate: Kinetics;
   draws: Kinetics[];
+  degreesOfFreedom: number;
   /** The straight law beside a frozen one, and below which temperature it bounds the answer, K */
   pessimistic?: { kinetics: Kinetics; belowK: number };
 }
@@ -25,7 +26,7 @@ export function instancesOf(source: ForecastSource): Instances[] {
   return out;
 }
 
-function sharedInstances({ law, lawDraws, melting }: ForecastSource): Instances | undefined {
+function sharedInstances({ law, lawDraws, melting, degreesOfFreedom }: ForecastSource): Instances | undefined {
   if (!law || !isWhole([law.lnRateAtMiddle, law.energyJPerMol, law.bend, law.avramiExponent])) return undefined;
   // Above melting nothing crystallises; where the driving force is known the rate has its top below that.
   const make = (p: LawParameters, of: typeof sharedRateCurve) => {
@@ -44,11 +45,13 @@ function sharedInstances({ law, lawDraws, melting }: ForecastSource): Instances 
     method: 'shared_law',
     estimate: make(law, sharedRateCurve),
     draws,
+    degreesOfFreedom,
     pessimistic: { kinetics: make(law, straightRateCurve), belowK: law.frozenBelowK },
   };
 }
 
-function modelFreeInstances({ modelFree, modelFreeDraws }: ForecastSource): Instances | undefined {
+function modelFreeInstances(source: ForecastSource): Instances | undefined {
+  const { modelFree, modelFreeDraws } = source;
   if (!modelFree || !isWhole(modelFree.energyJPerMol) || !isWhole(modelFree.lnStep) || !isWhole(modelFree.share))
     return undefined;
   const count = modelFree.conversions.length;
@@ -59,7 +62,12 @@ function modelFreeInstances({ modelFree, modelFreeDraws }: ForecastSource): Inst
     const lnStep = modelFreeDraws!.lnStep.subarray(d * count, (d + 1) * count);
     if (isWhole(energy) && isWhole(lnStep)) draws.push(modelFreeKinetics(modelFree, energy, lnStep));
   }
-  return { method: 'model_free', estimate: modelFreeKinetics(modelFree), draws };
+  return {
+    method: 'model_free',
+    estimate: modelFreeKinetics(modelFree),
+    draws,
+    degreesOfFreedom: source.modelFreeDegreesOfFreedom ?? source.degreesOfFreedom,
+  };
 }
 
 function isWhole(values: ArrayLike<number>): boolean {

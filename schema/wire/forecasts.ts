@@ -72,13 +72,15 @@ export interface MeltingData {
   enthalpyJPerMol?: number;
 }
 
-/** What the fit of a sample leaves for its forecasts, one an event. The draws of both methods are the same draws, in the same order. */
+/** What the fit and the verdict of a sample leave for its forecasts, one an event. */
 export interface ForecastSource {
   sample: string;
   event: number;
   verdict?: 'straight' | 'instrument' | 'material' | 'undecided';
-  /** n − p of the fit: bands are estimate ± t(0.975, n − p) × spread of the draws */
+  /** n − p of the shared law's fit: bands are estimate ± t(0.975, n − p) × spread of the draws */
   degreesOfFreedom: number;
+  /** The same of the model-free fit, where it differs */
+  modelFreeDegreesOfFreedom?: number;
   lowestMeasuredK: number;
   highestMeasuredK: number;
   glassTransitionK?: number;

@@ -1,10 +1,11 @@
 import { describe, expect, test } from 'vitest';
 import { adviseScans, scansToReach, weighScans, widthOf } from '../../jobs/campaign/advice.ts';
 import type { AdviceInput } from '../../jobs/campaign/advice-input.ts';
+import { analyseForAdvice, LawPrecision } from '../../jobs/campaign/advice-law.ts';
+import { invertNormal } from '../../jobs/glass/verdict/law-fit.ts';
 import { studentQuantile } from '../../jobs/numeric/distributions.ts';
 import { createRandom } from '../../jobs/numeric/random.ts';
 import { GAS_CONSTANT as R } from '../../schema/wire/units.ts';
-import { straightLaw } from '../forecast/sources.ts';
 import { exactScan } from '../kinetics/exact-curves.ts';
 
 const [ENERGY, LN_A, N] = [300e3, 50, 3];
@@ -171,16 +172,25 @@ describe('advice for the bend and a forecast', () => {
     ]);
     for (const row of rows) expect(row.interval_expected).toBeLessThan(row.interval_now);
   });
-  test('a forecast below the data by a straight law with calibrated lags is narrowed by the slowest scans', () => {
-    // No lag to find out: what is left is how far the line must be carried.
-    const law = straightLaw(ENERGY, LN_A, N, 640, 810);
-    const straight = adviseScans({
-      ...two(),
-      law,
-      verdict: 'straight',
-      goals: [{ goal: 'forecast', conversion: 0.01, temperatureK: 560 }],
-    });
-    expect(straight[0]).toMatchObject({ instrument: 'furnace', rank: 1 });
-    expect(straight[0].rate_K_per_s).toBeLessThan(0.06);
+  test('one more row by the update is one more row in the normal equations', () => {
+    const campaign = two();
+    const analysis = analyseForAdvice(campaign, 'forecast')!;
+    const precision = new LawPrecision(analysis);
+    const candidate = { instrument: 'furnace', rateKPerS: 0.02 };
+    const goal = { gradient: [1, 0, 0] as const, exponentVariance: 0 };
+    const { jacobian, layout } = analysis.fit;
+    const longer = new Float64Array((layout.rows + 1) * layout.p);
+    longer.set(jacobian);
+    longer.set(precision.row(candidate)!.row, layout.rows * layout.p);
+    const direct = (inverse: Float64Array, n: number) =>
+      2 * studentQuantile(0.975, n - layout.p + 2) * Math.sqrt(inverse[0]);
+    const n = campaign.scans.length;
+    expect(precision.width(goal)).toBeCloseTo(direct(invertNormal(jacobian, layout.rows, layout.p)!, n), 9);
+    expect(precision.width(goal, [candidate])).toBeCloseTo(
+      direct(invertNormal(longer, layout.rows + 1, layout.p)!, n + 1),
+      9,
+    );
+    // An instrument that the fit does not know can say nothing yet.
+    expect(precision.width(goal, [{ instrument: 'other', rateKPerS: 1 }])).toBeUndefined();
   });
 });

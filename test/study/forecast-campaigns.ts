@@ -218,7 +218,7 @@ export function modelFreeOf(c: Pick<ForecastCampaign, 'scans' | 'instruments'>, 
     modelFreeDraws.energyJPerMol.set(drawn.vyazovkin, d * count);
     modelFreeDraws.lnStep.set(averageSegments(ramp, curveWeights, drawn.vyazovkin, x0, work), d * count);
   }
-  return { modelFree, modelFreeDraws };
+  return { modelFree, modelFreeDraws, modelFreeDegreesOfFreedom: data.n - model.trendParameters };
 }
 
 export const trueLnTime = ({ law, exponent }: ForecastCampaign, conversion: number, T: number): number =>
