@@ -2,7 +2,7 @@ import type { ReducedEvent, Segment } from '../../schema/wire/reduced.ts';
 import { interpolate, lowerBound } from '../numeric/local-polynomial.ts';
 import type { Bell } from './excess.ts';
 import { type Excursion, findExcursions } from './find-event.ts';
-import { findGlassTransition, GLASS_BEFORE } from './glass-transition.ts';
+import { findGlassTransition, GLASS_BEFORE, MOST_LEFT } from './glass-transition.ts';
 import { reduceHold } from './hold.ts';
 import type { Room } from './isolate.ts';
 import { findMelting } from './melting.ts';
@@ -15,9 +15,6 @@ const LEAST_PART = 0.06;
 const FOOT = 4;
 const TAIL = 2.8;
 const FLANK_BETWEEN = 0.35;
-
-/** Left half width of an event on a ramp ÷ the right one, at most (JMAK: 1.48). */
-const MOST_LEFT = 1.6;
 
 export interface SegmentFindings {
   events: ReducedEvent[];

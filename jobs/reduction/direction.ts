@@ -4,15 +4,15 @@ import type { ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
 import { interpolate, lowerBound } from '../numeric/local-polynomial.ts';
 import { findExcursions, noiseSigma } from './find-event.ts';
-import { findGlassTransition } from './glass-transition.ts';
+import { findGlassTransition, GLASS_BEFORE, MOST_LEFT } from './glass-transition.ts';
 
 /** +1 when the file's signal is exotherm up, −1 when it is down; `said` is false when it had to be worked out. */
 export type Direction = { ok: true; sign: 1 | -1; flag?: Flag } | { ok: false; reason: string };
 
 /** A second event counts as real, for telling the direction, from this part of the larger one on. */
 const COUNTER_EVENT_PART = 0.1;
-/** The glass transition is looked for up to this many half widths before the earliest event. */
-const GLASS_BEFORE = 2.2;
+/** A glass transition tells the direction when it is this much clearer one way than the other (squared ratios to the error). */
+const CLEARER = 4;
 
 /**
  * Direction of the exotherm: the sheet's word, else the file's own, else inferred where physics allows: a glass transition's step is
@@ -36,15 +36,18 @@ export function findDirection(
     const T = (t: number) => interpolate(timeS, temperatureK, t);
     const where = { file: input.file, sample: input.sample, instrument: input.calibration.instrument };
     const action = 'Write up or down in the exotherm column of scans.csv; the scan is then reduced again.';
-    const earliest = !up ? down : !down ? up : up.peakS < down.peakS ? up : down;
-    const before = lowerBound(timeS, earliest.peakS - GLASS_BEFORE * earliest.leftS);
+    const strongest = up && (!down || up.prominence > down.prominence) ? up : down;
+    const leftS = Math.min(strongest.leftS, MOST_LEFT * strongest.rightS);
+    const before = lowerBound(timeS, strongest.peakS - GLASS_BEFORE * leftS);
     const noise = noiseSigma(heatFlow, s.from, before);
-    const foot = { ...earliest, height: earliest.prominence };
+    const foot = { ...strongest, leftS, height: strongest.prominence };
     const steps = [heatFlow, flipped].map((y) => findGlassTransition(timeS, y, s.from, before, noise, foot));
-    const step = steps[0] ?? steps[1];
-    if (step && !(steps[0] && steps[1])) {
+    // Seen the wrong way round, what lies beside a step can look like a small one.
+    const [weightUp, weightDown] = steps.map((found) => found?.significance ?? 0);
+    const step = weightUp > CLEARER * weightDown ? steps[0] : weightDown > CLEARER * weightUp ? steps[1] : undefined;
+    if (step) {
       const detail = `No exotherm direction was given; the step at ${T(step.midpointS).toFixed(1)} K was taken for a glass transition, which is endothermic.`;
-      return { ok: true, sign: steps[0] ? 1 : -1, flag: flag('sign-inferred', detail, action, where) };
+      return { ok: true, sign: step === steps[0] ? 1 : -1, flag: flag('sign-inferred', detail, action, where) };
     }
     if (
       up &&
@@ -56,11 +59,10 @@ export function findDirection(
       const detail = `No exotherm direction was given; of the two opposite events at ${exo.toFixed(1)} K and ${endo.toFixed(1)} K the first was taken for crystallisation.`;
       return { ok: true, sign, flag: flag('sign-inferred', detail, action, where) };
     }
-    const single = up && (!down || up.prominence > down.prominence) ? up : down;
-    const peakK = T(single.peakS);
+    const peakK = T(strongest.peakS);
     if (input.meltingK !== undefined && peakK < input.meltingK) {
       const detail = `No exotherm direction was given; the single event at ${peakK.toFixed(1)} K lies below the melting temperature ${input.meltingK.toFixed(1)} K and was taken for crystallisation.`;
-      return { ok: true, sign: single === up ? 1 : -1, flag: flag('sign-inferred', detail, action, where) };
+      return { ok: true, sign: strongest === up ? 1 : -1, flag: flag('sign-inferred', detail, action, where) };
     }
     const bound =
       input.meltingK === undefined

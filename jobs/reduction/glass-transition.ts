@@ -14,6 +14,8 @@ export interface GlassTransition {
   toS: number;
   /** signal units, negative (exotherm up) */
   step: number;
+  /** squared ratio of the step to its error */
+  significance: number;
 }
 
 /** Bins of the coarse trace. */
@@ -25,6 +27,8 @@ const LEAST_SIGMAS = 7;
 const LEAST_HEIGHT_PART = 0.01;
 /** The transition is looked for up to this many half widths before the event that follows. */
 export const GLASS_BEFORE = 1.3;
+/** Left half width of an event on a ramp ÷ the right one, at most (JMAK: 1.48): a step before it makes the rough one too large. */
+export const MOST_LEFT = 1.6;
 /** A logistic step is over this many of its widths from its middle; an aged glass overshoots behind it. */
 const BEFORE_WIDTHS = 4;
 const BEHIND_WIDTHS = 6;
@@ -103,6 +107,7 @@ export function findGlassTransition(
     fromS: best.middle - BEFORE_WIDTHS * best.width,
     toS: best.middle + BEHIND_WIDTHS * best.width,
     step: best.height,
+    significance: gain / variance(gain),
   };
 }
 

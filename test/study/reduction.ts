@@ -37,6 +37,8 @@ export interface Difficulty {
   meltingAbove?: number;
   /** S of METHODS 4.8 */
   selfHeating?: number;
+  /** A second event of the same law this many widths above, with this part of the first one's heat */
+  overlap?: { widthsAbove: number; part: number };
 }
 
 const PLAIN = { noise: 0.003, drift: 0.05, points: 100 };
@@ -66,8 +68,14 @@ export const DIFFICULTIES: Difficulty[] = [
   { name: 'crystal step −5 %', crystalStep: -0.05 },
   { name: 'glass transition 3 widths below', glassTransition: { widthsBelow: 3, step: 0.15 } },
   { name: 'glass transition 1.5 widths below', glassTransition: { widthsBelow: 1.5, step: 0.15 } },
+  { name: 'glass transition 1 width below', glassTransition: { widthsBelow: 1, step: 0.15 } },
+  { name: 'glass transition 6 widths below', glassTransition: { widthsBelow: 6, step: 0.15 } },
   { name: 'melting 3 widths above', meltingAbove: 3 },
   { name: 'melting 1.5 widths above', meltingAbove: 1.5 },
+  { name: 'melting 1 width above', meltingAbove: 1 },
+  { name: 'second event 2 widths above', overlap: { widthsAbove: 2, part: 0.7 } },
+  { name: 'second event 1 width above', overlap: { widthsAbove: 1, part: 0.7 } },
+  { name: 'second event 1 width above, noise 1 %', overlap: { widthsAbove: 1, part: 0.7 }, recording: { noise: 0.01 } },
   { name: 'self-heating S = 0.1', selfHeating: 0.1 },
   { name: 'self-heating S = 0.5', selfHeating: 0.5 },
 ];
@@ -79,6 +87,8 @@ export interface ReductionErrors {
   half?: number;
   late?: number;
   enthalpy?: number;
+  /** Midpoint of the glass transition, in units of the event's width */
+  glassTransition?: number;
   /** What stopped it */
   reason?: string;
   /** Codes of the flags raised */
@@ -101,9 +111,20 @@ function drawScan(difficulty: Difficulty, random: Random): Drawn {
   const widthK = (2.446 * R * peakK ** 2) / (exponent * energy);
   const widthS = widthK / rateKPerS;
   const unit = enthalpyJPerKg / widthK;
-  const { glassTransition: glass, meltingAbove } = difficulty;
+  const { glassTransition: glass, meltingAbove, overlap } = difficulty;
   const sample: SampleModel = {
-    events: [{ temperature, rate: jmakLaw(exponent), enthalpyJPerKg }],
+    events: [
+      { temperature, rate: jmakLaw(exponent), enthalpyJPerKg },
+      ...(overlap
+        ? [
+            {
+              temperature: arrheniusLawWithPeak(energy, peakK + overlap.widthsAbove * widthK, rateKPerS),
+              rate: jmakLaw(exponent),
+              enthalpyJPerKg: overlap.part * enthalpyJPerKg,
+            },
+          ]
+        : []),
+    ],
     heatCapacity: { jPerKgK: (difficulty.heatCapacity ?? 0) * unit, slopeJPerKgK2: 0, referenceK: peakK },
     crystalStepJPerKgK: (difficulty.crystalStep ?? 0) * unit,
     glassTransition: glass && {
@@ -127,7 +148,7 @@ function drawScan(difficulty: Difficulty, random: Random): Drawn {
     },
     programme: rampProgramme(
       glass ? Math.min(limits.startK, peakK - (glass.widthsBelow + 3) * widthK) : limits.startK,
-      meltingAbove ? Math.max(limits.endK, peakK + (meltingAbove + 4) * widthK) : limits.endK,
+      Math.max(limits.endK, peakK + ((meltingAbove ?? overlap?.widthsAbove ?? 0) + 4) * widthK),
       rateKPerS,
     ),
     massKg: rateKPerS < 10 ? 8e-6 : 50e-12,
@@ -188,7 +209,8 @@ export function reduceSimulated(difficulty: Difficulty, seed: string, index: num
     calibration,
   });
   if (!outcome.ok) return { reason: outcome.code, flags: [] };
-  const { events } = outcome.reduced;
+  const { events, glassTransitionK } = outcome.reduced;
+  const glass = model.sample.glassTransition;
   const flags = [...new Set(outcome.reduced.flags.map(({ code }) => code))];
   if (events.length === 0) return { reason: 'no event', flags };
   // The event nearest to the truth, should more than one have been found
@@ -202,25 +224,27 @@ export function reduceSimulated(difficulty: Difficulty, seed: string, index: num
     half: at(0.5),
     late: at(0.9),
     enthalpy: event.enthalpyJPerKg && event.enthalpyJPerKg / model.sample.events[0].enthalpyJPerKg - 1,
+    glassTransition:
+      glass && glassTransitionK !== undefined ? (glassTransitionK - glass.temperatureK) / truth.widthK : undefined,
     reason: event.curve ? undefined : 'no curve',
     flags,
   };
 }
 
 export function reductionStudy({ count = 40, seed }: StudyOptions): string {
-  const columns = ['peak', 'early', 'half', 'late', 'enthalpy'] as const;
+  const columns = ['peak', 'early', 'half', 'late', 'enthalpy', 'glassTransition'] as const;
   const rows = DIFFICULTIES.map((difficulty) => {
     const results = Array.from({ length: count }, (_, index) => reduceSimulated(difficulty, seed, index));
     const cells = columns.map((column) => {
       const errors = results.flatMap((result) => (result[column] === undefined ? [] : [Math.abs(result[column])]));
-      return `${percent(quantile(errors, 0.5), 1)} / ${percent(quantile(errors, 0.95), 1)}`;
+      return errors.length === 0 ? '–' : `${percent(quantile(errors, 0.5), 1)} / ${percent(quantile(errors, 0.95), 1)}`;
     });
     const reasons = results.flatMap(({ reason }) => reason ?? []);
     return [difficulty.name, ...cells, tally(reasons), tally(results.flatMap(({ flags }) => flags))];
   });
   return [
     `Median / 95th percentile of |error| over ${count} scans at 0.03 … 40 000 K/s; temperatures in units of the event's full width at half maximum.`,
-    markdownTable(['feature', 'Tp', 'T(0.1)', 'T(0.5)', 'T(0.9)', 'ΔH', 'not reduced', 'flags'], rows),
+    markdownTable(['feature', 'Tp', 'T(0.1)', 'T(0.5)', 'T(0.9)', 'ΔH', 'Tg', 'not reduced', 'flags'], rows),
   ].join('\n\n');
 }
 
