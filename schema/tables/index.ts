@@ -131,6 +131,8 @@ export const scans = sqliteTable(
     reducedKey: text('reduced_key'),
     /** ReducedScan without its curves, for the tables. */
     result: text('result', { mode: 'json' }).$type<ReducedSummary>(),
+    /** Numbers of its events over all scans of the sample, in the order of `result.events`; null until the sample is fitted. */
+    eventNumbers: text('event_numbers', { mode: 'json' }).$type<number[]>(),
     flags: text('flags', { mode: 'json' }).$type<Flag[]>().notNull().default([]),
   },
   (t) => [
@@ -297,14 +299,25 @@ export const flags = sqliteTable(
   (t) => [primaryKey({ columns: [t.campaignId, t.source, t.position] })],
 );
 
-/** Coverage, gap and advice rows of the last plan. */
+/** Scans that would narrow a sample's intervals most. */
+export const advice = sqliteTable(
+  'advice',
+  {
+    campaignId: campaignId(),
+    sample: text('sample').notNull(),
+    position: integer('position').notNull(),
+    body: text('body', { mode: 'json' }).$type<AdviceRow>().notNull(),
+  },
+  (t) => [primaryKey({ columns: [t.campaignId, t.sample, t.position] })],
+);
+
+/** Coverage and gap rows of the last plan. */
 export const plans = sqliteTable('plans', {
   campaignId: text('campaign_id')
     .primaryKey()
     .references(() => campaigns.id, { onDelete: 'cascade' }),
   coverage: text('coverage', { mode: 'json' }).$type<CoverageRow[]>().notNull(),
   gaps: text('gaps', { mode: 'json' }).$type<GapRow[]>().notNull(),
-  advice: text('advice', { mode: 'json' }).$type<AdviceRow[]>().notNull().default([]),
 });
 
 /** The job row is the record; a queue message is a wake-up holding its id. */
@@ -382,8 +395,6 @@ export const replies = sqliteTable(
 );
 
 /** The one row names this database; the blob `marker/<id>` says that a blob store belongs to it. */
-export const identity = sqliteTable(
-  'identity',
-  { one: integer('one').primaryKey(), id: text('id').notNull() },
-  (t) => [check('identity_one', sql`${t.one} = 1`)],
-);
+export const identity = sqliteTable('identity', { one: integer('one').primaryKey(), id: text('id').notNull() }, (t) => [
+  check('identity_one', sql`${t.one} = 1`),
+]);
