@@ -1,6 +1,5 @@
-import { analyseBend } from '../../jobs/glass/verdict/analyse.ts';
-import { collectJudged, lawData } from '../../jobs/glass/verdict/collect.ts';
-import { fitSharedLaw } from '../../jobs/glass/verdict/shared-law.ts';
+import { makeForecastSource } from '../../jobs/forecast/index.ts';
+import { judgeCurvature } from '../../jobs/glass/index.ts';
 import { createEstimator, measuredIntegrals, rampIntegrals } from '../../jobs/kinetics/estimate.ts';
 import { collectEvent, distinctRates } from '../../jobs/kinetics/event-data.ts';
 import { averageSegments, describeModelFree } from '../../jobs/kinetics/model-free.ts';
@@ -145,44 +144,37 @@ function drawLaw(kind: MaterialKind, peakK: number, exponent: number, random: Ra
   return { law, lowK, highK, glassTransitionK: Tg };
 }
 
-/** What the product makes of a campaign: the shared law of the verdict told, and the model-free description, each with its draws. */
+/** Draws of the model-free part: a twentieth of the time goes into the shared law's. */
+const MODEL_FREE_DRAWS = 40;
+
+/** What the product makes of a campaign: the verdict with its shared law, and the model-free description, each with draws. */
 export function sourceOfCampaign(
   c: ForecastCampaign,
   seed: string,
   draws: number,
   withModelFree = true,
-): { source: ForecastSource; verdict: Verdict; bendFound: boolean } | undefined {
-  const judged = collectJudged(1, c.scans, c.instruments);
-  const verdict: Verdict = c.kind === 'straight' ? 'straight' : 'material';
-  const fitAt = (exponent: number, count: number) => {
-    const at = { ...judged, exponent };
-    const { data, own } = lawData(at, 'centroid');
-    const analysis = analyseBend(data, own, undefined, 0);
-    if (!analysis) return undefined;
-    const random = createRandom(`${seed}:law`);
-    const shared = fitSharedLaw('S', at, analysis, verdict, c.glassTransitionK, random, count);
-    return { shared, analysis };
-  };
-  // The condition of the centroid rests on n: again with the n that the curves give under the law.
-  const first = fitAt(judged.exponent, 0);
-  const found = first && fitAt(first.shared.law.avramiExponent, draws);
-  if (!found) return undefined;
-  const { shared, analysis } = found;
-  const bendFound = analysis.lower99 > 0 || analysis.upper99 < 0;
-  const free = withModelFree ? modelFreeOf(c, seed, draws) : {};
-  const source: ForecastSource = {
+): { source: ForecastSource; verdict: Verdict } | undefined {
+  const facts = c.glassTransitionK === undefined ? {} : { glassTransitionK: c.glassTransitionK };
+  const { verdicts, events, sharedLaws } = judgeCurvature({
+    sample: 'S',
+    scans: c.scans,
+    instruments: c.instruments,
+    facts,
+    seed,
+    draws,
+  });
+  if (sharedLaws.length === 0) return undefined;
+  const { verdict } = verdicts[0];
+  const { law, draws: lawDraws } = sharedLaws[0];
+  const { degreesOfFreedom } = events[0];
+  const source = makeForecastSource({
     sample: 'S',
     event: 1,
-    verdict,
-    degreesOfFreedom: shared.degrees,
-    lowestMeasuredK: shared.law.lowestMeasuredK,
-    highestMeasuredK: shared.law.highestMeasuredK,
-    glassTransitionK: c.glassTransitionK,
-    law: shared.law,
-    lawDraws: shared.draws,
-    ...free,
-  };
-  return { source, verdict, bendFound };
+    facts,
+    shared: { law, draws: lawDraws, degreesOfFreedom, verdict },
+    ...(withModelFree && { modelFree: modelFreeOf(c, seed, Math.min(draws, MODEL_FREE_DRAWS)) }),
+  });
+  return source && { source, verdict };
 }
 
 /** The model-free part as the fit of a sample makes it: Vyazovkin's E and the segments' integrals in the estimate and in every draw. */
@@ -218,7 +210,14 @@ export function modelFreeOf(c: Pick<ForecastCampaign, 'scans' | 'instruments'>, 
     modelFreeDraws.energyJPerMol.set(drawn.vyazovkin, d * count);
     modelFreeDraws.lnStep.set(averageSegments(ramp, curveWeights, drawn.vyazovkin, x0, work), d * count);
   }
-  return { modelFree, modelFreeDraws, modelFreeDegreesOfFreedom: data.n - model.trendParameters };
+  const peaks = Array.from(data.peakK);
+  return {
+    curve: modelFree,
+    draws: modelFreeDraws,
+    degreesOfFreedom: data.n - model.trendParameters,
+    lowestK: Math.min(...peaks),
+    highestK: Math.max(...peaks),
+  };
 }
 
 export const trueLnTime = ({ law, exponent }: ForecastCampaign, conversion: number, T: number): number =>

@@ -11,7 +11,8 @@ const KINDS: readonly MaterialKind[] = ['straight', 'bent', 'bent-glass'];
 export interface ForecastTrial {
   kind: MaterialKind;
   side: 'below' | 'above';
-  bendFound: boolean;
+  /** a bend called the material’s where there is one, straight where there is none */
+  verdictRight: boolean;
   sharedHolds: boolean;
   /** shared law's estimate ÷ truth, ln */
   sharedLnError: number;
@@ -28,7 +29,7 @@ export function tryForecast(seed: string, kind: MaterialKind, draws = DRAWS): Fo
   const campaign = drawForecastCampaign(seed, kind);
   const made = sourceOfCampaign(campaign, seed, draws);
   if (!made) return undefined;
-  const side = kind === 'bent-glass' || random.uniform() < 0.5 ? 'below' : 'above';
+  const side = kind === 'bent-glass' || random.fork('side').integer(2) === 0 ? 'below' : 'above';
   const away = random.between(20, 80);
   const temperatureK = side === 'below' ? campaign.lowK - away : campaign.highK + away;
   const conversion = random.pick([0.01, 0.5]);
@@ -39,7 +40,7 @@ export function tryForecast(seed: string, kind: MaterialKind, draws = DRAWS): Fo
   return {
     kind,
     side,
-    bendFound: made.bendFound,
+    verdictRight: made.verdict === (kind === 'straight' ? 'straight' : 'material'),
     sharedHolds: holds(shared),
     sharedLnError: ln(shared.value) - truth,
     sharedLnWidth: ln(shared.upper95) - ln(shared.lower95),
@@ -97,8 +98,7 @@ export function forecastStudy({ count = 200, seed }: StudyOptions): string {
     );
     const sides = kind === 'bent-glass' ? (['below'] as const) : (['below', 'above'] as const);
     return sides.map((side) => {
-      // Where the verdict is right: a bend is found where there is one, and none where there is none.
-      const right = all.filter((t) => t.side === side && t.bendFound === (kind !== 'straight'));
+      const right = all.filter((t) => t.side === side && t.verdictRight);
       const misses = right.filter((t) => !t.freeHolds);
       const flagged = (codes: string[]) => misses.filter((t) => codes.some((c) => t.freeFlags.includes(c))).length;
       return [
