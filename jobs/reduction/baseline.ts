@@ -1,5 +1,5 @@
 import { solveSymmetric } from '../numeric/linear-solve.ts';
-import type { FlankSums } from './flank-sums.ts';
+import { type FlankSums, TERMS } from './flank-sums.ts';
 
 /**
  * The baseline under an event: b = p0 + p1 u + p2 u² + p3 u³ + α (s0 + s1 u), u = (t − peak)/width. s0 is the step between glass or
@@ -28,8 +28,6 @@ export interface LogisticStep {
   middleS: number;
   scaleS: number;
 }
-
-export const TERMS = 6;
 
 /** Index sets of the models, simplest first. */
 const MODELS: readonly (readonly number[])[] = [

@@ -1,7 +1,8 @@
 import { CONVERSION_GRID } from '../../schema/wire/reduced.ts';
 import { fitLocalPolynomial, interpolate, lowerBound } from '../numeric/local-polynomial.ts';
-import { fillTerms, TERMS } from './baseline.ts';
+import { fillTerms } from './baseline.ts';
 import type { Bell, Excess } from './excess.ts';
+import { TERMS } from './flank-sums.ts';
 import { type Smoothed, smoothExcess, valueAt } from './smooth.ts';
 import type { EventWindow } from './window.ts';
 

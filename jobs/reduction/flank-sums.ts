@@ -1,8 +1,9 @@
 import { solveSymmetric } from '../numeric/linear-solve.ts';
-import { TERMS } from './baseline.ts';
 import { type Foot, footAt } from './shape.ts';
 import type { EventWindow } from './window.ts';
 
+/** Terms of the baseline: p0 … p3, s0, s1 (see baseline.ts). */
+export const TERMS = 6;
 /** Highest power of u in a normal matrix of cubics. */
 const POWERS = 7;
 /** Half widths after which 1e-6 of an event's height is left. */
