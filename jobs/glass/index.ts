@@ -56,7 +56,7 @@ export function judgeCurvature(input: JudgeInput): JudgeResult {
     if (shared) {
       const codes = [...new Set(more.map((f) => f.code))];
       parameters.push(...localEnergyRows(base, shared, codes));
-      sharedLaws.push({ law: shared.law, draws: shared.draws });
+      sharedLaws.push({ law: shared.law, draws: shared.draws, degreesOfFreedom: shared.degrees });
       verdict.plots.push(energyPlot(shared, studentQuantile(0.975, shared.degrees)));
       if (glass.viscosity) {
         const { growthRateMPerS, growthTemperatureK } = input.facts;

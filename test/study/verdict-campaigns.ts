@@ -155,42 +155,13 @@ const logSteps = (low: number, high: number, count: number): number[] =>
   Array.from({ length: count }, (_, k) => low * (high / low) ** (k / (count - 1)));
 
 function drawMaterial(kind: VerdictCampaign['kind'], tg: number, random: Random, wish: CampaignWish) {
-  const peakK = tg * random.between(1.04, 1.15);
   if (kind === 'glass') {
-    const former = { glassTransitionK: tg, fragility: wish.fragility ?? random.between(30, 120), log10Infinity: -2.93 };
-    const decoupling = random.between(0.5, 1);
-    const meltingK = tg / random.between(0.55, 0.65);
-    const meltingEntropy = random.between(8, 20);
-    const melting = { temperatureK: meltingK, enthalpyJPerMol: meltingEntropy * meltingK };
-    const shape = decoupledLaw(former, { decoupling, anchorK: peakK, lnKAnchor: 0, melting });
-    const lnKAnchor = Math.log((TEN_K_PER_MIN * shape.localEnergy(peakK)) / (R * peakK ** 2));
-    const molarMassKgPerMol = random.between(0.05, 0.12);
-    // K passes its maximum where the driving force's fall outweighs the mobility's rise.
-    let fastestK = meltingK;
-    while (!(shape.localEnergy(fastestK) > 2e4)) fastestK -= 0.002 * meltingK;
-    return {
-      fastestK,
-      former,
-      decoupling,
-      law: decoupledLaw(former, { decoupling, anchorK: peakK, lnKAnchor, melting }),
-      facts: {
-        meltingK,
-        meltingEnthalpyJPerKg: melting.enthalpyJPerMol / molarMassKgPerMol,
-        molarMassKgPerMol,
-        cooledAtHeatingRate: true,
-        viscosity: [0.95, 1, 1.05, 1.1, 1.2, 1.3, 1.5, 1.8].map((f) => ({
-          temperatureK: f * tg,
-          log10PaS: log10Viscosity(former, f * tg) + 0.05 * random.normal(),
-        })),
-        glassTransitions: [0.05, 0.16, 0.5, 1.6, 5].map((rateKPerS) => ({
-          file: `tg-${rateKPerS}`,
-          instrument: INSTRUMENTS[0],
-          rateKPerS,
-          temperatureK: glassTransitionAtRate(former, rateKPerS) + 0.1 * random.normal(),
-        })),
-      },
-    };
+    for (;;) {
+      const material = drawGlass(tg, random, wish);
+      if (crystallises(material.law, material.fastestK)) return material;
+    }
   }
+  const peakK = tg * random.between(1.04, 1.15);
   const energy = R * peakK * random.between(30, 60);
   if (kind === 'straight')
     return { law: arrheniusLawWithPeak(energy, peakK, TEN_K_PER_MIN), facts: {}, fastestK: 4000 };
@@ -212,4 +183,48 @@ function drawMaterial(kind: VerdictCampaign['kind'], tg: number, random: Random,
     law = place();
   }
   return { law, facts: {}, fastestK: 4000 };
+}
+
+/** The fastest chip scan still crystallises well below the melt, in an event of its usual shape. */
+function crystallises(law: TemperatureLaw, fastestK: number): boolean {
+  const T = roughTemperature(law, 30000, 20, fastestK);
+  return T < 0.98 * fastestK && law.localEnergy(T) > 12 * R * T;
+}
+
+/** A liquid whose crystals grow as its viscosity to the power −ξ with a driving force, and what the sheets say of it. */
+function drawGlass(tg: number, random: Random, wish: CampaignWish) {
+  const peakK = tg * random.between(1.04, 1.15);
+  const former = { glassTransitionK: tg, fragility: wish.fragility ?? random.between(30, 120), log10Infinity: -2.93 };
+  const decoupling = random.between(0.5, 1);
+  const meltingK = tg / random.between(0.55, 0.65);
+  const meltingEntropy = random.between(8, 20);
+  const melting = { temperatureK: meltingK, enthalpyJPerMol: meltingEntropy * meltingK };
+  const shape = decoupledLaw(former, { decoupling, anchorK: peakK, lnKAnchor: 0, melting });
+  const lnKAnchor = Math.log((TEN_K_PER_MIN * shape.localEnergy(peakK)) / (R * peakK ** 2));
+  const molarMassKgPerMol = random.between(0.05, 0.12);
+  // K passes its maximum where the driving force's fall outweighs the mobility's rise.
+  let fastestK = meltingK;
+  while (!(shape.localEnergy(fastestK) > 2e4)) fastestK -= 0.002 * meltingK;
+  return {
+    fastestK,
+    former,
+    decoupling,
+    law: decoupledLaw(former, { decoupling, anchorK: peakK, lnKAnchor, melting }),
+    facts: {
+      meltingK,
+      meltingEnthalpyJPerKg: melting.enthalpyJPerMol / molarMassKgPerMol,
+      molarMassKgPerMol,
+      cooledAtHeatingRate: true,
+      viscosity: [0.95, 1, 1.05, 1.1, 1.2, 1.3, 1.5, 1.8].map((f) => ({
+        temperatureK: f * tg,
+        log10PaS: log10Viscosity(former, f * tg) + 0.05 * random.normal(),
+      })),
+      glassTransitions: [0.05, 0.16, 0.5, 1.6, 5].map((rateKPerS) => ({
+        file: `tg-${rateKPerS}`,
+        instrument: INSTRUMENTS[0],
+        rateKPerS,
+        temperatureK: glassTransitionAtRate(former, rateKPerS) + 0.1 * random.normal(),
+      })),
+    },
+  };
 }

@@ -26,7 +26,7 @@ export function adviseScans(a: BendAnalysis, instruments: string[], ranges: Inst
   const { layout } = full;
   const { p } = layout;
   const C = Float64Array.from(full.inverse ?? new Float64Array(p * p));
-  const inflate = a.halfWidth99 / (studentQuantile(0.995, a.degrees) * a.standardError * span);
+  const inflate = a.inflation;
   const goal99 = Math.abs(a.bend) >= decidingHalfWidth(a.bend) - 1e-12;
   const candidates = candidateRows(a, instruments, ranges);
   const picked: { instrument: string; rateKPerS: number }[] = [];

@@ -23,6 +23,8 @@ export interface BendAnalysis {
   lower95: number;
   upper95: number;
   halfWidth99: number;
+  /** factor ≥ 1 on Student's t for the estimated weights, from the bootstrap */
+  inflation: number;
   /** of q, and degrees of freedom behind it */
   standardError: number;
   degrees: number;
@@ -112,13 +114,13 @@ export function analyseBend(
     if (!full.converged) return undefined;
   }
   const near = [full.lnK0, full.lnEnergy, full.q];
-  const fit = (bend: LawSettings['bend'], lags: LagMode) =>
+  const refit = (bend: LawSettings['bend'], lags: LagMode) =>
     fitLaw(d, { bend, lags: modes(d, lags), state: false }, near);
   const laws = {
     A: bestOf(d, { bend: 0, lags: modes(d, 'calibrated'), state: false }, near, start),
     L: bestOf(d, { bend: 0, lags: modes(d, 'free'), state: false }, near, start),
-    G: fit('free', 'calibrated'),
-    GL: state ? fit('free', 'free') : full,
+    G: refit('free', 'calibrated'),
+    GL: state ? refit('free', 'free') : full,
   };
   const span = spanOf(d, full);
   const se = Math.sqrt(full.inverse?.[2 * full.layout.p + 2] ?? Number.NaN);
@@ -154,6 +156,7 @@ export function analyseBend(
     upper99: Math.max(limits[0] * span, limits[1] * span),
     lower95: (full.q - studentQuantile(0.975, degrees) * inflation * se) * span,
     upper95: (full.q + studentQuantile(0.975, degrees) * inflation * se) * span,
+    inflation,
     standardError: se,
     degrees,
     halfWidth99: (Math.abs(limits[1] - limits[0]) / 2) * span,

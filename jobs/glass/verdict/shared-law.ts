@@ -1,12 +1,14 @@
 import type { SharedLaw, SharedLawDraws } from '../../../schema/wire/shared-law.ts';
 import type { Verdict } from '../../../schema/wire/verdicts.ts';
 import { localEnergy } from '../../laws/bend.ts';
+import { studentQuantile } from '../../numeric/distributions.ts';
 import type { Random } from '../../numeric/random.ts';
 import { mean, median } from '../../numeric/statistics.ts';
 import { type BendAnalysis, trueLimits } from './analyse.ts';
 import { exponentOfCurve, exponentOfWidth, type JudgedEvent } from './collect.ts';
 import { Condition, type ConditionValue } from './condition.ts';
-import { fitLaw, type LagMode, type LawFit, type LawSettings } from './law-fit.ts';
+import { fitLaw, type LawData, type LawFit, type LawSettings } from './law-fit.ts';
+import { effectiveDegrees } from './scatter.ts';
 
 export interface SharedFit {
   law: SharedLaw;
@@ -22,9 +24,9 @@ export interface SharedFit {
 
 /**
  * The law that goes into forecasts: JMAK with the verdict's K(T) over all scans of the event. ln K0, E0 and q come from the characteristic
- * temperatures, each instrument's offset and lag within what calibration allows, lags free where calibration is contradicted or knows
- * nothing; n from the shape of every curve under that law, so that a lag, which moves a curve as a whole, cannot reach it.
- * `straight` and `instrument` hold q at 0, `material` leaves it free; `undecided` takes the law that AICc favours.
+ * temperatures with each instrument's offset within what calibration allows and every lag free; n from the shape of every curve under that
+ * law, so that a lag, which moves a curve as a whole, cannot reach it. `straight` and `instrument` hold q at 0, `material` leaves it free;
+ * `undecided` takes the law that AICc favours, with the lags as that law has them.
  */
 export function fitSharedLaw(
   sample: string,
@@ -35,8 +37,8 @@ export function fitSharedLaw(
   random: Random,
   draws: number,
 ): SharedFit {
-  const { data: d } = a;
-  const settings = settingsOf(a, judged, verdict);
+  const settings = settingsOf(a, verdict);
+  const d = widenLags(a, settings);
   const fit = fitLaw(d, settings, [a.full.lnK0, a.full.lnEnergy, a.full.q]);
   const trueK = Float64Array.from({ length: d.n }, (_, i) =>
     materialK(d.temperatureK[i] - fit.residualK[i], fit, d, i),
@@ -50,6 +52,10 @@ export function fitSharedLaw(
     bend: new Float64Array(draws),
     avramiExponent: new Float64Array(draws),
   };
+  // Student's t is taken with n − p by whoever reads the draws; the weights are estimates, and an instrument with few scans has fewer.
+  const degrees = Math.max(1, d.n - fit.layout.p + d.instruments);
+  const real = studentQuantile(0.975, effectiveDegrees(d, fit, 1, a.scatter.degrees)) * a.inflation;
+  const stretch = Math.max(1, real / studentQuantile(0.975, degrees));
   const T = new Float64Array(d.n);
   const priors = new Float64Array(fit.layout.rows - d.n);
   const pick = new Float64Array(d.n);
@@ -59,9 +65,10 @@ export function fitSharedLaw(
     for (let i = 0; i < d.n; i++) pick[i] = exponents[random.integer(d.n)];
     const f = fitLaw(d, settings, fit.parameters, T, priors);
     const ok = f.converged;
-    drawn.lnRateAtMiddle[k] = ok ? f.lnK0 : fit.lnK0;
-    drawn.energyJPerMol[k] = Math.exp(ok ? f.lnEnergy : fit.lnEnergy);
-    drawn.bend[k] = ok ? f.q : fit.q;
+    const wide = (drawnValue: number, value: number) => value + (ok ? stretch * (drawnValue - value) : 0);
+    drawn.lnRateAtMiddle[k] = wide(f.lnK0, fit.lnK0);
+    drawn.energyJPerMol[k] = Math.exp(wide(f.lnEnergy, fit.lnEnergy));
+    drawn.bend[k] = wide(f.q, fit.q);
     drawn.avramiExponent[k] = mean(pick);
   }
   return {
@@ -83,19 +90,29 @@ export function fitSharedLaw(
     fit,
     trueK,
     exponents,
-    degrees: Math.max(1, d.n - fit.layout.p + d.instruments),
+    degrees,
   };
 }
 
-function settingsOf(a: BendAnalysis, judged: JudgedEvent, verdict: Verdict): LawSettings {
+/** Lags free, as in the verdict itself: measured over campaigns with wrong calibrations, their error then hardly reaches the intervals of E. */
+function settingsOf(a: BendAnalysis, verdict: Verdict): LawSettings {
+  const free = a.full.settings;
   if (verdict === 'undecided') return { ...favoured(a).settings, state: a.stateDiffers };
-  const bent = verdict === 'material';
-  const beyond = bent ? a.lagBeyond.bent : a.lagBeyond.straight;
-  const lags = judged.instruments.map((c, j): LagMode => {
-    if (beyond[j]) return 'free';
-    return c.source === 'prior' && bent ? 'free' : 'calibrated';
+  return { ...free, bend: verdict === 'material' ? 'free' : 0 };
+}
+
+/**
+ * Calibration's error of each lag, widened by as many times as the lag that the data ask for lies from it in joint standard errors, where that
+ * is more than one (Birge 1932, Phys. Rev. 40:207): a contradiction too small to be called still belongs in the interval of E.
+ */
+function widenLags({ data: d, full, laws }: BendAnalysis, settings: LawSettings): LawData {
+  const free = settings.bend === 'free' ? full : laws.L;
+  const { layout, inverse } = free;
+  const lagSeS = d.lagSeS.map((se, j) => {
+    const own = inverse ? Math.sqrt(inverse[layout.lag[j] * (layout.p + 1)]) / d.topRate[j] : 0;
+    return se * Math.max(1, Math.abs(free.lagS[j]) / Math.hypot(se, own));
   });
-  return { bend: bent ? 'free' : 0, lags, state: a.stateDiffers };
+  return { ...d, lagSeS };
 }
 
 /** Of the four laws the one with the lowest AICc; the plainest where the scans are too few for the others. */
@@ -118,7 +135,7 @@ function favoured({ data: d, laws }: BendAnalysis): LawFit {
   return best;
 }
 
-const materialK = (T: number, fit: LawFit, d: BendAnalysis['data'], i: number): number =>
+const materialK = (T: number, fit: LawFit, d: LawData, i: number): number =>
   T - fit.offsetK[d.instrument[i]] - fit.lagS[d.instrument[i]] * d.rate[i];
 
 /** n a scan under a fitted law: from its curve, or from its width where it has no curve. */
