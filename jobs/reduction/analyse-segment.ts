@@ -1,10 +1,10 @@
 import type { ReducedEvent, Segment } from '../../schema/wire/reduced.ts';
 import { interpolate, lowerBound } from '../numeric/local-polynomial.ts';
+import type { Room } from './event-limits.ts';
 import type { Bell } from './excess.ts';
 import { type Excursion, findExcursions } from './find-event.ts';
 import { findGlassTransition, GLASS_BEFORE, MOST_LEFT } from './glass-transition.ts';
 import { reduceHold } from './hold.ts';
-import type { Room } from './isolate.ts';
 import { findMelting } from './melting.ts';
 import { reduceEvents, type Shown } from './reduce-event.ts';
 import { offsetAt, type ScanContext } from './scan-context.ts';

@@ -1,26 +1,11 @@
-import { lowerBound } from '../numeric/local-polynomial.ts';
-import { type Baseline, BLOCK_HEIGHT_PART, BLOCK_WIDTHS, baselineAt, type Flanks, fitBaseline } from './baseline.ts';
+import { type Baseline, BLOCK_HEIGHT_PART, BLOCK_WIDTHS, baselineAt, fitBaseline } from './baseline.ts';
+import { binsBetween, chooseFlanks } from './choose-flanks.ts';
+import { FLANK, type Limits, placeLimits, RAMP_REACH, type Room, widthOf } from './event-limits.ts';
 import { type Bell, type Excess, halfWidths, subtractBaseline } from './excess.ts';
 import { FlankSums } from './flank-sums.ts';
-import { findGlassTransition, GLASS_BEFORE, type GlassTransition } from './glass-transition.ts';
-import type { Melting } from './melting.ts';
+import { findGlassTransition, GLASS_BEFORE } from './glass-transition.ts';
 import { CONVERSION_AT_PEAK, CONVERSION_AT_RIGHT_HALF, footArea, footAt } from './shape.ts';
 import type { EventWindow } from './window.ts';
-
-/** What bounds the flanks of an event, s. */
-export interface Room {
-  /** End of whatever comes before (an event), start of whatever follows; the window's ends where nothing does */
-  fromS: number;
-  toS: number;
-  glass?: GlassTransition;
-  melting?: Melting;
-  /** First-order response of the signal, s: an exponential tail */
-  responseS: number;
-  /** An isothermal event or a metal's melting: no exponential foot, a longer tail, no step of the heat capacity, no need of a flank before it */
-  footless?: boolean;
-  /** Area of the whole event where mass and enthalpy are known, signal units × s; used where its end is hidden */
-  knownArea?: number;
-}
 
 export interface Isolated {
   excess: Excess;
@@ -34,24 +19,6 @@ export interface Isolated {
 
 export type Isolation = Isolated | { cut: 'before' | 'behind' };
 
-/** Limits in half widths from the peak, where there is room and where there is not: 0.2 % and 3 % of the height, 0.1 % and 1 % are left. */
-const RAMP_REACH = { left: { far: 5, near: 3.3 }, right: { far: 3.2, near: 2.4 } };
-/** On a hold a JMAK event of n ≤ 4 begins at most 2.4 left half widths before its peak; 0.1 % are left 2.4 (n = 3) to 3.6 (n = 1.5) right ones behind it. */
-const HOLD_REACH = { left: { far: 3.5, near: 2.5 }, right: { far: 4.2, near: 2.7 } };
-/** The tail of a response: 0.25 % are left after six time constants. */
-const RESPONSE_TAILS = 6;
-const LEAST_RESPONSE_TAILS = 3.5;
-/**
- * A JMAK event with n ≥ 2 begins at rate 0 and rises at most linearly: the first piece of a hold is baseline to this part of the height,
- * unless it stands out of the baseline behind the event (n = 1.5: by a third of the height).
- */
-const HOLD_START = { widths: 0.05, heightPart: 0.03, mostPart: 0.2 };
-/** Flank wished for, shortest one that counts, and the longest looked at, widths. */
-const FLANK = { wished: 0.8, least: 0.35, longest: 4.5 };
-/** Lengths tried when the longest flank is no smooth baseline. */
-const SHORTER = [1, 0.7, 0.5, 0.35, 0.25];
-/** A flank is smooth while a cubic leaves no more than this much of what a short piece leaves. */
-const SMOOTH_RATIO = 1.8;
 /** A tail that still stands this much above the baseline (part of the height, and in errors) moves its limit out by one half width. */
 const TAIL_HEIGHT_PART = 0.003;
 const TAIL_SIGMAS = 4;
@@ -127,80 +94,8 @@ const oneBell = (w: EventWindow, x: Excess, [before]: Bell[]): Bell[] | undefine
   return bell && [bell];
 };
 
-/** Full width of the highest event, s. */
-export const widthOf = (bells: Bell[]): number => {
-  const b = bells.reduce((a, c) => (c.height > a.height ? c : a));
-  return b.leftS + b.rightS;
-};
-
 const nearerEnd = (w: EventWindow, t: number): 'before' | 'behind' =>
   t - w.t[0] < w.t[w.t.length - 1] - t ? 'before' : 'behind';
-
-interface Limits {
-  leftS: number;
-  rightS: number;
-  /** outer ends of the flanks, s */
-  fromS: number;
-  toS: number;
-  freeLeft: boolean;
-  freeRight: boolean;
-  glassOverlap: boolean;
-  meltingOverlap: boolean;
-}
-
-function placeLimits(
-  w: EventWindow,
-  bells: Bell[],
-  room: Room,
-  extra: { left: number; right: number },
-): Limits | { cut: 'before' | 'behind' } {
-  const n = w.t.length;
-  const [first, last] = [bells[0], bells[bells.length - 1]];
-  const width = widthOf(bells);
-  const bin = (w.t[n - 1] - w.t[0]) / (n - 1);
-  const least = Math.max(FLANK.least * width, 3 * bin);
-
-  const reach = room.footless ? HOLD_REACH : RAMP_REACH;
-  const edgeLeft = Math.max(room.fromS, w.t[0]);
-  const glassEnd = room.glass && room.glass.toS > edgeLeft ? room.glass.toS : edgeLeft;
-  const nearLeft = first.peakS - reach.left.near * first.leftS;
-  const farLeft = first.peakS - (reach.left.far + extra.left) * first.leftS;
-  let fromS = glassEnd;
-  let leftS = Math.min(nearLeft, Math.max(farLeft, fromS + FLANK.wished * width));
-  let glassOverlap = false;
-  if (leftS - fromS < least) {
-    if (fromS === edgeLeft && !room.footless) return { cut: 'before' };
-    // On a hold the event may begin at once. On a ramp the glass transition reaches into the event: its own glass side gives slope and curvature, the level comes from the right.
-    glassOverlap = !room.footless;
-    fromS = edgeLeft;
-    leftS = room.glass?.fromS ?? edgeLeft;
-  }
-
-  const edgeRight = Math.min(room.toS, w.t[n - 1]);
-  const meltingStart = room.melting && room.melting.fromS < edgeRight ? room.melting.fromS : edgeRight;
-  const nearRight = last.peakS + Math.max(reach.right.near * last.rightS, LEAST_RESPONSE_TAILS * room.responseS);
-  const farRight =
-    last.peakS + Math.max((reach.right.far + extra.right) * last.rightS, RESPONSE_TAILS * room.responseS);
-  let toS = meltingStart;
-  let rightS = Math.max(nearRight, Math.min(farRight, toS - FLANK.wished * width));
-  let meltingOverlap = false;
-  if (toS - rightS < least) {
-    if (toS === edgeRight) return { cut: 'behind' };
-    meltingOverlap = true;
-    toS = edgeRight;
-    rightS = Math.max(room.melting!.toS, nearRight);
-  }
-  return {
-    leftS,
-    rightS,
-    fromS,
-    toS,
-    freeLeft: leftS <= farLeft && !glassOverlap,
-    freeRight: rightS >= farRight && !meltingOverlap,
-    glassOverlap,
-    meltingOverlap,
-  };
-}
 
 function fitOnce(w: EventWindow, bells: Bell[], room: Room, limits: Limits): Omit<Isolated, 'bells'> | undefined {
   const first = bells[0];
@@ -211,24 +106,8 @@ function fitOnce(w: EventWindow, bells: Bell[], room: Room, limits: Limits): Omi
   const bin = (w.t[w.t.length - 1] - w.t[0]) / (w.t.length - 1);
   const variance = w.noise ** 2 + Math.max(1, (BLOCK_WIDTHS * width) / bin) * (BLOCK_HEIGHT_PART * top.height) ** 2;
   const least = Math.max(FLANK.least * width, 3 * bin);
-  const flanksAt = (leftS: number, rightS: number): Flanks => {
-    const right = binsBetween(w, rightS, Math.min(limits.toS, rightS + FLANK.longest * width));
-    const fromS = Math.max(limits.fromS, leftS - FLANK.longest * width);
-    const start = { left: binsBetween(w, fromS, fromS + HOLD_START.widths * width + 3 * bin) };
-    if (room.footless && leftS - fromS < least) {
-      const count = start.left[1] - start.left[0];
-      const alone: Flanks = { left: [0, 0], right: smoothFlank(sums, right, 'right', variance) };
-      const first = fitBaseline(sums, alone, { leftS, rightS }, variance, 'none');
-      const above = first ? meanAbove(w, first, start.left) : 0;
-      if (above > HOLD_START.mostPart * top.height) return alone;
-      const leftWeight = Math.min(1, variance / (count * (HOLD_START.heightPart * top.height) ** 2));
-      return { ...alone, ...start, leftWeight };
-    }
-    return {
-      left: smoothFlank(sums, binsBetween(w, fromS, leftS), 'left', variance),
-      right: smoothFlank(sums, right, 'right', variance),
-    };
-  };
+  const flanksAt = (leftS: number, rightS: number) =>
+    chooseFlanks(w, sums, room, limits, { leftS, rightS }, { width, height: top.height, variance, least });
   const { glass } = room;
   const steps =
     glassOverlap && glass
@@ -275,40 +154,6 @@ function cutAtMelting(w: EventWindow, baseline: Baseline, top: Bell, room: Room)
   let i = open.from;
   while (i < open.to - 1 && w.t[i] < at) i++;
   return subtractBaseline(w, limited, foot, open.cumulative[i] / share);
-}
-
-const binsBetween = (w: EventWindow, fromS: number, toS: number): [number, number] => {
-  const a = lowerBound(w.t, fromS);
-  return [a, Math.max(a, lowerBound(w.t, toS))];
-};
-
-function meanAbove(w: EventWindow, b: Baseline, [from, to]: readonly [number, number]): number {
-  let sum = 0;
-  for (let i = from; i < to; i++) sum += w.y[i] - baselineAt(b, w.t[i], 0);
-  return to > from ? sum / (to - from) : 0;
-}
-
-/** The longest part next to the event that a cubic describes as well as it does a short part: steps and peaks further out stay out. */
-function smoothFlank(
-  sums: FlankSums,
-  bins: [number, number],
-  side: 'left' | 'right',
-  variance: number,
-): [number, number] {
-  const piece = (part: number): [number, number] => {
-    const length = Math.max(4, Math.round(part * (bins[1] - bins[0])));
-    return side === 'left'
-      ? [Math.max(bins[0], bins[1] - length), bins[1]]
-      : [bins[0], Math.min(bins[1], bins[0] + length)];
-  };
-  const degree = (b: [number, number]) => (sums.lengthOf(b) > 2 ? 3 : 2);
-  const short = piece(SHORTER[SHORTER.length - 1]);
-  const allowed = SMOOTH_RATIO * Math.max(variance, sums.scatter(short, degree(short)));
-  for (const part of SHORTER) {
-    const tried = piece(part);
-    if (sums.scatter(tried, degree(tried)) <= allowed) return tried;
-  }
-  return short;
 }
 
 function tailStands(w: EventWindow, { excess: x, bells }: Isolated, side: 'left' | 'right'): boolean {

@@ -1,5 +1,6 @@
+import { type Room, widthOf } from './event-limits.ts';
 import type { Bell, Excess } from './excess.ts';
-import { type Isolated, isolateEvents, type Room, widthOf } from './isolate.ts';
+import { type Isolated, isolateEvents } from './isolate.ts';
 import { bellOf, partExcess, type Separation, separatePeaks } from './separate-peaks.ts';
 import type { EventWindow } from './window.ts';
 
