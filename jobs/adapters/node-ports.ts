@@ -2,9 +2,9 @@ import { mkdir } from 'node:fs/promises';
 import { availableParallelism } from 'node:os';
 import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
-import type { Ports } from '../ports/index.ts';
+import type { Compute, Ports } from '../ports/index.ts';
 import { computeInline } from './compute-inline.ts';
-import { createComputeThreads } from './compute-threads.ts';
+import { openComputeThreads } from './compute-threads.ts';
 import { createFileBlobs } from './file-blobs.ts';
 import { openFileDatabase } from './libsql-node.ts';
 import { openRemoteDatabase } from './libsql-web.ts';
@@ -34,13 +34,20 @@ export async function openNodePorts(options: NodePortsOptions): Promise<Ports> {
     databaseUrl !== undefined && isRemote(databaseUrl)
       ? openRemoteDatabase(databaseUrl, options.databaseToken)
       : await openFileDatabase(localPath(databaseUrl) ?? join(dataDir, 'ratespan.db'));
-  await migrateDatabase(database);
+  let compute: Compute;
+  try {
+    await migrateDatabase(database);
+    compute = workers > 0 ? await openComputeThreads(workers) : computeInline;
+  } catch (error) {
+    database.close();
+    throw error;
+  }
   return {
     database,
     blobs: createFileBlobs(blobsDir),
     queue: createTableQueue(),
     clock: systemClock,
-    compute: workers > 0 ? createComputeThreads(workers) : computeInline,
+    compute,
     paths: pathRules,
   };
 }

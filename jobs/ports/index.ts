@@ -1,8 +1,10 @@
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
 import type { FitInput, FitResult } from '../../schema/wire/parameters.ts';
 import type { ReduceOutcome } from '../../schema/wire/reduced.ts';
+import type { SampleForecastInput, SampleForecastResult } from '../../schema/wire/sample-forecast.ts';
 import type { ReadOutcome, ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
+import type { JudgeInput, JudgeResult } from '../../schema/wire/verdicts.ts';
 
 /**
  * The database. `read` never writes (a structure test holds that); every write goes through the one guarded door `write`,
@@ -65,7 +67,41 @@ export interface Compute {
   readScan(bytes: Uint8Array, file: string): Promise<ReadOutcome>;
   reduceScan(scan: ReadScan, input: ReduceInput): Promise<ReduceOutcome>;
   fitSample(input: FitInput): Promise<FitResult>;
+  judgeCurvature(input: JudgeInput): Promise<JudgeResult>;
+  forecastSample(input: SampleForecastInput): Promise<SampleForecastResult>;
   close(): Promise<void>;
+}
+
+/** One answered request. `route` is the pattern, never what stood in its place; nothing here is secret. */
+export interface RequestEvent {
+  requestId: string;
+  method: string;
+  route: string;
+  status: number;
+  durationMs: number;
+  /** The token that asked, by its id. */
+  tokenId?: string;
+}
+
+/** One attempt at a job. */
+export interface JobEvent {
+  jobId: string;
+  campaignId: string;
+  step: string;
+  attempt: number;
+  end: 'done' | 'failed' | 'postponed' | 'late';
+  durationMs: number;
+  error?: string;
+}
+
+/** Told what happens, for logs and figures. */
+export interface Observer {
+  request(event: RequestEvent): void;
+  job(event: JobEvent): void;
+  /** Something that nobody asked for: told to the operator. */
+  trouble(what: string, error: unknown, ids?: Record<string, string>): void;
+  /** The figures so far, as OpenMetrics families without the end mark. */
+  figures(): string;
 }
 
 export interface Ports {

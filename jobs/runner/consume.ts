@@ -1,4 +1,4 @@
-import type { Ports } from '../ports/index.ts';
+import type { Observer, Ports } from '../ports/index.ts';
 import { ColumnsCache, failStep } from '../steps/index.ts';
 import { claimJobs, findLostJobs, listDueJobIds } from '../store/leases.ts';
 import { runJob } from './run-job.ts';
@@ -7,9 +7,9 @@ import { runJob } from './run-job.ts';
 const SWEEP_LIMIT = 100;
 
 /** Runs the job that a wake-up names, if it is due and nobody holds it: a doubled or late message does nothing. */
-export async function consumeWake(ports: Ports, jobId: string, owner: string): Promise<void> {
+export async function consumeWake(ports: Ports, jobId: string, owner: string, observer?: Observer): Promise<void> {
   const [job] = await claimJobs(ports, { owner, limit: 1, jobId });
-  if (job) await runJob(ports, job, new ColumnsCache());
+  if (job) await runJob(ports, job, new ColumnsCache(), observer);
 }
 
 /** Ends jobs whose worker vanished on the last attempt. */

@@ -1,6 +1,6 @@
-import type { Ports } from '../ports/index.ts';
+import type { Observer, Ports } from '../ports/index.ts';
 import { ColumnsCache } from '../steps/index.ts';
-import { type ClaimedJob, claimJobs, extendLeases, LEASE_MS, openJobs } from '../store/leases.ts';
+import { type ClaimedJob, claimJobs, extendLeases, handBack, LEASE_MS, openJobs } from '../store/leases.ts';
 import { sweepLostJobs } from './consume.ts';
 import { runJob } from './run-job.ts';
 
@@ -10,12 +10,15 @@ export { consumeWake, sweepWakes } from './consume.ts';
 const POLL_MS = 500;
 const SWEEP_EVERY_MS = LEASE_MS / 2;
 const HEARTBEAT_MS = LEASE_MS / 3;
+/** How long a stop waits for jobs in flight before they are handed back. */
+const GRACE_MS = 10_000;
 
 export interface RunnerOptions {
   /** Jobs in flight at once; workers + 1 keeps worker threads busy. */
   concurrency: number;
   /** Names this process in leases. */
   owner: string;
+  observer?: Observer;
 }
 
 export interface Runner {
@@ -23,16 +26,24 @@ export interface Runner {
   drain(campaignId?: string): Promise<void>;
   /** Takes jobs until stopped. */
   start(): void;
-  /** Takes no more jobs, waits for those in flight. */
-  stop(): Promise<void>;
+  /** Takes no more jobs, waits for those in flight, and hands back what is not finished in time. Ends a drain too. */
+  stop(graceMs?: number): Promise<void>;
 }
 
 /** Takes due jobs and keeps up to `concurrency` of them in flight, with their leases extended while they run. */
-export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions): Runner {
+export function createRunner(ports: Ports, { concurrency, owner, observer }: RunnerOptions): Runner {
   const cache = new ColumnsCache();
   const inFlight = new Map<string, { job: ClaimedJob; end: Promise<void> }>();
   const stopping = new AbortController();
-  const stopped = new Promise<void>((resolve) => stopping.signal.addEventListener('abort', () => resolve()));
+  /** Rests that a job's end, or the end of the runner, cuts short. Raced promises would keep every rest in memory. */
+  const rests = new Set<AbortController>();
+  /** A job ended since the free places were counted. */
+  let stirred = false;
+  const stir = () => {
+    stirred = true;
+    for (const over of rests) over.abort();
+  };
+  stopping.signal.addEventListener('abort', stir);
   let emptied = new AbortController();
   let sweptAt = Number.NEGATIVE_INFINITY;
   let background: Promise<void> | undefined;
@@ -48,12 +59,13 @@ export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions
   }
 
   function launch(job: ClaimedJob): void {
-    const end = runJob(ports, job, cache)
+    const end = runJob(ports, job, cache, observer)
       // Not even the failure could be noted: the lease lapses and the job is taken again.
       .catch(() => undefined)
       .then(() => {
         inFlight.delete(job.id);
         if (inFlight.size === 0) emptied.abort();
+        stir();
       });
     if (inFlight.size === 0) {
       emptied = new AbortController();
@@ -64,6 +76,7 @@ export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions
 
   /** Fills the free places. Returns whether anything was taken. */
   async function fill(campaignId?: string): Promise<boolean> {
+    stirred = false;
     const now = ports.clock.now();
     if (now - sweptAt >= SWEEP_EVERY_MS) {
       sweptAt = now;
@@ -78,19 +91,39 @@ export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions
 
   /** Until a job ends, a wake-up is heard, the runner is stopped, or the time is over. */
   async function rest(ms: number): Promise<void> {
+    if (stopping.signal.aborted || stirred) return;
     const over = new AbortController();
-    const heard = ports.queue.heard?.(ms, over.signal) ?? ports.clock.sleep(ms, over.signal);
-    await Promise.race([heard, stopped, ...[...inFlight.values()].map(({ end }) => end)]);
-    over.abort();
+    rests.add(over);
+    await (ports.queue.heard?.(ms, over.signal) ?? ports.clock.sleep(ms, over.signal));
+    rests.delete(over);
   }
 
   async function loop(): Promise<void> {
     while (!stopping.signal.aborted) {
-      const took = await fill().catch(() => false);
+      const took = await fill().catch((error) => {
+        observer?.trouble('no job could be claimed', error);
+        return false;
+      });
       if (took && inFlight.size < concurrency) continue;
       await rest(POLL_MS);
     }
-    await Promise.all([...inFlight.values()].map(({ end }) => end));
+  }
+
+  const finished = () => Promise.all([...inFlight.values()].map(({ end }) => end));
+
+  /** Waits for what is in flight, at most `graceMs`; gives the rest to others. */
+  async function finishOrHandBack(graceMs: number): Promise<void> {
+    const over = new AbortController();
+    const late = await Promise.race([
+      finished().then(() => false),
+      ports.clock.sleep(graceMs, over.signal).then(() => true),
+    ]);
+    over.abort();
+    if (late)
+      await handBack(
+        ports,
+        [...inFlight.values()].map(({ job }) => job),
+      );
   }
 
   return {
@@ -106,14 +139,15 @@ export function createRunner(ports: Ports, { concurrency, owner }: RunnerOptions
         // Held by another process, or waiting for its next attempt.
         await ports.clock.sleep(Math.min(POLL_MS, Math.max(1, (nextTryAt ?? 0) - ports.clock.now())));
       }
-      await Promise.all([...inFlight.values()].map(({ end }) => end));
+      if (!stopping.signal.aborted) await finished();
     },
     start() {
       background ??= loop();
     },
-    async stop() {
+    async stop(graceMs = GRACE_MS) {
       stopping.abort();
       await background;
+      await finishOrHandBack(graceMs);
     },
   };
 }

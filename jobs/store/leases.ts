@@ -166,6 +166,39 @@ export async function failAttempt(
   );
 }
 
+/** Wait of a job whose stores were in trouble, ms, spread by its id. */
+const STORE_TROUBLE_MS = 10_000;
+
+/** Puts a job back whose stores were full, locked or out of reach: it waits, says why, and no attempt counts. Throws LateWorker when the lease is gone. */
+export async function postponeJob(ports: Ports, job: ClaimedJob, error: string): Promise<void> {
+  const delayMs = backOffMs(job.id, 1) + STORE_TROUBLE_MS;
+  await writeBack(ports, job, (db) =>
+    guarded(putBack(job, ports.clock.now() + delayMs, `waits for the stores: ${error}`), [
+      touchCampaign(db, job.campaignId, false),
+    ]),
+  );
+}
+
+/** Puts back what this process cannot finish, for others to take at once; a late write-back of its own is refused by the generation. */
+export async function handBack(ports: Ports, held: readonly ClaimedJob[]): Promise<void> {
+  for (const job of held) {
+    const back = guarded(putBack(job, ports.clock.now(), 'its worker was stopped'), []);
+    await ports.database
+      .write((db) => runBatch(db, back))
+      .catch((error) => {
+        if (!isFenceBreak(error)) throw error;
+      });
+    await ports.queue.wake(job.id, 0);
+  }
+}
+
+const putBack = (job: ClaimedJob, nextTryAt: number, said: string): Statement => text`
+  update jobs set leased_by = null, leased_until = null, last_error = ${said}, next_try_at = ${nextTryAt}, woken = 0,
+    attempts = attempts - 1, generation = generation + 1,
+    state = case when exists (select 1 from jobs twin where twin.step = jobs.step and twin.subject = jobs.subject and twin.state = 'queued')
+      then 'done' else 'queued' end
+  where id = ${job.id} and generation = ${job.generation} and state = 'running'`;
+
 /** Jobs whose worker vanished on their last attempt: nobody may claim them, so the sweep fails them. */
 export function findLostJobs(ports: Ports): Promise<ClaimedJob[]> {
   return allRows<ClaimedJob>(

@@ -1,11 +1,11 @@
 import { afterAll, describe, expect, it } from 'vitest';
 import { computeInline } from '../../jobs/adapters/compute-inline.ts';
-import { createComputeThreads } from '../../jobs/adapters/compute-threads.ts';
+import { openComputeThreads } from '../../jobs/adapters/compute-threads.ts';
 import { transferableBuffers } from '../../jobs/adapters/transfer.ts';
 import type { Compute } from '../../jobs/ports/index.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
 
-const threads = createComputeThreads(1);
+const threads = await openComputeThreads(1);
 afterAll(() => threads.close());
 const adapters: Record<string, Compute> = { 'compute-inline': computeInline, 'compute-threads': threads };
 
