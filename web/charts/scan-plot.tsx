@@ -12,7 +12,10 @@ export interface ScanPlotLayout {
   exponent: number;
 }
 
-const HEIGHT = 300;
+const HEIGHT = 320;
+/** Labels of neighbouring temperatures stand in rows above the curve. */
+const LABEL_ROWS = 3;
+const LABEL_STEP = 14;
 
 /** Limits of the analysed event(s), K: where the baseline begins and ends. */
 export function eventLimits(lane: ScanLane): [number, number] | undefined {
@@ -34,7 +37,7 @@ export function layoutScanPlot(lane: ScanLane, width: number, units: Units, isZo
   const factor = 10 ** -exponent;
   const options = { count: 5, shown: (value: number) => value * factor, hidden: (value: number) => value / factor };
   const ruler = createPlotScale(ys, [HEIGHT, 0], options);
-  const box = createPlotBox(width, HEIGHT, labelWidth(ruler) + 10);
+  const box = createPlotBox(width, HEIGHT, labelWidth(ruler) + 10, 26 + LABEL_ROWS * LABEL_STEP);
   return {
     box,
     x: createTemperatureScale(extent(xs), [box.left, box.right], units),
@@ -48,6 +51,7 @@ export function ScanPlot(props: { lane: ScanLane; layout: ScanPlotLayout; instru
   const { lane, layout, instrument, units } = props;
   const { box, x, y, exponent } = layout;
   const limits = eventLimits(lane);
+  const labelY = (i: number): number => box.top - 6 - (LABEL_ROWS - 1 - (i % LABEL_ROWS)) * LABEL_STEP;
   const isInside = (at: number): boolean => at >= box.left && at <= box.right;
   const marks = lane.rows.flatMap((row) => [
     ...(row.event === lane.rows[0].event ? [{ name: 'glass transition', temperatureK: row.glass_transition_K }] : []),
@@ -81,11 +85,11 @@ export function ScanPlot(props: { lane: ScanLane; layout: ScanPlotLayout; instru
       </g>
       {drawn.map(({ name, temperatureK, at }, i) => (
         <g key={`${name} ${temperatureK}`}>
-          <path class="temperature-line" d={`M${at.toFixed(1)} ${box.top + 16 + 14 * (i % 4)}V${box.bottom}`} />
+          <path class="temperature-line" d={`M${at.toFixed(1)} ${labelY(i) + 4}V${box.bottom}`} />
           <text
             class="plot-label"
             x={at.toFixed(1)}
-            y={box.top + 12 + 14 * (i % 4)}
+            y={labelY(i)}
             text-anchor={at > box.right - 110 ? 'end' : at < box.left + 60 ? 'start' : 'middle'}
           >
             {name} {formatTemperature(temperatureK, units)}

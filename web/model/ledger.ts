@@ -51,15 +51,21 @@ const LOOKS: Record<ScanState, MarkLook | undefined> = {
 };
 
 function concernOf(rows: readonly ScanRow[]): 'stop' | 'warn' | undefined {
-  const severities = rows.flatMap((row) => row.flags.map((code) => FLAG_CODES[code]?.[0]));
-  return severities.includes('stop') ? 'stop' : severities.includes('warn') ? 'warn' : undefined;
+  let concern: 'warn' | undefined;
+  for (const row of rows)
+    for (const code of row.flags) {
+      const severity = FLAG_CODES[code]?.[0];
+      if (severity === 'stop') return 'stop';
+      if (severity === 'warn') concern = 'warn';
+    }
+  return concern;
 }
 
-function markOf(key: string, rows: ScanRow[], look: MarkLook): ScanMark {
+function markOf(rows: ScanRow[], look: MarkLook): ScanMark {
   const [first] = rows;
   const signed = first.rate_K_per_s ?? first.rate_nominal_K_per_s;
   return {
-    key,
+    key: `${first.file} ${first.segment} ${first.instrument}`,
     file: first.file,
     instrument: first.instrument ?? 'no instrument named',
     status: first.status,
@@ -96,11 +102,37 @@ export interface ActiveMark {
   mark: number;
 }
 
-/** Meanings of the warnings that belong to a sample and to no single file, gaps left out. */
-function concernsOf(sample: string, flags: readonly FlagRow[], gaps: readonly GapRow[]): string[] {
-  const own = flags.filter((flag) => flag.sample === sample && !flag.file && flag.severity !== 'note');
+/** Meanings of those warnings of a sample that belong to no single file, gaps left out. */
+function concernsOf(flags: readonly FlagRow[], gaps: readonly GapRow[]): string[] {
+  const own = flags.filter((flag) => !flag.file && flag.severity !== 'note');
   const codes = own.map((flag) => flag.code).filter((code) => !gaps.some((gap) => gap.code === code));
   return [...new Set(codes)].map(flagMeaning);
+}
+
+function bySample<Row extends { sample: string | null }>(rows: readonly Row[]): Map<string, Row[]> {
+  const groups = new Map<string, Row[]>();
+  for (const row of rows) {
+    const group = groups.get(row.sample ?? '');
+    if (group) group.push(row);
+    else groups.set(row.sample ?? '', [row]);
+  }
+  return groups;
+}
+
+const isSameScan = (a: ScanRow, b: ScanRow): boolean =>
+  a.segment === b.segment && a.sample === b.sample && a.instrument === b.instrument;
+
+/** Rows of each scan: one file may hold several segments, and may stand for several samples. */
+function groupScans(rows: readonly ScanRow[]): ScanRow[][] {
+  const byFile = new Map<string, ScanRow[][]>();
+  for (const row of rows) {
+    const ofFile = byFile.get(row.file);
+    const same = ofFile?.find(([first]) => isSameScan(first, row));
+    if (same) same.push(row);
+    else if (ofFile) ofFile.push([row]);
+    else byFile.set(row.file, [[row]]);
+  }
+  return [...byFile.values()].flat();
 }
 
 export interface LedgerTables {
@@ -127,27 +159,23 @@ export function buildLedger(tables: LedgerTables, status: CampaignStatus | undef
   for (const { sample, state, reason, verdict } of status?.samples ?? [])
     Object.assign(rowOf(sample, 'sample'), { state, reason, verdict });
 
-  const scans = new Map<string, ScanRow[]>();
-  for (const scan of tables.scans) {
-    const key = `${scan.file}\u0000${scan.segment ?? ''}\u0000${scan.sample}\u0000${scan.instrument}`;
-    const sameScan = scans.get(key);
-    if (sameScan) sameScan.push(scan);
-    else scans.set(key, [scan]);
-  }
-  for (const [key, scanRows] of scans) {
+  for (const scanRows of groupScans(tables.scans)) {
     const [{ sample, role, status: scanStatus }] = scanRows;
     const look = LOOKS[scanStatus];
-    if (sample !== null && look) rowOf(sample, role ?? 'sample').marks.push(markOf(key, scanRows, look));
+    if (sample !== null && look) rowOf(sample, role ?? 'sample').marks.push(markOf(scanRows, look));
   }
 
+  const gaps = bySample(tables.gaps);
+  const flags = bySample(tables.flags);
+  const coverage = bySample(tables.coverage);
   const numbers = numbersBySample(tables.parameters);
   const energies = energiesBySample(tables.parameters);
   for (const row of rows.values()) {
     row.marks.sort((a, b) => (a.rateKPerS ?? 0) - (b.rateKPerS ?? 0) || (a.instrument < b.instrument ? -1 : 1));
     if (row.role !== 'sample') continue;
-    row.gaps = tables.gaps.filter((gap) => gap.sample === row.sample);
-    row.concerns = concernsOf(row.sample, tables.flags, row.gaps);
-    row.emptySpans = emptySpans(tables.coverage.filter((c) => c.sample === row.sample));
+    row.gaps = gaps.get(row.sample) ?? [];
+    row.concerns = concernsOf(flags.get(row.sample) ?? [], row.gaps);
+    row.emptySpans = emptySpans(coverage.get(row.sample) ?? []);
     row.numbers = numbers.get(row.sample) ?? [];
     row.energies = energies.get(row.sample) ?? [];
   }

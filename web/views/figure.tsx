@@ -52,8 +52,8 @@ export function Figure(props: {
         </div>
       </div>
       {tools}
-      <div class="figure-frame" ref={frame}>
-        {width > 0 && draw(width)}
+      <div class="figure-frame">
+        <div ref={frame}>{width > 0 && draw(width)}</div>
       </div>
       {legend && <ul class="legend figure-legend">{legend}</ul>}
       <figcaption>{caption}</figcaption>

@@ -1,30 +1,57 @@
 import { type Signal, useComputed } from '@preact/signals';
+import { useMemo, useRef } from 'preact/hooks';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { EnergySpark } from '../charts/energy-spark.tsx';
 import type { RateScale } from '../charts/rate-scale.ts';
 import { RateRuling, StripGround, StripMarks } from '../charts/rate-strip.tsx';
 import { StateGlyph } from '../charts/state-glyph.tsx';
-import { nearestMark, type StripLayout } from '../charts/strip-layout.ts';
+import { layoutStrip, nearestMark, type StripLayout } from '../charts/strip-layout.ts';
 import { describeEstimate, describeMark } from '../model/describe.ts';
 import { type EventEnergies, headlineEnergy, headlineExponent } from '../model/headline.ts';
 import type { ActiveMark, LedgerRow } from '../model/ledger.ts';
 import { samplePath } from '../routes.ts';
 import { units } from '../state/units.ts';
 import { gapName, SAMPLE_STATE_NAMES, sentence, verdictName } from '../words.ts';
+import { useNear } from './use-near.ts';
 
-/** One sample of the coverage map: name and state, strip of marks, headline numbers. */
-export function LedgerEntry(props: {
+interface EntryProps {
   campaignId: string;
   row: LedgerRow;
   index: number;
   scale: RateScale;
-  layout: StripLayout;
   instruments: readonly string[];
   active: Signal<ActiveMark | undefined>;
   tabRow: Signal<number>;
-  onKeyDown(event: KeyboardEvent): void;
-}) {
-  const { campaignId, row, index, scale, layout, instruments, active, tabRow, onKeyDown } = props;
+  onKeyDown(row: number, event: KeyboardEvent): void;
+}
+
+/** One sample of the coverage map; out of reach of the window its name only. */
+export function LedgerEntry(props: EntryProps) {
+  const { campaignId, row, index, tabRow } = props;
+  const item = useRef<HTMLLIElement>(null);
+  const { isNear, height } = useNear(item);
+  const isDrawn = useComputed(() => isNear.value || tabRow.value === index);
+  return isDrawn.value ? (
+    <li class="entry" ref={item}>
+      <DrawnEntry {...props} />
+    </li>
+  ) : (
+    <li class="entry is-far" ref={item} style={height.value > 0 ? { minHeight: `${height.value}px` } : undefined}>
+      <div class="entry-sample">
+        <SampleName campaignId={campaignId} row={row} />
+      </div>
+    </li>
+  );
+}
+
+const SampleName = ({ campaignId, row }: { campaignId: string; row: LedgerRow }) => (
+  <h3>{row.role === 'sample' ? <a href={samplePath(campaignId, row.sample)}>{row.sample}</a> : row.sample}</h3>
+);
+
+/** Name and state, strip of marks, headline numbers. */
+function DrawnEntry(props: EntryProps) {
+  const { campaignId, row, index, scale, instruments, active, tabRow, onKeyDown } = props;
+  const layout = useMemo(() => layoutStrip(row.marks, scale), [row, scale]);
   const idPrefix = `mark-${index}`;
   const tabIndex = useComputed(() => (tabRow.value === index ? 0 : -1));
   const activeId = useComputed(() => {
@@ -37,9 +64,9 @@ export function LedgerEntry(props: {
     if (nearest) active.value = { row: index, mark: row.marks.indexOf(nearest.mark) };
   };
   return (
-    <li class="entry">
+    <>
       <div class="entry-sample">
-        <h3>{row.role === 'sample' ? <a href={samplePath(campaignId, row.sample)}>{row.sample}</a> : row.sample}</h3>
+        <SampleName campaignId={campaignId} row={row} />
         {row.role !== 'sample' && <p class="entry-state">{row.role}</p>}
         {row.state && (
           <p class="entry-state">
@@ -69,7 +96,7 @@ export function LedgerEntry(props: {
           aria-label={`Scans of ${row.sample}`}
           aria-activedescendant={activeId}
           tabIndex={tabIndex}
-          onKeyDown={onKeyDown}
+          onKeyDown={(event) => onKeyDown(index, event)}
           onFocus={() => {
             if (active.value?.row !== index && row.marks.length > 0) active.value = { row: index, mark: 0 };
           }}
@@ -92,7 +119,7 @@ export function LedgerEntry(props: {
       </div>
       <Headline rows={row.numbers.map(headlineEnergy)} name="E" unit="kJ/mol" energies={row.energies} />
       <Headline rows={row.numbers.map(headlineExponent)} name="n" unit="" />
-    </li>
+    </>
   );
 }
 

@@ -1,16 +1,17 @@
 import { useComputed, useSignal } from '@preact/signals';
-import { useLayoutEffect, useMemo, useRef } from 'preact/hooks';
+import { useMemo } from 'preact/hooks';
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import { RateAxis } from '../charts/rate-axis.tsx';
 import { createRateScale } from '../charts/rate-scale.ts';
-import { layoutStrip } from '../charts/strip-layout.ts';
 import type { Campaign, ScanRow } from '../client/rows.ts';
 import { formatCount } from '../format.ts';
 import type { ActiveMark, LedgerRow } from '../model/ledger.ts';
+import { isPrinting } from '../state/printing.ts';
 import { units } from '../state/units.ts';
 import { Downloads } from './download.tsx';
 import { LedgerEntry } from './ledger-entry.tsx';
 import { Readout } from './readout.tsx';
+import { useWidth } from './use-width.ts';
 
 const NOTHING: readonly LedgerRow[] = [];
 
@@ -22,34 +23,21 @@ export function Ledger(props: {
   unassigned: readonly ScanRow[];
 }) {
   const { campaign, rows, instruments, unassigned } = props;
-  /** px; 0 until measured, and nothing is drawn before */
-  const width = useSignal(0);
   const active = useSignal<ActiveMark | undefined>(undefined);
   /** The one strip in the tab order */
   const tabRow = useSignal(0);
-  const axis = useRef<HTMLDivElement>(null);
-  const list = useRef<HTMLUListElement>(null);
-  useLayoutEffect(() => {
-    if (!axis.current) return;
-    width.value = Math.floor(axis.current.clientWidth);
-    const observer = new ResizeObserver(([entry]) => {
-      width.value = Math.floor(entry.contentRect.width);
-    });
-    observer.observe(axis.current);
-    return () => observer.disconnect();
-  }, []);
-
+  /** Nothing is drawn before the width is known */
+  const [axis, width] = useWidth<HTMLDivElement>();
   const scale = useMemo(
     () =>
       createRateScale(
         rows.flatMap((row) => row.marks.map((m) => m.rateKPerS)),
-        width.value,
+        width,
         units.value,
       ),
-    [rows, width.value, units.value],
+    [rows, width, units.value],
   );
-  const drawn = width.value > 0 ? rows : NOTHING;
-  const layouts = useMemo(() => drawn.map((row) => layoutStrip(row.marks, scale)), [drawn, scale]);
+  const drawn = width > 0 ? rows : NOTHING;
   const activeMark = useComputed(() => {
     const at = active.value;
     const row = at && rows[at.row];
@@ -59,9 +47,15 @@ export function Ledger(props: {
   const moveTo = (row: number, mark: number): void => {
     active.value = { row, mark };
     tabRow.value = row;
-    list.current?.querySelector<SVGElement>(`#strip-${row}`)?.focus();
+    const focus = (): boolean => {
+      const strip = document.getElementById(`strip-${row}`);
+      strip?.focus();
+      return strip !== null;
+    };
+    // A row out of reach of the window is drawn first.
+    if (!focus()) requestAnimationFrame(focus);
   };
-  const onKeyDown = (row: number) => (event: KeyboardEvent) => {
+  const onKeyDown = (row: number, event: KeyboardEvent): void => {
     const count = rows[row].marks.length;
     const mark = active.value?.row === row ? active.value.mark : 0;
     if (event.key === 'ArrowRight') moveTo(row, Math.min(count - 1, mark + 1));
@@ -73,8 +67,8 @@ export function Ledger(props: {
       let to = row + step;
       while (rows[to] && rows[to].marks.length === 0) to += step;
       if (rows[to]) {
-        const x = layouts[row].placed[mark].x;
-        const distances = layouts[to].placed.map((placed) => Math.abs(placed.x - x));
+        const x = scale.x(rows[row].marks[mark].rateKPerS);
+        const distances = rows[to].marks.map(({ rateKPerS }) => Math.abs(scale.x(rateKPerS) - x));
         moveTo(to, distances.indexOf(Math.min(...distances)));
       }
     } else if (event.key === 'Escape') active.value = undefined;
@@ -97,7 +91,7 @@ export function Ledger(props: {
               Heating rate, {scale.unit}
               <span class="unseen">, logarithmic. Use the arrow keys to move from scan to scan.</span>
             </p>
-            {width.value > 0 && <RateAxis scale={scale} />}
+            {width > 0 && <RateAxis scale={scale} />}
           </div>
           <span>
             Activation energy <i>E</i>
@@ -106,7 +100,7 @@ export function Ledger(props: {
             Exponent <i>n</i>
           </span>
         </div>
-        <ul class="ledger-rows" ref={list}>
+        <ul class="ledger-rows">
           {drawn.map((row, i) => (
             <LedgerEntry
               key={`${row.role} ${row.sample}`}
@@ -114,18 +108,17 @@ export function Ledger(props: {
               row={row}
               index={i}
               scale={scale}
-              layout={layouts[i]}
               instruments={instruments}
               active={active}
               tabRow={tabRow}
-              onKeyDown={onKeyDown(i)}
+              onKeyDown={onKeyDown}
             />
           ))}
         </ul>
         <Readout active={activeMark} instruments={instruments} rows={rows} />
       </div>
       {unassigned.length > 0 && (
-        <details class="unassigned">
+        <details class="unassigned" open={isPrinting.value || undefined}>
           <summary>{formatCount(unassigned.length, 'file')} without a sample</summary>
           <p>
             No row of scans.csv and no folder of the form SAMPLE/INSTRUMENT names the sample. Add a row for each and

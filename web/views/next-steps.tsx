@@ -1,12 +1,16 @@
+import { useSignal } from '@preact/signals';
 import type { GapRow } from '../../schema/wire/campaign.ts';
 import { SeverityGlyph } from '../charts/state-glyph.tsx';
 import type { Campaign, FlagRow } from '../client/rows.ts';
 import { type FlagGroup, groupFlags, groupGaps } from '../model/next-steps.ts';
+import { isPrinting } from '../state/printing.ts';
 import { gapName, sentence } from '../words.ts';
 import { Downloads } from './download.tsx';
 
 /** Groups with more places than this start closed. */
 const OPEN_UP_TO = 3;
+/** Places of one group drawn at most. */
+const PLACES_SHOWN = 200;
 
 /** What stops a result, what is missing, what looks wrong, what is worth knowing: each with what to do. */
 export function NextSteps(props: {
@@ -57,20 +61,37 @@ function Steps(props: { severity: 'stop' | 'warn' | 'note'; title: string; group
           <li key={`${group.code} ${group.action}`}>
             <p class="step-what">{sentence(group.meaning)}</p>
             <p class="step-do">{sentence(group.action)}</p>
-            <details open={severity !== 'note' && group.flags.length <= OPEN_UP_TO}>
-              <summary>{group.flags.length === 1 ? 'Where' : `Where, ${group.flags.length} places`}</summary>
-              <ul class="step-places">
-                {group.flags.map((flag, i) => (
-                  <li key={i} class="step-place">
-                    <span class="place">{placeOf(flag)}</span> {flag.detail}
-                  </li>
-                ))}
-              </ul>
-            </details>
+            <Places flags={group.flags} opensAtOnce={severity !== 'note' && group.flags.length <= OPEN_UP_TO} />
           </li>
         ))}
       </ul>
     </div>
+  );
+}
+
+/** Where a group of flags holds, drawn when it is unfolded: a large campaign has thousands. */
+function Places({ flags, opensAtOnce }: { flags: readonly FlagRow[]; opensAtOnce: boolean }) {
+  const isUnfolded = useSignal(opensAtOnce);
+  const isOpen = isUnfolded.value || isPrinting.value;
+  return (
+    <details
+      open={isOpen}
+      onToggle={(event) => {
+        if (!isPrinting.value) isUnfolded.value = event.currentTarget.open;
+      }}
+    >
+      <summary>{flags.length === 1 ? 'Where' : `Where, ${flags.length} places`}</summary>
+      {isOpen && (
+        <ul class="step-places">
+          {flags.slice(0, PLACES_SHOWN).map((flag, i) => (
+            <li key={i} class="step-place">
+              <span class="place">{placeOf(flag)}</span> {flag.detail}
+            </li>
+          ))}
+          {flags.length > PLACES_SHOWN && <li>and {flags.length - PLACES_SHOWN} more, listed in flags.csv</li>}
+        </ul>
+      )}
+    </details>
   );
 }
 
@@ -89,7 +110,7 @@ function Gaps({ gaps }: { gaps: readonly GapRow[] }) {
           <li key={code}>
             <p class="step-what">{sentence(gapName(code))}</p>
             <ul class="step-places">
-              {same.map((gap) => (
+              {same.slice(0, PLACES_SHOWN).map((gap) => (
                 <li key={`${gap.sample} ${gap.detail}`} class="step-place">
                   <span class="place">{gap.sample || 'campaign'}</span> {sentence(gap.detail)}
                   <p class="step-do">{sentence(gap.action)}</p>

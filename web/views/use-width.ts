@@ -1,6 +1,7 @@
 import { useLayoutEffect, useRef, useState } from 'preact/hooks';
+import { isPrinting, PRINT_WIDTH } from '../state/printing.ts';
 
-/** Width in px of the element that takes the ref, as it changes; 0 until measured, and again on paper as it fits there. */
+/** Width in px of the element (without padding) that takes the ref, as it changes; 0 until measured; on paper what fits there. */
 export function useWidth<E extends HTMLElement>() {
   const ref = useRef<E>(null);
   const [width, setWidth] = useState(0);
@@ -11,5 +12,5 @@ export function useWidth<E extends HTMLElement>() {
     observer.observe(ref.current);
     return () => observer.disconnect();
   }, []);
-  return [ref, width] as const;
+  return [ref, isPrinting.value ? Math.min(width, PRINT_WIDTH) : width] as const;
 }
