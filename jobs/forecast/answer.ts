@@ -50,15 +50,12 @@ function answerBy(
   limit: Limit,
   disagree: boolean,
 ): ForecastRow {
-  const count = ask.draws(m.draws.length);
-  const drawn = Float64Array.from({ length: count }, (_, d) =>
-    ask.answer(m.draws[Math.floor((d * m.draws.length) / count)], false),
-  );
-  const value = ask.answer(m.estimate, true);
+  const drawn = Float64Array.from(m.draws, (draw) => ask.answerDraw(draw, m.estimate));
+  const value = ask.answer(m.estimate);
   const band = bandOf(value, drawn, m.degreesOfFreedom);
   const [lowK, highK] = ask.activeK(m.estimate);
   const frozen = m.pessimistic !== undefined && lowK < m.pessimistic.belowK;
-  if (frozen && m.pessimistic) widen(band, ask.answer(m.pessimistic.kinetics, true), question.question);
+  if (frozen && m.pessimistic) widen(band, ask.answer(m.pessimistic.kinetics), question.question);
   const flags: FlagCode[] = [];
   const nearest = (T: number) => Math.min(source.highestMeasuredK, Math.max(source.lowestMeasuredK, T));
   const outside = [lowK, highK].filter(Number.isFinite).map((T) => ({ K: Math.abs(T - nearest(T)), T }));

@@ -5,5 +5,6 @@ export { type DiagramLine, drawHeating, drawTransformation } from './diagrams.ts
 export { forecastTable, standardTemperatures } from './forecast-table.ts';
 export { TEMPERATURE_RANGE } from './kinetics.ts';
 export { drawnParameters, lnTimeGradient, sharedRateCurve } from './rate-curve.ts';
+export { type ForecastRequest, MOST_PROGRAM_ROWS, questionOf } from './request.ts';
 export { makeForecastSource, type SourceParts } from './source.ts';
 export { timeText } from './wording.ts';

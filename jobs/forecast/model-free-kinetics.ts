@@ -43,7 +43,7 @@ export function modelFreeKinetics(
         const dT = panels.toK[p] - T1;
         let mean = 0;
         for (let q = 0; q < nodes.length; q++) mean += weights[q] * pace(k, T1 + dT * (from + (1 - from) * nodes[q]));
-        const gained = mean * (1 - from) * panels.lengthS[p];
+        const gained = mean * (1 - from) * panels.weightS[p];
         const goal = goalOf(k);
         if (share + gained < goal) {
           share += gained;

@@ -1,6 +1,5 @@
 import type { ProgrammeTable } from '../../schema/wire/forecasts.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
-import type { RateCurve } from './rate-curve.ts';
 
 /**
  * Time integrals of exp(g(T(t))) along a programme that is linear between its rows, by Gauss–Legendre panels. A panel is so short that the
@@ -14,6 +13,8 @@ export interface Panels {
   /** Start and length in time, s, temperatures at both ends, K: one a panel */
   startS: Float64Array;
   lengthS: Float64Array;
+  /** Time that the integral counts, s: the length, but for blocks that stand for many panels */
+  weightS: Float64Array;
   fromK: Float64Array;
   toK: Float64Array;
   rule: GaussRule;
@@ -105,19 +106,20 @@ export function layPanels(
     }
   }
   const count = at.length - 1;
+  const lengthS = Float64Array.from({ length: count }, (_, p) => at[p + 1] - at[p]);
   const out: Panels = {
     name,
     endS: at[count],
     endK: cuts[count],
     startS: Float64Array.from(at.slice(0, count)),
-    lengthS: new Float64Array(count),
+    lengthS,
+    weightS: lengthS,
     fromK: Float64Array.from(cuts.slice(0, count)),
     toK: Float64Array.from(cuts.slice(1)),
     rule,
     nodeK: new Float64Array(count * rule.nodes.length),
   };
   for (let p = 0; p < count; p++) {
-    out.lengthS[p] = at[p + 1] - at[p];
     rule.nodes.forEach((u, k) => {
       out.nodeK[p * rule.nodes.length + k] = cuts[p] + u * (cuts[p + 1] - cuts[p]);
     });
@@ -144,7 +146,7 @@ export function accumulate(panels: Panels, lnRate: (temperatureK: number) => num
   for (let p = 0; p < sums.length; p++) {
     let mean = 0;
     for (let k = 0; k < m; k++) mean += weights[k] * Math.exp(values[p * m + k] - lnScale);
-    sum += panels.lengthS[p] * mean;
+    sum += panels.weightS[p] * mean;
     sums[p] = sum;
   }
   return { lnScale, sums };
@@ -195,7 +197,7 @@ export function partOfPanel(
   const { nodes, weights } = panels.rule;
   const T1 = panels.fromK[p];
   const dT = panels.toK[p] - T1;
-  const length = panels.lengthS[p];
+  const length = panels.weightS[p];
   let [low, high] = [from, 1];
   let u = (from + 1) / 2;
   for (let i = 0; i < 60; i++) {
@@ -211,13 +213,4 @@ export function partOfPanel(
     u = next;
   }
   return u;
-}
-
-/** What a programme's panels need of a set of laws: the steepest of them at each temperature. */
-export function steepestOf(curves: readonly RateCurve[]): (temperatureK: number) => number {
-  return (T) => {
-    let most = 0;
-    for (const curve of curves) most = Math.max(most, curve.steepness(T));
-    return most;
-  };
 }

@@ -1,23 +1,20 @@
 import type { ForecastQuestion, ProgrammeTable } from '../../schema/wire/forecasts.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 import { findRoot } from '../numeric/root.ts';
+import { blockPanels, MOST_BLOCKS } from './blocks.ts';
 import { extentOf, type Kinetics, TEMPERATURE_RANGE } from './kinetics.ts';
 import { accumulate, COARSE, checkProgramme, FINE, layPanels, type Panels } from './programme.ts';
 
 /** A question made ready: what each law answers on the even scale (ln t, ln X or K); `fine` for the estimate, coarser panels for draws. */
 export interface Ask {
-  answer(kinetics: Kinetics, fine: boolean): number;
+  answer(kinetics: Kinetics): number;
+  /** The same for a draw, in less work where a programme is long. @param estimate the law that it is a draw of */
+  answerDraw(draw: Kinetics, estimate: Kinetics): number;
   /** Temperatures that matter, K: where the middle 95 % of ∫K dt builds up; for a limit the limit itself */
   activeK(kinetics: Kinetics): [number, number];
-  /** How many draws are worth evaluating: long programmes take a part of them */
-  draws(count: number): number;
   /** ln of the factor in time by which another answer differs from the reference's */
   lnFactor(reference: Kinetics, other: Kinetics, exponent: number): number;
 }
-
-/** Node evaluations that the draws of one question may cost; with fewer than this many draws the spread is too rough. */
-const DRAW_BUDGET = 4e6;
-const LEAST_DRAWS = 60;
 
 /** @throws RangeError for a question outside its range, quoting the value */
 export function prepareQuestion(q: ForecastQuestion, kinetics: readonly Kinetics[]): Ask {
@@ -28,26 +25,26 @@ export function prepareQuestion(q: ForecastQuestion, kinetics: readonly Kinetics
     case 'time_to_conversion':
       return {
         answer: (k) => k.lnTime(q.conversion, q.temperatureK),
+        answerDraw: (k) => k.lnTime(q.conversion, q.temperatureK),
         activeK: () => [q.temperatureK, q.temperatureK],
-        draws: (count) => count,
         lnFactor: (a, b) => b.lnTime(q.conversion, q.temperatureK) - a.lnTime(q.conversion, q.temperatureK),
       };
     case 'conversion_at_end':
       return {
         answer: (k) => k.extent(q.temperatureK, q.timeS),
+        answerDraw: (k) => k.extent(q.temperatureK, q.timeS),
         activeK: () => [q.temperatureK, q.temperatureK],
-        draws: (count) => count,
         lnFactor: (a, b, exponent) =>
           (a.extent(q.temperatureK, q.timeS) - b.extent(q.temperatureK, q.timeS)) / exponent,
       };
     case 'temperature_limit':
       return {
         answer: (k) => temperatureLimit(k, q.conversion, q.timeS),
+        answerDraw: (k) => temperatureLimit(k, q.conversion, q.timeS),
         activeK: (k) => {
           const T = temperatureLimit(k, q.conversion, q.timeS);
           return [T, T];
         },
-        draws: (count) => count,
         lnFactor: (a, b) => b.lnTime(q.conversion, temperatureLimit(a, q.conversion, q.timeS)) - Math.log(q.timeS),
       };
   }
@@ -75,10 +72,17 @@ function askProgramme(programme: ProgrammeTable, conversion: number | undefined,
   const coarse = layPanels(programme, steepness, breaks, COARSE);
   const answer = (k: Kinetics, panels: Panels) =>
     conversion === undefined ? k.extentOn(panels) : Math.log(k.timeOn(panels, conversion));
+  const blocks = new Map<Kinetics, Panels>();
+  const forDraws = (estimate: Kinetics): Panels => {
+    if (coarse.startS.length <= 2 * MOST_BLOCKS) return coarse;
+    const made = blocks.get(estimate) ?? blockPanels(coarse, estimate.lnRate);
+    blocks.set(estimate, made);
+    return made;
+  };
   return {
-    answer: (k, isFine) => answer(k, isFine ? fine : coarse),
+    answer: (k) => answer(k, fine),
+    answerDraw: (draw, estimate) => answer(draw, forDraws(estimate)),
     activeK: (k) => activeTemperatures(coarse, k),
-    draws: (count) => Math.min(count, Math.max(LEAST_DRAWS, Math.floor(DRAW_BUDGET / coarse.nodeK.length))),
     lnFactor(a, b, exponent) {
       if (conversion === undefined) return (answer(a, fine) - answer(b, fine)) / exponent;
       // Where a programme races through the event, times agree whatever the laws say: the extents at one moment are compared.
