@@ -1,7 +1,7 @@
 import type { GaussRule, Panels } from './programme.ts';
 
 /** Programmes of more panels than this are cut into this many blocks for the draws. */
-export const MOST_BLOCKS = 400;
+export const MOST_BLOCKS = 200;
 const TWO_POINTS: GaussRule = { nodes: [0, 1], weights: [0.5, 0.5], exponentSpan: Number.NaN };
 
 /**

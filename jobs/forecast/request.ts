@@ -14,7 +14,7 @@ export interface ForecastRequest {
 const FORMS =
   '{temperature_C, conversion}, {temperature_C, time_s}, {program, conversion}, {program} or {time_s, conversion}';
 /** Rows of a programme that a request may bring; longer ones belong into programs/*.csv. */
-export const MOST_PROGRAM_ROWS = 2000;
+export const MOST_PROGRAM_ROWS = 1000;
 
 /**
  * The one question that a request asks. @throws RangeError for any other set of fields than the five, for values out of range and for a programme whose

@@ -58,21 +58,21 @@ describe('the five forms of a request', () => {
       },
       'row 2: time 0 s does not come after 1 s',
     ],
-    [{ program: Array.from({ length: MOST_PROGRAM_ROWS + 1 }, (_, i) => [i, 20] as const) }, 'at most 2000 rows'],
+    [{ program: Array.from({ length: MOST_PROGRAM_ROWS + 1 }, (_, i) => [i, 20] as const) }, 'at most 1000 rows'],
   ])('anything else is refused: %o', (request, message) => {
     expect(() => questionOf(request)).toThrow(message);
   });
-  // A swing every six hours for a year and a half, the hardest kind: no two rows can share a panel.
+  // A swing every six hours for most of a year, the hardest kind: no two rows can share a panel.
   const program = Array.from({ length: MOST_PROGRAM_ROWS }, (_, i) => [i * 21600, 330 + 12 * Math.sin(i)] as const);
   test('the longest programme is answered with 400 draws in time for a request', () => {
     const source = sourceOf(LAW, { draws: 400 });
     answerQuestion(source, questionOf({ program: program.slice(0, 20) }));
-    const started = performance.now();
+    const started = process.cpuUsage();
     const rows = answerQuestion(source, questionOf({ program }));
-    const took = performance.now() - started;
+    const { user } = process.cpuUsage(started);
     expect(rows.every((r) => r.lower95! <= r.value! && r.value! <= r.upper95!)).toBe(true);
-    // About 0.1 s alone; the machine of the test may be busy.
-    expect(took).toBeLessThan(1500);
+    // µs of work, not of waiting; about 0.1 s.
+    expect(user).toBeLessThan(400_000);
   });
   test('the blocks of a long programme give the band that all its panels give', () => {
     const source = sourceOf(LAW, { draws: 60 });
@@ -85,7 +85,7 @@ describe('the five forms of a request', () => {
       expect(all.startS.length).toBeGreaterThan(3 * blocks.startS.length);
       expect(m.estimate.extentOn(blocks)).toBeCloseTo(m.estimate.extentOn(all), 3);
       const spread = (panels: Panels) => standardDeviation(m.draws.map((draw) => draw.extentOn(panels)));
-      expect(Math.abs(spread(blocks) / spread(all) - 1)).toBeLessThan(0.01);
+      expect(Math.abs(spread(blocks) / spread(all) - 1)).toBeLessThan(0.02);
     }
   });
 });
