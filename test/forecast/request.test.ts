@@ -85,7 +85,7 @@ describe('the five forms of a request', () => {
       expect(all.startS.length).toBeGreaterThan(3 * blocks.startS.length);
       expect(m.estimate.extentOn(blocks)).toBeCloseTo(m.estimate.extentOn(all), 3);
       const spread = (panels: Panels) => standardDeviation(m.draws.map((draw) => draw.extentOn(panels)));
-      expect(Math.abs(spread(blocks) / spread(all) - 1)).toBeLessThan(0.02);
+      expect(Math.abs(spread(blocks) / spread(all) - 1)).toBeLessThan(0.03);
     }
   });
 });

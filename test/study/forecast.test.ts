@@ -12,8 +12,8 @@ test('most bands of the shared law hold the truth 20 to 80 K outside the data; a
   expect(trials.filter((t) => t.sharedHolds).length).toBeGreaterThanOrEqual(2);
   for (const t of trials) {
     expect(Math.abs(t.sharedLnError)).toBeLessThan(0.7);
-    if (!t.freeHolds) expect(t.freeFlags).toContain('extrapolates');
-    if (t.kind !== 'straight') expect(t.freeFlags).toContain('forecast-straight');
+    if (!t.free!.holds) expect(t.free!.flags).toContain('extrapolates');
+    if (t.kind !== 'straight') expect(t.free!.flags).toContain('forecast-straight');
   }
 });
 
