@@ -124,15 +124,21 @@ const isSameScan = (a: ScanRow, b: ScanRow): boolean =>
 
 /** Rows of each scan: one file may hold several segments, and may stand for several samples. */
 function groupScans(rows: readonly ScanRow[]): ScanRow[][] {
+  const groups: ScanRow[][] = [];
   const byFile = new Map<string, ScanRow[][]>();
   for (const row of rows) {
     const ofFile = byFile.get(row.file);
     const same = ofFile?.find(([first]) => isSameScan(first, row));
-    if (same) same.push(row);
-    else if (ofFile) ofFile.push([row]);
-    else byFile.set(row.file, [[row]]);
+    if (same) {
+      same.push(row);
+      continue;
+    }
+    const group = [row];
+    groups.push(group);
+    if (ofFile) ofFile.push(group);
+    else byFile.set(row.file, [group]);
   }
-  return [...byFile.values()].flat();
+  return groups;
 }
 
 export interface LedgerTables {
@@ -143,8 +149,20 @@ export interface LedgerTables {
   parameters: Parameters<typeof numbersBySample>[0];
 }
 
+/** Scans that are worked on between two steps of `ledgerSteps`: a millisecond or two. */
+const SCANS_PER_STEP = 250;
+
 /** Rows of the map: samples in the order of the status, then what else was measured (standards, blanks). */
 export function buildLedger(tables: LedgerTables, status: CampaignStatus | undefined): LedgerRow[] {
+  const steps = ledgerSteps(tables, status);
+  for (let step = steps.next(); ; step = steps.next()) if (step.done) return step.value;
+}
+
+/** The same in steps, for a page that must stay quick while thousands of scans are sorted. */
+export function* ledgerSteps(
+  tables: LedgerTables,
+  status: CampaignStatus | undefined,
+): Generator<undefined, LedgerRow[]> {
   const rows = new Map<string, LedgerRow>();
   const rowOf = (sample: string, role: Role): LedgerRow => {
     const key = `${role}\u0000${sample}`;
@@ -159,18 +177,24 @@ export function buildLedger(tables: LedgerTables, status: CampaignStatus | undef
   for (const { sample, state, reason, verdict } of status?.samples ?? [])
     Object.assign(rowOf(sample, 'sample'), { state, reason, verdict });
 
-  for (const scanRows of groupScans(tables.scans)) {
+  const groups = groupScans(tables.scans);
+  yield;
+  for (const [i, scanRows] of groups.entries()) {
+    if (i % SCANS_PER_STEP === 0) yield;
     const [{ sample, role, status: scanStatus }] = scanRows;
     const look = LOOKS[scanStatus];
     if (sample !== null && look) rowOf(sample, role ?? 'sample').marks.push(markOf(scanRows, look));
   }
 
+  yield;
   const gaps = bySample(tables.gaps);
   const flags = bySample(tables.flags);
   const coverage = bySample(tables.coverage);
   const numbers = numbersBySample(tables.parameters);
+  yield;
   const energies = energiesBySample(tables.parameters);
   for (const row of rows.values()) {
+    yield;
     row.marks.sort((a, b) => (a.rateKPerS ?? 0) - (b.rateKPerS ?? 0) || (a.instrument < b.instrument ? -1 : 1));
     if (row.role !== 'sample') continue;
     row.gaps = gaps.get(row.sample) ?? [];

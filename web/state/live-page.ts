@@ -84,7 +84,8 @@ export function openLivePage<Data>(
         onStatus(status, isNews) {
           const { queued, running, failed } = status.jobs;
           const text = JSON.stringify([status.scans, status.samples, status.settled, queued, running, failed]);
-          live.status.value = status;
+          // The same again is not told on: whatever shows the status would be worked out anew.
+          if (text !== seen || status.eta_s !== live.status.value?.eta_s) live.status.value = status;
           if (isNews || text !== seen || live.problem.value) void loadData();
           seen = text;
         },

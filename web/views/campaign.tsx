@@ -1,5 +1,5 @@
 import { useEffect, useMemo } from 'preact/hooks';
-import { buildLedger, instrumentNames } from '../model/ledger.ts';
+import { instrumentNames, type LedgerRow, ledgerSteps } from '../model/ledger.ts';
 import { tellableNow } from '../model/next-steps.ts';
 import { jobsPath } from '../routes.ts';
 import { openCampaign } from '../state/live-campaign.ts';
@@ -11,6 +11,9 @@ import { NextSteps } from './next-steps.tsx';
 import { ProblemNotice } from './notice.tsx';
 import { Numbers } from './numbers.tsx';
 import { Progress } from './progress.tsx';
+import { useSteps } from './use-steps.ts';
+
+const NOTHING: readonly LedgerRow[] = [];
 
 /** One campaign: where it stands, the coverage map, what to do next, the numbers, the instruments. */
 export function CampaignView({ id }: { id: string }) {
@@ -27,14 +30,16 @@ export function CampaignView({ id }: { id: string }) {
   }, [campaign?.name]);
 
   const told = useMemo(() => tellableNow(tables?.flags ?? [], tables?.gaps ?? [], status), [tables, status]);
-  const rows = useMemo(
-    () => (tables ? buildLedger({ ...tables, gaps: told.gaps }, status) : []),
+  const built = useSteps(
+    () => (tables ? ledgerSteps({ ...tables, gaps: told.gaps }, status) : undefined),
     [tables, told, status],
   );
-  const instruments = useMemo(
+  const rows = built ?? NOTHING;
+  const names = useMemo(
     () => instrumentNames(rows, tables?.instruments.map((row) => row.instrument) ?? []),
     [rows, tables],
   );
+  const instruments = useMemo(() => names, [names.join('\u0000')]);
 
   if (!campaign) {
     return problem ? (
@@ -48,7 +53,7 @@ export function CampaignView({ id }: { id: string }) {
       <p class="waiting">Loading the campaign…</p>
     );
   }
-  const isEmpty = tables !== undefined && rows.length === 0 && tables.scans.length === 0;
+  const isEmpty = tables !== undefined && built?.length === 0 && tables.scans.length === 0;
   const numbered = rows.filter((row) => row.numbers.length > 0).map((row) => row.sample);
   const unassigned = tables?.scans.filter((scan) => scan.status === 'unassigned') ?? [];
   return (
@@ -63,8 +68,8 @@ export function CampaignView({ id }: { id: string }) {
       {problem && <ProblemNotice problem={problem} />}
       {isEmpty && <FileDesk uploads={uploads} isEmpty />}
       <Outcomes uploads={uploads} />
-      {!tables && !problem && <p class="waiting">Loading the tables…</p>}
-      {tables && !isEmpty && (
+      {!built && !problem && <p class="waiting">Loading the tables…</p>}
+      {tables && built && !isEmpty && (
         <>
           <Ledger campaign={campaign} rows={rows} instruments={instruments} unassigned={unassigned} />
           <NextSteps campaign={campaign} flags={told.flags} gaps={told.gaps} isSettled={status?.settled ?? false} />

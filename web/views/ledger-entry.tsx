@@ -1,5 +1,5 @@
-import { type Signal, useComputed } from '@preact/signals';
-import { useMemo, useRef } from 'preact/hooks';
+import { type Signal, useComputed, useSignal } from '@preact/signals';
+import { useLayoutEffect, useMemo, useRef } from 'preact/hooks';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { EnergySpark } from '../charts/energy-spark.tsx';
 import type { RateScale } from '../charts/rate-scale.ts';
@@ -12,7 +12,7 @@ import type { ActiveMark, LedgerRow } from '../model/ledger.ts';
 import { samplePath } from '../routes.ts';
 import { units } from '../state/units.ts';
 import { gapName, SAMPLE_STATE_NAMES, sentence, verdictName } from '../words.ts';
-import { useNear } from './use-near.ts';
+import { changeSoon, useNear } from './use-near.ts';
 
 interface EntryProps {
   campaignId: string;
@@ -25,15 +25,30 @@ interface EntryProps {
   onKeyDown(row: number, event: KeyboardEvent): void;
 }
 
-/** One sample of the coverage map; out of reach of the window its name only. */
+/**
+ * One sample of the coverage map; out of reach of the window its name only. New data is drawn a few rows a frame too: while a
+ * campaign is worked on, it comes every second.
+ */
 export function LedgerEntry(props: EntryProps) {
-  const { campaignId, row, index, tabRow } = props;
+  const { campaignId, row, index, scale, instruments, tabRow } = props;
   const item = useRef<HTMLLIElement>(null);
   const { isNear, height } = useNear(item);
   const isDrawn = useComputed(() => isNear.value || tabRow.value === index);
+  const shown = useSignal(row);
+  useLayoutEffect(() => {
+    if (!isDrawn.value || !item.current) shown.value = row;
+    else if (shown.value !== row)
+      changeSoon(item.current, () => {
+        shown.value = row;
+      });
+  }, [row]);
+  const drawing = useMemo(
+    () => (isDrawn.value ? <DrawnEntry {...props} row={shown.value} /> : undefined),
+    [isDrawn.value, shown.value, campaignId, index, scale, instruments],
+  );
   return isDrawn.value ? (
     <li class="entry" ref={item}>
-      <DrawnEntry {...props} />
+      {drawing}
     </li>
   ) : (
     <li class="entry is-far" ref={item} style={height.value > 0 ? { minHeight: `${height.value}px` } : undefined}>
@@ -124,8 +139,10 @@ function DrawnEntry(props: EntryProps) {
 }
 
 function ActiveRing(props: { active: Signal<ActiveMark | undefined>; index: number; layout: StripLayout }) {
-  const at = props.active.value;
-  const placed = at?.row === props.index ? props.layout.placed[at.mark] : undefined;
+  const { active, index, layout } = props;
+  // Drawn again only when the ring comes to this row, moves in it or leaves it.
+  const mark = useComputed(() => (active.value?.row === index ? active.value.mark : -1));
+  const placed = layout.placed[mark.value];
   return placed ? <circle class="active-ring" cx={placed.x} cy={placed.y} r="11" /> : null;
 }
 

@@ -1,5 +1,5 @@
 import { useComputed, useSignal } from '@preact/signals';
-import { useMemo } from 'preact/hooks';
+import { useCallback, useMemo, useRef } from 'preact/hooks';
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import { RateAxis } from '../charts/rate-axis.tsx';
 import { createRateScale } from '../charts/rate-scale.ts';
@@ -15,6 +15,22 @@ import { useWidth } from './use-width.ts';
 
 const NOTHING: readonly LedgerRow[] = [];
 
+/** Lowest and highest heating rate, K/s, and null when a scan has none: all that the axis depends on. */
+function rateReach(rows: readonly LedgerRow[]): (number | null)[] {
+  let low = Number.POSITIVE_INFINITY;
+  let high = 0;
+  let isRated = true;
+  for (const row of rows)
+    for (const { rateKPerS } of row.marks) {
+      if (rateKPerS === null) isRated = false;
+      else {
+        low = Math.min(low, rateKPerS);
+        high = Math.max(high, rateKPerS);
+      }
+    }
+  return [...(high > 0 ? [low, high] : []), ...(isRated ? [] : [null])];
+}
+
 /** The coverage map: samples down, heating rate across, one mark a scan; beside it the fit and its headline numbers. */
 export function Ledger(props: {
   campaign: Campaign;
@@ -28,15 +44,8 @@ export function Ledger(props: {
   const tabRow = useSignal(0);
   /** Nothing is drawn before the width is known */
   const [axis, width] = useWidth<HTMLDivElement>();
-  const scale = useMemo(
-    () =>
-      createRateScale(
-        rows.flatMap((row) => row.marks.map((m) => m.rateKPerS)),
-        width,
-        units.value,
-      ),
-    [rows, width, units.value],
-  );
+  const reach = useMemo(() => rateReach(rows), [rows]);
+  const scale = useMemo(() => createRateScale(reach, width, units.value), [reach.join(), width, units.value]);
   const drawn = width > 0 ? rows : NOTHING;
   const activeMark = useComputed(() => {
     const at = active.value;
@@ -55,7 +64,7 @@ export function Ledger(props: {
     // A row out of reach of the window is drawn first.
     if (!focus()) requestAnimationFrame(focus);
   };
-  const onKeyDown = (row: number, event: KeyboardEvent): void => {
+  const pressKey = (row: number, event: KeyboardEvent): void => {
     const count = rows[row].marks.length;
     const mark = active.value?.row === row ? active.value.mark : 0;
     if (event.key === 'ArrowRight') moveTo(row, Math.min(count - 1, mark + 1));
@@ -75,6 +84,11 @@ export function Ledger(props: {
     else return;
     event.preventDefault();
   };
+
+  // Drawn rows keep one handler, whatever data has come since.
+  const keys = useRef(pressKey);
+  keys.current = pressKey;
+  const onKeyDown = useCallback((row: number, event: KeyboardEvent) => keys.current(row, event), []);
 
   return (
     <section class="coverage" aria-labelledby="coverage-title">

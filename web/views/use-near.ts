@@ -11,6 +11,12 @@ const PER_FRAME = 2;
 const changes = new Map<Element, () => void>();
 let frame = 0;
 
+/** Runs a change that draws a row in one of the next frames; a later change of the same row takes its place. */
+export function changeSoon(row: Element, change: () => void): void {
+  changes.set(row, change);
+  if (frame === 0) frame = requestAnimationFrame(applyChanges);
+}
+
 function applyChanges(): void {
   frame = 0;
   for (const [element, change] of [...changes].slice(0, PER_FRAME)) {
@@ -26,9 +32,8 @@ const observer = new IntersectionObserver(
   (entries) => {
     for (const entry of entries) {
       const listener = listeners.get(entry.target);
-      if (listener) changes.set(entry.target, () => listener(entry));
+      if (listener) changeSoon(entry.target, () => listener(entry));
     }
-    if (changes.size > 0 && frame === 0) frame = requestAnimationFrame(applyChanges);
   },
   { rootMargin: MARGIN },
 );
