@@ -107,7 +107,10 @@ function cutProgramme({ name, timeS, temperatureK }: ProgrammeTable, untilS: num
         ((temperatureK[i] - temperatureK[i - 1]) * (end - timeS[i - 1])) / (timeS[i] - timeS[i - 1]);
   return {
     name,
-    timeS: Float64Array.from([...timeS.subarray(0, rows), Math.max(end, timeS[rows - 1] * (1 + 1e-12) + 1e-12)]),
+    timeS: Float64Array.from([
+      ...timeS.subarray(0, rows),
+      Math.max(end, timeS[rows - 1] + 1e-9 * (1 + Math.abs(timeS[rows - 1]))),
+    ]),
     temperatureK: Float64Array.from([...temperatureK.subarray(0, rows), last]),
   };
 }

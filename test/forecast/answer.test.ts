@@ -147,6 +147,23 @@ describe('programmes', () => {
       expect(row.upper95!).toBeCloseTo(at[i].upper95!, 5);
     });
   });
+  test('methods that differ are told on a programme too, however steep it is and wherever its clock starts', () => {
+    // Far below the data, where a bent law and a straight one part; then the same ramp within the data, where they do not.
+    const bent = sourceOf(LAW, {}, {});
+    const hold = programme([
+      [-500, 500],
+      [1e12, 500],
+    ]);
+    for (const row of answerQuestion(bent, { question: 'time_to_conversion', conversion: 1e-6, programme: hold }))
+      expect(row.flags).toContain('forecasts-disagree');
+    const ramp = programme([
+      [-500, 600],
+      [-400, 700],
+    ]);
+    const rows = answerQuestion(source, { question: 'time_to_conversion', conversion: 0.5, programme: ramp });
+    for (const row of rows) expect(row.flags).not.toContain('forecasts-disagree');
+    expect(Math.abs(rows[0].value! - rows[1].value!)).toBeLessThan(1e-3);
+  });
   test('what is not reached has no value and says so', () => {
     const short = programme(
       [
