@@ -57,14 +57,7 @@ export function analyseSegment(
     const toS = after ? after.peakS - FOOT * after.leftS : endS;
     const melting =
       segment.kind === 'heating'
-        ? findMelting(
-            timeS,
-            c.y,
-            lowerBound(timeS, last.peakS),
-            lowerBound(timeS, toS),
-            highest,
-            last.leftS + last.rightS,
-          )
+        ? findMelting(timeS, c.y, lowerBound(timeS, last.peakS), lowerBound(timeS, toS), highest, last)
         : undefined;
     meltingS ??= melting?.onsetS;
     const room: Room = {

@@ -1,0 +1,34 @@
+import { expect, test } from 'vitest';
+import { reduceHolds } from './holds.ts';
+import { DIFFICULTIES, reduceSimulated } from './reduction.ts';
+import { reduceTwoEvents } from './two-events.ts';
+
+const difficulty = (name: string) => {
+  const found = DIFFICULTIES.find((d) => d.name === name);
+  if (!found) throw new Error(`no difficulty ${name}`);
+  return found;
+};
+
+// The whole table: `npm run study -- reduction`. Aim: T(0.5) within 1 % of the width, Tp and ΔH within 2 %.
+test.each(['plain: noise 0.3 %, drift 5 %, 100 points', 'drift 20 %, parabola', 'glass transition 6 widths below'])(
+  '%s: three scans within the aim',
+  (name) => {
+    for (let index = 0; index < 3; index++) {
+      const result = reduceSimulated(difficulty(name), 'test', index);
+      expect(Math.abs(result.peak ?? 1), `${name} ${index}`).toBeLessThan(0.02);
+      expect(Math.abs(result.half ?? 1), `${name} ${index}`).toBeLessThan(0.01);
+      expect(Math.abs(result.enthalpy ?? 1), `${name} ${index}`).toBeLessThan(0.02);
+    }
+  },
+);
+
+test('two events 35 to 60 K apart: both Kissinger energies within 3 %', () => {
+  for (const error of reduceTwoEvents('test', 0).errors) expect(Math.abs(error)).toBeLessThan(0.03);
+});
+
+test('five holds: n and E within 4 %', () => {
+  const { exponentErrors, energyError, lost } = reduceHolds('test', 0);
+  expect(lost).toBe(0);
+  for (const error of exponentErrors) expect(Math.abs(error)).toBeLessThan(0.04);
+  expect(Math.abs(energyError)).toBeLessThan(0.04);
+});
