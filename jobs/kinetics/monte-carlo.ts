@@ -1,4 +1,5 @@
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
+import { studentQuantile } from '../numeric/distributions.ts';
 import type { Random } from '../numeric/random.ts';
 import type { DrawCauses } from './draw-spread.ts';
 import { CONVERSION_COUNT, type EventColumns, type EventData, emptyColumns, POOLED } from './event-data.ts';
@@ -16,6 +17,8 @@ export interface ScatterModel {
   weights: Float64Array;
   /** K, scatter of T between scans, per instrument of the event */
   sigmaK: Float64Array;
+  /** degrees of freedom behind each */
+  scatterDegrees: Float64Array;
   peak: Trend;
   width: Trend;
   /** per conversion, over the curve scans */
@@ -34,29 +37,43 @@ const MIDDLE = 9;
 /** An instrument's own scatter is shrunk towards that of all by this many scans' worth. */
 const SHRINK_SCANS = 1;
 
-/** @param distinct number of distinct rates */
+/**
+ * The trend is bent where the data can bear it and ask for it: left in where it is not seen, two scans of a second instrument at the far
+ * end define it alone and hide their own scatter (88 % coverage).
+ * @param distinct number of distinct rates
+ */
 export function modelScatter(data: EventData, curves: Uint16Array, distinct: number): ScatterModel {
-  const n = data.n;
   const span = Math.max(...data.rate) / Math.min(...data.rate);
-  const bent = distinct >= BENT_FROM_RATES && span >= BENT_FROM_SPAN && n >= 5;
-  const trendParameters = bent ? 3 : 2;
+  const bearable = distinct >= BENT_FROM_RATES && span >= BENT_FROM_SPAN && data.n >= 5;
+  if (!bearable) return modelWithTrend(data, curves, false);
+  const bent = modelWithTrend(data, curves, true);
+  const straight = fitTemperatureTrend(data.rate, data.peakK, bent.weights, false);
+  const sum = (t: Trend) => t.residuals.reduce((total, r, i) => total + bent.weights[i] * r * r, 0);
+  const gained = sum(straight) - sum(bent.peak);
+  const degrees = data.n - 3;
+  const seen = gained > (studentQuantile(0.975, degrees) ** 2 * sum(bent.peak)) / degrees;
+  return seen ? bent : modelWithTrend(data, curves, false);
+}
+
+function modelWithTrend(data: EventData, curves: Uint16Array, bent: boolean): ScatterModel {
+  const n = data.n;
   // Too few of the scans may have curves to bear the bent trend that the peaks bear.
   const bentCurves = bent && curves.length >= 5;
   const hasTrend = curves.length > 2;
   let weights: Float64Array = new Float64Array(n).fill(1);
-  let sigmaK: Float64Array = new Float64Array(data.instruments.length);
+  let scatter = { sigmaK: new Float64Array(0), degrees: new Float64Array(0) };
   const pick = (from: Float64Array, k: number) => Float64Array.from(curves, (i) => from[i * CONVERSION_COUNT + k]);
   const some = <A extends ArrayLike<number>>(a: A) => Float64Array.from(curves, (i) => a[i]);
   // Weights follow from the scatter about a trend that is fitted with them: a few rounds settle that.
-  for (let round = 0; round < (data.instruments.length > 1 ? 4 : 1); round++) {
+  for (let round = 0; round < (data.instruments.length > 1 ? 6 : 1); round++) {
     const peak = fitTemperatureTrend(data.rate, data.peakK, weights, bent);
     const curve = hasTrend
       ? [POOLED.from, MIDDLE, POOLED.to - 1].map((k) =>
           fitTemperatureTrend(some(data.rate), pick(data.temperatureK, k), some(weights), bentCurves),
         )
       : [];
-    sigmaK = instrumentScatter(data, [peak, ...curve], curves);
-    if (data.instruments.length > 1) weights = Float64Array.from(data.instrument, (at) => 1 / sigmaK[at] ** 2);
+    scatter = instrumentScatter(data, [peak, ...curve], curves);
+    if (data.instruments.length > 1) weights = Float64Array.from(data.instrument, (at) => 1 / scatter.sigmaK[at] ** 2);
   }
   const mean = weights.reduce((s, w) => s + w, 0) / n;
   weights = weights.map((w) => w / mean);
@@ -72,9 +89,10 @@ export function modelScatter(data: EventData, curves: Uint16Array, distinct: num
   return {
     data,
     bent,
-    trendParameters,
+    trendParameters: bent ? 3 : 2,
     weights,
-    sigmaK,
+    sigmaK: scatter.sigmaK,
+    scatterDegrees: scatter.degrees,
     peak: fitTemperatureTrend(data.rate, data.peakK, weights, bent),
     width: fitLogTrend(data.rate, data.widthK, weights),
     temperature,
@@ -83,22 +101,34 @@ export function modelScatter(data: EventData, curves: Uint16Array, distinct: num
   };
 }
 
-/** Root mean square of residual/√(1 − h) per instrument over the trends given; the first covers all scans, the others the curve scans. */
-function instrumentScatter(data: EventData, trends: Trend[], curves: Uint16Array): Float64Array {
+/**
+ * Scatter of each instrument, σ² = Σ r²/Σ (1 − h) over its scans (restricted maximum likelihood's fixed point), shrunk towards that of all,
+ * with the degrees of freedom behind it, Σ (1 − h) and what the shrinkage adds. The first trend covers all scans, the others the curve scans.
+ */
+function instrumentScatter(
+  data: EventData,
+  trends: Trend[],
+  curves: Uint16Array,
+): { sigmaK: Float64Array<ArrayBuffer>; degrees: Float64Array<ArrayBuffer> } {
   const count = data.instruments.length;
-  const sums = new Float64Array(count);
-  const scans = new Float64Array(count);
+  const squares = new Float64Array(count);
+  const degrees = new Float64Array(count);
   trends.forEach((t, which) => {
     t.residuals.forEach((r, j) => {
       const at = data.instrument[which === 0 ? j : curves[j]];
-      sums[at] += (r * r) / (1 - t.leverage[j]) / trends.length;
-      scans[at] += 1 / trends.length;
+      squares[at] += (r * r) / trends.length;
+      degrees[at] += (1 - t.leverage[j]) / trends.length;
     });
   });
-  const pooled = sums.reduce((s, v) => s + v, 0) / scans.reduce((s, v) => s + v, 0);
-  return sums.map((s, at) =>
-    Math.max(LEAST_SIGMA_K, Math.sqrt((s + SHRINK_SCANS * pooled) / (scans[at] + SHRINK_SCANS))),
-  );
+  const all = (v: Float64Array) => v.reduce((s, x) => s + x, 0);
+  const pooled = all(squares) / Math.max(1e-9, all(degrees));
+  const extra = count > 1 ? SHRINK_SCANS : 0;
+  return {
+    sigmaK: Float64Array.from(squares, (s, at) =>
+      Math.max(LEAST_SIGMA_K, Math.sqrt((s + extra * pooled) / Math.max(1e-9, degrees[at] + extra))),
+    ),
+    degrees: degrees.map((d) => d + extra),
+  };
 }
 
 /**
@@ -162,12 +192,10 @@ export function drawBuffer(data: EventData): EventColumns {
   return columns;
 }
 
-/** Degrees of freedom behind the scatter of each scan's instrument: its share of n − p, and what the shrinkage adds. */
+/** Degrees of freedom behind the scatter of each scan's instrument, at most n − p. */
 export function scanDegrees(model: ScatterModel): number[] {
-  const { data } = model;
+  const { data, scatterDegrees } = model;
   const whole = Math.max(1, data.n - model.trendParameters);
   if (data.instruments.length < 2) return new Array<number>(data.n).fill(whole);
-  const count = new Array<number>(data.instruments.length).fill(0);
-  for (const at of data.instrument) count[at]++;
-  return Array.from(data.instrument, (at) => Math.min(whole, (count[at] * whole) / data.n + SHRINK_SCANS));
+  return Array.from(data.instrument, (at) => Math.min(whole, scatterDegrees[at]));
 }
