@@ -121,6 +121,7 @@ export interface JudgeResult {
   verdicts: VerdictRow[];
   events: EventVerdict[];
   parameters: ParameterRow[];
-  sharedLaws: { law: SharedLaw; draws: SharedLawDraws }[];
+  /** degreesOfFreedom: n − p of the law's fit */
+  sharedLaws: { law: SharedLaw; draws: SharedLawDraws; degreesOfFreedom: number }[];
   flags: Flag[];
 }
