@@ -1,4 +1,5 @@
 import { type Flag, flag, quote } from '../../schema/wire/flags.ts';
+import type { PeakSheetRow } from '../../schema/wire/forecasts.ts';
 import type { InstrumentSheetRow } from '../../schema/wire/scan.ts';
 import type { Role, ScanState } from '../../schema/wire/states.ts';
 import { sheetKind } from '../instrument/index.ts';
@@ -14,6 +15,7 @@ import {
   reassignScan,
   replaceFlags,
   type StoredFile,
+  savePeaksHashes,
   settleInstruments,
   settleSamples,
 } from '../store/assignment-rows.ts';
@@ -21,6 +23,7 @@ import { endCorrections, loadCorrections, moveCorrections, type StoredCorrection
 import { hashOf } from '../store/ids.ts';
 import { queueReductions } from '../store/job-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
+import { loadGoals, loadPrograms, loadQuestionsHash, loadViscosities, saveQuestions } from '../store/question-rows.ts';
 import { assignScans, type WantedScan } from './assign-scans.ts';
 import { diffScans, type HashedScan, hashScanSheet, type ScanChanges } from './diff-scans.ts';
 
@@ -51,6 +54,9 @@ export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<voi
     ),
   }));
   const changes = diffScans(rows.scans, wanted);
+  const peaks = hashPeaks(rows.sheets.peaks);
+  const questionsHash = hashOf(await loadQuestions(ports, job.campaignId, rows));
+  const asked = questionsHash !== (await loadQuestionsHash(ports, job.campaignId));
   const placed = (scan: HashedScan): AssignedScan => placeScan(scan, fileOf.get(scan.fileId) as StoredFile);
   await completeJob(
     ports,
@@ -60,7 +66,18 @@ export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<voi
       ...changes.update.map(({ id, wanted: scan }) => reassignScan(db, id, placed(scan))),
       ...changes.remove.map((scan) => deleteScan(db, scan.id)),
       ...followFiles(db, job.campaignId),
-      ...settleSamples(db, job.campaignId, namedSamples(wanted), changedNames(changes, 'sample')),
+      ...settleSamples(
+        db,
+        job.campaignId,
+        [...new Set([...namedSamples(wanted), ...peaks.keys()])].sort(),
+        [...new Set([...changedNames(changes, 'sample'), ...changedPeaks(rows.peaksHashes, peaks)])].sort(),
+      ),
+      ...savePeaksHashes(
+        db,
+        job.campaignId,
+        changedPeaks(rows.peaksHashes, peaks).map((sample) => [sample, peaks.get(sample) ?? '']),
+      ),
+      ...(asked ? saveQuestions(db, job.campaignId, now, questionsHash) : []),
       ...settleInstruments(db, job.campaignId, instrumentChanges(rows, instrumentRows, wanted, changes)),
       ...replaceFlags(db, job.campaignId, 'assign', flags),
       ...moveCorrections(db, moved),
@@ -74,6 +91,33 @@ export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<voi
     ],
     { instruments: true, samples: true },
   );
+}
+
+/** Hash of what peaks.csv says of each sample that it names. */
+function hashPeaks(rows: readonly PeakSheetRow[]): Map<string, string> {
+  const bySample = new Map<string, string[]>();
+  for (const row of rows) bySample.set(row.sample, [...(bySample.get(row.sample) ?? []), hashOf(row)]);
+  return new Map([...bySample].map(([sample, hashes]) => [sample, hashOf(hashes)]));
+}
+
+/** Samples whose rows of peaks.csv are others than before. */
+const changedPeaks = (before: ReadonlyMap<string, string>, now: ReadonlyMap<string, string>): string[] =>
+  [...new Set([...before.keys(), ...now.keys()])]
+    .filter((sample) => (before.get(sample) ?? '') !== (now.get(sample) ?? ''))
+    .sort();
+
+/** What verdicts and forecasts rest on beside the scans. */
+async function loadQuestions(ports: Ports, campaignId: string, { sheets }: AssignmentRows): Promise<unknown> {
+  return [
+    await loadGoals(ports, campaignId),
+    await loadViscosities(ports, campaignId),
+    (await loadPrograms(ports, campaignId)).map(({ path, sha256 }) => [path, sha256]),
+    sheets.instruments.map(({ instrument, rateMinKPerS, rateMaxKPerS }) => ({
+      instrument,
+      rateMinKPerS,
+      rateMaxKPerS,
+    })),
+  ];
 }
 
 /** The stored scan that a correction was made on. */
@@ -142,7 +186,7 @@ function instrumentChanges(
   changes: ScanChanges,
 ): InstrumentChanges {
   const used = wanted.filter((scan) => scan.disposition === 'assigned').map((scan) => scan.instrument as string);
-  const names = new Set([...used, ...sheet.keys()]);
+  const names = new Set([...used, ...rows.sheets.peaks.map((row) => row.instrument), ...sheet.keys()]);
   const stored = new Map(rows.instruments.map((row) => [row.instrument, row]));
   const moved = new Set(changedNames(changes, 'instrument'));
   const withStandards = new Set(changedNames(changes, 'instrument', 'standard'));

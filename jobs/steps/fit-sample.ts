@@ -1,26 +1,41 @@
-import type { FitInput, FitResult, FitScan } from '../../schema/wire/parameters.ts';
-import { decodeReduceOutcome } from '../../schema/wire/reduced-blob.ts';
+import { decodePacked, encodePacked } from '../../schema/wire/packed-blob.ts';
+import type { FitResult } from '../../schema/wire/parameters.ts';
 import type { Ports } from '../ports/index.ts';
-import { type FitRows, type FitScanRow, loadFit, markFitted, saveFit } from '../store/fit-rows.ts';
-import { hashOf } from '../store/ids.ts';
+import { type FitRows, markFitted, type ScanEventNumbers, saveFit } from '../store/fit-rows.ts';
+import { queueNext } from '../store/judge-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
 import { listSamples } from '../store/views.ts';
 import { compareText } from './assign-scans.ts';
-import { DerivedLost, readDerived } from './columns-store.ts';
-import { FIT_DRAWS, STEP_VERSIONS } from './settings.ts';
+import { readDerived } from './columns-store.ts';
+import { inputsKeyOf, loadFitScans, loadOrderedFit, seedOf } from './sample-inputs.ts';
+import { FIT_DRAWS } from './settings.ts';
+
+/** A fit as it is kept, with the numbers that its matching gave the events of each scan. */
+export interface StoredFit {
+  fit: FitResult;
+  eventNumbers: ScanEventNumbers[];
+}
 
 /** Step `fit-sample`: every law on the reduced scans of one sample. The same inputs as the stored fit: only looked up. */
 export async function fitStoredSample(ports: Ports, job: ClaimedJob): Promise<void> {
   const rows = await loadOrderedFit(ports, job.subject);
   if (!rows) return completeJob(ports, job);
   const { sample } = rows;
-  const fitKey = fitKeyOf(rows);
+  const fitKey = inputsKeyOf(rows);
   if (sample.fitKey === fitKey) {
-    const fit = await readDerived(ports, blobKeyOf(rows, fitKey), decodeFit);
-    if (fit) return completeJob(ports, job, (db) => markFitted(db, sample, fit.state, fit.reason));
+    const stored = await readStoredFit(ports, rows, fitKey);
+    if (stored) {
+      return completeJob(ports, job, (db, now) => [
+        ...markFitted(db, sample, stored.fit, stored.eventNumbers),
+        queueNext(db, sample, 'judge-curvature', now),
+      ]);
+    }
   }
-  const fit = await fitOrLookUp(ports, rows, fitKey);
-  await completeJob(ports, job, (db) => saveFit(db, sample, fitKey, fit));
+  const { fit, eventNumbers } = (await readStoredFit(ports, rows, fitKey)) ?? (await fitRows(ports, rows, fitKey));
+  await completeJob(ports, job, (db, now) => [
+    ...saveFit(db, sample, fitKey, fit, eventNumbers),
+    queueNext(db, sample, 'judge-curvature', now),
+  ]);
 }
 
 /** Seeds of the draws by sample, as the stored fits had them: for the record of a run. A sample without a reduced scan has none. */
@@ -28,75 +43,37 @@ export async function readSampleSeeds(ports: Ports, campaignId: string): Promise
   const seeds: [string, string][] = [];
   for (const { id, sample } of await listSamples(ports, campaignId)) {
     const rows = await loadOrderedFit(ports, id);
-    if (rows && rows.scans.length > 0) seeds.push([sample, seedOf(rows)]);
+    if (rows && rows.scans.length + rows.peaks.length > 0) seeds.push([sample, seedOf(rows)]);
   }
   return Object.fromEntries(seeds.sort((a, b) => compareText(a[0], b[0])));
 }
 
-/** Order by content, not by arrival. */
-async function loadOrderedFit(ports: Ports, sampleId: string): Promise<FitRows | undefined> {
-  const rows = await loadFit(ports, sampleId);
-  rows?.scans.sort((a, b) => compareText(orderOf(a), orderOf(b)));
-  rows?.calibrations.sort((a, b) => compareText(a.instrument, b.instrument));
-  return rows;
-}
-
-const decodeFit = (bytes: Uint8Array) => JSON.parse(new TextDecoder().decode(bytes)) as FitResult;
 const blobKeyOf = ({ sample }: FitRows, fitKey: string) => `derived/${sample.campaignId}/fit-${fitKey}`;
 
-async function fitOrLookUp(ports: Ports, rows: FitRows, fitKey: string): Promise<FitResult> {
-  const key = blobKeyOf(rows, fitKey);
-  const stored = await readDerived(ports, key, decodeFit);
-  if (stored) return stored;
-  const scans = (await Promise.all(rows.scans.map((scan) => fitScansOf(ports, scan)))).flat();
-  const input: FitInput = {
+/** The stored fit of these inputs, or undefined where it has to be made (again). */
+export async function readStoredFit(ports: Ports, rows: FitRows, fitKey: string): Promise<StoredFit | undefined> {
+  const stored = await readDerived(
+    ports,
+    blobKeyOf(rows, fitKey),
+    decodePacked<{ fit: FitResult; numbers: number[][] }>,
+  );
+  return stored && { fit: stored.fit, eventNumbers: numbersOf(rows, stored.numbers) };
+}
+
+/** Scans are kept by their place in the inputs' order: their ids are no part of a result. */
+const numbersOf = ({ scans }: FitRows, numbers: readonly number[][]): ScanEventNumbers[] =>
+  scans.map(({ scanId }, i) => ({ scanId, numbers: numbers[i] }));
+
+async function fitRows(ports: Ports, rows: FitRows, fitKey: string): Promise<StoredFit> {
+  const { scans, eventNumbers } = await loadFitScans(ports, rows);
+  const fit = await ports.compute.fitSample({
     sample: rows.sample.sample,
     scans,
     instruments: rows.calibrations,
     seed: seedOf(rows),
     draws: FIT_DRAWS,
-  };
-  const fit = await ports.compute.fitSample(input);
-  await ports.blobs.put(key, new TextEncoder().encode(JSON.stringify(fit)));
-  return fit;
+  });
+  const numbers = eventNumbers.map((one) => one.numbers);
+  await ports.blobs.put(blobKeyOf(rows, fitKey), encodePacked({ fit, numbers }));
+  return { fit, eventNumbers };
 }
-
-/** The events of one reduced scan. */
-async function fitScansOf(
-  ports: Ports,
-  { path, sha256, instrument, sheetRow, reducedKey }: FitScanRow,
-): Promise<FitScan[]> {
-  const outcome = await readDerived(ports, reducedKey, decodeReduceOutcome);
-  if (!outcome) throw new DerivedLost(reducedKey);
-  if (!outcome.ok)
-    throw new Error(`${path} counts as reduced, but blob ${reducedKey} holds a refusal: ${outcome.reason}`);
-  const { events, segment } = outcome.reduced;
-  return events.map((event) => ({
-    file: path,
-    sha256,
-    segment,
-    instrument,
-    ...(sheetRow?.replicate !== undefined && { replicate: sheetRow.replicate }),
-    event,
-  }));
-}
-
-/** Order of scans by content, not by path: a renamed file changes no result. */
-const orderOf = ({ sha256, instrument, sheetRow }: FitScanRow) => `${sha256} ${sheetRow?.segment ?? 0} ${instrument}`;
-
-/** What the sheets say of a scan, without where they say it. */
-const sheetValues = ({ sha256, instrument, sheetRow }: FitScanRow) => [
-  sha256,
-  instrument,
-  sheetRow && { ...sheetRow, file: undefined, line: undefined, note: undefined },
-];
-
-/** Seed of the draws: sorted input hashes, sheet values, step version and settings; never ids, paths or order of arrival (METHODS 11). */
-function seedOf({ scans, calibrations, sampleRow }: FitRows): string {
-  const values = [scans.map(sheetValues), calibrations, sampleRow && { ...sampleRow, line: undefined }];
-  return hashOf(['fit-sample', STEP_VERSIONS, FIT_DRAWS, values]);
-}
-
-/** Key of the result: as the seed, and the paths, which its flags quote. */
-const fitKeyOf = (rows: FitRows) =>
-  hashOf([seedOf(rows), rows.sample.sample, rows.scans.map(({ path, reducedKey }) => [path, reducedKey])]);

@@ -9,6 +9,8 @@ import { assignCampaign } from './assign-campaign.ts';
 import { calibrateInstrument } from './calibrate-instrument.ts';
 import type { ColumnsCache } from './columns-store.ts';
 import { fitStoredSample } from './fit-sample.ts';
+import { forecastStoredSample } from './forecast-sample.ts';
+import { judgeStoredSample } from './judge-curvature.ts';
 import { planStoredCampaign } from './plan-campaign.ts';
 import { readScanFile } from './read-scan.ts';
 import { readSheetFile } from './read-sheet.ts';
@@ -24,6 +26,8 @@ const STEPS: Record<Step, (ports: Ports, job: ClaimedJob, cache: ColumnsCache) =
   'calibrate-instrument': calibrateInstrument,
   'reduce-scan': reduceStoredScan,
   'fit-sample': fitStoredSample,
+  'judge-curvature': judgeStoredSample,
+  'forecast-sample': forecastStoredSample,
   'read-scan': readScanFile,
   'plan-campaign': planStoredCampaign,
 };
@@ -50,6 +54,8 @@ export function failStep(ports: Ports, job: ClaimedJob, error: unknown): Promise
       case 'fit-sample':
         return saveFailedSample(db, job.subject, said);
       case 'assign-scans':
+      case 'judge-curvature':
+      case 'forecast-sample':
       case 'plan-campaign':
         return [];
     }

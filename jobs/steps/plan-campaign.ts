@@ -1,4 +1,5 @@
 import type { CoverageScan } from '../../schema/wire/campaign.ts';
+import type { PeakSheetRow } from '../../schema/wire/forecasts.ts';
 import { planCampaign } from '../campaign/index.ts';
 import type { Ports } from '../ports/index.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
@@ -6,16 +7,19 @@ import { loadPlan, type PlanRows, savePlan } from '../store/plan-rows.ts';
 
 /** Step `plan-campaign`: coverage and gaps from the reduced scans. */
 export async function planStoredCampaign(ports: Ports, job: ClaimedJob): Promise<void> {
-  const { samples, scans, calibrations } = await loadPlan(ports, job.campaignId);
-  const used = new Set(scans.map((scan) => scan.instrument));
+  const { samples, scans, peaks, calibrations } = await loadPlan(ports, job.campaignId);
+  const used = new Set([...scans, ...peaks].map((scan) => scan.instrument));
   const plan = planCampaign({
     samples,
-    scans: scans.filter((scan) => scan.role === 'sample').flatMap(coverageScanOf),
+    scans: [
+      ...scans.filter((scan) => scan.role === 'sample').flatMap(coverageScanOf),
+      ...peaks.flatMap(coveragePeakOf),
+    ],
     instruments: calibrations
       .filter((row) => used.has(row.instrument))
       .map(({ instrument, kind, standards }) => ({ instrument, kind, standards })),
   });
-  await completeJob(ports, job, (db) => [savePlan(db, job.campaignId, { ...plan, advice: [] })]);
+  await completeJob(ports, job, (db) => [savePlan(db, job.campaignId, plan)]);
 }
 
 /** A heating scan at its measured rate. Coolings and holds fill no decade of heating rate. */
@@ -27,3 +31,9 @@ function coverageScanOf({ sample, instrument, sheetRow, result }: PlanRows['scan
     { sample, instrument, rateKPerS, ...(sheetRow?.replicate !== undefined && { replicate: sheetRow.replicate }) },
   ];
 }
+
+/** A row of peaks.csv fills its decade as a scan does, unless it tells of no event. */
+const coveragePeakOf = ({ sample, instrument, rateKPerS, peakK, replicate }: PeakSheetRow): CoverageScan[] =>
+  peakK === undefined || rateKPerS <= 0
+    ? []
+    : [{ sample, instrument, rateKPerS, ...(replicate !== undefined && { replicate }) }];

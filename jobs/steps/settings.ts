@@ -1,5 +1,11 @@
 /** Part of every result key: grows when a step's results change for the same inputs, so that stored ones are not taken for its own. */
-export const STEP_VERSIONS = { 'read-scan': 1, 'reduce-scan': 1, 'fit-sample': 1 } as const;
+export const STEP_VERSIONS = {
+  'read-scan': 1,
+  'reduce-scan': 2,
+  'fit-sample': 2,
+  'judge-curvature': 1,
+  'forecast-sample': 1,
+} as const;
 
 /** Draws of the Monte Carlo behind each interval (METHODS 11). */
 export const FIT_DRAWS = 400;

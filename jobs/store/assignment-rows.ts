@@ -12,6 +12,7 @@ import {
   sheetRows,
 } from '../../schema/tables/index.ts';
 import type { Flag } from '../../schema/wire/flags.ts';
+import type { PeakSheetRow } from '../../schema/wire/forecasts.ts';
 import type { InstrumentSheetRow, SampleSheetRow, ScanSheetRow } from '../../schema/wire/scan.ts';
 import type { Role, ScanState } from '../../schema/wire/states.ts';
 import type { Ports } from '../ports/index.ts';
@@ -52,7 +53,14 @@ export interface AssignmentRows {
   files: StoredFile[];
   scans: StoredScan[];
   instruments: StoredInstrument[];
-  sheets: { scans: ScanSheetRow[]; instruments: InstrumentSheetRow[]; samples: SampleSheetRow[] };
+  sheets: {
+    scans: ScanSheetRow[];
+    instruments: InstrumentSheetRow[];
+    samples: SampleSheetRow[];
+    peaks: PeakSheetRow[];
+  };
+  /** Hash of the rows of peaks.csv that each stored sample was fitted with last. */
+  peaksHashes: ReadonlyMap<string, string>;
 }
 
 /** Rows of one kind of sheet as they stand: sheets by path, rows in their order; those of one sample, or all. */
@@ -114,7 +122,16 @@ export async function loadAssignment(ports: Ports, campaignId: string): Promise<
       scans: await loadSheetRows<ScanSheetRow>(ports, campaignId, 'scans'),
       instruments: await loadSheetRows<InstrumentSheetRow>(ports, campaignId, 'instruments'),
       samples: await loadSheetRows<SampleSheetRow>(ports, campaignId, 'samples'),
+      peaks: await loadSheetRows<PeakSheetRow>(ports, campaignId, 'peaks'),
     },
+    peaksHashes: new Map(
+      (
+        await read
+          .select({ sample: samples.sample, hash: samples.peaksHash })
+          .from(samples)
+          .where(eq(samples.campaignId, campaignId))
+      ).map(({ sample, hash }) => [sample, hash]),
+    ),
   };
 }
 
@@ -141,7 +158,7 @@ export const insertScan = (db: LibSQLDatabase, campaignId: string, scan: Assigne
 export const reassignScan = (db: LibSQLDatabase, scanId: string, scan: AssignedScan): Statement =>
   db
     .update(scans)
-    .set({ ...scan, reducedKey: null, result: null, inputsRevision: sql`inputs_revision + 1` })
+    .set({ ...scan, reducedKey: null, result: null, eventNumbers: null, inputsRevision: sql`inputs_revision + 1` })
     .where(eq(scans.id, scanId));
 
 export const deleteScan = (db: LibSQLDatabase, scanId: string): Statement =>
@@ -161,7 +178,20 @@ export const followFiles = (db: LibSQLDatabase, campaignId: string): Statement[]
       and file_id in (select id from files where campaign_id = ${campaignId} and superseded = 1)`),
 ];
 
-/** Makes the rows of samples that scans name, touches those whose scans changed, removes those that nobody names any more with their results. */
+/** Keeps what the rows of peaks.csv say of each sample, for the next comparison. */
+export const savePeaksHashes = (
+  db: LibSQLDatabase,
+  campaignId: string,
+  hashes: readonly (readonly [sample: string, hash: string])[],
+): Statement[] =>
+  hashes.map(([sample, peaksHash]) =>
+    db
+      .update(samples)
+      .set({ peaksHash })
+      .where(and(eq(samples.campaignId, campaignId), eq(samples.sample, sample))),
+  );
+
+/** Makes the rows of samples that scans or peaks name, touches those whose scans changed, removes those that nobody names any more with their results. */
 export function settleSamples(
   db: LibSQLDatabase,
   campaignId: string,
@@ -193,13 +223,20 @@ export function settleSamples(
     db.run(sql`
       delete from samples where campaign_id = ${campaignId} and not exists (
         select 1 from scans s where s.campaign_id = ${campaignId} and s.sample = samples.sample and s.role = 'sample'
-          and s.disposition = 'assigned' and s.status <> 'superseded')`),
-    db.run(sql`
-      delete from parameters where campaign_id = ${campaignId}
-        and sample not in (select sample from samples where campaign_id = ${campaignId})`),
-    db.run(sql`
-      delete from flags where campaign_id = ${campaignId} and source like 'fit:%'
-        and substr(source, 5) not in (select sample from samples where campaign_id = ${campaignId})`),
+          and s.disposition = 'assigned' and s.status <> 'superseded')
+        and not exists (
+          select 1 from sheet_rows p where p.campaign_id = ${campaignId} and p.sheet = 'peaks'
+            and json_extract(p.body, '$.sample') = samples.sample)`),
+    ...['parameters', 'verdicts', 'forecasts', 'advice'].map((table) =>
+      db.run(sql`
+        delete from ${sql.raw(table)} where campaign_id = ${campaignId}
+          and sample not in (select sample from samples where campaign_id = ${campaignId})`),
+    ),
+    ...['fit:', 'judge:', 'forecast:'].map((source) =>
+      db.run(sql`
+        delete from flags where campaign_id = ${campaignId} and source like ${`${source}%`}
+          and substr(source, ${source.length + 1}) not in (select sample from samples where campaign_id = ${campaignId})`),
+    ),
   );
   return statements;
 }

@@ -1,27 +1,45 @@
-import { and, eq, inArray, sql } from 'drizzle-orm';
+import { and, asc, eq, inArray, sql } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
-import { files, instruments, parameters, samples, scans } from '../../schema/tables/index.ts';
-import type { FitResult, ParameterRow } from '../../schema/wire/parameters.ts';
+import { files, instruments, samples, scans, sheetRows } from '../../schema/tables/index.ts';
+import type { PeakSheetRow } from '../../schema/wire/forecasts.ts';
+import type { FitResult } from '../../schema/wire/parameters.ts';
+import type { ReducedSummary } from '../../schema/wire/reduced-blob.ts';
 import type { InstrumentCalibration, SampleSheetRow, ScanSheetRow } from '../../schema/wire/scan.ts';
 import type { Ports } from '../ports/index.ts';
 import { replaceFlags } from './assignment-rows.ts';
 import type { Statement } from './fence.ts';
+import { replaceParameters } from './parameter-rows.ts';
 import { loadSampleRow } from './scan-rows.ts';
-import { insertRows, json } from './statement.ts';
+import { json, text } from './statement.ts';
 
 export type SampleRow = typeof samples.$inferSelect;
 
+/** Numbers of a scan's events over all scans of its sample, in the order of its own events. */
+export interface ScanEventNumbers {
+  scanId: string;
+  numbers: number[];
+}
+
 export interface FitScanRow {
+  scanId: string;
   path: string;
   sha256: string;
   instrument: string;
   sheetRow: ScanSheetRow | null;
   reducedKey: string;
+  result: ReducedSummary | null;
+}
+
+/** A row of peaks.csv with the sheet it stands in. */
+export interface PeakRow {
+  path: string;
+  row: PeakSheetRow;
 }
 
 export interface FitRows {
   sample: SampleRow;
   scans: FitScanRow[];
+  peaks: PeakRow[];
   calibrations: InstrumentCalibration[];
   sampleRow: SampleSheetRow | undefined;
 }
@@ -32,11 +50,13 @@ export async function loadFit(ports: Ports, sampleId: string): Promise<FitRows |
   if (!sample) return undefined;
   const rows = await read
     .select({
+      scanId: scans.id,
       path: files.path,
       sha256: files.sha256,
       instrument: scans.instrument,
       sheetRow: scans.sheetRow,
       reducedKey: scans.reducedKey,
+      result: scans.result,
     })
     .from(scans)
     .innerJoin(files, eq(files.id, scans.fileId))
@@ -48,7 +68,10 @@ export async function loadFit(ports: Ports, sampleId: string): Promise<FitRows |
         eq(scans.status, 'reduced'),
       ),
     );
-  const names = [...new Set(rows.map((row) => row.instrument as string))];
+  const peaks = await loadPeakRows(ports, sample.campaignId, sample.sample);
+  const names = [
+    ...new Set([...rows.map((row) => row.instrument as string), ...peaks.map(({ row }) => row.instrument)]),
+  ];
   const calibrated = names.length
     ? await read
         .select({ calibration: instruments.calibration })
@@ -58,46 +81,65 @@ export async function loadFit(ports: Ports, sampleId: string): Promise<FitRows |
   return {
     sample,
     scans: rows as FitScanRow[],
+    peaks,
     calibrations: calibrated.flatMap((row) => row.calibration ?? []),
     sampleRow: await loadSampleRow(ports, sample.campaignId, sample.sample),
   };
 }
 
-/** Rows of one statement: full ones have one text, which stays prepared. */
-const ROWS_A_STATEMENT = 50;
-
-/** Replaces the fit of a sample. Where inputs have changed since they were loaded the newer fit is waited for. */
-export function saveFit(db: LibSQLDatabase, sample: SampleRow, fitKey: string, fit: FitResult): Statement[] {
-  const { campaignId, sample: name } = sample;
-  const statements: Statement[] = [
-    db.delete(parameters).where(and(eq(parameters.campaignId, campaignId), eq(parameters.sample, name))),
-  ];
-  for (let at = 0; at < fit.parameters.length; at += ROWS_A_STATEMENT) {
-    const part = fit.parameters.slice(at, at + ROWS_A_STATEMENT);
-    statements.push(
-      insertRows(
-        'parameters',
-        PARAMETER_COLUMNS,
-        part.map((row, i) => parameterValues(campaignId, at + i, row)),
+/** Rows of peaks.csv, of one sample or of all; sheets by path, rows in their order. */
+export async function loadPeakRows(
+  ports: Pick<Ports, 'database'>,
+  campaignId: string,
+  sample?: string,
+): Promise<(PeakRow & { sha256: string })[]> {
+  const rows = await ports.database.read
+    .select({ path: files.path, sha256: files.sha256, row: sheetRows.body })
+    .from(sheetRows)
+    .innerJoin(files, eq(files.id, sheetRows.fileId))
+    .where(
+      and(
+        eq(sheetRows.campaignId, campaignId),
+        eq(sheetRows.sheet, 'peaks'),
+        sample === undefined ? undefined : sql`json_extract(${sheetRows.body}, '$.sample') = ${sample}`,
       ),
-    );
-  }
+    )
+    .orderBy(asc(files.path), asc(sheetRows.position));
+  return rows as (PeakRow & { sha256: string })[];
+}
+
+/**
+ * Replaces the fit of a sample and numbers the events of its scans. Where inputs have changed since they were loaded the newer fit
+ * is waited for.
+ */
+export function saveFit(
+  db: LibSQLDatabase,
+  sample: SampleRow,
+  fitKey: string,
+  fit: FitResult,
+  eventNumbers: readonly ScanEventNumbers[],
+): Statement[] {
+  const { campaignId, sample: name } = sample;
   return [
-    ...statements,
+    ...replaceParameters(db, campaignId, name, 'fit', fit.parameters),
     ...replaceFlags(db, campaignId, `fit:${name}`, fit.flags),
-    ...markFitted(db, sample, fit.state, fit.reason),
+    ...markFitted(db, sample, fit, eventNumbers),
     db.update(samples).set({ fitKey, reports: fit.reports }).where(eq(samples.id, sample.id)),
   ];
 }
 
-/** The inputs are those of the stored fit: only the state moves. */
+/** The inputs are those of the stored fit: only the state moves, and scans that were reduced again get their numbers back. */
 export function markFitted(
   db: LibSQLDatabase,
   { id, inputsRevision }: SampleRow,
-  state: FitResult['state'] | 'failed',
-  reason: string | undefined,
+  { state, reason }: Pick<FitResult, 'state' | 'reason'>,
+  eventNumbers: readonly ScanEventNumbers[],
 ): Statement[] {
   return [
+    ...eventNumbers.map(
+      ({ scanId, numbers }) =>
+        text`update scans set event_numbers = ${json(numbers)} where id = ${scanId} and status = 'reduced'`,
+    ),
     db.run(sql`
       update samples set reason = ${reason ?? null}, state = case
         when inputs_revision = ${inputsRevision} then ${state}
@@ -108,28 +150,4 @@ export function markFitted(
 
 export const saveFailedSample = (db: LibSQLDatabase, sampleId: string, reason: string): Statement[] => [
   db.update(samples).set({ state: 'failed', reason }).where(eq(samples.id, sampleId)),
-];
-
-const PARAMETER_COLUMNS =
-  'campaign_id, sample, position, event, quantity, method, conversion, temperature_k, value, unit, lower95, upper95, scan_count, rate_min_k_per_s, rate_max_k_per_s, flags, interval, variant';
-
-const parameterValues = (campaignId: string, position: number, row: ParameterRow) => [
-  campaignId,
-  row.sample,
-  position,
-  row.event,
-  row.quantity,
-  row.method,
-  row.conversion,
-  row.temperature_K,
-  row.value,
-  row.unit,
-  row.lower95,
-  row.upper95,
-  row.scan_count,
-  row.rate_min_K_per_s,
-  row.rate_max_K_per_s,
-  json(row.flags),
-  row.interval,
-  row.variant,
 ];

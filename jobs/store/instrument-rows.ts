@@ -7,7 +7,7 @@ import type { InstrumentCalibration, SampleSheetRow } from '../../schema/wire/sc
 import type { Ports } from '../ports/index.ts';
 import { loadSheetRows, replaceFlags } from './assignment-rows.ts';
 import type { Statement } from './fence.ts';
-import { queueReductions, touchSamples } from './job-rows.ts';
+import { queueJudgements, queueReductions, touchSamples } from './job-rows.ts';
 
 export type InstrumentRow = typeof instruments.$inferSelect;
 
@@ -40,7 +40,11 @@ export async function loadInstrument(
         eq(files.superseded, false),
       ),
     );
-  return { instrument, highestRateKPerS: highest ?? 0, standards: await loadStandards(ports, instrument) };
+  const [{ inPeaks }] = await ports.database.read.all<{ inPeaks: number | null }>(sql`
+    select max(json_extract(body, '$.rateKPerS')) as inPeaks from sheet_rows
+    where campaign_id = ${instrument.campaignId} and sheet = 'peaks' and json_extract(body, '$.instrument') = ${instrument.instrument}`);
+  const highestRateKPerS = Math.max(highest ?? 0, inPeaks ?? 0);
+  return { instrument, highestRateKPerS, standards: await loadStandards(ports, instrument) };
 }
 
 /** In the order of their bytes, so that nothing depends on names or on who came first. */
@@ -100,7 +104,14 @@ export function saveCalibration(
     ...replaceFlags(db, row.campaignId, `calibrate:${row.instrument}`, found.flags),
     ...(changed
       ? [
-          touchSamples(db, row.campaignId, sql`select sample from scans where ${corrected} and role = 'sample'`),
+          touchSamples(
+            db,
+            row.campaignId,
+            sql`select sample from scans where ${corrected} and role = 'sample'
+              union select json_extract(body, '$.sample') from sheet_rows where campaign_id = ${row.campaignId}
+                and sheet = 'peaks' and json_extract(body, '$.instrument') = ${row.instrument}`,
+          ),
+          queueJudgements(row.campaignId, now),
           db.run(
             sql`update scans set status = 'read', reason = null, inputs_revision = inputs_revision + 1 where ${corrected}`,
           ),

@@ -10,6 +10,8 @@ export const STEP_PRIORITY = {
   'calibrate-instrument': 2,
   'reduce-scan': 3,
   'fit-sample': 4,
+  'judge-curvature': 4,
+  'forecast-sample': 4,
   'read-scan': 5,
   'plan-campaign': 6,
 } as const;
@@ -106,7 +108,11 @@ function queueFits(campaignId: string, now: number): Statement[] {
   const due = text`samples.campaign_id = ${campaignId} and state in ('waiting', 'stale') and inputs_revision > queued_revision
     and not ${scansOpen(campaignId)} and not exists (
       select 1 from scans s where s.campaign_id = ${campaignId} and s.sample = samples.sample
-        and s.status in ('received', 'read') and s.role = 'sample')`;
+        and s.status in ('received', 'read') and s.role = 'sample')
+    and not exists (
+      select 1 from sheet_rows p inner join instruments i on i.campaign_id = p.campaign_id and i.instrument = json_extract(p.body, '$.instrument')
+      where p.campaign_id = ${campaignId} and p.sheet = 'peaks' and json_extract(p.body, '$.sample') = samples.sample
+        and i.calibrated_revision < i.inputs_revision)`;
   return [
     insertJobsFor(campaignId, 'fit-sample', now, text`select id as subject from samples where ${due}`),
     text`update samples set queued_revision = inputs_revision, state = 'queued' where ${due}`,
@@ -131,6 +137,18 @@ export function queueReductions(
     text`update scans set queued_revision = inputs_revision where ${due}`,
   ];
 }
+
+/**
+ * Queues verdict and forecasts of every fitted sample: sheets without scans, goals or the instruments have changed. Where nothing
+ * that they rest on is another, they are look-ups.
+ */
+export const queueJudgements = (campaignId: string, now: number): Statement =>
+  insertJobsFor(
+    campaignId,
+    'judge-curvature',
+    now,
+    text`select id as subject from samples where campaign_id = ${campaignId} and fit_key is not null`,
+  );
 
 /** Marks samples as having newer inputs than their fit; `names` is a subquery of sample names. */
 export function touchSamples(_db: LibSQLDatabase, campaignId: string, names: SqlText | SQL): Statement {

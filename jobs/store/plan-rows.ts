@@ -2,7 +2,7 @@ import { and, asc, eq } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
 import { instruments, plans, samples, scans } from '../../schema/tables/index.ts';
 import type { CoverageRow, GapRow } from '../../schema/wire/campaign.ts';
-import type { AdviceRow } from '../../schema/wire/forecasts.ts';
+import type { PeakSheetRow } from '../../schema/wire/forecasts.ts';
 import type { ReducedSummary } from '../../schema/wire/reduced-blob.ts';
 import type { InstrumentCalibration, SampleSheetRow, ScanSheetRow } from '../../schema/wire/scan.ts';
 import type { Role } from '../../schema/wire/states.ts';
@@ -20,6 +20,8 @@ export interface PlanRows {
     sheetRow: ScanSheetRow | null;
     result: ReducedSummary | null;
   }[];
+  /** Rows of peaks.csv. */
+  peaks: PeakSheetRow[];
   calibrations: InstrumentCalibration[];
 }
 
@@ -46,6 +48,7 @@ export async function loadPlan(ports: Ports, campaignId: string): Promise<PlanRo
   return {
     samples: [...new Set([...named, ...inSheet].map((row) => row.sample))],
     scans: reduced as PlanRows['scans'],
+    peaks: await loadSheetRows<PeakSheetRow>(ports, campaignId, 'peaks'),
     calibrations: calibrated.flatMap((row) => row.calibration ?? []),
   };
 }
@@ -53,9 +56,9 @@ export async function loadPlan(ports: Ports, campaignId: string): Promise<PlanRo
 export const savePlan = (
   db: LibSQLDatabase,
   campaignId: string,
-  { coverage, gaps, advice }: { coverage: CoverageRow[]; gaps: GapRow[]; advice: AdviceRow[] },
+  { coverage, gaps }: { coverage: CoverageRow[]; gaps: GapRow[] },
 ): Statement =>
   db
     .insert(plans)
-    .values({ campaignId, coverage, gaps, advice })
-    .onConflictDoUpdate({ target: plans.campaignId, set: { coverage, gaps, advice } });
+    .values({ campaignId, coverage, gaps })
+    .onConflictDoUpdate({ target: plans.campaignId, set: { coverage, gaps } });

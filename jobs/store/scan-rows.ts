@@ -177,7 +177,7 @@ export function saveReduction(
   return [
     text`
       update scans set status = ${found.status}, reason = ${found.reason}, reduced_key = ${found.reducedKey},
-        result = ${json(found.result)}, flags = ${json(found.flags)}
+        result = ${json(found.result)}, event_numbers = null, flags = ${json(found.flags)}
       where id = ${scan.id} and inputs_revision = ${scan.inputsRevision} and status = 'read'`,
     ...(scan.role === 'sample' ? [touchSamples(db, scan.campaignId, text`${scan.sample}`)] : []),
     ...(scan.role === 'standard' ? [touchInstruments(scan.campaignId, text`${scan.instrument}`)] : []),

@@ -14,7 +14,7 @@ export function saveSheet(
   db: LibSQLDatabase,
   file: FileRow,
   now: number,
-  sheet: { name: ReadSheetName; rows: readonly SheetRowBody[] } | undefined,
+  sheet: { name: ReadSheetName; rows: readonly SheetRowBody[] },
   read: { state: 'parsed' | 'refused'; reason: string | null; flags: Flag[] },
 ): Statement[] {
   const { campaignId, path } = file;
@@ -23,7 +23,7 @@ export function saveSheet(
       delete from sheet_rows where file_id in (select id from files where campaign_id = ${campaignId} and path = ${path})`),
     db.update(files).set(read).where(eq(files.id, file.id)),
   ];
-  const rows = sheet?.rows ?? [];
+  const { name, rows } = sheet;
   for (let at = 0; at < rows.length; at += ROWS_A_STATEMENT) {
     const part = rows.slice(at, at + ROWS_A_STATEMENT);
     statements.push(
@@ -31,7 +31,7 @@ export function saveSheet(
         part.map((body, i) => ({
           campaignId,
           fileId: file.id,
-          sheet: (sheet as { name: ReadSheetName }).name,
+          sheet: name,
           position: at + i,
           body,
         })),

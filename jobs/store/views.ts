@@ -42,15 +42,17 @@ export async function findScan(ports: Ports, scanId: string, lab = LOCAL_LAB): P
   };
 }
 
-/** The reduced curves of a scan, or undefined when it has none. */
+/** The reduced curves of a scan, its events numbered over all scans of the sample, or undefined when it has none. */
 export async function readReducedScan(ports: Ports, scanId: string): Promise<ReducedScan | undefined> {
   const [scan] = await ports.database.read
-    .select({ key: scans.reducedKey })
+    .select({ key: scans.reducedKey, numbers: scans.eventNumbers })
     .from(scans)
     .where(and(eq(scans.id, scanId), eq(scans.status, 'reduced')));
   if (!scan?.key) return undefined;
   const outcome = decodeReduceOutcome(await ports.blobs.bytes(scan.key));
-  return outcome.ok ? outcome.reduced : undefined;
+  if (!outcome.ok) return undefined;
+  const { events, ...others } = outcome.reduced;
+  return { ...others, events: events.map((event, i) => ({ ...event, event: scan.numbers?.[i] ?? event.event })) };
 }
 
 export interface SampleView {

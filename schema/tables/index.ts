@@ -1,27 +1,22 @@
 import { sql } from 'drizzle-orm';
 import { check, index, integer, primaryKey, real, sqliteTable, text, uniqueIndex } from 'drizzle-orm/sqlite-core';
-import type { CoverageRow, GapRow } from '../wire/campaign.ts';
 import type { CorrectionField, CorrectionValue } from '../wire/corrections.ts';
 import type { Flag } from '../wire/flags.ts';
-import type {
-  AdviceRow,
-  ForecastRow,
-  GoalRow,
-  PeakSheetRow,
-  ProgramSheetRow,
-  ViscositySheetRow,
-} from '../wire/forecasts.ts';
-import type { FitReport, ParameterRow } from '../wire/parameters.ts';
+import type { GoalRow, PeakSheetRow, ProgramSheetRow, ViscositySheetRow } from '../wire/forecasts.ts';
+import type { FitReport } from '../wire/parameters.ts';
 import type { ReducedSummary } from '../wire/reduced-blob.ts';
 import type { InstrumentCalibration, InstrumentSheetRow, SampleSheetRow, ScanSheetRow } from '../wire/scan.ts';
 import type { JobState, Role, SampleState, ScanState, TokenRole } from '../wire/states.ts';
-import type { VerdictRow } from '../wire/verdicts.ts';
+import { campaignId } from './campaigns.ts';
 
 /**
  * Times are ms since the epoch. Ids are random, prefixed by kind. JSON columns hold types of schema/wire.
  * `inputs_revision` grows with every change of what a row's result depends on; `queued_revision` is the one that a job was
  * queued for last. A job is due where the first is ahead, so no change is forgotten and a burst makes one job.
  */
+
+export { campaigns } from './campaigns.ts';
+export * from './results.ts';
 
 export type FileKind = 'data' | 'sheet' | 'archive';
 /** unread → read | refused (data), parsed | refused (sheet), expanded | refused (archive); failed when the job gave up. */
@@ -37,26 +32,6 @@ export type SheetRowBody =
   | ViscositySheetRow
   | GoalRow
   | ProgramSheetRow;
-
-export const campaigns = sqliteTable(
-  'campaigns',
-  {
-    id: text('id').primaryKey(),
-    lab: text('lab').notNull(),
-    name: text('name').notNull(),
-    createdAt: integer('created_at').notNull(),
-    /** Grows with every change of anything the campaign shows: ETags and the event stream use it. */
-    revision: integer('revision').notNull().default(0),
-    inputsRevision: integer('inputs_revision').notNull().default(0),
-    queuedRevision: integer('queued_revision').notNull().default(0),
-  },
-  (t) => [uniqueIndex('campaigns_name').on(t.lab, t.name)],
-);
-
-const campaignId = () =>
-  text('campaign_id')
-    .notNull()
-    .references(() => campaigns.id, { onDelete: 'cascade' });
 
 /** One uploaded file or archive member under one path; a path sent again with other bytes makes the older row superseded. */
 export const files = sqliteTable(
@@ -222,103 +197,6 @@ export const instruments = sqliteTable(
   },
   (t) => [uniqueIndex('instruments_name').on(t.campaignId, t.instrument)],
 );
-
-export const parameters = sqliteTable(
-  'parameters',
-  {
-    campaignId: campaignId(),
-    sample: text('sample').notNull(),
-    /** Order within the event; each step has a range of its own, see jobs/store/parameter-rows.ts. */
-    position: integer('position').notNull(),
-    event: integer('event').notNull(),
-    quantity: text('quantity').notNull(),
-    method: text('method').notNull(),
-    conversion: real('conversion'),
-    temperatureK: real('temperature_k'),
-    value: real('value').notNull(),
-    unit: text('unit').notNull(),
-    lower95: real('lower95'),
-    upper95: real('upper95'),
-    scanCount: integer('scan_count').notNull(),
-    rateMinKPerS: real('rate_min_k_per_s').notNull(),
-    rateMaxKPerS: real('rate_max_k_per_s').notNull(),
-    flags: text('flags', { mode: 'json' }).$type<ParameterRow['flags']>().notNull(),
-    interval: text('interval').$type<ParameterRow['interval']>().notNull(),
-    variant: text('variant').$type<ParameterRow['variant']>().notNull(),
-  },
-  (t) => [
-    primaryKey({ columns: [t.campaignId, t.sample, t.position] }),
-    index('parameters_quantity').on(t.campaignId, t.quantity, t.method),
-  ],
-);
-
-/** One row an event. */
-export const verdicts = sqliteTable(
-  'verdicts',
-  {
-    campaignId: campaignId(),
-    sample: text('sample').notNull(),
-    position: integer('position').notNull(),
-    body: text('body', { mode: 'json' }).$type<VerdictRow>().notNull(),
-  },
-  (t) => [primaryKey({ columns: [t.campaignId, t.sample, t.position] })],
-);
-
-export const forecasts = sqliteTable(
-  'forecasts',
-  {
-    campaignId: campaignId(),
-    sample: text('sample').notNull(),
-    position: integer('position').notNull(),
-    body: text('body', { mode: 'json' }).$type<ForecastRow>().notNull(),
-  },
-  (t) => [primaryKey({ columns: [t.campaignId, t.sample, t.position] })],
-);
-
-/** Goals set through the API; those of goal.csv are sheet rows. */
-export const goals = sqliteTable(
-  'goals',
-  {
-    campaignId: campaignId(),
-    position: integer('position').notNull(),
-    body: text('body', { mode: 'json' }).$type<GoalRow>().notNull(),
-  },
-  (t) => [primaryKey({ columns: [t.campaignId, t.position] })],
-);
-
-/** Flags of fits, sheets and assignment; flags of a file or scan live on their rows. */
-export const flags = sqliteTable(
-  'flags',
-  {
-    campaignId: campaignId(),
-    /** Which step wrote it, so that the step replaces its own: `fit:SAMPLE`, `assign`. */
-    source: text('source').notNull(),
-    position: integer('position').notNull(),
-    body: text('body', { mode: 'json' }).$type<Flag>().notNull(),
-  },
-  (t) => [primaryKey({ columns: [t.campaignId, t.source, t.position] })],
-);
-
-/** Scans that would narrow a sample's intervals most. */
-export const advice = sqliteTable(
-  'advice',
-  {
-    campaignId: campaignId(),
-    sample: text('sample').notNull(),
-    position: integer('position').notNull(),
-    body: text('body', { mode: 'json' }).$type<AdviceRow>().notNull(),
-  },
-  (t) => [primaryKey({ columns: [t.campaignId, t.sample, t.position] })],
-);
-
-/** Coverage and gap rows of the last plan. */
-export const plans = sqliteTable('plans', {
-  campaignId: text('campaign_id')
-    .primaryKey()
-    .references(() => campaigns.id, { onDelete: 'cascade' }),
-  coverage: text('coverage', { mode: 'json' }).$type<CoverageRow[]>().notNull(),
-  gaps: text('gaps', { mode: 'json' }).$type<GapRow[]>().notNull(),
-});
 
 /** The job row is the record; a queue message is a wake-up holding its id. */
 export const jobs = sqliteTable(

@@ -1,4 +1,5 @@
 import type { Flag, FlagCode } from './flags.ts';
+import type { ModelFreeCurve, ModelFreeDraws } from './forecasts.ts';
 import type { ReducedEvent } from './reduced.ts';
 import type { InstrumentCalibration } from './scan.ts';
 
@@ -53,10 +54,23 @@ export interface FitReport {
   rows: number;
 }
 
+/** What the isoconversional fit of one event's heating scans leaves for forecasts: the description and its draws. */
+export interface ModelFreeFit {
+  event: number;
+  curve: ModelFreeCurve;
+  draws: ModelFreeDraws;
+  /** n − p of the fit */
+  degreesOfFreedom: number;
+  /** K: temperatures of the event over its scans */
+  lowestK: number;
+  highestK: number;
+}
+
 export interface FitResult {
   state: 'fitted' | 'insufficient';
   reason?: string;
   parameters: ParameterRow[];
   reports: FitReport[];
   flags: Flag[];
+  modelFree?: ModelFreeFit[];
 }

@@ -1,9 +1,12 @@
 import { createHash } from 'node:crypto';
 import type { Compute } from '../../jobs/ports/index.ts';
+import type { ForecastRow } from '../../schema/wire/forecasts.ts';
 import type { FitInput, FitResult } from '../../schema/wire/parameters.ts';
 import { CONVERSION_GRID, type ReduceOutcome } from '../../schema/wire/reduced.ts';
+import type { SampleForecastInput, SampleForecastResult } from '../../schema/wire/sample-forecast.ts';
 import type { ReadOutcome, ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
+import type { JudgeInput, JudgeResult, VerdictRow } from '../../schema/wire/verdicts.ts';
 
 /** How often each computation ran: a look-up runs none. */
 export interface Counts {
@@ -14,6 +17,8 @@ export interface Counts {
 
 export interface ArithmeticCompute extends Compute {
   counts: Counts;
+  /** The steps after the fit. */
+  laterCounts: { judgeCurvature: number; forecastSample: number };
 }
 
 /**
@@ -23,8 +28,10 @@ export interface ArithmeticCompute extends Compute {
  */
 export function createArithmeticCompute(): ArithmeticCompute {
   const counts: Counts = { readScan: 0, reduceScan: 0, fitSample: 0 };
+  const laterCounts = { judgeCurvature: 0, forecastSample: 0 };
   return {
     counts,
+    laterCounts,
     async readScan(bytes, file) {
       counts.readScan++;
       return readText(new TextDecoder().decode(bytes), file);
@@ -36,6 +43,14 @@ export function createArithmeticCompute(): ArithmeticCompute {
     async fitSample(input) {
       counts.fitSample++;
       return fitScans(input);
+    },
+    async judgeCurvature(input) {
+      laterCounts.judgeCurvature++;
+      return judge(input);
+    },
+    async forecastSample(input) {
+      laterCounts.forecastSample++;
+      return forecast(input);
     },
     async close() {},
   };
@@ -161,4 +176,57 @@ function fitScans({ sample, scans, instruments, seed }: FitInput): FitResult {
     reports: [],
     flags: [],
   };
+}
+
+/** A number that depends on everything given. */
+const numberOf = (value: unknown): number =>
+  createHash('sha256')
+    .update(JSON.stringify(value, (_, inner) => (inner instanceof Float64Array ? [...inner] : inner)))
+    .digest()
+    .readUInt32LE(0);
+
+function judge({ sample, scans, instruments, facts, ranges, seed }: JudgeInput): JudgeResult {
+  const rates = scans.map((scan) => scan.event.rateKPerS);
+  const bend = numberOf([scans, instruments, facts, ranges, seed]);
+  const row: VerdictRow = {
+    sample,
+    event: 1,
+    verdict: 'undecided',
+    bend,
+    bend_lower99: null,
+    bend_upper99: null,
+    p_value: null,
+    delta_aicc: null,
+    energy_low_rate_kJ_per_mol: null,
+    energy_high_rate_kJ_per_mol: null,
+    instruments: instruments.map((one) => one.instrument),
+    rate_min_K_per_s: Math.min(...rates),
+    rate_max_K_per_s: Math.max(...rates),
+    decides_next: '',
+  };
+  return { verdicts: [row], events: [], parameters: [], sharedLaws: [], flags: [] };
+}
+
+function forecast({ sample, judged, goals, programmes, instruments }: SampleForecastInput): SampleForecastResult {
+  const value = numberOf([judged, goals, programmes, instruments]);
+  const row: ForecastRow = {
+    sample,
+    event: 1,
+    method: 'model_free',
+    conversion: 0.5,
+    temperature_C: 100,
+    program: programmes.map(({ name }) => name).join(),
+    value,
+    unit: 's',
+    lower95: null,
+    upper95: null,
+    beyond_measured_K: 0,
+    flags: [],
+    question: 'time_to_conversion',
+    time_s: null,
+    goal: '',
+    beyond_measured_decades: 0,
+    detail: '',
+  };
+  return { sources: [], forecasts: [row], advice: [], parameters: [], flags: [] };
 }

@@ -22,7 +22,7 @@ describe('the way of a scan', () => {
 
     const status = await campaignStatus(ports, campaign);
     expect(status).toMatchObject({ settled: true, scans: { reduced: 3, received: 0 }, jobs: { failed: 0 }, eta_s: 0 });
-    expect(status.samples).toEqual([{ sample: 'A', state: 'fitted' }]);
+    expect(status.samples).toEqual([{ sample: 'A', state: 'fitted', verdict: 'undecided' }]);
     const [parameter] = await rowsOf(ports, campaign, 'parameters');
     expect(parameter).toMatchObject({ sample: 'A', scan_count: 3, rate_min_K_per_s: 1, rate_max_K_per_s: 4 });
     expect(await rowsOf(ports, campaign, 'conversion')).toHaveLength(3 * 99);
@@ -66,7 +66,7 @@ describe('the way of a scan', () => {
       ['A/oven/bad.txt', 'set_aside', '«bad bytes» is no scan', ['file-damaged']],
       ['A/oven/dull.txt', 'set_aside', 'no direction', ['sign-unknown']],
     ]);
-    expect((await campaignStatus(ports, campaign)).samples).toEqual([{ sample: 'A', state: 'fitted' }]);
+    expect((await campaignStatus(ports, campaign)).samples).toMatchObject([{ sample: 'A', state: 'fitted' }]);
   });
 
   it('gives up on a file that makes the reader throw after five attempts, and fits the rest', async () => {
@@ -147,7 +147,7 @@ describe('sheets', () => {
     await send(ports, campaign, 'scans.csv', `${SHEET_HEAD}1.txt,A,oven,1\n2.txt,A,oven,1\n`);
     await drain(ports, campaign);
     expect(await statusOf('3.txt')).toEqual(['unassigned']);
-    expect((await campaignStatus(ports, campaign)).samples).toEqual([{ sample: 'A', state: 'fitted' }]);
+    expect((await campaignStatus(ports, campaign)).samples).toMatchObject([{ sample: 'A', state: 'fitted' }]);
     expect((await rowsOf(ports, campaign, 'coverage')).map((row) => row.sample)).toEqual(['A']);
   });
 

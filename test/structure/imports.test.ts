@@ -47,7 +47,14 @@ const MAY_IMPORT: Record<string, string[]> = {
     'jobs/campaign',
   ],
   'jobs/runner': ['schema/wire', 'jobs/ports', 'jobs/store', 'jobs/steps'],
-  'jobs/adapters': [...PIPELINE, 'jobs/instrument', 'jobs/reduction', 'jobs/kinetics'],
+  'jobs/adapters': [
+    ...PIPELINE,
+    'jobs/instrument',
+    'jobs/reduction',
+    'jobs/kinetics',
+    'jobs/glass',
+    'jobs/campaign',
+  ],
   // Entry points wire everything up.
   'jobs/cli': ['*'],
   api: ['schema/wire', 'jobs/ports', 'jobs/store', 'jobs/steps'],

@@ -2,7 +2,7 @@ import { CONVERSION_GRID } from '../../../schema/wire/reduced.ts';
 import { decodeReduceOutcome } from '../../../schema/wire/reduced-blob.ts';
 import type { Ports } from '../../ports/index.ts';
 import type { ResultRow } from './result-row.ts';
-import { loadScanRecords } from './scan-table.ts';
+import { eventNumberOf, loadScanRecords } from './scan-table.ts';
 
 /** The reduced curves on the conversion grid, in the order of scans.csv; one scan's blob is in memory at a time. */
 export async function* readConversionTable(
@@ -23,7 +23,7 @@ export async function* readConversionTable(
           segment,
           sample: scan.sample,
           instrument: scan.instrument,
-          event,
+          event: eventNumberOf(scan, event),
           conversion: CONVERSION_GRID[i],
           time_s: curve.timeS[i],
           temperature_K: curve.temperatureK[i],

@@ -5,7 +5,7 @@ import type { Ports } from '../../ports/index.ts';
 import { readEndedCorrections } from '../correction-rows.ts';
 import { canonicalJson } from '../ids.ts';
 import type { ResultRow } from './result-row.ts';
-import { compareCells } from './scan-table.ts';
+import { compareCells, eventNumberOf } from './scan-table.ts';
 
 const SEVERITY_ORDER = { stop: 0, warn: 1, note: 2 } as const;
 
@@ -21,16 +21,24 @@ export async function readFlagTable(ports: Pick<Ports, 'database'>, campaignId: 
     .from(files)
     .where(and(eq(files.campaignId, campaignId), live));
   const ofScans = await read
-    .select({ found: scans.flags, sample: scans.sample, instrument: scans.instrument, file: files.path })
+    .select({
+      found: scans.flags,
+      sample: scans.sample,
+      instrument: scans.instrument,
+      file: files.path,
+      result: scans.result,
+      eventNumbers: scans.eventNumbers,
+    })
     .from(scans)
     .innerJoin(files, eq(files.id, scans.fileId))
     .where(and(eq(scans.campaignId, campaignId), live));
   const ofSteps = await read.select({ body: flags.body }).from(flags).where(eq(flags.campaignId, campaignId));
   const all: Flag[] = [
     ...ofFiles.flatMap((row) => row.found),
-    ...ofScans.flatMap(({ found, sample, instrument, file }) =>
+    ...ofScans.flatMap(({ found, sample, instrument, file, ...scan }) =>
       found.map((f) => ({
         ...f,
+        event: f.event === undefined ? undefined : eventNumberOf(scan, f.event),
         sample: f.sample ?? sample ?? undefined,
         instrument: f.instrument ?? instrument ?? undefined,
         file: f.file ?? file,

@@ -1,8 +1,8 @@
 import type { ResultTable } from '../../../schema/wire/result-tables.ts';
 import type { Ports } from '../../ports/index.ts';
+import { readBodies } from './body-tables.ts';
 import { readConversionTable } from './conversion-table.ts';
 import { readFlagTable } from './flag-table.ts';
-import { readForecastTable, readVerdictTable } from './judged-tables.ts';
 import { readInstrumentTable, readParameterTable, readPlanTable } from './parameter-table.ts';
 import type { ResultRow, TableFilter } from './result-row.ts';
 import { readScanTable } from './scan-table.ts';
@@ -46,12 +46,11 @@ async function rowsOf(
     case 'instruments':
       return readInstrumentTable(ports, campaignId);
     case 'verdicts':
-      return readVerdictTable(ports, campaignId, sample);
     case 'forecasts':
-      return readForecastTable(ports, campaignId, sample);
+    case 'advice':
+      return readBodies(ports, campaignId, table, sample);
     case 'coverage':
     case 'gaps':
-    case 'advice':
       return readPlanTable(ports, campaignId, table, sample);
     case 'flags':
       return (await readFlagTable(ports, campaignId)).filter((row) => sample === undefined || row.sample === sample);

@@ -67,11 +67,11 @@ export async function readInstrumentTable(ports: Pick<Ports, 'database'>, campai
   }));
 }
 
-/** Coverage, gaps or advice of the last plan, in the plan's order. */
+/** Coverage or gaps of the last plan, in the plan's order. */
 export async function readPlanTable(
   ports: Pick<Ports, 'database'>,
   campaignId: string,
-  part: 'coverage' | 'gaps' | 'advice',
+  part: 'coverage' | 'gaps',
   sample?: string,
 ): Promise<ResultRow[]> {
   const [plan] = await ports.database.read.select().from(plans).where(eq(plans.campaignId, campaignId));

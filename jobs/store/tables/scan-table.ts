@@ -1,8 +1,10 @@
 import { and, eq, sql } from 'drizzle-orm';
 import { files, scans } from '../../../schema/tables/index.ts';
 import type { Flag } from '../../../schema/wire/flags.ts';
+import type { PeakSheetRow } from '../../../schema/wire/forecasts.ts';
 import type { ReducedSummary } from '../../../schema/wire/reduced-blob.ts';
 import type { Ports } from '../../ports/index.ts';
+import { loadPeakRows } from '../fit-rows.ts';
 import type { ResultRow } from './result-row.ts';
 
 export interface ScanRecord {
@@ -21,6 +23,7 @@ export interface ScanRecord {
   reason: string | null;
   reducedKey: string | null;
   result: ReducedSummary | null;
+  eventNumbers: number[] | null;
   flags: Flag[];
   fileFlags: Flag[];
 }
@@ -55,6 +58,7 @@ export async function loadScanRecords(
       reason: scans.reason,
       reducedKey: scans.reducedKey,
       result: scans.result,
+      eventNumbers: scans.eventNumbers,
       flags: scans.flags,
       fileFlags: files.flags,
     })
@@ -129,6 +133,15 @@ const codesOf = (flags: readonly Flag[], event?: number): string[] => [
   ...new Set(flags.filter((f) => f.event === undefined || event === undefined || f.event === event).map((f) => f.code)),
 ];
 
+/** The number of a scan's own event over all scans of its sample. */
+export function eventNumberOf(
+  { result, eventNumbers }: Pick<ScanRecord, 'result' | 'eventNumbers'>,
+  own: number,
+): number {
+  const at = result?.events.findIndex(({ event }) => event === own) ?? -1;
+  return eventNumbers?.[at] ?? own;
+}
+
 const KG_TO_MG = 1e6;
 const J_PER_KG_TO_J_PER_G = 1e-3;
 
@@ -157,7 +170,7 @@ export function scanRowsOf(scan: ScanRecord): ResultRow[] {
   if (!result || result.events.length === 0) return [{ ...common, flags: codesOf(flags) }];
   return result.events.map((event) => ({
     ...common,
-    event: event.event,
+    event: eventNumberOf(scan, event.event),
     rate_K_per_s: event.rateKPerS,
     onset_K: event.onsetK,
     peak_K: event.peakK,
@@ -169,15 +182,33 @@ export function scanRowsOf(scan: ScanRecord): ResultRow[] {
   }));
 }
 
+/** A row of peaks.csv: a scan of which only its temperatures are known. */
+const peakRowOf = ({ path, sha256, row }: { path: string; sha256: string; row: PeakSheetRow }): ResultRow => ({
+  ...EMPTY_ROW,
+  file: path,
+  sha256,
+  sample: row.sample,
+  instrument: row.instrument,
+  role: 'sample',
+  event: row.peakK === undefined ? null : (row.event ?? 1),
+  status: 'reduced',
+  rate_K_per_s: row.rateKPerS,
+  glass_transition_K: row.glassTransitionK ?? null,
+  onset_K: row.onsetK ?? null,
+  peak_K: row.peakK ?? null,
+  replicate: row.replicate ?? null,
+});
+
 export async function readScanTable(
   ports: Pick<Ports, 'database'>,
   campaignId: string,
   sample?: string,
 ): Promise<ResultRow[]> {
   const rows = (await loadScanRecords(ports, { campaignId, sample })).flatMap(scanRowsOf);
-  if (sample !== undefined) return rows;
+  const peaks = (await loadPeakRows(ports, campaignId, sample)).map(peakRowOf);
+  if (sample !== undefined) return [...rows, ...peaks];
   // The sort is stable: rows of one file keep their order.
-  return [...rows, ...(await loadRefusedArchives(ports, campaignId))].sort((a, b) =>
+  return [...rows, ...peaks, ...(await loadRefusedArchives(ports, campaignId))].sort((a, b) =>
     compareCells(a.file as string, b.file as string),
   );
 }
