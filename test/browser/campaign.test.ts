@@ -4,6 +4,7 @@ import type { Browser, Page } from 'playwright-core';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { buildDemoCampaign } from '../../jobs/simulate/index.ts';
 import { RESULT_TABLES } from '../../schema/wire/result-tables.ts';
+import { findBarriers } from './check-access.ts';
 import { findChromium, openBrowser } from './open-browser.ts';
 import { serveCampaigns, type TestServer, writeFiles } from './serve-campaigns.ts';
 
@@ -156,6 +157,130 @@ describe.skipIf(!executable)('a campaign on the page', () => {
     expect(header).toBe(RESULT_TABLES.parameters.join(','));
     expect(rows.length).toBeGreaterThan(100);
   });
+
+  test('copies a table, cells parted by tabs', async () => {
+    await page.context().grantPermissions(['clipboard-read', 'clipboard-write']);
+    await page.getByRole('button', { name: 'Copy instruments' }).click();
+    await page.getByText('instruments copied').waitFor();
+    const [head] = (await page.evaluate(() => navigator.clipboard.readText())).split('\n');
+    expect(head).toBe(RESULT_TABLES.instruments.join('\t'));
+  });
+
+  test('shows a sample: a lane and a row a scan, a curve and a peak each, six methods', async () => {
+    await page.getByRole('link', { name: 'synthetic-film' }).first().click();
+    await page.getByRole('heading', { level: 1, name: 'synthetic-film' }).waitFor();
+    await page.locator('.lane').first().waitFor();
+    expect(page.url()).toMatch(/\/samples\/synthetic-film$/);
+    const scans = scanFiles.filter(({ path }) => path.startsWith('synthetic-film/')).length;
+    const figure = (name: string) =>
+      page.getByRole('figure').filter({ has: page.getByRole('heading', { name, exact: true }) });
+    expect(await figure('Thermograms').locator('.lane').count()).toBe(scans);
+    expect(await figure('Conversion').locator('.curve').count()).toBe(scans);
+    expect(await figure('Kissinger plot').locator('.mark').count()).toBe(scans + 2);
+    expect(await figure('Activation energy over conversion').locator('.curve-front').count()).toBe(6);
+    expect(await page.getByRole('region', { name: 'Scans' }).getByRole('row').count()).toBe(scans + 1);
+  });
+
+  test('a scan is chosen by keyboard and shown by itself', async () => {
+    const lanes = page.getByRole('listbox', { name: /^Scans/ });
+    await lanes.focus();
+    await page.keyboard.press('End');
+    const chosen = page.locator(`#${await lanes.getAttribute('aria-activedescendant')}`);
+    const name = (await chosen.textContent()) ?? '';
+    expect(name).toContain('chip-north');
+    await page.keyboard.press('Enter');
+    await page.getByRole('heading', { level: 3, name, exact: true }).waitFor();
+    expect(await chosen.getAttribute('aria-selected')).toBe('true');
+  });
+
+  test.each(['SVG', 'PNG', 'CSV'])('saves a figure as %s', async (kind) => {
+    const download = page.waitForEvent('download');
+    await page.getByRole('button', { name: `Save Kissinger plot as ${kind}` }).click();
+    const saved = await download;
+    expect(saved.suggestedFilename()).toBe(`Synthetic-demo-synthetic-film-Kissinger-plot.${kind.toLowerCase()}`);
+    const bytes = await readFile(await saved.path());
+    if (kind === 'CSV') {
+      expect(bytes.toString().split('\n')[0]).toContain('reciprocal peak temperature [1/K]');
+      return;
+    }
+    // Both are drawn again from the file alone, without the page's style sheets: there is ink on the paper.
+    const type = kind === 'SVG' ? 'image/svg+xml' : 'image/png';
+    const shares = await page.evaluate(
+      async (url) => {
+        const image = new Image();
+        image.src = url;
+        await image.decode();
+        const canvas = document.createElement('canvas');
+        [canvas.width, canvas.height] = [300, 200];
+        const context = canvas.getContext('2d') as CanvasRenderingContext2D;
+        context.drawImage(image, 0, 0, 300, 200);
+        const { data } = context.getImageData(0, 0, 300, 200);
+        let light = 0;
+        let inked = 0;
+        for (let i = 0; i < data.length; i += 4) {
+          const brightness = data[i] + data[i + 1] + data[i + 2];
+          if (data[i + 3] > 250 && brightness > 700) light++;
+          else if (brightness < 500) inked++;
+        }
+        return { light: light / 60_000, inked: inked / 60_000 };
+      },
+      `data:${type};base64,${bytes.toString('base64')}`,
+    );
+    expect(shares.light).toBeGreaterThan(0.7);
+    expect(shares.inked).toBeGreaterThan(0.005);
+  });
+
+  test('an instrument and the jobs have pages of their own', async () => {
+    await page.getByRole('navigation', { name: 'Way back' }).getByRole('link', { name: 'Synthetic demo' }).click();
+    await page.getByRole('link', { name: 'furnace-west' }).click();
+    await page
+      .getByRole('figure', { name: '' })
+      .getByRole('img', { name: /^Correction from/ })
+      .waitFor();
+    await page.goBack();
+    await page.getByRole('link', { name: 'Jobs' }).click();
+    await page.getByText('every job is done').waitFor();
+    await page.goBack();
+    await page.getByRole('heading', { name: 'What to do next' }).waitFor();
+  });
+
+  test('on paper nothing is folded away and nothing is cut', async () => {
+    await page.emulateMedia({ media: 'print' });
+    await page.setViewportSize({ width: 720, height: 900 });
+    const steps = page.getByRole('region', { name: 'What to do next' });
+    await expect.poll(() => steps.locator('details:not([open])').count()).toBe(0);
+    expect(await page.evaluate(() => document.documentElement.scrollWidth)).toBeLessThanOrEqual(720);
+    await page.emulateMedia({ media: 'screen' });
+    await page.setViewportSize({ width: 1280, height: 900 });
+  });
+
+  test('the check for barriers finds one that was put in', async () => {
+    const other = await browser.newPage();
+    await other.setContent('<html lang="en"><title>t</title><main><h1>t</h1><img src="data:,"></main></html>');
+    expect(await findBarriers(other)).toEqual([expect.stringContaining('image-alt')]);
+    await other.close();
+  });
+
+  // Axe-core by Deque, rules of WCAG 2.2 A and AA and its own best practices.
+  test.each(['light', 'dark'] as const)(
+    'has no barrier that axe-core finds (%s)',
+    async (colorScheme) => {
+      await page.emulateMedia({ colorScheme });
+      const campaign = page.url();
+      for (const [address, name] of [
+        [server.url, 'Campaigns'],
+        [campaign, 'Synthetic demo'],
+        [`${campaign}/samples/synthetic-film`, 'synthetic-film'],
+      ]) {
+        await page.goto(address);
+        await page.getByRole('heading', { level: 1, name }).waitFor();
+        if (address !== server.url) await page.getByRole('table').first().waitFor();
+        expect(await findBarriers(page), address).toEqual([]);
+      }
+      await page.goto(campaign);
+    },
+    30_000,
+  );
 
   test.each(['light', 'dark'] as const)('fits a screen 360 px wide (%s)', async (colorScheme) => {
     await page.emulateMedia({ colorScheme });

@@ -13,9 +13,12 @@ export interface ScanPlotLayout {
 }
 
 const HEIGHT = 320;
-/** Labels of neighbouring temperatures stand in rows above the curve. */
-const LABEL_ROWS = 3;
+/** Labels stand in two rows an event above the curve, the peak over its onset and end; on a narrow figure each in its own row. */
 const LABEL_STEP = 14;
+const NARROW = 480;
+const rowsPerEvent = (width: number): number => (width < NARROW ? 4 : 2);
+const labelRows = (lane: ScanLane, width: number): number => rowsPerEvent(width) * Math.max(1, lane.rows.length);
+const LABEL_WIDTH = 104;
 
 /** Limits of the analysed event(s), K: where the baseline begins and ends. */
 export function eventLimits(lane: ScanLane): [number, number] | undefined {
@@ -37,7 +40,7 @@ export function layoutScanPlot(lane: ScanLane, width: number, units: Units, isZo
   const factor = 10 ** -exponent;
   const options = { count: 5, shown: (value: number) => value * factor, hidden: (value: number) => value / factor };
   const ruler = createPlotScale(ys, [HEIGHT, 0], options);
-  const box = createPlotBox(width, HEIGHT, labelWidth(ruler) + 10, 26 + LABEL_ROWS * LABEL_STEP);
+  const box = createPlotBox(width, HEIGHT, labelWidth(ruler) + 10, 26 + labelRows(lane, width) * LABEL_STEP);
   return {
     box,
     x: createTemperatureScale(extent(xs), [box.left, box.right], units),
@@ -46,32 +49,47 @@ export function layoutScanPlot(lane: ScanLane, width: number, units: Units, isZo
   };
 }
 
+interface Label {
+  name: string;
+  temperatureK: number | null;
+  row: number;
+  side: 'start' | 'middle' | 'end';
+}
+
 /** Trace, baseline, limits and characteristic temperatures of one scan. */
 export function ScanPlot(props: { lane: ScanLane; layout: ScanPlotLayout; instrument: number; units: Units }) {
   const { lane, layout, instrument, units } = props;
   const { box, x, y, exponent } = layout;
   const limits = eventLimits(lane);
-  const labelY = (i: number): number => box.top - 6 - (LABEL_ROWS - 1 - (i % LABEL_ROWS)) * LABEL_STEP;
   const isInside = (at: number): boolean => at >= box.left && at <= box.right;
-  const marks = lane.rows.flatMap((row) => [
-    ...(row.event === lane.rows[0].event ? [{ name: 'glass transition', temperatureK: row.glass_transition_K }] : []),
-    { name: 'onset', temperatureK: row.onset_K },
-    { name: 'peak', temperatureK: row.peak_K },
-    { name: 'end', temperatureK: row.end_K },
-  ]);
-  const drawn = marks
-    .flatMap(({ name, temperatureK }) =>
-      temperatureK === null ? [] : [{ name, temperatureK, at: x.at(temperatureK) }],
-    )
-    .filter(({ at }) => isInside(at))
-    .sort((a, b) => a.at - b.at);
+  const rows = rowsPerEvent(box.width);
+  const labels = lane.rows
+    .flatMap((row, i): Label[] => [
+      { name: 'peak', temperatureK: row.peak_K, row: rows * i, side: 'middle' },
+      { name: 'onset', temperatureK: row.onset_K, row: rows * i + 1, side: 'end' },
+      { name: 'end', temperatureK: row.end_K, row: rows * i + (rows === 2 ? 1 : 2), side: 'start' },
+      {
+        name: 'glass transition',
+        temperatureK: i === 0 ? row.glass_transition_K : null,
+        row: rows * i + rows - 1,
+        side: 'middle',
+      },
+    ])
+    .flatMap((label) => {
+      if (label.temperatureK === null) return [];
+      const at = x.at(label.temperatureK);
+      const y = box.top - 6 - (labelRows(lane, box.width) - 1 - label.row) * LABEL_STEP;
+      const text = `${label.name} ${formatTemperature(label.temperatureK, units)}`;
+      const side = at < box.left + LABEL_WIDTH ? 'start' : at > box.right - LABEL_WIDTH ? 'end' : label.side;
+      return isInside(at) ? [{ at, y, text, side }] : [];
+    });
   return (
     <PlotFrame
       box={box}
       x={x}
       y={y}
       xLabel={`Temperature, ${units.temperature}`}
-      yLabel={`Heat flow, ${exponent === 0 ? '' : `${formatExponent(exponent)} `}W or W/kg as in the file, exothermic up`}
+      yLabel={`Heat flow, ${exponent === 0 ? '' : `${formatExponent(exponent)} `}W or W/kg, exothermic up`}
     >
       <g class={`lane hue-${instrument % 6}`}>
         {limits && (
@@ -83,16 +101,11 @@ export function ScanPlot(props: { lane: ScanLane; layout: ScanPlotLayout; instru
         <path class="curve" d={clippedPath(lane.trace, layout)} />
         {lane.baseline && <path class="baseline" d={clippedPath(lane.baseline, layout)} />}
       </g>
-      {drawn.map(({ name, temperatureK, at }, i) => (
-        <g key={`${name} ${temperatureK}`}>
-          <path class="temperature-line" d={`M${at.toFixed(1)} ${labelY(i) + 4}V${box.bottom}`} />
-          <text
-            class="plot-label"
-            x={at.toFixed(1)}
-            y={labelY(i)}
-            text-anchor={at > box.right - 110 ? 'end' : at < box.left + 60 ? 'start' : 'middle'}
-          >
-            {name} {formatTemperature(temperatureK, units)}
+      {labels.map(({ at, y: labelY, text, side }) => (
+        <g key={text}>
+          <path class="temperature-line" d={`M${at.toFixed(1)} ${labelY + 4}V${box.bottom}`} />
+          <text class="plot-label" x={at.toFixed(1)} y={labelY} text-anchor={side}>
+            {text}
           </text>
         </g>
       ))}

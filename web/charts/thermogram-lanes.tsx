@@ -68,12 +68,7 @@ export function ThermogramLanes(props: { layout: LaneLayout; instruments: readon
   const { layout, instruments, units } = props;
   const { box, x, placed } = layout;
   return (
-    <PlotFrame
-      box={box}
-      x={x}
-      xLabel={`Temperature, ${units.temperature}`}
-      yLabel="Heat flow, exothermic up, each scan to its own height"
-    >
+    <PlotFrame box={box} x={x} xLabel={`Temperature, ${units.temperature}`} yLabel="Heat flow, exothermic up">
       {placed.map(({ lane, path, baselinePath, peaks, middle }) => {
         const instrument = instruments.indexOf(lane.instrument);
         return (
