@@ -1,5 +1,6 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
-import type { FitReport, FitScan, ParameterRow } from '../../schema/wire/parameters.ts';
+import type { ModelFreeDraws } from '../../schema/wire/forecasts.ts';
+import type { FitReport, FitScan, ModelFreeFit, ParameterRow } from '../../schema/wire/parameters.ts';
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import type { Random } from '../numeric/random.ts';
 import { mean } from '../numeric/statistics.ts';
@@ -17,6 +18,7 @@ import { createFurtherEstimator, type FurtherEstimates, type FurtherPlan } from 
 import { addAnalyticRows, addFurtherRows } from './further-rows.ts';
 import { findOutliers, JMAK_RESIDUAL, judgeEnergy, judgeJmak } from './judge-event.ts';
 import { judgeTops, noteExponent, plotModels, reportFurther, reportModels } from './judge-model.ts';
+import { averageSegments, describeModelFree } from './model-free.ts';
 import { drawBuffer, drawColumns, modelScatter, type ScatterModel } from './monte-carlo.ts';
 import { RowBuilder } from './parameter-rows.ts';
 import { LATEST_START } from './peak-methods.ts';
@@ -32,6 +34,8 @@ export interface EventFit {
   parameters: ParameterRow[];
   reports: FitReport[];
   flags: Flag[];
+  /** What forecasts need of ramps with curves */
+  modelFree?: ModelFreeFit;
 }
 
 /** Fewer distinct rates than this and no method applies (ICTAC 2011: at least three programmes). */
@@ -133,7 +137,14 @@ function fitScans(
     sestakBerggren: misshapen,
   };
   const more = curveMethods ? createFurtherEstimator(data, settings, plan)(estimate) : undefined;
-  const { drawn, further, causes } = runDraws(model, settings, plan, { main: estimate, further: more }, random, draws);
+  const { drawn, further, causes, modelFreeDraws } = runDraws(
+    model,
+    settings,
+    plan,
+    { main: estimate, further: more },
+    random,
+    draws,
+  );
   flags.push(...findOutliers(model, where));
   const builder = new RowBuilder(sample, data, curves, model, drawn, causes);
   const reports = reportFits(event, estimate, curves.length);
@@ -154,7 +165,17 @@ function fitScans(
     if (!misshapen) flags.push(...noteExponent(n, where));
   }
   builder.enthalpyRow();
-  return { parameters: builder.rows, reports, flags };
+  const modelFree: ModelFreeFit | undefined = curveMethods
+    ? {
+        event,
+        curve: describeModelFree(data, curves, settings.curveWeights, measured, estimate.vyazovkin, settings.x0),
+        draws: modelFreeDraws,
+        degreesOfFreedom: Math.max(1, data.n - model.trendParameters),
+        lowestK: Math.min(...data.peakK),
+        highestK: Math.max(...data.peakK),
+      }
+    : undefined;
+  return { parameters: builder.rows, reports, flags, ...(modelFree && { modelFree }) };
 }
 
 function runDraws(
@@ -164,9 +185,15 @@ function runDraws(
   estimate: { main: Estimates; further: FurtherEstimates | undefined },
   random: Random,
   draws: number,
-): { drawn: Estimates[]; further: FurtherEstimates[]; causes: DrawCauses[] } {
+): { drawn: Estimates[]; further: FurtherEstimates[]; causes: DrawCauses[]; modelFreeDraws: ModelFreeDraws } {
   const columns = drawBuffer(model.data);
-  const estimator = createEstimator(columns, settings, rampIntegrals(columns, settings.curves));
+  const ramp = rampIntegrals(columns, settings.curves);
+  const estimator = createEstimator(columns, settings, ramp);
+  const modelFreeDraws: ModelFreeDraws = {
+    energyJPerMol: new Float64Array(settings.curveMethods ? draws * CONVERSIONS.length : 0),
+    lnStep: new Float64Array(settings.curveMethods ? draws * CONVERSIONS.length : 0),
+  };
+  const work = Array.from(settings.curves, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
   const furtherEstimator = createFurtherEstimator(columns, settings, plan);
   const drawn: Estimates[] = [];
   const further: FurtherEstimates[] = [];
@@ -175,9 +202,13 @@ function runDraws(
     causes.push(drawColumns(model, random, columns));
     const main = estimator(estimate.main);
     drawn.push(main);
-    if (estimate.further) further.push(furtherEstimator(main, { main: estimate.main, further: estimate.further }));
+    if (!estimate.further) continue;
+    further.push(furtherEstimator(main, { main: estimate.main, further: estimate.further }));
+    const at = d * CONVERSIONS.length;
+    modelFreeDraws.energyJPerMol.set(main.vyazovkin, at);
+    modelFreeDraws.lnStep.set(averageSegments(ramp, settings.curveWeights, main.vyazovkin, settings.x0, work), at);
   }
-  return { drawn, further, causes };
+  return { drawn, further, causes, modelFreeDraws };
 }
 
 const notComputed = (event: number, method: string, message: string, rows: number): FitReport => ({

@@ -61,7 +61,10 @@ export function fitSample(input: FitInput): FitResult {
   const parameters = fits.flatMap((f) => f.parameters);
   const all = [...flags, ...fits.flatMap((f) => f.flags)];
   const reports = fits.flatMap((f) => f.reports);
-  if (parameters.length > 0) return { state: 'fitted', parameters, reports, flags: all };
+  const modelFree = fits.flatMap((f) => f.modelFree ?? []);
+  if (parameters.length > 0) {
+    return { state: 'fitted', parameters, reports, flags: all, ...(modelFree.length > 0 && { modelFree }) };
+  }
   for (const f of all) if (f.severity === 'stop' && !refused.includes(f.detail)) refused.push(f.detail);
   const reason = events.length === 0 ? 'no scan of this sample shows an event' : refused.join(' ');
   return { state: 'insufficient', reason, parameters: [], reports, flags: all };
