@@ -1,8 +1,10 @@
 import { createServer } from 'node:http';
 import type { AddressInfo } from 'node:net';
 import { getRequestListener } from '@hono/node-server';
-import type { Ports } from '../jobs/ports/index.ts';
-import { checkListenAddress } from './access.ts';
+import type { Context } from 'hono';
+import type { Observer, Ports } from '../jobs/ports/index.ts';
+import { hasLiveToken } from '../jobs/store/index.ts';
+import { isLoopback } from './access.ts';
 import { createApp } from './app.ts';
 import { createPages } from './static-pages.ts';
 
@@ -13,6 +15,7 @@ export interface ServerOptions {
   host: string;
   /** Folder of the built page; without it only the API answers. */
   webDir?: string;
+  observer?: Observer;
 }
 
 export interface RunningServer {
@@ -22,13 +25,25 @@ export interface RunningServer {
   close(): Promise<void>;
 }
 
-/** Starts the API and the page on Node. Refuses an address that other machines can reach; rejects when the port is taken. */
-export async function startServer({ ports, port, host, webDir }: ServerOptions): Promise<RunningServer> {
-  checkListenAddress(host);
+/** The address at the other end of the connection; what headers say of it may be made up. */
+const peerOf = (c: Context): string | undefined =>
+  (c.env as { incoming?: { socket?: { remoteAddress?: string } } }).incoming?.socket?.remoteAddress;
+
+/**
+ * Starts the API and the page on Node: open on a loopback address, by token on any other. Throws RangeError where others
+ * could reach it and nobody could log in; rejects when the port is taken.
+ */
+export async function startServer({ ports, port, host, webDir, observer }: ServerOptions): Promise<RunningServer> {
+  const open = isLoopback(host);
+  if (!open && !(await hasLiveToken(ports)))
+    throw new RangeError(
+      `refusing to listen on ${JSON.stringify(host)}: other machines could reach it and no access token exists. Make one with: ratespan token add --lab LAB --role keeper. Or use localhost, 127.0.0.1 or ::1.`,
+    );
   const bareHost = host.replace(/^\[|\]$/g, '');
   let ownPort = port;
   const app = createApp(ports, {
-    access: { port: () => ownPort },
+    access: open ? { port: () => ownPort } : { addressOf: peerOf },
+    observer,
     pages: webDir === undefined ? undefined : createPages(webDir),
   });
   const server = createServer(getRequestListener(app.fetch, { overrideGlobalObjects: false }));

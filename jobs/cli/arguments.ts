@@ -1,6 +1,6 @@
 import { type ParseArgsConfig, parseArgs } from 'node:util';
 import { UsageError } from './exit.ts';
-import { HELP_OPTION, VERBS, type VerbName } from './help.ts';
+import { HELP_OPTION, VERBS, type VerbHelp, type VerbName } from './help.ts';
 
 type Options = NonNullable<ParseArgsConfig['options']>;
 
@@ -11,7 +11,7 @@ export interface ParsedArguments {
 
 /** Reads the arguments of a verb by its entry in VERBS. Throws UsageError that says how to see the help. */
 export function parseVerbArguments(verb: VerbName, args: string[]): ParsedArguments {
-  const { options, positionals: wanted } = VERBS[verb];
+  const { options, positionals: wanted, optional }: VerbHelp = VERBS[verb];
   const parserOptions: Options = { ...HELP_OPTION };
   for (const [name, option] of Object.entries(options)) {
     parserOptions[name] = { type: 'value' in option ? 'string' : 'boolean' };
@@ -27,8 +27,9 @@ export function parseVerbArguments(verb: VerbName, args: string[]): ParsedArgume
   if (parsed.positionals.length < wanted.length) {
     throw wrongUsage(verb, `${wanted[parsed.positionals.length]} is missing`);
   }
-  if (parsed.positionals.length > wanted.length) {
-    const extra = JSON.stringify(parsed.positionals[wanted.length]);
+  const most = wanted.length + (optional === undefined ? 0 : 1);
+  if (parsed.positionals.length > most) {
+    const extra = JSON.stringify(parsed.positionals[most]);
     throw wrongUsage(verb, `${extra} is one argument too many`);
   }
   return parsed;

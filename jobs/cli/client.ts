@@ -1,9 +1,15 @@
 import { openAsBlob } from 'node:fs';
+import { setTimeout as sleep } from 'node:timers/promises';
 import type { CampaignStatus } from '../../schema/wire/campaign.ts';
 import type { ResultTable } from '../../schema/wire/result-tables.ts';
 import type { FileReceipt, ResultRow } from '../store/index.ts';
 import type { FolderFile } from './campaign-folder.ts';
 import { ServerError, UsageError } from './exit.ts';
+
+/** Answers that say when to come again. */
+const WAIT_OUT = [429, 503];
+const WAIT_TRIES = 20;
+const LONGEST_WAIT_S = 60;
 
 /** Rows asked for in one page of a table. */
 const PAGE_ROWS = 1000;
@@ -34,6 +40,14 @@ export class Client {
     let response: Response;
     try {
       response = await fetch(`${this.#base}/v1${path}`, { method, headers, body });
+      // The server names the time to wait when it takes no more for now, or a store of its is busy.
+      for (let tries = 1; WAIT_OUT.includes(response.status) && tries <= WAIT_TRIES; tries++) {
+        const seconds = Number(response.headers.get('retry-after'));
+        if (!(seconds > 0)) break;
+        await response.body?.cancel();
+        await sleep(Math.min(seconds, LONGEST_WAIT_S) * 1000);
+        response = await fetch(`${this.#base}/v1${path}`, { method, headers, body });
+      }
     } catch (error) {
       const cause = (error as Error).cause;
       throw new ServerError(

@@ -1,7 +1,8 @@
 import { hostname } from 'node:os';
 import { dirname, join, resolve } from 'node:path';
 import { closePorts, type NodePortsOptions, openNodePorts } from '../adapters/node-ports.ts';
-import type { Ports } from '../ports/index.ts';
+import { createObserver } from '../adapters/observer.ts';
+import type { Observer, Ports } from '../ports/index.ts';
 
 /** Data folder of the server verbs: RATESPAN_DATA, else ./data. */
 export const dataFolder = (): string => resolve(process.env.RATESPAN_DATA || 'data');
@@ -15,6 +16,13 @@ export function storesFromEnvironment(): NodePortsOptions {
     blobsDir: process.env.RATESPAN_BLOBS || undefined,
   };
 }
+
+export const isRemoteDatabase = ({ databaseUrl }: NodePortsOptions): boolean =>
+  /^(libsql|https?|wss?):/.test(databaseUrl ?? '');
+
+/** One JSON object a line on standard error; on a terminal, where a person reads, only what went wrong. */
+export const observeOnStderr = (): Observer =>
+  createObserver((line) => process.stderr.write(`${line}\n`), process.stderr.isTTY === true);
 
 /** Stores of a database file given on the command line: blobs/ lies beside it. */
 export function storesOfFile(file: string): NodePortsOptions {

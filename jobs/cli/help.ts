@@ -4,9 +4,11 @@ interface OptionHelp {
   text: string;
 }
 
-interface VerbHelp {
+export interface VerbHelp {
   summary: string;
   positionals: readonly string[];
+  /** A last argument that may be left out. */
+  optional?: string;
   options: Readonly<Record<string, OptionHelp>>;
   /** Shown at the end of the verb's own help. */
   remarks?: readonly string[];
@@ -74,6 +76,29 @@ export const VERBS = {
     },
     remarks: ['With neither --db nor --to (nor RATESPAN_URL), the local data folder is read.'],
   },
+  token: {
+    summary: 'access tokens: make one, list them, take one back',
+    positionals: ['add|list|revoke'],
+    optional: 'ID',
+    options: {
+      lab: { value: 'L', text: 'add: the lab that it belongs to and sees (a-z, 0-9, -)' },
+      role: { value: 'reader|sender|keeper', text: 'add: reads; also sends and corrects; also deletes' },
+      days: { value: '365', text: 'add: days until it no longer counts' },
+    },
+    remarks: [
+      'Works on the database of the data folder, never over the network. A token is shown once and stored hashed.',
+    ],
+  },
+  backup: {
+    summary: 'database and blobs into one archive (a gzipped tar), while a server runs',
+    positionals: ['FILE'],
+    options: { quiet: QUIET },
+  },
+  restore: {
+    summary: 'put a backup into an empty data folder (RATESPAN_DATA)',
+    positionals: ['FILE'],
+    options: { quiet: QUIET },
+  },
   demo: {
     summary: 'synthetic campaign with known truth through the real server; leaves the dashboard up',
     positionals: [],
@@ -104,9 +129,9 @@ const aligned = (rows: readonly (readonly [string, string])[]): string[] => {
 };
 
 function usageOf(verb: VerbName): string {
-  const { positionals, options } = VERBS[verb] as VerbHelp;
+  const { positionals, optional, options } = VERBS[verb] as VerbHelp;
   const parts = Object.entries(options).map(([name, { value }]) => `[--${name}${value ? ` ${value}` : ''}]`);
-  return ['ratespan', verb, ...positionals, ...parts].join(' ');
+  return ['ratespan', verb, ...positionals, ...(optional ? [`[${optional}]`] : []), ...parts].join(' ');
 }
 
 export function verbHelp(verb: VerbName): string {

@@ -2,7 +2,9 @@ import { availableParallelism } from 'node:os';
 import { type RunningServer, startServer } from '../../api/node.ts';
 import type { NodePortsOptions } from '../adapters/node-ports.ts';
 import { closePorts, openNodePorts } from '../adapters/node-ports.ts';
-import { createRunner } from '../runner/index.ts';
+import type { Observer } from '../ports/index.ts';
+import { createRunner, keepHouseHourly } from '../runner/index.ts';
+import { markBlobStore } from '../store/index.ts';
 import { leaseOwner } from './environment.ts';
 import { UsageError } from './exit.ts';
 import type { Terminal } from './terminal.ts';
@@ -17,17 +19,18 @@ export interface ServerSettings {
   anyPort: boolean;
   /** Serve the dashboard too; built first when it is missing. */
   page: boolean;
+  observer?: Observer;
 }
 
 /** API, page and job runner in this process; `stop` ends all three in order. */
 export async function startEverything(
   verb: string,
-  { stores, port, host, workers = availableParallelism(), anyPort, page }: ServerSettings,
+  { stores, port, host, workers = availableParallelism(), anyPort, page, observer }: ServerSettings,
   terminal: Terminal,
 ): Promise<{ url: string; stop(): Promise<void> }> {
   const webDir = page ? await findWebPage(terminal) : undefined;
   const ports = await openNodePorts({ ...stores, workers });
-  const listen = (at: number): Promise<RunningServer> => startServer({ ports, port: at, host, webDir });
+  const listen = (at: number): Promise<RunningServer> => startServer({ ports, port: at, host, webDir, observer });
   let server: RunningServer;
   try {
     server = await listen(port).catch((error: NodeJS.ErrnoException) => {
@@ -39,11 +42,15 @@ export async function startEverything(
     await closePorts(ports);
     throw listenError(error as NodeJS.ErrnoException, host, port);
   }
-  const runner = createRunner(ports, { concurrency: workers + 1, owner: leaseOwner(verb) });
+  await markBlobStore(ports);
+  const runner = createRunner(ports, { concurrency: workers + 1, owner: leaseOwner(verb), observer });
   runner.start();
+  const leaving = new AbortController();
+  void keepHouseHourly(ports, leaving.signal, observer);
   return {
     url: server.url,
     stop: async () => {
+      leaving.abort();
       await server.close();
       await runner.stop();
       await closePorts(ports);

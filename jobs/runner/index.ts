@@ -5,6 +5,7 @@ import { sweepLostJobs } from './consume.ts';
 import { runJob } from './run-job.ts';
 
 export { consumeWake, sweepWakes } from './consume.ts';
+export { keepHouse, keepHouseHourly } from './housekeeping.ts';
 
 /** How often a process looks for jobs that another one queued. */
 const POLL_MS = 500;

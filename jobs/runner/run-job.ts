@@ -3,7 +3,7 @@ import { type ColumnsCache, DerivedLost, failStep, runStep } from '../steps/inde
 import { LateWorker } from '../store/fence.ts';
 import { type ClaimedJob, postponeJob } from '../store/leases.ts';
 import { reduceAgain } from '../store/lost-blobs.ts';
-import { isStoreTrouble } from './trouble.ts';
+import { isStoreTrouble } from '../store/trouble.ts';
 
 /** What became of one attempt. */
 export type JobEnd = JobEvent['end'];

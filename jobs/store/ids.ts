@@ -9,6 +9,8 @@ const PREFIXES = {
   job: 'j',
   blob: 'b',
   correction: 'k',
+  token: 't',
+  database: 'd',
 } as const;
 
 /** A random id, 96 bits, prefixed by what it names. */

@@ -13,12 +13,28 @@ export {
   renameCampaign,
 } from './campaigns.ts';
 export { type Corrections, correctScan, type HistoryEntry, readScanHistory } from './correction-rows.ts';
+export { jobFigures } from './figures.ts';
+export { isBlobStoreMarked, markBlobStore } from './identity.ts';
 export { type JobView, listJobs, refitCampaign, retryJob } from './job-views.ts';
+export { sweepOrphanBlobs } from './orphan-blobs.ts';
 export { FILE_LIMIT_BYTES, receiveFile } from './receive.ts';
 export { StoreRefusal, type StoreRefusalCode } from './refusals.ts';
+export { claimReply, dropReply, keepReply, sweepReplies } from './replies.ts';
 export { listSampleScans, type SampleScan } from './sample-scans.ts';
+export { findDamage, snapshotDatabase } from './snapshot.ts';
 export { campaignStatus } from './status.ts';
 export { type ResultRow, readTable, type TableFilter } from './tables/index.ts';
+export {
+  createToken,
+  findTokenOwner,
+  hasLiveToken,
+  LONGEST_TOKEN_DAYS,
+  listTokens,
+  revokeToken,
+  type TokenOwner,
+  type TokenView,
+} from './tokens.ts';
+export { isStoreTrouble } from './trouble.ts';
 export {
   checkStores,
   findSample,

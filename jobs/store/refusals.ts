@@ -8,7 +8,9 @@ export type StoreRefusalCode =
   | 'scan-unknown'
   | 'scan-superseded'
   | 'sample-unknown'
-  | 'instrument-unknown';
+  | 'instrument-unknown'
+  | 'token-unknown'
+  | 'token-invalid';
 
 export class StoreRefusal extends Error {
   constructor(

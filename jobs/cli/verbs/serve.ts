@@ -1,5 +1,5 @@
 import { wholeNumber } from '../arguments.ts';
-import { storesFromEnvironment } from '../environment.ts';
+import { observeOnStderr, storesFromEnvironment } from '../environment.ts';
 import { EXIT } from '../exit.ts';
 import { startEverything, untilInterrupted } from '../server.ts';
 import type { Terminal } from '../terminal.ts';
@@ -20,6 +20,7 @@ export async function serve(
       workers: wholeNumber('serve', 'workers', values.workers, [0, 256]),
       anyPort: false,
       page: true,
+      observer: observeOnStderr(),
     },
     terminal,
   );

@@ -1,0 +1,200 @@
+import { afterAll, beforeAll, describe, expect, test } from 'vitest';
+import { createApp } from '../../api/app.ts';
+import { createCampaign, createToken, receiveFile, revokeToken } from '../../jobs/store/index.ts';
+import { TOKEN_ROLES, type TokenRole } from '../../schema/wire/states.ts';
+import { type Body, type Harness, openHarness } from './harness.ts';
+import { smallCampaign } from './small-campaign.ts';
+
+/** One app that asks for tokens over the stores of the harness, which holds a campaign of lab `ours`. */
+let api: Harness;
+let app: ReturnType<typeof createApp>;
+const tokens: Record<string, string> = {};
+const ids: Record<string, string> = {};
+let nowMs = Date.UTC(2026, 0, 1);
+
+beforeAll(async () => {
+  api = await openHarness();
+  const clock = { ...api.ports.clock, now: () => nowMs };
+  const ports = { ...api.ports, clock };
+  app = createApp(ports, { access: { addressOf: (c) => c.req.header('x-test-address') ?? '192.0.2.1' } });
+  const make = async (name: string, lab: string, role: TokenRole, days = 9) => {
+    const made = await createToken(ports, { lab, role, days });
+    tokens[name] = made.token;
+    return made.id;
+  };
+  for (const role of TOKEN_ROLES) await make(role, 'ours', role);
+  await make('other lab', 'theirs', 'keeper');
+  await revokeToken(ports, await make('revoked', 'ours', 'keeper'));
+  tokens['wrong'] = `${tokens['keeper'].slice(0, -1)}${tokens['keeper'].endsWith('A') ? 'E' : 'A'}`;
+  ids['campaign'] = (await createCampaign(ports, 'films', 'ours')).id;
+  for (const [path, bytes] of smallCampaign([5, 10])) await receiveFile(ports, ids['campaign'], path, bytes);
+  await api.drain();
+  const get = async (path: string) => (await (await ask('GET', path, 'keeper')).json()) as Body;
+  ids['sample'] = (await get(`/v1/campaigns/films/status`)).samples[0].id;
+  ids['scan'] = (await get(`/v1/samples/${ids['sample']}`)).scans[0].id;
+  ids['job'] = (await get('/v1/jobs')).items[0].id;
+}, 60_000);
+afterAll(() => api.close());
+
+function ask(method: string, path: string, who?: string, body?: string, headers: Record<string, string> = {}) {
+  return app.request(`http://ratespan.example${path}`, {
+    method,
+    body,
+    headers: {
+      ...(who !== undefined && { authorization: `Bearer ${tokens[who] ?? who}` }),
+      ...(body !== undefined && { 'content-type': 'application/json' }),
+      ...headers,
+    },
+  });
+}
+
+/** Every route of the document with a request that a keeper gets carried out; `#kind` stands for an id of that kind. */
+const BODIES: Record<string, string> = {
+  'post /v1/campaigns': '{"name":"another"}',
+  'patch /v1/campaigns/{id}': '{"name":"films"}',
+};
+const QUERIES: Record<string, string> = {
+  'put /v1/campaigns/{id}/files': '?path=a/b/c.txt',
+  'delete /v1/campaigns/{id}': '?confirm=films',
+  'get /v1/samples/{id}/curves': '?kind=kissinger',
+};
+
+interface Row {
+  method: string;
+  route: string;
+  path: string;
+  body?: string;
+  needed: TokenRole;
+}
+
+/** Written out here, apart from the program's own table. */
+function neededFor(method: string, route: string): TokenRole {
+  if (method === 'delete' || route === '/metrics') return 'keeper';
+  if (method === 'get' || route.endsWith('/forecasts')) return 'reader';
+  return 'sender';
+}
+
+async function matrix(): Promise<Row[]> {
+  const document = (await (await ask('GET', '/v1/openapi.json')).json()) as Body;
+  const rows: Row[] = [];
+  for (const [route, methods] of Object.entries<Body>(document.paths)) {
+    if (['/healthz', '/readyz', '/v1/openapi.json', '/v1/reference'].includes(route)) continue;
+    const kind = /^\/v1\/(campaign|sample|scan|job|instrument)s\//.exec(route)?.[1] ?? 'campaign';
+    for (const method of Object.keys(methods)) {
+      const key = `${method} ${route}`;
+      rows.push({
+        method: method.toUpperCase(),
+        route,
+        path: route.replace('{id}', ids[kind] ?? `i_unknown`) + (QUERIES[key] ?? ''),
+        body: method === 'get' || method === 'delete' ? undefined : (BODIES[key] ?? '{}'),
+        needed: neededFor(method, route),
+      });
+    }
+  }
+  // Deleting comes last: the other rows need what it deletes.
+  return rows.sort((a, b) => Number(a.method === 'DELETE') - Number(b.method === 'DELETE'));
+}
+
+/** A role that is not enough must not reach the route; one that is enough must, whatever the route then makes of the body. */
+test('every route by every kind of caller', { timeout: 60_000 }, async () => {
+  const rows = await matrix();
+  expect(rows.length).toBeGreaterThan(20);
+  const wrong: string[] = [];
+  const expectStatus = async (row: Row, who: string | undefined, allowed: (status: number) => boolean) => {
+    // Pace of the test, not of a caller: a minute apart, so that no limit plays a part.
+    nowMs += 61_000;
+    const response = await ask(row.method, row.path, who, row.body);
+    await response.body?.cancel();
+    if (!allowed(response.status)) wrong.push(`${row.method} ${row.route} by ${who ?? 'nobody'}: ${response.status}`);
+    if (response.status >= 500) wrong.push(`${row.method} ${row.route} by ${who}: ${response.status}`);
+  };
+  for (const row of rows.filter((r) => r.method !== 'DELETE')) {
+    for (const who of [undefined, 'wrong', 'revoked', 'nonsense']) await expectStatus(row, who, (s) => s === 401);
+    for (const role of TOKEN_ROLES) {
+      const enough = TOKEN_ROLES.indexOf(role) >= TOKEN_ROLES.indexOf(row.needed);
+      await expectStatus(row, role, (s) => (enough ? s !== 401 && s !== 403 : s === 403));
+    }
+    // Of another lab's things nothing is there. Collections answer with the caller's own, which is checked below.
+    if (row.path !== row.route) await expectStatus(row, 'other lab', (s) => s === 404 || s === 422);
+  }
+  for (const row of rows.filter((r) => r.method === 'DELETE')) {
+    for (const who of [undefined, 'wrong', 'revoked']) await expectStatus(row, who, (s) => s === 401);
+    for (const role of ['reader', 'sender']) await expectStatus(row, role, (s) => s === 403);
+    await expectStatus(row, 'other lab', (s) => s === 404);
+  }
+  expect(wrong).toEqual([]);
+});
+
+describe('labs', () => {
+  test('see nothing of each other: no id, no name, no byte, and their names do not collide', async () => {
+    nowMs += 61_000;
+    for (const path of ['/v1/campaigns', '/v1/jobs', '/v1/jobs?state=done']) {
+      const text = await (await ask('GET', path, 'other lab')).text();
+      for (const id of Object.values(ids)) expect(text).not.toContain(id);
+      expect(JSON.parse(text).items.filter((c: Body) => c.name === 'films')).toEqual([]);
+    }
+    expect((await ask('GET', '/v1/campaigns/films', 'other lab')).status).toBe(404);
+    expect((await ask('GET', `/v1/jobs?campaign=${ids['campaign']}`, 'other lab')).status).toBe(404);
+    expect((await ask('POST', '/v1/campaigns', 'other lab', '{"name":"films"}')).status).toBe(201);
+    expect((await ask('GET', '/v1/campaigns/films', 'reader')).status).toBe(200);
+  });
+});
+
+describe('tokens', () => {
+  test('end with their days', async () => {
+    const before = nowMs;
+    expect((await ask('GET', '/v1/campaigns', 'reader')).status).toBe(200);
+    nowMs += 10 * 86_400_000;
+    expect((await ask('GET', '/v1/campaigns', 'reader')).status).toBe(401);
+    nowMs = before;
+  });
+
+  test('are stored hashed, and an answer never repeats what was sent', async () => {
+    const { tokens: table } = await import('../../schema/tables/index.ts');
+    const stored = JSON.stringify(await api.ports.database.read.select().from(table));
+    for (const token of Object.values(tokens)) expect(stored).not.toContain(token.split('.')[1]);
+    const refused = await (await ask('GET', '/v1/campaigns', 'secret-with-a-typing-error')).text();
+    expect(refused).not.toContain('secret-with');
+    expect(JSON.parse(refused).type).toBe('/v1/reference#token-refused');
+  });
+
+  test('are not taken from a query, a cookie or another scheme', async () => {
+    nowMs += 61_000;
+    const headers: Record<string, string>[] = [
+      { cookie: `token=${tokens['keeper']}` },
+      { authorization: `Basic ${tokens['keeper']}` },
+      { authorization: `Bearer ${tokens['keeper']} more` },
+      { authorization: 'Bearer' },
+    ];
+    for (const h of headers) expect((await ask('GET', '/v1/campaigns', undefined, undefined, h)).status).toBe(401);
+    expect((await ask('GET', `/v1/campaigns?token=${tokens['keeper']}`)).status).toBe(401);
+    const answer = await ask('GET', '/v1/campaigns');
+    expect(answer.headers.get('www-authenticate')).toBe('Bearer realm="ratespan"');
+    expect(answer.headers.get('access-control-allow-origin')).toBeNull();
+  });
+});
+
+describe('limits', () => {
+  test('20 failed log-ins a minute an address, then even a right token waits; others go on', async () => {
+    nowMs += 61_000;
+    const from = { 'x-test-address': '198.51.100.7' };
+    const status = async (who: string, headers = from) =>
+      (await ask('GET', '/v1/campaigns', who, undefined, headers)).status;
+    for (let i = 0; i < 20; i++) expect(await status('wrong')).toBe(401);
+    expect(await status('keeper')).toBe(429);
+    expect(await status('keeper', { 'x-test-address': '198.51.100.8' })).toBe(200);
+    const held = await ask('GET', '/v1/campaigns', 'keeper', undefined, from);
+    expect(Number(held.headers.get('retry-after'))).toBeGreaterThan(50);
+    nowMs += 60_000;
+    expect(await status('keeper')).toBe(200);
+  });
+
+  test('600 requests a minute a token', async () => {
+    nowMs += 61_000;
+    for (let i = 0; i < 600; i++) expect((await ask('GET', '/v1/campaigns?limit=1', 'reader')).status).toBe(200);
+    expect((await ask('GET', '/v1/campaigns', 'reader')).status).toBe(429);
+    expect((await ask('GET', '/v1/campaigns', 'sender')).status).toBe(200);
+    nowMs += 60_000;
+    expect((await ask('GET', '/v1/campaigns', 'reader')).status).toBe(200);
+  });
+});
