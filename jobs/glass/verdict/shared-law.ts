@@ -55,7 +55,7 @@ export function fitSharedLaw(
   // Student's t is taken with n − p by whoever reads the draws; the weights are estimates, and an instrument with few scans has fewer.
   const degrees = Math.max(1, d.n - fit.layout.p + d.instruments);
   const real = studentQuantile(0.975, effectiveDegrees(d, fit, 1, a.scatter.degrees)) * a.inflation;
-  const stretch = Math.max(1, real / studentQuantile(0.975, degrees));
+  const stretch = Math.max(1, real / studentQuantile(0.975, degrees)) * Math.max(1, 1 / Math.sqrt(meanSquare(a)));
   const T = new Float64Array(d.n);
   const priors = new Float64Array(fit.layout.rows - d.n);
   const pick = new Float64Array(d.n);
@@ -152,6 +152,11 @@ export function exponentsUnder(judged: JudgedEvent, { data: d }: BendAnalysis, f
     const trueK = d.temperatureK[i] + shift;
     return exponentOfWidth(scan.event.widthK, trueK, localEnergy(1 / trueK, Math.exp(fit.lnEnergy), fit.q, d.scale));
   });
+}
+
+/** Mean of residual²/(variance (1 − leverage)): what the resampled residuals carry of the variance that the weights say. */
+function meanSquare({ data: d, full }: BendAnalysis): number {
+  return mean(full.residualK.map((r, i) => (r * r) / (d.variance[i] * (1 - full.leverage[i]))));
 }
 
 /**
