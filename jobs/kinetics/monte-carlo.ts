@@ -34,8 +34,13 @@ const BENT_FROM_SPAN = 10;
 const LEAST_SIGMA_K = 1e-4;
 /** α = 0.5, where a scan's shift is read. */
 const MIDDLE = 9;
-/** An instrument's own scatter is shrunk towards that of all by this many scans' worth. */
-const SHRINK_SCANS = 1;
+/**
+ * Scatter of an instrument with fewer than two degrees of freedom of its own cannot be read off its scans (two chip scans at the far end
+ * of the rates define the trend there): what is missing to two is filled up with that of all scans, and at least this much, K
+ * (about what mounting costs on a furnace and a membrane; common practice, no source).
+ */
+const OWN_DEGREES = 2;
+const LEAST_PRIOR_K = { furnace: 0.2, chip: 1 } as const;
 
 /**
  * The trend is bent where the data can bear it and ask for it: left in where it is not seen, two scans of a second instrument at the far
@@ -102,8 +107,8 @@ function modelWithTrend(data: EventData, curves: Uint16Array, bent: boolean): Sc
 }
 
 /**
- * Scatter of each instrument, σ² = Σ r²/Σ (1 − h) over its scans (restricted maximum likelihood's fixed point), shrunk towards that of all,
- * with the degrees of freedom behind it, Σ (1 − h) and what the shrinkage adds. The first trend covers all scans, the others the curve scans.
+ * Scatter of each instrument, σ² = Σ r²/Σ (1 − h) over its scans (restricted maximum likelihood's fixed point), with the degrees of freedom
+ * behind it. The first trend covers all scans, the others the curve scans.
  */
 function instrumentScatter(
   data: EventData,
@@ -122,13 +127,14 @@ function instrumentScatter(
   });
   const all = (v: Float64Array) => v.reduce((s, x) => s + x, 0);
   const pooled = all(squares) / Math.max(1e-9, all(degrees));
-  const extra = count > 1 ? SHRINK_SCANS : 0;
-  return {
-    sigmaK: Float64Array.from(squares, (s, at) =>
-      Math.max(LEAST_SIGMA_K, Math.sqrt((s + extra * pooled) / Math.max(1e-9, degrees[at] + extra))),
-    ),
-    degrees: degrees.map((d) => d + extra),
-  };
+  const sigmaK = new Float64Array(count);
+  for (let at = 0; at < count; at++) {
+    const missing = count > 1 ? Math.max(0, OWN_DEGREES - degrees[at]) : 0;
+    const prior = Math.max(pooled, LEAST_PRIOR_K[data.instruments[at].kind] ** 2);
+    degrees[at] += missing;
+    sigmaK[at] = Math.max(LEAST_SIGMA_K, Math.sqrt((squares[at] + missing * prior) / Math.max(1e-9, degrees[at])));
+  }
+  return { sigmaK, degrees };
 }
 
 /**
