@@ -1,21 +1,20 @@
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { createApp } from '../../api/app.ts';
-import { createCampaign, createToken, receiveFile, revokeToken } from '../../jobs/store/index.ts';
+import { createCampaign, createToken, revokeToken } from '../../jobs/store/index.ts';
+import { tokens as tokenTable } from '../../schema/tables/index.ts';
 import { TOKEN_ROLES, type TokenRole } from '../../schema/wire/states.ts';
-import { type Body, type Harness, openHarness } from './harness.ts';
-import { smallCampaign } from './small-campaign.ts';
+import { drain, openTestPorts, send, type TestPorts } from '../runner/test-ports.ts';
+import type { Body } from './harness.ts';
 
-/** One app that asks for tokens over the stores of the harness, which holds a campaign of lab `ours`. */
-let api: Harness;
+/** One app that asks for tokens, over stores that hold a campaign of lab `ours`. Its clock is moved by hand. */
+let ports: TestPorts;
 let app: ReturnType<typeof createApp>;
 const tokens: Record<string, string> = {};
 const ids: Record<string, string> = {};
-let nowMs = Date.UTC(2026, 0, 1);
+const MINUTE_MS = 61_000;
 
 beforeAll(async () => {
-  api = await openHarness();
-  const clock = { ...api.ports.clock, now: () => nowMs };
-  const ports = { ...api.ports, clock };
+  ports = await openTestPorts();
   app = createApp(ports, { access: { addressOf: (c) => c.req.header('x-test-address') ?? '192.0.2.1' } });
   const make = async (name: string, lab: string, role: TokenRole, days = 9) => {
     const made = await createToken(ports, { lab, role, days });
@@ -27,14 +26,14 @@ beforeAll(async () => {
   await revokeToken(ports, await make('revoked', 'ours', 'keeper'));
   tokens['wrong'] = `${tokens['keeper'].slice(0, -1)}${tokens['keeper'].endsWith('A') ? 'E' : 'A'}`;
   ids['campaign'] = (await createCampaign(ports, 'films', 'ours')).id;
-  for (const [path, bytes] of smallCampaign([5, 10])) await receiveFile(ports, ids['campaign'], path, bytes);
-  await api.drain();
+  for (const rate of [1, 2, 3]) await send(ports, ids['campaign'], `A/oven/${rate}.txt`, `rate ${rate}`);
+  await drain(ports);
   const get = async (path: string) => (await (await ask('GET', path, 'keeper')).json()) as Body;
   ids['sample'] = (await get(`/v1/campaigns/films/status`)).samples[0].id;
   ids['scan'] = (await get(`/v1/samples/${ids['sample']}`)).scans[0].id;
   ids['job'] = (await get('/v1/jobs')).items[0].id;
 }, 60_000);
-afterAll(() => api.close());
+afterAll(() => ports.close());
 
 function ask(method: string, path: string, who?: string, body?: string, headers: Record<string, string> = {}) {
   return app.request(`http://ratespan.example${path}`, {
@@ -102,7 +101,7 @@ test('every route by every kind of caller', { timeout: 60_000 }, async () => {
   const wrong: string[] = [];
   const expectStatus = async (row: Row, who: string | undefined, allowed: (status: number) => boolean) => {
     // Pace of the test, not of a caller: a minute apart, so that no limit plays a part.
-    nowMs += 61_000;
+    ports.clock.advance(MINUTE_MS);
     const response = await ask(row.method, row.path, who, row.body);
     await response.body?.cancel();
     if (!allowed(response.status)) wrong.push(`${row.method} ${row.route} by ${who ?? 'nobody'}: ${response.status}`);
@@ -127,7 +126,7 @@ test('every route by every kind of caller', { timeout: 60_000 }, async () => {
 
 describe('labs', () => {
   test('see nothing of each other: no id, no name, no byte, and their names do not collide', async () => {
-    nowMs += 61_000;
+    ports.clock.advance(MINUTE_MS);
     for (const path of ['/v1/campaigns', '/v1/jobs', '/v1/jobs?state=done']) {
       const text = await (await ask('GET', path, 'other lab')).text();
       for (const id of Object.values(ids)) expect(text).not.toContain(id);
@@ -142,16 +141,15 @@ describe('labs', () => {
 
 describe('tokens', () => {
   test('end with their days', async () => {
-    const before = nowMs;
     expect((await ask('GET', '/v1/campaigns', 'reader')).status).toBe(200);
-    nowMs += 10 * 86_400_000;
-    expect((await ask('GET', '/v1/campaigns', 'reader')).status).toBe(401);
-    nowMs = before;
+    const { token } = await createToken(ports, { lab: 'ours', role: 'reader', days: 1 });
+    expect((await ask('GET', '/v1/campaigns', token)).status).toBe(200);
+    ports.clock.advance(86_400_000);
+    expect((await ask('GET', '/v1/campaigns', token)).status).toBe(401);
   });
 
   test('are stored hashed, and an answer never repeats what was sent', async () => {
-    const { tokens: table } = await import('../../schema/tables/index.ts');
-    const stored = JSON.stringify(await api.ports.database.read.select().from(table));
+    const stored = JSON.stringify(await ports.database.read.select().from(tokenTable));
     for (const token of Object.values(tokens)) expect(stored).not.toContain(token.split('.')[1]);
     const refused = await (await ask('GET', '/v1/campaigns', 'secret-with-a-typing-error')).text();
     expect(refused).not.toContain('secret-with');
@@ -159,7 +157,7 @@ describe('tokens', () => {
   });
 
   test('are not taken from a query, a cookie or another scheme', async () => {
-    nowMs += 61_000;
+    ports.clock.advance(MINUTE_MS);
     const headers: Record<string, string>[] = [
       { cookie: `token=${tokens['keeper']}` },
       { authorization: `Basic ${tokens['keeper']}` },
@@ -176,7 +174,7 @@ describe('tokens', () => {
 
 describe('limits', () => {
   test('20 failed log-ins a minute an address, then even a right token waits; others go on', async () => {
-    nowMs += 61_000;
+    ports.clock.advance(MINUTE_MS);
     const from = { 'x-test-address': '198.51.100.7' };
     const status = async (who: string, headers = from) =>
       (await ask('GET', '/v1/campaigns', who, undefined, headers)).status;
@@ -185,16 +183,16 @@ describe('limits', () => {
     expect(await status('keeper', { 'x-test-address': '198.51.100.8' })).toBe(200);
     const held = await ask('GET', '/v1/campaigns', 'keeper', undefined, from);
     expect(Number(held.headers.get('retry-after'))).toBeGreaterThan(50);
-    nowMs += 60_000;
+    ports.clock.advance(60_000);
     expect(await status('keeper')).toBe(200);
   });
 
   test('600 requests a minute a token', async () => {
-    nowMs += 61_000;
+    ports.clock.advance(MINUTE_MS);
     for (let i = 0; i < 600; i++) expect((await ask('GET', '/v1/campaigns?limit=1', 'reader')).status).toBe(200);
     expect((await ask('GET', '/v1/campaigns', 'reader')).status).toBe(429);
     expect((await ask('GET', '/v1/campaigns', 'sender')).status).toBe(200);
-    nowMs += 60_000;
+    ports.clock.advance(60_000);
     expect((await ask('GET', '/v1/campaigns', 'reader')).status).toBe(200);
   });
 });

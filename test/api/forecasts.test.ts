@@ -1,0 +1,146 @@
+import { afterAll, beforeAll, describe, expect, it } from 'vitest';
+import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
+import { type Body, type Harness, openHarness } from './harness.ts';
+import { smallCampaign, TRUE_ENERGY_KJ_PER_MOL } from './small-campaign.ts';
+
+let api: Harness;
+let campaign: string;
+let sample: string;
+
+beforeAll(async () => {
+  api = await openHarness();
+  const made = await api.sendJson('POST', '/v1/campaigns', {
+    name: 'forecasts',
+    goals: [{ sample: 'glass', conversion: 0.01, temperature_C: 250, time_s: 60 }],
+  });
+  campaign = made.body.id;
+  for (const [path, bytes] of smallCampaign()) await api.upload(campaign, path, bytes);
+  await api.drain();
+  sample = (await api.get(`/v1/campaigns/${campaign}/status`)).body.samples[0].id;
+}, 60_000);
+afterAll(() => api.close());
+
+const table = async (name: string): Promise<Body[]> =>
+  (await api.get(`/v1/campaigns/${campaign}/${name}?limit=1000`)).body.items;
+const ask = (question: unknown) => api.sendJson('POST', `/v1/samples/${sample}/forecasts`, question);
+/** JMAK of the data's own law: t = [−ln(1 − α)]^(1/n)/K(T), K = exp(35.6 − E/(R T)), n = 3; R: CODATA 2018. */
+const trueTimeS = (conversion: number, celsius: number) =>
+  (-Math.log1p(-conversion)) ** (1 / 3) /
+  Math.exp(35.6 - (TRUE_ENERGY_KJ_PER_MOL * 1000) / (8.31446261815324 * (celsius + 273.15)));
+
+describe('a campaign with curves', () => {
+  it('has a verdict, with the energies at both ends, and says it in the status', async () => {
+    const [verdict] = await table('verdicts');
+    // Five rates of one straight material on one furnace: never a bend of the material.
+    expect(['straight', 'undecided']).toContain(verdict.verdict);
+    expect(Math.abs(verdict.energy_low_rate_kJ_per_mol / TRUE_ENERGY_KJ_PER_MOL - 1)).toBeLessThan(0.1);
+    const { samples } = (await api.get(`/v1/campaigns/${campaign}/status`)).body;
+    expect(samples[0].verdict).toBe(verdict.verdict);
+  });
+
+  it('answers its goal by each method, near the truth of the data, and advises scans', async () => {
+    const rows = await table('forecasts');
+    expect(rows.map((row) => row.question)).toEqual(rows.map(() => 'time_to_conversion'));
+    for (const row of rows) {
+      expect(row).toMatchObject({ conversion: 0.01, temperature_C: 250, time_s: 60, unit: 's' });
+      expect(['met', 'not_met', 'cannot_say']).toContain(row.goal);
+      expect(Math.abs(Math.log(row.value / trueTimeS(0.01, 250)))).toBeLessThan(0.3);
+    }
+    const advice = await table('advice');
+    expect(advice.map((row) => row.goal)).toContain('energy');
+    for (const row of advice) expect(row.interval_expected).toBeLessThan(row.interval_now);
+  });
+
+  it('takes other goals, and only the forecasts follow', async () => {
+    const put = await api.sendJson('PUT', `/v1/campaigns/${campaign}/goals`, {
+      goals: [{ sample: 'glass', conversion: 0.5, time_s: 3600 }],
+    });
+    expect(put.status).toBe(202);
+    const before = await table('parameters');
+    await api.drain();
+    const rows = await table('forecasts');
+    expect(new Set(rows.map((row) => row.question))).toEqual(new Set(['temperature_limit']));
+    expect(await table('parameters')).toEqual(before);
+    await api.sendJson('PUT', `/v1/campaigns/${campaign}/goals`, { goals: [] });
+    await api.drain();
+    // With no goal: two conversions at five temperatures.
+    expect((await table('forecasts')).filter((row) => row.method === 'shared_law')).toHaveLength(10);
+  });
+
+  it.each([
+    [{ temperature_C: 260, conversion: 0.5 }, 'time_to_conversion', 's'],
+    [{ temperature_C: 260, time_s: 100 }, 'conversion_at_end', '1'],
+    [{ time_s: 100, conversion: 0.5 }, 'temperature_limit', '°C'],
+    [
+      {
+        program: [
+          [0, 200],
+          [600, 300],
+        ],
+        conversion: 0.5,
+      },
+      'time_to_conversion',
+      's',
+    ],
+    [
+      {
+        program: [
+          [0, 200],
+          [600, 300],
+        ],
+      },
+      'conversion_at_end',
+      '1',
+    ],
+  ])('answers %j on request', async (question, name, unit) => {
+    const { status, body } = await ask(question);
+    expect(status).toBe(200);
+    expect(body.caution).toBe(FORECAST_CAUTION);
+    expect(body.items.length).toBeGreaterThan(0);
+    for (const row of body.items) {
+      expect(row).toMatchObject({ question: name, unit, sample: 'glass' });
+      expect(row.lower95).toBeLessThanOrEqual(row.value);
+      expect(row.upper95).toBeGreaterThanOrEqual(row.value);
+    }
+  });
+
+  it('answers a question within 100 ms on one core', async () => {
+    await ask({ temperature_C: 261, conversion: 0.4 });
+    const started = performance.now();
+    for (let i = 0; i < 5; i++) await ask({ temperature_C: 262 + i, conversion: 0.4 });
+    expect((performance.now() - started) / 5).toBeLessThan(100);
+  });
+
+  it.each([
+    {},
+    { temperature_C: 260 },
+    { temperature_C: 260, conversion: 0.5, time_s: 10 },
+    { temperature_C: 260, conversion: 1.5 },
+    { program: [[0, 200]] },
+    {
+      program: [
+        [0, 200],
+        [0, 300],
+      ],
+    },
+    { temperature: 260, conversion: 0.5 },
+  ])('refuses %j', async (question) => {
+    expect((await ask(question)).status).toBe(422);
+  });
+
+  it('draws the transformation diagram and the laws behind the verdict', async () => {
+    const ttt = (await api.get(`/v1/samples/${sample}/curves?kind=ttt`)).body;
+    const half = ttt.series.find((s: Body) => s.name === 'event 1, shared_law, conversion 0.5');
+    // At the temperature of 250 °C the line passes the true time.
+    const at = half.x.findIndex((T: number) => T >= 523.15);
+    expect(Math.abs(Math.log(half.y[at] / trueTimeS(0.5, half.x[at] - 273.15)))).toBeLessThan(0.3);
+    const kissinger = (await api.get(`/v1/samples/${sample}/curves?kind=kissinger`)).body;
+    const names = kissinger.series.map((s: Body) => s.name);
+    expect(names).toContain('event 1, straight, lags as calibrated');
+    expect(names).toContain('event 1, oven, lag removed');
+    const law = kissinger.series.find((s: Body) => s.name === 'event 1, straight, lags as calibrated');
+    const slope = (law.y.at(-1) - law.y[0]) / (law.x.at(-1) - law.x[0]);
+    expect(Math.abs((-slope * 8.31446261815324e-3) / TRUE_ENERGY_KJ_PER_MOL - 1)).toBeLessThan(0.02);
+    expect((await api.get(`/v1/samples/${sample}/curves?kind=growth`)).body.series).toEqual([]);
+  });
+});
