@@ -1,6 +1,7 @@
 import type { ResultRow } from '../jobs/store/index.ts';
 import { CONVERSION_GRID, type ReducedScan } from '../schema/wire/reduced.ts';
 import { GAS_CONSTANT } from '../schema/wire/units.ts';
+import type { PlotCurve } from '../schema/wire/verdicts.ts';
 import type { CurveKind, CurveSeries, Curves } from './shapes/curves.ts';
 
 /** One reduced scan with what names its curves. */
@@ -14,7 +15,7 @@ export interface ReducedSampleScan {
 const TEMPERATURE = { quantity: 'temperature', unit: 'K' };
 const CONVERSION = { quantity: 'conversion', unit: '1' };
 
-/** Axes of each kind; a thermogram's unit depends on whether the masses are known. */
+/** Axes of each kind; a thermogram's unit depends on whether the masses are known, that of growth on whether a growth rate is. */
 export const CURVE_AXES: Record<CurveKind, Pick<Curves, 'x' | 'y'>> = {
   thermogram: { x: TEMPERATURE, y: { quantity: 'heat flow, exothermic up', unit: 'W or W/kg' } },
   baseline: { x: TEMPERATURE, y: { quantity: 'baseline of the heat flow, exothermic up', unit: 'W or W/kg' } },
@@ -24,6 +25,9 @@ export const CURVE_AXES: Record<CurveKind, Pick<Curves, 'x' | 'y'>> = {
     y: { quantity: 'ln(heating rate / peak temperature squared)', unit: 'ln(1/(K s))' },
   },
   energy: { x: CONVERSION, y: { quantity: 'activation energy', unit: 'kJ/mol' } },
+  growth: { x: { quantity: 'log10 viscosity', unit: 'Pa s' }, y: { quantity: 'log10 K', unit: '1/s' } },
+  viscosity: { x: { quantity: 'Tg/T', unit: '1' }, y: { quantity: 'log10 viscosity', unit: 'Pa s' } },
+  ttt: { x: TEMPERATURE, y: { quantity: 'time', unit: 's' } },
 };
 
 /** Heat flow of each scan as it was analysed, or the baseline under its event: not a number elsewhere, so left out there. */
@@ -122,4 +126,57 @@ export function energySeries(parameters: ResultRow[]): CurveSeries[] {
       ...(bounded && { lower: points.map((p) => Number(p.lower95)), upper: points.map((p) => Number(p.upper95)) }),
     };
   });
+}
+
+/** Plots behind the verdicts of one sample, event by event. */
+type EventPlots = { event: number; plots: PlotCurve[] }[];
+
+const namedByEvent = (event: number, { name, ...series }: PlotCurve['series'][number]): CurveSeries => ({
+  name: `event ${event}, ${name}`,
+  ...series,
+});
+
+/**
+ * Behind each verdict: the points of each instrument with the lag that the bent law leaves to it removed, and the line of the material
+ * under each of the four laws. The verdict counts its abscissa in 1000/T.
+ */
+export function kissingerLawSeries(judged: EventPlots): CurveSeries[] {
+  return judged.flatMap(({ event, plots }) =>
+    plots
+      .filter((plot) => plot.kind === 'kissinger')
+      .flatMap((plot) =>
+        plot.series.map((series) =>
+          namedByEvent(event, {
+            ...series,
+            name: series.instrument === undefined ? series.name : `${series.name}, lag removed`,
+            x: series.x.map((v) => v / 1000),
+          }),
+        ),
+      ),
+  );
+}
+
+/** Growth against viscosity, or viscosity against Tg/T; with the axes of the plot, which know whether a growth rate anchors it. */
+export function glassCurves(judged: EventPlots, kind: 'growth' | 'viscosity'): Pick<Curves, 'x' | 'y' | 'series'> {
+  const found = judged.flatMap(({ event, plots }) =>
+    plots.filter((plot) => plot.kind === kind).map((plot) => ({ event, plot })),
+  );
+  const { x, y } = found[0]?.plot ?? CURVE_AXES[kind];
+  return { x, y, series: found.flatMap(({ event, plot }) => plot.series.map((series) => namedByEvent(event, series))) };
+}
+
+/** Time to each conversion against temperature, with its band, one series an event, method and conversion. */
+export function transformationSeries(
+  lines: {
+    event: number;
+    line: { method: string; conversion: number } & Record<'x' | 'y' | 'lower' | 'upper', Float64Array>;
+  }[],
+): CurveSeries[] {
+  return lines.map(({ event, line }) => ({
+    name: `event ${event}, ${line.method}, conversion ${line.conversion}`,
+    x: [...line.x],
+    y: [...line.y],
+    lower: [...line.lower],
+    upper: [...line.upper],
+  }));
 }

@@ -8,6 +8,7 @@ import {
   listCampaigns,
   refitCampaign,
   renameCampaign,
+  setGoals,
 } from '../../jobs/store/index.ts';
 import { quote } from '../../schema/wire/flags.ts';
 import { limitJson } from '../json-body.ts';
@@ -25,18 +26,28 @@ import {
 import { Problem } from '../problems.ts';
 import { pageOf, requireCampaign } from '../results.ts';
 import { CampaignShape } from '../shapes/campaign.ts';
+import { GoalsShape, goalRowOf } from '../shapes/forecasts.ts';
 
 const NAME_BODY = {
   required: true,
   content: { 'application/json': { schema: strict({ name: textOf(CAMPAIGN_NAME_LIMIT) }) } },
 } as const;
 
+const NEW_BODY = {
+  required: true,
+  content: {
+    'application/json': { schema: strict({ name: textOf(CAMPAIGN_NAME_LIMIT), goals: GoalsShape.optional() }) },
+  },
+} as const;
+
+const GoalsBody = strict({ goals: GoalsShape });
+
 const createCampaignRoute = createRoute({
   method: 'post',
   path: '/v1/campaigns',
   summary: 'Make a campaign. A name that is taken is refused with 409.',
   middleware: [limitJson] as const,
-  request: { query: NO_QUERY, body: NAME_BODY },
+  request: { query: NO_QUERY, body: NEW_BODY },
   responses: { 201: answer(CampaignShape, 'The new campaign.'), default: PROBLEM_ANSWER },
 });
 
@@ -86,6 +97,19 @@ const refitRoute = createRoute({
   responses: { 202: answer(CampaignShape, 'The campaign, with fits queued.'), default: PROBLEM_ANSWER },
 });
 
+const goalsRoute = createRoute({
+  method: 'put',
+  path: '/v1/campaigns/{id}/goals',
+  summary: 'Put these goals in the place of those set before; those of goal.csv stay. The forecasts follow.',
+  middleware: [limitJson] as const,
+  request: {
+    params: ID_PARAM,
+    query: NO_QUERY,
+    body: { required: true, content: { 'application/json': { schema: GoalsBody } } },
+  },
+  responses: { 202: answer(GoalsBody, 'The goals as they are kept.'), default: PROBLEM_ANSWER },
+});
+
 const shapeOf = ({ id, name, createdAt, revision }: Campaign) => ({
   id,
   name,
@@ -95,7 +119,9 @@ const shapeOf = ({ id, name, createdAt, revision }: Campaign) => ({
 
 export function addCampaignRoutes(app: ApiApp, ports: Ports): void {
   app.openapi(createCampaignRoute, async (c) => {
-    const campaign = await createCampaign(ports, c.req.valid('json').name, c.get('access').lab);
+    const { name, goals = [] } = c.req.valid('json');
+    const campaign = await createCampaign(ports, name, c.get('access').lab);
+    if (goals.length > 0) await setGoals(ports, campaign.id, goals.map(goalRowOf));
     return c.json(shapeOf(campaign), 201, { location: `/v1/campaigns/${campaign.id}` });
   });
 
@@ -125,6 +151,13 @@ export function addCampaignRoutes(app: ApiApp, ports: Ports): void {
       );
     await deleteCampaign(ports, campaign.id);
     return c.body(null, 204);
+  });
+
+  app.openapi(goalsRoute, async (c) => {
+    const { id } = await requireCampaign(c, ports, c.req.valid('param').id);
+    const { goals } = c.req.valid('json');
+    await setGoals(ports, id, goals.map(goalRowOf));
+    return c.json({ goals }, 202);
   });
 
   app.openapi(refitRoute, async (c) => {

@@ -1,16 +1,19 @@
 import { createRoute, z } from '@hono/zod-openapi';
 import type { Context } from 'hono';
 import type { Ports } from '../../jobs/ports/index.ts';
+import { answerForecast, answerTransformation } from '../../jobs/steps/answer-forecast.ts';
 import {
   findSample,
   listSampleScans,
   type ResultRow,
   readReducedScan,
+  readSamplePlots,
   readTable,
   type SampleView,
   type TableFilter,
 } from '../../jobs/store/index.ts';
 import { quote } from '../../schema/wire/flags.ts';
+import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import type { ResultTable } from '../../schema/wire/result-tables.ts';
 import { SAMPLE_STATES, SCAN_STATES } from '../../schema/wire/states.ts';
 import type { ApiEnv } from '../access.ts';
@@ -18,14 +21,19 @@ import {
   CURVE_AXES,
   conversionSeries,
   energySeries,
+  glassCurves,
+  kissingerLawSeries,
   kissingerSeries,
   type ReducedSampleScan,
   traceSeries,
+  transformationSeries,
 } from '../curves.ts';
+import { limitJson } from '../json-body.ts';
 import { type ApiApp, answer, ID_PARAM, NO_QUERY, oneOf, PROBLEM_ANSWER, strict } from '../openapi.ts';
 import { Problem } from '../problems.ts';
 import { isUnchanged, requireCampaign, UNCHANGED_ANSWER } from '../results.ts';
 import { CURVE_KINDS, CurvesShape } from '../shapes/curves.ts';
+import { AnswerShape, QUESTION_FORMS, QuestionBody, questionOf } from '../shapes/forecasts.ts';
 
 const SampleShape = z
   .object({
@@ -69,7 +77,34 @@ async function reducedScans(ports: Ports, { campaignId, sample }: SampleView): P
   return found;
 }
 
+const forecastRoute = createRoute({
+  method: 'post',
+  path: '/v1/samples/{id}/forecasts',
+  summary: 'Answer one question about times, temperatures and conversions, from the draws of the last fit.',
+  description: FORECAST_CAUTION,
+  middleware: [limitJson] as const,
+  request: {
+    params: ID_PARAM,
+    query: NO_QUERY,
+    body: { required: true, content: { 'application/json': { schema: QuestionBody } } },
+  },
+  responses: { 200: answer(AnswerShape, 'The answer by every method that the data support.'), default: PROBLEM_ANSWER },
+});
+
 export function addSampleRoutes(app: ApiApp, ports: Ports): void {
+  app.openapi(forecastRoute, async (c) => {
+    const sample = await requireSample(c, ports, c.req.valid('param').id);
+    const question = questionOf(c.req.valid('json'));
+    if (!question)
+      throw new Problem('invalid-input', `body: the fields given ask no question; allowed: ${QUESTION_FORMS}`);
+    try {
+      return c.json({ items: await answerForecast(ports, sample.id, question), caution: FORECAST_CAUTION }, 200);
+    } catch (error) {
+      if (error instanceof RangeError) throw new Problem('invalid-input', `body: ${error.message}`);
+      throw error;
+    }
+  });
+
   app.openapi(sampleRoute, async (c) => {
     const sample = await requireSample(c, ports, c.req.valid('param').id);
     if (isUnchanged(c, await requireCampaign(c, ports, sample.campaignId))) return c.body(null, 304);
@@ -88,12 +123,17 @@ export function addSampleRoutes(app: ApiApp, ports: Ports): void {
         rows.push(row);
       return rows;
     };
+    if (kind === 'growth' || kind === 'viscosity')
+      return c.json({ kind, ...glassCurves(await readSamplePlots(ports, sample.id), kind) }, 200);
     const series = {
       thermogram: async () => traceSeries(await reducedScans(ports, sample), 'heatFlow'),
       baseline: async () => traceSeries(await reducedScans(ports, sample), 'baseline'),
       conversion: async () => conversionSeries(await reducedScans(ports, sample)),
-      kissinger: async () =>
-        kissingerSeries(await rowsOf('scans'), await rowsOf('parameters', { method: 'kissinger' })),
+      kissinger: async () => [
+        ...kissingerSeries(await rowsOf('scans'), await rowsOf('parameters', { method: 'kissinger' })),
+        ...kissingerLawSeries(await readSamplePlots(ports, sample.id)),
+      ],
+      ttt: async () => transformationSeries(await answerTransformation(ports, sample.id)),
       energy: async () => energySeries(await rowsOf('parameters', { quantity: 'activation_energy' })),
     };
     return c.json({ kind, ...CURVE_AXES[kind], series: await series[kind]() }, 200);

@@ -1,7 +1,16 @@
 import { z } from '@hono/zod-openapi';
 
 /** Kinds of curves that a sample has. */
-export const CURVE_KINDS = ['thermogram', 'baseline', 'conversion', 'kissinger', 'energy'] as const;
+export const CURVE_KINDS = [
+  'thermogram',
+  'baseline',
+  'conversion',
+  'kissinger',
+  'energy',
+  'growth',
+  'viscosity',
+  'ttt',
+] as const;
 export type CurveKind = (typeof CURVE_KINDS)[number];
 
 /** Points of one curve at most. */

@@ -3,7 +3,7 @@ import type { GlassFacts, InstrumentRange, JudgeResult } from '../../schema/wire
 import type { Ports } from '../ports/index.ts';
 import type { FitRows } from '../store/fit-rows.ts';
 import { hashOf } from '../store/ids.ts';
-import { queueNext, saveJudgement } from '../store/judge-rows.ts';
+import { judgementKey, queueNext, saveJudgement } from '../store/judge-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
 import { loadBench, loadViscosities } from '../store/question-rows.ts';
 import { readDerived } from './columns-store.ts';
@@ -79,7 +79,7 @@ const VERSION = STEP_VERSIONS['judge-curvature'];
 export const judgeKeyOf = (rows: FitRows, facts: JudgeFacts): string =>
   hashOf(['judge-curvature', VERSION, inputsKeyOf(rows), facts]);
 
-const blobKeyOf = ({ sample }: FitRows, judgeKey: string) => `derived/${sample.campaignId}/judge-${judgeKey}`;
+const blobKeyOf = ({ sample }: FitRows, judgeKey: string) => judgementKey(sample.campaignId, judgeKey);
 
 export const readStoredJudgement = (ports: Ports, rows: FitRows, judgeKey: string): Promise<JudgeResult | undefined> =>
   readDerived(ports, blobKeyOf(rows, judgeKey), decodePacked<JudgeResult>);

@@ -16,7 +16,9 @@ export { type Corrections, correctScan, type HistoryEntry, readScanHistory } fro
 export { jobFigures } from './figures.ts';
 export { isBlobStoreMarked, markBlobStore } from './identity.ts';
 export { type JobView, listJobs, refitCampaign, retryJob } from './job-views.ts';
+export { readSamplePlots } from './judge-rows.ts';
 export { sweepOrphanBlobs } from './orphan-blobs.ts';
+export { setGoals } from './question-rows.ts';
 export { FILE_LIMIT_BYTES, receiveFile } from './receive.ts';
 export { StoreRefusal, type StoreRefusalCode } from './refusals.ts';
 export { claimReply, dropReply, keepReply, sweepReplies } from './replies.ts';

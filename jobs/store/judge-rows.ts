@@ -1,8 +1,10 @@
 import { eq, sql } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
 import { samples } from '../../schema/tables/index.ts';
+import { decodePacked } from '../../schema/wire/packed-blob.ts';
 import type { SampleForecastResult } from '../../schema/wire/sample-forecast.ts';
-import type { JudgeResult } from '../../schema/wire/verdicts.ts';
+import type { JudgeResult, PlotCurve } from '../../schema/wire/verdicts.ts';
+import type { Ports } from '../ports/index.ts';
 import { replaceFlags } from './assignment-rows.ts';
 import type { Statement } from './fence.ts';
 import type { SampleRow } from './fit-rows.ts';
@@ -61,6 +63,23 @@ export function saveForecasts(
     ...replaceFlags(db, campaignId, `forecast:${name}`, found.flags),
     db.update(samples).set({ forecastKey }).where(eq(samples.id, sample.id)),
   ];
+}
+
+/** Blob of everything behind the verdicts of a sample. */
+export const judgementKey = (campaignId: string, judgeKey: string): string => `derived/${campaignId}/judge-${judgeKey}`;
+
+/** Everything behind the verdicts of a sample, event by event; nothing where it has none (yet). */
+export async function readSamplePlots(
+  ports: Pick<Ports, 'database' | 'blobs'>,
+  sampleId: string,
+): Promise<{ event: number; plots: PlotCurve[] }[]> {
+  const [sample] = await ports.database.read
+    .select({ campaignId: samples.campaignId, judgeKey: samples.judgeKey })
+    .from(samples)
+    .where(eq(samples.id, sampleId));
+  if (!sample?.judgeKey) return [];
+  const bytes = await ports.blobs.bytes(judgementKey(sample.campaignId, sample.judgeKey));
+  return decodePacked<JudgeResult>(bytes).events.map(({ row, plots }) => ({ event: row.event, plots }));
 }
 
 /** Queues the step that follows for one sample. */

@@ -75,7 +75,7 @@ describe('a campaign with curves', () => {
       {
         program: [
           [0, 200],
-          [600, 300],
+          [600, 400],
         ],
         conversion: 0.5,
       },
