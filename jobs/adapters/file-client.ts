@@ -11,12 +11,13 @@ interface Prepared {
   reads: boolean;
 }
 
-/** A row as callers of libSQL know it: columns by name, and by position without being listed. */
+/** A row as callers of libSQL know it: columns by name (unless it is a number, as of `select 1`), and by position without being listed. */
 class Row {
   readonly #values: readonly unknown[];
   constructor(columns: readonly string[], values: readonly unknown[]) {
     this.#values = values;
-    for (let i = columns.length - 1; i >= 0; i--) (this as Record<string, unknown>)[columns[i]] = values[i];
+    for (let i = columns.length - 1; i >= 0; i--)
+      if (!(columns[i] in Row.prototype)) (this as Record<string, unknown>)[columns[i]] = values[i];
   }
   get length(): number {
     return this.#values.length;
