@@ -1,6 +1,7 @@
 import { openAsBlob } from 'node:fs';
 import { setTimeout as sleep } from 'node:timers/promises';
 import type { CampaignStatus } from '../../schema/wire/campaign.ts';
+import type { ForecastRow } from '../../schema/wire/forecasts.ts';
 import type { ResultTable } from '../../schema/wire/result-tables.ts';
 import type { FileReceipt, ResultRow } from '../store/index.ts';
 import type { FolderFile } from './campaign-folder.ts';
@@ -81,6 +82,13 @@ export class Client {
   async status(campaign: string): Promise<CampaignStatus> {
     const response = await this.#request('GET', `/campaigns/${encodeURIComponent(campaign)}/status`);
     return (await response.json()) as CampaignStatus;
+  }
+
+  /** The answer to one question about a sample, by its id. */
+  async forecast(sampleId: string, question: object): Promise<ForecastRow[]> {
+    const path = `/samples/${encodeURIComponent(sampleId)}/forecasts`;
+    const response = await this.#request('POST', path, JSON.stringify(question));
+    return ((await response.json()) as { items: ForecastRow[] }).items;
   }
 
   /** All rows of a table, page by page. */

@@ -14,6 +14,7 @@ const IMPLEMENTATIONS: Record<VerbName, () => Promise<Verb>> = {
   run: async () => (await import('./verbs/run.ts')).run,
   send: async () => (await import('./verbs/send.ts')).send,
   table: async () => (await import('./verbs/table.ts')).table,
+  forecast: async () => (await import('./verbs/forecast.ts')).forecast,
   token: async () => (await import('./verbs/token.ts')).token,
   backup: async () => (await import('./verbs/backup.ts')).backup,
   restore: async () => (await import('./verbs/restore.ts')).restore,

@@ -76,6 +76,26 @@ export const VERBS = {
     },
     remarks: ['With neither --db nor --to (nor RATESPAN_URL), the local data folder is read.'],
   },
+  forecast: {
+    summary: 'one forecast: when, how far, or how hot, with its 95 % band',
+    positionals: ['CAMPAIGN'],
+    options: {
+      sample: { value: 'S', text: 'the sample (needed)' },
+      temperature: { value: 'C', text: 'a constant temperature, °C' },
+      program: { value: 'FILE', text: 'a temperature programme: time [..], temperature [..]' },
+      conversion: { value: 'X', text: 'a conversion between 0 and 1' },
+      time: { value: 'S', text: 'a time, s' },
+      json: JSON_SWITCH,
+      db: DB,
+      to: TO,
+      token: TOKEN,
+    },
+    remarks: [
+      'temperature + conversion: the time to it; temperature + time: the conversion by then;',
+      'conversion + time: the highest temperature that keeps below it; program: the conversion at its end;',
+      'program + conversion: the time to it on the programme. A negative number is written --temperature=-20.',
+    ],
+  },
   token: {
     summary: 'access tokens: make one, list them, take one back',
     positionals: ['add|list|revoke'],
@@ -119,8 +139,8 @@ const ENVIRONMENT: readonly [string, string][] = [
   ['RATESPAN_DB_URL', 'database: a file path or a remote libSQL URL'],
   ['RATESPAN_DB_TOKEN', 'token of a remote database'],
   ['RATESPAN_BLOBS', 'folder of originals and curves'],
-  ['RATESPAN_URL', 'server for send and table'],
-  ['RATESPAN_TOKEN', 'access token for send and table'],
+  ['RATESPAN_URL', 'server for send, table and forecast'],
+  ['RATESPAN_TOKEN', 'access token for send, table and forecast'],
 ];
 
 const aligned = (rows: readonly (readonly [string, string])[]): string[] => {
