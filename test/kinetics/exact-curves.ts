@@ -1,6 +1,20 @@
 import type { FitScan } from '../../schema/wire/parameters.ts';
 import { CONVERSION_GRID } from '../../schema/wire/reduced.ts';
+import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
+
+/** The instrument of the exact scans: no lag, known to 0.5 s and 0.1 K. */
+export const furnace: InstrumentCalibration = {
+  instrument: 'furnace',
+  kind: 'furnace',
+  source: 'sheet',
+  offsetK: 0,
+  offsetSeK: 0.1,
+  lagS: 0,
+  lagSeS: 0.5,
+  responseS: 0,
+  standards: 0,
+};
 
 /**
  * Exact JMAK curves on a ramp, worked out here apart from the project's integrals: ∫K dt by Gauss–Legendre panels of a few kelvin from far below,

@@ -2,19 +2,7 @@ import { describe, expect, test } from 'vitest';
 import { fitSample } from '../../jobs/kinetics/index.ts';
 import type { FitInput, FitResult } from '../../schema/wire/parameters.ts';
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
-import { exactScan } from './exact-curves.ts';
-
-const furnace: InstrumentCalibration = {
-  instrument: 'furnace',
-  kind: 'furnace',
-  source: 'sheet',
-  offsetK: 0,
-  offsetSeK: 0.1,
-  lagS: 0,
-  lagSeS: 0.5,
-  responseS: 0,
-  standards: 0,
-};
+import { exactScan, furnace } from './exact-curves.ts';
 
 const E = 240e3;
 const LN_A = 42;

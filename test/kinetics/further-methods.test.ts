@@ -5,20 +5,9 @@ import { fisherQuantile } from '../../jobs/numeric/distributions.ts';
 import type { FitInput, FitResult } from '../../schema/wire/parameters.ts';
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
-import { exactScan } from './exact-curves.ts';
+import { exactScan, furnace } from './exact-curves.ts';
 import { sestakBerggrenScan, smearedScan } from './exact-laws.ts';
 
-const furnace: InstrumentCalibration = {
-  instrument: 'furnace',
-  kind: 'furnace',
-  source: 'sheet',
-  offsetK: 0,
-  offsetSeK: 0.1,
-  lagS: 0,
-  lagSeS: 0.5,
-  responseS: 0,
-  standards: 0,
-};
 const E = 240e3;
 const LN_A = 42;
 const fitOf = (scans: FitInput['scans'], calibration: InstrumentCalibration = furnace): FitResult =>

@@ -3,21 +3,9 @@ import { fitHold, localExponent } from '../../jobs/kinetics/avrami/isothermal.ts
 import { fitSample } from '../../jobs/kinetics/index.ts';
 import type { FitInput, FitResult } from '../../schema/wire/parameters.ts';
 import { CONVERSION_GRID } from '../../schema/wire/reduced.ts';
-import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
-import { exactScan } from './exact-curves.ts';
+import { exactScan, furnace } from './exact-curves.ts';
 import { exactCooling, exactHold } from './exact-programmes.ts';
 
-const furnace: InstrumentCalibration = {
-  instrument: 'furnace',
-  kind: 'furnace',
-  source: 'sheet',
-  offsetK: 0,
-  offsetSeK: 0.1,
-  lagS: 0,
-  lagSeS: 0.5,
-  responseS: 0,
-  standards: 0,
-};
 const E = 240e3;
 const LN_A = 42;
 const N = 2.7;
