@@ -20,10 +20,31 @@ const METHOD_NAMES: Record<string, string> = {
   area: 'area under the event',
   shared_law: 'one law for all instruments',
   moynihan: 'Moynihan',
+  viscosity: 'viscosity table',
+  stability: 'characteristic temperatures',
 };
 
 export const methodName = (method: string, variant = ''): string =>
   `${METHOD_NAMES[method] ?? method.replaceAll('_', ' ')}${variant === 'peak' ? ', peaks' : ''}`;
+
+/** Quantities of the parameters table in the order in which they are shown, with the unit as it stands there. */
+export const QUANTITIES: readonly { quantity: string; title: string; unit: string }[] = [
+  { quantity: 'activation_energy', title: 'Activation energy E', unit: 'kJ/mol' },
+  { quantity: 'local_activation_energy', title: 'Local activation energy', unit: 'kJ/mol' },
+  { quantity: 'avrami_exponent', title: 'Avrami exponent n', unit: '' },
+  { quantity: 'model_exponent_m', title: 'Exponent M', unit: '' },
+  { quantity: 'model_exponent_n', title: 'Exponent N', unit: '' },
+  { quantity: 'ln_prefactor', title: 'Prefactor ln A', unit: 'A in 1/s' },
+  { quantity: 'enthalpy', title: 'Enthalpy', unit: 'J/g' },
+  { quantity: 'glass_transition_energy', title: 'Energy of the glass transition', unit: 'kJ/mol' },
+  { quantity: 'fragility', title: 'Fragility m', unit: '' },
+  { quantity: 'decoupling_exponent', title: 'Decoupling exponent ξ', unit: '' },
+  { quantity: 'reduced_glass_transition', title: 'Glass transition over melting, Tg/Tm', unit: '' },
+  { quantity: 'hruby', title: 'Hrubý number', unit: '' },
+  { quantity: 'supercooled_range', title: 'Supercooled range', unit: 'K' },
+  { quantity: 'critical_heating_rate', title: 'Critical heating rate', unit: 'K/s' },
+  { quantity: 'critical_cooling_rate', title: 'Critical cooling rate', unit: 'K/s' },
+];
 
 const METHOD_ORDER = Object.keys(METHOD_NAMES);
 

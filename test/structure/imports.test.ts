@@ -47,17 +47,10 @@ const MAY_IMPORT: Record<string, string[]> = {
     'jobs/campaign',
   ],
   'jobs/runner': ['schema/wire', 'jobs/ports', 'jobs/store', 'jobs/steps'],
-  'jobs/adapters': [
-    ...PIPELINE,
-    'jobs/instrument',
-    'jobs/reduction',
-    'jobs/kinetics',
-    'jobs/glass',
-    'jobs/campaign',
-  ],
+  'jobs/adapters': [...PIPELINE, 'jobs/instrument', 'jobs/reduction', 'jobs/kinetics', 'jobs/glass', 'jobs/campaign'],
   // Entry points wire everything up.
   'jobs/cli': ['*'],
-  api: ['schema/wire', 'jobs/ports', 'jobs/store', 'jobs/steps'],
+  api: ['schema/wire', 'jobs/ports', 'jobs/store', 'jobs/steps', 'web/report'],
   web: ['schema/wire', 'api/client-types'],
 };
 /** Entry points of the API, which may name the runner and the adapters too. */

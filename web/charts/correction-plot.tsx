@@ -1,5 +1,6 @@
 import { scaleLog } from 'd3-scale';
 import { formatPowerOfTen, rateInUnit, type Units } from '../format.ts';
+import { NORMAL_95 } from '../model/correction.ts';
 import { bandPath, linePath } from './curve-path.ts';
 import { createPlotBox, labelWidth, PlotFrame } from './plot-frame.tsx';
 import { createPlotScale, extent, type PlotScale } from './plot-scale.ts';
@@ -11,8 +12,6 @@ export interface Correction {
   lagSeS: number;
 }
 
-/** Quantile of the normal distribution that leaves 5 % outside both ends. */
-const NORMAL_95 = 1.96;
 const HEIGHT = 260;
 const POINTS = 60;
 

@@ -92,8 +92,14 @@ export function EnergyPanels({ layout }: { layout: EnergyLayout }) {
               </text>
             ))}
           {hasXLabels &&
-            x.ticks.map(({ at, label }) => (
-              <text key={label} class="axis-label" x={at.toFixed(1)} y={top + panelHeight + 15} text-anchor="middle">
+            x.ticks.map(({ at, label }, i) => (
+              <text
+                key={label}
+                class="axis-label"
+                x={at.toFixed(1)}
+                y={top + panelHeight + 15}
+                text-anchor={i === 0 ? 'start' : i === x.ticks.length - 1 ? 'end' : 'middle'}
+              >
                 {label}
               </text>
             ))}

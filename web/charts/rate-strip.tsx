@@ -45,19 +45,28 @@ export function StripGround({ scale, layout, row }: { scale: RateScale; layout: 
   );
 }
 
-/** Marks of one sample: one a scan at its heating rate, each an option of the list box around it. */
+/** Marks of one sample: one a scan at its heating rate; on the page each is an option of the list box around it. */
 export function StripMarks(props: {
   layout: StripLayout;
   instruments: readonly string[];
-  /** Unique prefix of the element ids of the marks */
-  idPrefix: string;
-  describe(mark: LedgerRow['marks'][number]): string;
+  options?: {
+    /** Unique prefix of the element ids of the marks */
+    idPrefix: string;
+    describe(mark: LedgerRow['marks'][number]): string;
+  };
 }) {
-  const { layout, instruments, idPrefix, describe } = props;
+  const { layout, instruments, options } = props;
+  const optionOf = (mark: LedgerRow['marks'][number], i: number) =>
+    options && {
+      id: `${options.idPrefix}-${i}`,
+      role: 'option' as const,
+      'aria-selected': 'false' as const,
+      'aria-label': options.describe(mark),
+    };
   return (
     <>
       {layout.placed.map(({ mark, x, y }, i) => (
-        <g key={mark.key} id={`${idPrefix}-${i}`} role="option" aria-selected="false" aria-label={describe(mark)}>
+        <g key={mark.key} {...optionOf(mark, i)}>
           <InstrumentMark instrument={instruments.indexOf(mark.instrument)} look={mark.look} x={x} y={y} />
           {mark.concern && (
             <circle class={`mark-concern tone-${mark.concern}`} cx={(x + 6.5).toFixed(1)} cy={y - 5.5} r="3.5" />

@@ -6,8 +6,8 @@ export interface EventNumbers {
   event: number;
   energies: ParameterRow[];
   exponents: ParameterRow[];
-  prefactors: ParameterRow[];
-  enthalpies: ParameterRow[];
+  /** All of them, every quantity, methods in their order */
+  rows: ParameterRow[];
 }
 
 /** Order in which a sample's one activation energy is looked for: the first that exists stands in the map's margin. */
@@ -40,14 +40,13 @@ export function numbersBySample(rows: readonly ParameterRow[]): Map<string, Even
     if (!events) samples.set(row.sample, (events = []));
     let numbers = events.find((e) => e.event === row.event);
     if (!numbers) {
-      numbers = { event: row.event, energies: [], exponents: [], prefactors: [], enthalpies: [] };
+      numbers = { event: row.event, energies: [], exponents: [], rows: [] };
       events.push(numbers);
       events.sort((a, b) => a.event - b.event);
     }
+    numbers.rows.push(row);
     if (row.quantity === 'activation_energy') numbers.energies.push(row);
     else if (row.quantity === 'avrami_exponent') numbers.exponents.push(row);
-    else if (row.quantity === 'ln_prefactor') numbers.prefactors.push(row);
-    else if (row.quantity === 'enthalpy') numbers.enthalpies.push(row);
   }
   return samples;
 }

@@ -153,7 +153,7 @@ export interface LedgerTables {
 const SCANS_PER_STEP = 250;
 
 /** Rows of the map: samples in the order of the status, then what else was measured (standards, blanks). */
-export function buildLedger(tables: LedgerTables, status: CampaignStatus | undefined): LedgerRow[] {
+export function buildLedger(tables: LedgerTables, status: Pick<CampaignStatus, 'samples'> | undefined): LedgerRow[] {
   const steps = ledgerSteps(tables, status);
   for (let step = steps.next(); ; step = steps.next()) if (step.done) return step.value;
 }
@@ -161,7 +161,7 @@ export function buildLedger(tables: LedgerTables, status: CampaignStatus | undef
 /** The same in steps, for a page that must stay quick while thousands of scans are sorted. */
 export function* ledgerSteps(
   tables: LedgerTables,
-  status: CampaignStatus | undefined,
+  status: Pick<CampaignStatus, 'samples'> | undefined,
 ): Generator<undefined, LedgerRow[]> {
   const rows = new Map<string, LedgerRow>();
   const rowOf = (sample: string, role: Role): LedgerRow => {

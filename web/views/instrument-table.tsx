@@ -1,26 +1,8 @@
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import type { Campaign, InstrumentRow } from '../client/rows.ts';
-import { formatEstimate } from '../format.ts';
+import { SOURCE_NAMES, withError } from '../model/correction.ts';
 import { instrumentPath } from '../routes.ts';
 import { Downloads } from './download.tsx';
-
-export const SOURCES: Record<InstrumentRow['source'], string> = {
-  standards: 'scans of standards',
-  sheet: 'instruments.csv',
-  prior: 'nothing given: a guess with a wide error',
-};
-
-/** Two standard errors either side: close to the 95 % interval used elsewhere on the page. */
-export const withError = (value: number | null, error: number | null, unit: string) => {
-  if (value === null) return '–';
-  const spread = error === null ? null : 1.96 * error;
-  const estimate = formatEstimate(
-    value,
-    spread === null ? null : value - spread,
-    spread === null ? null : value + spread,
-  );
-  return `${estimate.value} ${estimate.spread} ${unit}`;
-};
 
 /** What was taken off the temperatures of each instrument, and where that came from. */
 export function InstrumentTable(props: {
@@ -62,7 +44,7 @@ export function InstrumentTable(props: {
                 <td class="number" data-head="offset">
                   {withError(row.offset_K, row.offset_se_K, 'K')}
                 </td>
-                <td data-head="taken from">{SOURCES[row.source]}</td>
+                <td data-head="taken from">{SOURCE_NAMES[row.source]}</td>
               </tr>
             ))}
           </tbody>

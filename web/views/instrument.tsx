@@ -4,12 +4,12 @@ import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import { loadTable } from '../client/campaigns.ts';
 import type { InstrumentRow, ScanRow, Status } from '../client/rows.ts';
 import { formatCount, formatRate } from '../format.ts';
+import { SOURCE_NAMES, withError } from '../model/correction.ts';
 import { samplePath } from '../routes.ts';
 import { openLivePage } from '../state/live-page.ts';
 import { units } from '../state/units.ts';
 import { Downloads } from './download.tsx';
 import { Figure } from './figure.tsx';
-import { SOURCES, withError } from './instrument-table.tsx';
 import { Notice, ProblemNotice } from './notice.tsx';
 import { NotYet, PageHead } from './page-head.tsx';
 
@@ -111,7 +111,7 @@ function Correction({ row }: { row: InstrumentRow }) {
       'True over measured heat',
       row.heat_factor === null ? 'not known' : withError(row.heat_factor, row.heat_factor_se, ''),
     ],
-    ['Taken from', SOURCES[row.source]],
+    ['Taken from', SOURCE_NAMES[row.source]],
     ['Scans of standards', String(row.standards ?? 0)],
   ];
   return (

@@ -126,8 +126,7 @@ function DrawnEntry(props: EntryProps) {
             <StripMarks
               layout={layout}
               instruments={instruments}
-              idPrefix={idPrefix}
-              describe={(mark) => describeMark(mark, units.value)}
+              options={{ idPrefix, describe: (mark) => describeMark(mark, units.value) }}
             />
           </svg>
         </div>

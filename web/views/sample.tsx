@@ -1,5 +1,6 @@
 import { useSignal } from '@preact/signals';
 import { useEffect, useMemo } from 'preact/hooks';
+import { EventTable } from '../charts/number-table.tsx';
 import { StateGlyph } from '../charts/state-glyph.tsx';
 import { formatCount } from '../format.ts';
 import { FIGURES } from '../model/captions.ts';
@@ -8,13 +9,14 @@ import { numbersBySample } from '../model/headline.ts';
 import { tellableNow } from '../model/next-steps.ts';
 import { samplePath } from '../routes.ts';
 import { openSample } from '../state/live-sample.ts';
+import { units } from '../state/units.ts';
 import { SAMPLE_STATE_NAMES, verdictName } from '../words.ts';
 import { Downloads } from './download.tsx';
 import { Figure } from './figure.tsx';
 import { Lanes } from './lanes.tsx';
 import { NextSteps } from './next-steps.tsx';
 import { ProblemNotice } from './notice.tsx';
-import { EventTable } from './numbers.tsx';
+import { plotWidth } from './numbers.tsx';
 import { NotYet, PageHead } from './page-head.tsx';
 import {
   ConversionFigure,
@@ -147,7 +149,14 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
         ) : (
           <div class="number-tables">
             {numbers.map((event) => (
-              <EventTable key={event.event} sample={sample.sample} isOnly={numbers.length === 1} numbers={event} />
+              <EventTable
+                key={event.event}
+                sample={sample.sample}
+                isOnly={numbers.length === 1}
+                numbers={event}
+                plotWidth={plotWidth()}
+                units={units.value}
+              />
             ))}
           </div>
         )}

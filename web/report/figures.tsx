@@ -1,0 +1,209 @@
+import type { ComponentChildren } from 'preact';
+import { ConversionPlot, layoutConversion } from '../charts/conversion-plot.tsx';
+import { CurvePlot, LawKeys, layoutCurvePlot } from '../charts/curve-plot.tsx';
+import { EnergyPanels, layoutEnergy } from '../charts/energy-panels.tsx';
+import { InstrumentKey } from '../charts/instrument-mark.tsx';
+import { KissingerPlot, layoutKissinger } from '../charts/kissinger-plot.tsx';
+import { RateAxis } from '../charts/rate-axis.tsx';
+import { createRateScale } from '../charts/rate-scale.ts';
+import { RateRuling, StripGround, StripMarks } from '../charts/rate-strip.tsx';
+import { layoutStrip } from '../charts/strip-layout.ts';
+import { layoutLanes, ThermogramLanes } from '../charts/thermogram-lanes.tsx';
+import type { ScanRow } from '../client/rows.ts';
+import type { Units } from '../format.ts';
+import { FIGURES } from '../model/captions.ts';
+import { buildLanes, type CurveKind, type CurveSeries, curvesByEvent } from '../model/curves.ts';
+import type { LedgerRow } from '../model/ledger.ts';
+import type { ReportSample } from './data.ts';
+
+/** Width of every figure, px: the text column of the page and of A4 paper. */
+const WIDTH = 680;
+/** Room for a sample's name beside its strip, px, and the letters that fit in it. */
+const NAME_WIDTH = 150;
+const NAME_LETTERS = 22;
+
+function ReportFigure(props: {
+  title: string;
+  caption: string;
+  width?: number;
+  height: number;
+  legend?: ComponentChildren;
+  children: ComponentChildren;
+}) {
+  const { title, caption, width = WIDTH, height, legend, children } = props;
+  return (
+    <figure>
+      <svg width={width} height={height} viewBox={`0 0 ${width} ${height}`} role="img" aria-label={title}>
+        {children}
+      </svg>
+      {legend && <ul class="legend">{legend}</ul>}
+      <figcaption>
+        <strong>{title}.</strong> {caption}
+      </figcaption>
+    </figure>
+  );
+}
+
+export function InstrumentLegend({ names, instruments }: { names: readonly string[]; instruments: readonly string[] }) {
+  return (
+    <>
+      {names.map((name) => (
+        <li key={name}>
+          <InstrumentKey instrument={instruments.indexOf(name)} /> {name}
+        </li>
+      ))}
+    </>
+  );
+}
+
+const instrumentsOf = (series: readonly CurveSeries[], instruments: readonly string[]): string[] =>
+  instruments.filter((name) => series.some((s) => s.instrument === name));
+
+/** Every scan of the campaign: samples down, heating rate across. */
+export function CoverageFigure(props: { rows: readonly LedgerRow[]; instruments: readonly string[]; units: Units }) {
+  const { rows, instruments, units } = props;
+  const rates = rows.flatMap((row) => row.marks.map((mark) => mark.rateKPerS));
+  const scale = createRateScale(rates, WIDTH - NAME_WIDTH, units);
+  const axisHeight = 44;
+  let y = axisHeight;
+  const strips = rows.map((row) => {
+    const layout = layoutStrip(row.marks, scale);
+    const strip = { row, layout, y };
+    y += layout.height;
+    return strip;
+  });
+  const name = ({ sample, role }: LedgerRow): string => {
+    const full = role === 'sample' ? sample : `${sample}, ${role}`;
+    return full.length > NAME_LETTERS ? `${full.slice(0, NAME_LETTERS - 1)}…` : full;
+  };
+  return (
+    <ReportFigure
+      title="Coverage"
+      caption="One mark a scan at its heating rate; struck out: set aside; dashed: decades without a scan between two that have some."
+      height={y + 4}
+      legend={<InstrumentLegend names={instruments} instruments={instruments} />}
+    >
+      <text class="axis-name" x={NAME_WIDTH} y={13}>{`Heating rate, ${units.rate}`}</text>
+      <svg x={NAME_WIDTH} y={18} width={scale.width} height={26} aria-hidden="true">
+        <RateAxis scale={scale} />
+      </svg>
+      <svg x={NAME_WIDTH} y={axisHeight} width={scale.width} height={y - axisHeight} aria-hidden="true">
+        <RateRuling scale={scale} />
+      </svg>
+      {strips.map(({ row, layout, y: top }) => (
+        <g key={`${row.role} ${row.sample}`}>
+          <path class="grid-decade" d={`M0 ${top}H${WIDTH}`} />
+          <text class="panel-title" x={0} y={top + layout.railY + 4}>
+            {name(row)}
+          </text>
+          <svg x={NAME_WIDTH} y={top} width={scale.width} height={layout.height} aria-hidden="true">
+            <StripGround scale={scale} layout={layout} row={row} />
+            <StripMarks layout={layout} instruments={instruments} />
+          </svg>
+        </g>
+      ))}
+    </ReportFigure>
+  );
+}
+
+const OTHER_KINDS: CurveKind[] = ['growth', 'viscosity', 'ttt'];
+
+/** Every figure of one sample for which there are curves. */
+export function SampleFigures(props: {
+  sample: ReportSample;
+  scans: readonly ScanRow[];
+  instruments: readonly string[];
+  units: Units;
+}) {
+  const { sample, scans, instruments, units } = props;
+  const { thermogram, baseline, conversion, kissinger, energy } = sample.curves;
+  const lanes = thermogram && baseline ? buildLanes(thermogram, baseline, scans) : [];
+  const laneLayout = layoutLanes(lanes, WIDTH, units);
+  const eventTitle = (title: string, event: number, of: number): string =>
+    of > 1 ? `${title}, event ${event}` : title;
+  return (
+    <>
+      {lanes.length > 0 && (
+        <ReportFigure
+          {...FIGURES.thermogram}
+          height={laneLayout.box.height}
+          legend={
+            <InstrumentLegend names={instrumentsOf(thermogram?.series ?? [], instruments)} instruments={instruments} />
+          }
+        >
+          <ThermogramLanes layout={laneLayout} instruments={instruments} units={units} />
+        </ReportFigure>
+      )}
+      {conversion && conversion.series.length > 0 && (
+        <ReportFigure
+          {...FIGURES.conversion}
+          height={layoutConversion(conversion.series, WIDTH, units).box.height}
+          legend={<InstrumentLegend names={instrumentsOf(conversion.series, instruments)} instruments={instruments} />}
+        >
+          <ConversionPlot
+            layout={layoutConversion(conversion.series, WIDTH, units)}
+            instruments={instruments}
+            units={units}
+          />
+        </ReportFigure>
+      )}
+      {kissinger &&
+        kissinger.series.length > 0 &&
+        curvesByEvent(kissinger).map(({ event, series }, _, all) => {
+          const layout = layoutKissinger(series, WIDTH, units);
+          const laws = layout.laws.map((law) => (law.rest === 'fit' ? 'one straight line' : law.rest));
+          return (
+            <ReportFigure
+              key={event}
+              {...FIGURES.kissinger}
+              title={eventTitle(FIGURES.kissinger.title, event, all.length)}
+              height={layout.box.height}
+              legend={
+                <>
+                  <InstrumentLegend names={instrumentsOf(series, instruments)} instruments={instruments} />
+                  <LawKeys names={laws} />
+                </>
+              }
+            >
+              <KissingerPlot layout={layout} instruments={instruments} units={units} />
+            </ReportFigure>
+          );
+        })}
+      {energy &&
+        energy.series.length > 0 &&
+        curvesByEvent(energy).map(({ event, series }, _, all) => {
+          const layout = layoutEnergy(series, WIDTH);
+          return (
+            <ReportFigure
+              key={event}
+              {...FIGURES.energy}
+              title={eventTitle(FIGURES.energy.title, event, all.length)}
+              height={layout.height}
+            >
+              <EnergyPanels layout={layout} />
+            </ReportFigure>
+          );
+        })}
+      {OTHER_KINDS.map((kind) => {
+        const curves = sample.curves[kind];
+        if (!curves || curves.series.length === 0) return null;
+        const layout = layoutCurvePlot(curves, WIDTH);
+        return (
+          <ReportFigure
+            key={kind}
+            {...FIGURES[kind as keyof typeof FIGURES]}
+            height={layout.box.height}
+            legend={
+              <>
+                <InstrumentLegend names={instrumentsOf(curves.series, instruments)} instruments={instruments} />
+                <LawKeys names={curves.series.filter((s) => s.instrument === undefined).map((s) => s.name)} />
+              </>
+            }
+          >
+            <CurvePlot layout={layout} instruments={instruments} />
+          </ReportFigure>
+        );
+      })}
+    </>
+  );
+}

@@ -1,0 +1,280 @@
+import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
+import { EventTable } from '../charts/number-table.tsx';
+import type { Units } from '../format.ts';
+import { formatCount, formatFixed, formatRate } from '../format.ts';
+import { describeEstimate } from '../model/describe.ts';
+import { headlineEnergy, headlineExponent } from '../model/headline.ts';
+import type { LedgerRow } from '../model/ledger.ts';
+import { groupFlags, groupGaps } from '../model/next-steps.ts';
+import { describeVerdict } from '../model/verdict.ts';
+import { gapName, methodName, methodRank, SAMPLE_STATE_NAMES, sentence, verdictName } from '../words.ts';
+import type { ReportData, ReportSample } from './data.ts';
+import { CoverageFigure, SampleFigures } from './figures.tsx';
+import { GENERAL_METHODS, METHOD_TEXTS, VERDICT_METHOD } from './methods.ts';
+import { AdviceReport, EnergyReport, ForecastReport, InstrumentReport, ReportTable, ScanReport } from './tables.tsx';
+
+interface ReportProps {
+  data: ReportData;
+  rows: readonly LedgerRow[];
+  instruments: readonly string[];
+  units: Units;
+}
+
+const PLOT_WIDTH = 170;
+
+export function Report(props: ReportProps) {
+  const { data, rows, instruments, units } = props;
+  const { tables, samples } = data;
+  return (
+    <main>
+      <Opening {...props} />
+      <h2>What was measured</h2>
+      <CoverageFigure rows={rows} instruments={instruments} units={units} />
+      <InstrumentReport rows={tables.instruments} instruments={instruments} />
+      <Methods data={data} />
+      {samples.map((sample) => (
+        <SampleSection key={sample.sample} {...props} sample={sample} />
+      ))}
+      {(tables.advice?.length ?? 0) > 0 && (
+        <>
+          <h2>What to measure next</h2>
+          <AdviceReport rows={tables.advice ?? []} units={units} />
+          <p class="caution">{FORECAST_CAUTION}</p>
+        </>
+      )}
+      <Doubts data={data} />
+      <Provenance data={data} />
+    </main>
+  );
+}
+
+/** Title, what the campaign is in a sentence, and the numbers that stand for each sample. */
+function Opening({ data, rows, units }: ReportProps) {
+  const { tables, samples, provenance } = data;
+  const marks = rows.flatMap((row) => row.marks);
+  const rates = marks.map((mark) => mark.rateKPerS).filter((rate) => rate !== null);
+  const low = rates.reduce((a, b) => Math.min(a, b), Number.POSITIVE_INFINITY);
+  const high = rates.reduce((a, b) => Math.max(a, b), 0);
+  const estimate = (row: ReturnType<typeof headlineEnergy>, unit: string): string => {
+    if (!row) return '–';
+    const { value, spread, method } = describeEstimate(row);
+    return `${value} ${spread}${unit} (${method})`;
+  };
+  return (
+    <>
+      <h1>Crystallisation kinetics: {data.campaign}</h1>
+      {provenance.isSynthetic && (
+        <p>
+          <strong>Synthetic data: invented materials on invented instruments.</strong>
+        </p>
+      )}
+      <p>
+        {formatCount(marks.length, 'scan')} of {formatCount(samples.length, 'sample')} on{' '}
+        {formatCount(tables.instruments.length, 'instrument')}
+        {rates.length > 0 && (
+          <>
+            , {formatRate(low, units)} to {formatRate(high, units)}: {formatFixed(Math.log10(high / low), 1)} decades of
+            heating rate
+          </>
+        )}
+        . Made by ratespan {provenance.version}
+        {provenance.changedAt && ` from the state of ${provenance.changedAt}`}.
+      </p>
+      <ReportTable
+        caption="The number that stands for each sample and event, with its 95 % interval. Every other method follows below."
+        heads={['Sample', 'Activation energy, kJ/mol', 'Avrami exponent', 'Verdict and state']}
+        rows={samples.flatMap((sample) => {
+          const events = rows.find((row) => row.sample === sample.sample && row.role === 'sample')?.numbers ?? [];
+          const state = SAMPLE_STATE_NAMES[sample.state] + (sample.reason ? `: ${sample.reason}` : '');
+          if (events.length === 0) return [[sample.sample, '–', '–', state]];
+          return events.map((event) => {
+            const verdict = tables.verdicts?.find((v) => v.sample === sample.sample && v.event === event.event);
+            return [
+              events.length > 1 ? `${sample.sample}, event ${event.event}` : sample.sample,
+              estimate(headlineEnergy(event), ''),
+              estimate(headlineExponent(event), ''),
+              verdict ? verdictName(verdict.verdict) : state,
+            ];
+          });
+        })}
+      />
+    </>
+  );
+}
+
+/** Only the methods that gave a number here. */
+function Methods({ data }: { data: ReportData }) {
+  const { parameters, verdicts, forecasts } = data.tables;
+  const methods = [...new Set(parameters.map((row) => row.method))].sort((a, b) => methodRank(a) - methodRank(b));
+  return (
+    <>
+      <h2>Methods</h2>
+      {GENERAL_METHODS.map((text) => (
+        <p key={text}>{text}</p>
+      ))}
+      <ul>
+        {methods.map((method) => {
+          const words = METHOD_TEXTS[method];
+          return (
+            <li key={method}>
+              <strong>{sentence(methodName(method))}.</strong>
+              {words && ` ${words.text} (${words.source}.)`}
+            </li>
+          );
+        })}
+      </ul>
+      {verdicts && verdicts.length > 0 && <p>{VERDICT_METHOD}</p>}
+      {forecasts && forecasts.length > 0 && (
+        <p>
+          Forecasts: model-free by the isoconversional energies summed along the programme, and by the shared law; below
+          the lower of the glass transition and the slowest measured temperature the energy is held at its value there.
+        </p>
+      )}
+      <p class="small">
+        Settings: {data.provenance.draws} draws of the Monte Carlo; symbols: T temperature, β heating rate, α
+        conversion, E activation energy, A prefactor, n Avrami exponent, R gas constant.
+      </p>
+    </>
+  );
+}
+
+function SampleSection(props: ReportProps & { sample: ReportSample }) {
+  const { data, rows, instruments, units, sample } = props;
+  const { scans, parameters, verdicts, forecasts } = data.tables;
+  const own = <Row extends { sample: string | null }>(table: readonly Row[] | undefined): Row[] =>
+    (table ?? []).filter((row) => row.sample === sample.sample);
+  const ownScans = own(scans).filter((row) => row.role === 'sample');
+  const numbers = rows.find((row) => row.sample === sample.sample && row.role === 'sample')?.numbers ?? [];
+  const ownForecasts = own(forecasts);
+  return (
+    <>
+      <h2>{sample.sample}</h2>
+      <p>
+        {sentence(SAMPLE_STATE_NAMES[sample.state])}
+        {sample.reason && `: ${sample.reason}`}.
+      </p>
+      {own(verdicts).map((verdict) => (
+        <p key={verdict.event}>
+          <strong>Verdict:</strong> {describeVerdict(verdict, units)}
+        </p>
+      ))}
+      <SampleFigures sample={sample} scans={ownScans} instruments={instruments} units={units} />
+      {numbers.map((event) => (
+        <div key={event.event} class="table-box">
+          <EventTable
+            sample={sample.sample}
+            isOnly={numbers.length === 1}
+            numbers={event}
+            plotWidth={PLOT_WIDTH}
+            units={units}
+          />
+          <EnergyReport rows={own(parameters).filter((row) => row.event === event.event)} />
+        </div>
+      ))}
+      {ownForecasts.length > 0 && (
+        <>
+          <ForecastReport rows={ownForecasts} units={units} />
+          <p class="caution">{FORECAST_CAUTION}</p>
+        </>
+      )}
+      {ownScans.length > 0 && <ScanReport rows={ownScans} units={units} />}
+    </>
+  );
+}
+
+/** What is missing and what was flagged, with what to do. */
+function Doubts({ data }: { data: ReportData }) {
+  const { flags, gaps } = data.tables;
+  const { stop, warn, note } = groupFlags(flags, gaps);
+  const groups = [
+    { title: 'Stops a result', of: stop },
+    { title: 'Look at', of: warn },
+    { title: 'Good to know', of: note },
+  ];
+  return (
+    <>
+      <h2>Gaps and flags</h2>
+      {gaps.length + flags.length === 0 && <p>Nothing is missing and nothing was flagged.</p>}
+      {gaps.length > 0 && <h3>Missing measurements</h3>}
+      {groupGaps(gaps).map(({ code, gaps: same }) => (
+        <div key={code}>
+          <p>
+            <strong>{sentence(gapName(code))}</strong>
+          </p>
+          <ul>
+            {same.map((gap) => (
+              <li key={`${gap.sample} ${gap.detail}`}>
+                {gap.sample || 'campaign'}: {sentence(gap.detail)} <span class="aside">{sentence(gap.action)}</span>
+              </li>
+            ))}
+          </ul>
+        </div>
+      ))}
+      {groups.map(
+        ({ title, of }) =>
+          of.length > 0 && (
+            <div key={title}>
+              <h3>{title}</h3>
+              {of.map((group) => (
+                <div key={`${group.code} ${group.action}`}>
+                  <p>
+                    <strong>{sentence(group.meaning)}.</strong> <span class="aside">{sentence(group.action)}</span>
+                  </p>
+                  <ul>
+                    {group.flags.map((flag, i) => (
+                      <li key={i}>
+                        <span class="file">
+                          {flag.file ?? ([flag.sample, flag.instrument].filter(Boolean).join(', ') || 'campaign')}
+                        </span>{' '}
+                        {flag.detail}
+                      </li>
+                    ))}
+                  </ul>
+                </div>
+              ))}
+            </div>
+          ),
+      )}
+    </>
+  );
+}
+
+function Provenance({ data }: { data: ReportData }) {
+  const { version, stepVersions, seeds, inputs, draws } = data.provenance;
+  const steps = Object.entries(stepVersions)
+    .map(([step, number]) => `${step} ${number}`)
+    .join(', ');
+  return (
+    <>
+      <h2>Provenance</h2>
+      <p>
+        ratespan {version}; step versions: {steps}; {draws} draws. The same inputs, settings and versions give the same
+        numbers.
+      </p>
+      {Object.keys(seeds).length > 0 && (
+        <ReportTable
+          caption="Seeds of the draws: a hash of the inputs of each sample."
+          heads={['Sample', 'Seed']}
+          rows={Object.entries(seeds).map(([sample, seed]) => [
+            sample,
+            <span key="seed" class="hash">
+              {seed}
+            </span>,
+          ])}
+        />
+      )}
+      <ReportTable
+        caption="Inputs."
+        heads={['File', 'SHA-256']}
+        rows={inputs.map(({ file, sha256 }) => [
+          <span key="file" class="file">
+            {file}
+          </span>,
+          <span key="hash" class="hash">
+            {sha256}
+          </span>,
+        ])}
+      />
+    </>
+  );
+}
