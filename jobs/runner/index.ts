@@ -4,7 +4,7 @@ import { type ClaimedJob, claimJobs, extendLeases, handBack, LEASE_MS, openJobs 
 import { sweepLostJobs } from './consume.ts';
 import { runJob } from './run-job.ts';
 
-export { consumeWake, sweepWakes } from './consume.ts';
+export { consumeWake, endGivenUpJob, sweepWakes } from './consume.ts';
 export { keepHouse, keepHouseHourly } from './housekeeping.ts';
 
 /** How often a process looks for jobs that another one queued. */

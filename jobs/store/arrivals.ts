@@ -44,8 +44,11 @@ export async function acceptFile(ports: Ports, campaignId: string, file: Arrived
     }
     const plan = planArrival(campaignId, file, before, ports.clock.now());
     if (file.bytes && !plan.sharedBlob) await ports.blobs.put(file.blobKey, file.bytes, file.size);
+    let assignQueued = false;
     try {
-      await ports.database.write((db) => runBatch(db, plan.statements(db)));
+      const results = await ports.database.write((db) => runBatch(db, plan.statements(db)));
+      // The last but one statement of a data file's batch; it does nothing where an assignment waits already.
+      assignQueued = file.kind === 'data' && results.at(-2)?.rowsAffected === 1;
     } catch (error) {
       if (!isConstraint(error)) throw error;
       await requireCampaign(ports, campaignId, file.blobKey);
@@ -54,7 +57,7 @@ export async function acceptFile(ports: Ports, campaignId: string, file: Arrived
     }
     if (plan.sharedBlob && !file.bytes) await ports.blobs.delete(file.blobKey);
     for (const jobId of plan.jobIds) await ports.queue.wake(jobId, 0);
-    await ports.queue.wake(plan.assignId, ASSIGN_DELAY_MS / 1000);
+    if (assignQueued) await ports.queue.wake(plan.assignId, ASSIGN_DELAY_MS / 1000);
     const known = before.live === undefined && (await isKnownScan(ports, campaignId, file, before.sameBytes));
     return {
       file: file.path,
@@ -122,6 +125,8 @@ export function planArrival(campaignId: string, file: ArrivedFile, before: Surro
   const { live, former, sameBytes } = before;
   const assignId = createId('job');
   const jobId = createId('job');
+  // Members of an archive are woken by its write-back.
+  const woken = file.archiveId === undefined;
   const common = (db: LibSQLDatabase): Statement[] => [
     insertJob(db, {
       id: assignId,
@@ -130,6 +135,7 @@ export function planArrival(campaignId: string, file: ArrivedFile, before: Surro
       subject: campaignId,
       now,
       delayMs: ASSIGN_DELAY_MS,
+      woken,
     }),
     touchCampaign(db, campaignId, true),
   ];
@@ -144,7 +150,7 @@ export function planArrival(campaignId: string, file: ArrivedFile, before: Surro
           .set({ superseded: false, archiveId: file.archiveId ?? null })
           .where(eq(files.id, former.id)),
         // It may have been superseded before it was read.
-        insertJob(db, { id: jobId, campaignId, step: 'read-scan', subject: former.id, now }),
+        insertJob(db, { id: jobId, campaignId, step: 'read-scan', subject: former.id, now, woken }),
         ...common(db),
       ],
       jobIds: [jobId],
@@ -170,7 +176,7 @@ export function planArrival(campaignId: string, file: ArrivedFile, before: Surro
               values (${scanId}, ${campaignId}, ${fileId}, 'waiting', 'received')`,
           ]
         : []),
-      insertJob(db, { id: jobId, campaignId, step, subject: fileId, now }),
+      insertJob(db, { id: jobId, campaignId, step, subject: fileId, now, woken }),
       // A sheet or an archive queues the assignment itself once it is read.
       ...(file.kind === 'data' ? common(db) : [touchCampaign(db, campaignId, true)]),
     ],

@@ -8,6 +8,7 @@ import { LOCAL_LAB } from './campaigns.ts';
 import { runBatch, type Statement } from './fence.ts';
 import { createId } from './ids.ts';
 import { insertJob, touchCampaign } from './job-rows.ts';
+import { wakeCampaign } from './leases.ts';
 import { StoreRefusal } from './refusals.ts';
 
 export type StoredCorrection = typeof corrections.$inferSelect;
@@ -77,7 +78,7 @@ export async function correctScan(ports: Ports, scanId: string, changes: Correct
       touchCampaign(db, campaignId, true),
     ]),
   );
-  await ports.queue.wake(campaignId, 0);
+  await wakeCampaign(ports, campaignId);
 }
 
 type Base = Pick<StoredCorrection, 'sample' | 'instrument' | 'segment'>;

@@ -30,13 +30,18 @@ export interface NewJob {
   subject: string;
   now: number;
   delayMs?: number;
+  /** The caller sends its wake-up itself. */
+  woken?: boolean;
 }
 
 /** Queues a job unless one for the same step and subject waits already. */
-export function insertJob(_db: LibSQLDatabase, { id, campaignId, step, subject, now, delayMs = 0 }: NewJob): Statement {
+export function insertJob(
+  _db: LibSQLDatabase,
+  { id, campaignId, step, subject, now, delayMs = 0, woken = false }: NewJob,
+): Statement {
   return text`
-    insert into jobs (id, campaign_id, step, subject, priority, state, next_try_at, created_at)
-    values (${id}, ${campaignId}, ${step}, ${subject}, ${STEP_PRIORITY[step]}, 'queued', ${now + delayMs}, ${now})
+    insert into jobs (id, campaign_id, step, subject, priority, state, next_try_at, created_at, woken)
+    values (${id}, ${campaignId}, ${step}, ${subject}, ${STEP_PRIORITY[step]}, 'queued', ${now + delayMs}, ${now}, ${woken ? 1 : 0})
     on conflict do nothing`;
 }
 

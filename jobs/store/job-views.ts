@@ -6,6 +6,7 @@ import type { Ports } from '../ports/index.ts';
 import { LOCAL_LAB, type Page } from './campaigns.ts';
 import { runBatch, type Statement } from './fence.ts';
 import { queueDueJobs, touchCampaign } from './job-rows.ts';
+import { wakeCampaign } from './leases.ts';
 import { StoreRefusal } from './refusals.ts';
 
 /** A job as the outside sees it; times are ms since the epoch. */
@@ -136,6 +137,6 @@ export async function refitCampaign(ports: Ports, campaignId: string): Promise<n
     ])) as { rowsAffected: number }[];
     return marked.rowsAffected;
   });
-  await ports.queue.wake(campaignId, 0);
+  await wakeCampaign(ports, campaignId);
   return rows;
 }

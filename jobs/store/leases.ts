@@ -25,7 +25,7 @@ export interface ClaimOptions {
   owner: string;
   limit: number;
   campaignId?: string;
-  /** Only this job. */
+  /** Only this job; also where `owner` holds it already: it is the same message again, whose first delivery crashed. */
   jobId?: string;
   /** Take assignments that still wait for more uploads: this worker has nothing else to do. */
   eager?: boolean;
@@ -42,6 +42,8 @@ export async function claimJobs(ports: Ports, options: ClaimOptions): Promise<Cl
     ? text`(next_try_at <= ${now} or (step = 'assign-scans' and attempts = 0))`
     : text`next_try_at <= ${now}`;
   const within = text`${campaignId === undefined ? text`1` : text`campaign_id = ${campaignId}`} and ${jobId === undefined ? text`1` : text`id = ${jobId}`}`;
+  const lapsed =
+    jobId === undefined ? text`leased_until < ${now}` : text`(leased_until < ${now} or leased_by = ${owner})`;
   const rows = await ports.database.write((db) =>
     allRows<ClaimedJob>(
       db,
@@ -56,7 +58,7 @@ export async function claimJobs(ports: Ports, options: ClaimOptions): Promise<Cl
             order by priority, rowid limit ${limit})
           union all
           select id, priority, rowid as row from jobs
-          where state = 'running' and leased_until < ${now} and attempts < ${MAX_ATTEMPTS} and ${within}
+          where state = 'running' and ${lapsed} and attempts < ${MAX_ATTEMPTS} and ${within}
         ) order by priority, row limit ${limit})
       returning id, campaign_id as campaignId, step, subject, attempts, generation`,
     ),
@@ -209,10 +211,27 @@ export function findLostJobs(ports: Ports): Promise<ClaimedJob[]> {
   );
 }
 
-/** Sends wake-ups for jobs that were queued inside a write-back. Where wake-ups are heard in this process one is enough. */
-async function wakeNewJobs(ports: Ports, { id: doneId, campaignId, step, subject }: ClaimedJob): Promise<void> {
-  if (ports.queue.heard) return ports.queue.wake(doneId, 0);
-  // A twin that waited for this job may have been woken in vain while it ran.
+/** A job that is running by the record, whoever holds it. */
+export async function findRunningJob(ports: Ports, jobId: string): Promise<ClaimedJob | undefined> {
+  const rows = await allRows<ClaimedJob>(
+    ports.database.read,
+    text`select id, campaign_id as campaignId, step, subject, attempts, generation from jobs where id = ${jobId} and state = 'running'`,
+  );
+  return rows[0];
+}
+
+/** Sends wake-ups for jobs that were queued inside a write-back. */
+const wakeNewJobs = (ports: Ports, job: ClaimedJob): Promise<void> => wakeCampaign(ports, job.campaignId, job);
+
+/** Sends wake-ups for the jobs of a campaign that none was sent for; after `done`, also for a twin that waited for it and may have been woken in vain. */
+export async function wakeCampaign(
+  ports: Ports,
+  campaignId: string,
+  done: { step: string; subject: string } = { step: '', subject: '' },
+): Promise<void> {
+  // Where wake-ups are heard in this process one is enough, and the rows are looked at anyway.
+  if (ports.queue.heard) return ports.queue.wake(campaignId, 0);
+  const { step, subject } = done;
   const rows = await ports.database.write((db) =>
     allRows<{ id: string; nextTryAt: number }>(
       db,

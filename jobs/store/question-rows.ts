@@ -8,6 +8,7 @@ import type { Ports } from '../ports/index.ts';
 import { loadSheetRows } from './assignment-rows.ts';
 import { runBatch, type Statement } from './fence.ts';
 import { queueJudgements, touchCampaign } from './job-rows.ts';
+import { wakeCampaign } from './leases.ts';
 
 /** Instruments of a campaign by name: the calibrated ones, and what each can run where its sheet says so. */
 export async function loadBench(
@@ -65,7 +66,7 @@ export async function setGoals(ports: Ports, campaignId: string, rows: readonly 
       touchCampaign(db, campaignId, true),
     ]),
   );
-  await ports.queue.wake(campaignId, 0);
+  await wakeCampaign(ports, campaignId);
 }
 
 /** A temperature programme that was read well. */

@@ -5,6 +5,7 @@ import { supersedeFile } from './arrivals.ts';
 import { runBatch } from './fence.ts';
 import { createId } from './ids.ts';
 import { insertJob, touchCampaign } from './job-rows.ts';
+import { wakeCampaign } from './leases.ts';
 
 /** Marks every live file whose path is not in `paths` superseded, so that results describe a folder as it is now. Returns the paths withdrawn. */
 export async function withdrawMissingFiles(
@@ -35,6 +36,6 @@ export async function withdrawMissingFiles(
       touchCampaign(db, campaignId, true),
     ]),
   );
-  await ports.queue.wake(campaignId, 0);
+  await wakeCampaign(ports, campaignId);
   return gone.map((row) => row.path).sort();
 }

@@ -10,6 +10,10 @@ import Database from 'libsql';
  */
 export interface HranaBridge {
   url: string;
+  /** Requests whose text this matches are cut off without an answer, as by a server that is gone. */
+  cut?: RegExp;
+  /** Requests answered so far. */
+  requests: number;
   close(): Promise<void>;
 }
 
@@ -159,14 +163,17 @@ export async function startHranaBridge(file: string, token: string): Promise<Hra
     if (request.method !== 'POST' || request.url !== '/v2/pipeline') return send(404, { message: 'not found' });
     try {
       const { baton, requests } = await bodyOf(request);
+      if (bridge.cut?.test(JSON.stringify(requests))) return response.destroy();
+      bridge.requests++;
       return send(200, await pipeline(baton ?? undefined, requests));
     } catch (error) {
       return send(400, failureOf(error));
     }
   });
   await new Promise<void>((resolve) => server.listen(0, '127.0.0.1', resolve));
-  return {
+  const bridge: HranaBridge = {
     url: `http://127.0.0.1:${(server.address() as AddressInfo).port}`,
+    requests: 0,
     close: () =>
       new Promise((resolve) => {
         clearTimeout(idle);
@@ -177,4 +184,5 @@ export async function startHranaBridge(file: string, token: string): Promise<Hra
         });
       }),
   };
+  return bridge;
 }

@@ -5,8 +5,10 @@ import { build } from 'esbuild';
 import { Miniflare } from 'miniflare';
 import { openRemoteDatabase } from '../../jobs/adapters/libsql-web.ts';
 import { migrateDatabase } from '../../jobs/adapters/node-ports.ts';
-import type { Database } from '../../jobs/ports/index.ts';
-import { startHranaBridge } from './hrana-bridge.ts';
+import { systemClock } from '../../jobs/adapters/system-clock.ts';
+import type { Database, Ports } from '../../jobs/ports/index.ts';
+import { createToken } from '../../jobs/store/index.ts';
+import { type HranaBridge, startHranaBridge } from './hrana-bridge.ts';
 
 /** Why the serverless runtime cannot run on this machine, or undefined when it can. */
 export async function runtimeProblem(): Promise<string | undefined> {
@@ -29,6 +31,9 @@ export interface Runtime {
   /** Where it listens. */
   url: URL;
   database: Database;
+  bridge: HranaBridge;
+  /** A keeper's token. */
+  token: string;
   close(): Promise<void>;
 }
 
@@ -54,10 +59,20 @@ export async function startRuntime(): Promise<Runtime> {
   const bridge = await startHranaBridge(join(folder, 'remote.db'), 'bridge-token');
   const database = openRemoteDatabase(bridge.url, 'bridge-token');
   await migrateDatabase(database);
+  const { token } = await createToken({ database, clock: systemClock } as Ports, {
+    lab: 'serverless',
+    role: 'keeper',
+    days: 1,
+  });
   const miniflare = new Miniflare({
     host: '127.0.0.1',
     port: 0,
     cf: false,
+    // Its log lines are not for the report of the tests.
+    handleRuntimeStdio: (out, err) => {
+      out.resume();
+      err.resume();
+    },
     modules: [{ type: 'ESModule', path: 'worker.js', contents: bundle.outputFiles[0].text }],
     compatibilityDate: setting('compatibility_date'),
     compatibilityFlags: ['nodejs_compat'],
@@ -80,6 +95,8 @@ export async function startRuntime(): Promise<Runtime> {
     miniflare,
     url,
     database,
+    bridge,
+    token,
     close: async () => {
       await miniflare.dispose();
       database.close();
