@@ -13,6 +13,7 @@ import { addCampaignRoutes } from './routes/campaigns.ts';
 import { addDocumentRoutes } from './routes/documents.ts';
 import { addFileRoutes } from './routes/files.ts';
 import { addJobRoutes } from './routes/jobs.ts';
+import { addResultRoutes } from './routes/results.ts';
 import { addSampleRoutes } from './routes/samples.ts';
 import { addScanRoutes } from './routes/scans.ts';
 import { addStatusRoutes } from './routes/status.ts';
@@ -86,6 +87,7 @@ export function createApp(ports: Ports, options: AppOptions): ApiApp {
   addFileRoutes(app, ports);
   addStatusRoutes(app, ports, options.stream ?? STREAM_TIMES);
   addTableRoutes(app, ports);
+  addResultRoutes(app, ports);
   addSampleRoutes(app, ports);
   addScanRoutes(app, ports);
   addJobRoutes(app, ports);

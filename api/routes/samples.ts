@@ -1,37 +1,17 @@
 import { createRoute, z } from '@hono/zod-openapi';
 import type { Context } from 'hono';
 import type { Ports } from '../../jobs/ports/index.ts';
-import { answerForecast, answerTransformation } from '../../jobs/steps/answer-forecast.ts';
-import {
-  findSample,
-  listSampleScans,
-  type ResultRow,
-  readReducedScan,
-  readSamplePlots,
-  readTable,
-  type SampleView,
-  type TableFilter,
-} from '../../jobs/store/index.ts';
+import { answerForecast } from '../../jobs/steps/answer-forecast.ts';
+import { findSample, listSampleScans, type SampleView } from '../../jobs/store/index.ts';
 import { quote } from '../../schema/wire/flags.ts';
 import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
-import type { ResultTable } from '../../schema/wire/result-tables.ts';
 import { SAMPLE_STATES, SCAN_STATES } from '../../schema/wire/states.ts';
 import type { ApiEnv } from '../access.ts';
-import {
-  CURVE_AXES,
-  conversionSeries,
-  energySeries,
-  glassCurves,
-  kissingerLawSeries,
-  kissingerSeries,
-  type ReducedSampleScan,
-  traceSeries,
-  transformationSeries,
-} from '../curves.ts';
 import { limitJson } from '../json-body.ts';
 import { type ApiApp, answer, ID_PARAM, NO_QUERY, oneOf, PROBLEM_ANSWER, strict } from '../openapi.ts';
 import { Problem } from '../problems.ts';
 import { isUnchanged, requireCampaign, UNCHANGED_ANSWER } from '../results.ts';
+import { readCurves } from '../sample-curves.ts';
 import { CURVE_KINDS, CurvesShape } from '../shapes/curves.ts';
 import { AnswerShape, QUESTION_FORMS, QuestionBody, questionOf } from '../shapes/forecasts.ts';
 
@@ -66,15 +46,6 @@ async function requireSample(c: Context<ApiEnv>, ports: Ports, id: string): Prom
   const sample = await findSample(ports, id, c.get('access').lab);
   if (!sample) throw new Problem('not-found', `there is no sample ${quote(id)}`);
   return sample;
-}
-
-async function reducedScans(ports: Ports, { campaignId, sample }: SampleView): Promise<ReducedSampleScan[]> {
-  const found: ReducedSampleScan[] = [];
-  for (const { id, file, instrument, status } of await listSampleScans(ports, campaignId, sample)) {
-    const reduced = status === 'reduced' ? await readReducedScan(ports, id) : undefined;
-    if (reduced) found.push({ id, file, instrument, reduced });
-  }
-  return found;
 }
 
 const forecastRoute = createRoute({
@@ -117,25 +88,6 @@ export function addSampleRoutes(app: ApiApp, ports: Ports): void {
     const sample = await requireSample(c, ports, c.req.valid('param').id);
     const { kind } = c.req.valid('query');
     if (isUnchanged(c, await requireCampaign(c, ports, sample.campaignId))) return c.body(null, 304);
-    const rowsOf = async (table: ResultTable, filter: TableFilter = {}): Promise<ResultRow[]> => {
-      const rows: ResultRow[] = [];
-      for await (const row of readTable(ports, sample.campaignId, table, { sample: sample.sample, ...filter }))
-        rows.push(row);
-      return rows;
-    };
-    if (kind === 'growth' || kind === 'viscosity')
-      return c.json({ kind, ...glassCurves(await readSamplePlots(ports, sample.id), kind) }, 200);
-    const series = {
-      thermogram: async () => traceSeries(await reducedScans(ports, sample), 'heatFlow'),
-      baseline: async () => traceSeries(await reducedScans(ports, sample), 'baseline'),
-      conversion: async () => conversionSeries(await reducedScans(ports, sample)),
-      kissinger: async () => [
-        ...kissingerSeries(await rowsOf('scans'), await rowsOf('parameters', { method: 'kissinger' })),
-        ...kissingerLawSeries(await readSamplePlots(ports, sample.id)),
-      ],
-      ttt: async () => transformationSeries(await answerTransformation(ports, sample.id)),
-      energy: async () => energySeries(await rowsOf('parameters', { quantity: 'activation_energy' })),
-    };
-    return c.json({ kind, ...CURVE_AXES[kind], series: await series[kind]() }, 200);
+    return c.json(await readCurves(ports, sample, kind), 200);
   });
 }

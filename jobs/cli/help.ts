@@ -106,7 +106,8 @@ export const VERBS = {
       days: { value: '365', text: 'add: days until it no longer counts' },
     },
     remarks: [
-      'Works on the database of the data folder, never over the network. A token is shown once and stored hashed.',
+      'Works on the database of the data folder, never over the network.',
+      'A token is shown once and stored hashed.',
     ],
   },
   backup: {
@@ -148,10 +149,17 @@ const aligned = (rows: readonly (readonly [string, string])[]): string[] => {
   return rows.map(([name, text]) => `  ${name.padEnd(width)}${text}`);
 };
 
+/** Characters of a line of usage, at most. */
+const USAGE_WIDTH = 100;
+
 function usageOf(verb: VerbName): string {
   const { positionals, optional, options } = VERBS[verb] as VerbHelp;
   const parts = Object.entries(options).map(([name, { value }]) => `[--${name}${value ? ` ${value}` : ''}]`);
-  return ['ratespan', verb, ...positionals, ...(optional ? [`[${optional}]`] : []), ...parts].join(' ');
+  const words = ['ratespan', verb, ...positionals, ...(optional ? [`[${optional}]`] : []), ...parts];
+  return words.reduce((text, word) => {
+    const line = text.slice(text.lastIndexOf('\n') + 1);
+    return line.length + word.length < USAGE_WIDTH ? `${text} ${word}` : `${text}\n    ${word}`;
+  });
 }
 
 export function verbHelp(verb: VerbName): string {

@@ -1,8 +1,9 @@
 import { open, rename, writeFile } from 'node:fs/promises';
 import { join } from 'node:path';
+import { writeReport } from '../../api/report.ts';
 import { csvHeader, csvRow, RESULT_TABLES, type ResultTable } from '../../schema/wire/result-tables.ts';
 import type { Ports } from '../ports/index.ts';
-import { readTable } from '../store/index.ts';
+import { type Campaign, readCurrentTable } from '../store/index.ts';
 
 const TABLES = Object.keys(RESULT_TABLES) as ResultTable[];
 
@@ -27,8 +28,7 @@ export async function writeResultTables(
     try {
       let text = csvHeader(table);
       let rows = 0;
-      for await (const row of readTable(ports, campaignId, table)) {
-        if (table === 'scans' && row.status === 'superseded') continue;
+      for await (const row of readCurrentTable(ports, campaignId, table)) {
         text += csvRow(table, row);
         rows++;
         if (text.length < CHUNK) continue;
@@ -45,6 +45,13 @@ export async function writeResultTables(
   return counts;
 }
 
+/** Writes report.html: one page that needs no network. */
+export async function writeReportFile(ports: Ports, campaign: Campaign, folder: string): Promise<void> {
+  const path = join(folder, REPORT);
+  await writeFile(`${path}.part`, await writeReport(ports, campaign));
+  await rename(`${path}.part`, path);
+}
+
 /** Writes run.json, last: where it stands, the tables beside it are complete. */
 export async function writeRunRecord(folder: string, record: object): Promise<void> {
   const path = join(folder, RUN_RECORD);
@@ -52,5 +59,6 @@ export async function writeRunRecord(folder: string, record: object): Promise<vo
   await rename(`${path}.part`, path);
 }
 
+export const REPORT = 'report.html';
 export const RUN_RECORD = 'run.json';
 export const PROGRAM = 'ratespan';

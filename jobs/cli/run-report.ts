@@ -3,7 +3,7 @@ import { RESULT_TABLES } from '../../schema/wire/result-tables.ts';
 import type { Ports } from '../ports/index.ts';
 import { type Campaign, type ResultRow, readTable } from '../store/index.ts';
 import { headlineTable, isHeadline } from './headline.ts';
-import { RUN_RECORD } from './result-files.ts';
+import { REPORT, RUN_RECORD } from './result-files.ts';
 import type { Terminal } from './terminal.ts';
 
 interface RunReport {
@@ -40,7 +40,9 @@ export async function reportRun(
     terminal.out(wrapList(`${name}: `, text.length ? text : ['none']));
   }
   if (status.jobs.failed > 0) terminal.out(`${status.jobs.failed} jobs failed; flags.csv and scans.csv say which\n`);
-  terminal.out(`written to ${out}: ${[...Object.keys(RESULT_TABLES).map((t) => `${t}.csv`), RUN_RECORD].join(' ')}\n`);
+  terminal.out(
+    `written to ${out}: ${[...Object.keys(RESULT_TABLES).map((t) => `${t}.csv`), REPORT, RUN_RECORD].join(' ')}\n`,
+  );
 }
 
 async function countCodes(ports: Ports, campaignId: string, table: 'flags' | 'gaps'): Promise<Record<string, number>> {

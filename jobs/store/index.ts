@@ -25,7 +25,7 @@ export { claimReply, dropReply, keepReply, sweepReplies } from './replies.ts';
 export { listSampleScans, type SampleScan } from './sample-scans.ts';
 export { findDamage, snapshotDatabase } from './snapshot.ts';
 export { campaignStatus } from './status.ts';
-export { type ResultRow, readTable, type TableFilter } from './tables/index.ts';
+export { type ResultRow, readCurrentTable, readTable, type TableFilter } from './tables/index.ts';
 export {
   createToken,
   findTokenOwner,
@@ -41,6 +41,7 @@ export {
   checkStores,
   findSample,
   findScan,
+  listInputs,
   listSamples,
   readReducedScan,
   type SampleView,

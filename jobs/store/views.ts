@@ -1,5 +1,5 @@
 import { and, asc, eq, sql } from 'drizzle-orm';
-import { campaigns, samples, scans } from '../../schema/tables/index.ts';
+import { campaigns, files, samples, scans } from '../../schema/tables/index.ts';
 import type { ReducedScan } from '../../schema/wire/reduced.ts';
 import { decodeReduceOutcome } from '../../schema/wire/reduced-blob.ts';
 import type { SampleState } from '../../schema/wire/states.ts';
@@ -94,4 +94,13 @@ export function listSamples(ports: Ports, campaignId: string): Promise<SampleVie
 export async function checkStores(ports: Ports): Promise<void> {
   await ports.database.read.run(sql`select 1 from campaigns limit 1`);
   await ports.blobs.has('derived/reachable');
+}
+
+/** Files of a campaign as they came, archives before their members, with the hash of their bytes, by path. */
+export function listInputs(ports: Ports, campaignId: string): Promise<{ file: string; sha256: string }[]> {
+  return ports.database.read
+    .select({ file: files.path, sha256: files.sha256 })
+    .from(files)
+    .where(and(eq(files.campaignId, campaignId), eq(files.superseded, false)))
+    .orderBy(asc(files.path));
 }

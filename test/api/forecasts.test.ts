@@ -1,5 +1,7 @@
+import { strFromU8, unzipSync } from 'fflate';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
+import { RESULT_TABLES } from '../../schema/wire/result-tables.ts';
 import { type Body, type Harness, openHarness } from './harness.ts';
 import { smallCampaign, TRUE_ENERGY_KJ_PER_MOL } from './small-campaign.ts';
 
@@ -142,5 +144,34 @@ describe('a campaign with curves', () => {
     const slope = (law.y.at(-1) - law.y[0]) / (law.x.at(-1) - law.x[0]);
     expect(Math.abs((-slope * 8.31446261815324e-3) / TRUE_ENERGY_KJ_PER_MOL - 1)).toBeLessThan(0.02);
     expect((await api.get(`/v1/samples/${sample}/curves?kind=growth`)).body.series).toEqual([]);
+  });
+});
+
+describe('results as a whole', () => {
+  it('come as one archive with the bytes of each table', async () => {
+    const response = await api.send('GET', `/v1/campaigns/${campaign}/results.zip`);
+    expect(response.headers.get('content-type')).toBe('application/zip');
+    const bytes = new Uint8Array(await response.arrayBuffer());
+    const files = unzipSync(bytes);
+    expect(Object.keys(files)).toEqual([...Object.keys(RESULT_TABLES).map((name) => `${name}.csv`), 'report.html']);
+    for (const name of ['parameters', 'verdicts', 'forecasts', 'conversion']) {
+      const csv = await (await api.send('GET', `/v1/campaigns/${campaign}/${name}?format=csv`)).text();
+      expect(strFromU8(files[`${name}.csv`])).toBe(csv);
+    }
+    const again = await api.send('GET', `/v1/campaigns/${campaign}/results.zip`);
+    expect(new Uint8Array(await again.arrayBuffer())).toEqual(bytes);
+  });
+
+  it('come as a report that may run nothing and load nothing', async () => {
+    const response = await api.send('GET', `/v1/campaigns/${campaign}/report`);
+    expect(response.status).toBe(200);
+    expect(response.headers.get('content-security-policy')).toContain("default-src 'none'");
+    const html = await response.text();
+    expect(html).toContain('glass');
+    expect(html).not.toMatch(/<script|https?:\/\/(?!www\.w3\.org)/);
+    const tag = response.headers.get('etag') as string;
+    expect(
+      (await api.send('GET', `/v1/campaigns/${campaign}/report`, { headers: { 'if-none-match': tag } })).status,
+    ).toBe(304);
   });
 });

@@ -32,7 +32,7 @@ describe('run', () => {
     const first = await runCli(['run', input, '--out', out, '--workers', '0']);
     expect([first.code, first.err]).toEqual([0, '']);
     for (const line of first.out.split('\n').slice(0, -2)) expect(line.length, line).toBeLessThanOrEqual(100);
-    expect((await readdir(out)).sort()).toEqual([...TABLES, 'blobs', 'ratespan.db', 'run.json'].sort());
+    expect((await readdir(out)).sort()).toEqual([...TABLES, 'blobs', 'ratespan.db', 'report.html', 'run.json'].sort());
     const tables = await readTables(out);
     for (const [name, text] of Object.entries(tables)) {
       expect(text.split('\n')[0]).toBe(RESULT_TABLES[name.replace('.csv', '') as keyof typeof RESULT_TABLES].join(','));
@@ -112,7 +112,7 @@ describe('run', () => {
     ]);
     expect([one.code, two.code]).toEqual([0, 0]);
     expect(await readTables(join(folder, 'two/tiny/out'))).toEqual(await readTables(join(folder, 'one/out')));
-    expect(JSON.parse(two.out).samples).toEqual([{ sample: 'glass', state: 'fitted' }]);
+    expect(JSON.parse(two.out).samples).toMatchObject([{ sample: 'glass', state: 'fitted' }]);
     expect(await readdir(join(folder, 'two'))).toEqual(expect.arrayContaining(['blobs', 'x.db']));
   }, 60_000);
 

@@ -44,7 +44,7 @@ describe('exit codes', () => {
     ]);
     expect([bogus.code, bogus.out]).toEqual([2, '']);
     expect(bogus.err).toBe(
-      'ratespan: unknown verb "bogus"; known: serve, work, run, send, table, demo; see: ratespan --help\n',
+      'ratespan: unknown verb "bogus"; known: serve, work, run, send, table, forecast, token, backup, restore, demo; see: ratespan --help\n',
     );
     expect([help.code, help.out]).toEqual([0, verbHelp('run')]);
     expect(missing.code).toBe(2);

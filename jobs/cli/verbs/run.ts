@@ -31,7 +31,7 @@ import { describeFolder } from '../dry-run.ts';
 import { leaseOwner, storesOfFile, withPorts } from '../environment.ts';
 import { EXIT, UsageError } from '../exit.ts';
 import { followCampaign } from '../follow.ts';
-import { PROGRAM, RUN_RECORD, writeResultTables, writeRunRecord } from '../result-files.ts';
+import { PROGRAM, RUN_RECORD, writeReportFile, writeResultTables, writeRunRecord } from '../result-files.ts';
 import { reportRun } from '../run-report.ts';
 import { progressBar, type Terminal } from '../terminal.ts';
 import { VERSION } from '../version.ts';
@@ -64,6 +64,7 @@ export async function run([folder]: string[], values: Values, terminal: Terminal
     const status = describeNow(await runJobs(ports, campaign, workers, terminal));
     const computed = performance.now();
     const rows = await writeResultTables(ports, campaign.id, out);
+    await writeReportFile(ports, campaign, out);
     const inputs = [];
     for (const file of listed.files) inputs.push({ file: file.path, sha256: await hashFile(file.location) });
     const written = performance.now();

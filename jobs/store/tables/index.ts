@@ -29,6 +29,16 @@ export async function* readTable(
   }
 }
 
+/** A table as the result files have it, of what is there now: scans of files that were replaced or are gone are left out. */
+export async function* readCurrentTable(
+  ports: Pick<Ports, 'database' | 'blobs'>,
+  campaignId: string,
+  table: ResultTable,
+): AsyncGenerator<ResultRow> {
+  for await (const row of readTable(ports, campaignId, table))
+    if (table !== 'scans' || row.status !== 'superseded') yield row;
+}
+
 async function rowsOf(
   ports: Pick<Ports, 'database' | 'blobs'>,
   campaignId: string,
