@@ -93,7 +93,7 @@ export const VERBS = {
     remarks: [
       'temperature + conversion: the time to it; temperature + time: the conversion by then;',
       'conversion + time: the highest temperature that keeps below it; program: the conversion at its end;',
-      'program + conversion: the time to it on the programme. A negative number is written --temperature=-20.',
+      'program + conversion: the time to it on the programme. Below zero: --temperature=-20.',
     ],
   },
   token: {
