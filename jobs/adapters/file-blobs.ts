@@ -1,6 +1,6 @@
 import { randomBytes } from 'node:crypto';
 import * as fs from 'node:fs';
-import { mkdir, opendir, rename, rm, stat } from 'node:fs/promises';
+import { mkdir, opendir, readdir, rename, rm, stat } from 'node:fs/promises';
 import { dirname, join, relative, sep } from 'node:path';
 import { Readable } from 'node:stream';
 import { promisify } from 'node:util';
@@ -12,6 +12,8 @@ const write = promisify(fs.write) as (fd: number, bytes: Uint8Array) => Promise<
 const datasync = promisify(fs.fdatasync);
 const close = promisify(fs.close);
 const readFile = promisify(fs.readFile);
+
+const PART_AGE_MS = 86_400_000;
 
 const isMissing = (error: unknown) => (error as { code?: string }).code === 'ENOENT';
 
@@ -36,6 +38,7 @@ export function createFileBlobs(root: string): BlobStore {
     if (known.has(folder)) return;
     await mkdir(folder, { recursive: true });
     known.add(folder);
+    if (folder === partsFolder) await removeOldParts(folder);
   };
   const missing =
     (key: string) =>
@@ -94,6 +97,15 @@ export function createFileBlobs(root: string): BlobStore {
       }
     },
   };
+}
+
+/** What crashed processes left half written; a part of a living one is younger. */
+async function removeOldParts(folder: string): Promise<void> {
+  for (const name of await readdir(folder)) {
+    const path = join(folder, name);
+    const { mtimeMs } = await stat(path).catch(() => ({ mtimeMs: Number.POSITIVE_INFINITY }));
+    if (Date.now() - mtimeMs > PART_AGE_MS) await rm(path, { force: true });
+  }
 }
 
 const isDerived = (key: string): boolean => key.startsWith('derived/');

@@ -51,9 +51,21 @@ export interface TestPorts extends Ports {
   close(): Promise<void>;
 }
 
-/** Ports on a folder of their own, with a clock moved by hand and arithmetic in place of the science. */
+/** Ports on a folder of their own, which goes with them. */
 export async function openTestPorts(): Promise<TestPorts> {
   const dataDir = await mkdtemp(join(tmpdir(), 'ratespan-test-'));
+  const ports = await openTestPortsIn(dataDir);
+  return {
+    ...ports,
+    async close() {
+      await ports.close();
+      await rm(dataDir, { recursive: true, force: true });
+    },
+  };
+}
+
+/** Ports on a folder, with a clock moved by hand and arithmetic in place of the science. */
+export async function openTestPortsIn(dataDir: string, start?: number): Promise<TestPorts> {
   const database = await openFileDatabase(join(dataDir, 'ratespan.db'));
   await migrateDatabase(database);
   return {
@@ -61,12 +73,11 @@ export async function openTestPorts(): Promise<TestPorts> {
     blobs: createFileBlobs(join(dataDir, 'blobs')),
     queue: createTableQueue(),
     paths: pathRules,
-    clock: createHandClock(),
+    clock: createHandClock(start),
     compute: createArithmeticCompute(),
     dataDir,
     async close() {
       database.close();
-      await rm(dataDir, { recursive: true, force: true });
     },
   };
 }

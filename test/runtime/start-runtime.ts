@@ -1,6 +1,7 @@
 import { mkdir, mkdtemp, readFile, rm, writeFile } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
+import type { Readable } from 'node:stream';
 import { build } from 'esbuild';
 import { Miniflare } from 'miniflare';
 import { openRemoteDatabase } from '../../jobs/adapters/libsql-web.ts';
@@ -69,7 +70,7 @@ export async function startRuntime(): Promise<Runtime> {
     port: 0,
     cf: false,
     // Its log lines are not for the report of the tests.
-    handleRuntimeStdio: (out, err) => {
+    handleRuntimeStdio: (out: Readable, err: Readable) => {
       out.resume();
       err.resume();
     },
