@@ -67,7 +67,8 @@ export function splitRecords(text: string, mark: string): TableRecord[] {
   return records;
 }
 
-const NUMBER = /^[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?$/;
+// Each digit can match in one place only: a cell of many digits must not be tried in all ways.
+const NUMBER = /^[+-]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][+-]?\d+)?$/;
 const NUMBER_WITH_COMMA = /^[+-]?(?:\d+,\d*|,\d+)(?:[eE][+-]?\d+)?$/;
 
 export type DecimalMark = '.' | ',' | undefined;

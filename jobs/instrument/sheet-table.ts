@@ -11,6 +11,7 @@ import {
 } from './cells.ts';
 import { decodeFile } from './encoding.ts';
 import { nameAndUnit, plainName } from './header-cell.ts';
+import { LINE_LIMIT } from './row-parser.ts';
 import { offeredUnits, type Quantity, toSi, type Unit, unitOf } from './units.ts';
 
 /** How a cell of a sheet column is understood. */
@@ -63,9 +64,18 @@ export function readSheet(bytes: Uint8Array, file: string, columns: readonly She
     );
     return { rows: [], flags };
   }
-  const found = findSheetHeader(text, columns);
+  const lines = text.split(/\r\n|\r|\n/);
+  const tooLong = lines.findIndex((line) => line.length > LINE_LIMIT);
+  if (tooLong !== -1) {
+    damaged(
+      `line ${tooLong + 1} has ${lines[tooLong].length} characters, more than the ${LINE_LIMIT} a line may have; it starts with ${quote(lines[tooLong].slice(0, 80).trim())}`,
+      'Save the sheet as delimited text (CSV) with one row a line.',
+    );
+    return { rows: [], flags };
+  }
+  const found = findSheetHeader(text, lines, columns);
   if (found === undefined) {
-    const first = text.split(/\r\n|\r|\n/).find((l) => l.trim() !== '');
+    const first = lines.find((l) => l.trim() !== '');
     damaged(
       first === undefined
         ? 'the sheet is empty'
@@ -74,7 +84,15 @@ export function readSheet(bytes: Uint8Array, file: string, columns: readonly She
     );
     return { rows: [], flags };
   }
-  const { records, header, spaces } = found;
+  const { records, above, header, spaces } = found;
+  const lost = above.filter(({ cells }) => cells.length === header.cells.length && cells.length > 1);
+  if (lost.length > 0)
+    damaged(
+      `${lost.length} ${lost.length === 1 ? 'row' : 'rows'} above the header on line ${header.line} not read, from line ${lost[0].line} on: ${quote(lost[0].cells.join(', '))}`,
+      'Move the header row to the top.',
+    );
+  if (lost.length === 0 && records.every(({ cells }) => cells.every((cell) => cell === '')))
+    damaged(`no row stands below the header on line ${header.line}`, 'Fill in rows, or leave the sheet out.');
   const used = useColumns(header, columns, file, flags);
   const decimal = decimalOf(records, used);
   const rows: SheetCells[] = [];
@@ -99,31 +117,42 @@ export function readSheet(bytes: Uint8Array, file: string, columns: readonly She
 
 function findSheetHeader(
   text: string,
+  lines: readonly string[],
   columns: readonly SheetColumn[],
-): { header: TableRecord; records: TableRecord[]; spaces: boolean } | undefined {
+): { header: TableRecord; above: TableRecord[]; records: TableRecord[]; spaces: boolean } | undefined {
   const names = new Set(columns.map((c) => c.name));
   const required = columns.filter((c) => c.required).map((c) => c.name);
   const isHeader = (record: TableRecord): boolean => {
     const named = record.cells.flatMap((cell) => namesOf(cell).filter((name) => names.has(name)));
     return required.every((name) => named.includes(name));
   };
-  const ways: [TableRecord[], boolean][] = DELIMITERS.map((d) => [
-    splitRecords(text, DELIMITER_CHARACTERS[d as Exclude<Delimiter, 'spaces'>]),
-    false,
-  ]);
-  const lines = text.split(/\r\n|\r|\n/);
+  // One way at a time: a long sheet split in all ways at once would fill the memory.
+  const delimited = DELIMITERS.map((d) => ({
+    split: () => splitRecords(text, DELIMITER_CHARACTERS[d as Exclude<Delimiter, 'spaces'>]),
+    spaces: false,
+  }));
+  const bySpaces = (split: (line: string) => string[]) => ({
+    split: () => lines.map((l, i) => ({ line: i + 1, cells: split(l) })),
+    spaces: true,
+  });
   // Names may hold single spaces: two or more are tried as delimiter first.
-  ways.push([lines.map((l, i) => ({ line: i + 1, cells: l.trim() === '' ? [] : l.trim().split(/\s{2,}|\t/) })), true]);
-  ways.push([lines.map((l, i) => ({ line: i + 1, cells: splitLine(l, 'spaces') })), true]);
-  for (const [records, spaces] of ways) {
+  const ways = [
+    ...delimited,
+    bySpaces((l) => (l.trim() === '' ? [] : l.trim().split(/\s{2,}|\t/))),
+    bySpaces((l) => splitLine(l, 'spaces')),
+  ];
+  const headerOf = ({ split, spaces }: { split: () => TableRecord[]; spaces: boolean }, fewestCells: number) => {
+    const records = split();
     const at = records.slice(0, HEADER_WITHIN).findIndex(isHeader);
-    // A sheet with one required column is delimited in any way; the first with a second column, or else the first, is taken.
-    if (at !== -1 && (required.length > 1 || records[at].cells.length > 1))
-      return { header: records[at], records: records.slice(at + 1), spaces };
+    if (at === -1 || records[at].cells.length < fewestCells) return undefined;
+    return { header: records[at], above: records.slice(0, at), records: records.slice(at + 1), spaces };
+  };
+  // A sheet with one required column is delimited in any way; the first with a second column, or else the first, is taken.
+  for (const way of ways) {
+    const found = headerOf(way, required.length > 1 ? 1 : 2);
+    if (found) return found;
   }
-  const records = ways[0][0];
-  const at = records.slice(0, HEADER_WITHIN).findIndex(isHeader);
-  return at === -1 ? undefined : { header: records[at], records: records.slice(at + 1), spaces: false };
+  return headerOf(ways[0], 1);
 }
 
 /** The names a header cell can mean, in plain form. */

@@ -25,8 +25,24 @@ export interface SegmentFindings {
 
 /** Exotherms of a segment in order of time. */
 export function findEvents(c: ScanContext, segment: Segment): Excursion[] {
-  const all = findExcursions(c.scan.timeS, c.y, segment.from, segment.to);
+  const limits = limitsOf(c, segment);
+  const inside = (x: Excursion) => !limits || (x.peakS > limits.leftS && x.peakS < limits.rightS);
+  const all = findExcursions(c.scan.timeS, c.y, segment.from, segment.to).filter(inside);
   return all.filter((x) => x.prominence >= LEAST_PART * all[0].prominence).sort((a, b) => a.peakS - b.peakS);
+}
+
+/** The user's limits on the clock of a ramp; a hold has one temperature, so they say nothing there. */
+function limitsOf({ input, scan, shiftAt }: ScanContext, segment: Segment): Room['limits'] {
+  if (!input.limitsK || segment.kind === 'hold') return undefined;
+  const up = segment.kind === 'heating';
+  const timeOf = (trueK: number): number => {
+    const measuredK = trueK - shiftAt(segment.rateKPerS, trueK);
+    let i = segment.from;
+    while (i < segment.to - 1 && (up ? scan.temperatureK[i] < measuredK : scan.temperatureK[i] > measuredK)) i++;
+    return scan.timeS[i];
+  };
+  const [leftS, rightS] = input.limitsK.map(timeOf).sort((a, b) => a - b);
+  return { leftS, rightS };
 }
 
 /** Events, glass transition and melting of one segment; `before` is the segment that leads to it. */
@@ -44,7 +60,8 @@ export function analyseSegment(
   const glassEnd = first ? lowerBound(timeS, first.peakS - GLASS_BEFORE * first.leftS) : segment.to;
   const glass =
     segment.kind === 'heating' ? findGlassTransition(timeS, c.y, segment.from, glassEnd, c.noise, first) : undefined;
-  const groups = groupBells(bells);
+  const limits = limitsOf(c, segment);
+  const groups = limits && bells.length > 0 ? [bells] : groupBells(bells);
   const highest = Math.max(...bells.map((b) => b.height));
   const endS = timeS[segment.to - 1];
   const events: ReducedEvent[] = [];
@@ -63,8 +80,7 @@ export function analyseSegment(
     const room: Room = {
       fromS: previous ? previous.peakS + TAIL * previous.rightS : timeS[segment.from],
       toS,
-      ...(g === 0 && glass && { glass }),
-      ...(melting && { melting }),
+      ...(limits ? { limits } : { ...(g === 0 && glass && { glass }), ...(melting && { melting }) }),
       responseS: Math.max(0, c.input.calibration.responseS ?? 0),
       ...knownArea(c, groups.length === 1 && group.length === 1),
     };

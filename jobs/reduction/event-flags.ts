@@ -6,8 +6,13 @@ export const FEW_POINTS = 20;
 export const TOO_FEW_POINTS = 8;
 /** Areas above both baselines that differ by more than this raise `baseline-doubt`. */
 const BASELINE_DOUBT = 0.05;
-/** S above which it is told, told where only a bound is known, and kept out of the kinetics (METHODS 4.8) */
-const SELF_HEATING = { told: 0.1, boundTold: 1, out: 1 };
+/** S above which it is told and kept out of the kinetics (METHODS 4.8) */
+const SELF_HEATING = { told: 0.1, out: 1 };
+/**
+ * Where standards have not told the sample's part of the lag, S is told only where a tenth of the lag would be enough to keep the event out
+ * of the kinetics. A bound above `told`, or even above `out`, is the rule on furnaces and would say nothing about the scan.
+ */
+const LAG_PART = 0.1;
 
 export interface Judged {
   straightArea: number;
@@ -71,18 +76,21 @@ export function judgeEvent(e: ReducedEvent, about: Judged, where: object): Flag[
     );
   }
   const heating = about.selfHeating;
-  if (heating && heating.number > (heating.bound ? SELF_HEATING.boundTold : SELF_HEATING.told)) {
-    const assumed = heating.heatCapacityAssumed
-      ? ' with a heat capacity taken as 0.5 J/(g K), since none is given'
-      : '';
-    const out =
-      !heating.bound && heating.number > SELF_HEATING.out ? '; above 1 the event stays out of the kinetics' : '';
+  if (heating?.bound) {
+    if (LAG_PART * heating.number > SELF_HEATING.out) {
+      const assumed = heating.heatCapacityAssumed ? ' (heat capacity taken as 0.5 J/(g K), since none is given)' : '';
+      tell(
+        'self-heating-unknown',
+        `Were the sample ${100 * LAG_PART} % of the instrument’s lag, the event would warm it too much: S = ${(LAG_PART * heating.number).toPrecision(2)}, limit ${SELF_HEATING.out}${assumed}. The sample’s part is not known.`,
+        'Run standards, which tell the sample’s part of the lag; or repeat the scan with a third of the mass: the peak must stay.',
+      );
+    }
+  } else if (heating && heating.number > SELF_HEATING.told) {
+    const out = heating.number > SELF_HEATING.out ? '; above 1 the event stays out of the kinetics' : '';
     tell(
       'self-heating',
-      `The event ${heating.bound ? 'may warm' : 'warms'} its own sample: S is ${heating.bound ? 'at most ' : ''}${heating.number.toPrecision(2)}${assumed} (it matters above 0.1${out}).`,
-      heating.bound
-        ? 'Run standards, which tell the sample’s part of the lag; or use less mass.'
-        : 'Use less mass or a lower rate.',
+      `The event warms its own sample: S is ${heating.number.toPrecision(2)} (it matters above ${SELF_HEATING.told}${out}).`,
+      'Use less mass or a lower rate.',
     );
   }
   if (about.responseUnknown && Math.abs(about.lagK) > 0.1 * e.widthK) {

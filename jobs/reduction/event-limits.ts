@@ -14,6 +14,8 @@ export interface Room {
   responseS: number;
   /** An isothermal event or a metal's melting: no exponential foot, a longer tail, no step of the heat capacity, no need of a flank before it */
   footless?: boolean;
+  /** Ends of the event as the user set them, s: in the place of those found; flanks lie beyond */
+  limits?: { leftS: number; rightS: number };
   /** Area of the whole event where mass and enthalpy are known, signal units × s; used where its end is hidden */
   knownArea?: number;
 }
@@ -64,6 +66,7 @@ export function placeLimits(
   const bin = (w.t[n - 1] - w.t[0]) / (n - 1);
   const least = Math.max(FLANK.least * width, 3 * bin);
 
+  if (room.limits) return givenLimits(w, room, room.limits, 3 * bin);
   const reach = room.footless ? HOLD_REACH : RAMP_REACH;
   const edgeLeft = Math.max(room.fromS, w.t[0]);
   const glassEnd = room.glass && room.glass.toS > edgeLeft ? room.glass.toS : edgeLeft;
@@ -104,4 +107,19 @@ export function placeLimits(
     glassOverlap,
     meltingOverlap,
   };
+}
+
+/** The user's limits with all the room beyond them as flanks; cut where no flank of at least `leastS` is left. */
+function givenLimits(
+  w: EventWindow,
+  room: Room,
+  { leftS, rightS }: NonNullable<Room['limits']>,
+  leastS: number,
+): Limits | { cut: 'before' | 'behind' } {
+  const fromS = Math.max(room.fromS, w.t[0]);
+  const toS = Math.min(room.toS, w.t[w.t.length - 1]);
+  if (leftS - fromS < leastS) return { cut: 'before' };
+  if (toS - rightS < leastS) return { cut: 'behind' };
+  const found = { freeLeft: false, freeRight: false, glassOverlap: false, meltingOverlap: false };
+  return { leftS, rightS, fromS, toS, ...found };
 }

@@ -3,6 +3,9 @@ import { forecastAdviceStudy } from './forecast-advice.ts';
 import { generatorsAgree } from './generators-agree.ts';
 import { holdsStudy } from './holds.ts';
 import { intervalsStudy } from './intervals.ts';
+import { laboratoriesStudy } from './laboratories.ts';
+import { largeScanStudy } from './large-scan.ts';
+import { mutatedFilesStudy } from './mutated-files.ts';
 import { reductionStudy } from './reduction.ts';
 import { roundTripStudy } from './round-trip.ts';
 import { standardsStudy } from './standards.ts';
@@ -43,6 +46,18 @@ export const STUDIES: Record<string, { about: string; run: Study }> = {
   verdict: {
     about: 'simulated campaigns on furnace and chip: is the bend the material’s; local E, ξ, m',
     run: verdictStudy,
+  },
+  'mutated-files': {
+    about: 'damaged files and archives through the reader: read or refused, seconds and memory',
+    run: mutatedFilesStudy,
+  },
+  'large-scan': {
+    about: 'one scan of many rows through reader and reduction: rows a second, peak memory',
+    run: largeScanStudy,
+  },
+  laboratories: {
+    about: 'measured scans of one polymer from three laboratories: glass transition and its spread',
+    run: laboratoriesStudy,
   },
   'two-events': {
     about: 'two events 35 to 60 K apart at five rates: both Kissinger energies',
