@@ -5,6 +5,7 @@ import { CampaignListView } from './views/campaign-list.tsx';
 import { lazyView } from './views/lazy-view.tsx';
 import { Masthead } from './views/masthead.tsx';
 import { Notice } from './views/notice.tsx';
+import { TokenForm } from './views/token-form.tsx';
 
 // The first page stays small: what is a step further in comes when it is asked for.
 const SampleView = lazyView(async () => (await import('./views/sample.tsx')).SampleView);
@@ -46,6 +47,7 @@ export function App() {
       </a>
       <Masthead />
       <main id="main" tabIndex={-1}>
+        <TokenForm />
         <View />
       </main>
     </>

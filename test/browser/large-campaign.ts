@@ -83,7 +83,7 @@ const axes = { x: { quantity: 'temperature', unit: 'K' }, y: { quantity: 'heat f
 
 function curves(kind: string, sample: number) {
   const own = scans[sample];
-  if (kind === 'energy' || kind === 'kissinger') return { kind, ...axes, series: [] };
+  if (!['thermogram', 'baseline', 'conversion'].includes(kind)) return { kind, ...axes, series: [] };
   const count = kind === 'conversion' ? 99 : LARGE.curvePoints;
   return {
     kind,
@@ -110,6 +110,9 @@ const TABLES: Record<string, readonly object[]> = {
   flags,
   coverage: [],
   gaps: [],
+  advice: [],
+  verdicts: [],
+  forecasts: [],
   instruments: INSTRUMENTS.map((instrument) => ({
     instrument,
     kind: 'furnace',
@@ -132,6 +135,7 @@ export async function answerLargeCampaign(page: Page): Promise<void> {
     const url = new URL(route.request().url());
     const parts = url.pathname.split('/').slice(2);
     const json = (body: unknown) => route.fulfill({ contentType: 'application/json', body: JSON.stringify(body) });
+    if (parts[0] === 'samples' && parts.length === 2) return json({ id: parts[1], sample: '', scans: [] });
     if (parts[0] === 'samples') return json(curves(url.searchParams.get('kind') ?? '', Number(parts[1].slice(2))));
     if (parts.length === 2) return json({ id: 'large', name: 'large', created_at: '2026-01-01T00:00:00Z' });
     if (parts[2] === 'status') return json(status);

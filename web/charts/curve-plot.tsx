@@ -1,15 +1,16 @@
-import { formatPowerOfTen } from '../format.ts';
+import { formatPowerOfTen, type Units } from '../format.ts';
 import type { Curves } from '../model/curves.ts';
 import { bandPath, linePath } from './curve-path.ts';
-import { InstrumentMark } from './instrument-mark.tsx';
+import { InstrumentKey, InstrumentMark } from './instrument-mark.tsx';
 import { createPlotBox, labelWidth, type PlotBox, PlotFrame } from './plot-frame.tsx';
-import { createPlotScale, extent, type PlotScale } from './plot-scale.ts';
+import { createPlotScale, createTemperatureScale, extent, type PlotScale } from './plot-scale.ts';
 
 export interface CurvePlotLayout {
   box: PlotBox;
   x: PlotScale;
   y: PlotScale;
   curves: Curves;
+  xLabel: string;
 }
 
 const HEIGHT = 320;
@@ -29,28 +30,33 @@ function createScale(values: number[], range: [number, number]): PlotScale {
   return { ...scale, ticks };
 }
 
+const axisName = ({ quantity, unit }: { quantity: string; unit: string }): string =>
+  `${quantity.charAt(0).toUpperCase()}${quantity.slice(1)}${unit === '' || unit === '1' ? '' : `, ${unit}`}`;
+
 /** Any curves with their own quantities, e.g. growth rate, viscosity or times of transformation; logarithmic where they span decades. */
-export function layoutCurvePlot(curves: Curves, width: number): CurvePlotLayout {
+export function layoutCurvePlot(curves: Curves, width: number, units: Units): CurvePlotLayout {
   const ys = extent(...curves.series.flatMap((s) => [s.y, s.lower ?? [], s.upper ?? []]));
+  const isTemperature = curves.x.quantity === 'temperature' && curves.x.unit === 'K';
+  const xs = extent(...curves.series.map((s) => s.x));
   const ruler = createScale(ys, [HEIGHT, 0]);
   const box = createPlotBox(width, HEIGHT, Math.max(34, labelWidth(ruler) + 10));
   return {
     box,
-    x: createScale(extent(...curves.series.map((s) => s.x)), [box.left, box.right]),
+    x: isTemperature
+      ? createTemperatureScale(xs, [box.left, box.right], units)
+      : createScale(xs, [box.left, box.right]),
     y: createScale(ys, [box.bottom, box.top]),
     curves,
+    xLabel: isTemperature ? `Temperature, ${units.temperature}` : axisName(curves.x),
   };
 }
 
-const axisName = ({ quantity, unit }: { quantity: string; unit: string }): string =>
-  `${quantity.charAt(0).toUpperCase()}${quantity.slice(1)}${unit === '' || unit === '1' ? '' : `, ${unit}`}`;
-
 /** Series of an instrument are marks, the others lines told apart by their dashes and named at their end. */
 export function CurvePlot({ layout, instruments }: { layout: CurvePlotLayout; instruments: readonly string[] }) {
-  const { box, x, y, curves } = layout;
+  const { box, x, y, curves, xLabel } = layout;
   const lines = curves.series.filter((s) => s.instrument === undefined);
   return (
-    <PlotFrame box={box} x={x} y={y} xLabel={axisName(curves.x)} yLabel={axisName(curves.y)}>
+    <PlotFrame box={box} x={x} y={y} xLabel={xLabel} yLabel={axisName(curves.y)}>
       {lines.map((s) =>
         s.lower && s.upper ? (
           <path key={`band ${s.name}`} class="band" d={bandPath(s.x, s.lower, s.upper, x, y)} />
@@ -73,6 +79,23 @@ export function CurvePlot({ layout, instruments }: { layout: CurvePlotLayout; in
             )),
       )}
     </PlotFrame>
+  );
+}
+
+/** What a law of a Kissinger plot is called beside its dash. */
+export const lawName = ({ rest }: { rest: string }): string => (rest === 'fit' ? 'one straight line' : rest);
+
+/** What hollow and full marks of a Kissinger plot mean. */
+export function CorrectionKeys() {
+  return (
+    <>
+      <li class="muted-key">
+        <InstrumentKey instrument={0} look="hollow" /> as measured
+      </li>
+      <li class="muted-key">
+        <InstrumentKey instrument={0} /> lag removed
+      </li>
+    </>
   );
 }
 

@@ -14,14 +14,21 @@ export interface KissingerLayout {
   over: PlotScale;
   /** Peaks of the instruments */
   points: readonly NamedSeries[];
+  /** Whether peaks stand twice, as measured (hollow) and with the verdict's lags taken off (full) */
+  isCorrected: boolean;
   /** Laws drawn through them */
   laws: readonly NamedSeries[];
 }
 
 const HEIGHT = 340;
 
+const isLagRemoved = ({ rest }: NamedSeries): boolean => rest.endsWith('lag removed');
+
 /** 1000/T rises to the right as is usual; the temperature itself stands along the upper edge. */
-export function layoutKissinger(series: readonly NamedSeries[], width: number, units: Units): KissingerLayout {
+export function layoutKissinger(all: readonly NamedSeries[], width: number, units: Units): KissingerLayout {
+  const isCorrected = all.some(isLagRemoved);
+  // The verdict brings its own straight law, through the peaks without lag.
+  const series = all.filter((s) => !(isCorrected && s.rest === 'fit'));
   const box = createPlotBox(width, HEIGHT, 44, 44);
   const xs = extent(...series.map((s) => s.x));
   const ys = extent(...series.map((s) => s.y));
@@ -44,6 +51,7 @@ export function layoutKissinger(series: readonly NamedSeries[], width: number, u
     x,
     y: createPlotScale(ys, [box.bottom, box.top], { count: 6 }),
     over: { ...x, ticks },
+    isCorrected,
     points: series.filter((s) => s.instrument !== undefined),
     laws: series.filter((s) => s.instrument === undefined),
   };
@@ -52,7 +60,7 @@ export function layoutKissinger(series: readonly NamedSeries[], width: number, u
 /** ln(β/Tp²) against 1000/Tp: marks of the instruments, laws as lines told apart by their dashes. */
 export function KissingerPlot(props: { layout: KissingerLayout; instruments: readonly string[]; units: Units }) {
   const { layout, instruments, units } = props;
-  const { box, x, y, over, points, laws } = layout;
+  const { box, x, y, over, points, laws, isCorrected } = layout;
   return (
     <PlotFrame
       box={box}
@@ -76,7 +84,7 @@ export function KissingerPlot(props: { layout: KissingerLayout; instruments: rea
             <title>{`${s.instrument}: ${formatTemperature(1 / value, units)}`}</title>
             <InstrumentMark
               instrument={instruments.indexOf(s.instrument ?? '')}
-              look="full"
+              look={isCorrected && !isLagRemoved(s) ? 'hollow' : 'full'}
               x={x.at(value)}
               y={y.at(s.y[i])}
             />

@@ -37,13 +37,10 @@ export function createPlotScale(
     if (value > high) high = value;
   }
   if (low > high) [low, high] = [0, 1];
-  if (low === high) {
-    const room = Math.abs(low) * 0.05 || 1;
-    low -= room;
-    high += room;
-  }
-  const room = (high - low) * 0.03;
-  const scale = scaleLinear([shown(low - room), shown(high + room)], range);
+  // Room is made in the numbers shown: a logarithm has none below its lowest value otherwise.
+  const [first, last] = [shown(low), shown(high)];
+  const room = last > first ? (last - first) * 0.03 : Math.abs(first) * 0.05 || 1;
+  const scale = scaleLinear([first - room, last + room], range);
   const ticks = labelTicks(scale.ticks(count)).map(({ value, label }) => ({ at: scale(value), label }));
   return { at: (value) => scale(shown(value)), valueAt: (px) => hidden(scale.invert(px)), range, ticks };
 }

@@ -41,9 +41,15 @@ export function StripGround({ scale, layout, row }: { scale: RateScale; layout: 
           </g>
         );
       })}
+      {row.advisedKPerS !== undefined && <AdvisedMark x={scale.x(row.advisedKPerS)} y={railY} />}
     </>
   );
 }
+
+/** Where the next scan would tell most: a ring to be filled. */
+export const AdvisedMark = ({ x, y }: { x: number; y: number }) => (
+  <path class="advised" d={`M${(x - 9).toFixed(1)} ${y}a9 9 0 1 1 18 0a9 9 0 1 1-18 0`} />
+);
 
 /** Marks of one sample: one a scan at its heating rate; on the page each is an option of the list box around it. */
 export function StripMarks(props: {

@@ -84,6 +84,13 @@ export const CHART_STYLE = `
   stroke-dasharray: 3 3;
 }
 
+.advised {
+  fill: none;
+  stroke: var(--gap);
+  stroke-width: 1.6;
+  stroke-dasharray: 2.5 2;
+}
+
 .empty-decade-label {
   font: 0.75rem var(--text);
   fill: var(--gap);

@@ -1,6 +1,8 @@
 import type { CoverageRow, GapRow } from '../../schema/wire/campaign.ts';
+import type { AdviceRow, ForecastRow } from '../../schema/wire/forecasts.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { ResultTable } from '../../schema/wire/result-tables.ts';
+import type { VerdictRow } from '../../schema/wire/verdicts.ts';
 import type { CurveKind, Curves } from '../model/curves.ts';
 import { request, requestAll } from './request.ts';
 import type { Campaign, FileOutcome, FlagRow, InstrumentRow, JobRow, SampleView, ScanRow, Status } from './rows.ts';
@@ -15,7 +17,16 @@ export interface TableRows {
   flags: FlagRow;
   parameters: ParameterRow;
   instruments: InstrumentRow;
+  verdicts: VerdictRow;
+  forecasts: ForecastRow;
+  advice: AdviceRow;
 }
+
+const withJson = (method: string, body: unknown): RequestInit => ({
+  method,
+  headers: { 'content-type': 'application/json' },
+  body: JSON.stringify(body),
+});
 
 const route = (id: string): string => `/campaigns/${encodeURIComponent(id)}`;
 
@@ -52,6 +63,17 @@ export const loadSample = async (sampleId: string, signal?: AbortSignal): Promis
 export const loadCurves = async (sampleId: string, kind: CurveKind, signal?: AbortSignal): Promise<Curves> =>
   (await request(`${sampleRoute(sampleId)}/curves?kind=${kind}`, { signal })).json();
 
+/** What is asked: exactly the forms that POST /samples/:id/forecasts takes. */
+export interface ForecastBody {
+  temperature_C?: number;
+  conversion?: number;
+  time_s?: number;
+  program?: [number, number][];
+}
+
+export const askForecast = async (sampleId: string, body: ForecastBody): Promise<ForecastRow[]> =>
+  (await (await request(`${sampleRoute(sampleId)}/forecasts`, withJson('POST', body))).json()).items;
+
 export const loadJobs = (id: string, state: JobRow['state'], signal?: AbortSignal): Promise<JobRow[]> =>
   requestAll<JobRow>('/jobs', { campaign: id, state }, signal);
 
@@ -66,13 +88,7 @@ export const openStatusStream = (id: string, lastEventId: string | undefined, si
   });
 
 export const createCampaign = async (name: string): Promise<Campaign> =>
-  (
-    await request('/campaigns', {
-      method: 'POST',
-      headers: { 'content-type': 'application/json' },
-      body: JSON.stringify({ name }),
-    })
-  ).json();
+  (await request('/campaigns', withJson('POST', { name }))).json();
 
 /** Sends one file as a raw body under its path in the campaign. */
 export const sendFile = async (id: string, path: string, file: File, signal?: AbortSignal): Promise<FileOutcome> =>

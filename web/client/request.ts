@@ -1,3 +1,5 @@
+import { accessToken, isTokenWanted } from '../state/access.ts';
+
 /** What went wrong, in words, with what to do next. */
 export class Problem extends Error {
   readonly status: number;
@@ -15,7 +17,7 @@ export class Problem extends Error {
 }
 
 const ACTIONS: Record<number, string> = {
-  401: 'Ask the keeper of this server for an access token.',
+  401: 'Give the access token that the keeper of this server made for you.',
   403: 'Open the page at the address that the server printed when it started.',
   404: 'Go back to the list of campaigns; it may have been deleted.',
   409: 'Choose another name, or open the campaign that has this one.',
@@ -38,13 +40,16 @@ const unreachable = (cause: unknown): Problem =>
  */
 export async function request(route: string, init: RequestInit = {}): Promise<Response> {
   let response: Response;
+  const token = accessToken.value;
+  const headers = token === '' ? init.headers : { ...init.headers, authorization: `Bearer ${token}` };
   try {
-    response = await fetch(`/v1${route}`, init);
+    response = await fetch(`/v1${route}`, { ...init, headers });
   } catch (cause) {
     if (init.signal?.aborted) throw cause;
     throw unreachable(cause);
   }
   if (response.ok) return response;
+  if (response.status === 401) isTokenWanted.value = true;
   const body = await response.json().catch(() => ({}));
   const title = typeof body.title === 'string' ? body.title : `The server answered ${response.status}`;
   const detail = typeof body.detail === 'string' ? body.detail : `${init.method ?? 'GET'} /v1${route}`;

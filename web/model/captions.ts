@@ -15,7 +15,7 @@ export const FIGURES: Record<Exclude<CurveKind, 'baseline'>, { title: string; ca
   kissinger: {
     title: 'Kissinger plot',
     caption:
-      'One mark a scan. One activation energy over all rates makes a straight line of slope −E/R; a bend is either the material’s or an instrument’s lag.',
+      'One mark a scan. One activation energy over all rates makes a straight line of slope −E/R; a bend is either the material’s or an instrument’s lag. Where the bend is judged, hollow marks are the peaks as measured, full ones those without the lag that the verdict found.',
   },
   energy: {
     title: 'Activation energy over conversion',
@@ -24,5 +24,9 @@ export const FIGURES: Record<Exclude<CurveKind, 'baseline'>, { title: string; ca
   },
   growth: { title: 'Growth rate', caption: 'Holds if nuclei exist before the scan begins.' },
   viscosity: { title: 'Viscosity', caption: 'Measured or derived viscosity over temperature.' },
-  ttt: { title: 'Time, temperature, transformation', caption: 'Time to the conversion named at each temperature.' },
+  ttt: {
+    title: 'Time, temperature, transformation',
+    caption:
+      'Time to reach a conversion when held at each temperature, with its 95 % band. An aid to planning experiments, not a basis for process-safety, medical or release decisions.',
+  },
 };

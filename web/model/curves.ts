@@ -75,6 +75,8 @@ export function buildLanes(thermogram: Curves, baseline: Curves, scans: readonly
     .sort((a, b) => (a.rateKPerS ?? 0) - (b.rateKPerS ?? 0) || (a.file < b.file ? -1 : 1));
 }
 
+const FORECAST_METHOD = /^(model_free|shared_law)(?:, |$)/;
+
 /** Event and the rest of a name of the form `event 2, rest`. */
 export function splitName(name: string): { event: number | undefined; rest: string } {
   const [, number, rest] = /^event (\d+)(?:, )?(.*)$/s.exec(name) ?? [];
@@ -89,6 +91,30 @@ export function curvesByEvent(curves: Curves): { event: number; series: (CurveSe
     event,
     series: series.filter((s) => s.event === undefined || s.event === event),
   }));
+}
+
+/**
+ * Curves of one kind in figures that can be read: an event each, and where a method is named, a method each. What names the figure is
+ * taken out of the names of its series.
+ */
+export function splitCurves(curves: Curves): { names: string[]; curves: Curves }[] {
+  const events = curvesByEvent(curves);
+  return events.flatMap(({ event, series }) => {
+    const eventNames = events.length > 1 ? [`event ${event}`] : [];
+    const methods = [...new Set(series.map((s) => FORECAST_METHOD.exec(s.rest)?.[1]))];
+    return methods.map((method) => {
+      const own = series.filter((s) => FORECAST_METHOD.exec(s.rest)?.[1] === method);
+      const name = ({ rest }: { rest: string }): string =>
+        rest.replace(FORECAST_METHOD, '').replace(/^conversion /, 'α = ') || rest;
+      return {
+        names: [
+          ...eventNames,
+          ...(method === undefined ? [] : [method.replace('_', ' ').replace('model free', 'model-free')]),
+        ],
+        curves: { ...curves, series: own.map((s) => ({ ...s, name: name(s) })) },
+      };
+    });
+  });
 }
 
 /** Points of curves as rows for a CSV file. */

@@ -36,6 +36,16 @@ export interface ForecastWords {
   beyond: string;
 }
 
+/** Lines of two numbers, time in s and temperature in °C; anything else on a line is refused by the server, which names the rule. */
+export const parseProgramme = (text: string): [number, number][] =>
+  text
+    .split(/\r?\n/)
+    .filter((line) => line.trim() !== '')
+    .map((line) => {
+      const [time, temperature] = line.trim().split(/[\s;,]+/);
+      return [Number(time), Number(temperature)];
+    });
+
 /** One row of the forecasts in words. */
 export function describeForecast(row: ForecastRow, units: Units): ForecastWords {
   const at =

@@ -1,5 +1,6 @@
 import type { CampaignStatus, CoverageRow, GapRow } from '../../schema/wire/campaign.ts';
 import { FLAG_CODES } from '../../schema/wire/flags.ts';
+import type { AdviceRow } from '../../schema/wire/forecasts.ts';
 import type { Role, SampleState, ScanState } from '../../schema/wire/states.ts';
 import type { FlagRow, ScanRow } from '../client/rows.ts';
 import { flagMeaning } from '../words.ts';
@@ -32,6 +33,8 @@ export interface LedgerRow {
   marks: ScanMark[];
   gaps: GapRow[];
   emptySpans: EmptySpan[];
+  /** The scan that would narrow an interval most, K/s */
+  advisedKPerS?: number;
   numbers: EventNumbers[];
   /** E over conversion by the headline method */
   energies: EventEnergies[];
@@ -147,6 +150,7 @@ export interface LedgerTables {
   gaps: readonly GapRow[];
   flags: readonly FlagRow[];
   parameters: Parameters<typeof numbersBySample>[0];
+  advice?: readonly AdviceRow[];
 }
 
 /** Scans that are worked on between two steps of `ledgerSteps`: a millisecond or two. */
@@ -189,6 +193,7 @@ export function* ledgerSteps(
   yield;
   const gaps = bySample(tables.gaps);
   const flags = bySample(tables.flags);
+  const advice = bySample(tables.advice ?? []);
   const coverage = bySample(tables.coverage);
   const numbers = numbersBySample(tables.parameters);
   yield;
@@ -200,6 +205,7 @@ export function* ledgerSteps(
     row.gaps = gaps.get(row.sample) ?? [];
     row.concerns = concernsOf(flags.get(row.sample) ?? [], row.gaps);
     row.emptySpans = emptySpans(coverage.get(row.sample) ?? []);
+    row.advisedKPerS = advice.get(row.sample)?.find(({ rank }) => rank === 1)?.rate_K_per_s;
     row.numbers = numbers.get(row.sample) ?? [];
     row.energies = energies.get(row.sample) ?? [];
   }

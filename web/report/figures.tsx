@@ -1,6 +1,6 @@
 import type { ComponentChildren } from 'preact';
 import { ConversionPlot, layoutConversion } from '../charts/conversion-plot.tsx';
-import { CurvePlot, LawKeys, layoutCurvePlot } from '../charts/curve-plot.tsx';
+import { CorrectionKeys, CurvePlot, LawKeys, lawName, layoutCurvePlot } from '../charts/curve-plot.tsx';
 import { EnergyPanels, layoutEnergy } from '../charts/energy-panels.tsx';
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import { KissingerPlot, layoutKissinger } from '../charts/kissinger-plot.tsx';
@@ -12,7 +12,7 @@ import { layoutLanes, ThermogramLanes } from '../charts/thermogram-lanes.tsx';
 import type { ScanRow } from '../client/rows.ts';
 import type { Units } from '../format.ts';
 import { FIGURES } from '../model/captions.ts';
-import { buildLanes, type CurveKind, type CurveSeries, curvesByEvent } from '../model/curves.ts';
+import { buildLanes, type CurveKind, type CurveSeries, curvesByEvent, splitCurves } from '../model/curves.ts';
 import type { LedgerRow } from '../model/ledger.ts';
 import type { ReportSample } from './data.ts';
 
@@ -151,7 +151,7 @@ export function SampleFigures(props: {
         kissinger.series.length > 0 &&
         curvesByEvent(kissinger).map(({ event, series }, _, all) => {
           const layout = layoutKissinger(series, WIDTH, units);
-          const laws = layout.laws.map((law) => (law.rest === 'fit' ? 'one straight line' : law.rest));
+          const laws = layout.laws.map(lawName);
           return (
             <ReportFigure
               key={event}
@@ -161,6 +161,7 @@ export function SampleFigures(props: {
               legend={
                 <>
                   <InstrumentLegend names={instrumentsOf(series, instruments)} instruments={instruments} />
+                  {layout.isCorrected && <CorrectionKeys />}
                   <LawKeys names={laws} />
                 </>
               }
@@ -184,25 +185,30 @@ export function SampleFigures(props: {
             </ReportFigure>
           );
         })}
-      {OTHER_KINDS.map((kind) => {
+      {OTHER_KINDS.flatMap((kind) => {
         const curves = sample.curves[kind];
-        if (!curves || curves.series.length === 0) return null;
-        const layout = layoutCurvePlot(curves, WIDTH);
-        return (
-          <ReportFigure
-            key={kind}
-            {...FIGURES[kind as keyof typeof FIGURES]}
-            height={layout.box.height}
-            legend={
-              <>
-                <InstrumentLegend names={instrumentsOf(curves.series, instruments)} instruments={instruments} />
-                <LawKeys names={curves.series.filter((s) => s.instrument === undefined).map((s) => s.name)} />
-              </>
-            }
-          >
-            <CurvePlot layout={layout} instruments={instruments} />
-          </ReportFigure>
-        );
+        if (!curves || curves.series.length === 0) return [];
+        const { title, caption } = FIGURES[kind as keyof typeof FIGURES];
+        return splitCurves(curves).map((part) => {
+          const layout = layoutCurvePlot(part.curves, WIDTH, units);
+          const name = [title, ...part.names].join(', ');
+          return (
+            <ReportFigure
+              key={name}
+              title={name}
+              caption={caption}
+              height={layout.box.height}
+              legend={
+                <>
+                  <InstrumentLegend names={instrumentsOf(part.curves.series, instruments)} instruments={instruments} />
+                  <LawKeys names={part.curves.series.filter((s) => s.instrument === undefined).map((s) => s.name)} />
+                </>
+              }
+            >
+              <CurvePlot layout={layout} instruments={instruments} />
+            </ReportFigure>
+          );
+        });
       })}
     </>
   );

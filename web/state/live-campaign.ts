@@ -2,7 +2,7 @@ import { loadParameters, loadTable, type TableRows } from '../client/campaigns.t
 import type { Status } from '../client/rows.ts';
 import { openLivePage } from './live-page.ts';
 
-export type Tables = { [Table in keyof TableRows]: TableRows[Table][] };
+export type Tables = { [Table in Exclude<keyof TableRows, 'verdicts' | 'forecasts'>]: TableRows[Table][] };
 
 /** What the map's margin shows of the parameters; a sample's other numbers are loaded where they are shown. */
 const HEADLINES = [
@@ -13,14 +13,15 @@ const HEADLINES = [
 
 export const openCampaign = (id: string) =>
   openLivePage(id, async (_: Status, signal): Promise<Tables> => {
-    const of = <Table extends keyof TableRows>(table: Table) => loadTable(id, table, {}, signal);
-    const [scans, coverage, gaps, flags, instruments, ...parameters] = await Promise.all([
+    const of = <Table extends keyof Tables>(table: Table) => loadTable(id, table, {}, signal);
+    const [scans, coverage, gaps, flags, instruments, advice, ...parameters] = await Promise.all([
       of('scans'),
       of('coverage'),
       of('gaps'),
       of('flags'),
       of('instruments'),
+      of('advice'),
       ...HEADLINES.map((filter) => loadParameters(id, filter, signal)),
     ]);
-    return { scans, coverage, gaps, flags, instruments, parameters: parameters.flat() };
+    return { scans, coverage, gaps, flags, instruments, advice, parameters: parameters.flat() };
   });

@@ -1,13 +1,24 @@
 import type { GapRow } from '../../schema/wire/campaign.ts';
+import type { AdviceRow, ForecastRow } from '../../schema/wire/forecasts.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
-import { loadCurves, loadParameters, loadTable } from '../client/campaigns.ts';
+import type { VerdictRow } from '../../schema/wire/verdicts.ts';
+import { loadCurves, loadParameters, loadSample, loadTable } from '../client/campaigns.ts';
 import { Problem } from '../client/request.ts';
-import type { FlagRow, InstrumentRow, ScanRow, Status, StatusSample } from '../client/rows.ts';
+import type { FlagRow, InstrumentRow, SampleView, ScanRow, Status, StatusSample } from '../client/rows.ts';
 import type { CurveKind, Curves } from '../model/curves.ts';
 import { openLivePage } from './live-page.ts';
 
 /** Kinds of curves the server gives of a sample. */
-const KINDS: CurveKind[] = ['thermogram', 'baseline', 'conversion', 'kissinger', 'energy'];
+const KINDS: CurveKind[] = [
+  'thermogram',
+  'baseline',
+  'conversion',
+  'kissinger',
+  'energy',
+  'growth',
+  'viscosity',
+  'ttt',
+];
 
 export interface SampleData {
   sample: StatusSample;
@@ -16,6 +27,11 @@ export interface SampleData {
   gaps: GapRow[];
   parameters: ParameterRow[];
   instruments: InstrumentRow[];
+  verdicts: VerdictRow[];
+  forecasts: ForecastRow[];
+  advice: AdviceRow[];
+  /** Every scan with its id, those without curves too */
+  listed: SampleView['scans'];
   curves: Partial<Record<CurveKind, Curves>>;
 }
 
@@ -32,14 +48,20 @@ export const openSample = (campaignId: string, name: string) =>
       );
     }
     const filter = { sample: sample.sample };
-    const [scans, flags, gaps, instruments, parameters, ...curves] = await Promise.all([
-      loadTable(campaignId, 'scans', filter, signal),
-      loadTable(campaignId, 'flags', filter, signal),
-      loadTable(campaignId, 'gaps', filter, signal),
-      loadTable(campaignId, 'instruments', {}, signal),
-      loadParameters(campaignId, filter, signal),
-      ...KINDS.map((kind) => loadCurves(sample.id, kind, signal)),
-    ]);
+    const [listed, scans, flags, gaps, verdicts, forecasts, advice, instruments, parameters, ...curves] =
+      await Promise.all([
+        loadSample(sample.id, signal),
+        loadTable(campaignId, 'scans', filter, signal),
+        loadTable(campaignId, 'flags', filter, signal),
+        loadTable(campaignId, 'gaps', filter, signal),
+        loadTable(campaignId, 'verdicts', filter, signal),
+        loadTable(campaignId, 'forecasts', filter, signal),
+        loadTable(campaignId, 'advice', filter, signal),
+        loadTable(campaignId, 'instruments', {}, signal),
+        loadParameters(campaignId, filter, signal),
+        ...KINDS.map((kind) => loadCurves(sample.id, kind, signal)),
+      ]);
     const byKind = Object.fromEntries(curves.map((c) => [c.kind, c]));
-    return { sample, scans, flags, gaps, instruments, parameters, curves: byKind };
+    const tables = { scans, flags, gaps, verdicts, forecasts, advice, instruments, parameters };
+    return { sample, listed: listed.scans, ...tables, curves: byKind };
   });

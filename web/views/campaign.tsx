@@ -72,7 +72,13 @@ export function CampaignView({ id }: { id: string }) {
       {tables && built && !isEmpty && (
         <>
           <Ledger campaign={campaign} rows={rows} instruments={instruments} unassigned={unassigned} />
-          <NextSteps campaign={campaign} flags={told.flags} gaps={told.gaps} isSettled={status?.settled ?? false} />
+          <NextSteps
+            campaign={campaign}
+            flags={told.flags}
+            gaps={told.gaps}
+            advice={tables.advice}
+            isSettled={status?.settled ?? false}
+          />
           <Numbers campaign={campaign} samples={numbered} revision={tables} />
           <InstrumentTable campaign={campaign} rows={tables.instruments} names={instruments} />
         </>

@@ -3,6 +3,7 @@ import { useCallback, useMemo, useRef } from 'preact/hooks';
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import { RateAxis } from '../charts/rate-axis.tsx';
 import { createRateScale } from '../charts/rate-scale.ts';
+import { AdvisedMark } from '../charts/rate-strip.tsx';
 import type { Campaign, ScanRow } from '../client/rows.ts';
 import { formatCount } from '../format.ts';
 import type { ActiveMark, LedgerRow } from '../model/ledger.ts';
@@ -21,7 +22,10 @@ function rateReach(rows: readonly LedgerRow[]): (number | null)[] {
   let high = 0;
   let isRated = true;
   for (const row of rows)
-    for (const { rateKPerS } of row.marks) {
+    for (const rateKPerS of [
+      ...row.marks.map((mark) => mark.rateKPerS),
+      ...(row.advisedKPerS ? [row.advisedKPerS] : []),
+    ]) {
       if (rateKPerS === null) isRated = false;
       else {
         low = Math.min(low, rateKPerS);
@@ -176,6 +180,14 @@ function Legend({ instruments, rows }: { instruments: readonly string[]; rows: r
         <li class="muted-key">
           <InstrumentKey instrument={0} look="struck" />
           set aside
+        </li>
+      )}
+      {rows.some((row) => row.advisedKPerS !== undefined) && (
+        <li>
+          <svg class="key" width="22" height="22" viewBox="-11 -11 22 22" aria-hidden="true">
+            <AdvisedMark x={0} y={0} />
+          </svg>
+          advised next
         </li>
       )}
       {isFlagged && (

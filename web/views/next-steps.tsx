@@ -1,5 +1,6 @@
 import { useSignal } from '@preact/signals';
 import type { GapRow } from '../../schema/wire/campaign.ts';
+import type { AdviceRow } from '../../schema/wire/forecasts.ts';
 import { SeverityGlyph } from '../charts/state-glyph.tsx';
 import type { Campaign, FlagRow } from '../client/rows.ts';
 import { type FlagGroup, groupFlags, groupGaps } from '../model/next-steps.ts';
@@ -19,16 +20,17 @@ export function NextSteps(props: {
   sample?: string;
   flags: readonly FlagRow[];
   gaps: readonly GapRow[];
+  advice: readonly AdviceRow[];
   isSettled: boolean;
 }) {
-  const { campaign, sample, flags, gaps, isSettled } = props;
+  const { campaign, sample, flags, gaps, advice, isSettled } = props;
   const { stop, warn, note } = groupFlags(flags, gaps);
   const isClear = stop.length + warn.length + gaps.length === 0;
   return (
     <section class="next-steps" aria-labelledby="next-title">
       <div class="section-head">
         <h2 id="next-title">What to do next</h2>
-        <Downloads campaign={campaign} tables={['flags', 'gaps']} sample={sample} />
+        <Downloads campaign={campaign} tables={['flags', 'gaps', 'advice']} sample={sample} />
       </div>
       {isSettled && isClear && <p class="waiting">Nothing is missing and nothing was flagged.</p>}
       {!isSettled && (
@@ -40,6 +42,7 @@ export function NextSteps(props: {
       <div class="step-columns">
         <Steps severity="stop" title="Stops a result" groups={stop} />
         {gaps.length > 0 && <Gaps gaps={gaps} />}
+        {advice.length > 0 && <Advice advice={advice} />}
         <Steps severity="warn" title="Look at" groups={warn} />
         <Steps severity="note" title="Good to know" groups={note} />
       </div>
@@ -97,6 +100,26 @@ function Places({ flags, opensAtOnce }: { flags: readonly FlagRow[]; opensAtOnce
 
 const placeOf = (flag: FlagRow): string =>
   flag.file ?? ([flag.sample, flag.instrument].filter(Boolean).join(', ') || 'campaign');
+
+/** The scan of each sample that would narrow an interval most. */
+function Advice({ advice }: { advice: readonly AdviceRow[] }) {
+  const first = advice.filter(({ rank }) => rank === 1);
+  return (
+    <div class="steps steps-gap">
+      <h3>
+        <SeverityGlyph severity="gap" />
+        Would tell most
+      </h3>
+      <ul class="step-places">
+        {first.slice(0, PLACES_SHOWN).map((row) => (
+          <li key={`${row.sample} ${row.event} ${row.goal}`} class="step-place">
+            <span class="place">{row.sample}</span> {row.sentence}
+          </li>
+        ))}
+      </ul>
+    </div>
+  );
+}
 
 function Gaps({ gaps }: { gaps: readonly GapRow[] }) {
   return (

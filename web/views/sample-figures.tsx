@@ -2,13 +2,13 @@ import { type Signal, useSignal } from '@preact/signals';
 import { useMemo } from 'preact/hooks';
 import { ConversionPlot, type CurveLayout, layoutConversion } from '../charts/conversion-plot.tsx';
 import { linePath } from '../charts/curve-path.ts';
-import { CurvePlot, LawKeys, layoutCurvePlot } from '../charts/curve-plot.tsx';
+import { CorrectionKeys, CurvePlot, LawKeys, lawName, layoutCurvePlot } from '../charts/curve-plot.tsx';
 import { EnergyPanels, layoutEnergy } from '../charts/energy-panels.tsx';
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import { KissingerPlot, layoutKissinger } from '../charts/kissinger-plot.tsx';
 import { layoutScanPlot, ScanPlot } from '../charts/scan-plot.tsx';
 import { FIGURES } from '../model/captions.ts';
-import { type CurveSeries, type Curves, curvesByEvent, type ScanLane } from '../model/curves.ts';
+import { type CurveSeries, type Curves, curvesByEvent, type ScanLane, splitCurves } from '../model/curves.ts';
 import { units } from '../state/units.ts';
 import { Figure } from './figure.tsx';
 import { describeLane } from './lanes.tsx';
@@ -116,7 +116,7 @@ export function KissingerFigures({ curves, of, instruments }: FigureProps) {
     <>
       {events.map(({ event, series }) => {
         const name = events.length > 1 ? `${title}, event ${event}` : title;
-        const laws = series.filter((s) => s.instrument === undefined);
+        const { laws, isCorrected } = layoutKissinger(series, 600, units.value);
         return (
           <Figure
             key={event}
@@ -127,7 +127,8 @@ export function KissingerFigures({ curves, of, instruments }: FigureProps) {
             legend={
               <>
                 <InstrumentKeys of={series} instruments={instruments} />
-                <LawKeys names={laws.map((law) => (law.rest === 'fit' ? 'one straight line' : law.rest))} />
+                {isCorrected && <CorrectionKeys />}
+                <LawKeys names={laws.map(lawName)} />
               </>
             }
             draw={(width) => {
@@ -183,30 +184,38 @@ export function EnergyFigures({ curves, of }: Omit<FigureProps, 'instruments'>) 
   );
 }
 
-/** Growth rate, viscosity, times of transformation: whatever else the server gives. */
-export function OtherFigure({ curves, of, instruments }: FigureProps) {
+/** Growth rate, viscosity, times of transformation: whatever else the server gives, a figure an event and method. */
+export function OtherFigures({ curves, of, instruments }: FigureProps) {
   const { title, caption } = FIGURES[curves.kind as keyof typeof FIGURES];
   return (
-    <Figure
-      title={title}
-      of={of}
-      curves={curves}
-      caption={caption}
-      legend={
-        <>
-          <InstrumentKeys of={curves.series} instruments={instruments} />
-          <LawKeys names={curves.series.filter((s) => s.instrument === undefined).map((s) => s.name)} />
-        </>
-      }
-      draw={(width) => {
-        const layout = layoutCurvePlot(curves, width);
+    <>
+      {splitCurves(curves).map((part) => {
+        const name = [title, ...part.names].join(', ');
         return (
-          <svg class="plot-svg" width={layout.box.width} height={layout.box.height} role="img" aria-label={title}>
-            <CurvePlot layout={layout} instruments={instruments} />
-          </svg>
+          <Figure
+            key={name}
+            title={name}
+            of={of}
+            curves={part.curves}
+            caption={caption}
+            legend={
+              <>
+                <InstrumentKeys of={part.curves.series} instruments={instruments} />
+                <LawKeys names={part.curves.series.filter((s) => s.instrument === undefined).map((s) => s.name)} />
+              </>
+            }
+            draw={(width) => {
+              const layout = layoutCurvePlot(part.curves, width, units.value);
+              return (
+                <svg class="plot-svg" width={layout.box.width} height={layout.box.height} role="img" aria-label={name}>
+                  <CurvePlot layout={layout} instruments={instruments} />
+                </svg>
+              );
+            }}
+          />
         );
-      }}
-    />
+      })}
+    </>
   );
 }
 

@@ -7,12 +7,14 @@ import { FIGURES } from '../model/captions.ts';
 import { buildLanes, type CurveKind } from '../model/curves.ts';
 import { numbersBySample } from '../model/headline.ts';
 import { tellableNow } from '../model/next-steps.ts';
+import { describeVerdict } from '../model/verdict.ts';
 import { samplePath } from '../routes.ts';
 import { openSample } from '../state/live-sample.ts';
 import { units } from '../state/units.ts';
 import { SAMPLE_STATE_NAMES, verdictName } from '../words.ts';
 import { Downloads } from './download.tsx';
 import { Figure } from './figure.tsx';
+import { Forecasts } from './forecasts.tsx';
 import { Lanes } from './lanes.tsx';
 import { NextSteps } from './next-steps.tsx';
 import { ProblemNotice } from './notice.tsx';
@@ -23,7 +25,7 @@ import {
   EnergyFigures,
   InstrumentKeys,
   KissingerFigures,
-  OtherFigure,
+  OtherFigures,
   ScanFigure,
 } from './sample-figures.tsx';
 import { ScanTable } from './scan-table.tsx';
@@ -96,6 +98,12 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
           {sample.verdict && <span class="verdict">{verdictName(sample.verdict)}</span>}
           {sample.reason && <span class="entry-reason">{sample.reason}</span>}
         </p>
+        {data.verdicts.map((verdict) => (
+          <p key={verdict.event} class="verdict-words">
+            {data.verdicts.length > 1 && `Event ${verdict.event}: `}
+            {describeVerdict(verdict, units.value)}
+          </p>
+        ))}
       </PageHead>
       {problem && <ProblemNotice problem={problem} />}
       <section class="figures" aria-labelledby="curves-title">
@@ -135,14 +143,14 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
         {OTHER_KINDS.map((kind) => {
           const other = curves[kind];
           return other && other.series.length > 0 ? (
-            <OtherFigure key={kind} curves={other} of={of} instruments={instruments} />
+            <OtherFigures key={kind} curves={other} of={of} instruments={instruments} />
           ) : null;
         })}
       </section>
       <section class="numbers" aria-labelledby="numbers-title">
         <div class="section-head">
           <h2 id="numbers-title">Numbers</h2>
-          <Downloads campaign={campaign} tables={['parameters']} sample={sample.sample} />
+          <Downloads campaign={campaign} tables={['parameters', 'verdicts']} sample={sample.sample} />
         </div>
         {numbers.length === 0 ? (
           <p class="waiting">Nothing is fitted yet. A fit needs three distinct heating rates.</p>
@@ -161,11 +169,15 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
           </div>
         )}
       </section>
+      {(sample.state === 'fitted' || data.forecasts.length > 0) && (
+        <Forecasts campaign={campaign} sample={sample} rows={data.forecasts} />
+      )}
       <NextSteps
         campaign={campaign}
         sample={sample.sample}
         flags={told.flags}
         gaps={told.gaps}
+        advice={data.advice}
         isSettled={live.status.value?.settled ?? false}
       />
       <ScanTable
