@@ -57,7 +57,7 @@ export function analyseSegment(
   if (segment.kind === 'hold') return reduceHold(c, segment, before, bells);
   // A step before the event makes its rough left half width come out too large.
   const first = bells[0] && { ...bells[0], leftS: Math.min(bells[0].leftS, MOST_LEFT * bells[0].rightS) };
-  const glassEnd = first ? lowerBound(timeS, first.peakS - GLASS_BEFORE * first.leftS) : segment.to;
+  const glassEnd = first ? lowerBound(timeS, first.peakS - GLASS_BEFORE * first.leftS) : endOfRamp(c, segment);
   const glass =
     segment.kind === 'heating' ? findGlassTransition(timeS, c.y, segment.from, glassEnd, c.noise, first) : undefined;
   const limits = limitsOf(c, segment);
@@ -98,6 +98,16 @@ export function analyseSegment(
     ...(glass && { glass: { midpointK: trueK(glass.midpointS), onsetK: trueK(glass.onsetS) } }),
     ...(meltingS !== undefined && { meltingOnsetK: trueK(meltingS) }),
   };
+}
+
+/** The last rows of a segment may belong to what follows: they are left out where no event says where to stop. */
+const LAST_PART = 0.02;
+
+function endOfRamp(c: ScanContext, { from, to, startK, endK }: Segment): number {
+  const lastK = endK - LAST_PART * (endK - startK);
+  let end = to;
+  while (end > from && c.scan.temperatureK[end - 1] > lastK) end--;
+  return end;
 }
 
 /** Whole area of the event, W s or J/kg, where enthalpy (and mass) say it. */

@@ -33,13 +33,42 @@ export const MOST_LEFT = 1.6;
 const BEFORE_WIDTHS = 4;
 const BEHIND_WIDTHS = 6;
 
+/** Parts of the rows left out at the start, one after the other: a furnace settles there, which looks like a step or bends the baseline. */
+const START_PARTS = [0.08, 0.2];
+/** A step that begins before this part of the rows may be the start of the ramp, and gives way to a clear one behind it. */
+const NEAR_START = 0.1;
+
+/**
+ * The glass transition in rows [from, to). Where the clearest step lies at the start, or smears over much of the rows because of it, it is
+ * looked for without the start as well.
+ */
+export function findGlassTransition(
+  t: Float64Array,
+  y: Float64Array,
+  from: number,
+  to: number,
+  noise: number,
+  foot?: Foot,
+): GlassTransition | undefined {
+  const first = findStep(t, y, from, to, noise, foot);
+  // Where all rows show no step, or one well inside, there is no more to look for.
+  if (!first || first.fromS > t[from] + NEAR_START * (t[to - 1] - t[from])) return first;
+  let best: GlassTransition | undefined;
+  for (const part of START_PARTS) {
+    const start = from + Math.round(part * (to - from));
+    const found = findStep(t, y, start, to, noise, foot);
+    if (found && found.fromS > t[start] && found.significance > (best?.significance ?? 0)) best = found;
+  }
+  return best ?? first;
+}
+
 /**
  * Looks for one endothermic step in rows [from, to) by least squares: quadratic baseline + step × logistic((t − midpoint)/width), the
  * foot of the event behind it with free height. Midpoint and width are searched, the rest is linear.
  * @param y heat flow, exotherm up   @param noise of one row   @param foot of the event that follows, if one does
  * @returns undefined where a smooth drift explains the rows as well
  */
-export function findGlassTransition(
+function findStep(
   t: Float64Array,
   y: Float64Array,
   from: number,

@@ -5,6 +5,7 @@ import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
 import { analyseSegment, findEvents } from './analyse-segment.ts';
 import { chooseSegments } from './choose-segments.ts';
 import { findDirection } from './direction.ts';
+import type { Excursion } from './find-event.ts';
 import { subtractReference } from './reference.ts';
 import { createContext, type ScanContext } from './scan-context.ts';
 import { findSegments } from './segments.ts';
@@ -79,13 +80,8 @@ export function reduceScan(scan: ReadScan, input: ReduceInput): ReduceOutcome {
 
 function reduceChosen(c: ScanContext, segments: Segment[], candidates: Segment[]): ReducedScan {
   const { scan, y, flags, input } = c;
-  let segment = candidates[0];
-  let excursions = findEvents(c, segment);
-  const shown = candidates.find((s) => {
-    const seen = s === segment ? excursions : findEvents(c, s);
-    if (seen.length > 0) [segment, excursions] = [s, seen];
-    return seen.length > 0;
-  });
+  const { segment, excursions } = pickSegment(c, candidates);
+  const shown = excursions.length > 0;
   const found = analyseSegment(c, segment, segments[segment.segment - 2], excursions);
   if (!shown) {
     flags.push(
@@ -128,6 +124,26 @@ function reduceChosen(c: ScanContext, segments: Segment[], candidates: Segment[]
     trace,
     flags,
   };
+}
+
+/** A heating segment is passed over where its strongest exotherm is lower than this part of another one's: the kick of a start, say. */
+const LEAST_OF_SEGMENTS = 0.1;
+
+/** The first heating segment with an exotherm worth the name, else the first hold with one, else the widest heating. */
+function pickSegment(c: ScanContext, candidates: Segment[]): { segment: Segment; excursions: Excursion[] } {
+  const heights = (x: Excursion[]) => x.map((e) => e.prominence);
+  const ramps = candidates
+    .filter((s) => s.kind !== 'hold')
+    .map((segment) => ({ segment, excursions: findEvents(c, segment) }));
+  const highest = Math.max(0, ...ramps.flatMap((r) => heights(r.excursions)));
+  const ramp = ramps.find((r) => highest > 0 && Math.max(0, ...heights(r.excursions)) >= LEAST_OF_SEGMENTS * highest);
+  if (ramp) return ramp;
+  for (const segment of candidates.filter((s) => s.kind === 'hold')) {
+    const excursions = findEvents(c, segment);
+    if (excursions.length > 0) return { segment, excursions };
+  }
+  const span = (s: Segment) => Math.abs(s.endK - s.startK);
+  return { segment: candidates.reduce((widest, s) => (span(s) > span(widest) ? s : widest)), excursions: [] };
 }
 
 /** Mass as heat ÷ reference enthalpy where none was given (METHODS 3: an estimate; kinetics never needs it). Tells the user either way. */
