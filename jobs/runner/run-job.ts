@@ -1,8 +1,8 @@
 import type { JobEvent, Observer, Ports } from '../ports/index.ts';
-import { type ColumnsCache, DerivedLost, failStep, runStep } from '../steps/index.ts';
+import { type ColumnsCache, failStep, runStep } from '../steps/index.ts';
 import { LateWorker } from '../store/fence.ts';
 import { type ClaimedJob, postponeJob } from '../store/leases.ts';
-import { reduceAgain } from '../store/lost-blobs.ts';
+import { ReducedLost, reduceAgain } from '../store/lost-blobs.ts';
 import { isStoreTrouble } from '../store/trouble.ts';
 
 /** What became of one attempt. */
@@ -37,7 +37,7 @@ export async function runJob(ports: Ports, job: ClaimedJob, cache: ColumnsCache,
         await postponeJob(ports, job, error instanceof Error ? error.message : String(error));
         return tell('postponed', error);
       }
-      if (error instanceof DerivedLost) await reduceAgain(ports, job.campaignId, error.key);
+      if (error instanceof ReducedLost) await reduceAgain(ports, job.campaignId, error.key);
       await failStep(ports, job, error);
       return tell('failed', error);
     } catch (second) {

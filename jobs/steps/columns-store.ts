@@ -42,14 +42,6 @@ export class ColumnsCache {
 
 const sizeOf = (scan: ReadScan) => 3 * scan.timeS.byteLength;
 
-/** A derived blob that a stored row names is missing or damaged: it has to be made again. */
-export class DerivedLost extends Error {
-  constructor(readonly key: string) {
-    super(`the blob ${key} is missing or damaged and is made again`);
-    this.name = 'DerivedLost';
-  }
-}
-
 /** A derived blob, or undefined where it is missing or damaged: it is then made again from its inputs. */
 export async function readDerived<T>(
   ports: Ports,

@@ -17,7 +17,7 @@ import { readSheetFile } from './read-sheet.ts';
 import { reduceStoredScan } from './reduce-scan.ts';
 import { unpackArchiveFile } from './unpack-archive.ts';
 
-export { ColumnsCache, DerivedLost } from './columns-store.ts';
+export { ColumnsCache } from './columns-store.ts';
 
 const STEPS: Record<Step, (ports: Ports, job: ClaimedJob, cache: ColumnsCache) => Promise<void>> = {
   'read-sheet': readSheetFile,

@@ -1,10 +1,10 @@
 import type { FitScan } from '../../schema/wire/parameters.ts';
 import type { ReducedEvent } from '../../schema/wire/reduced.ts';
-import { decodeReduceOutcome } from '../../schema/wire/reduced-blob.ts';
 import type { Ports } from '../ports/index.ts';
 import { matchEvents } from '../reduction/index.ts';
 import { type FitRows, type FitScanRow, loadFit, type PeakRow, type ScanEventNumbers } from '../store/fit-rows.ts';
 import { hashOf } from '../store/ids.ts';
+import { readReduced } from '../store/lost-blobs.ts';
 import { compareText } from './assign-scans.ts';
 import { FIT_DRAWS, STEP_VERSIONS } from './settings.ts';
 
@@ -57,7 +57,7 @@ export async function loadFitScans(
 ): Promise<{ scans: FitScan[]; eventNumbers: ScanEventNumbers[] }> {
   const reduced = await Promise.all(
     rows.scans.map(async ({ path, reducedKey }) => {
-      const outcome = decodeReduceOutcome(await ports.blobs.bytes(reducedKey));
+      const outcome = await readReduced(ports, reducedKey);
       if (outcome.ok) return outcome.reduced;
       throw new Error(`${path} counts as reduced, but blob ${reducedKey} holds a refusal: ${outcome.reason}`);
     }),

@@ -1,11 +1,11 @@
 import { and, asc, eq, sql } from 'drizzle-orm';
 import { campaigns, files, samples, scans } from '../../schema/tables/index.ts';
 import type { ReducedScan } from '../../schema/wire/reduced.ts';
-import { decodeReduceOutcome } from '../../schema/wire/reduced-blob.ts';
 import type { SampleState } from '../../schema/wire/states.ts';
 import type { Ports } from '../ports/index.ts';
 import { LOCAL_LAB } from './campaigns.ts';
 import { type Corrections, standingCorrections } from './correction-rows.ts';
+import { readReducedOrRevive } from './lost-blobs.ts';
 import type { ResultRow } from './tables/index.ts';
 import { loadScanRecords, scanRowsOf } from './tables/scan-table.ts';
 
@@ -45,12 +45,12 @@ export async function findScan(ports: Ports, scanId: string, lab = LOCAL_LAB): P
 /** The reduced curves of a scan, its events numbered over all scans of the sample, or undefined when it has none. */
 export async function readReducedScan(ports: Ports, scanId: string): Promise<ReducedScan | undefined> {
   const [scan] = await ports.database.read
-    .select({ key: scans.reducedKey, numbers: scans.eventNumbers })
+    .select({ campaignId: scans.campaignId, key: scans.reducedKey, numbers: scans.eventNumbers })
     .from(scans)
     .where(and(eq(scans.id, scanId), eq(scans.status, 'reduced')));
   if (!scan?.key) return undefined;
-  const outcome = decodeReduceOutcome(await ports.blobs.bytes(scan.key));
-  if (!outcome.ok) return undefined;
+  const outcome = await readReducedOrRevive(ports, scan.campaignId, scan.key);
+  if (!outcome?.ok) return undefined;
   const { events, ...others } = outcome.reduced;
   return { ...others, events: events.map((event, i) => ({ ...event, event: scan.numbers?.[i] ?? event.event })) };
 }

@@ -1,19 +1,19 @@
 import { CONVERSION_GRID } from '../../../schema/wire/reduced.ts';
-import { decodeReduceOutcome } from '../../../schema/wire/reduced-blob.ts';
 import type { Ports } from '../../ports/index.ts';
+import { readReducedOrRevive } from '../lost-blobs.ts';
 import type { ResultRow } from './result-row.ts';
 import { eventNumberOf, loadScanRecords } from './scan-table.ts';
 
 /** The reduced curves on the conversion grid, in the order of scans.csv; one scan's blob is in memory at a time. */
 export async function* readConversionTable(
-  ports: Pick<Ports, 'database' | 'blobs'>,
+  ports: Ports,
   campaignId: string,
   sample?: string,
 ): AsyncGenerator<ResultRow> {
   for (const scan of await loadScanRecords(ports, { campaignId, sample })) {
     if (scan.status !== 'reduced' || scan.reducedKey === null) continue;
-    const outcome = decodeReduceOutcome(await ports.blobs.bytes(scan.reducedKey));
-    if (!outcome.ok) continue;
+    const outcome = await readReducedOrRevive(ports, campaignId, scan.reducedKey);
+    if (!outcome?.ok) continue;
     const { segment, events } = outcome.reduced;
     for (const { event, curve } of events) {
       if (!curve) continue;

@@ -14,7 +14,7 @@ export type { ResultRow, TableFilter } from './result-row.ts';
  * `conversion` reads the stored curves one scan at a time.
  */
 export async function* readTable(
-  ports: Pick<Ports, 'database' | 'blobs'>,
+  ports: Ports,
   campaignId: string,
   table: ResultTable,
   filter: TableFilter = {},
@@ -31,7 +31,7 @@ export async function* readTable(
 
 /** A table as the result files have it, of what is there now: scans of files that were replaced or are gone are left out. */
 export async function* readCurrentTable(
-  ports: Pick<Ports, 'database' | 'blobs'>,
+  ports: Ports,
   campaignId: string,
   table: ResultTable,
 ): AsyncGenerator<ResultRow> {
@@ -40,7 +40,7 @@ export async function* readCurrentTable(
 }
 
 async function rowsOf(
-  ports: Pick<Ports, 'database' | 'blobs'>,
+  ports: Ports,
   campaignId: string,
   table: ResultTable,
   filter: TableFilter,
