@@ -1,16 +1,13 @@
 import { spawn } from 'node:child_process';
 import { existsSync } from 'node:fs';
-import { cp, mkdir, mkdtemp, readdir, rm } from 'node:fs/promises';
+import { mkdir, mkdtemp, readdir, rm } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { fileURLToPath } from 'node:url';
 import { sql } from 'drizzle-orm';
-import { build } from 'esbuild';
 import { LEASE_MS } from '../../jobs/store/leases.ts';
 import { allTables, drain, openTestPortsIn, type TestPorts } from '../runner/test-ports.ts';
+import { bundleChild } from './bundle-child.ts';
 import { takeInCampaign } from './fault-campaign.ts';
-
-const ROOT = fileURLToPath(new URL('../..', import.meta.url));
 
 export interface CrashSweep {
   /** Kill points tried. */
@@ -28,14 +25,14 @@ export interface CrashSweep {
  */
 export async function sweepCrashes({ every, from = 1 }: { every: number; from?: number }): Promise<CrashSweep> {
   const work = await mkdtemp(join(tmpdir(), 'ratespan-crash-'));
+  const child = await bundleChild('mortal-child.ts');
   try {
-    const child = await bundleChild(work);
     const expected = await runWhole(join(work, 'whole'));
     const wrong: string[] = [];
     for (let killAt = from, tried = 0; ; killAt += every) {
       const folder = join(work, `kill-${killAt}`);
       await mkdir(folder);
-      const { survived, said } = await runChild(child, folder, killAt);
+      const { survived, said } = await runChild(child.file, folder, killAt);
       wrong.push(...(await checkAfter(folder, expected)).map((what) => `write ${killAt}: ${what}`));
       await rm(folder, { recursive: true, force: true });
       if (survived) return { tried, writes: Number(said), wrong };
@@ -43,24 +40,8 @@ export async function sweepCrashes({ every, from = 1 }: { every: number; from?: 
     }
   } finally {
     await rm(work, { recursive: true, force: true });
-    await rm(join(ROOT, 'node_modules/.cache/ratespan-fault'), { recursive: true, force: true });
+    await child.remove();
   }
-}
-
-/** The child as one file, so that it starts quickly; it lies within the project, where its packages are found. */
-async function bundleChild(work: string): Promise<string> {
-  const outfile = join(ROOT, 'node_modules/.cache/ratespan-fault', `${work.split('-').at(-1)}`, 'mortal-child.mjs');
-  await build({
-    entryPoints: [join(ROOT, 'test/fault/mortal-child.ts')],
-    bundle: true,
-    platform: 'node',
-    format: 'esm',
-    target: 'node20',
-    packages: 'external',
-    outfile,
-  });
-  await cp(join(ROOT, 'schema/migrations'), join(outfile, '../../schema/migrations'), { recursive: true });
-  return outfile;
 }
 
 function runChild(file: string, folder: string, killAt: number): Promise<{ survived: boolean; said: string }> {
