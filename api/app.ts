@@ -12,6 +12,7 @@ import { Problem, type ProblemCode, problemResponse } from './problems.ts';
 import { addCampaignRoutes } from './routes/campaigns.ts';
 import { addDocumentRoutes } from './routes/documents.ts';
 import { addFileRoutes } from './routes/files.ts';
+import { addInstrumentRoutes } from './routes/instruments.ts';
 import { addJobRoutes } from './routes/jobs.ts';
 import { addResultRoutes } from './routes/results.ts';
 import { addSampleRoutes } from './routes/samples.ts';
@@ -90,6 +91,7 @@ export function createApp(ports: Ports, options: AppOptions): ApiApp {
   addResultRoutes(app, ports);
   addSampleRoutes(app, ports);
   addScanRoutes(app, ports);
+  addInstrumentRoutes(app, ports);
   addJobRoutes(app, ports);
   addDocumentRoutes(app, ports, observer);
   app.onError((error, c) => problemResponse(problemOf(error, c.get('requestId'), observer)));

@@ -6,6 +6,7 @@ import {
   createCampaign,
   deleteCampaign,
   listCampaigns,
+  listInstruments,
   refitCampaign,
   renameCampaign,
   setGoals,
@@ -131,7 +132,14 @@ export function addCampaignRoutes(app: ApiApp, ports: Ports): void {
     return c.json(pageOf(campaigns, limit, shapeOf), 200);
   });
 
-  app.openapi(getRoute, async (c) => c.json(shapeOf(await requireCampaign(c, ports, c.req.valid('param').id)), 200));
+  app.openapi(getRoute, async (c) => {
+    const campaign = await requireCampaign(c, ports, c.req.valid('param').id);
+    const instruments = await listInstruments(ports, campaign.id);
+    return c.json(
+      { ...shapeOf(campaign), instruments: instruments.map(({ id, instrument }) => ({ id, instrument })) },
+      200,
+    );
+  });
 
   app.openapi(renameRoute, async (c) => {
     const { id } = await requireCampaign(c, ports, c.req.valid('param').id);

@@ -10,6 +10,10 @@ export const CampaignShape = z
     id: z.string(),
     name: z.string(),
     created_at: time,
+    instruments: z
+      .array(z.object({ id: z.string(), instrument: z.string() }))
+      .optional()
+      .openapi({ description: 'Only where one campaign is asked for.' }),
     revision: count.openapi({ description: 'Grows with every change of anything that the campaign shows.' }),
   })
   .openapi('Campaign');

@@ -16,25 +16,25 @@ export type CurveKind = (typeof CURVE_KINDS)[number];
 /** Points of one curve at most. */
 export const CURVE_POINTS = 2000;
 
-const axis = z.object({ quantity: z.string(), unit: z.string() });
+export const axisShape = z.object({ quantity: z.string(), unit: z.string() });
 const points = z.array(z.number()).max(CURVE_POINTS);
+
+export const seriesShape = z.object({
+  name: z.string(),
+  instrument: z.string().optional(),
+  scan_id: z.string().optional(),
+  x: points,
+  y: points,
+  lower: points.optional(),
+  upper: points.optional(),
+});
 
 export const CurvesShape = z
   .object({
     kind: z.enum(CURVE_KINDS),
-    x: axis,
-    y: axis,
-    series: z.array(
-      z.object({
-        name: z.string(),
-        instrument: z.string().optional(),
-        scan_id: z.string().optional(),
-        x: points,
-        y: points,
-        lower: points.optional(),
-        upper: points.optional(),
-      }),
-    ),
+    x: axisShape,
+    y: axisShape,
+    series: z.array(seriesShape),
   })
   .openapi('Curves');
 export type Curves = z.infer<typeof CurvesShape>;

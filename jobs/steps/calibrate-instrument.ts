@@ -31,7 +31,7 @@ export async function calibrateInstrument(ports: Ports, job: ClaimedJob): Promis
 }
 
 /** What a scan of a standard says of its instrument, with what is known of the substance: samples.csv before the built-in list. */
-function observationOf(
+export function observationOf(
   { path, sample, massKg, result, sampleRow }: StandardScan,
   instrument: string,
   flags: Flag[],

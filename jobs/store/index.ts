@@ -39,9 +39,12 @@ export {
 export { isStoreTrouble } from './trouble.ts';
 export {
   checkStores,
+  findInstrument,
   findSample,
   findScan,
+  type InstrumentView,
   listInputs,
+  listInstruments,
   listSamples,
   readReducedScan,
   type SampleView,

@@ -1,5 +1,5 @@
 import { and, asc, eq, sql } from 'drizzle-orm';
-import { campaigns, files, samples, scans } from '../../schema/tables/index.ts';
+import { campaigns, files, instruments, samples, scans } from '../../schema/tables/index.ts';
 import type { ReducedScan } from '../../schema/wire/reduced.ts';
 import type { SampleState } from '../../schema/wire/states.ts';
 import type { Ports } from '../ports/index.ts';
@@ -104,3 +104,33 @@ export function listInputs(ports: Ports, campaignId: string): Promise<{ file: st
     .where(and(eq(files.campaignId, campaignId), eq(files.superseded, false)))
     .orderBy(asc(files.path));
 }
+
+export interface InstrumentView {
+  id: string;
+  campaignId: string;
+  instrument: string;
+}
+
+const INSTRUMENT_VIEW = { id: instruments.id, campaignId: instruments.campaignId, instrument: instruments.instrument };
+
+/** One instrument within a lab, or undefined. */
+export async function findInstrument(
+  ports: Ports,
+  instrumentId: string,
+  lab = LOCAL_LAB,
+): Promise<InstrumentView | undefined> {
+  const [row] = await ports.database.read
+    .select(INSTRUMENT_VIEW)
+    .from(instruments)
+    .innerJoin(campaigns, eq(campaigns.id, instruments.campaignId))
+    .where(and(eq(instruments.id, instrumentId), eq(campaigns.lab, lab)));
+  return row;
+}
+
+/** Instruments of a campaign by name. */
+export const listInstruments = (ports: Ports, campaignId: string): Promise<InstrumentView[]> =>
+  ports.database.read
+    .select(INSTRUMENT_VIEW)
+    .from(instruments)
+    .where(eq(instruments.campaignId, campaignId))
+    .orderBy(asc(instruments.instrument));

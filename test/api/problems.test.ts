@@ -63,7 +63,7 @@ describe('problems', () => {
   });
   test('a body with a field that is not known', async () => {
     const response = await post('{"name":"a","colour":"red"}');
-    await expectProblem(response, 'invalid-input', /^body: «colour» is not known; known: name$/, 'colour');
+    await expectProblem(response, 'invalid-input', /^body: «colour» is not known; known: name, goals$/, 'colour');
   });
   test.each([
     ['{}', /name is missing; allowed: text of 1 to 80 characters/],

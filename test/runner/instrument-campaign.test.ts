@@ -5,7 +5,8 @@ import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { closePorts, openNodePorts } from '../../jobs/adapters/node-ports.ts';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { createRunner } from '../../jobs/runner/index.ts';
-import { correctScan, createCampaign, listSampleScans, receiveFile } from '../../jobs/store/index.ts';
+import { answerCalibration } from '../../jobs/steps/answer-calibration.ts';
+import { correctScan, createCampaign, listInstruments, listSampleScans, receiveFile } from '../../jobs/store/index.ts';
 import {
   arrheniusLawWithPeak,
   buildCampaign,
@@ -106,6 +107,12 @@ describe('an oven known by its standards alone', () => {
     expect(Math.abs((oven.lag_s as number) / OVEN.shiftS - 1)).toBeLessThan(0.05);
     expect(Math.abs((oven.heat_factor as number) - 1)).toBeLessThan(0.03);
     expect((await table('gaps')).map((row) => row.code)).not.toContain('no-standard');
+    const [{ id }] = await listInstruments(ports, campaign);
+    const { standards } = (await answerCalibration(ports, id))!;
+    expect(standards.map(({ sample }) => sample).sort()).toEqual([...Array(5).fill('In'), ...Array(5).fill('Zn')]);
+    // Every onset is late by offset + lag × rate, as put in.
+    for (const { rateKPerS, lateK } of standards)
+      expect(Math.abs(lateK - OVEN.offsetK - OVEN.shiftS * rateKPerS)).toBeLessThan(0.25);
   });
 
   it('gives the energy and the exponent of the sample', async () => {
