@@ -3,6 +3,7 @@ import { join } from 'node:path';
 import type { Browser, Page } from 'playwright-core';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { buildDemoCampaign } from '../../jobs/simulate/index.ts';
+import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import { RESULT_TABLES } from '../../schema/wire/result-tables.ts';
 import { findBarriers } from './check-access.ts';
 import { findChromium, openBrowser } from './open-browser.ts';
@@ -230,6 +231,62 @@ describe.skipIf(!executable)('a campaign on the page', () => {
     expect(shares.light).toBeGreaterThan(0.7);
     expect(shares.inked).toBeGreaterThan(0.005);
   });
+
+  test('limits moved by keyboard are taken, the sample is fitted again and the change is on record', async () => {
+    const scan = page.locator('.scan-panel');
+    const lower = page.getByRole('slider', { name: 'Lower limit of the event' });
+    const before = Number(await lower.getAttribute('aria-valuenow'));
+    await lower.focus();
+    for (let i = 0; i < 3; i++) await page.keyboard.press('Shift+ArrowLeft');
+    expect(Number(await lower.getAttribute('aria-valuenow'))).toBeCloseTo(before - 3, 1);
+    await scan.getByRole('button', { name: 'Apply' }).press('Enter');
+    await scan.getByText('computed again').waitFor();
+    await page.getByText('fitted', { exact: true }).waitFor({ timeout: SETTLE_MS });
+    await scan.getByText('Limits set by hand').waitFor();
+    await scan.getByText('What was corrected before').click();
+    await scan.getByText(/limits K: nothing → [\d.]+ to [\d.]+, by hand/).waitFor();
+    await expect
+      .poll(async () => Number(await lower.getAttribute('aria-valuenow')), { timeout: 30_000 })
+      .toBeLessThan(before - 1);
+  }, 150_000);
+
+  test('limits are dragged by pointer, and put back', async () => {
+    const upper = page.getByRole('slider', { name: 'Upper limit of the event' });
+    const before = Number(await upper.getAttribute('aria-valuenow'));
+    const box = await upper.boundingBox();
+    if (!box) throw new Error('the handle is not drawn');
+    await page.mouse.move(box.x + box.width / 2, box.y + 40);
+    await page.mouse.down();
+    await page.mouse.move(box.x + box.width / 2 + 20, box.y + 40, { steps: 4 });
+    await page.mouse.up();
+    expect(Number(await upper.getAttribute('aria-valuenow'))).toBeGreaterThan(before + 1);
+    await page.getByRole('button', { name: 'Put the limits back' }).click();
+    expect(Number(await upper.getAttribute('aria-valuenow'))).toBeCloseTo(before, 2);
+  });
+
+  test('a scan is left out with a reason, and taken in again', async () => {
+    const scan = page.locator('.scan-panel');
+    await scan.getByLabel('Leave this scan out').check();
+    await scan.getByLabel('Reason').fill('the membrane broke');
+    await scan.getByRole('button', { name: 'Apply' }).click();
+    const table = page.getByRole('region', { name: 'Scans' });
+    await table.getByText('the membrane broke').waitFor({ timeout: SETTLE_MS });
+    await scan.getByRole('button', { name: 'Take every correction back' }).click();
+    await table.getByText('the membrane broke').waitFor({ state: 'detached', timeout: SETTLE_MS });
+    await page.getByText('fitted', { exact: true }).waitFor({ timeout: SETTLE_MS });
+  }, 250_000);
+
+  test('answers a question about another temperature, with its caution', async () => {
+    const forecasts = page.getByRole('region', { name: 'Forecasts' });
+    await forecasts.getByLabel('at °C').fill('120');
+    await forecasts.getByRole('button', { name: 'Ask' }).click();
+    await forecasts
+      .locator('form')
+      .getByRole('rowheader', { name: /time to α = 0.01 at/ })
+      .first()
+      .waitFor();
+    expect(await forecasts.textContent()).toContain(FORECAST_CAUTION);
+  }, 30_000);
 
   test('an instrument and the jobs have pages of their own', async () => {
     await page.getByRole('navigation', { name: 'Way back' }).getByRole('link', { name: 'Synthetic demo' }).click();

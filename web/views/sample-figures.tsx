@@ -6,12 +6,13 @@ import { CorrectionKeys, CurvePlot, LawKeys, lawName, layoutCurvePlot } from '..
 import { EnergyPanels, layoutEnergy } from '../charts/energy-panels.tsx';
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import { KissingerPlot, layoutKissinger } from '../charts/kissinger-plot.tsx';
-import { layoutScanPlot, ScanPlot } from '../charts/scan-plot.tsx';
+import { eventLimits, layoutScanPlot, ScanPlot } from '../charts/scan-plot.tsx';
 import { FIGURES } from '../model/captions.ts';
 import { type CurveSeries, type Curves, curvesByEvent, type ScanLane, splitCurves } from '../model/curves.ts';
 import { units } from '../state/units.ts';
 import { Figure } from './figure.tsx';
 import { describeLane } from './lanes.tsx';
+import { LimitHandles } from './limit-handles.tsx';
 
 /** Names of the instruments of some curves with their marks. */
 export function InstrumentKeys({ of, instruments }: { of: readonly CurveSeries[]; instruments: readonly string[] }) {
@@ -220,8 +221,15 @@ export function OtherFigures({ curves, of, instruments }: FigureProps) {
 }
 
 /** One scan by itself: heat flow with its axis, baseline, limits and what was found. */
-export function ScanFigure(props: { lane: ScanLane; of: readonly string[]; instruments: readonly string[] }) {
-  const { lane, of, instruments } = props;
+export function ScanFigure(props: {
+  lane: ScanLane;
+  of: readonly string[];
+  instruments: readonly string[];
+  /** Limits of the event as moved by hand, K */
+  moved: Signal<[number, number] | undefined>;
+}) {
+  const { lane, of, instruments, moved } = props;
+  const limits = eventLimits(lane);
   const isZoomed = useSignal(false);
   const hasEvent = lane.baseline !== undefined;
   return (
@@ -237,7 +245,9 @@ export function ScanFigure(props: { lane: ScanLane; of: readonly string[]; instr
       caption={
         <>
           <span class="file">{lane.file}</span>
-          {hasEvent ? '. Shaded: from limit to limit of the event.' : '. No event was found.'}
+          {hasEvent
+            ? '. Shaded: from limit to limit of the event; drag a limit, or move it with the arrow keys.'
+            : '. No event was found.'}
         </>
       }
       tools={
@@ -270,7 +280,6 @@ export function ScanFigure(props: { lane: ScanLane; of: readonly string[]; instr
             class="plot-svg"
             width={layout.box.width}
             height={layout.box.height}
-            role="img"
             aria-label={`Heat flow of ${describeLane(lane)}`}
           >
             <ScanPlot
@@ -279,6 +288,7 @@ export function ScanFigure(props: { lane: ScanLane; of: readonly string[]; instr
               instrument={instruments.indexOf(lane.instrument)}
               units={units.value}
             />
+            {limits && <LimitHandles layout={layout} standing={limits} moved={moved} />}
           </svg>
         );
       }}

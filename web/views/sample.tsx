@@ -7,6 +7,7 @@ import { FIGURES } from '../model/captions.ts';
 import { buildLanes, type CurveKind } from '../model/curves.ts';
 import { numbersBySample } from '../model/headline.ts';
 import { tellableNow } from '../model/next-steps.ts';
+import { identifyScans } from '../model/scan-ids.ts';
 import { describeVerdict } from '../model/verdict.ts';
 import { samplePath } from '../routes.ts';
 import { openSample } from '../state/live-sample.ts';
@@ -20,14 +21,8 @@ import { NextSteps } from './next-steps.tsx';
 import { ProblemNotice } from './notice.tsx';
 import { plotWidth } from './numbers.tsx';
 import { NotYet, PageHead } from './page-head.tsx';
-import {
-  ConversionFigure,
-  EnergyFigures,
-  InstrumentKeys,
-  KissingerFigures,
-  OtherFigures,
-  ScanFigure,
-} from './sample-figures.tsx';
+import { ConversionFigure, EnergyFigures, InstrumentKeys, KissingerFigures, OtherFigures } from './sample-figures.tsx';
+import { ScanPanel } from './scan-panel.tsx';
 import { ScanTable } from './scan-table.tsx';
 
 const OTHER_KINDS: CurveKind[] = ['growth', 'viscosity', 'ttt'];
@@ -53,6 +48,7 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
     const names = [...(data?.instruments ?? []), ...(data?.scans ?? [])].map((row) => row.instrument ?? '');
     return [...new Set(names)].filter(Boolean).sort((a, b) => (a < b ? -1 : 1));
   }, [data]);
+  const ids = useMemo(() => identifyScans(data?.scans ?? [], data?.listed ?? []), [data]);
   if (!campaign || !data) return <NotYet problem={problem} what="the sample" campaignId={id} />;
 
   const { sample, curves, scans } = data;
@@ -66,7 +62,8 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
   ];
   const of = [campaign.name, sample.sample];
   // Until one is chosen, a scan from the middle of the rates.
-  const shown = lanes.find((lane) => lane.key === chosen.value) ?? lanes[Math.floor(lanes.length / 2)];
+  const shownId = chosen.value ?? lanes[Math.floor(lanes.length / 2)]?.key;
+  const shownRow = scans.find((row) => ids.get(row) === shownId);
   const show = (key: string): void => {
     chosen.value = key;
     requestAnimationFrame(() => document.getElementById('scan-alone')?.scrollIntoView({ block: 'nearest' }));
@@ -125,9 +122,17 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
               )}
             />
             <div class="figure-column">
-              {shown && (
+              {shownId !== undefined && shownRow && (
                 <div id="scan-alone">
-                  <ScanFigure key={shown.key} lane={shown} of={of} instruments={instruments} />
+                  <ScanPanel
+                    key={shownId}
+                    scanId={shownId}
+                    row={shownRow}
+                    lane={lanes.find((lane) => lane.key === shownId)}
+                    of={of}
+                    instruments={instruments}
+                    onCorrected={() => live.reload()}
+                  />
                 </div>
               )}
               {curves.conversion && curves.conversion.series.length > 0 && (
@@ -184,7 +189,7 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
         campaign={campaign}
         sample={sample.sample}
         scans={scans}
-        lanes={lanes}
+        ids={ids}
         instruments={instruments}
         pointed={pointed}
         onShow={show}

@@ -2,7 +2,6 @@ import type { Signal } from '@preact/signals';
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import type { Campaign, ScanRow } from '../client/rows.ts';
 import { formatFixed, formatRate, formatSignificant, formatTemperature } from '../format.ts';
-import type { ScanLane } from '../model/curves.ts';
 import { units } from '../state/units.ts';
 import { flagMeaning, SCAN_STATE_NAMES, sentence } from '../words.ts';
 import { Downloads } from './download.tsx';
@@ -12,13 +11,13 @@ export function ScanTable(props: {
   campaign: Campaign;
   sample: string;
   scans: readonly ScanRow[];
-  lanes: readonly ScanLane[];
+  /** Id of the scan behind each row */
+  ids: ReadonlyMap<ScanRow, string>;
   instruments: readonly string[];
   pointed: Signal<string | undefined>;
   onShow(key: string): void;
 }) {
-  const { campaign, sample, scans, lanes, instruments, pointed, onShow } = props;
-  const laneOf = (row: ScanRow): ScanLane | undefined => lanes.find((lane) => lane.rows.includes(row));
+  const { campaign, sample, scans, ids, instruments, pointed, onShow } = props;
   const rate = (row: ScanRow): number => Math.abs(row.rate_K_per_s ?? row.rate_nominal_K_per_s ?? 0);
   const sorted = [...scans].sort((a, b) => rate(a) - rate(b) || (a.file < b.file ? -1 : 1));
   const temperature = (value: number | null) => (value === null ? '' : formatTemperature(value, units.value));
@@ -46,17 +45,17 @@ export function ScanTable(props: {
         </thead>
         <tbody>
           {sorted.map((row) => {
-            const lane = laneOf(row);
+            const id = ids.get(row);
             return (
               <tr
                 key={`${row.file} ${row.segment} ${row.event}`}
                 onPointerEnter={() => {
-                  pointed.value = lane?.key;
+                  pointed.value = id;
                 }}
               >
                 <th scope="row" class="number">
-                  {lane ? (
-                    <button type="button" class="quiet row-button" onClick={() => onShow(lane.key)}>
+                  {id !== undefined ? (
+                    <button type="button" class="quiet row-button" onClick={() => onShow(id)}>
                       {rate(row) > 0 ? formatRate(rate(row), units.value) : 'no rate'}
                       <span class="unseen">, show this scan</span>
                     </button>

@@ -1,0 +1,109 @@
+import { expect, test } from 'vitest';
+import { bandPath, linePath } from '../../web/charts/curve-path.ts';
+import { createPlotScale, createTemperatureScale } from '../../web/charts/plot-scale.ts';
+import { tabsFromCsv } from '../../web/client/tabs.ts';
+import { type Curves, curveRows, curvesByEvent, splitCurves } from '../../web/model/curves.ts';
+import { formatTime } from '../../web/model/forecast-words.ts';
+import { parseRoute, samplePath } from '../../web/routes.ts';
+
+const points = (path: string): number[][] =>
+  path
+    .split(/[ML]/)
+    .filter(Boolean)
+    .map((p) => p.split(' ').map(Number));
+
+test('a thinned curve keeps every extreme, its ends and its order', () => {
+  const x = createPlotScale([0, 1], [0, 100]);
+  const y = createPlotScale([-1, 10], [100, 0]);
+  const xs = Array.from({ length: 10_000 }, (_, i) => i / 9_999);
+  const ys = xs.map((_, i) => (i === 5_000 ? 10 : i === 7_777 ? -1 : Math.sin(i)));
+  const drawn = points(linePath(xs, ys, x, y));
+  expect(drawn.length).toBeLessThan(500);
+  expect(Math.min(...drawn.map(([, py]) => py))).toBeCloseTo(y.at(10), 1);
+  expect(Math.max(...drawn.map(([, py]) => py))).toBeCloseTo(y.at(-1), 1);
+  expect(drawn[0][0]).toBeCloseTo(x.at(0), 1);
+  expect(drawn.at(-1)?.[0]).toBeCloseTo(x.at(1), 1);
+  expect(drawn.every(([px], i) => i === 0 || px >= drawn[i - 1][0])).toBe(true);
+});
+
+test('what is not a number breaks a line and starts a new one', () => {
+  const x = createPlotScale([0, 4], [0, 400]);
+  const y = createPlotScale([0, 1], [100, 0]);
+  const path = linePath([0, 1, 2, 3, 4], [0, 1, Number.NaN, 1, 0], x, y);
+  expect(path.match(/M/g)).toHaveLength(2);
+  expect(path).not.toContain('NaN');
+  expect(linePath([], [], x, y)).toBe('');
+});
+
+test('a band goes along its upper edge and back along the lower one', () => {
+  const scale = createPlotScale([0, 10], [0, 1000]);
+  const band = points(bandPath([1, 2], [3, 4], [5, 6], scale, scale).replace('Z', ''));
+  const at = (value: number) => Number(scale.at(value).toFixed(1));
+  expect(band).toEqual([
+    [at(1), at(5)],
+    [at(2), at(6)],
+    [at(2), at(4)],
+    [at(1), at(3)],
+  ]);
+});
+
+test('an axis in °C has its marks where the kelvins are', () => {
+  const scale = createTemperatureScale([300, 500], [0, 400], { temperature: '°C', rate: 'K/min' });
+  const hundred = scale.ticks.find(({ label }) => label === '100');
+  expect(hundred?.at).toBeCloseTo(scale.at(373.15), 6);
+  expect(scale.valueAt(scale.at(421))).toBeCloseTo(421, 6);
+});
+
+test('an axis without values, or with one, can still be drawn', () => {
+  expect(createPlotScale([], [0, 10]).ticks.length).toBeGreaterThan(0);
+  expect(createPlotScale([5, 5], [0, 10]).at(5)).toBeCloseTo(5, 6);
+});
+
+const curves = (names: string[]): Curves => ({
+  kind: 'ttt',
+  x: { quantity: 'temperature', unit: 'K' },
+  y: { quantity: 'time', unit: 's' },
+  series: names.map((name) => ({ name, x: [1], y: [2], lower: [1], upper: [3] })),
+});
+
+test('curves part by event, and by method of forecast', () => {
+  const both = curves(['event 1, shared_law, conversion 0.5', 'event 2, model_free, conversion 0.5', 'melting']);
+  expect(curvesByEvent(both).map(({ event, series }) => [event, series.map((s) => s.rest)])).toEqual([
+    [1, ['shared_law, conversion 0.5', 'melting']],
+    [2, ['model_free, conversion 0.5', 'melting']],
+  ]);
+  const [first] = splitCurves(curves(['event 1, shared_law, conversion 0.5', 'event 1, model_free, conversion 0.01']));
+  expect(first.names).toEqual(['shared law']);
+  expect(first.curves.series.map((s) => s.name)).toEqual(['α = 0.5']);
+});
+
+test('points of curves become rows with their units in the head', () => {
+  const { columns, rows } = curveRows(curves(['event 1']));
+  expect(columns).toEqual(['series', 'instrument', 'temperature [K]', 'time [s]', 'lower95', 'upper95']);
+  expect(rows).toEqual([
+    { series: 'event 1', instrument: null, 'temperature [K]': 1, 'time [s]': 2, lower95: 1, upper95: 3 },
+  ]);
+});
+
+// RFC 4180, section 2: quoted fields may hold commas, line breaks and doubled quotes.
+test('CSV becomes cells parted by tabs', () => {
+  expect(tabsFromCsv('a,"b, ""c""",d\n1,"two\nlines",3\n')).toBe('a\tb, "c"\td\n1\ttwo lines\t3\n');
+});
+
+test('addresses name what they show, whatever is in the names', () => {
+  expect(parseRoute('/')).toEqual({ view: 'campaigns' });
+  expect(parseRoute('/campaigns/c_1/')).toEqual({ view: 'campaign', id: 'c_1' });
+  const odd = 'glass/№ 7 %';
+  expect(parseRoute(samplePath('c_1', odd))).toEqual({ view: 'sample', id: 'c_1', sample: odd });
+  expect(parseRoute('/campaigns/c_1/jobs')).toEqual({ view: 'jobs', id: 'c_1' });
+  expect(parseRoute('/campaigns/%E0%A4%A/jobs')).toEqual({ view: 'none' });
+  expect(parseRoute('/elsewhere')).toEqual({ view: 'none' });
+});
+
+// A year of 365.25 days has 31 557 600 s (IAU).
+test('times are told in a unit that fits them', () => {
+  expect(formatTime(31_557_600 * 5)).toBe('5\u00a0a');
+  expect(formatTime(86_400)).toBe('24\u00a0h');
+  expect(formatTime(90)).toBe('90\u00a0s');
+  expect(formatTime(0.0031)).toBe('3.1\u00a0ms');
+});
