@@ -132,6 +132,8 @@ function fitWeighted(
 }
 
 const NORMAL_975 = 1.959964;
+/** Scans from which on their own scatter tells the error of the heat factor. */
+const FEWEST_FOR_SCATTER = 4;
 
 /** True heat ÷ measured heat from the areas (ASTM E968), and its standard error. */
 function heatFactorOf(observations: readonly StandardObservation[]): { heatFactor?: number; heatFactorSe?: number } {
@@ -142,10 +144,13 @@ function heatFactorOf(observations: readonly StandardObservation[]): { heatFacto
   });
   if (factors.length === 0) return {};
   const heatFactor = mean(factors);
-  // What baseline and limits leave open is common to all scans of an instrument: it does not average out.
-  const common = median(observations.map(({ melting }) => melting.areaError / melting.area)) * heatFactor;
-  const scatter = factors.length > 1 ? standardDeviation(factors) / Math.sqrt(factors.length) : 0;
-  const heatFactorSe = Math.hypot(common, scatter);
+  const n = factors.length;
+  // What baseline and limits leave open differs from metal to metal and from rate to rate: it is part of the scatter where that is seen.
+  const single = median(observations.map(({ melting }) => melting.areaError / melting.area)) * heatFactor;
+  const heatFactorSe =
+    n < FEWEST_FOR_SCATTER
+      ? single
+      : (standardDeviation(factors) / Math.sqrt(n)) * (studentQuantile(0.975, n - 1) / NORMAL_975);
   return { heatFactor, heatFactorSe };
 }
 

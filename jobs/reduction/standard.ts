@@ -6,6 +6,7 @@ import { baselineAt } from './baseline.ts';
 import type { Bell, Excess } from './excess.ts';
 import { type Excursion, findExcursions, noiseSigma } from './find-event.ts';
 import { isolateEvents } from './isolate.ts';
+import { fitLeadingEdge, type LeadingEdge } from './leading-edge.ts';
 import { slopeOf } from './segments.ts';
 import { averageWindow, type EventWindow } from './window.ts';
 
@@ -72,12 +73,8 @@ export function reduceStandard(
   };
 }
 
-/** Line through the upper part of the rise, and where it meets the baseline. */
-function steepestEdge(
-  w: EventWindow,
-  x: Excess,
-  height: number,
-): { onsetS: number; errorS: number; slope: number } | undefined {
+/** The whole rise behind a response, from a line through its upper part, and where it meets the baseline. */
+function steepestEdge(w: EventWindow, x: Excess, height: number): LeadingEdge | undefined {
   let top = x.from;
   for (let i = x.from; i < x.to; i++) if (x.e[i] > x.e[top]) top = i;
   let to = top;
@@ -94,7 +91,9 @@ function steepestEdge(
   const [first, last] = [w.t[from], w.t[to - 1]];
   const spread = ((last - first) ** 2 * (n + 1)) / (12 * (n - 1));
   const distance = onsetS - (first + last) / 2;
-  return { onsetS, slope: line.slope, errorS: (w.noise / line.slope) * Math.sqrt((1 + distance ** 2 / spread) / n) };
+  const errorS = (w.noise / line.slope) * Math.sqrt((1 + distance ** 2 / spread) / n);
+  const upper = { onsetS, slope: line.slope, errorS };
+  return fitLeadingEdge(w.t, x.e, upper, x.from, to) ?? upper;
 }
 
 /** Time constant of the tail from the rows: ln of the excess against time, weighted by its square (the noise of a logarithm is 1/e). */
