@@ -59,6 +59,7 @@ export function calibrateFromStandards(
     terms,
     late,
     observations.map(({ melting }) => melting.onsetErrorK),
+    scatterShapes(rates),
   );
   if (!fit) return sheet;
   const at = { offset: 0, lag: manyRates ? 1 : -1, slope: withSlope ? terms.length - 1 : -1 };
@@ -87,20 +88,37 @@ export function calibrateFromStandards(
 }
 
 /**
- * Weighted least squares with a scatter between scans, the same for all, that makes χ² equal its degrees of freedom (Paule & Mandel 1982,
+ * Shape of the scatter between scans over their rates: position and repeatability move an onset by so many kelvins, a contact that is never
+ * quite the same by so many seconds, that is by kelvins that grow with rate. Both are taken to weigh the same at the highest rate, since a
+ * handful of scans cannot tell them apart.
+ */
+function scatterShapes(rates: readonly number[]): number[] {
+  const highest = Math.max(...rates);
+  return rates.map((rate) => Math.hypot(1, rate / highest));
+}
+
+/**
+ * Weighted least squares with a scatter between scans whose size makes χ² equal its degrees of freedom (Paule & Mandel 1982,
  * J. Res. NBS 87:377): neither quiet slow scans nor noisy fast ones carry the fit alone.
  */
 function fitWithScatter(
   terms: readonly ((i: number) => number)[],
   values: readonly number[],
   errors: readonly number[],
+  shapes: readonly number[],
 ): { solution: Float64Array; covariance: Float64Array } | undefined {
   const degrees = values.length - terms.length;
-  if (degrees <= 0) return fitWeighted(terms, values, errors, SCATTER_K);
-  const excess = (scatter: number) => (fitWeighted(terms, values, errors, scatter)?.chi ?? 0) - degrees;
+  const fitAt = (scatter: number) =>
+    fitWeighted(
+      terms,
+      values,
+      errors.map((error, i) => Math.hypot(error, scatter * shapes[i])),
+    );
+  if (degrees <= 0) return fitAt(SCATTER_K);
+  const excess = (scatter: number) => (fitAt(scatter)?.chi ?? 0) - degrees;
   const largest = 10 * Math.max(SCATTER_K, ...values.map(Math.abs));
   const scatter = excess(LEAST_SCATTER_K) <= 0 ? LEAST_SCATTER_K : findRoot(excess, LEAST_SCATTER_K, largest, 1e-5);
-  const fit = fitWeighted(terms, values, errors, scatter);
+  const fit = fitAt(scatter);
   const widened = (studentQuantile(0.975, degrees) / NORMAL_975) ** 2;
   return fit && { ...fit, covariance: fit.covariance.map((v) => v * widened) };
 }
@@ -109,12 +127,11 @@ function fitWeighted(
   terms: readonly ((i: number) => number)[],
   values: readonly number[],
   errors: readonly number[],
-  scatter: number,
 ): { solution: Float64Array; covariance: Float64Array; chi: number } | undefined {
   const p = terms.length;
   const covariance = new Float64Array(p * p);
   const solution = new Float64Array(p);
-  const weights = errors.map((error) => 1 / (error ** 2 + scatter ** 2));
+  const weights = errors.map((error) => 1 / error ** 2);
   values.forEach((value, k) => {
     for (let i = 0; i < p; i++) {
       solution[i] += weights[k] * terms[i](k) * value;
