@@ -2,14 +2,20 @@ import fc from 'fast-check';
 import { expect, it } from 'vitest';
 import { allTables, drain, newCampaign, openTestPorts, send } from './test-ports.ts';
 
-/** A campaign with everything that could depend on who comes first: two sheets that wait for files, copies, a file without a row, a row without a file, equal base names. */
+/** A campaign with everything that could depend on who comes first: sheets that wait for files, a standard, a reference, peaks and questions, copies, a file without a row, a row without a file, equal base names. */
 const FILES: readonly (readonly [path: string, text: string])[] = [
   [
     'scans.csv',
-    'file,sample,instrument,mass [mg],segment\na/1.txt,A,oven,1,\n2.txt,A,oven,1,\na/3.txt,A,stove,1,1\na/3.txt,A,stove,1,2\nb/1.txt,B,oven,2,\n4.txt,B,chip,,\nbad.txt,B,oven,,\ngone.txt,B,oven,,\n',
+    'file,sample,instrument,mass [mg],segment,role,reference\na/1.txt,A,oven,1,,,\n2.txt,A,oven,1,,,\na/3.txt,A,stove,1,1,,\na/3.txt,A,stove,1,2,,\nb/1.txt,B,oven,2,,,blank.txt\n4.txt,B,chip,,,,\nbad.txt,B,oven,,,,\ngone.txt,B,oven,,,,\nin.txt,In,stove,5,,standard,\n',
   ],
   ['instruments.csv', 'instrument,kind,lag [s]\noven,furnace,2\n'],
   ['samples.csv', 'sample,melting temperature [K]\nA,900\n'],
+  ['peaks.csv', 'sample,instrument,rate [K/s],peak [K]\nA,press,1,500\nP,press,1,510\n'],
+  ['goal.csv', 'sample,conversion,temperature [K],time [s]\nA,0.01,400,3600\n'],
+  ['programs/hold.csv', 'time [s],temperature [K]\n0,300\n100,400\n'],
+  ['viscosity.csv', 'sample,temperature [K],log10 viscosity [Pa s]\nA,500,11\n'],
+  ['in.txt', 'rate 1 melts late 1 lag 2'],
+  ['blank.txt', 'rate 2 blank'],
   ['a/1.txt', 'rate 1'],
   ['b/1.txt', 'rate 2'],
   ['a/2.txt', 'rate 4'],
