@@ -3,11 +3,12 @@ import { drizzle } from 'drizzle-orm/libsql';
 import type { Database } from '../ports/index.ts';
 import { createFileClient } from './file-client.ts';
 
-/** The driver waits for a lock inside the event loop, so it waits only this long; the rest of the waiting is asynchronous. */
-const BUSY_TIMEOUT_MS = 25;
-const WRITE_TRIES = 100;
-const RETRY_MS = 10;
-const RETRY_SPREAD_MS = 40;
+/** The driver waits for a lock inside the event loop, where it holds up every answer: hardly at all. The rest of the waiting is asynchronous. */
+const BUSY_TIMEOUT_MS = 2;
+/** How long a write waits for the lock of another process before its caller hears of it. */
+const PATIENCE_MS = 10_000;
+const SHORTEST_PAUSE_MS = 2;
+const LONGEST_PAUSE_MS = 30;
 
 /** True when a statement met the lock of another connection. */
 export function isBusy(error: unknown): boolean {
@@ -18,21 +19,35 @@ export function isBusy(error: unknown): boolean {
   return false;
 }
 
-const pause = () => new Promise((resolve) => setTimeout(resolve, RETRY_MS + Math.random() * RETRY_SPREAD_MS));
+/** Nothing had begun when the lock was met: the connection is sound. */
+function isSound(error: unknown): boolean {
+  for (let e = error as { beforeStart?: unknown; cause?: unknown } | undefined, depth = 0; e && depth < 5; depth++) {
+    if (e.beforeStart === true) return true;
+    e = e.cause as typeof e;
+  }
+  return false;
+}
+
+/** Longer with each try, with chance in it, so that processes do not meet again in step. */
+const pause = (tries: number) =>
+  new Promise((resolve) =>
+    setTimeout(resolve, Math.min(LONGEST_PAUSE_MS, SHORTEST_PAUSE_MS * tries) * (0.5 + Math.random())),
+  );
 
 /**
- * Repeats `work` while the database is locked by another connection. After SQLITE_BUSY a connection loses later writes in
- * silence (they resolve and are never committed), so it is replaced before anything else is tried on it.
+ * Repeats `work` while the database is locked by another connection. After SQLITE_BUSY on a prepared statement a connection
+ * loses later writes in silence (they resolve and are never committed), so it is replaced before anything else is tried on it.
  */
 async function retryBusy<T>(client: Client, work: () => Promise<T>): Promise<T> {
+  const until = performance.now() + PATIENCE_MS;
   for (let tries = 1; ; tries++) {
     try {
       return await work();
     } catch (error) {
       if (!isBusy(error)) throw error;
-      await client.reconnect();
-      if (tries >= WRITE_TRIES) throw error;
-      await pause();
+      if (!isSound(error)) await client.reconnect();
+      if (performance.now() > until) throw error;
+      await pause(tries);
     }
   }
 }
@@ -51,11 +66,12 @@ function withBusyRetry(client: Client): Client {
   });
 }
 
-/** Batches of drizzle open a deferred transaction by default, which can fail half way when another process writes first. */
-function withWriteBatches(client: Client): Client {
+/** Every call takes the write lock at its start: a lock that is met later can leave half a batch, and a spoilt connection. */
+function withWriteLock(client: Client): Client {
   return new Proxy(client, {
     get(target, name) {
       if (name === 'batch') return (statements: InStatement[]) => target.batch(statements, 'write');
+      if (name === 'execute') return async (statement: InStatement) => (await target.batch([statement], 'write'))[0];
       const value = Reflect.get(target, name, target);
       return typeof value === 'function' ? value.bind(target) : value;
     },
@@ -71,7 +87,7 @@ export async function openFileDatabase(path: string): Promise<Database> {
   const writer = createFileClient(path, BUSY_TIMEOUT_MS);
   await retryBusy(writer, () => writer.execute('pragma journal_mode = wal'));
   const reader = createFileClient(path, BUSY_TIMEOUT_MS);
-  const write = drizzle(withWriteBatches(writer));
+  const write = drizzle(withWriteLock(writer));
   let last: Promise<unknown> = Promise.resolve();
   return {
     read: drizzle(withBusyRetry(reader)),
