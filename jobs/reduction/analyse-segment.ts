@@ -53,7 +53,7 @@ export function analyseSegment(
   excursions: Excursion[],
 ): SegmentFindings {
   const { timeS, temperatureK } = c.scan;
-  const bells: Bell[] = excursions.map((x) => ({ ...x, height: x.prominence }));
+  const bells: Bell[] = withoutRipple(c, segment, excursions).map((x) => ({ ...x, height: x.prominence }));
   if (segment.kind === 'hold') return reduceHold(c, segment, before, bells);
   // A step before the event makes its rough left half width come out too large.
   const first = bells[0] && { ...bells[0], leftS: Math.min(bells[0].leftS, MOST_LEFT * bells[0].rightS) };
@@ -98,6 +98,36 @@ export function analyseSegment(
     ...(glass && { glass: { midpointK: trueK(glass.midpointS), onsetK: trueK(glass.onsetS) } }),
     ...(meltingS !== undefined && { meltingOnsetK: trueK(meltingS) }),
   };
+}
+
+/**
+ * Exotherms below this part of the segment's signal are held against its glass transition, and are ripple below this part of that; not
+ * where an endotherm above this part of the signal could be taken for the step.
+ */
+const SMALL = { ofSignal: 0.05, ofStep: 0.1, endotherm: 0.1 };
+
+/** On a quiet instrument ripple of the baseline stands out of the noise: no event where a glass transition is ten times higher. */
+function withoutRipple(c: ScanContext, segment: Segment, excursions: Excursion[]): Excursion[] {
+  const highest = Math.max(0, ...excursions.map((x) => x.prominence));
+  const { from, kind } = segment;
+  const to = endOfRamp(c, segment);
+  const range = rangeOf(c.y, from, to);
+  if (highest === 0 || kind !== 'heating' || highest > SMALL.ofSignal * range) return excursions;
+  const flipped = c.y.map((v) => -v);
+  const endotherms = findExcursions(c.scan.timeS, flipped, from, to);
+  if (endotherms.some((x) => x.prominence > SMALL.endotherm * range)) return excursions;
+  const glass = findGlassTransition(c.scan.timeS, c.y, from, to, c.noise);
+  return glass && highest < -SMALL.ofStep * glass.step ? [] : excursions;
+}
+
+/** Highest less lowest value of rows [from, to). */
+export function rangeOf(y: Float64Array, from = 0, to = y.length): number {
+  let [low, high] = [Number.POSITIVE_INFINITY, Number.NEGATIVE_INFINITY];
+  for (let i = from; i < to; i++) {
+    if (y[i] < low) low = y[i];
+    if (y[i] > high) high = y[i];
+  }
+  return high - low;
 }
 
 /** The last rows of a segment may belong to what follows: they are left out where no event says where to stop. */

@@ -34,7 +34,7 @@ const BEFORE_WIDTHS = 4;
 const BEHIND_WIDTHS = 6;
 
 /** Parts of the rows left out at the start, one after the other: a furnace settles there, which looks like a step or bends the baseline. */
-const START_PARTS = [0.08, 0.2];
+const START_PARTS = [0.08, 0.2, 0.4];
 /** A step that begins before this part of the rows may be the start of the ramp, and gives way to a clear one behind it. */
 const NEAR_START = 0.1;
 

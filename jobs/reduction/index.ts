@@ -2,7 +2,7 @@ import { type Flag, flag } from '../../schema/wire/flags.ts';
 import type { ReducedEvent, ReducedScan, ReduceOutcome, Segment } from '../../schema/wire/reduced.ts';
 import type { ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
-import { analyseSegment, findEvents } from './analyse-segment.ts';
+import { analyseSegment, findEvents, rangeOf } from './analyse-segment.ts';
 import { chooseSegments } from './choose-segments.ts';
 import { findDirection } from './direction.ts';
 import type { Excursion } from './find-event.ts';
@@ -81,9 +81,8 @@ export function reduceScan(scan: ReadScan, input: ReduceInput): ReduceOutcome {
 function reduceChosen(c: ScanContext, segments: Segment[], candidates: Segment[]): ReducedScan {
   const { scan, y, flags, input } = c;
   const { segment, excursions } = pickSegment(c, candidates);
-  const shown = excursions.length > 0;
   const found = analyseSegment(c, segment, segments[segment.segment - 2], excursions);
-  if (!shown) {
+  if (found.events.length === 0) {
     flags.push(
       flag(
         'no-event',
@@ -128,6 +127,8 @@ function reduceChosen(c: ScanContext, segments: Segment[], candidates: Segment[]
 
 /** A heating segment is passed over where its strongest exotherm is lower than this part of another one's: the kick of a start, say. */
 const LEAST_OF_SEGMENTS = 0.1;
+/** An exotherm on a hold is higher than this part of the file's whole signal: less is the ripple of the temperature control. */
+const LEAST_OF_SIGNAL = 0.002;
 
 /** The first heating segment with an exotherm worth the name, else the first hold with one, else the widest heating. */
 function pickSegment(c: ScanContext, candidates: Segment[]): { segment: Segment; excursions: Excursion[] } {
@@ -140,7 +141,7 @@ function pickSegment(c: ScanContext, candidates: Segment[]): { segment: Segment;
   if (ramp) return ramp;
   for (const segment of candidates.filter((s) => s.kind === 'hold')) {
     const excursions = findEvents(c, segment);
-    if (excursions.length > 0) return { segment, excursions };
+    if (excursions.some((e) => e.prominence > LEAST_OF_SIGNAL * rangeOf(c.y))) return { segment, excursions };
   }
   const span = (s: Segment) => Math.abs(s.endK - s.startK);
   return { segment: candidates.reduce((widest, s) => (span(s) > span(widest) ? s : widest)), excursions: [] };

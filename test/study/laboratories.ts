@@ -25,7 +25,7 @@ export interface LaboratoryScan {
 
 export const hasLaboratories = (): boolean => existsSync(FOLDER);
 
-/** Every scan read and reduced with the exotherm down, as all three laboratories show the endothermic melting-off upwards. */
+/** Every scan read and reduced with the exotherm down, as all three laboratories show the endothermic decomposition upwards. */
 export function reduceLaboratories(): LaboratoryScan[] {
   const files = readdirSync(FOLDER).filter((name) => name.endsWith('.csv'));
   return files.map((file) => {
