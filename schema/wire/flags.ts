@@ -41,7 +41,10 @@ export const FLAG_CODES = {
   'response-unknown': ['warn', 'the smearing part of the lag is not known and matters here'],
   'lag-negative': ['warn', 'fitted net lag is below zero by more than two errors'],
   'self-heating': ['warn', 'the event warms the sample noticeably'],
-  'self-heating-unknown': ['note', 'the sample’s part of the lag is not known, and a tenth of the lag would be too much'],
+  'self-heating-unknown': [
+    'note',
+    'the sample’s part of the lag is not known, and a tenth of the lag would be too much',
+  ],
   'crystallises-from-glass': ['note', 'peak lies below the glass transition at its rate'],
   'few-rates': ['stop', 'fewer than three distinct heating rates'],
   'narrow-span': ['warn', 'heating rates span less than a factor of ten'],
