@@ -48,7 +48,7 @@ export function LimitHandles(props: {
             key={side}
             class="limit-handle"
             role="slider"
-            tabIndex={0}
+            tabindex={0}
             aria-label={side === 0 ? 'Lower limit of the event' : 'Upper limit of the event'}
             aria-valuemin={reach[0]}
             aria-valuemax={reach[1]}
