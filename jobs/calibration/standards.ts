@@ -151,6 +151,8 @@ function fitWeighted(
 const NORMAL_975 = 1.959964;
 /** Scans from which on their own scatter tells the error of the heat factor. */
 const FEWEST_FOR_SCATTER = 4;
+/** Part of the baseline's error that all scans of an instrument have in common, from trials (study `standards`). */
+const COMMON_PART = 0.2;
 
 /** True heat ÷ measured heat from the areas (ASTM E968), and its standard error. */
 function heatFactorOf(observations: readonly StandardObservation[]): { heatFactor?: number; heatFactorSe?: number } {
@@ -162,12 +164,15 @@ function heatFactorOf(observations: readonly StandardObservation[]): { heatFacto
   if (factors.length === 0) return {};
   const heatFactor = mean(factors);
   const n = factors.length;
-  // What baseline and limits leave open differs from metal to metal and from rate to rate: it is part of the scatter where that is seen.
+  // What baseline and limits leave open differs from metal to metal and from rate to rate: most of it is in the scatter where that is seen.
   const single = median(observations.map(({ melting }) => melting.areaError / melting.area)) * heatFactor;
   const heatFactorSe =
     n < FEWEST_FOR_SCATTER
       ? single
-      : (standardDeviation(factors) / Math.sqrt(n)) * (studentQuantile(0.975, n - 1) / NORMAL_975);
+      : Math.hypot(
+          (standardDeviation(factors) / Math.sqrt(n)) * (studentQuantile(0.975, n - 1) / NORMAL_975),
+          COMMON_PART * single,
+        );
   return { heatFactor, heatFactorSe };
 }
 
