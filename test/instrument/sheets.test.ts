@@ -162,3 +162,24 @@ it('samples.csv in SI', () => {
     'line 4 has «120» under «solvent fraction [%]»: it must lie in 0 … 1 (write % in the header for per cent).',
   ]);
 });
+
+describe('what a spreadsheet or a bad copy makes of a sheet', () => {
+  it('a line of delimiters only, and a cell of many digits, cost no time', () => {
+    const long = scans(`file,sample,instrument\n${','.repeat(2_000_000)}\na.txt,S,F\n`);
+    expect(long.rows).toEqual([]);
+    expect(long.flags[0].detail).toContain('line 2 has 2000000 characters');
+    const started = process.cpuUsage().user;
+    const digits = scans(`file,sample,instrument,mass [mg]\na.txt,S,F,${'1'.repeat(60_000)}x\nb.txt,S,F,1\n`);
+    expect(process.cpuUsage().user - started).toBeLessThan(1e6);
+    expect(digits.rows.map((row) => row.file)).toEqual(['b.txt']);
+  });
+
+  it('rows above the header, or none below it, are told', () => {
+    const { rows, flags } = scans('a.txt,S,F\nfile,sample,instrument\nb.txt,S,F\n');
+    expect(rows.map((row) => row.file)).toEqual(['b.txt']);
+    expect(flags.map((f) => f.detail)).toEqual([
+      '1 row above the header on line 2 not read, from line 1 on: «a.txt, S, F»',
+    ]);
+    expect(scans('file,sample,instrument\n').flags[0].detail).toBe('no row stands below the header on line 1');
+  });
+});
