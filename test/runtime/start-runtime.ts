@@ -38,8 +38,15 @@ export interface Runtime {
   close(): Promise<void>;
 }
 
+export interface RuntimeOptions {
+  /** The built page; a stand-in without it. */
+  pagesDir?: string;
+  /** 0 takes a free one. */
+  port?: number;
+}
+
 /** The program of api/worker.ts as deployed, in the real runtime, over a bucket, a queue and a libSQL server of its own. */
-export async function startRuntime(): Promise<Runtime> {
+export async function startRuntime({ pagesDir, port = 0 }: RuntimeOptions = {}): Promise<Runtime> {
   const root = new URL('../..', import.meta.url);
   const toml = await readFile(new URL('wrangler.toml', root), 'utf8');
   const setting = (name: string) => new RegExp(`^${name} = "(.+)"$`, 'm').exec(toml)?.[1] as string;
@@ -67,7 +74,7 @@ export async function startRuntime(): Promise<Runtime> {
   });
   const miniflare = new Miniflare({
     host: '127.0.0.1',
-    port: 0,
+    port,
     cf: false,
     // Its log lines are not for the report of the tests.
     handleRuntimeStdio: (out: Readable, err: Readable) => {
@@ -79,7 +86,7 @@ export async function startRuntime(): Promise<Runtime> {
     compatibilityFlags: ['nodejs_compat'],
     bindings: { DB_URL: bridge.url, DB_TOKEN: 'bridge-token' },
     assets: {
-      directory: pages,
+      directory: pagesDir ?? pages,
       binding: 'ASSETS',
       routerConfig: { has_user_worker: true, invoke_user_worker_ahead_of_assets: true },
       assetConfig: { not_found_handling: 'single-page-application' },

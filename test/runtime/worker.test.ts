@@ -2,6 +2,7 @@ import { sql } from 'drizzle-orm';
 import { afterAll, beforeAll, describe, expect, test, vi } from 'vitest';
 import { type Body, openHarness } from '../api/harness.ts';
 import { smallCampaign, TRUE_ENERGY_KJ_PER_MOL } from '../api/small-campaign.ts';
+import { compareTables } from './demo-parity.ts';
 import { type Runtime, runtimeProblem, startRuntime } from './start-runtime.ts';
 
 const problem = await runtimeProblem();
@@ -85,7 +86,7 @@ describe.skipIf(problem)('the serverless program in the real runtime', () => {
     await settled();
   });
 
-  test('the table is that of Node, byte for byte', { timeout: 60_000 }, async () => {
+  test('the tables are those of Node, to the last digits', { timeout: 60_000 }, async () => {
     const node = await openHarness();
     try {
       const { body } = await node.sendJson('POST', '/v1/campaigns', { name: 'on Node' });
@@ -95,7 +96,8 @@ describe.skipIf(problem)('the serverless program in the real runtime', () => {
         const there = await (await send('GET', `/v1/campaigns/${id}/${table}?format=csv`)).text();
         const here = await (await node.send('GET', `/v1/campaigns/${body.id}/${table}?format=csv`)).text();
         expect(there.split('\n').length).toBeGreaterThan(3);
-        expect(there).toBe(here);
+        const { otherText, worstRelative } = compareTables(here, there);
+        expect([otherText, worstRelative < 1e-13]).toEqual([0, true]);
       }
     } finally {
       await node.close();
@@ -132,8 +134,9 @@ describe.skipIf(problem)('the serverless program in the real runtime', () => {
     const job = await vi.waitFor(
       async () => {
         const { items } = await get('/v1/jobs?state=failed');
-        expect(items).toHaveLength(1);
-        return items[0];
+        const fit = items.find((found: Body) => found.step === 'fit-sample');
+        expect(fit).toBeDefined();
+        return fit;
       },
       { timeout: 20_000, interval: 200 },
     );

@@ -30,6 +30,6 @@ const count = values.count === undefined ? undefined : Number(values.count);
 if (count !== undefined && !(Number.isInteger(count) && count > 0))
   fail(`--count must be a whole number above 0: ${values.count}`);
 const started = performance.now();
-process.stdout.write(`${study.run({ count, seed: values.seed })}\n\n`);
+process.stdout.write(`${await study.run({ count, seed: values.seed })}\n\n`);
 const seconds = ((performance.now() - started) / 1000).toFixed(1);
 process.stdout.write(`study ${name}, seed ${values.seed}, ${seconds} s; all data synthetic\n`);

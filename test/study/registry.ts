@@ -6,6 +6,7 @@ import { intervalsStudy } from './intervals.ts';
 import { laboratoriesStudy } from './laboratories.ts';
 import { largeScanStudy } from './large-scan.ts';
 import { mutatedFilesStudy } from './mutated-files.ts';
+import { crashStudy, serverlessStudy, soakStudy } from './operation.ts';
 import { reductionStudy } from './reduction.ts';
 import { roundTripStudy } from './round-trip.ts';
 import { standardsStudy } from './standards.ts';
@@ -19,7 +20,7 @@ export interface StudyOptions {
 }
 
 /** A study computes and returns Markdown; it prints nothing itself. */
-export type Study = (options: StudyOptions) => string;
+export type Study = (options: StudyOptions) => string | Promise<string>;
 
 export const STUDIES: Record<string, { about: string; run: Study }> = {
   'round-trip': {
@@ -34,6 +35,20 @@ export const STUDIES: Record<string, { about: string; run: Study }> = {
     about:
       'coverage and width of the 95 % intervals of E and n over settings of rates, replicates, noise and instruments',
     run: intervalsStudy,
+  },
+  crash: {
+    about:
+      'a process killed at its 1st, 2nd, 3rd … write until it survives; the next one must end with the same tables',
+    run: crashStudy,
+  },
+  soak: {
+    about:
+      '8 senders, 3 workers with clocks apart, one killed every few seconds, odd deliveries: --count campaigns of 50 scans',
+    run: soakStudy,
+  },
+  serverless: {
+    about: 'the demo campaign through the real serverless runtime beside Node; memory, CPU and time a step',
+    run: serverlessStudy,
   },
   reduction: {
     about: 'single simulated scans: error of Tp, T(α) and ΔH against noise, drift and points',
