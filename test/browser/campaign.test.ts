@@ -159,6 +159,19 @@ describe.skipIf(!executable)('a campaign on the page', () => {
     expect(rows.length).toBeGreaterThan(100);
   });
 
+  test('saves the report and all results', async () => {
+    for (const [name, start] of [
+      ['report.html', '<!DOCTYPE html>'],
+      ['results.zip', 'PK'],
+    ]) {
+      const download = page.waitForEvent('download');
+      await page.getByRole('button', { name: `Save ${name}` }).click();
+      const saved = await download;
+      expect(saved.suggestedFilename()).toBe(`Synthetic-demo-${name}`);
+      expect((await readFile(await saved.path(), 'latin1')).slice(0, start.length)).toBe(start);
+    }
+  }, 60_000);
+
   test('copies a table, cells parted by tabs', async () => {
     await page.context().grantPermissions(['clipboard-read', 'clipboard-write']);
     await page.getByRole('button', { name: 'Copy instruments' }).click();

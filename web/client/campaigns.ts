@@ -101,6 +101,18 @@ export const sendFile = async (id: string, path: string, file: File, signal?: Ab
     })
   ).json();
 
+/** The report, one page of HTML that stands by itself. */
+export async function downloadReport(campaign: Campaign): Promise<void> {
+  const response = await request(`${route(campaign.id)}/report`);
+  saveFile(await response.blob(), [campaign.name, 'report'], 'html');
+}
+
+/** Every table and the report in one archive. */
+export async function downloadResults(campaign: Campaign): Promise<void> {
+  const response = await request(`${route(campaign.id)}/results.zip`);
+  saveFile(await response.blob(), [campaign.name, 'results'], 'zip');
+}
+
 const loadCsv = async (id: string, table: ResultTable, filter: Pick<TableFilter, 'sample'>): Promise<string> =>
   (await request(`${route(id)}/${table}?${new URLSearchParams({ format: 'csv', ...filter })}`)).text();
 

@@ -1,6 +1,7 @@
 import type { ForecastRow } from '../../schema/wire/forecasts.ts';
 import { kelvinFromCelsius } from '../../schema/wire/units.ts';
 import { formatSignificant, formatTemperature, type Units } from '../format.ts';
+import { flagMeaning, sentence } from '../words.ts';
 
 /** Seconds of each unit of time, the longest first; a year of 365.25 days. */
 const TIME_UNITS: readonly [number, string][] = [
@@ -32,8 +33,9 @@ export interface ForecastWords {
   answer: string;
   /** 95 % band, empty where there is none */
   band: string;
-  /** How far it lies outside what was measured, empty inside */
-  beyond: string;
+  method: string;
+  /** The answer as a sentence, whether it meets its goal, and what is in doubt */
+  words: string;
 }
 
 /** Lines of two numbers, time in s and temperature in °C; anything else on a line is refused by the server, which names the rule. */
@@ -45,6 +47,13 @@ export const parseProgramme = (text: string): [number, number][] =>
       const [time, temperature] = line.trim().split(/[\s;,]+/);
       return [Number(time), Number(temperature)];
     });
+
+const GOALS: Record<ForecastRow['goal'], string> = {
+  met: 'The goal is met.',
+  not_met: 'The goal is not met.',
+  cannot_say: 'Whether the goal is met cannot be said.',
+  '': '',
+};
 
 /** One row of the forecasts in words. */
 export function describeForecast(row: ForecastRow, units: Units): ForecastWords {
@@ -62,8 +71,11 @@ export function describeForecast(row: ForecastRow, units: Units): ForecastWords 
   const show = (value: number | null): string => (value === null ? '–' : formatAnswer(value, row.unit, units));
   return {
     question,
-    answer: row.value === null ? row.detail || 'none' : show(row.value),
+    answer: show(row.value),
     band: row.lower95 === null && row.upper95 === null ? '' : `${show(row.lower95)} to ${show(row.upper95)}`,
-    beyond: row.beyond_measured_K > 0 ? `${formatSignificant(row.beyond_measured_K, 2)}\u00a0K beyond` : '',
+    method: row.method === 'model_free' ? 'model-free' : 'shared law',
+    words: [row.detail, GOALS[row.goal], ...row.flags.map((code) => `${sentence(flagMeaning(code))}.`)]
+      .filter(Boolean)
+      .join(' '),
   };
 }

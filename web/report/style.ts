@@ -20,7 +20,8 @@ svg { display: block; max-width: 100%; height: auto; }
 td svg, li svg { display: inline-block; vertical-align: -0.25em; }
 figure { margin: 1.2rem 0; }
 figcaption, .small { font-size: 0.8125rem; color: var(--ink-soft); }
-.table-box { overflow-x: auto; }
+.table-box { position: relative; overflow-x: auto; }
+.legend li { display: inline-flex; align-items: center; gap: 0.35rem; margin: 0; }
 table { border-collapse: collapse; width: 100%; font-size: 0.8125rem; line-height: 1.35; margin-bottom: 1rem; }
 caption { text-align: left; padding-bottom: 0.3rem; color: var(--ink-soft); }
 caption strong { color: var(--ink); font-size: 0.9375rem; }

@@ -136,17 +136,14 @@ export function EnergyReport({ rows }: { rows: readonly ParameterRow[] }) {
   );
 }
 
-const GOALS = { met: 'met', not_met: 'not met', cannot_say: 'cannot be said', '': '' };
-
 export function ForecastReport({ rows, units }: { rows: readonly ForecastRow[]; units: Units }) {
   return (
     <ReportTable
-      caption="Forecasts with 95 % bands; below the measured temperatures the safe end comes first."
-      heads={['Question', 'Answer', '95 % band', 'Outside the data', 'Goal', 'Method and flags']}
+      caption="Forecasts with 95 % bands; in words, the pessimistic end comes first."
+      heads={['Question', 'Answer', '95 % band', 'Method', 'In words, with doubts']}
       rows={rows.map((row) => {
-        const { question, answer, band, beyond } = describeForecast(row, units);
-        const method = row.method === 'model_free' ? 'model-free' : 'shared law';
-        return [question, answer, band, beyond, GOALS[row.goal], [method, ...row.flags.map(flagMeaning)].join('; ')];
+        const { question, answer, band, method, words } = describeForecast(row, units);
+        return [question, answer, band, method, words];
       })}
     />
   );

@@ -4,6 +4,7 @@ import { tellableNow } from '../model/next-steps.ts';
 import { jobsPath } from '../routes.ts';
 import { openCampaign } from '../state/live-campaign.ts';
 import { createUploads } from '../state/uploads.ts';
+import { WholeDownloads } from './download.tsx';
 import { FileDesk, Outcomes } from './file-desk.tsx';
 import { InstrumentTable } from './instrument-table.tsx';
 import { Ledger } from './ledger.tsx';
@@ -63,6 +64,7 @@ export function CampaignView({ id }: { id: string }) {
           <h1>{campaign.name}</h1>
           {!isEmpty && <FileDesk uploads={uploads} isEmpty={false} />}
         </div>
+        {status && !isEmpty && <WholeDownloads campaign={campaign} />}
         {status && <Progress status={status} link={live.link.value} jobsHref={jobsPath(campaign.id)} />}
       </div>
       {problem && <ProblemNotice problem={problem} />}

@@ -1,6 +1,6 @@
 import { useSignal } from '@preact/signals';
 import type { ResultTable } from '../../schema/wire/result-tables.ts';
-import { copyTable, downloadTable } from '../client/campaigns.ts';
+import { copyTable, downloadReport, downloadResults, downloadTable } from '../client/campaigns.ts';
 import { asProblem } from '../client/request.ts';
 import type { Campaign } from '../client/rows.ts';
 
@@ -15,6 +15,34 @@ const CopySign = () => (
     <path d="M1 1h7v7h-7zM11 4v7h-7" />
   </svg>
 );
+
+/** Buttons that save all of a campaign: the report to print or attach, and every table in one archive. */
+export function WholeDownloads({ campaign }: { campaign: Campaign }) {
+  const words = useSignal('');
+  const save = (name: string, act: (of: Campaign) => Promise<void>) => async () => {
+    words.value = `Making ${name}…`;
+    try {
+      await act(campaign);
+      words.value = '';
+    } catch (error) {
+      const { detail, action } = asProblem(error);
+      words.value = `${name} was not saved: ${detail} ${action}`;
+    }
+  };
+  return (
+    <div class="downloads">
+      <button type="button" class="quiet" onClick={save('report.html', downloadReport)}>
+        <SaveSign />
+        <span class="unseen">Save </span>report.html
+      </button>
+      <button type="button" class="quiet" onClick={save('results.zip', downloadResults)}>
+        <SaveSign />
+        <span class="unseen">Save </span>results.zip
+      </button>
+      <p role="status">{words.value}</p>
+    </div>
+  );
+}
 
 /** Buttons that save tables as CSV or put them on the clipboard, whole or for one sample. */
 export function Downloads(props: { campaign: Campaign; tables: readonly ResultTable[]; sample?: string }) {

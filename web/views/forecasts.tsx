@@ -5,7 +5,6 @@ import { asProblem, type Problem } from '../client/request.ts';
 import type { Campaign, StatusSample } from '../client/rows.ts';
 import { describeForecast, parseProgramme } from '../model/forecast-words.ts';
 import { units } from '../state/units.ts';
-import { flagMeaning } from '../words.ts';
 import { Downloads } from './download.tsx';
 import { ProblemNotice } from './notice.tsx';
 
@@ -141,12 +140,12 @@ function ForecastTable({ rows }: { rows: readonly ForecastRow[] }) {
           <th scope="col">Answer</th>
           <th scope="col">95 % band</th>
           <th scope="col">Method</th>
-          <th scope="col">Doubts</th>
+          <th scope="col">In words, with doubts</th>
         </tr>
       </thead>
       <tbody>
         {rows.map((row) => {
-          const { question, answer, band, beyond } = describeForecast(row, units.value);
+          const { question, answer, band, method, words } = describeForecast(row, units.value);
           return (
             <tr key={`${row.event} ${row.method} ${question}`}>
               <th scope="row">{question}</th>
@@ -156,8 +155,8 @@ function ForecastTable({ rows }: { rows: readonly ForecastRow[] }) {
               <td class="number" data-head="95 % band">
                 {band}
               </td>
-              <td data-head="method">{row.method === 'model_free' ? 'model-free' : 'shared law'}</td>
-              <td class="table-words">{[beyond, ...row.flags.map(flagMeaning)].filter(Boolean).join('; ')}</td>
+              <td data-head="method">{method}</td>
+              <td class="table-words">{words}</td>
             </tr>
           );
         })}
