@@ -87,7 +87,7 @@ export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<voi
         now,
         ended.map((end) => ({ ...end, scanId: scanOf(rows, end.correction) })),
       ),
-      ...queueReductions(db, job.campaignId, now),
+      ...queueReductions(job.campaignId, now),
     ],
     { instruments: true, samples: true },
   );

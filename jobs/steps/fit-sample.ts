@@ -27,14 +27,14 @@ export async function fitStoredSample(ports: Ports, job: ClaimedJob): Promise<vo
     if (stored) {
       return completeJob(ports, job, (db, now) => [
         ...markFitted(db, sample, stored.fit, stored.eventNumbers),
-        queueNext(db, sample, 'judge-curvature', now),
+        queueNext(sample, 'judge-curvature', now),
       ]);
     }
   }
   const { fit, eventNumbers } = (await readStoredFit(ports, rows, fitKey)) ?? (await fitRows(ports, rows, fitKey));
   await completeJob(ports, job, (db, now) => [
     ...saveFit(db, sample, fitKey, fit, eventNumbers),
-    queueNext(db, sample, 'judge-curvature', now),
+    queueNext(sample, 'judge-curvature', now),
   ]);
 }
 

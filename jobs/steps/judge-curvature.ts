@@ -31,7 +31,7 @@ export async function judgeStoredSample(ports: Ports, job: ClaimedJob): Promise<
     known || (await readStoredJudgement(ports, rows, judgeKey)) || (await judgeRows(ports, rows, facts, judgeKey));
   await completeJob(ports, job, (db, now) => [
     ...(known ? [] : saveJudgement(db, sample, judgeKey, judged)),
-    queueNext(db, sample, 'forecast-sample', now),
+    queueNext(sample, 'forecast-sample', now),
   ]);
 }
 

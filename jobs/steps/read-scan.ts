@@ -41,10 +41,10 @@ export async function readScanFile(ports: Ports, job: ClaimedJob, cache: Columns
   await completeJob(
     ports,
     job,
-    (db, now) => [
-      ...saveReadFile(db, file, { columnsKey, highestRateKPerS, flags }),
-      ...reductions.flatMap((reduction) => saveReduction(db, reduction.scan, reduction.found)),
-      ...queueReductions(db, file.campaignId, now, { fileId: file.id }),
+    (_db, now) => [
+      ...saveReadFile(file, { columnsKey, highestRateKPerS, flags }),
+      ...reductions.flatMap((reduction) => saveReduction(reduction.scan, reduction.found)),
+      ...queueReductions(file.campaignId, now, { fileId: file.id }),
     ],
     { instruments: true, samples: reductions.length > 0 },
   );

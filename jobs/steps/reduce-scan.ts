@@ -13,7 +13,7 @@ import { findReference, type ReferenceProblem, unreadable } from './find-referen
 import { STEP_VERSIONS } from './settings.ts';
 
 /** What a reduction stores on its scan. */
-export type FoundReduction = Parameters<typeof saveReduction>[2];
+export type FoundReduction = Parameters<typeof saveReduction>[1];
 
 /** Step `reduce-scan`: one scan to events and curves, kept as a blob under the hash of everything that went in. */
 export async function reduceStoredScan(ports: Ports, job: ClaimedJob, cache: ColumnsCache): Promise<void> {
@@ -22,7 +22,7 @@ export async function reduceStoredScan(ports: Ports, job: ClaimedJob, cache: Col
   const found = await reduceRows(ports, rows, () => loadColumns(ports, rows.file, cache));
   if (!found) return completeJob(ports, job);
   const check = { samples: true, instruments: rows.scan.role === 'standard' };
-  await completeJob(ports, job, (db) => saveReduction(db, rows.scan, found), check);
+  await completeJob(ports, job, () => saveReduction(rows.scan, found), check);
 }
 
 /** Reduces the scan of these rows or looks the result up; undefined where it has no sample or calibration yet. */

@@ -69,7 +69,7 @@ export function saveUnpacked(
         .set({ archiveId: archive.id })
         .where(and(eq(files.id, id), sql`archive_id is not null`)),
     ),
-    insertJob(db, {
+    insertJob({
       id: createId('job'),
       campaignId: archive.campaignId,
       step: 'assign-scans',

@@ -127,8 +127,8 @@ export function planArrival(campaignId: string, file: ArrivedFile, before: Surro
   const jobId = createId('job');
   // Members of an archive are woken by its write-back.
   const woken = file.archiveId === undefined;
-  const common = (db: LibSQLDatabase): Statement[] => [
-    insertJob(db, {
+  const common = (): Statement[] => [
+    insertJob({
       id: assignId,
       campaignId,
       step: 'assign-scans',
@@ -137,7 +137,7 @@ export function planArrival(campaignId: string, file: ArrivedFile, before: Surro
       delayMs: ASSIGN_DELAY_MS,
       woken,
     }),
-    touchCampaign(db, campaignId, true),
+    touchCampaign(campaignId, true),
   ];
   const supersede = (db: LibSQLDatabase): Statement[] => (live ? supersedeFile(db, live.id) : []);
   if (former && file.kind === 'data') {
@@ -150,8 +150,8 @@ export function planArrival(campaignId: string, file: ArrivedFile, before: Surro
           .set({ superseded: false, archiveId: file.archiveId ?? null })
           .where(eq(files.id, former.id)),
         // It may have been superseded before it was read.
-        insertJob(db, { id: jobId, campaignId, step: 'read-scan', subject: former.id, now, woken }),
-        ...common(db),
+        insertJob({ id: jobId, campaignId, step: 'read-scan', subject: former.id, now, woken }),
+        ...common(),
       ],
       jobIds: [jobId],
       assignId,
@@ -176,9 +176,9 @@ export function planArrival(campaignId: string, file: ArrivedFile, before: Surro
               values (${scanId}, ${campaignId}, ${fileId}, 'waiting', 'received')`,
           ]
         : []),
-      insertJob(db, { id: jobId, campaignId, step, subject: fileId, now, woken }),
+      insertJob({ id: jobId, campaignId, step, subject: fileId, now, woken }),
       // A sheet or an archive queues the assignment itself once it is read.
-      ...(file.kind === 'data' ? common(db) : [touchCampaign(db, campaignId, true)]),
+      ...(file.kind === 'data' ? common() : [touchCampaign(campaignId, true)]),
     ],
     jobIds: [jobId],
     assignId,

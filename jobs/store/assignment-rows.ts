@@ -210,7 +210,6 @@ export function settleSamples(
   if (changed.length > 0) {
     statements.push(
       touchSamples(
-        db,
         campaignId,
         sql.join(
           changed.map((name) => sql`${name}`),

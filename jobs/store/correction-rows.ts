@@ -74,8 +74,8 @@ export async function correctScan(ports: Ports, scanId: string, changes: Correct
             ]),
         db.insert(scanHistory).values({ campaignId, scanId, field, before, after, cause: 'correction', at: now }),
       ]),
-      insertJob(db, { id: createId('job'), campaignId, step: 'assign-scans', subject: campaignId, now }),
-      touchCampaign(db, campaignId, true),
+      insertJob({ id: createId('job'), campaignId, step: 'assign-scans', subject: campaignId, now }),
+      touchCampaign(campaignId, true),
     ]),
   );
   await wakeCampaign(ports, campaignId);

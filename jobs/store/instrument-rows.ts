@@ -105,7 +105,6 @@ export function saveCalibration(
     ...(changed
       ? [
           touchSamples(
-            db,
             row.campaignId,
             sql`select sample from scans where ${corrected} and role = 'sample'
               union select json_extract(body, '$.sample') from sheet_rows where campaign_id = ${row.campaignId}
@@ -117,7 +116,7 @@ export function saveCalibration(
           ),
         ]
       : []),
-    ...queueReductions(db, row.campaignId, now, { instrument: row.instrument }),
+    ...queueReductions(row.campaignId, now, { instrument: row.instrument }),
   ];
 }
 
@@ -131,7 +130,7 @@ export function saveFailedInstrument(
   const waiting = sql`campaign_id = ${campaignId} and status = 'read'
     and instrument = (select instrument from instruments where id = ${instrumentId})`;
   return [
-    touchSamples(db, campaignId, sql`select sample from scans where ${waiting}`),
+    touchSamples(campaignId, sql`select sample from scans where ${waiting}`),
     db.run(sql`update scans set status = 'failed', reason = ${reason} where ${waiting}`),
   ];
 }

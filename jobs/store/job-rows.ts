@@ -1,5 +1,4 @@
 import type { SQL } from 'drizzle-orm';
-import type { LibSQLDatabase } from 'drizzle-orm/libsql';
 import { type SqlText, type Statement, text } from './statement.ts';
 
 /** The steps and their priority, lower first: what decides over many scans goes before the scans, fits before further reading. */
@@ -35,10 +34,7 @@ export interface NewJob {
 }
 
 /** Queues a job unless one for the same step and subject waits already. */
-export function insertJob(
-  _db: LibSQLDatabase,
-  { id, campaignId, step, subject, now, delayMs = 0, woken = false }: NewJob,
-): Statement {
+export function insertJob({ id, campaignId, step, subject, now, delayMs = 0, woken = false }: NewJob): Statement {
   return text`
     insert into jobs (id, campaign_id, step, subject, priority, state, next_try_at, created_at, woken)
     values (${id}, ${campaignId}, ${step}, ${subject}, ${STEP_PRIORITY[step]}, 'queued', ${now + delayMs}, ${now}, ${woken ? 1 : 0})
@@ -67,7 +63,6 @@ export interface DueCheck {
  * write-back that checks again, so nothing waits for ever.
  */
 export function queueDueJobs(
-  _db: LibSQLDatabase,
   campaignId: string,
   now: number,
   { instruments = false, samples = false }: DueCheck,
@@ -126,7 +121,6 @@ function queueFits(campaignId: string, now: number): Statement[] {
 
 /** Queues the reduction of scans that are read, assigned, and standards or on a calibrated instrument: of one file, of one instrument, or all. */
 export function queueReductions(
-  _db: LibSQLDatabase,
   campaignId: string,
   now: number,
   { fileId, instrument }: { fileId?: string; instrument?: string } = {},
@@ -156,7 +150,7 @@ export const queueJudgements = (campaignId: string, now: number): Statement =>
   );
 
 /** Marks samples as having newer inputs than their fit; `names` is a subquery of sample names. */
-export function touchSamples(_db: LibSQLDatabase, campaignId: string, names: SqlText | SQL): Statement {
+export function touchSamples(campaignId: string, names: SqlText | SQL): Statement {
   return text`
     update samples set inputs_revision = inputs_revision + 1,
       state = case when state in ('waiting', 'queued') and fit_key is null then 'waiting' else 'stale' end
@@ -170,7 +164,7 @@ export const touchInstruments = (campaignId: string, names: SqlText): Statement 
     where campaign_id = ${campaignId} and instrument in (${names})`;
 
 /** Counts a change of what the campaign shows; of `inputs` too where a new plan may be due. */
-export function touchCampaign(_db: LibSQLDatabase, campaignId: string, inputs: boolean): Statement {
+export function touchCampaign(campaignId: string, inputs: boolean): Statement {
   return inputs
     ? text`update campaigns set revision = revision + 1, inputs_revision = inputs_revision + 1 where id = ${campaignId}`
     : text`update campaigns set revision = revision + 1 where id = ${campaignId}`;

@@ -87,7 +87,7 @@ export async function retryJob(ports: Ports, jobId: string, lab = LOCAL_LAB): Pr
             then 'done' else 'queued' end
         where id = ${jobId} and state = 'failed'`),
       ...reviveSubject(db, job),
-      touchCampaign(db, job.campaign_id, true),
+      touchCampaign(job.campaign_id, true),
     ]),
   );
   await ports.queue.wake(jobId, 0);
@@ -133,7 +133,7 @@ export async function refitCampaign(ports: Ports, campaignId: string): Promise<n
       db.run(
         sql`update samples set inputs_revision = inputs_revision + 1, state = 'stale' where campaign_id = ${campaignId}`,
       ),
-      ...queueDueJobs(db, campaignId, now, { samples: true }),
+      ...queueDueJobs(campaignId, now, { samples: true }),
     ])) as { rowsAffected: number }[];
     return marked.rowsAffected;
   });

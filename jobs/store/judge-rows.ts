@@ -84,8 +84,7 @@ export async function readSamplePlots(
 
 /** Queues the step that follows for one sample. */
 export const queueNext = (
-  db: LibSQLDatabase,
   { campaignId, id }: SampleRow,
   step: 'judge-curvature' | 'forecast-sample',
   now: number,
-): Statement => insertJob(db, { id: createId('job'), campaignId, step, subject: id, now });
+): Statement => insertJob({ id: createId('job'), campaignId, step, subject: id, now });

@@ -115,16 +115,12 @@ export function completeJob(
   check: DueCheck = {},
 ): Promise<void> {
   const now = ports.clock.now();
-  return writeBack(ports, job, (db) =>
-    guarded(guardOf(job, now), [...results(db, now), ...followUp(db, job, now, check)]),
-  );
+  return writeBack(ports, job, (db) => guarded(guardOf(job, now), [...results(db, now), ...followUp(job, now, check)]));
 }
 
 /** A plan changes what the campaign shows and nothing that another plan would be made from. */
-const followUp = (db: LibSQLDatabase, job: ClaimedJob, now: number, check: DueCheck): Statement[] =>
-  job.step === 'plan-campaign'
-    ? [touchCampaign(db, job.campaignId, false)]
-    : queueDueJobs(db, job.campaignId, now, check);
+const followUp = (job: ClaimedJob, now: number, check: DueCheck): Statement[] =>
+  job.step === 'plan-campaign' ? [touchCampaign(job.campaignId, false)] : queueDueJobs(job.campaignId, now, check);
 
 /** Wait before the next attempt, ms: doubling, ± 50 %, spread by the job's own id so that a burst of failures does not return as a burst. */
 export function backOffMs(jobId: string, attempts: number): number {
@@ -149,21 +145,21 @@ export async function failAttempt(
         text`
           update jobs set state = 'failed', finished_at = ${now}, leased_by = null, leased_until = null, last_error = ${error}
           where id = ${job.id} and generation = ${job.generation} and state = 'running'`,
-        [...subjectFailed(db, now), ...followUp(db, job, now, { instruments: true, samples: true })],
+        [...subjectFailed(db, now), ...followUp(job, now, { instruments: true, samples: true })],
       ),
     );
     return;
   }
   const delayMs = backOffMs(job.id, job.attempts);
   // A newer job on the same subject waits already: it does the work, and only one may wait.
-  await writeBack(ports, job, (db) =>
+  await writeBack(ports, job, () =>
     guarded(
       text`
         update jobs set leased_by = null, leased_until = null, last_error = ${error}, next_try_at = ${now + delayMs}, woken = 0,
           state = case when exists (select 1 from jobs twin where twin.step = jobs.step and twin.subject = jobs.subject and twin.state = 'queued')
             then 'done' else 'queued' end
         where id = ${job.id} and generation = ${job.generation} and state = 'running'`,
-      [touchCampaign(db, job.campaignId, false)],
+      [touchCampaign(job.campaignId, false)],
     ),
   );
 }
@@ -174,9 +170,9 @@ const STORE_TROUBLE_MS = 10_000;
 /** Puts a job back whose stores were full, locked or out of reach: it waits, says why, and no attempt counts. Throws LateWorker when the lease is gone. */
 export async function postponeJob(ports: Ports, job: ClaimedJob, error: string): Promise<void> {
   const delayMs = backOffMs(job.id, 1) + STORE_TROUBLE_MS;
-  await writeBack(ports, job, (db) =>
+  await writeBack(ports, job, () =>
     guarded(putBack(job, ports.clock.now() + delayMs, `waits for the stores: ${error}`), [
-      touchCampaign(db, job.campaignId, false),
+      touchCampaign(job.campaignId, false),
     ]),
   );
 }

@@ -43,9 +43,9 @@ export async function reduceAgain(ports: Ports, campaignId: string, reducedKey: 
   const lost = text`campaign_id = ${campaignId} and reduced_key = ${reducedKey} and status = 'reduced'`;
   await ports.database.write((db) =>
     runBatch(db, [
-      touchSamples(db, campaignId, text`select sample from scans where ${lost} and role = 'sample'`),
+      touchSamples(campaignId, text`select sample from scans where ${lost} and role = 'sample'`),
       text`update scans set status = 'read', inputs_revision = inputs_revision + 1 where ${lost}`,
-      ...queueReductions(db, campaignId, now),
+      ...queueReductions(campaignId, now),
     ]),
   );
   await wakeCampaign(ports, campaignId);

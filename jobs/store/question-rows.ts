@@ -63,7 +63,7 @@ export async function setGoals(ports: Ports, campaignId: string, rows: readonly 
       db.delete(goals).where(eq(goals.campaignId, campaignId)),
       ...rows.map((body, position) => db.insert(goals).values({ campaignId, position, body })),
       queueJudgements(campaignId, ports.clock.now()),
-      touchCampaign(db, campaignId, true),
+      touchCampaign(campaignId, true),
     ]),
   );
   await wakeCampaign(ports, campaignId);

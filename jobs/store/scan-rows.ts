@@ -29,7 +29,6 @@ const scanSamples = (fileId: string) => sql`select sample from scans where file_
 
 /** A data file was read: its scans go on. */
 export function saveReadFile(
-  _db: LibSQLDatabase,
   file: FileRow,
   read: { columnsKey: string; highestRateKPerS: number; flags: Flag[] },
 ): Statement[] {
@@ -55,7 +54,7 @@ export function saveRefusedFile(db: LibSQLDatabase, file: FileRow, reason: strin
       .update(scans)
       .set({ status: 'set_aside', reason })
       .where(and(eq(scans.fileId, file.id), sql`status in ('received', 'read', 'unassigned')`)),
-    touchSamples(db, file.campaignId, scanSamples(file.id)),
+    touchSamples(file.campaignId, scanSamples(file.id)),
   ];
 }
 
@@ -67,7 +66,7 @@ export function saveFailedFile(db: LibSQLDatabase, campaignId: string, fileId: s
       .update(scans)
       .set({ status: 'failed', reason })
       .where(and(eq(scans.fileId, fileId), sql`status in ('received', 'read', 'unassigned')`)),
-    touchSamples(db, campaignId, scanSamples(fileId)),
+    touchSamples(campaignId, scanSamples(fileId)),
   ];
 }
 
@@ -164,7 +163,6 @@ export async function loadSampleRow(
 
 /** Stores what a reduction found, unless the scan's inputs have changed since they were loaded. */
 export function saveReduction(
-  db: LibSQLDatabase,
   scan: ScanRow,
   found: {
     status: 'reduced' | 'set_aside';
@@ -179,7 +177,7 @@ export function saveReduction(
       update scans set status = ${found.status}, reason = ${found.reason}, reduced_key = ${found.reducedKey},
         result = ${json(found.result)}, event_numbers = null, flags = ${json(found.flags)}
       where id = ${scan.id} and inputs_revision = ${scan.inputsRevision} and status = 'read'`,
-    ...(scan.role === 'sample' ? [touchSamples(db, scan.campaignId, text`${scan.sample}`)] : []),
+    ...(scan.role === 'sample' ? [touchSamples(scan.campaignId, text`${scan.sample}`)] : []),
     ...(scan.role === 'standard' ? [touchInstruments(scan.campaignId, text`${scan.instrument}`)] : []),
   ];
 }
@@ -190,6 +188,6 @@ export function saveFailedScan(db: LibSQLDatabase, campaignId: string, scanId: s
       .update(scans)
       .set({ status: 'failed', reason })
       .where(and(eq(scans.id, scanId), eq(scans.status, 'read'))),
-    touchSamples(db, campaignId, sql`select sample from scans where id = ${scanId} and role = 'sample'`),
+    touchSamples(campaignId, sql`select sample from scans where id = ${scanId} and role = 'sample'`),
   ];
 }

@@ -40,6 +40,6 @@ export function saveSheet(
   }
   return [
     ...statements,
-    insertJob(db, { id: createId('job'), campaignId, step: 'assign-scans', subject: campaignId, now }),
+    insertJob({ id: createId('job'), campaignId, step: 'assign-scans', subject: campaignId, now }),
   ];
 }

@@ -32,8 +32,8 @@ export async function withdrawMissingFiles(
     runBatch(db, [
       ...gone.flatMap((row) => supersedeFile(db, row.id)),
       ...gone.map((row) => db.delete(sheetRows).where(eq(sheetRows.fileId, row.id))),
-      insertJob(db, { id: createId('job'), campaignId, step: 'assign-scans', subject: campaignId, now }),
-      touchCampaign(db, campaignId, true),
+      insertJob({ id: createId('job'), campaignId, step: 'assign-scans', subject: campaignId, now }),
+      touchCampaign(campaignId, true),
     ]),
   );
   await wakeCampaign(ports, campaignId);

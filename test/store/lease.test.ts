@@ -25,7 +25,7 @@ afterEach(() => ports.close());
 
 const queue = (id: string, subject = id) =>
   ports.database.write((db) =>
-    runBatch(db, [insertJob(db, { id, campaignId: campaign, step: 'read-scan', subject, now: ports.clock.now() })]),
+    runBatch(db, [insertJob({ id, campaignId: campaign, step: 'read-scan', subject, now: ports.clock.now() })]),
   );
 const claim = (owner: string, limit = 10) => claimJobs(ports, { owner, limit });
 const jobRow = async (id: string) => (await ports.database.read.select().from(jobs).where(eq(jobs.id, id)))[0];
