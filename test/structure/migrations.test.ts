@@ -15,6 +15,12 @@ const journal = JSON.parse(await readFile(join(FOLDER, 'meta/_journal.json'), 'u
   entries: { tag: string; when: number }[];
 };
 
+/** Statements that take away, each with its reason. */
+const TAKES_AWAY: Record<string, string> = {
+  'ALTER TABLE `plans` DROP COLUMN `advice`;':
+    'came and went before the first release: no worker that runs anywhere names it',
+};
+
 describe('migrations', () => {
   // The migrator compares the newest timestamp only: one that is merged late with an older one would be skipped in silence.
   test('have timestamps that only grow, and a file each', async () => {
@@ -28,6 +34,7 @@ describe('migrations', () => {
     for (const { tag } of journal.entries.slice(1)) {
       const sql = await readFile(join(FOLDER, `${tag}.sql`), 'utf8');
       for (const statement of sql.split('--> statement-breakpoint').map((s) => s.trim())) {
+        if (statement in TAKES_AWAY) continue;
         expect(statement, tag).toMatch(/^(CREATE (TABLE|INDEX|UNIQUE INDEX)|ALTER TABLE `\w+` ADD|UPDATE) /);
         // An older worker leaves a new column out of its inserts.
         if (/^ALTER/.test(statement) && /NOT NULL/.test(statement)) expect(statement, tag).toMatch(/DEFAULT/);
