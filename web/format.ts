@@ -58,11 +58,14 @@ export function formatExponent(exponent: number): string {
   return `10${exponent < 0 ? '⁻' : ''}${digits}`;
 }
 
-/** Digits of an uncertainty worth showing: two when it starts with 1 or 2, else one (common practice, no source). */
+/**
+ * Decimals of an uncertainty worth showing, negative for tens and hundreds: two digits when it starts with 1 or 2, else one (common
+ * practice, no source).
+ */
 function spreadDecimals(spread: number): number {
   const exponent = Math.floor(Math.log10(spread));
   const leading = Number((spread / 10 ** exponent).toPrecision(2));
-  return Math.max(0, -exponent + (leading < 3 ? 1 : 0));
+  return -exponent + (leading < 3 ? 1 : 0);
 }
 
 export interface Estimate {
@@ -78,12 +81,20 @@ export function formatEstimate(value: number, lower: number | null, upper: numbe
   const above = upper - value;
   const larger = Math.max(below, above);
   if (!(larger > 0)) return { value: formatSignificant(value, 4), spread: '' };
-  const decimals = spreadDecimals(larger);
+  const exponent = value === 0 ? 0 : Math.floor(Math.log10(Math.abs(value)));
+  if (exponent >= 5 || exponent < -3) {
+    const factor = 10 ** -exponent;
+    const scaled = formatEstimate(value * factor, lower * factor, upper * factor);
+    return { value: `(${scaled.value}`, spread: `${scaled.spread})\u00a0×\u00a0${formatExponent(exponent)}` };
+  }
+  const places = spreadDecimals(larger);
+  const decimals = Math.max(0, places);
+  const round = (number: number): number => (places < 0 ? Math.round(number * 10 ** places) / 10 ** places : number);
   const lopsided = Math.min(below, above) < larger / 1.5;
   const spread = lopsided
-    ? `+${formatFixed(above, decimals)} ${MINUS}${formatFixed(below, decimals)}`
-    : `±\u00a0${formatFixed((above + below) / 2, decimals)}`;
-  return { value: formatFixed(value, decimals), spread };
+    ? `+${formatFixed(round(above), decimals)} ${MINUS}${formatFixed(round(below), decimals)}`
+    : `±\u00a0${formatFixed(round((above + below) / 2), decimals)}`;
+  return { value: formatFixed(round(value), decimals), spread };
 }
 
 /** A duration in words, for the time left: `40 s`, `3 min`, `2 h 10 min`. */

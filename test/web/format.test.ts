@@ -62,3 +62,14 @@ test('powers of ten', () => {
 test('durations', () => {
   expect([0.2, 40, 200, 7800].map(formatDuration)).toEqual(['1 s', '40 s', '3 min', '2 h 10 min']);
 });
+
+test('an interval decides the digits of large and small numbers too', () => {
+  const shown = (value: number, half: number): string => {
+    const { value: text, spread } = formatEstimate(value, value - half, value + half);
+    return `${text} ${spread}`.replaceAll('\u00a0', ' ').replaceAll('\u202f', ' ');
+  };
+  expect(shown(4919, 439)).toBe('4900 ± 400');
+  expect(shown(4919, 139)).toBe('4920 ± 140');
+  expect(shown(30_822_886_236, 3_476_253_839)).toBe('(3.1 ± 0.3) × 10¹⁰');
+  expect(shown(0.0001, 0.00002)).toBe('(1.00 ± 0.20) × 10⁻⁴');
+});

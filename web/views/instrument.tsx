@@ -156,7 +156,7 @@ function Runs({ campaignId, scans }: { campaignId: string; scans: readonly ScanR
                   )}
                 </th>
                 <td data-head="scans">{new Set(own.map((scan) => `${scan.file} ${scan.segment}`)).size}</td>
-                <td class="number" data-head="rates">
+                <td class="number table-words" data-head="rates">
                   {rates
                     .sort((a, b) => a - b)
                     .map((rate) => formatRate(rate, units.value))
