@@ -7,7 +7,7 @@ import { LOCAL_LAB } from './campaigns.ts';
 import { type Corrections, standingCorrections } from './correction-rows.ts';
 import { readReducedOrRevive } from './lost-blobs.ts';
 import type { ResultRow } from './tables/index.ts';
-import { loadScanRecords, scanRowsOf } from './tables/scan-table.ts';
+import { loadScanRecord, scanRowsOf } from './tables/scan-table.ts';
 
 export interface ScanView {
   id: string;
@@ -29,7 +29,7 @@ export async function findScan(ports: Ports, scanId: string, lab = LOCAL_LAB): P
     .from(scans)
     .innerJoin(campaigns, eq(campaigns.id, scans.campaignId))
     .where(and(eq(scans.id, scanId), eq(campaigns.lab, lab)));
-  const [scan] = owner ? await loadScanRecords(ports, { scanId }) : [];
+  const scan = owner ? await loadScanRecord(ports, scanId) : undefined;
   if (!owner || !scan) return undefined;
   return {
     id: scanId,

@@ -1,3 +1,4 @@
+import { footprintStudy } from './footprint.ts';
 import { forecastStudy } from './forecast.ts';
 import { forecastAdviceStudy } from './forecast-advice.ts';
 import { generatorsAgree } from './generators-agree.ts';
@@ -45,6 +46,10 @@ export const STUDIES: Record<string, { about: string; run: Study }> = {
     about:
       '8 senders, 3 workers with clocks apart, one killed every few seconds, odd deliveries: --count campaigns of 50 scans',
     run: soakStudy,
+  },
+  footprint: {
+    about: 'start-up and memory of the built serve, empty and with --count scans (10 000) in the database',
+    run: footprintStudy,
   },
   serverless: {
     about: 'the demo campaign through the real serverless runtime beside Node; memory, CPU and time a step',

@@ -2,7 +2,7 @@ import { CONVERSION_GRID } from '../../../schema/wire/reduced.ts';
 import type { Ports } from '../../ports/index.ts';
 import { readReducedOrRevive } from '../lost-blobs.ts';
 import type { ResultRow } from './result-row.ts';
-import { eventNumberOf, loadScanRecords } from './scan-table.ts';
+import { eventNumberOf, readScanRecords } from './scan-table.ts';
 
 /** The reduced curves on the conversion grid, in the order of scans.csv; one scan's blob is in memory at a time. */
 export async function* readConversionTable(
@@ -10,7 +10,7 @@ export async function* readConversionTable(
   campaignId: string,
   sample?: string,
 ): AsyncGenerator<ResultRow> {
-  for (const scan of await loadScanRecords(ports, { campaignId, sample })) {
+  for await (const scan of readScanRecords(ports, campaignId, sample)) {
     if (scan.status !== 'reduced' || scan.reducedKey === null) continue;
     const outcome = await readReducedOrRevive(ports, campaignId, scan.reducedKey);
     if (!outcome?.ok) continue;

@@ -1,10 +1,11 @@
-import { and, eq, sql } from 'drizzle-orm';
+import { and, eq, inArray, sql } from 'drizzle-orm';
 import { files, scans } from '../../../schema/tables/index.ts';
 import type { Flag } from '../../../schema/wire/flags.ts';
 import type { PeakSheetRow } from '../../../schema/wire/forecasts.ts';
 import type { ReducedSummary } from '../../../schema/wire/reduced-blob.ts';
 import type { Ports } from '../../ports/index.ts';
 import { loadPeakRows } from '../fit-rows.ts';
+import { allRows, text } from '../statement.ts';
 import type { ResultRow } from './result-row.ts';
 
 export interface ScanRecord {
@@ -36,43 +37,52 @@ export const compareCells = (a: string | number | null, b: string | number | nul
   return a < b ? -1 : 1;
 };
 
-/** Scans of a campaign, or one of them, in the order of scans.csv: by path, bytes, segment, sample, instrument. */
-export async function loadScanRecords(
-  ports: Pick<Ports, 'database'>,
-  where: { campaignId: string; sample?: string } | { scanId: string },
-): Promise<ScanRecord[]> {
+const RECORD = {
+  scanId: scans.id,
+  fileId: files.id,
+  path: files.path,
+  sha256: files.sha256,
+  bytes: files.bytes,
+  blobKey: files.blobKey,
+  sample: scans.sample,
+  instrument: scans.instrument,
+  role: scans.role,
+  segment: scans.segment,
+  sheetRow: scans.sheetRow,
+  status: scans.status,
+  reason: scans.reason,
+  reducedKey: scans.reducedKey,
+  result: scans.result,
+  eventNumbers: scans.eventNumbers,
+  flags: scans.flags,
+  fileFlags: files.flags,
+};
+
+/** Records in memory at a time: a page of the table needs one such chunk, whatever the size of the campaign. */
+const CHUNK = 200;
+
+export async function loadScanRecord(ports: Pick<Ports, 'database'>, scanId: string): Promise<ScanRecord | undefined> {
   const rows: ScanRecord[] = await ports.database.read
-    .select({
-      scanId: scans.id,
-      fileId: files.id,
-      path: files.path,
-      sha256: files.sha256,
-      bytes: files.bytes,
-      blobKey: files.blobKey,
-      sample: scans.sample,
-      instrument: scans.instrument,
-      role: scans.role,
-      segment: scans.segment,
-      sheetRow: scans.sheetRow,
-      status: scans.status,
-      reason: scans.reason,
-      reducedKey: scans.reducedKey,
-      result: scans.result,
-      eventNumbers: scans.eventNumbers,
-      flags: scans.flags,
-      fileFlags: files.flags,
-    })
+    .select(RECORD)
     .from(scans)
     .innerJoin(files, eq(files.id, scans.fileId))
-    .where(
-      'scanId' in where
-        ? eq(scans.id, where.scanId)
-        : and(
-            eq(scans.campaignId, where.campaignId),
-            where.sample === undefined ? undefined : eq(scans.sample, where.sample),
-          ),
-    );
-  return rows.sort(
+    .where(eq(scans.id, scanId));
+  return rows[0];
+}
+
+/** Scans of a campaign in the order of scans.csv: by path, bytes, segment, sample, instrument. */
+export async function* readScanRecords(
+  ports: Pick<Ports, 'database'>,
+  campaignId: string,
+  sample?: string,
+): AsyncGenerator<ScanRecord> {
+  const order = await allRows<Pick<ScanRecord, 'scanId' | 'path' | 'sha256' | 'segment' | 'sample' | 'instrument'>>(
+    ports.database.read,
+    text`
+      select s.id as scanId, path, sha256, segment, sample, instrument from scans s join files f on f.id = file_id
+      where s.campaign_id = ${campaignId} and ${sample === undefined ? text`1` : text`sample = ${sample}`}`,
+  );
+  order.sort(
     (a, b) =>
       compareCells(a.path, b.path) ||
       compareCells(a.sha256, b.sha256) ||
@@ -80,6 +90,20 @@ export async function loadScanRecords(
       compareCells(a.sample, b.sample) ||
       compareCells(a.instrument, b.instrument),
   );
+  for (let at = 0; at < order.length; at += CHUNK) {
+    const ids = order.slice(at, at + CHUNK).map((row) => row.scanId);
+    const rows: ScanRecord[] = await ports.database.read
+      .select(RECORD)
+      .from(scans)
+      .innerJoin(files, eq(files.id, scans.fileId))
+      .where(inArray(scans.id, ids));
+    const byId = new Map(rows.map((row) => [row.scanId, row]));
+    // One that was removed meanwhile is left out.
+    for (const id of ids) {
+      const row = byId.get(id);
+      if (row) yield row;
+    }
+  }
 }
 
 /** Files without a scan that must still be seen: archives that could not be unpacked. */
@@ -199,16 +223,20 @@ const peakRowOf = ({ path, sha256, row }: { path: string; sha256: string; row: P
   replicate: row.replicate ?? null,
 });
 
-export async function readScanTable(
+/** Rows of scans.csv: those of scans, of peaks.csv and of archives that could not be unpacked, together in the order of paths. */
+export async function* readScanTable(
   ports: Pick<Ports, 'database'>,
   campaignId: string,
   sample?: string,
-): Promise<ResultRow[]> {
-  const rows = (await loadScanRecords(ports, { campaignId, sample })).flatMap(scanRowsOf);
-  const peaks = (await loadPeakRows(ports, campaignId, sample)).map(peakRowOf);
-  if (sample !== undefined) return [...rows, ...peaks];
+): AsyncGenerator<ResultRow> {
+  const others = (await loadPeakRows(ports, campaignId, sample)).map(peakRowOf);
+  if (sample === undefined) others.push(...(await loadRefusedArchives(ports, campaignId)));
   // The sort is stable: rows of one file keep their order.
-  return [...rows, ...peaks, ...(await loadRefusedArchives(ports, campaignId))].sort((a, b) =>
-    compareCells(a.file as string, b.file as string),
-  );
+  others.sort((a, b) => compareCells(a.file as string, b.file as string));
+  let next = 0;
+  for await (const scan of readScanRecords(ports, campaignId, sample)) {
+    while (next < others.length && compareCells(others[next].file as string, scan.path) < 0) yield others[next++];
+    yield* scanRowsOf(scan);
+  }
+  yield* others.slice(next);
 }
