@@ -44,7 +44,7 @@ test('answers under its own port only', async () => {
 });
 
 test('refuses an address that other machines can reach', async () => {
-  await expect(startServer({ ports: api.ports, port: 0, host: '0.0.0.0' })).rejects.toThrow(/no access tokens/);
+  await expect(startServer({ ports: api.ports, port: 0, host: '0.0.0.0' })).rejects.toThrow(/no access token exists/);
 });
 
 test('a port that is taken is an error of the caller', async () => {
