@@ -127,7 +127,7 @@ async function takeFiles(
   for (const [i, file] of files.entries()) {
     terminal.interrupt.throwIfAborted();
     terminal.progress(progressBar(i, files.length, 'files taken in'));
-    const receipt = await receiveFile(ports, campaign.id, file.path, openBody(file), file.bytes);
+    const receipt = await receiveFile(ports, campaign.id, file.path, await openBody(file), file.bytes);
     if (receipt.outcome !== 'refused') continue;
     const reason = receipt.reason ?? 'refused';
     refused.push({ file: file.path, reason });
@@ -136,7 +136,11 @@ async function takeFiles(
   return refused;
 }
 
-function openBody(file: FolderFile): ReadableStream<Uint8Array> {
+/** Files up to this size are read whole: a stream for each of many small files takes longer than the file, bytes. */
+const READ_WHOLE_BYTES = 4e6;
+
+async function openBody(file: FolderFile): Promise<ReadableStream<Uint8Array> | Uint8Array> {
+  if (file.bytes <= READ_WHOLE_BYTES) return new Uint8Array(await readFile(file.location));
   return Readable.toWeb(createReadStream(file.location)) as ReadableStream<Uint8Array>;
 }
 
