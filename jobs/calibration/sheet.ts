@@ -1,8 +1,8 @@
 import type { InstrumentCalibration, InstrumentSheetRow } from '../../schema/wire/scan.ts';
 
-/** Rate from which an instrument of unstated kind is taken for a chip, K/s (METHODS 1: furnaces to about 8, chips from about 10). */
+/** Rate from which an instrument of unstated kind is taken for a chip, K/s (furnaces to about 8, chips from about 10). */
 const CHIP_FROM_K_PER_S = 10;
-/** Prior of an instrument that says nothing about itself (METHODS 3). */
+/** Prior of an instrument that says nothing about itself. */
 const PRIOR_OFFSET_SE_K = { furnace: 0.5, chip: 1 } as const;
 const PRIOR_LAG_SCALE_S = { furnace: 3, chip: 0.3e-3 } as const;
 /** Error of a lag that the sheet gives without one, as a fraction of it: about what a standard of other mass and contact leaves. */

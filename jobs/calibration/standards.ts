@@ -23,13 +23,13 @@ const LEAST_SCATTER_K = 0.003;
 const SCATTER_K = 0.05;
 /** A linear offset needs metals this far apart and this many scans more than parameters. */
 const SLOPE = { apartK: 40, spare: 2 };
-/** Another mass and contact than the standard's: the error of the lag is this much wider (METHODS 3). */
+/** Another mass and contact than the standard's: the error of the lag is this much wider. */
 const OTHER_MASS = 1.3;
 /** A tail is a response where it is this much slower than the standard's own contact lets it be. */
 const SLOWER_THAN_CONTACT = 1.3;
 
 /**
- * Offset, lag and heat factor of an instrument: T_onset − T_melting = a + b (T − T̄) + τ β by weighted least squares (METHODS 3), b only
+ * Offset, lag and heat factor of an instrument: T_onset − T_melting = a + b (T − T̄) + τ β by weighted least squares, b only
  * with metals far enough apart, τ only with two distinct rates (else the sheet's or the prior's is kept). The covariance knows the
  * scatter of the residuals and is widened by Student's t ÷ normal quantile, so that ± 1.96 standard errors hold 95 %.
  * @param highestRateKPerS of the instrument's scans, K/s
@@ -177,7 +177,7 @@ function heatFactorOf(observations: readonly StandardObservation[]): { heatFacto
 }
 
 /**
- * First-order response from the tails behind the peaks, which fall as exp(−t/τ_r) (METHODS 4.7), where they cannot be the standard's own
+ * First-order response from the tails behind the peaks, which fall as exp(−t/τ_r), where they cannot be the standard's own
  * contact: that falls with R_th m c_p, R_th being the leading edge's resistance.
  */
 function responseFromTails(observations: readonly StandardObservation[], lagS: number): number | undefined {

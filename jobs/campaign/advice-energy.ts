@@ -18,7 +18,7 @@ interface Point {
 
 /**
  * The 95 % width of E at α = 0.5, J/mol, by the linearised covariance of the fit that reports it: a line of ln β against 1/T with weights 1/σ² by
- * instrument; every scan's own scatter, and the offset and lag of each instrument shared by its scans (METHODS 11).
+ * instrument; every scan's own scatter, and the offset and lag of each instrument shared by its scans.
  */
 export class EnergyPrecision {
   private readonly points: Point[];
@@ -81,6 +81,6 @@ export class EnergyPrecision {
   }
 }
 
-/** Full width at half maximum of a JMAK event, K: 2.446 R T²/(n E) (METHODS 5). */
+/** Full width at half maximum of a JMAK event, K: 2.446 R T²/(n E). */
 export const eventWidthK = (temperatureK: number, energyJPerMol: number, exponent: number): number =>
   (2.446 * GAS_CONSTANT * temperatureK ** 2) / (exponent * energyJPerMol);

@@ -83,7 +83,7 @@ export interface LawGoal {
 
 /**
  * The 95 % width of anything read from the shared law, from the linearised covariance of its fit (lags free or calibrated as that fit had them,
- * offsets with their priors): one more scan is one more row (METHODS 12).
+ * offsets with their priors): one more scan is one more row.
  */
 export class LawPrecision {
   private readonly d: LawData;

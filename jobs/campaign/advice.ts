@@ -24,7 +24,7 @@ const UNITS: Record<AdviceRow['goal'], AdviceRow['unit']> = { energy: 'kJ/mol', 
 type Width = (more: readonly Candidate[]) => number | undefined;
 
 /**
- * The three scans that are expected to narrow each goal most, from the linearised covariance with one more row (METHODS 12). Rows by goal in
+ * The three scans that are expected to narrow each goal most, from the linearised covariance with one more row. Rows by goal in
  * the order asked, then by rank. A goal that the scans cannot give at all has no rows.
  */
 export function adviseScans(input: AdviceInput): AdviceRow[] {

@@ -10,7 +10,7 @@ import type { AdviceGoal } from './advice-input.ts';
 const USUAL_EXPONENT = 3;
 
 /**
- * Forecasts, critical rates and advice of one sample, event by event, from what fit and verdict left (METHODS 10, 12). Pure and in a fixed
+ * Forecasts, critical rates and advice of one sample, event by event, from what fit and verdict left. Pure and in a fixed
  * order; an event that gives neither a model-free description nor a shared law has no forecast, and may still have advice.
  */
 export function forecastSample(input: SampleForecastInput): SampleForecastResult {

@@ -17,7 +17,7 @@ export interface CampaignPlan {
 }
 
 /**
- * Which decades of heating rate each sample has been measured in, and what is missing (METHODS 12).
+ * Which decades of heating rate each sample has been measured in, and what is missing.
  *
  * Coverage: one row a sample, decade [10^k, 10^(k+1)) of K/s and instrument, in that order. Rates within 2 % of each
  * other are one rate, shown by the median of their scans; a rate stays whole on one side of a decade's edge.

@@ -9,7 +9,7 @@ export interface PlannedInstrument {
   standards: number;
 }
 
-/** Rates that each kind of calorimeter usually reaches, K/s (METHODS 1). */
+/** Rates that each kind of calorimeter usually reaches, K/s. */
 export const KIND_RATES: Record<InstrumentKind, readonly [number, number]> = {
   furnace: [0.01, 8],
   chip: [10, 50_000],

@@ -1,6 +1,6 @@
 import type { CoverageScan } from '../../schema/wire/campaign.ts';
 
-/** Two rates closer than this, as a fraction, count as one: METHODS 12, and the bound of `rate-off-nominal`. */
+/** Two rates closer than this, as a fraction, count as one, which is also the bound of `rate-off-nominal`. */
 export const SAME_RATE = 0.02;
 
 /** Scans of one sample at one rate. */

@@ -3,10 +3,10 @@ import type { FlagCode } from '../../schema/wire/flags.ts';
 import { chooseInstrument, type InstrumentReach, onInstrument } from './instrument-choice.ts';
 import { compareText, decadeOf, decadeStart, type RateGroup, rateText, SAME_RATE } from './rates.ts';
 
-/** Fewest distinct rates that a fit accepts, and how many are recommended (METHODS 12). */
+/** Fewest distinct rates that a fit accepts, and how many are recommended. */
 export const FEWEST_RATES = 3;
 export const RECOMMENDED_RATES = 5;
-/** Smallest span of rates, as a factor (METHODS 12). */
+/** Smallest span of rates, as a factor. */
 export const LEAST_SPAN = 10;
 
 interface SampleView {

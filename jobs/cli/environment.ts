@@ -7,7 +7,7 @@ import type { Observer, Ports } from '../ports/index.ts';
 /** Data folder of the server verbs: RATESPAN_DATA, else ./data. */
 export const dataFolder = (): string => resolve(process.env.RATESPAN_DATA || 'data');
 
-/** Stores as the environment names them (INTERFACES, "Setting up"). */
+/** Stores as the environment names them. */
 export function storesFromEnvironment(): NodePortsOptions {
   return {
     dataDir: dataFolder(),

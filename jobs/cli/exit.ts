@@ -1,4 +1,4 @@
-/** Exit codes of the command line (INTERFACES). */
+/** Exit codes of the command line. */
 export const EXIT = { done: 0, failed: 1, usage: 2, nothingFitted: 3, server: 4, interrupted: 130 } as const;
 
 /** Wrong usage, or a folder that cannot be read: one clear sentence, exit 2. */

@@ -12,7 +12,7 @@ export const HEADLINES = [
 
 export type Headline = (typeof HEADLINES)[number];
 
-/** True for the row with empty variant, empty conversion and temperature and the Monte Carlo interval (INTERFACES, parameters.csv). */
+/** True for the row with empty variant, empty conversion and temperature and the Monte Carlo interval. */
 export function isHeadline(row: ResultRow): boolean {
   return (
     row.interval === 'monte_carlo' &&

@@ -7,7 +7,7 @@ import { conversionOf } from './kinetics.ts';
 import { type Ask, decadesBetween, prepareQuestion } from './questions.ts';
 import { describeForecast } from './wording.ts';
 
-/** Two methods that differ by more than this factor in time disagree (METHODS 10). */
+/** Two methods that differ by more than this factor in time disagree. */
 const DISAGREEMENT = 3;
 
 /** What a goal asks beside the question: a time that must pass, or a conversion that must not be exceeded. */
@@ -132,7 +132,7 @@ function printed(question: ForecastQuestion, { value, lower, upper }: Band): Sho
   return { value: within(shown.value), lower95: within(shown.lower95), upper95: within(shown.upper95), unit: 's' };
 }
 
-/** Met when the pessimistic end of the band meets the limit, not met when the optimistic end misses it (INTERFACES). */
+/** Met when the pessimistic end of the band meets the limit, not met when the optimistic end misses it. */
 function judge(question: ForecastQuestion, shown: Shown, limit: Limit): GoalAnswer | '' {
   const { lower95, upper95 } = shown;
   if (question.question === 'time_to_conversion' && limit.timeS !== undefined) {

@@ -12,7 +12,7 @@ const LEAST_DRAWS = 20;
 const LEAST_SHARE = 0.9;
 
 /**
- * Estimate ± t(0.975, n − p) × spread of the draws (METHODS 11). No ends where too few draws answer: a band is never made of the draws that happened to.
+ * Estimate ± t(0.975, n − p) × spread of the draws. No ends where too few draws answer: a band is never made of the draws that happened to.
  */
 export function bandOf(value: number, drawn: ArrayLike<number>, degreesOfFreedom: number): Band {
   let [count, sum] = [0, 0];

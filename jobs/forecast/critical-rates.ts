@@ -8,7 +8,7 @@ import { accumulate, COARSE, FINE, type GaussRule, layPanels, lnIntegral } from 
 import { drawnParameters, type LawParameters, type RateCurve, sharedRateCurve } from './rate-curve.ts';
 import { findFastest } from './shared-kinetics.ts';
 
-/** Conversion that counts as crystallised unless another is set (METHODS 10). */
+/** Conversion that counts as crystallised unless another is set. */
 export const CRITICAL_CONVERSION = 0.01;
 
 export interface CriticalRates {
@@ -23,7 +23,7 @@ export interface CriticalRates {
 
 /**
  * The rate at which heating from the cold glass to melting, or cooling back, just reaches a conversion X:
- * β_c = |∫K dT|/[−ln(1 − X)]^(1/n) over all temperatures below melting (METHODS 10; the nose formula is never used). The two have one value,
+ * β_c = |∫K dT|/[−ln(1 − X)]^(1/n) over all temperatures below melting (the nose formula is never used). The two have one value,
  * but heating data count the nuclei that the quench left, so the cooling rate is an indication only. Undefined without a melting temperature.
  */
 export function findCriticalRates(source: ForecastSource, conversion = CRITICAL_CONVERSION): CriticalRates | undefined {
@@ -115,7 +115,7 @@ export function criticalRateRows(
   );
   const parameters = [heating];
   if (found.coolingKPerS) parameters.push(row('critical_cooling_rate', found.coolingKPerS, codes));
-  // INTERFACES leaves the conversion of these rows empty; only another than the usual one is said.
+  // The conversion of these rows is empty; only another than the usual one is said.
   if (conversion === CRITICAL_CONVERSION) for (const r of parameters) r.conversion = null;
   return { parameters, flags: found.flags };
 }

@@ -1,4 +1,4 @@
-/** From the parameters of a fit to times and temperatures (METHODS 10). Every output carries FORECAST_CAUTION of schema/wire/forecasts.ts. */
+/** From the parameters of a fit to times and temperatures. Every output carries FORECAST_CAUTION of schema/wire/forecasts.ts. */
 export { answerQuestion, createForecaster, type Limit } from './answer.ts';
 export { type CriticalRates, criticalRateRows, findCriticalRates } from './critical-rates.ts';
 export { type DiagramLine, drawHeating, drawTransformation } from './diagrams.ts';

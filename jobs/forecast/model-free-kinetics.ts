@@ -10,7 +10,7 @@ const STEP = 0.01;
 const LAST = 0.99;
 
 /**
- * The isoconversional prediction (Vyazovkin & Sbirrazzuoli 2006, Macromol. Rapid Commun. 27:1515; METHODS 10): each segment of conversion
+ * The isoconversional prediction (Vyazovkin & Sbirrazzuoli 2006, Macromol. Rapid Commun. 27:1515): each segment of conversion
  * takes the same ∫exp(−E_α/RT) dt along any programme. At a constant temperature t_α = Σ_k exp[lnStep_k + (E_k/R)(1/T − x0)].
  * @param energy J/mol, one a segment   @param lnStep one a segment
  */

@@ -31,7 +31,7 @@ export const drawnParameters = (draws: SharedLawDraws, d: number): LawParameters
 });
 
 /**
- * The shared law with E_loc held at its value at `frozenBelowK` for all lower temperatures (METHODS 10: a glass is roughly Arrhenius; a bend
+ * The shared law with E_loc held at its value at `frozenBelowK` for all lower temperatures (a glass is roughly Arrhenius; a bend
  * carried on below it is dangerously optimistic) and, where melting data exist, the driving force above the measured temperatures.
  */
 export function sharedRateCurve(law: SharedLaw, p: LawParameters, melting?: MeltingData): RateCurve {

@@ -2,7 +2,7 @@ import type { ForecastQuestion } from '../../schema/wire/forecasts.ts';
 import { kelvinFromCelsius } from '../../schema/wire/units.ts';
 import { checkProgramme } from './programme.ts';
 
-/** A question as the API's body and the command line put it (INTERFACES, POST /samples/:id/forecasts). */
+/** A question as the API's body and the command line put it. */
 export interface ForecastRequest {
   temperature_C?: number;
   conversion?: number;

@@ -4,7 +4,7 @@ import type { RateCurve } from './rate-curve.ts';
 
 /**
  * JMAK with K(T) of the shared law: α = 1 − exp[−(∫K dt)^n], so ln ∫K dt = ln X/n, and t = [−ln(1 − α)]^(1/n)/K(T) at a constant
- * temperature (METHODS 10).
+ * temperature.
  * @param fastestK temperature of the largest K, where the driving force makes one
  */
 export function sharedKinetics(curve: RateCurve, fastestK: number = TEMPERATURE_RANGE.highest): Kinetics {

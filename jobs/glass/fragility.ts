@@ -8,7 +8,7 @@ import { LOG10_AT_GLASS_TRANSITION, LOG10_INFINITY } from './viscosity.ts';
 /** The rate at which Tg and m are stated, K/s: 10 K/min, common practice. */
 export const STATED_RATE_K_PER_S = 10 / 60;
 /**
- * One line reads m too low (METHODS 9: a true 90 as 77 over 0.1 – 10⁴ K/s; by 2 to 5 over 0.05 – 5 K/s). Over more than two decades the
+ * One line reads m too low (a true 90 as 77 over 0.1 – 10⁴ K/s; by 2 to 5 over 0.05 – 5 K/s). Over more than two decades the
  * bend is fitted; between one and two, which cannot carry it, it is that of the MYEGA law with the same Tg and m.
  */
 const BENT_FROM_DECADES = 2;

@@ -25,7 +25,7 @@ export interface GlassState {
   flags: Flag[];
 }
 
-/** Fragility and viscosity of a sample from its glass transitions, its viscosity table and its sheet (METHODS 9). Rows carry event 0: they belong to no event. */
+/** Fragility and viscosity of a sample from its glass transitions, its viscosity table and its sheet. Rows carry event 0: they belong to no event. */
 export function readGlass(sample: string, facts: GlassFacts): GlassState {
   const flags: Flag[] = [];
   const rows: ParameterRow[] = [];

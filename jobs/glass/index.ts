@@ -11,7 +11,7 @@ import { judgeEvent } from './verdict/judge-event.ts';
 export { fitGordonTaylor, type GordonTaylor, glassTransitionOfMixture } from './composition.ts';
 
 /**
- * Whether the bend of a sample's Kissinger plot is the material's or an instrument's, and the glass layer on top (METHODS 8, 9). For each
+ * Whether the bend of a sample's Kissinger plot is the material's or an instrument's, and the glass layer on top. For each
  * event: the verdict with all its evidence, the law over all scans with its draws, local energies, decoupling, stability numbers, plots.
  * Pure: the same input gives the same numbers, whatever order the scans came in.
  */

@@ -45,7 +45,7 @@ export function makeParameter(
 
 const ENERGY_POINTS = 5;
 
-/** E_loc at five temperatures from the lowest to the highest measured, evenly in 1/T, with the draws' intervals (METHODS 11). */
+/** E_loc at five temperatures from the lowest to the highest measured, evenly in 1/T, with the draws' intervals. */
 export function localEnergyRows(base: RowBase, shared: SharedFit, flags: FlagCode[]): ParameterRow[] {
   const { law, draws, degrees } = shared;
   const t = studentQuantile(0.975, degrees);

@@ -1,4 +1,4 @@
-/** Unpacking zip and gzip files into members that are read like files of their own (INTERFACES, "A campaign folder"). */
+/** Unpacking zip and gzip files into members that are read like files of their own. */
 import { type Flag, flag, quote } from '../../schema/wire/flags.ts';
 import { gunzipLimited } from './gzip.ts';
 import {

@@ -1,6 +1,6 @@
 /** Finds where a signal sits at the end of its range while the rows around it vary. */
 
-/** Fewest equal rows in succession (METHODS 2: clipped signals). */
+/** Fewest equal rows in succession (clipped signals). */
 const SHORTEST_RUN = 5;
 /** Rows looked at on either side of a run. */
 const NEIGHBOURS = 5;

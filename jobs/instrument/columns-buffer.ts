@@ -1,6 +1,6 @@
 /** Three growing columns and the way back from a row to its line in the file. */
 
-/** Rows a file may have (INTERFACES, "Limits"). */
+/** Rows a file may have. */
 export const ROW_LIMIT = 5_000_000;
 
 export class ColumnsBuffer {

@@ -1,4 +1,4 @@
-/** Sheets without scans: tables of temperatures and viscosities, goals, programmes (INTERFACES, "A campaign folder"), in SI. */
+/** Sheets without scans: tables of temperatures and viscosities, goals, programmes, in SI. */
 import { type Flag, flag } from '../../schema/wire/flags.ts';
 import type { GoalRow, PeakSheetRow, ProgrammeTable, ViscositySheetRow } from '../../schema/wire/forecasts.ts';
 import { above, any, counted, fraction, name, notBelow, rate, text, withLine } from './sheet-columns.ts';

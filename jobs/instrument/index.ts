@@ -1,4 +1,4 @@
-/** From the bytes of instrument files, sheets and archives to columns and rows in SI (METHODS 2). */
+/** From the bytes of instrument files, sheets and archives to columns and rows in SI. */
 
 export { type ArchiveMember, unpackArchive } from './archive.ts';
 export { readGoalSheet, readPeaksSheet, readProgram, readViscositySheet } from './further-sheets.ts';

@@ -13,7 +13,7 @@ export interface UnpackLimits {
   ratio: number;
 }
 
-/** Limits of INTERFACES ("Limits") for an ordinary server. */
+/** Limits for an ordinary server. */
 export const ARCHIVE_LIMITS: UnpackLimits = { unpackedBytes: 1_000_000_000, ratio: 200 };
 
 /** An archive that is not unpacked at all: what was found, and what to do. */

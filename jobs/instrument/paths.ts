@@ -1,4 +1,4 @@
-/** What a path in a campaign says (INTERFACES, "A campaign folder" and the rules for paths). */
+/** What a path in a campaign says. */
 import { quote } from '../../schema/wire/flags.ts';
 
 const PATH_LIMIT_BYTES = 512;

@@ -1,4 +1,4 @@
-/** From raw rows to a scan in SI: bad rows dropped within limits, repeated times averaged, a clipped signal told (METHODS 2). */
+/** From raw rows to a scan in SI: bad rows dropped within limits, repeated times averaged, a clipped signal told. */
 import { type Flag, flag, quote } from '../../schema/wire/flags.ts';
 import type { ReadOutcome, ReadRefusal, ReadScan } from '../../schema/wire/scan.ts';
 import { clippedRuns } from './clipping.ts';
@@ -7,7 +7,7 @@ import type { ScanHeader } from './header.ts';
 import { addToTally, type BadLine, createTally, type LineTally, type OddRows } from './odd-rows.ts';
 import type { Unit } from './units.ts';
 
-/** Share of bad rows that may be dropped (METHODS 2). */
+/** Share of bad rows that may be dropped. */
 const BAD_ROW_SHARE = 0.001;
 /** Fewest rows of a scan. */
 const FEWEST_ROWS = 20;

@@ -9,7 +9,7 @@ import type { TextEncoding } from './encoding.ts';
 import type { ScanHeader } from './header.ts';
 import { createOddRows, type OddRows } from './odd-rows.ts';
 
-/** Longest line, bytes (INTERFACES, "Limits"). */
+/** Longest line, bytes. */
 export const LINE_LIMIT = 65_536;
 
 const TAB = 9;

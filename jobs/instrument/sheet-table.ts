@@ -22,7 +22,7 @@ export type ColumnKind =
 
 export interface SheetColumn {
   key: string;
-  /** Header as INTERFACES writes it, in lower case */
+  /** Header as the README writes it, in lower case */
   name: string;
   kind: ColumnKind;
   required?: boolean;

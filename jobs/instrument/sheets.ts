@@ -1,4 +1,4 @@
-/** The three sheets of a campaign (INTERFACES, "A campaign folder") as typed rows in SI. */
+/** The three sheets of a campaign as typed rows in SI. */
 import { type Flag, quote } from '../../schema/wire/flags.ts';
 import type { InstrumentSheetRow, SampleSheetRow, ScanSheetRow } from '../../schema/wire/scan.ts';
 import { EXOTHERM_DIRECTIONS, INSTRUMENT_KINDS, ROLES, type Role } from '../../schema/wire/states.ts';

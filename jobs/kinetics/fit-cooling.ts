@@ -15,7 +15,7 @@ const NOT_COMPUTED =
   'Kissinger, Ozawa, Augis–Bennett, Boswell, Kissinger–Akahira–Sunose, Starink, Ozawa–Flynn–Wall and JMAK on ramps do not apply to cooling';
 
 /**
- * Cooling scans of one event: Friedman, incremental Vyazovkin down to −1000 kJ/mol, and Ozawa 1971 (METHODS 7).
+ * Cooling scans of one event: Friedman, incremental Vyazovkin down to −1000 kJ/mol, and Ozawa 1971.
  * @param event its number in the table   @param asReduced its number on the scans: another where heating scans have that number too
  */
 export function fitCooling(

@@ -28,7 +28,7 @@ export function distinctTemperatures(temperatures: readonly number[]): number[] 
   return out;
 }
 
-/** Holds of one event: isothermal JMAK of each, the mean exponent, and E and ln A from ln K against 1/T (METHODS 7). */
+/** Holds of one event: isothermal JMAK of each, the mean exponent, and E and ln A from ln K against 1/T. */
 export function fitHolds(
   sample: string,
   event: number,

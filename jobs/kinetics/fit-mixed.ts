@@ -10,7 +10,7 @@ import { COOLING_BRACKET } from './isoconversional/vyazovkin.ts';
 import { RowList } from './row-list.ts';
 
 /**
- * Friedman and incremental Vyazovkin over the holds of an event, together with its heating ramps where there are some (METHODS 6: any
+ * Friedman and incremental Vyazovkin over the holds of an event, together with its heating ramps where there are some (any
  * programme, holds included). Nothing when fewer than three distinct programmes have a curve.
  */
 export function fitMixed(

@@ -8,8 +8,7 @@ import { fitHolds } from './fit-holds.ts';
 import { fitMixed } from './fit-mixed.ts';
 
 /**
- * All kinetics of one sample: peak, isoconversional and JMAK estimates of each event with 95 % intervals from the seeded Monte Carlo
- * (METHODS 5–7, 11). Heating, cooling and hold scans are fitted apart; holds and ramps meet in the isoconversional methods alone.
+ * All kinetics of one sample: peak, isoconversional and JMAK estimates of each event with 95 % intervals from the seeded Monte Carlo. Heating, cooling and hold scans are fitted apart; holds and ramps meet in the isoconversional methods alone.
  * Pure: the same input gives the same numbers, whatever order the scans came in.
  */
 export function fitSample(input: FitInput): FitResult {

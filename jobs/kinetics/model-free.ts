@@ -5,8 +5,7 @@ import type { ProgrammeIntegrals } from './estimate.ts';
 import { CONVERSION_COUNT, CONVERSIONS, type EventData } from './event-data.ts';
 
 /**
- * ln of the time integral that each segment of conversion needs, ∫ exp[−(E_k/R)(1/T − x0)] dt, averaged over the scans in the logarithm
- * (METHODS 10). For a draw: called with the ramp integrals of the columns as that draw left them, so that the forecast moves with it.
+ * ln of the time integral that each segment of conversion needs, ∫ exp[−(E_k/R)(1/T − x0)] dt, averaged over the scans in the logarithm. For a draw: called with the ramp integrals of the columns as that draw left them, so that the forecast moves with it.
  * @param weights one a curve scan   @param energy J/mol, one a segment
  */
 export function averageSegments(

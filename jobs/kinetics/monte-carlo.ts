@@ -7,7 +7,7 @@ import { fitLogTrend, fitRateTrend, fitTemperatureTrend, type Trend } from './tr
 
 /**
  * The scatter between scans, split into a trend with heating rate and one whole residual curve a scan: one scan's curve moves together, so
- * the scan is the unit of resampling (METHODS 11).
+ * the scan is the unit of resampling.
  */
 export interface ScatterModel {
   data: EventData;

@@ -12,8 +12,7 @@ export interface Trend {
 }
 
 /**
- * T_fit(β) at one conversion or of the peak. Straight: Kissinger's line. Bent: ln β = ln K(T) + ln(R T²/E_loc(T)) with the bent law
- * (METHODS 8), so that a bend of the material is not counted as scatter. Residuals are measured − fitted, K, at the scan's own β.
+ * T_fit(β) at one conversion or of the peak. Straight: Kissinger's line. Bent: ln β = ln K(T) + ln(R T²/E_loc(T)) with the bent law, so that a bend of the material is not counted as scatter. Residuals are measured − fitted, K, at the scan's own β.
  * @param rate K/s   @param temperature K   @param weights ∝ 1/variance of T
  */
 export function fitTemperatureTrend(

@@ -11,7 +11,7 @@ export function variantRows(rows: readonly ParameterRow[], variant: ParameterRow
     .map((r) => ({ ...r, variant }));
 }
 
-/** A lag of more than this part of the width matters when it is not known how much of it smears (METHODS 4). */
+/** A lag of more than this part of the width matters when it is not known how much of it smears. */
 const RESPONSE_PART = 0.1;
 
 /** Instruments whose response is not known and, on at least one of these scans, matters. */
@@ -39,7 +39,7 @@ export function assumeFullResponse(
   });
 }
 
-/** Half width of the local polynomial of dα/dt, in full widths (METHODS 4: window FWHM/8). */
+/** Half width of the local polynomial of dα/dt, in full widths (window FWHM/8). */
 const HALF_WINDOW = 1 / 8;
 
 function undoResponse(event: ReducedEvent, lagS: number): ReducedEvent {

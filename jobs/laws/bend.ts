@@ -1,7 +1,7 @@
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 
 /**
- * The bent rate law (METHODS 8): E_loc(x) = E0 exp(q u), u = (x − x0)/Δx, x = 1/T, so that E stays positive and
+ * The bent rate law: E_loc(x) = E0 exp(q u), u = (x − x0)/Δx, x = 1/T, so that E stays positive and
  * ln K(x) = ln K0 − (E0 Δx/R) (e^(q u) − 1)/q in closed form; q = 0 is Arrhenius, with x0 the reference inverse temperature.
  */
 export interface BentScale {

@@ -50,7 +50,7 @@ export interface Clock {
   sleep(durationMs: number, signal?: AbortSignal): Promise<void>;
 }
 
-/** What a path alone says (INTERFACES, path rules and names of sheets): the reading rooms know, the store asks. */
+/** What a path alone says: the reading rooms know, the store asks. */
 export interface PathRules {
   /** Why the path is not allowed, in words that follow it in a sentence, or undefined. */
   problem(path: string): string | undefined;

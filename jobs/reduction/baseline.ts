@@ -5,7 +5,7 @@ import { type FlankSums, TERMS } from './flank-sums.ts';
  * The baseline under an event: b = p0 + p1 u + p2 u² + p3 u³ + α (s0 + s1 u), u = (t − peak)/width. s0 is the step between glass or
  * liquid and crystal, s1 its slope, p2 and p3 a curvature common to both sides (drift of the instrument). Before the event α = 0, behind
  * it α = 1, so the coefficients follow from the two flanks alone by linear least squares, and only the evaluation under the event needs
- * α(t), found by iteration; with p2 = p3 = 0 this is the tangent baseline of METHODS 4.3.
+ * α(t), found by iteration; with p2 = p3 = 0 this is the tangent baseline.
  *
  * Which terms a pair of flanks bears cannot be read off one test without jumps, so the models are averaged with weights exp(−BIC/2)
  * (Schwarz 1978; Hoeting et al. 1999, Statist. Sci. 14:382); the spread between them is part of the covariance.

@@ -8,7 +8,7 @@ import type { EventWindow } from './window.ts';
 
 /**
  * Conversion and rate of an event, its first-order response undone: with φ = φ_m + τ_r dφ_m/dt the conversion is
- * α = (∫φ_m dt + τ_r φ_m)/area, which needs no derivative, and dα/dt = (φ_m + τ_r φ_m')/area (METHODS 4.7).
+ * α = (∫φ_m dt + τ_r φ_m)/area, which needs no derivative, and dα/dt = (φ_m + τ_r φ_m')/area.
  */
 export interface EventShape {
   peakS: number;

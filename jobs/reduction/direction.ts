@@ -17,7 +17,7 @@ const CLEARER = 4;
 /**
  * Direction of the exotherm: the sheet's word, else the file's own, else inferred where physics allows: a glass transition's step is
  * endothermic; of two opposite events the one at lower temperature is the exotherm (crystals form before they melt); a single event is
- * one only below the sheet's melting temperature. The larger event is no guide: melting is larger than crystallisation (METHODS 2).
+ * one only below the sheet's melting temperature. The larger event is no guide: melting is larger than crystallisation.
  */
 export function findDirection(
   scan: ReadScan,

@@ -6,7 +6,7 @@ export const FEW_POINTS = 20;
 export const TOO_FEW_POINTS = 8;
 /** Areas above both baselines that differ by more than this raise `baseline-doubt`. */
 const BASELINE_DOUBT = 0.05;
-/** S above which it is told and kept out of the kinetics (METHODS 4.8) */
+/** S above which it is told and kept out of the kinetics */
 const SELF_HEATING = { told: 0.1, out: 1 };
 /**
  * Where standards have not told the sample's part of the lag, S is told only where a tenth of the lag would be enough to keep the event out

@@ -19,7 +19,7 @@ type Refused = Extract<ReduceOutcome, { ok: false }>;
 
 /**
  * Reduces one scan: segments, direction, the exothermic events of the analysed segment with baseline, conversion grid and characteristic
- * temperatures, with lag, offset and response of the instrument removed (METHODS 3 and 4).
+ * temperatures, with lag, offset and response of the instrument removed.
  * @param scan columns in SI as read   @param input sheet values and the instrument's correction
  * @returns a reduced scan (with `no-event` where there is none), or the reason why it cannot be used
  */
@@ -147,7 +147,7 @@ function pickSegment(c: ScanContext, candidates: Segment[]): { segment: Segment;
   return { segment: candidates.reduce((widest, s) => (span(s) > span(widest) ? s : widest)), excursions: [] };
 }
 
-/** Mass as heat ÷ reference enthalpy where none was given (METHODS 3: an estimate; kinetics never needs it). Tells the user either way. */
+/** Mass as heat ÷ reference enthalpy where none was given (an estimate; kinetics never needs it). Tells the user either way. */
 function massFromEnthalpy(c: ScanContext, events: ReducedEvent[]): number | undefined {
   if (c.scan.heatFlowUnit === 'W/kg' || events.length === 0) return undefined;
   const enthalpy = c.input.crystallizationEnthalpyJPerKg;

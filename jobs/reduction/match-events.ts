@@ -22,7 +22,7 @@ const SHARE_WEIGHT = 0.5;
 const USUAL_SHIFT_PART = 0.06;
 
 /**
- * Numbers events alike across rates and instruments (METHODS 4.2): order in temperature, share of the area, and shift with rate. The
+ * Numbers events alike across rates and instruments: order in temperature, share of the area, and shift with rate. The
  * heating scans with the most common number of events tell where each event lies against ln β (straight line in 1/T); every other scan's
  * events are put, in order, to the numbers that fit best. Holds and coolings are numbered by order alone.
  */

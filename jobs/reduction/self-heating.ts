@@ -1,14 +1,14 @@
 import { CONVERSION_GRID, type ReducedCurve } from '../../schema/wire/reduced.ts';
 import type { ScanContext } from './scan-context.ts';
 
-/** J/(kg K), where the sheet gives none (METHODS 4.8). */
+/** J/(kg K), where the sheet gives none. */
 const ASSUMED_HEAT_CAPACITY = 500;
 /** Grid rows between which ln(−ln(1 − α)) of a JMAK event is straight in T: α = 0.2 and 0.7. */
 const [LOW, HIGH] = [19, 69];
 const TYPICAL_EXPONENT = 3;
 
 export interface SelfHeating {
-  /** S of METHODS 4.8 */
+  /** Self-heating number */
   number: number;
   /** True when S is only known to lie below, the sample's part of the lag being taken as all of it */
   bound: boolean;
@@ -16,7 +16,7 @@ export interface SelfHeating {
 }
 
 /**
- * S = τ_s (ΔH/c_p) (dα/dt)_max E/(R T²) (METHODS 4.8): how much the event's own warmth speeds it up. Where the instrument's thermal
+ * S = τ_s (ΔH/c_p) (dα/dt)_max E/(R T²): how much the event's own warmth speeds it up. Where the instrument's thermal
  * resistance R_th is known (leading edge of a standard, slope β/R_th), τ_s = R_th m c_p and S = R_th φ_max E/(R T²): mass and heat
  * capacity drop out. Otherwise τ_s ≤ τ − τ_r bounds it from above. A single scan shows n E/(R T²) (the growth of ln(−ln(1−α)) a kelvin)
  * but not its two factors: n is taken as 3, so that S is right to a factor of two, as a warning should be.

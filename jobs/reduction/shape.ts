@@ -1,6 +1,6 @@
 /**
  * The shape that a JMAK event on a ramp is close to whatever its n and E: g(v) = exp(v + 1 − e^v), v = n E (T − Tp)/(R Tp²), height 1 at v = 0
- * (large E/(R T) limit of METHODS 7). It is used where the signal itself cannot be: for the foot of an event under a flank, and for
+ * (limit of large E/(R T)). It is used where the signal itself cannot be: for the foot of an event under a flank, and for
  * the tail that a melting endotherm hides.
  */
 

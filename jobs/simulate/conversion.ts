@@ -16,7 +16,7 @@ export interface SimulatedConversion {
 }
 
 /**
- * Johnson–Mehl–Avrami–Kolmogorov conversion along a sample temperature T(t) (METHODS 7):
+ * Johnson–Mehl–Avrami–Kolmogorov conversion along a sample temperature T(t):
  * α = 1 − exp(−X^n), X = ∫K(T(t)) dt from the first time on, dα/dt = n K X^(n−1) exp(−X^n).
  * For n < 1 the law's rate has no bound at X = 0; it is given as 0 there.
  *

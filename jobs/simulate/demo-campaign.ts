@@ -48,7 +48,7 @@ interface DemoScan {
   noSign?: true;
 }
 
-/** Ramps start at this fraction of the expected peak, low enough for Augis–Bennett (METHODS 5 asks for 0.75). */
+/** Ramps start at this fraction of the expected peak, low enough for Augis–Bennett (at most 0.75). */
 const START_FRACTION = 0.73;
 
 const SEED = 'ratespan demo campaign 1';
@@ -198,7 +198,7 @@ function breakOff(bytes: Uint8Array): Uint8Array {
   return bytes.slice(0, end - 5);
 }
 
-/** Temperature of the peak by the peak condition ln β = ln K + ln(R T²/E) (METHODS 8), by bisection, K. */
+/** Temperature of the peak by the peak condition ln β = ln K + ln(R T²/E), by bisection, K. */
 function expectPeak(material: DemoMaterial, rateKPerS: number): number {
   let [low, high] = [250, 1500];
   for (let i = 0; i < 60; i++) {

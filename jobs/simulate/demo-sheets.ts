@@ -13,7 +13,7 @@ export interface DemoScanRow {
 
 const short = (value: number): string => String(Number(value.toPrecision(6)));
 
-/** scans.csv of the demo (INTERFACES, "A campaign folder"): comma, decimal point. */
+/** scans.csv of the demo: comma, decimal point. */
 export function writeScansSheet(rows: readonly DemoScanRow[]): string {
   const head = 'file,sample,instrument,role,rate [K/s],mass [mg],exotherm,replicate,note';
   const lines = rows.map((row) =>

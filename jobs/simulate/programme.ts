@@ -19,7 +19,7 @@ export interface ProgrammeFollower {
 /**
  * A sample that follows the programme with a time constant τ: dT/dt = (T_programme − T)/τ, at rest with it at the start.
  * On a straight piece T_p = a + b s the solution is T = T_p − b τ + (T(0) − T_p(0) + b τ) exp(−s/τ): after a few τ the
- * sample trails by b τ, which is the shift part of an instrument's lag (METHODS 4.7).
+ * sample trails by b τ, which is the shift part of an instrument's lag.
  */
 export function followProgramme(programme: Programme, timeConstantS: number): ProgrammeFollower {
   if (programme.length < 2) throw new RangeError(`a programme needs at least two corners; got ${programme.length}`);

@@ -9,7 +9,7 @@ export interface ArrheniusLaw {
 }
 
 /**
- * The law with a bend (METHODS 8): local activation energy E_loc(x) = E0 exp(q u) with x = 1/T, u = (x − x0)/Δx.
+ * The law with a bend: local activation energy E_loc(x) = E0 exp(q u) with x = 1/T, u = (x − x0)/Δx.
  * E stays positive; q = 0 is Arrhenius.
  */
 export interface BentLaw {
@@ -48,7 +48,7 @@ export function lnRateConstant(law: RateLaw, temperatureK: number): number {
 
 /**
  * The bent law that goes from one local energy at a lower temperature to another at a higher one, placed so that an
- * event peaks near the lower temperature at the given rate (peak condition ln β = ln K + ln(R T²/E), METHODS 8).
+ * event peaks near the lower temperature at the given rate (peak condition ln β = ln K + ln(R T²/E)).
  */
 export function bentLawBetween(
   low: { temperatureK: number; energyJPerMol: number },

@@ -37,7 +37,7 @@ export interface SimulatedInstrument {
   stepS: number;
 }
 
-/** Source of noise: standard normal draws (METHODS 14: every random draw comes from a seeded generator passed in). */
+/** Source of noise: standard normal draws (every random draw comes from a seeded generator passed in). */
 export interface NoiseSource {
   normal(): number;
 }

@@ -29,7 +29,7 @@ const sheetValues = ({ sha256, instrument, sheetRow }: FitScanRow) => [
 
 const peakValues = ({ row }: PeakRow) => ({ ...row, line: undefined });
 
-/** Seed of the draws: sorted input hashes, sheet values, step version and settings; never ids, paths or order of arrival (METHODS 11). */
+/** Seed of the draws: sorted input hashes, sheet values, step version and settings; never ids, paths or order of arrival. */
 export function seedOf({ scans, peaks, calibrations, sampleRow }: FitRows): string {
   const values = [
     scans.map(sheetValues),

@@ -7,5 +7,5 @@ export const STEP_VERSIONS = {
   'forecast-sample': 1,
 } as const;
 
-/** Draws of the Monte Carlo behind each interval (METHODS 11). */
+/** Draws of the Monte Carlo behind each interval. */
 export const FIT_DRAWS = 400;

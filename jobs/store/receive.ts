@@ -4,7 +4,7 @@ import type { Ports } from '../ports/index.ts';
 import { type ArrivedFile, acceptFile, type FileReceipt } from './arrivals.ts';
 import { createId, sha256Hex } from './ids.ts';
 
-/** Largest file taken, bytes (INTERFACES, Limits). */
+/** Largest file taken, bytes. */
 export const FILE_LIMIT_BYTES = 100e6;
 /** Bodies up to this size are hashed before anything is stored, so that known bytes are never written. */
 const HELD_IN_MEMORY_BYTES = 4e6;

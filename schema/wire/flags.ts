@@ -1,5 +1,5 @@
 /**
- * Flags: what the user should know about a scan, sample or instrument (METHODS 13).
+ * Flags: what the user should know about a scan, sample or instrument.
  * A flag carries the number that raised it and what to do next; the table below is the closed list of codes.
  */
 export type Severity = 'note' | 'warn' | 'stop';

@@ -1,11 +1,11 @@
 import type { FlagCode } from './flags.ts';
 import type { SharedLaw, SharedLawDraws } from './shared-law.ts';
 
-/** The one place of the caution that stands on every forecast and advice: table, page, command line, report (METHODS 10). */
+/** The one place of the caution that stands on every forecast and advice: table, page, command line, report. */
 export const FORECAST_CAUTION =
   'An aid to planning experiments, not a basis for process-safety, medical or release decisions; follow the applicable standards and qualified practice.';
 
-/** Columns of forecasts.csv and advice.csv, in order (INTERFACES; the columns behind `goal` and `interval_expected` are later additions). */
+/** Columns of forecasts.csv and advice.csv, in order (the columns behind `goal` and `interval_expected` are later additions). */
 export const FORECAST_TABLES = {
   forecasts: [
     'sample',
@@ -42,7 +42,7 @@ export const FORECAST_TABLES = {
 } as const satisfies Record<string, readonly string[]>;
 
 /**
- * Model-free description of one event: all that is needed to integrate it along another programme (METHODS 10). Segment k runs between two
+ * Model-free description of one event: all that is needed to integrate it along another programme. Segment k runs between two
  * neighbouring conversions of `conversions` (0.05 … 0.95; the first starts at 0) and needs
  * ∫ exp[−(E_k/R)(1/T − x0)] dt = exp(lnStep_k), E_k by Vyazovkin, averaged over the scans in the logarithm.
  */

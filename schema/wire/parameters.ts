@@ -3,7 +3,7 @@ import type { ModelFreeCurve, ModelFreeDraws } from './forecasts.ts';
 import type { ReducedEvent } from './reduced.ts';
 import type { InstrumentCalibration } from './scan.ts';
 
-/** One number of the consolidated table (INTERFACES, parameters.csv); units as there, not SI. */
+/** One number of the consolidated table; units as there, not SI. */
 export interface ParameterRow {
   sample: string;
   event: number;
@@ -43,7 +43,7 @@ export interface FitInput {
   draws: number;
 }
 
-/** Why and how a fit ended, as data (STYLE, habit 2). */
+/** Why and how a fit ended, as data. */
 export interface FitReport {
   event: number;
   method: string;

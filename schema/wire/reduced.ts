@@ -48,7 +48,7 @@ export interface ReducedEvent {
   noiseFraction: number;
   /** Start of the linear ramp, K (for Augis–Bennett) */
   rampStartK: number;
-  /** S of METHODS 4.8, where lag and enthalpy are known; above 1 the event stays out of the kinetics */
+  /** Self-heating number S, where lag and enthalpy are known; above 1 the event stays out of the kinetics */
   selfHeating?: number;
   /** Missing for a cut event or too few points: temperatures only */
   curve?: ReducedCurve;

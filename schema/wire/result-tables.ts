@@ -19,7 +19,7 @@ export const VERDICT_COLUMNS = [
 ] as const;
 
 /**
- * Columns of the result files, in order (INTERFACES, "Result files of run"). The CSV files of `run`, the `?format=csv`
+ * Columns of the result files, in order. The CSV files of `run`, the `?format=csv`
  * answers and the JSON keys of the API all come from this one place. Add columns at the end; never rename.
  */
 export const RESULT_TABLES = {

@@ -85,7 +85,7 @@ export interface SampleSheetRow {
   line: number;
 }
 
-/** Correction of an instrument as applied to every sample scan: T_true = T_measured − offset − τ β (METHODS 3). */
+/** Correction of an instrument as applied to every sample scan: T_true = T_measured − offset − τ β. */
 export interface InstrumentCalibration {
   instrument: string;
   kind: InstrumentKind;

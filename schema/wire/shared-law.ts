@@ -1,5 +1,5 @@
 /**
- * The law that holds over all instruments of an event: JMAK with the verdict's bent rate law (METHODS 8),
+ * The law that holds over all instruments of an event: JMAK with the verdict's bent rate law,
  * K(x) = exp(lnRateAtMiddle − (E0 Δx/R)(e^(q u) − 1)/q), u = (x − x0)/Δx, x = 1/T, α = 1 − exp[−(∫K dt)^n].
  * Written by the verdict, read by forecasts and advice.
  */

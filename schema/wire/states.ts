@@ -1,4 +1,4 @@
-/** Closed sets of states (INTERFACES, "States"). */
+/** Closed sets of states. */
 export const SCAN_STATES = [
   'received',
   'read',
@@ -35,6 +35,6 @@ export type InstrumentKind = (typeof INSTRUMENT_KINDS)[number];
 export const EXOTHERM_DIRECTIONS = ['up', 'down'] as const;
 export type ExothermDirection = (typeof EXOTHERM_DIRECTIONS)[number];
 
-/** What a token allows: each role also what the ones before it do (INTERFACES, "Access"). */
+/** What a token allows: each role also what the ones before it do. */
 export const TOKEN_ROLES = ['reader', 'sender', 'keeper'] as const;
 export type TokenRole = (typeof TOKEN_ROLES)[number];

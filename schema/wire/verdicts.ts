@@ -6,7 +6,7 @@ import type { SharedLaw, SharedLawDraws } from './shared-law.ts';
 export const VERDICTS = ['straight', 'instrument', 'material', 'undecided'] as const;
 export type Verdict = (typeof VERDICTS)[number];
 
-/** One row of verdicts.csv (INTERFACES); energies in kJ/mol, the bend is ln(E at the low-rate end / E at the high-rate end). */
+/** One row of verdicts.csv; energies in kJ/mol, the bend is ln(E at the low-rate end / E at the high-rate end). */
 export interface VerdictRow {
   sample: string;
   event: number;

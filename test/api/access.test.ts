@@ -4,7 +4,7 @@ import { isLoopback, refuseForeignRequest, roleNeeded } from '../../api/access.t
 const refusal = (headers: Record<string, string>, port: number) =>
   refuseForeignRequest(new Headers(headers), port)?.code;
 
-// The rules are INTERFACES, "Access"; that a rebound name arrives in Host and a foreign page in Origin is RFC 9110 7.2 and RFC 6454 7.
+// The rules are the project’s own; that a rebound name arrives in Host and a foreign page in Origin is RFC 9110 7.2 and RFC 6454 7.
 describe('open access', () => {
   test.each(['localhost:8787', '127.0.0.1:8787', '[::1]:8787', 'LOCALHOST:8787'])('takes Host %s', (host) => {
     expect(refusal({ host }, 8787)).toBeUndefined();
@@ -57,7 +57,7 @@ describe('addresses and roles', () => {
   test.each(['0.0.0.0', '::', '192.168.1.5', 'lab.example', '', '127.0.0.1.evil.example'])('%j is not', (host) => {
     expect(isLoopback(host)).toBe(false);
   });
-  // INTERFACES, "Access".
+  // The project’s own rule.
   test.each([
     ['GET', '/v1/campaigns', 'reader'],
     ['HEAD', '/v1/campaigns', 'reader'],

@@ -42,7 +42,7 @@ const tables = async () =>
   JSON.stringify([await rowsOf(ports, campaign, 'scans'), await rowsOf(ports, campaign, 'parameters')]);
 
 describe('paths', () => {
-  // The rules of INTERFACES, HTTP; the ways around them are common practice, no source.
+  // The rules are the project’s own; the ways around them are common practice, no source.
   test.each([
     '../../etc/passwd',
     '/etc/passwd',

@@ -4,7 +4,7 @@ import { planCampaign } from '../../jobs/campaign/index.ts';
 import type { CoverageScan } from '../../schema/wire/campaign.ts';
 import { FLAG_CODES } from '../../schema/wire/flags.ts';
 
-// The rules are the project's own (design page METHODS 12); the table below states them by example.
+// The rules are the project's own; the table below states them by example.
 const furnace = { instrument: 'F', kind: 'furnace', standards: 1 } as const;
 const chip = { instrument: 'C', kind: 'chip', standards: 1 } as const;
 

@@ -103,7 +103,7 @@ describe('fragility from Tg against rate', () => {
       expect(Math.abs((fit?.glassTransitionK ?? 0) - 500)).toBeLessThan(0.1);
     }
   });
-  test('one line over five decades would read a true 90 as far less (METHODS: 77)', () => {
+  test('one line over five decades would read a true 90 as far less (77 by an earlier trial)', () => {
     const rates = [0.1, 1, 10, 100, 1e3, 1e4];
     const former = { glassTransitionK: 500, fragility: 90, log10Infinity: -2.93 };
     const Tg = rates.map((rate) => glassTransitionAtRate(former, rate));

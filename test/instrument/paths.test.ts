@@ -46,7 +46,7 @@ it('assigns by SAMPLE/INSTRUMENT/file, an archive counting as the folder it stan
     expect(assignmentFromPath(path)).toBeUndefined();
 });
 
-it('takes only safe paths (INTERFACES, "Paths")', () => {
+it('takes only safe paths', () => {
   for (const path of [
     'a',
     'S/I/a.txt',

@@ -40,7 +40,7 @@ describe('isothermal JMAK (exact curves: an identity)', () => {
     expect(fit.fit.converged).toBe(true);
     for (const v of localExponent(hold.event.curve!.timeS, CONVERSION_GRID, fit.startS)) expect(v).toBeCloseTo(N, 4);
   });
-  test('t0 wrong by 5 % of t½ moves n = 3 by 0.17 (METHODS 7): the fit finds t0, a fixed one does not', () => {
+  test('t0 wrong by 5 % of t½ moves n = 3 by 0.17: the fit finds t0, a fixed one does not', () => {
     const hold = exactHold(E, LN_A, 3, 600, 0.5, 'h');
     const { timeS } = hold.event.curve!;
     const free = fitHold(timeS, CONVERSION_GRID, 60);

@@ -171,7 +171,7 @@ describe('isothermal sets', () => {
     const asPrinted = line((i) => Math.log(k[i]));
     expect(asPrinted.energy / 1e3).toBeCloseTo(429.75, 1);
     expect(asPrinted.energyError / 1e3).toBeCloseTo(103.75, 1);
-    // If the law is exp(−k tⁿ), ln k gives n times the energy (METHODS 7): the caution that belongs beside the printed number.
+    // If the law is exp(−k tⁿ), ln k gives n times the energy: the caution that belongs beside the printed number.
     const E = line((i) => Math.log(k[i]) / n[i]).energy / 1e3;
     expect(E).toBeLessThan(429.75 / 2);
     expect(codes(fitOf(series(T.map((t, i) => [t, Math.log(k[i]), n[i]]))))).not.toContain('energy-undetermined');

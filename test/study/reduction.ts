@@ -35,7 +35,7 @@ export interface Difficulty {
   glassTransition?: { widthsBelow: number; step: number; overshoot?: number };
   /** Melting this many widths above the peak, of the event's own heat, a third as wide */
   meltingAbove?: number;
-  /** S of METHODS 4.8 */
+  /** Self-heating number */
   selfHeating?: number;
   /** A second event of the same law this many widths above, with this part of the first one's heat */
   overlap?: { widthsAbove: number; part: number };

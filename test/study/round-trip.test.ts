@@ -12,7 +12,7 @@ test.each([0, 1, 2, 3])('sample %i comes back: E within 3 %, n within 6 %', (ind
   for (const method of ENERGY_METHODS) {
     const error = result.energyErrors.get(method);
     if (method === 'augis_bennett' && index % 2 === 1) {
-      // Its programme starts too near the peak for this method (METHODS 5).
+      // Its programme starts too near the peak for this method.
       expect(error).toBeUndefined();
       continue;
     }

@@ -41,7 +41,7 @@ export interface RoundTripSample {
   energyJPerMol: number;
   exponent: number;
   peakK: number;
-  /** Response × rate ÷ width at the highest rate and slower oven: how hard the sample is (METHODS 4.7) */
+  /** Response × rate ÷ width at the highest rate and slower oven: how hard the sample is */
   smearing: number;
   scanCount: number;
   reducedCount: number;

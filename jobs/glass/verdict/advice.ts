@@ -18,7 +18,7 @@ export interface Advice {
 
 /**
  * Which scans shrink the bend's interval most: one row more in the linearised fit, the best of a grid of rates on every instrument, again
- * and again until the interval is expected to decide (METHODS 12).
+ * and again until the interval is expected to decide.
  * @param instruments names, in the order of the fit
  */
 export function adviseScans(a: BendAnalysis, instruments: string[], ranges: InstrumentRange[]): Advice {

@@ -2,7 +2,7 @@ import { type Flag, flag } from '../../../schema/wire/flags.ts';
 import type { FitScan } from '../../../schema/wire/parameters.ts';
 import type { GlassFacts } from '../../../schema/wire/verdicts.ts';
 
-/** Above this self-heating number the event's temperatures are its own (METHODS 4). */
+/** Above this self-heating number the event's temperatures are its own. */
 const MOST_SELF_HEATING = 1;
 /** A scan must show at least this much of its conversion. */
 const LEAST_SEEN = 0.5;

@@ -24,7 +24,7 @@ const SHAPE_PART = 0.003;
 /** The same where melting or the glass transition cut the event short. */
 const OVERLAP_PART = 0.03;
 const LEAST_ERROR_K = 0.02;
-/** FWHM n E/(R T²) of a JMAK event in the limit of large E/(R T) (METHODS 5, exact value) */
+/** FWHM n E/(R T²) of a JMAK event in the limit of large E/(R T) (exact value) */
 const WIDTH_FACTOR = 2.446;
 const HALF = CONVERSION_GRID.indexOf(0.5);
 

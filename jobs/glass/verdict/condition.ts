@@ -2,7 +2,7 @@ import { GAS_CONSTANT } from '../../../schema/wire/units.ts';
 import { type BentScale, bendTerm } from '../../laws/bend.ts';
 
 /**
- * At which rate a characteristic temperature of a JMAK event comes to lie at T, for the bent law. METHODS 8 names the peak condition
+ * At which rate a characteristic temperature of a JMAK event comes to lie at T, for the bent law. The usual peak condition is
  * ln β = ln K + ln(R T²/E_loc); to first order only, and off by some per cent of a ten-fold bend. Here it is taken further.
  *
  * On a ramp X(T) = ∫K dT/β = K G/β. With s = ln K(T) − ln K(T'), G = ∫_0^∞ e^−s g(T'(s)) ds, g = R T'²/E_loc(T') = dT'/d ln K, by

@@ -22,7 +22,7 @@ export interface Decision {
 export const missingScans = (d: LawData): number => Math.max(0, LEAST_DEGREES - degreesLeft(d));
 
 /**
- * METHODS 8. `material`: the 99 % interval of the bend excludes 0. No bend: both one-sided tests of |bend| ≥ ln 1.15 reject at 2.5 %, that
+ * `material`: the 99 % interval of the bend excludes 0. No bend: both one-sided tests of |bend| ≥ ln 1.15 reject at 2.5 %, that
  * is, the 95 % interval lies inside (two one-sided tests, Schuirmann 1987, J. Pharmacokin. Biopharm. 15:657).
  * @param widths K, full widths at half maximum of the scans, for peaks only
  */

@@ -19,7 +19,7 @@ import { type Decision, decide, LEAST_DEGREES, missingScans } from './decide.ts'
 import { explain, lagInWords, scansInWords } from './sentences.ts';
 import { exponentsUnder, fitSharedLaw, type SharedFit } from './shared-law.ts';
 
-/** Rates that each kind of calorimeter usually reaches, K/s (METHODS 1). */
+/** Rates that each kind of calorimeter usually reaches, K/s. */
 const KIND_RATES = { furnace: [0.01, 8], chip: [10, 50_000] } as const;
 /** A second opinion off by more than this many of the joint 99 % half widths is told. */
 const OPINIONS_APART = 1;
@@ -34,7 +34,7 @@ export interface JudgedResult {
 }
 
 /**
- * The verdict of one event (METHODS 8).
+ * The verdict of one event.
  * @param scans chosen ones only, at least one   @param glassTransitionK below it forecasts hold E
  */
 export function judgeEvent(

@@ -89,7 +89,7 @@ export function layoutOf(d: LawData, s: LawSettings): Layout {
 
 /**
  * Least squares of T_i = T(β_i; ln K0, E0, q) + a_j + τ_j β_i, T(β) from the condition of the characteristic temperature, weighted by each
- * temperature's variance; what calibration knows of a_j (and of τ_j where its mode is `calibrated`) enters as extra residuals (METHODS 8).
+ * temperature's variance; what calibration knows of a_j (and of τ_j where its mode is `calibrated`) enters as extra residuals.
  * @param start parameters of a neighbouring fit with the same layout, or (ln K0, ln E0, q) alone
  * @param priorDraws standard normal deviates added to the prior residuals (Monte Carlo), in their order
  */

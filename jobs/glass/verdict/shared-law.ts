@@ -161,7 +161,7 @@ function meanSquare({ data: d, full }: BendAnalysis): number {
 
 /**
  * Whole residuals of randomly chosen scans, divided by their own standard error and multiplied by the target's, times 1/√(1 − leverage), on
- * the law's temperatures (METHODS 11). Residuals come from the law with bend and lags free, so that neither counts as scatter.
+ * the law's temperatures. Residuals come from the law with bend and lags free, so that neither counts as scatter.
  */
 function resample({ data: d, full }: BendAnalysis, fit: LawFit, random: Random, out: Float64Array): void {
   for (let i = 0; i < d.n; i++) {

@@ -21,7 +21,7 @@ const STARTS = [0, 0.5, 0.9];
 
 /**
  * Isothermal Johnson–Mehl–Avrami–Kolmogorov with a fitted induction time: ln K, n and t0 in one least-squares fit on α, t0 not before the
- * hold is reached (METHODS 7: t0 wrong by 5 % of t½ moves n = 3 by 0.17).
+ * hold is reached (t0 wrong by 5 % of t½ moves n = 3 by 0.17).
  * @param timeS increasing, s   @param conversion 0 … 1 at each time   @param reachedS s, when the hold temperature was reached
  */
 export function fitHold(timeS: Float64Array, conversion: ArrayLike<number>, reachedS: number): HoldEstimate {

@@ -25,8 +25,8 @@ const SHRINK_SCANS = 1;
 const ROUNDS = 3;
 
 /**
- * Friedman and incremental Vyazovkin over scans of any programme, ramps up or down and holds together (METHODS 6): both need only T(t) as
- * measured. Monte Carlo as METHODS 11: the residual of a scan is a whole curve of ln(dα/dt) and of ln(step time) about the common law,
+ * Friedman and incremental Vyazovkin over scans of any programme, ramps up or down and holds together: both need only T(t) as
+ * measured. Monte Carlo: the residual of a scan is a whole curve of ln(dα/dt) and of ln(step time) about the common law,
  * whatever its programme, so that no trend with heating rate is needed; offset and lag of an instrument move all its scans together.
  * @param data scans with curves only   @returns the estimate and its draws
  */

@@ -16,7 +16,7 @@ export interface EnergyBracket {
   highest: number;
 }
 const HEATING_BRACKET: EnergyBracket = { lowest: 1e3, highest: 2e6 };
-/** Effective energies on cooling fall below zero near the melting point (METHODS 7). */
+/** Effective energies on cooling fall below zero near the melting point. */
 export const COOLING_BRACKET: EnergyBracket = { lowest: -1e6, highest: 1e6 };
 /** The Newton step, relative to E or 1 kJ/mol, after which the next would be below rounding (convergence is quadratic). */
 const TOLERANCE = 1e-6;

@@ -5,7 +5,7 @@ import { autocorrelationInflation, fitLinearModel } from '../../numeric/linear-m
 import type { EventData } from '../event-data.ts';
 import { REACTION_MODELS } from './reaction-models.ts';
 
-/** Conversions of the parabola through the top of z(α) (a bare maximum fails at 0.5 % noise; METHODS 7). */
+/** Conversions of the parabola through the top of z(α) (a bare maximum fails at 0.5 % noise). */
 const PARABOLA = { from: 0.45, to: 0.8 };
 
 export interface MasterPlots {

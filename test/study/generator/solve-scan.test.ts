@@ -74,7 +74,7 @@ test('self-heating warms the sample, loses no heat, and vanishes with its time c
   const warm = solveScan(heated(1), times);
   expect(area(times, warm.eventW) / (MASS * 40e3)).toBeCloseTo(1, 8);
   const excess = Math.max(...warm.sampleK.map((value, k) => value - plain.sampleK[k]));
-  // θ ≈ contact (ΔH/c_p) dα/dt at the peak (METHODS 4.8), less what the smearing takes.
+  // θ ≈ contact (ΔH/c_p) dα/dt at the peak, less what the smearing takes.
   const quasiStatic = (40e3 / 500) * Math.max(...warm.ratePerS[0]);
   expect(excess / quasiStatic).toBeGreaterThan(0.9);
   expect(excess / quasiStatic).toBeLessThan(1);
