@@ -106,7 +106,8 @@ describe('a campaign with curves', () => {
     }
   });
 
-  it('answers a question within 100 ms on one core', async () => {
+  // A time, so measured on request only.
+  it.skipIf(process.env.RATESPAN_SPEED === undefined)('answers a question within 100 ms on one core', async () => {
     await ask({ temperature_C: 261, conversion: 0.4 });
     const started = performance.now();
     for (let i = 0; i < 5; i++) await ask({ temperature_C: 262 + i, conversion: 0.4 });
