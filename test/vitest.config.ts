@@ -6,5 +6,5 @@ const root = fileURLToPath(new URL('..', import.meta.url));
 export default defineConfig({
   root,
   oxc: { jsx: { runtime: 'automatic', importSource: 'preact' } },
-  test: { include: ['test/**/*.test.ts', 'test/**/*.test.tsx'], testTimeout: 20_000, pool: 'forks' },
+  test: { include: ['test/**/*.test.ts', 'test/**/*.test.tsx'], testTimeout: 20_000, pool: 'forks', maxWorkers: 2 },
 });

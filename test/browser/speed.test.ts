@@ -25,6 +25,8 @@ describe.skipIf(!executable)('a campaign of 200 samples × 40 scans', () => {
     browser = await openBrowser(executable as string);
     page = await browser.newPage({ viewport: { width: 1280, height: 900 } });
     await answerLargeCampaign(page);
+    await page.goto(`${server.url}/campaigns/large`);
+    await page.getByRole('option').first().waitFor();
   }, 60_000);
 
   afterAll(async () => {
