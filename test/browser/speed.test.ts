@@ -8,8 +8,6 @@ import { serveCampaigns, type TestServer } from './serve-campaigns.ts';
 
 const executable = findChromium();
 
-/** Times depend on what else the machine does: they are measured on request (RATESPAN_SPEED=1), not asserted in every run. */
-const MEASURE = process.env.RATESPAN_SPEED !== undefined;
 /** W3C Long Tasks API: what takes longer is a long task. */
 const LONG_TASK_MS = 50;
 /** First page, JavaScript after gzip, bytes. */
@@ -25,8 +23,6 @@ describe.skipIf(!executable)('a campaign of 200 samples × 40 scans', () => {
     browser = await openBrowser(executable as string);
     page = await browser.newPage({ viewport: { width: 1280, height: 900 } });
     await answerLargeCampaign(page);
-    await page.goto(`${server.url}/campaigns/large`);
-    await page.getByRole('option').first().waitFor();
   }, 60_000);
 
   afterAll(async () => {
@@ -55,31 +51,28 @@ describe.skipIf(!executable)('a campaign of 200 samples × 40 scans', () => {
   const expectShort = (name: string, tasks: readonly number[]): void => {
     console.log(`${name}, longest tasks, ms:`, tasks.slice(0, 5).map(Math.round).join(' '));
     expect(tasks.length).toBeGreaterThan(0);
-    expect(tasks[0]).toBeLessThan(LONG_TASK_MS);
+    // Times depend on what else the machine does: asserted on request only (RATESPAN_SPEED=1).
+    if (process.env.RATESPAN_SPEED !== undefined) expect(tasks[0]).toBeLessThan(LONG_TASK_MS);
   };
 
-  test.skipIf(!MEASURE)(
-    'scrolls and hovers over the map without a long task',
-    async () => {
-      await page.goto(`${server.url}/campaigns/large`);
-      await page.getByRole('option').first().waitFor();
-      await frames(60);
-      const tasks = await longestTasks(page, async () => {
-        await page.mouse.move(600, 500);
-        for (let i = 0; i < 40; i++) {
-          await page.mouse.wheel(0, 400);
-          await page.mouse.move(400 + (i % 20) * 20, 300 + (i % 10) * 40);
-          await frames(1);
-        }
-        await page.keyboard.press('End');
-        await frames(20);
-        await page.keyboard.press('Home');
-        await frames(20);
-      });
-      expectShort('map', tasks);
-    },
-    60_000,
-  );
+  test('scrolls and hovers over the map without a long task', async () => {
+    await page.goto(`${server.url}/campaigns/large`);
+    await page.getByRole('option').first().waitFor();
+    await frames(60);
+    const tasks = await longestTasks(page, async () => {
+      await page.mouse.move(600, 500);
+      for (let i = 0; i < 40; i++) {
+        await page.mouse.wheel(0, 400);
+        await page.mouse.move(400 + (i % 20) * 20, 300 + (i % 10) * 40);
+        await frames(1);
+      }
+      await page.keyboard.press('End');
+      await frames(20);
+      await page.keyboard.press('Home');
+      await frames(20);
+    });
+    expectShort('map', tasks);
+  }, 60_000);
 
   test('draws the rows that are in the window, and only those near it', async () => {
     const shown = async () => page.getByRole('option').count();
@@ -100,22 +93,18 @@ describe.skipIf(!executable)('a campaign of 200 samples × 40 scans', () => {
     await page.emulateMedia({ media: 'screen' });
   }, 60_000);
 
-  test.skipIf(!MEASURE)(
-    'hovers over 40 thermograms of 2000 points without a long task',
-    async () => {
-      await page.goto(`${server.url}/campaigns/large/samples/glass-007`);
-      await page.locator('.lanes').waitFor();
-      await frames(30);
-      const tasks = await longestTasks(page, async () => {
-        await page.locator('.lanes').hover();
-        for (let i = 0; i < 60; i++) {
-          await page.mouse.move(200 + (i % 60) * 10, 200 + (i % 40) * 15);
-          if (i % 3 === 0) await page.mouse.wheel(0, i < 30 ? 40 : -40);
-          await frames(1);
-        }
-      });
-      expectShort('sample', tasks);
-    },
-    60_000,
-  );
+  test('hovers over 40 thermograms of 2000 points without a long task', async () => {
+    await page.goto(`${server.url}/campaigns/large/samples/glass-007`);
+    await page.locator('.lanes').waitFor();
+    await frames(30);
+    const tasks = await longestTasks(page, async () => {
+      await page.locator('.lanes').hover();
+      for (let i = 0; i < 60; i++) {
+        await page.mouse.move(200 + (i % 60) * 10, 200 + (i % 40) * 15);
+        if (i % 3 === 0) await page.mouse.wheel(0, i < 30 ? 40 : -40);
+        await frames(1);
+      }
+    });
+    expectShort('sample', tasks);
+  }, 60_000);
 });
