@@ -1,13 +1,30 @@
 import { bodyLimit } from 'hono/body-limit';
+import type { z } from 'zod';
+import { BY_ID } from './openapi.ts';
 import { Problem } from './problems.ts';
 
 /** Bytes of a JSON body. */
 const JSON_LIMIT = 1e6;
 
 /** Middleware of every route that takes JSON. */
-export const limitJson = bodyLimit({
+const limitJson = bodyLimit({
   maxSize: JSON_LIMIT,
   onError: () => {
     throw new Problem('too-large', `the body has more than ${JSON_LIMIT} bytes`);
   },
+});
+
+const bodyOf = <S extends z.ZodType>(schema: S) =>
+  ({ required: true, content: { 'application/json': { schema } } }) as const;
+
+/** What a route to one thing by its id says of the JSON that it takes. */
+export const jsonById = <S extends z.ZodType>(schema: S) => ({
+  middleware: limitJson,
+  request: { ...BY_ID, body: bodyOf(schema) },
+});
+
+/** The same for a route to a whole collection. */
+export const jsonToList = <S extends z.ZodType>(schema: S) => ({
+  middleware: limitJson,
+  request: { query: BY_ID.query, body: bodyOf(schema) },
 });

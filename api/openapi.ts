@@ -86,6 +86,9 @@ export const PAGE_QUERY = {
 
 export const ID_PARAM = z.object({ id: textOf(200) });
 
+/** Request that names one thing by its id and says nothing else. */
+export const BY_ID = { params: ID_PARAM, query: NO_QUERY };
+
 export const ProblemShape = z
   .object({
     type: z.string(),
@@ -109,6 +112,18 @@ export const PROBLEM_ANSWER = {
 export const answer = <S extends z.ZodType>(schema: S, description: string) => ({
   description,
   content: { 'application/json': { schema } },
+});
+
+/** Answers of a route that gives JSON under one status. */
+export const answersOf = <N extends 200 | 201 | 202, S extends z.ZodType>(status: N, schema: S, description: string) =>
+  ({ [status]: answer(schema, description), default: PROBLEM_ANSWER }) as Record<N, ReturnType<typeof answer<S>>> & {
+    default: typeof PROBLEM_ANSWER;
+  };
+
+/** Answer of a route that gives something else than JSON. */
+export const bodyOf = <T extends string>(type: T, description: string) => ({
+  description,
+  content: { [type]: { schema: z.string() } } as Record<T, { schema: z.ZodString }>,
 });
 
 /** `{items, next}`. */

@@ -12,13 +12,13 @@ import {
   setGoals,
 } from '../../jobs/store/index.ts';
 import { quote } from '../../schema/wire/flags.ts';
-import { limitJson } from '../json-body.ts';
+import { jsonById, jsonToList } from '../json-body.ts';
 import {
   type ApiApp,
-  answer,
+  answersOf,
+  BY_ID,
   ID_PARAM,
   listOf,
-  NO_QUERY,
   PAGE_QUERY,
   PROBLEM_ANSWER,
   strict,
@@ -29,27 +29,16 @@ import { pageOf, requireCampaign } from '../results.ts';
 import { CampaignShape } from '../shapes/campaign.ts';
 import { GoalsShape, goalRowOf } from '../shapes/forecasts.ts';
 
-const NAME_BODY = {
-  required: true,
-  content: { 'application/json': { schema: strict({ name: textOf(CAMPAIGN_NAME_LIMIT) }) } },
-} as const;
-
-const NEW_BODY = {
-  required: true,
-  content: {
-    'application/json': { schema: strict({ name: textOf(CAMPAIGN_NAME_LIMIT), goals: GoalsShape.optional() }) },
-  },
-} as const;
-
+const NewBody = strict({ name: textOf(CAMPAIGN_NAME_LIMIT), goals: GoalsShape.optional() });
+const NameBody = strict({ name: textOf(CAMPAIGN_NAME_LIMIT) });
 const GoalsBody = strict({ goals: GoalsShape });
 
 const createCampaignRoute = createRoute({
   method: 'post',
   path: '/v1/campaigns',
   summary: 'Make a campaign. A name that is taken is refused with 409.',
-  middleware: [limitJson] as const,
-  request: { query: NO_QUERY, body: NEW_BODY },
-  responses: { 201: answer(CampaignShape, 'The new campaign.'), default: PROBLEM_ANSWER },
+  ...jsonToList(NewBody),
+  responses: answersOf(201, CampaignShape, 'The new campaign.'),
 });
 
 const listRoute = createRoute({
@@ -57,24 +46,23 @@ const listRoute = createRoute({
   path: '/v1/campaigns',
   summary: 'Campaigns, ordered by id.',
   request: { query: strict(PAGE_QUERY) },
-  responses: { 200: answer(listOf(CampaignShape), 'A page of campaigns.'), default: PROBLEM_ANSWER },
+  responses: answersOf(200, listOf(CampaignShape), 'A page of campaigns.'),
 });
 
 const getRoute = createRoute({
   method: 'get',
   path: '/v1/campaigns/{id}',
   summary: 'One campaign, by id or name.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: { 200: answer(CampaignShape, 'The campaign.'), default: PROBLEM_ANSWER },
+  request: BY_ID,
+  responses: answersOf(200, CampaignShape, 'The campaign.'),
 });
 
 const renameRoute = createRoute({
   method: 'patch',
   path: '/v1/campaigns/{id}',
   summary: 'Give a campaign another name.',
-  middleware: [limitJson] as const,
-  request: { params: ID_PARAM, query: NO_QUERY, body: NAME_BODY },
-  responses: { 200: answer(CampaignShape, 'The campaign as it is now.'), default: PROBLEM_ANSWER },
+  ...jsonById(NameBody),
+  responses: answersOf(200, CampaignShape, 'The campaign as it is now.'),
 });
 
 const deleteRoute = createRoute({
@@ -94,21 +82,16 @@ const refitRoute = createRoute({
   method: 'post',
   path: '/v1/campaigns/{id}/refit',
   summary: 'Queue the fit of every sample again.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: { 202: answer(CampaignShape, 'The campaign, with fits queued.'), default: PROBLEM_ANSWER },
+  request: BY_ID,
+  responses: answersOf(202, CampaignShape, 'The campaign, with fits queued.'),
 });
 
 const goalsRoute = createRoute({
   method: 'put',
   path: '/v1/campaigns/{id}/goals',
   summary: 'Put these goals in the place of those set before; those of goal.csv stay. The forecasts follow.',
-  middleware: [limitJson] as const,
-  request: {
-    params: ID_PARAM,
-    query: NO_QUERY,
-    body: { required: true, content: { 'application/json': { schema: GoalsBody } } },
-  },
-  responses: { 202: answer(GoalsBody, 'The goals as they are kept.'), default: PROBLEM_ANSWER },
+  ...jsonById(GoalsBody),
+  responses: answersOf(202, GoalsBody, 'The goals as they are kept.'),
 });
 
 const shapeOf = ({ id, name, createdAt, revision }: Campaign) => ({

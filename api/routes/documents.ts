@@ -1,7 +1,7 @@
 import { createRoute, z } from '@hono/zod-openapi';
 import type { Observer, Ports } from '../../jobs/ports/index.ts';
 import { checkStores, jobFigures } from '../../jobs/store/index.ts';
-import { type ApiApp, answer, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
+import { type ApiApp, answersOf, bodyOf, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
 import { Problem } from '../problems.ts';
 import { type ApiDocument, REFERENCE_STYLE, renderReference } from '../reference-page.ts';
 
@@ -13,7 +13,7 @@ const openapiRoute = createRoute({
   path: '/v1/openapi.json',
   summary: 'This interface as an OpenAPI 3.1 document.',
   request: { query: NO_QUERY },
-  responses: { 200: answer(z.object({}), 'The document.'), default: PROBLEM_ANSWER },
+  responses: answersOf(200, z.object({}), 'The document.'),
 });
 
 const referenceRoute = createRoute({
@@ -21,10 +21,7 @@ const referenceRoute = createRoute({
   path: '/v1/reference',
   summary: 'This interface as a page to read.',
   request: { query: NO_QUERY },
-  responses: {
-    200: { description: 'The page.', content: { 'text/html': { schema: z.string() } } },
-    default: PROBLEM_ANSWER,
-  },
+  responses: { 200: bodyOf('text/html', 'The page.'), default: PROBLEM_ANSWER },
 });
 
 const aliveRoute = createRoute({
@@ -32,7 +29,7 @@ const aliveRoute = createRoute({
   path: '/healthz',
   summary: 'The process is alive.',
   request: { query: NO_QUERY },
-  responses: { 200: answer(z.object({ status: z.literal('alive') }), 'Alive.'), default: PROBLEM_ANSWER },
+  responses: answersOf(200, z.object({ status: z.literal('alive') }), 'Alive.'),
 });
 
 const readyRoute = createRoute({
@@ -40,7 +37,7 @@ const readyRoute = createRoute({
   path: '/readyz',
   summary: 'The database and the blob store can be reached.',
   request: { query: NO_QUERY },
-  responses: { 200: answer(z.object({ status: z.literal('ready') }), 'Ready.'), default: PROBLEM_ANSWER },
+  responses: answersOf(200, z.object({ status: z.literal('ready') }), 'Ready.'),
 });
 
 const metricsRoute = createRoute({
@@ -48,10 +45,7 @@ const metricsRoute = createRoute({
   path: '/metrics',
   summary: 'Figures of this process and of the queue as OpenMetrics. Off loopback for keepers.',
   request: { query: NO_QUERY },
-  responses: {
-    200: { description: 'The figures.', content: { 'application/openmetrics-text': { schema: z.string() } } },
-    default: PROBLEM_ANSWER,
-  },
+  responses: { 200: bodyOf('application/openmetrics-text', 'The figures.'), default: PROBLEM_ANSWER },
 });
 
 /** The queue as figures. No label names a campaign, a sample or a lab. */

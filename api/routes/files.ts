@@ -4,7 +4,7 @@ import type { Ports } from '../../jobs/ports/index.ts';
 import { FILE_LIMIT_BYTES, receiveFile } from '../../jobs/store/index.ts';
 import { quote } from '../../schema/wire/flags.ts';
 import type { ApiEnv } from '../access.ts';
-import { type ApiApp, answer, ID_PARAM, listOf, NO_QUERY, PROBLEM_ANSWER, strict } from '../openapi.ts';
+import { type ApiApp, answersOf, ID_PARAM, listOf, NO_QUERY, strict } from '../openapi.ts';
 import { Problem } from '../problems.ts';
 import { requireCampaign } from '../results.ts';
 import { ReceivedShape } from '../shapes/campaign.ts';
@@ -28,7 +28,7 @@ const putRoute = createRoute({
     }),
     body: { content: { 'application/octet-stream': { schema: { type: 'string', format: 'binary' } } } },
   },
-  responses: { 202: answer(ReceivedShape, 'What became of the file.'), default: PROBLEM_ANSWER },
+  responses: answersOf(202, ReceivedShape, 'What became of the file.'),
 });
 
 const formRoute = createRoute({
@@ -50,7 +50,7 @@ const formRoute = createRoute({
       },
     },
   },
-  responses: { 202: answer(listOf(ReceivedShape), 'What became of each file.'), default: PROBLEM_ANSWER },
+  responses: answersOf(202, listOf(ReceivedShape), 'What became of each file.'),
 });
 
 type ApiContext = Context<ApiEnv>;

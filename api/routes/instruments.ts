@@ -1,13 +1,9 @@
 import { createRoute, z } from '@hono/zod-openapi';
-import type { Context } from 'hono';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { answerCalibration, type CalibrationPoints } from '../../jobs/steps/answer-calibration.ts';
-import { findInstrument, type InstrumentView, readTable } from '../../jobs/store/index.ts';
-import { quote } from '../../schema/wire/flags.ts';
-import type { ApiEnv } from '../access.ts';
-import { type ApiApp, answer, ID_PARAM, NO_QUERY, oneOf, PROBLEM_ANSWER, strict } from '../openapi.ts';
-import { Problem } from '../problems.ts';
-import { isUnchanged, requireCampaign, UNCHANGED_ANSWER } from '../results.ts';
+import { findInstrument, readTable } from '../../jobs/store/index.ts';
+import { type ApiApp, BY_ID, ID_PARAM, oneOf, strict } from '../openapi.ts';
+import { isUnchanged, requireCampaign, requireOf, resultAnswers } from '../results.ts';
 import { axisShape, type CurveSeries, seriesShape } from '../shapes/curves.ts';
 import { ROW_SHAPES } from '../shapes/rows.ts';
 
@@ -30,8 +26,8 @@ const instrumentRoute = createRoute({
   method: 'get',
   path: '/v1/instruments/{id}',
   summary: 'One instrument and its correction.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: { 200: answer(InstrumentShape, 'The instrument.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
+  request: BY_ID,
+  responses: resultAnswers(InstrumentShape, 'The instrument.'),
 });
 
 const curvesRoute = createRoute({
@@ -39,7 +35,7 @@ const curvesRoute = createRoute({
   path: '/v1/instruments/{id}/curves',
   summary: 'How late its standards melt against heating rate, and the correction drawn from them.',
   request: { params: ID_PARAM, query: strict({ kind: oneOf(['calibration']) }) },
-  responses: { 200: answer(CalibrationShape, 'The curves.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
+  responses: resultAnswers(CalibrationShape, 'The curves.'),
 });
 
 /** Half width of a 95 % interval in standard errors. */
@@ -67,11 +63,7 @@ function calibrationSeries({ calibration, standards }: CalibrationPoints): Curve
   return [...points, line];
 }
 
-async function requireInstrument(c: Context<ApiEnv>, ports: Ports, id: string): Promise<InstrumentView> {
-  const found = await findInstrument(ports, id, c.get('access').lab);
-  if (!found) throw new Problem('not-found', `there is no instrument ${quote(id)}`);
-  return found;
-}
+const requireInstrument = requireOf('instrument', findInstrument);
 
 export function addInstrumentRoutes(app: ApiApp, ports: Ports): void {
   app.openapi(instrumentRoute, async (c) => {

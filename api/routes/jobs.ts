@@ -2,18 +2,7 @@ import { createRoute } from '@hono/zod-openapi';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { type JobView, listJobs, retryJob } from '../../jobs/store/index.ts';
 import { JOB_STATES } from '../../schema/wire/states.ts';
-import {
-  type ApiApp,
-  answer,
-  ID_PARAM,
-  listOf,
-  NO_QUERY,
-  oneOf,
-  PAGE_QUERY,
-  PROBLEM_ANSWER,
-  strict,
-  textOf,
-} from '../openapi.ts';
+import { type ApiApp, answersOf, BY_ID, listOf, oneOf, PAGE_QUERY, strict, textOf } from '../openapi.ts';
 import { pageOf, requireCampaign } from '../results.ts';
 import { JobShape } from '../shapes/campaign.ts';
 
@@ -28,15 +17,15 @@ const listRoute = createRoute({
       ...PAGE_QUERY,
     }),
   },
-  responses: { 200: answer(listOf(JobShape), 'A page of jobs.'), default: PROBLEM_ANSWER },
+  responses: answersOf(200, listOf(JobShape), 'A page of jobs.'),
 });
 
 const retryRoute = createRoute({
   method: 'post',
   path: '/v1/jobs/{id}/retry',
   summary: 'Queue a failed job again with fresh attempts.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: { 202: answer(JobShape, 'The job, queued.'), default: PROBLEM_ANSWER },
+  request: BY_ID,
+  responses: answersOf(202, JobShape, 'The job, queued.'),
 });
 
 const timeOf = (ms: number | null) => (ms === null ? null : new Date(ms).toISOString());

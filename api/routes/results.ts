@@ -1,6 +1,6 @@
-import { createRoute, z } from '@hono/zod-openapi';
+import { createRoute } from '@hono/zod-openapi';
 import type { Ports } from '../../jobs/ports/index.ts';
-import { type ApiApp, ID_PARAM, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
+import { type ApiApp, BY_ID, bodyOf, PROBLEM_ANSWER } from '../openapi.ts';
 import { writeReport } from '../report.ts';
 import { isUnchanged, requireCampaign, UNCHANGED_ANSWER } from '../results.ts';
 import { tableEntries, type ZipEntry, zipStream } from '../results-zip.ts';
@@ -9,24 +9,16 @@ const zipRoute = createRoute({
   method: 'get',
   path: '/v1/campaigns/{id}/results.zip',
   summary: 'All result files of a campaign in one archive.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: {
-    200: { description: 'The archive.', content: { 'application/zip': { schema: z.string() } } },
-    304: UNCHANGED_ANSWER,
-    default: PROBLEM_ANSWER,
-  },
+  request: BY_ID,
+  responses: { 200: bodyOf('application/zip', 'The archive.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
 });
 
 const reportRoute = createRoute({
   method: 'get',
   path: '/v1/campaigns/{id}/report',
   summary: 'The report of a campaign: one page with every plot and table, without network.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: {
-    200: { description: 'The page.', content: { 'text/html': { schema: z.string() } } },
-    304: UNCHANGED_ANSWER,
-    default: PROBLEM_ANSWER,
-  },
+  request: BY_ID,
+  responses: { 200: bodyOf('text/html', 'The page.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
 });
 
 /** The report may use its own styles and nothing from anywhere; a browser must never run a script in it. */

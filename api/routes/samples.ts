@@ -1,16 +1,13 @@
 import { createRoute, z } from '@hono/zod-openapi';
-import type { Context } from 'hono';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { answerForecast } from '../../jobs/steps/answer-forecast.ts';
-import { findSample, listSampleScans, type SampleView } from '../../jobs/store/index.ts';
-import { quote } from '../../schema/wire/flags.ts';
+import { findSample, listSampleScans } from '../../jobs/store/index.ts';
 import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import { SAMPLE_STATES, SCAN_STATES } from '../../schema/wire/states.ts';
-import type { ApiEnv } from '../access.ts';
-import { limitJson } from '../json-body.ts';
-import { type ApiApp, answer, ID_PARAM, NO_QUERY, oneOf, PROBLEM_ANSWER, strict } from '../openapi.ts';
+import { jsonById } from '../json-body.ts';
+import { type ApiApp, answersOf, BY_ID, ID_PARAM, oneOf, strict } from '../openapi.ts';
 import { Problem } from '../problems.ts';
-import { isUnchanged, requireCampaign, UNCHANGED_ANSWER } from '../results.ts';
+import { isUnchanged, requireCampaign, requireOf, resultAnswers } from '../results.ts';
 import { readCurves } from '../sample-curves.ts';
 import { CURVE_KINDS, CurvesShape } from '../shapes/curves.ts';
 import { AnswerShape, QUESTION_FORMS, QuestionBody, questionOf } from '../shapes/forecasts.ts';
@@ -30,8 +27,8 @@ const sampleRoute = createRoute({
   method: 'get',
   path: '/v1/samples/{id}',
   summary: 'One sample and its scans. Its numbers are in the parameters table of its campaign.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: { 200: answer(SampleShape, 'The sample.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
+  request: BY_ID,
+  responses: resultAnswers(SampleShape, 'The sample.'),
 });
 
 const curvesRoute = createRoute({
@@ -39,27 +36,18 @@ const curvesRoute = createRoute({
   path: '/v1/samples/{id}/curves',
   summary: 'Curves of one kind, at most 2000 points each, extremes kept.',
   request: { params: ID_PARAM, query: strict({ kind: oneOf(CURVE_KINDS) }) },
-  responses: { 200: answer(CurvesShape, 'The curves.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
+  responses: resultAnswers(CurvesShape, 'The curves.'),
 });
 
-async function requireSample(c: Context<ApiEnv>, ports: Ports, id: string): Promise<SampleView> {
-  const sample = await findSample(ports, id, c.get('access').lab);
-  if (!sample) throw new Problem('not-found', `there is no sample ${quote(id)}`);
-  return sample;
-}
+const requireSample = requireOf('sample', findSample);
 
 const forecastRoute = createRoute({
   method: 'post',
   path: '/v1/samples/{id}/forecasts',
   summary: 'Answer one question about times, temperatures and conversions, from the draws of the last fit.',
   description: FORECAST_CAUTION,
-  middleware: [limitJson] as const,
-  request: {
-    params: ID_PARAM,
-    query: NO_QUERY,
-    body: { required: true, content: { 'application/json': { schema: QuestionBody } } },
-  },
-  responses: { 200: answer(AnswerShape, 'The answer by every method that the data support.'), default: PROBLEM_ANSWER },
+  ...jsonById(QuestionBody),
+  responses: answersOf(200, AnswerShape, 'The answer by every method that the data support.'),
 });
 
 export function addSampleRoutes(app: ApiApp, ports: Ports): void {

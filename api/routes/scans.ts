@@ -1,14 +1,11 @@
 import { createRoute, z } from '@hono/zod-openapi';
-import type { Context } from 'hono';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { correctScan, findScan, readScanHistory, type ScanView } from '../../jobs/store/index.ts';
 import type { CorrectionField, CorrectionValue } from '../../schema/wire/corrections.ts';
-import { quote } from '../../schema/wire/flags.ts';
-import type { ApiEnv } from '../access.ts';
-import { limitJson } from '../json-body.ts';
-import { type ApiApp, answer, ID_PARAM, listOf, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
+import { jsonById } from '../json-body.ts';
+import { type ApiApp, answersOf, BY_ID, bodyOf, listOf, PROBLEM_ANSWER } from '../openapi.ts';
 import { Problem } from '../problems.ts';
-import { isUnchanged, requireCampaign, UNCHANGED_ANSWER } from '../results.ts';
+import { isUnchanged, requireCampaign, requireOf, resultAnswers } from '../results.ts';
 import {
   CorrectedShape,
   CorrectionsBody,
@@ -33,19 +30,16 @@ const scanRoute = createRoute({
   method: 'get',
   path: '/v1/scans/{id}',
   summary: 'One scan.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: { 200: answer(ScanShape, 'The scan.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
+  request: BY_ID,
+  responses: resultAnswers(ScanShape, 'The scan.'),
 });
 
 const originalRoute = createRoute({
   method: 'get',
   path: '/v1/scans/{id}/original',
   summary: 'The file as it came, byte for byte.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: {
-    200: { description: 'The bytes.', content: { 'application/octet-stream': { schema: z.string() } } },
-    default: PROBLEM_ANSWER,
-  },
+  request: BY_ID,
+  responses: { 200: bodyOf('application/octet-stream', 'The bytes.'), default: PROBLEM_ANSWER },
 });
 
 const correctRoute = createRoute({
@@ -54,24 +48,16 @@ const correctRoute = createRoute({
   summary: 'Correct what the sheet says of a scan.',
   description:
     'Only what depends on the scan is computed again. A corrected field stands over the sheet until that cell changes in a later sheet; null takes a correction back.',
-  middleware: [limitJson] as const,
-  request: {
-    params: ID_PARAM,
-    query: NO_QUERY,
-    body: { required: true, content: { 'application/json': { schema: CorrectionsBody } } },
-  },
-  responses: {
-    202: answer(ScanShape, 'The scan; the jobs apply the correction next.'),
-    default: PROBLEM_ANSWER,
-  },
+  ...jsonById(CorrectionsBody),
+  responses: answersOf(202, ScanShape, 'The scan; the jobs apply the correction next.'),
 });
 
 const historyRoute = createRoute({
   method: 'get',
   path: '/v1/scans/{id}/history',
   summary: 'What was corrected on a scan, oldest first.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: { 200: answer(listOf(HistoryShape), 'The corrections.'), 304: UNCHANGED_ANSWER, default: PROBLEM_ANSWER },
+  request: BY_ID,
+  responses: resultAnswers(listOf(HistoryShape), 'The corrections.'),
 });
 
 const shapeOf = ({ id, campaignId, bytes, rows, corrections }: ScanView): z.infer<typeof ScanShape> => ({
@@ -87,11 +73,7 @@ const shapeOf = ({ id, campaignId, bytes, rows, corrections }: ScanView): z.infe
   ),
 });
 
-async function requireScan(c: Context<ApiEnv>, ports: Ports, id: string): Promise<ScanView> {
-  const scan = await findScan(ports, id, c.get('access').lab);
-  if (!scan) throw new Problem('not-found', `there is no scan ${quote(id)}`);
-  return scan;
-}
+const requireScan = requireOf('scan', findScan);
 
 export function addScanRoutes(app: ApiApp, ports: Ports): void {
   app.openapi(scanRoute, async (c) => {

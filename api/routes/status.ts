@@ -2,7 +2,7 @@ import { createRoute, z } from '@hono/zod-openapi';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { campaignStatus, findCampaign, listSamples } from '../../jobs/store/index.ts';
 import { type StreamTimes, streamStatus } from '../event-stream.ts';
-import { type ApiApp, answer, ID_PARAM, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
+import { type ApiApp, answersOf, BY_ID, bodyOf, ID_PARAM, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
 import { requireCampaign } from '../results.ts';
 import { StatusShape } from '../shapes/campaign.ts';
 
@@ -10,8 +10,8 @@ const statusRoute = createRoute({
   method: 'get',
   path: '/v1/campaigns/{id}/status',
   summary: 'Where the campaign stands.',
-  request: { params: ID_PARAM, query: NO_QUERY },
-  responses: { 200: answer(StatusShape, 'The state now.'), default: PROBLEM_ANSWER },
+  request: BY_ID,
+  responses: answersOf(200, StatusShape, 'The state now.'),
 });
 
 const streamRoute = createRoute({
@@ -24,10 +24,7 @@ const streamRoute = createRoute({
     query: NO_QUERY,
     headers: z.object({ 'last-event-id': z.string().max(200, { error: 'at most 200 characters' }).optional() }),
   },
-  responses: {
-    200: { description: 'The stream.', content: { 'text/event-stream': { schema: z.string() } } },
-    default: PROBLEM_ANSWER,
-  },
+  responses: { 200: bodyOf('text/event-stream', 'The stream.'), default: PROBLEM_ANSWER },
 });
 
 /** Adds to each sample the id under which its own routes know it. */
