@@ -26,6 +26,10 @@ export function detectEncoding(head: Uint8Array): TextEncoding {
   }
   if (pairs >= 2 && oddZeros > 0.7 * pairs && evenZeros < 0.05 * pairs) return { name: 'UTF-16 LE', markLength: 0 };
   if (pairs >= 2 && evenZeros > 0.7 * pairs && oddZeros < 0.05 * pairs) return { name: 'UTF-16 BE', markLength: 0 };
+  // Most heads are decided by their first byte above ASCII, or hold none: no text is made for those.
+  const at = head.findIndex((byte) => byte > 127);
+  if (at < 0 || (head[at] === 0xc2 && (head[at + 1] === 0xb0 || head[at + 1] === 0xb5)))
+    return { name: 'UTF-8', markLength: 0 };
   // `stream` lets a character cut by the end of the head pass.
   const text = new TextDecoder('utf-8').decode(head, { stream: true });
   if (!text.includes('\ufffd') || /[°µ]/.test(text)) return { name: 'UTF-8', markLength: 0 };
@@ -42,9 +46,13 @@ export function createTranscoder(
   return (chunk, last) => encoder.encode(decoder.decode(chunk, { stream: !last }));
 }
 
-/** Text of bytes as the parser sees them (after `createTranscoder`). */
+/** Decoder of bytes as the parser sees them (after `createTranscoder`); making one costs more than a line's text. */
+export function textDecoder(encoding: TextEncoding): TextDecoder {
+  return new TextDecoder(encoding.name === 'Latin-1' ? 'latin1' : 'utf-8', { ignoreBOM: true });
+}
+
 export function decodeText(bytes: Uint8Array, encoding: TextEncoding): string {
-  return new TextDecoder(encoding.name === 'Latin-1' ? 'latin1' : 'utf-8', { ignoreBOM: true }).decode(bytes);
+  return textDecoder(encoding).decode(bytes);
 }
 
 /** A whole small file (a sheet) as text, without its byte-order mark. */

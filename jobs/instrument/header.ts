@@ -45,6 +45,8 @@ export type HeaderSearch = { header: ScanHeader; matched: boolean } | { refusal:
 
 /** Lines after the header looked at for the first row of numbers. */
 const ROWS_TRIED = 10;
+/** Lines behind a header that can bear on it: for the first row of numbers, then for the decimal mark. */
+export const LINES_TRIED = 2 * ROWS_TRIED;
 const DELIMITERS: readonly Delimiter[] = ['tab', 'semicolon', 'pipe', 'comma', 'spaces'];
 
 /**

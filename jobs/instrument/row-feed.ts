@@ -14,7 +14,8 @@ export class RowFeed {
   refusal: ReadRefusal | undefined;
   /** The last line, when the file ended without a line end */
   openLine: number | undefined;
-  private readonly carried = new Uint8Array(LINE_LIMIT + 2);
+  /** Made when a chunk first ends inside a line: small files never need it. */
+  private carried: Uint8Array | undefined;
   private carriedLength = 0;
   /** The line before ended in CR: a LF that comes first now belongs to it. */
   private afterReturn = false;
@@ -68,11 +69,14 @@ export class RowFeed {
   private carry(part: Uint8Array): void {
     if (this.carriedLength + part.length > LINE_LIMIT) this.refusal ??= lineTooLong(this.parser.line);
     if (this.refusal !== undefined) return;
+    if (part.length === 0) return;
+    this.carried ??= new Uint8Array(LINE_LIMIT + 2);
     this.carried.set(part, this.carriedLength);
     this.carriedLength += part.length;
   }
 
   private parseCarried(): void {
+    if (this.carried === undefined) return;
     this.carried[this.carriedLength] = LF;
     this.parse(this.carried, 0, this.carriedLength + 1);
     this.carriedLength = 0;

@@ -2,14 +2,16 @@
 import { quote } from '../../schema/wire/flags.ts';
 import type { ReadOutcome, ReadRefusal } from '../../schema/wire/scan.ts';
 import { binaryKind } from './binary.ts';
-import { createTranscoder, decodeText, detectEncoding, type TextEncoding } from './encoding.ts';
-import { findHeader, type HeaderSearch, type HeadLine, type ScanHeader } from './header.ts';
+import { createTranscoder, decodeText, detectEncoding, type TextEncoding, textDecoder } from './encoding.ts';
+import { findHeader, type HeaderSearch, type HeadLine, LINES_TRIED, type ScanHeader } from './header.ts';
 import { finishScan } from './repairs.ts';
 import { lineTooLong, RowFeed } from './row-feed.ts';
 import { LINE_LIMIT, RowParser } from './row-parser.ts';
 
 /** Bytes of head first looked at for a header; doubled while none is found, up to the limit. */
 const HEAD_BYTES = 65_536;
+/** Most headers end within these: only their lines are made into text then. */
+const SHORT_HEAD_BYTES = 4096;
 /** The header must stand within these first bytes (4 MiB). */
 const HEAD_LIMIT = 4_194_304;
 
@@ -90,9 +92,10 @@ function openHead(bytes: Uint8Array, last: boolean, final: boolean): OpenRows | 
   const transcode = createTranscoder(encoding);
   const body = bytes.subarray(encoding.markLength);
   const text = transcode === undefined ? body : transcode(body, last);
-  const lines = headLines(text, encoding, last);
+  const short = shortSearch(text, encoding);
+  const lines = short ?? headLines(text, encoding, last);
   if ('refusal' in lines) return lines;
-  const search = findHeader(lines);
+  const search = 'header' in lines ? lines : findHeader(lines);
   if ('header' in search && (search.matched || final)) {
     const { header } = search;
     const feed = new RowFeed(new RowParser(header, encoding), transcode);
@@ -128,9 +131,20 @@ function headRefusal(search: HeaderSearch, last: boolean): ReadRefusal {
   return last ? refusal : { ...refusal, reason: `${refusal.reason}, within the first ${HEAD_LIMIT} bytes` };
 }
 
+/** A header within the first bytes that no further line could change. */
+function shortSearch(text: Uint8Array, encoding: TextEncoding) {
+  if (text.length <= SHORT_HEAD_BYTES) return undefined;
+  const lines = headLines(text.subarray(0, SHORT_HEAD_BYTES), encoding, false);
+  if ('refusal' in lines) return undefined;
+  const search = findHeader(lines);
+  const enough = 'header' in search && search.matched && lines.length >= search.header.dataLine + LINES_TRIED;
+  return enough ? search : undefined;
+}
+
 /** Lines of the head; the last, unfinished one only when the file ends here. */
 function headLines(bytes: Uint8Array, encoding: TextEncoding, last: boolean): HeadLine[] | { refusal: ReadRefusal } {
   const lines: HeadLine[] = [];
+  const decoder = textDecoder(encoding);
   let start = 0;
   while (start < bytes.length) {
     let end = start;
@@ -139,7 +153,7 @@ function headLines(bytes: Uint8Array, encoding: TextEncoding, last: boolean): He
     // A CR at the very end may be half of a CRLF.
     if (!last && (end === bytes.length || (bytes[end] === CR && end + 1 === bytes.length))) break;
     const next = bytes[end] === CR && bytes[end + 1] === LF ? end + 2 : end + 1;
-    lines.push({ text: decodeText(bytes.subarray(start, end), encoding), line: lines.length + 1, next });
+    lines.push({ text: decoder.decode(bytes.subarray(start, end)), line: lines.length + 1, next });
     start = next;
   }
   return lines;

@@ -1,3 +1,9 @@
+/** Working room of small systems: they are solved thousands of times a scan, and three arrays each time cost more than the arithmetic. */
+const SMALL = 8;
+const smallScale = new Float64Array(SMALL);
+const smallFactor = new Float64Array(SMALL * SMALL);
+const smallColumn = new Float64Array(SMALL);
+
 /**
  * Solves the normal equations of a small least-squares problem by Cholesky after scaling to unit diagonal.
  * @param matrix p × p symmetric, row-major; overwritten by its inverse (in the original scale)
@@ -5,13 +11,14 @@
  * @returns false when the matrix is not positive definite to working precision (nothing useful in the outputs then)
  */
 export function solveSymmetric(matrix: Float64Array, rhs: Float64Array, p: number): boolean {
-  const scale = new Float64Array(p);
+  const small = p <= SMALL;
+  const scale = small ? smallScale : new Float64Array(p);
   for (let i = 0; i < p; i++) {
     const d = matrix[i * p + i];
     if (!(d > 0) || !Number.isFinite(d)) return false;
     scale[i] = 1 / Math.sqrt(d);
   }
-  const l = new Float64Array(p * p);
+  const l = small ? smallFactor : new Float64Array(p * p);
   for (let i = 0; i < p; i++) {
     for (let j = 0; j <= i; j++) {
       let sum = matrix[i * p + j] * scale[i] * scale[j];
@@ -25,7 +32,7 @@ export function solveSymmetric(matrix: Float64Array, rhs: Float64Array, p: numbe
     }
   }
   // Columns of the inverse, then the solution as inverse × right-hand side: p is at most a handful.
-  const column = new Float64Array(p);
+  const column = small ? smallColumn : new Float64Array(p);
   for (let c = 0; c < p; c++) {
     for (let i = 0; i < p; i++) {
       let sum = i === c ? 1 : 0;
@@ -39,8 +46,10 @@ export function solveSymmetric(matrix: Float64Array, rhs: Float64Array, p: numbe
     }
     for (let i = 0; i < p; i++) matrix[i * p + c] = column[i] * scale[i] * scale[c];
   }
-  const solution = new Float64Array(p);
-  for (let i = 0; i < p; i++) for (let k = 0; k < p; k++) solution[i] += matrix[i * p + k] * rhs[k];
-  rhs.set(solution);
+  for (let i = 0; i < p; i++) {
+    column[i] = 0;
+    for (let k = 0; k < p; k++) column[i] += matrix[i * p + k] * rhs[k];
+  }
+  for (let i = 0; i < p; i++) rhs[i] = column[i];
   return true;
 }

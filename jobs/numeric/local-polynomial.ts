@@ -12,6 +12,12 @@ export interface LocalFit {
   points: number;
 }
 
+const LARGEST = 4;
+/** Working room: hundreds of local fits a scan. */
+const normals = [0, 1, 2, 3, 4].map((p) => new Float64Array(p * p));
+const right = new Float64Array(LARGEST);
+const powers = new Float64Array(2 * LARGEST - 1);
+
 /**
  * Least-squares polynomial through the points within ± half of `at` (Savitzky & Golay 1964 on the actual abscissae, which may be
  * uneven). The window grows until it holds degree + 2 points.
@@ -39,10 +45,10 @@ export function fitLocalPolynomial(
     else to++;
   }
   const p = Math.min(degree, to - from - 1) + 1;
-  const normal = new Float64Array(p * p);
-  const rhs = new Float64Array(p);
+  const normal = normals[p];
+  const rhs = right.fill(0);
   const unit = Math.max(half, x[to - 1] - at, at - x[from]);
-  const power = new Float64Array(2 * p - 1);
+  const power = powers.fill(0);
   for (let i = from; i < to; i++) {
     const u = (x[i] - at) / unit;
     let v = 1;

@@ -51,6 +51,9 @@ const SHORT_FLANK = 0.9;
 export const BLOCK_WIDTHS = 1 / 6;
 export const BLOCK_HEIGHT_PART = 4e-4;
 
+/** Models of less weight add nothing. */
+const LEAST_WEIGHT = 1e-9;
+
 export interface Flanks {
   /** bins [from, to) of either flank; empty when from ≥ to */
   left: readonly [number, number];
@@ -80,44 +83,69 @@ export function fitBaseline(
   const oneSided = nLeft < 3 || nRight < 3;
   const models = oneSided
     ? ONE_FLANK
-    : (steps === 'none' ? WITHOUT_STEP : typeof steps === 'object' ? GLASS_STEP : MODELS).filter(
-        (m) => shorter >= SHORT_FLANK || !(m.includes(3) || m.includes(5)),
-      );
+    : steps === 'none'
+      ? WITHOUT_STEP
+      : typeof steps === 'object'
+        ? GLASS_STEP
+        : MODELS;
   const normal = new Float64Array(p * p);
   const rhs = new Float64Array(p);
   const squares = sums.fillNormal(left, right, normal, rhs, flanks.leftWeight ?? 1);
-  const solved = models.flatMap((used) => {
-    if (used.length + 1 > nLeft + nRight) return [];
-    const fit = solveModel(normal, rhs, squares, used);
-    return fit ? [{ ...fit, used }] : [];
-  });
-  if (solved.length === 0) return undefined;
-  // What even the fullest model leaves sets the noise where it is not white.
   const n = nLeft + nRight;
-  const least = Math.min(...solved.map((m) => m.chi / Math.max(1, n - m.used.length)));
+  const solved: Solved[] = [];
+  // What even the fullest model leaves sets the noise where it is not white.
+  let least = Number.POSITIVE_INFINITY;
+  for (const used of models) {
+    if (used.length + 1 > n) continue;
+    if (!oneSided && shorter < SHORT_FLANK && (used.includes(3) || used.includes(5))) continue;
+    const fit = solveModel(normal, rhs, squares, used);
+    if (!fit) continue;
+    solved.push(fit);
+    least = Math.min(least, fit.chi / Math.max(1, n - used.length));
+  }
+  if (solved.length === 0) return undefined;
   const v = Math.max(variance, least);
-  const effective = Math.max(4, n * Math.min(1, sums.noiseVariance / v));
-  const scores = solved.map((m) => m.chi / v + m.used.length * Math.log(effective));
-  const best = Math.min(...scores);
-  const weights = scores.map((s) => Math.exp(-(s - best) / 2));
-  const total = weights.reduce((a, b) => a + b, 0);
+  const penalty = Math.log(Math.max(4, n * Math.min(1, sums.noiseVariance / v)));
+  let best = Number.POSITIVE_INFINITY;
+  for (const m of solved) {
+    m.score = m.chi / v + m.used.length * penalty;
+    if (m.score < best) best = m.score;
+  }
+  let total = 0;
+  for (const m of solved) total += Math.exp(-(m.score - best) / 2);
   const coefficients = new Float64Array(p);
-  solved.forEach((m, k) => {
-    for (let i = 0; i < p; i++) coefficients[i] += (weights[k] / total) * m.coefficients[i];
-  });
+  for (const m of solved) {
+    const weight = Math.exp(-(m.score - best) / 2) / total;
+    m.used.forEach((term, i) => {
+      coefficients[term] += weight * m.solution[i];
+    });
+  }
   const covariance = new Float64Array(p * p);
-  solved.forEach((m, k) => {
-    if (weights[k] < 1e-9 * total) return;
-    for (let i = 0; i < p; i++) {
-      for (let j = 0; j < p; j++) {
-        const apart = (m.coefficients[i] - coefficients[i]) * (m.coefficients[j] - coefficients[j]);
-        covariance[i * p + j] += (weights[k] / total) * (m.inverse[i * p + j] * v + apart);
-      }
+  const apart = new Float64Array(p);
+  for (const m of solved) {
+    const weight = Math.exp(-(m.score - best) / 2) / total;
+    if (weight < LEAST_WEIGHT) continue;
+    const { used } = m;
+    for (let i = 0; i < p; i++) apart[i] = -coefficients[i];
+    for (let i = 0; i < used.length; i++) {
+      apart[used[i]] += m.solution[i];
+      for (let j = 0; j < used.length; j++)
+        covariance[used[i] * p + used[j]] += weight * v * m.inverse[i * used.length + j];
     }
-  });
+    for (let i = 0; i < p; i++) for (let j = 0; j < p; j++) covariance[i * p + j] += weight * apart[i] * apart[j];
+  }
   coefficients[0] += sums.level;
   const side = oneSided ? (nLeft < 3 ? 'right' : 'left') : typeof steps === 'object' ? steps : 'both';
   return { peakS: sums.peakS, widthS: sums.widthS, coefficients, covariance, ...limits, side };
+}
+
+/** One model's least squares: coefficients of its terms `used`, inverse of their normal matrix, sum of squares left. */
+interface Solved {
+  used: readonly number[];
+  solution: Float64Array;
+  inverse: Float64Array;
+  chi: number;
+  score: number;
 }
 
 function solveModel(
@@ -125,24 +153,18 @@ function solveModel(
   rhs: Float64Array,
   squares: number,
   used: readonly number[],
-): { coefficients: Float64Array; inverse: Float64Array; chi: number } | undefined {
+): Solved | undefined {
   const p = used.length;
-  const a = new Float64Array(p * p);
-  const b = new Float64Array(p);
+  const inverse = new Float64Array(p * p);
+  const solution = new Float64Array(p);
   for (let i = 0; i < p; i++) {
-    b[i] = rhs[used[i]];
-    for (let j = 0; j < p; j++) a[i * p + j] = normal[used[i] * TERMS + used[j]];
+    solution[i] = rhs[used[i]];
+    for (let j = 0; j < p; j++) inverse[i * p + j] = normal[used[i] * TERMS + used[j]];
   }
-  if (!solveSymmetric(a, b, p)) return undefined;
-  const coefficients = new Float64Array(TERMS);
-  const inverse = new Float64Array(TERMS * TERMS);
+  if (!solveSymmetric(inverse, solution, p)) return undefined;
   let explained = 0;
-  for (let i = 0; i < p; i++) {
-    coefficients[used[i]] = b[i];
-    explained += b[i] * rhs[used[i]];
-    for (let j = 0; j < p; j++) inverse[used[i] * TERMS + used[j]] = a[i * p + j];
-  }
-  return { coefficients, inverse, chi: Math.max(0, squares - explained) };
+  for (let i = 0; i < p; i++) explained += solution[i] * rhs[used[i]];
+  return { used, solution, inverse, chi: Math.max(0, squares - explained), score: 0 };
 }
 
 /** Values of the six terms at time t (s) and conversion α. */

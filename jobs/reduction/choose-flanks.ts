@@ -66,7 +66,7 @@ function smoothFlank(
       ? [Math.max(bins[0], bins[1] - length), bins[1]]
       : [bins[0], Math.min(bins[1], bins[0] + length)];
   };
-  const degree = (b: [number, number]) => (sums.lengthOf(b) > 2 ? 3 : 2);
+  const degree = (b: [number, number]) => (sums.lengthOf(b) > 2 ? 3 : (2 as const));
   const short = piece(SHORTER[SHORTER.length - 1]);
   const allowed = SMOOTH_RATIO * Math.max(variance, sums.scatter(short, degree(short)));
   for (const part of SHORTER) {

@@ -18,41 +18,59 @@ export interface Excess {
 
 /** Rounds of α → baseline → α; each shrinks the change by about step ÷ height, so the last is far below noise. */
 const ROUNDS = 12;
+/** … and it has settled when the area changes by less than this part. */
+const SETTLED = 1e-7;
 
 /**
  * Subtracts the conversion-weighted baseline; α and baseline are iterated to a fixed point.
  * @param foot area of the event before the left limit, signal units × s
  * @param total whole area where it is known from elsewhere (the end of the event is hidden), else what is measured
+ * @param start the event with a baseline near this one: α is iterated from there
  */
-export function subtractBaseline(w: EventWindow, baseline: Baseline, foot: number, total?: number): Excess {
+export function subtractBaseline(
+  w: EventWindow,
+  baseline: Baseline,
+  foot: number,
+  total?: number,
+  start?: Excess,
+): Excess {
   const n = w.t.length;
   const from = lowerBound(w.t, baseline.leftS);
   const to = Math.max(from, lowerBound(w.t, baseline.rightS));
   const e = new Float64Array(n);
   const cumulative = new Float64Array(n);
-  // First round: conversion as the share of time passed; the fixed point does not depend on it.
-  for (let i = from; i < to; i++) cumulative[i] = (i - from) / Math.max(1, to - 1 - from);
   const stepped = baseline.side === 'both' && (baseline.coefficients[4] !== 0 || baseline.coefficients[5] !== 0);
   // The baseline of the left side once, then only the step under the event changes from round to round.
-  const c = baseline.coefficients;
   for (let i = from; i < to; i++) e[i] = w.y[i] - baselineAt(baseline, w.t[i], 0);
-  const above = stepped ? e.slice(from, to) : undefined;
-  let area = 1;
+  const above = stepped ? e.slice(from, to) : e;
+  if (stepped) {
+    // First round: conversion of a near baseline, else the share of time passed; the fixed point does not depend on it.
+    if (start) for (let i = from; i < to; i++) cumulative[i] = start.cumulative[i] / start.area;
+    else for (let i = from; i < to; i++) cumulative[i] = (i - from) / Math.max(1, to - 1 - from);
+  }
+  const [step, slope] = [baseline.coefficients[4], baseline.coefficients[5] / baseline.widthS];
+  const { t } = w;
+  let area = stepped && start ? start.area : 1;
+  let scale = 1;
   for (let round = 0; round < (stepped ? ROUNDS : 1); round++) {
-    for (let i = from; above && i < to; i++) {
-      const alpha = Math.min(1, Math.max(0, cumulative[i] / area));
-      e[i] = above[i - from] - alpha * (c[4] + (c[5] * (w.t[i] - baseline.peakS)) / baseline.widthS);
-    }
     let sum = foot;
-    cumulative[from] = foot;
-    for (let i = from + 1; i < to; i++) {
-      sum += 0.5 * (e[i] + e[i - 1]) * (w.t[i] - w.t[i - 1]);
+    let before = 0;
+    for (let i = from; i < to; i++) {
+      let value = above[i - (stepped ? from : 0)];
+      if (stepped) {
+        const alpha = Math.min(1, Math.max(0, cumulative[i] * scale));
+        value -= alpha * (step + slope * (t[i] - baseline.peakS));
+        e[i] = value;
+      }
+      if (i > from) sum += 0.5 * (value + before) * (t[i] - t[i - 1]);
       cumulative[i] = sum;
+      before = value;
     }
     const change = Math.abs(sum - area) / Math.abs(sum || 1);
     area = sum;
-    if (!(area > 0) || (round > 0 && change < 1e-7)) break;
+    if (!(area > 0) || (round > 0 && change < SETTLED)) break;
     if (total !== undefined) area = total;
+    scale = 1 / area;
   }
   if (total !== undefined) area = total;
   for (let i = to; i < n; i++) cumulative[i] = area;

@@ -97,7 +97,7 @@ function findStep(
   const rivals = [3, 4].map((k) => time.map((s) => ((2 * (s - start)) / span - 1) ** k));
   if (foot)
     for (const f of [0.8, 1.25]) rivals.push(time.map((s) => footAt({ ...foot, height: 1, leftS: f * foot.leftS }, s)));
-  const wide = orthonormal([...q, ...rivals]);
+  const wide = orthonormal(rivals, q);
   const left = Float64Array.from(r);
   for (const column of wide.slice(q.length)) remove(left, column);
   const logistic = new Float64Array(n);
@@ -202,9 +202,9 @@ function gainOf(column: Float64Array, r: Float64Array, q: Float64Array[]): { gai
   return { gain: along ** 2 / size, height: along / size };
 }
 
-/** Gram–Schmidt; columns that hang on earlier ones are left out. */
-function orthonormal(columns: readonly Float64Array[]): Float64Array[] {
-  const out: Float64Array[] = [];
+/** Gram–Schmidt behind what is orthonormal already; columns that hang on earlier ones are left out. */
+function orthonormal(columns: readonly Float64Array[], first: readonly Float64Array[] = []): Float64Array[] {
+  const out = [...first];
   for (const column of columns) {
     const c = Float64Array.from(column);
     const before = Math.sqrt(dot(c, c));

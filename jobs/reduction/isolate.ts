@@ -59,7 +59,7 @@ function isolateFrom(
   for (let round = 0; round < ROUNDS; round++) {
     const placed = placeLimits(w, bells, room, extra);
     if ('cut' in placed) return placed;
-    const fitted = fitOnce(w, bells, room, placed);
+    const fitted = fitOnce(w, bells, room, placed, found?.excess);
     if (!fitted) return { cut: nearerEnd(w, bells[0].peakS) };
     const next = shapeOf(w, fitted.excess, bells);
     if (!next) return { cut: nearerEnd(w, bells[0].peakS) };
@@ -97,7 +97,13 @@ const oneBell = (w: EventWindow, x: Excess, [before]: Bell[]): Bell[] | undefine
 const nearerEnd = (w: EventWindow, t: number): 'before' | 'behind' =>
   t - w.t[0] < w.t[w.t.length - 1] - t ? 'before' : 'behind';
 
-function fitOnce(w: EventWindow, bells: Bell[], room: Room, limits: Limits): Omit<Isolated, 'bells'> | undefined {
+function fitOnce(
+  w: EventWindow,
+  bells: Bell[],
+  room: Room,
+  limits: Limits,
+  near: Excess | undefined,
+): Omit<Isolated, 'bells'> | undefined {
   const first = bells[0];
   const top = bells.reduce((a, c) => (c.height > a.height ? c : a));
   const width = widthOf(bells);
@@ -115,22 +121,22 @@ function fitOnce(w: EventWindow, bells: Bell[], room: Room, limits: Limits): Omi
       : meltingOverlap || room.footless
         ? 'none'
         : 'free';
-  const fitAt = (leftS: number, rightS: number): Excess | undefined => {
+  const fitAt = (leftS: number, rightS: number, start: Excess | undefined): Excess | undefined => {
     const baseline = fitBaseline(sums, flanksAt(leftS, rightS), { leftS, rightS }, variance, steps);
     if (!baseline) return undefined;
     if (meltingOverlap) return cutAtMelting(w, baseline, top, room);
     // The step being part of the baseline, the event may begin under it.
     const limited = glassOverlap ? { ...baseline, leftS: first.peakS - RAMP_REACH.left.far * first.leftS } : baseline;
-    return subtractBaseline(w, limited, room.footless ? 0 : footArea(first, limited.leftS));
+    return subtractBaseline(w, limited, room.footless ? 0 : footArea(first, limited.leftS), undefined, start);
   };
-  const excess = fitAt(limits.leftS, limits.rightS);
+  const excess = fitAt(limits.leftS, limits.rightS, near);
   if (!excess) return undefined;
   const refit = (left: number, right: number) => {
     // Without a flank on the left there is no limit to move: the event begins with the hold.
     const alone = limits.leftS - limits.fromS < least;
     const leftS = alone ? limits.leftS : Math.max(limits.leftS + left, limits.fromS + least);
     const rightS = Math.min(limits.rightS + right, limits.toS - least);
-    return fitAt(leftS, rightS) ?? excess;
+    return fitAt(leftS, rightS, excess) ?? excess;
   };
   return { excess, refit, glassOverlap, meltingOverlap };
 }

@@ -34,6 +34,7 @@ export function findMelting(
   height: number,
   bell: Bell,
 ): Melting | undefined {
+  if (largestRise(y, from, to) < LEAST_PART * height) return undefined;
   const flipped = y.subarray(from, to).map((v) => -v);
   const found = findExcursions(t.subarray(from, to), flipped, 0, to - from)
     .filter((x) => x.prominence > LEAST_PART * height && x.spanS < WIDEST * (bell.leftS + bell.rightS))
@@ -46,6 +47,17 @@ export function findMelting(
     fromS: found.peakS - TAIL_HALF_WIDTHS * found.leftS,
     toS: found.peakS + TAIL_HALF_WIDTHS * found.rightS,
   };
+}
+
+/** How far the signal climbs again from its lowest point so far: no endotherm is more prominent. Most scans end the search here. */
+function largestRise(y: Float64Array, from: number, to: number): number {
+  let low = Number.POSITIVE_INFINITY;
+  let most = 0;
+  for (let i = from; i < to; i++) {
+    if (y[i] < low) low = y[i];
+    else if (y[i] - low > most) most = y[i] - low;
+  }
+  return most;
 }
 
 /** A dip that a cubic over the stretch behind the event describes is a drift. */
