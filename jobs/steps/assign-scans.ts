@@ -1,6 +1,6 @@
 import { type Flag, flag, quote } from '../../schema/wire/flags.ts';
 import type { ScanSheetRow } from '../../schema/wire/scan.ts';
-import type { Role } from '../../schema/wire/states.ts';
+import type { ScanPlace } from '../store/assignment-rows.ts';
 import type { StoredCorrection } from '../store/correction-rows.ts';
 import { type AppliedCorrections, applyCorrections, type EndedCorrection } from './apply-corrections.ts';
 
@@ -12,13 +12,7 @@ export interface AssignFile {
 }
 
 /** A scan as the sheets (or the folders) want it. */
-export interface WantedScan {
-  fileId: string;
-  disposition: 'assigned' | 'unassigned' | 'duplicate';
-  sample: string | null;
-  instrument: string | null;
-  role: Role;
-  segment: number | null;
+export interface WantedScan extends ScanPlace<'assigned' | 'unassigned' | 'duplicate'> {
   /** What the sheet or the folder says, before corrections. */
   said: Partial<ScanSheetRow>;
   sheetRow: ScanSheetRow | null;

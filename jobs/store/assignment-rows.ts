@@ -29,14 +29,18 @@ export interface StoredFile {
   reason: string | null;
 }
 
-export interface StoredScan {
-  id: string;
+/** Where a scan belongs. */
+export interface ScanPlace<D extends Disposition = Disposition> {
   fileId: string;
-  disposition: Disposition;
+  disposition: D;
   sample: string | null;
   instrument: string | null;
   role: Role;
   segment: number | null;
+}
+
+export interface StoredScan extends ScanPlace {
+  id: string;
   said: Partial<ScanSheetRow> | null;
   sheetHash: string;
   status: ScanState;
@@ -63,15 +67,15 @@ export interface AssignmentRows {
   peaksHashes: ReadonlyMap<string, string>;
 }
 
-/** Rows of one kind of sheet as they stand: sheets by path, rows in their order; those of one sample, or all. */
-export async function loadSheetRows<T>(
-  ports: Ports,
+/** Rows of one kind of sheet with the sheets that they stand in: sheets by path, rows in their order; those of one sample, or all. */
+export async function loadPlacedRows<T>(
+  ports: Pick<Ports, 'database'>,
   campaignId: string,
   sheet: ReadSheetName,
   sample?: string,
-): Promise<T[]> {
+): Promise<{ path: string; sha256: string; row: T }[]> {
   const rows = await ports.database.read
-    .select({ body: sheetRows.body })
+    .select({ path: files.path, sha256: files.sha256, row: sheetRows.body })
     .from(sheetRows)
     .innerJoin(files, eq(files.id, sheetRows.fileId))
     .where(
@@ -82,8 +86,12 @@ export async function loadSheetRows<T>(
       ),
     )
     .orderBy(asc(files.path), asc(sheetRows.position));
-  return rows.map((row) => row.body as T);
+  return rows as { path: string; sha256: string; row: T }[];
 }
+
+/** The same rows alone. */
+export const loadSheetRows = async <T>(...of: Parameters<typeof loadPlacedRows>): Promise<T[]> =>
+  (await loadPlacedRows<T>(...of)).map(({ row }) => row);
 
 export async function loadAssignment(ports: Ports, campaignId: string): Promise<AssignmentRows> {
   const { read } = ports.database;
@@ -136,13 +144,7 @@ export async function loadAssignment(ports: Ports, campaignId: string): Promise<
 }
 
 /** What a scan row holds after an assignment. */
-export interface AssignedScan {
-  fileId: string;
-  disposition: Disposition;
-  sample: string | null;
-  instrument: string | null;
-  role: Role;
-  segment: number | null;
+export interface AssignedScan extends ScanPlace {
   said: Partial<ScanSheetRow>;
   sheetRow: ScanSheetRow | null;
   sheetHash: string;

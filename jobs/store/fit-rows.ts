@@ -1,12 +1,12 @@
-import { and, asc, eq, inArray, sql } from 'drizzle-orm';
+import { and, eq, inArray, sql } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
-import { files, instruments, samples, scans, sheetRows } from '../../schema/tables/index.ts';
+import { files, instruments, samples, scans } from '../../schema/tables/index.ts';
 import type { PeakSheetRow } from '../../schema/wire/forecasts.ts';
 import type { FitResult } from '../../schema/wire/parameters.ts';
 import type { ReducedSummary } from '../../schema/wire/reduced-blob.ts';
 import type { InstrumentCalibration, SampleSheetRow, ScanSheetRow } from '../../schema/wire/scan.ts';
 import type { Ports } from '../ports/index.ts';
-import { replaceFlags } from './assignment-rows.ts';
+import { loadPlacedRows, replaceFlags } from './assignment-rows.ts';
 import type { Statement } from './fence.ts';
 import { replaceParameters } from './parameter-rows.ts';
 import { loadSampleRow } from './scan-rows.ts';
@@ -87,26 +87,9 @@ export async function loadFit(ports: Ports, sampleId: string): Promise<FitRows |
   };
 }
 
-/** Rows of peaks.csv, of one sample or of all; sheets by path, rows in their order. */
-export async function loadPeakRows(
-  ports: Pick<Ports, 'database'>,
-  campaignId: string,
-  sample?: string,
-): Promise<(PeakRow & { sha256: string })[]> {
-  const rows = await ports.database.read
-    .select({ path: files.path, sha256: files.sha256, row: sheetRows.body })
-    .from(sheetRows)
-    .innerJoin(files, eq(files.id, sheetRows.fileId))
-    .where(
-      and(
-        eq(sheetRows.campaignId, campaignId),
-        eq(sheetRows.sheet, 'peaks'),
-        sample === undefined ? undefined : sql`json_extract(${sheetRows.body}, '$.sample') = ${sample}`,
-      ),
-    )
-    .orderBy(asc(files.path), asc(sheetRows.position));
-  return rows as (PeakRow & { sha256: string })[];
-}
+/** Rows of peaks.csv, of one sample or of all. */
+export const loadPeakRows = (ports: Pick<Ports, 'database'>, campaignId: string, sample?: string) =>
+  loadPlacedRows<PeakSheetRow>(ports, campaignId, 'peaks', sample);
 
 /**
  * Replaces the fit of a sample and numbers the events of its scans. Where inputs have changed since they were loaded the newer fit

@@ -8,9 +8,10 @@ import type { Ports } from '../ports/index.ts';
 import { loadSheetRows } from './assignment-rows.ts';
 import type { Statement } from './fence.ts';
 import { touchInstruments, touchSamples } from './job-rows.ts';
+import { type FileRow, loadLiveFiles } from './live-files.ts';
 import { json, preparedOnce, text } from './statement.ts';
 
-export type FileRow = typeof files.$inferSelect;
+export type { FileRow } from './live-files.ts';
 export type ScanRow = typeof scans.$inferSelect;
 
 const fileById = preparedOnce((db) =>
@@ -137,17 +138,12 @@ export interface ReferenceFile {
 
 /** Live data files whose path is `name` or ends with it. */
 export async function findNamedFiles(ports: Ports, campaignId: string, name: string): Promise<ReferenceFile[]> {
-  const rows = await ports.database.read
-    .select()
-    .from(files)
-    .where(
-      and(
-        eq(files.campaignId, campaignId),
-        eq(files.kind, 'data'),
-        eq(files.superseded, false),
-        sql`(${files.path} = ${name} or substr(${files.path}, -length(${name}) - 1) = '/' || ${name})`,
-      ),
-    );
+  const rows = await loadLiveFiles(
+    ports,
+    campaignId,
+    'data',
+    sql`(${files.path} = ${name} or substr(${files.path}, -length(${name}) - 1) = '/' || ${name})`,
+  );
   return rows.map((row) => ({ id: row.id, path: row.path, sha256: row.sha256, row }));
 }
 

@@ -41,26 +41,11 @@ const statements = Object.getPrototypeOf(probe.prepare('select 1')) as Record<st
 patch(statements, 'run', () => dieHere());
 probe.close();
 
-const { openFileDatabase } = await import('../../jobs/adapters/libsql-node.ts');
-const { migrateDatabase } = await import('../../jobs/adapters/migrate.ts');
-const { createFileBlobs } = await import('../../jobs/adapters/file-blobs.ts');
-const { createTableQueue } = await import('../../jobs/adapters/table-queue.ts');
-const { pathRules } = await import('../../jobs/adapters/path-rules.ts');
-const { systemClock } = await import('../../jobs/adapters/system-clock.ts');
 const { createRunner } = await import('../../jobs/runner/index.ts');
-const { createArithmeticCompute } = await import('../runner/arithmetic-compute.ts');
 const { takeInCampaign } = await import('./fault-campaign.ts');
+const { openFaultPorts } = await import('./fault-ports.ts');
 
-const database = await openFileDatabase(`${dataDir}/ratespan.db`);
-await migrateDatabase(database);
-const ports = {
-  database,
-  blobs: createFileBlobs(`${dataDir}/blobs`),
-  queue: createTableQueue(),
-  clock: systemClock,
-  compute: createArithmeticCompute(),
-  paths: pathRules,
-};
+const ports = await openFaultPorts(dataDir);
 await createRunner(ports, { concurrency: 2, owner }).drain(await takeInCampaign(ports));
-database.close();
+ports.database.close();
 process.stdout.write(`${writes}\n`);

@@ -1,16 +1,15 @@
 import { gzipSync } from 'node:zlib';
-import { afterEach, beforeEach, expect, it } from 'vitest';
+import { expect, it } from 'vitest';
 import { receiveFile } from '../../jobs/store/index.ts';
 import { makeZip } from '../instrument/zip-file.ts';
-import { drain, newCampaign, openTestPorts, rowsOf, send, type TestPorts } from './test-ports.ts';
+import { forEachTest } from './each-test.ts';
+import { drain, rowsOf, send, type TestPorts } from './test-ports.ts';
 
 let ports: TestPorts;
 let campaign: string;
-beforeEach(async () => {
-  ports = await openTestPorts();
-  campaign = await newCampaign(ports);
+forEachTest((p, c) => {
+  [ports, campaign] = [p, c];
 });
-afterEach(() => ports.close());
 
 const bytesOf = (text: string) => new TextEncoder().encode(text);
 const zipOf = (members: Record<string, string>) =>

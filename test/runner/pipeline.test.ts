@@ -1,14 +1,13 @@
-import { afterEach, beforeEach, describe, expect, it } from 'vitest';
+import { describe, expect, it } from 'vitest';
 import { campaignStatus, withdrawMissingFiles } from '../../jobs/store/index.ts';
-import { allTables, drain, newCampaign, openTestPorts, rowsOf, send, type TestPorts } from './test-ports.ts';
+import { forEachTest } from './each-test.ts';
+import { allTables, drain, rowsOf, send, type TestPorts } from './test-ports.ts';
 
 let ports: TestPorts;
 let campaign: string;
-beforeEach(async () => {
-  ports = await openTestPorts();
-  campaign = await newCampaign(ports);
+forEachTest((p, c) => {
+  [ports, campaign] = [p, c];
 });
-afterEach(() => ports.close());
 
 const SHEET_HEAD = 'file,sample,instrument,mass [mg]\n';
 const statusOf = async (file: string) =>

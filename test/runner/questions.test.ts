@@ -1,14 +1,13 @@
-import { afterEach, beforeEach, expect, it } from 'vitest';
+import { expect, it } from 'vitest';
 import { campaignStatus, setGoals, withdrawMissingFiles } from '../../jobs/store/index.ts';
-import { allTables, drain, newCampaign, openTestPorts, rowsOf, send, type TestPorts } from './test-ports.ts';
+import { forEachTest } from './each-test.ts';
+import { allTables, drain, newCampaign, rowsOf, send, type TestPorts } from './test-ports.ts';
 
 let ports: TestPorts;
 let campaign: string;
-beforeEach(async () => {
-  ports = await openTestPorts();
-  campaign = await newCampaign(ports);
+forEachTest((p, c) => {
+  [ports, campaign] = [p, c];
 });
-afterEach(() => ports.close());
 
 const SCANS = ['1', '2', '4'].map((rate) => [`A/oven/${rate}.txt`, `rate ${rate}`] as const);
 const SHEETS = [

@@ -1,17 +1,16 @@
 import { sql } from 'drizzle-orm';
-import { afterEach, beforeEach, describe, expect, it, vi } from 'vitest';
+import { describe, expect, it, vi } from 'vitest';
 import { consumeWake, createRunner, sweepWakes } from '../../jobs/runner/index.ts';
 import { campaignStatus, listJobs, retryJob } from '../../jobs/store/index.ts';
 import { claimJobs, LEASE_MS, MAX_ATTEMPTS } from '../../jobs/store/leases.ts';
-import { allTables, drain, newCampaign, openTestPorts, rowsOf, send, type TestPorts } from './test-ports.ts';
+import { forEachTest } from './each-test.ts';
+import { allTables, drain, newCampaign, rowsOf, send, type TestPorts } from './test-ports.ts';
 
 let ports: TestPorts;
 let campaign: string;
-beforeEach(async () => {
-  ports = await openTestPorts();
-  campaign = await newCampaign(ports);
+forEachTest((p, c) => {
+  [ports, campaign] = [p, c];
 });
-afterEach(() => ports.close());
 
 describe('the runner', () => {
   it('takes what comes while it runs, and stops with nothing in flight', async () => {

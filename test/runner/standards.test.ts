@@ -1,6 +1,7 @@
-import { afterEach, beforeEach, describe, expect, it } from 'vitest';
+import { describe, expect, it } from 'vitest';
 import { correctScan } from '../../jobs/store/index.ts';
-import { allTables, drain, newCampaign, openTestPorts, rowsOf, send, type TestPorts } from './test-ports.ts';
+import { forEachTest } from './each-test.ts';
+import { allTables, drain, newCampaign, rowsOf, send, type TestPorts } from './test-ports.ts';
 
 const HEAD = 'file,sample,instrument,role,mass [mg],reference\n';
 const SHEET = `${HEAD}a1.txt,A,oven,,1,\na2.txt,A,oven,,1,\nb1.txt,B,stove,,1,\nin1.txt,In,oven,standard,5,\nin2.txt,In,oven,standard,5,\nin3.txt,In,oven,standard,5,\n`;
@@ -16,11 +17,9 @@ const FILES: readonly (readonly [string, string])[] = [
 
 let ports: TestPorts;
 let campaign: string;
-beforeEach(async () => {
-  ports = await openTestPorts();
-  campaign = await newCampaign(ports);
+forEachTest((p, c) => {
+  [ports, campaign] = [p, c];
 });
-afterEach(() => ports.close());
 
 const instrument = async (name: string) =>
   (await rowsOf(ports, campaign, 'instruments')).find((row) => row.instrument === name)!;

@@ -1,5 +1,5 @@
 import { eq, sql } from 'drizzle-orm';
-import { afterEach, beforeEach, describe, expect, it } from 'vitest';
+import { describe, expect, it } from 'vitest';
 import { LateWorker, runBatch } from '../../jobs/store/fence.ts';
 import { insertJob } from '../../jobs/store/job-rows.ts';
 import {
@@ -13,15 +13,14 @@ import {
   MAX_ATTEMPTS,
 } from '../../jobs/store/leases.ts';
 import { campaigns, files, jobs } from '../../schema/tables/index.ts';
-import { newCampaign, openTestPorts, type TestPorts } from '../runner/test-ports.ts';
+import { forEachTest } from '../runner/each-test.ts';
+import type { TestPorts } from '../runner/test-ports.ts';
 
 let ports: TestPorts;
 let campaign: string;
-beforeEach(async () => {
-  ports = await openTestPorts();
-  campaign = await newCampaign(ports);
+forEachTest((p, c) => {
+  [ports, campaign] = [p, c];
 });
-afterEach(() => ports.close());
 
 const queue = (id: string, subject = id) =>
   ports.database.write((db) =>

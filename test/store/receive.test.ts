@@ -1,5 +1,5 @@
 import { createHash } from 'node:crypto';
-import { afterEach, beforeEach, describe, expect, it } from 'vitest';
+import { describe, expect, it } from 'vitest';
 import {
   createCampaign,
   deleteCampaign,
@@ -11,15 +11,14 @@ import {
   renameCampaign,
 } from '../../jobs/store/index.ts';
 import { campaigns, files, jobs, scans } from '../../schema/tables/index.ts';
-import { drain, newCampaign, openTestPorts, rowsOf, send, type TestPorts } from '../runner/test-ports.ts';
+import { forEachTest } from '../runner/each-test.ts';
+import { drain, newCampaign, rowsOf, send, type TestPorts } from '../runner/test-ports.ts';
 
 let ports: TestPorts;
 let campaign: string;
-beforeEach(async () => {
-  ports = await openTestPorts();
-  campaign = await newCampaign(ports);
+forEachTest((p, c) => {
+  [ports, campaign] = [p, c];
 });
-afterEach(() => ports.close());
 
 async function originals(): Promise<string[]> {
   const keys: string[] = [];

@@ -1,10 +1,11 @@
-import { and, eq, inArray, sql } from 'drizzle-orm';
+import { eq, inArray, sql } from 'drizzle-orm';
 import { files, scans } from '../../../schema/tables/index.ts';
 import type { Flag } from '../../../schema/wire/flags.ts';
 import type { PeakSheetRow } from '../../../schema/wire/forecasts.ts';
 import type { ReducedSummary } from '../../../schema/wire/reduced-blob.ts';
 import type { Ports } from '../../ports/index.ts';
 import { loadPeakRows } from '../fit-rows.ts';
+import { loadLiveFiles } from '../live-files.ts';
 import { allRows, text } from '../statement.ts';
 import type { ResultRow } from './result-row.ts';
 
@@ -108,17 +109,7 @@ export async function* readScanRecords(
 
 /** Files without a scan that must still be seen: archives that could not be unpacked. */
 async function loadRefusedArchives(ports: Pick<Ports, 'database'>, campaignId: string): Promise<ResultRow[]> {
-  const rows = await ports.database.read
-    .select()
-    .from(files)
-    .where(
-      and(
-        eq(files.campaignId, campaignId),
-        eq(files.kind, 'archive'),
-        eq(files.superseded, false),
-        sql`state in ('refused', 'failed')`,
-      ),
-    );
+  const rows = await loadLiveFiles(ports, campaignId, 'archive', sql`state in ('refused', 'failed')`);
   return rows.map((file) => ({
     ...EMPTY_ROW,
     file: file.path,
