@@ -33,14 +33,14 @@ export const CURVE_AXES: Record<CurveKind, Pick<Curves, 'x' | 'y'>> = {
 /** Heat flow of each scan as it was analysed, or the baseline under its event: not a number elsewhere, so left out there. */
 export function traceSeries(scans: ReducedSampleScan[], column: 'heatFlow' | 'baseline'): CurveSeries[] {
   return scans.map(({ id, file, instrument, reduced: { trace } }) => {
-    const known = (_: number, i: number) => Number.isFinite(trace[column][i]);
-    return {
-      name: file,
-      instrument,
-      scan_id: id,
-      x: [...trace.temperatureK.filter(known)],
-      y: [...trace[column].filter(known)],
-    };
+    const x: number[] = [];
+    const y: number[] = [];
+    trace[column].forEach((value, i) => {
+      if (!Number.isFinite(value)) return;
+      x.push(trace.temperatureK[i]);
+      y.push(value);
+    });
+    return { name: file, instrument, scan_id: id, x, y };
   });
 }
 

@@ -21,7 +21,7 @@ import {
   traceSeries,
   transformationSeries,
 } from './curves.ts';
-import type { CurveKind, CurveSeries, Curves } from './shapes/curves.ts';
+import { CURVE_KINDS, type CurveKind, type CurveSeries, type Curves } from './shapes/curves.ts';
 
 async function reducedScans(ports: Ports, { campaignId, sample }: SampleView): Promise<ReducedSampleScan[]> {
   const found: ReducedSampleScan[] = [];
@@ -32,26 +32,68 @@ async function reducedScans(ports: Ports, { campaignId, sample }: SampleView): P
   return found;
 }
 
-/** The curves of one kind of a sample, for its route and for the report. */
-export async function readCurves(ports: Ports, sample: SampleView, kind: CurveKind): Promise<Curves> {
-  if (kind === 'growth' || kind === 'viscosity')
-    return { kind, ...glassCurves(await readSamplePlots(ports, sample.id), kind) };
-  const rowsOf = async (table: ResultTable, filter: TableFilter = {}): Promise<ResultRow[]> => {
+/** What the curves of one sample are made of, each read when it is first asked for and only once. */
+interface CurveSources {
+  reduced(): Promise<ReducedSampleScan[]>;
+  plots(): ReturnType<typeof readSamplePlots>;
+  scans(): Promise<ResultRow[]>;
+  /** Rows of one quantity or method at least */
+  parameters(filter: TableFilter): Promise<ResultRow[]>;
+}
+
+function once<Value>(read: () => Promise<Value>): () => Promise<Value> {
+  let value: Promise<Value> | undefined;
+  return () => (value ??= read());
+}
+
+async function makeCurves(ports: Ports, sample: SampleView, kind: CurveKind, sources: CurveSources): Promise<Curves> {
+  if (kind === 'growth' || kind === 'viscosity') return { kind, ...glassCurves(await sources.plots(), kind) };
+  const series: Record<Exclude<CurveKind, 'growth' | 'viscosity'>, () => Promise<CurveSeries[]>> = {
+    thermogram: async () => traceSeries(await sources.reduced(), 'heatFlow'),
+    baseline: async () => traceSeries(await sources.reduced(), 'baseline'),
+    conversion: async () => conversionSeries(await sources.reduced()),
+    kissinger: async () => [
+      ...kissingerSeries(await sources.scans(), await sources.parameters({ method: 'kissinger' })),
+      ...kissingerLawSeries(await sources.plots()),
+    ],
+    energy: async () => energySeries(await sources.parameters({ quantity: 'activation_energy' })),
+    ttt: async () => transformationSeries(await answerTransformation(ports, sample.id)),
+  };
+  return { kind, ...CURVE_AXES[kind], series: await series[kind]() };
+}
+
+/** The curves of one kind of a sample. */
+export function readCurves(ports: Ports, sample: SampleView, kind: CurveKind): Promise<Curves> {
+  const rowsOf = async (table: ResultTable, filter: TableFilter): Promise<ResultRow[]> => {
     const rows: ResultRow[] = [];
     for await (const row of readTable(ports, sample.campaignId, table, { sample: sample.sample, ...filter }))
       rows.push(row);
     return rows;
   };
-  const series: Record<Exclude<CurveKind, 'growth' | 'viscosity'>, () => Promise<CurveSeries[]>> = {
-    thermogram: async () => traceSeries(await reducedScans(ports, sample), 'heatFlow'),
-    baseline: async () => traceSeries(await reducedScans(ports, sample), 'baseline'),
-    conversion: async () => conversionSeries(await reducedScans(ports, sample)),
-    kissinger: async () => [
-      ...kissingerSeries(await rowsOf('scans'), await rowsOf('parameters', { method: 'kissinger' })),
-      ...kissingerLawSeries(await readSamplePlots(ports, sample.id)),
-    ],
-    energy: async () => energySeries(await rowsOf('parameters', { quantity: 'activation_energy' })),
-    ttt: async () => transformationSeries(await answerTransformation(ports, sample.id)),
+  return makeCurves(ports, sample, kind, {
+    reduced: () => reducedScans(ports, sample),
+    plots: () => readSamplePlots(ports, sample.id),
+    scans: () => rowsOf('scans', {}),
+    parameters: (filter) => rowsOf('parameters', filter),
+  });
+}
+
+/** The curves of every kind that a sample has, from rows of its tables that were read already. */
+export async function readEveryCurve(
+  ports: Ports,
+  sample: SampleView,
+  rows: { scans: ResultRow[]; parameters: ResultRow[] },
+): Promise<Partial<Record<CurveKind, Curves>>> {
+  const sources: CurveSources = {
+    reduced: once(() => reducedScans(ports, sample)),
+    plots: once(() => readSamplePlots(ports, sample.id)),
+    scans: async () => rows.scans,
+    parameters: async () => rows.parameters,
   };
-  return { kind, ...CURVE_AXES[kind], series: await series[kind]() };
+  const curves: Partial<Record<CurveKind, Curves>> = {};
+  for (const kind of CURVE_KINDS) {
+    const found = await makeCurves(ports, sample, kind, sources);
+    if (found.series.length > 0) curves[kind] = found;
+  }
+  return curves;
 }

@@ -28,7 +28,7 @@ export function addResultRoutes(app: ApiApp, ports: Ports): void {
   app.openapi(zipRoute, async (c) => {
     const campaign = await requireCampaign(c, ports, c.req.valid('param').id);
     if (isUnchanged(c, campaign)) return c.body(null, 304);
-    const page: ZipEntry = { name: 'report.html', body: () => textStream(() => writeReport(ports, campaign)) };
+    const page: ZipEntry = { name: 'report.html', body: () => textStream(writeReport(ports, campaign)) };
     return c.body(zipStream([...tableEntries(ports, campaign.id), page]), 200, {
       'content-type': 'application/zip',
       'content-disposition': `attachment; filename*=UTF-8''${encodeURIComponent(campaign.name)}.zip`,
@@ -38,18 +38,28 @@ export function addResultRoutes(app: ApiApp, ports: Ports): void {
   app.openapi(reportRoute, async (c) => {
     const campaign = await requireCampaign(c, ports, c.req.valid('param').id);
     if (isUnchanged(c, campaign)) return c.body(null, 304);
-    return c.body(await writeReport(ports, campaign), 200, {
+    const pieces = writeReport(ports, campaign);
+    // What is wrong with the tables is told as a problem, before the page begins.
+    const first = await pieces.next();
+    return c.body(textStream(pieces, first.value ?? ''), 200, {
       'content-type': 'text/html; charset=utf-8',
       'content-security-policy': REPORT_POLICY,
     }) as never;
   });
 }
 
-/** A text that is made when it is asked for. */
-const textStream = (make: () => Promise<string>): ReadableStream<Uint8Array> =>
-  new ReadableStream({
-    async start(controller) {
-      controller.enqueue(new TextEncoder().encode(await make()));
-      controller.close();
+/** A text that is made while it is sent. */
+function textStream(pieces: AsyncGenerator<string, void, undefined>, first = ''): ReadableStream<Uint8Array> {
+  const encoder = new TextEncoder();
+  return new ReadableStream({
+    start: (controller) => controller.enqueue(encoder.encode(first)),
+    async pull(controller) {
+      const next = await pieces.next();
+      if (next.done) controller.close();
+      else controller.enqueue(encoder.encode(next.value));
+    },
+    async cancel() {
+      await pieces.return(undefined);
     },
   });
+}

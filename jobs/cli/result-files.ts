@@ -48,7 +48,7 @@ export async function writeResultTables(
 /** Writes report.html: one page that needs no network. */
 export async function writeReportFile(ports: Ports, campaign: Campaign, folder: string): Promise<void> {
   const path = join(folder, REPORT);
-  await writeFile(`${path}.part`, await writeReport(ports, campaign));
+  await writeFile(`${path}.part`, writeReport(ports, campaign));
   await rename(`${path}.part`, path);
 }
 

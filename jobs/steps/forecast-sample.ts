@@ -7,7 +7,7 @@ import type { JudgeResult } from '../../schema/wire/verdicts.ts';
 import { readProgram } from '../instrument/index.ts';
 import type { Ports } from '../ports/index.ts';
 import type { FitRows } from '../store/fit-rows.ts';
-import { forecastSourceKey } from '../store/forecast-sources.ts';
+import { forecastBlobKey, forecastSourceKey } from '../store/forecast-sources.ts';
 import { hashOf } from '../store/ids.ts';
 import { saveForecasts } from '../store/judge-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
@@ -71,8 +71,7 @@ const forecastKeyOf = ({ judgeKey, goals, programs, instruments }: ForecastRows)
     instruments,
   ]);
 
-const blobKeyOf = ({ rows }: ForecastRows, forecastKey: string) =>
-  `derived/${rows.sample.campaignId}/forecast-${forecastKey}`;
+const blobKeyOf = ({ rows }: ForecastRows, forecastKey: string) => forecastBlobKey(rows.sample.campaignId, forecastKey);
 
 async function forecastRows(
   ports: Ports,

@@ -6,11 +6,16 @@ import { type Curves, curveRows, curvesByEvent, splitCurves } from '../../web/mo
 import { formatTime } from '../../web/model/forecast-words.ts';
 import { parseRoute, samplePath } from '../../web/routes.ts';
 
-const points = (path: string): number[][] =>
-  path
-    .split(/[ML]/)
-    .filter(Boolean)
-    .map((p) => p.split(' ').map(Number));
+/** Points of a path of `M x y` and relative `l dx dy` (SVG 2, section 9.3). */
+function points(path: string): number[][] {
+  const found: number[][] = [];
+  for (const [, letter, numbers] of path.matchAll(/([Ml])([^MlZ]*)/g)) {
+    const [x, y] = (numbers.match(/-?(\d+\.?\d*|\.\d+)/g) ?? []).map(Number);
+    const [fromX, fromY] = letter === 'l' ? (found.at(-1) ?? []) : [0, 0];
+    found.push([fromX + x, fromY + y]);
+  }
+  return found;
+}
 
 test('a thinned curve keeps every extreme, its ends and its order', () => {
   const x = createPlotScale([0, 1], [0, 100]);
@@ -26,6 +31,41 @@ test('a thinned curve keeps every extreme, its ends and its order', () => {
   expect(drawn.every(([px], i) => i === 0 || px >= drawn[i - 1][0])).toBe(true);
 });
 
+test('a drawn line passes every measured point within its own width, upright, however few points it keeps', () => {
+  const x = createPlotScale([0, 1], [0, 560]);
+  const y = createPlotScale([-1, 1.2], [69, 0]);
+  const xs = Array.from({ length: 500 }, (_, i) => i / 499);
+  const ys = xs.map((v, i) => Math.exp(-(((v - 0.6) / 0.03) ** 2)) - 0.3 * v + 0.002 * Math.sin(i * 1.7));
+  const drawn = points(linePath(xs, ys, x, y));
+  expect(drawn.length).toBeLessThan(100);
+  for (const [i, value] of xs.entries()) {
+    const px = x.at(value);
+    const k = Math.max(
+      1,
+      drawn.findIndex(([at]) => at >= px - 0.05),
+    );
+    const [[x0, y0], [x1, y1]] = [drawn[k - 1], drawn[k]];
+    const at = y0 + ((y1 - y0) * (px - x0)) / (x1 - x0);
+    // The stroke of a curve is 1.3 px wide.
+    expect(Math.abs(at - y.at(ys[i]))).toBeLessThan(0.65);
+  }
+});
+
+test('a line straight up, or turning back, keeps its points', () => {
+  const scale = createPlotScale([0, 10], [0, 1000]);
+  const at = (value: number) => Number(scale.at(value).toFixed(1));
+  const up = points(linePath([1, 1, 1, 5], [1, 9, 2, 2], scale, scale));
+  expect(up.map(([px, py]) => [Number(px.toFixed(1)), Number(py.toFixed(1))])).toEqual(
+    expect.arrayContaining([
+      [at(1), at(1)],
+      [at(1), at(9)],
+      [at(5), at(2)],
+    ]),
+  );
+  const back = points(linePath([1, 9, 1], [1, 5, 9], scale, scale));
+  expect(back.map(([px]) => Number(px.toFixed(1)))).toEqual([at(1), at(9), at(1)]);
+});
+
 test('what is not a number breaks a line and starts a new one', () => {
   const x = createPlotScale([0, 4], [0, 400]);
   const y = createPlotScale([0, 1], [100, 0]);
@@ -39,7 +79,7 @@ test('a band goes along its upper edge and back along the lower one', () => {
   const scale = createPlotScale([0, 10], [0, 1000]);
   const band = points(bandPath([1, 2], [3, 4], [5, 6], scale, scale).replace('Z', ''));
   const at = (value: number) => Number(scale.at(value).toFixed(1));
-  expect(band).toEqual([
+  expect(band.map((point) => point.map((px) => Number(px.toFixed(1))))).toEqual([
     [at(1), at(5)],
     [at(2), at(6)],
     [at(2), at(4)],

@@ -5,7 +5,13 @@ import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { PAPER_COLOURS } from '../../web/charts/style.ts';
 import type { ScanRow } from '../../web/client/rows.ts';
-import { type ReportData, renderReport } from '../../web/report/index.tsx';
+import {
+  FIGURED_SAMPLES,
+  figuredSamples,
+  type ReportData,
+  renderReport,
+  type SampleCurves,
+} from '../../web/report/index.tsx';
 
 const scan = (file: string, rate: number, row: Partial<ScanRow> = {}): ScanRow => ({
   file,
@@ -109,21 +115,6 @@ const data: ReportData = {
     {
       sample: 'glass <1>',
       state: 'fitted',
-      curves: {
-        thermogram: {
-          kind: 'thermogram',
-          x: temperature,
-          y: { quantity: 'heat flow', unit: 'W' },
-          series: scans.slice(0, 2).map(trace),
-        },
-        baseline: { kind: 'baseline', x: temperature, y: { quantity: 'baseline', unit: 'W' }, series: [] },
-        energy: {
-          kind: 'energy',
-          x: { quantity: 'conversion', unit: '1' },
-          y: { quantity: 'activation energy', unit: 'kJ/mol' },
-          series: [{ name: 'event 1, vyazovkin', x: [0.5, 0.6], y: [210, 209], lower: [208, 207], upper: [212, 211] }],
-        },
-      },
     },
   ],
   provenance: {
@@ -134,6 +125,29 @@ const data: ReportData = {
     inputs: [{ file: 'glass/furnace-a/slow.txt', sha256: 'ef'.repeat(32) }],
   },
 };
+
+const curves: SampleCurves = {
+  thermogram: {
+    kind: 'thermogram',
+    x: temperature,
+    y: { quantity: 'heat flow', unit: 'W' },
+    series: scans.slice(0, 2).map(trace),
+  },
+  baseline: { kind: 'baseline', x: temperature, y: { quantity: 'baseline', unit: 'W' }, series: [] },
+  energy: {
+    kind: 'energy',
+    x: { quantity: 'conversion', unit: '1' },
+    y: { quantity: 'activation energy', unit: 'kJ/mol' },
+    series: [{ name: 'event 1, vyazovkin', x: [0.5, 0.6], y: [210, 209], lower: [208, 207], upper: [212, 211] }],
+  },
+};
+
+/** The whole page, with the figures of all samples or of the named ones. */
+async function page(shown: ReportData, figured = shown.samples.map(({ sample }) => sample)): Promise<string> {
+  let html = '';
+  for await (const piece of renderReport(shown, new Set(figured), () => curves)) html += piece;
+  return html;
+}
 
 const verdicts: ReportData['tables']['verdicts'] = [
   {
@@ -175,9 +189,9 @@ const forecasts: ReportData['tables']['forecasts'] = [
   },
 ];
 
-const html = renderReport(data);
-const text = (page: string): string =>
-  page
+const html = await page(data);
+const text = (shown: string): string =>
+  shown
     .replace(/<style>.*?<\/style>/s, '')
     .replace(/<[^>]+>/g, ' ')
     .replace(/\s+/g, ' ');
@@ -190,8 +204,8 @@ describe('the report', () => {
       // The HTML standard allows a bare > in text.
       rules: { 'no-raw-characters': 'off' },
     });
-    for (const page of [html, renderReport({ ...data, tables: { ...data.tables, verdicts, forecasts } })]) {
-      const { results } = await validator.validateString(page);
+    for (const shown of [html, await page({ ...data, tables: { ...data.tables, verdicts, forecasts } })]) {
+      const { results } = await validator.validateString(shown);
       expect(results.flatMap(({ messages }) => messages.map(({ ruleId, message }) => `${ruleId}: ${message}`))).toEqual(
         [],
       );
@@ -234,8 +248,8 @@ describe('the report', () => {
     expect(html.match(/class="lane hue/g)).toHaveLength(2);
   });
 
-  test('tells verdicts and forecasts when there are any, with the standing caution', () => {
-    const words = text(renderReport({ ...data, tables: { ...data.tables, verdicts, forecasts } }));
+  test('tells verdicts and forecasts when there are any, with the standing caution', async () => {
+    const words = text(await page({ ...data, tables: { ...data.tables, verdicts, forecasts } }));
     expect(words).toContain('Bend B = 0.31 ± 0.09 (99 % interval; 0 is straight)');
     expect(words).toContain('250 kJ/mol at the slow end and 160 kJ/mol at the fast end');
     expect(words).toContain('time to α = 0.01 at 60.0 °C 4 a 200 d to –');
@@ -243,12 +257,37 @@ describe('the report', () => {
     expect(words).toContain(FORECAST_CAUTION);
   });
 
-  test('is the same bytes for the same data', () => {
-    expect(renderReport(structuredClone(data))).toBe(html);
+  test('is the same bytes for the same data', async () => {
+    expect(await page(structuredClone(data))).toBe(html);
   });
 
-  test('an empty campaign makes a page too', () => {
-    const empty = renderReport({
+  test('a campaign of many samples is told with the figures of flagged ones only, and says so', async () => {
+    const names = Array.from({ length: FIGURED_SAMPLES + 50 }, (_, i) => `glass ${i}`);
+    const samples = names.map((sample) => ({ sample, state: 'fitted' as const }));
+    const flag = (severity: 'stop' | 'warn' | 'note', sample: string) => ({
+      ...data.tables.flags[0],
+      severity,
+      sample,
+    });
+    const flags = [
+      ...names.slice(0, FIGURED_SAMPLES + 20).map((name) => flag('warn', name)),
+      flag('note', names[FIGURED_SAMPLES + 30]),
+      flag('stop', names[FIGURED_SAMPLES + 40]),
+    ];
+    const figured = figuredSamples(samples, flags, []);
+    expect(figured.size).toBe(FIGURED_SAMPLES);
+    expect(figured.has(names[FIGURED_SAMPLES + 40])).toBe(true);
+    expect(figured.has(names[FIGURED_SAMPLES + 30])).toBe(false);
+    expect(figuredSamples(samples.slice(0, FIGURED_SAMPLES), flags, []).size).toBe(FIGURED_SAMPLES);
+    const long = await page({ ...data, samples, tables: { ...data.tables, flags } }, [names[0], names[1]]);
+    expect(long.match(/<figcaption><strong>Activation energy over conversion/g)).toHaveLength(2);
+    expect(text(long)).toContain('the 2 of them with the gravest flags');
+    for (const name of names) expect(long).toContain(`<h2>${name}</h2>`);
+    expect(text(html)).not.toContain('gravest');
+  });
+
+  test('an empty campaign makes a page too', async () => {
+    const empty = await page({
       ...data,
       samples: [],
       tables: { scans: [], parameters: [], instruments: [], coverage: [], gaps: [], flags: [] },

@@ -112,7 +112,8 @@ function concernsOf(flags: readonly FlagRow[], gaps: readonly GapRow[]): string[
   return [...new Set(codes)].map(flagMeaning);
 }
 
-function bySample<Row extends { sample: string | null }>(rows: readonly Row[]): Map<string, Row[]> {
+/** Rows of each sample; those of none under ''. */
+export function rowsBySample<Row extends { sample: string | null }>(rows: readonly Row[]): Map<string, Row[]> {
   const groups = new Map<string, Row[]>();
   for (const row of rows) {
     const group = groups.get(row.sample ?? '');
@@ -191,10 +192,10 @@ export function* ledgerSteps(
   }
 
   yield;
-  const gaps = bySample(tables.gaps);
-  const flags = bySample(tables.flags);
-  const advice = bySample(tables.advice ?? []);
-  const coverage = bySample(tables.coverage);
+  const gaps = rowsBySample(tables.gaps);
+  const flags = rowsBySample(tables.flags);
+  const advice = rowsBySample(tables.advice ?? []);
+  const coverage = rowsBySample(tables.coverage);
   const numbers = numbersBySample(tables.parameters);
   yield;
   const energies = energiesBySample(tables.parameters);

@@ -20,7 +20,7 @@ export interface ReportData {
     forecasts?: readonly ForecastRow[];
     advice?: readonly AdviceRow[];
   };
-  /** In the order in which they are to stand; curves as GET /v1/samples/:id/curves gives them, a kind that is missing is left out */
+  /** In the order in which they are to stand */
   samples: readonly ReportSample[];
   provenance: ReportProvenance;
 }
@@ -29,8 +29,10 @@ export interface ReportSample {
   sample: string;
   state: SampleState;
   reason?: string;
-  curves: Partial<Record<CurveKind, Curves>>;
 }
+
+/** Curves of one sample as GET /v1/samples/:id/curves gives them; a kind that is missing is left out. */
+export type SampleCurves = Partial<Record<CurveKind, Curves>>;
 
 export interface ReportProvenance {
   /** Version of the program */

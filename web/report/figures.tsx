@@ -4,17 +4,18 @@ import { CorrectionKeys, CurvePlot, LawKeys, lawName, layoutCurvePlot } from '..
 import { EnergyPanels, layoutEnergy } from '../charts/energy-panels.tsx';
 import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import { KissingerPlot, layoutKissinger } from '../charts/kissinger-plot.tsx';
+import { extent } from '../charts/plot-scale.ts';
 import { RateAxis } from '../charts/rate-axis.tsx';
-import { createRateScale } from '../charts/rate-scale.ts';
+import { createRateScale, type RateScale } from '../charts/rate-scale.ts';
 import { RateRuling, StripGround, StripMarks } from '../charts/rate-strip.tsx';
-import { layoutStrip } from '../charts/strip-layout.ts';
+import { layoutStrip, type StripLayout } from '../charts/strip-layout.ts';
 import { layoutLanes, ThermogramLanes } from '../charts/thermogram-lanes.tsx';
 import type { ScanRow } from '../client/rows.ts';
 import type { Units } from '../format.ts';
 import { FIGURES } from '../model/captions.ts';
 import { buildLanes, type CurveKind, type CurveSeries, curvesByEvent, splitCurves } from '../model/curves.ts';
 import type { LedgerRow } from '../model/ledger.ts';
-import type { ReportSample } from './data.ts';
+import type { SampleCurves } from './data.ts';
 
 /** Width of every figure, px: the text column of the page and of A4 paper. */
 const WIDTH = 680;
@@ -59,15 +60,58 @@ export function InstrumentLegend({ names, instruments }: { names: readonly strin
 const instrumentsOf = (series: readonly CurveSeries[], instruments: readonly string[]): string[] =>
   instruments.filter((name) => series.some((s) => s.instrument === name));
 
-/** Every scan of the campaign: samples down, heating rate across. */
-export function CoverageFigure(props: { rows: readonly LedgerRow[]; instruments: readonly string[]; units: Units }) {
+/** No taller than a page of paper, px: a figure is not cut in print. */
+const TALLEST = 860;
+const AXIS_HEIGHT = 44;
+
+interface Strip {
+  row: LedgerRow;
+  layout: StripLayout;
+}
+
+/** Every scan of the campaign: samples down, heating rate across, in as many figures as paper needs. */
+export function CoverageFigures(props: { rows: readonly LedgerRow[]; instruments: readonly string[]; units: Units }) {
   const { rows, instruments, units } = props;
-  const rates = rows.flatMap((row) => row.marks.map((mark) => mark.rateKPerS));
-  const scale = createRateScale(rates, WIDTH - NAME_WIDTH, units);
-  const axisHeight = 44;
-  let y = axisHeight;
-  const strips = rows.map((row) => {
+  const rates = [...new Set(rows.flatMap((row) => row.marks.map((mark) => mark.rateKPerS)))];
+  const known = extent(rates.filter((rate) => rate !== null));
+  const scale = createRateScale(rates.includes(null) ? [...known, null] : known, WIDTH - NAME_WIDTH, units);
+  const figures: Strip[][] = [];
+  let room = 0;
+  for (const row of rows) {
     const layout = layoutStrip(row.marks, scale);
+    if (layout.height > room) {
+      figures.push([]);
+      room = TALLEST - AXIS_HEIGHT;
+    }
+    figures.at(-1)?.push({ row, layout });
+    room -= layout.height;
+  }
+  return (
+    <>
+      {figures.map((strips, i) => (
+        <CoverageFigure
+          key={i}
+          title={figures.length === 1 ? 'Coverage' : `Coverage, part ${i + 1} of ${figures.length}`}
+          strips={strips}
+          scale={scale}
+          instruments={instruments}
+          units={units}
+        />
+      ))}
+    </>
+  );
+}
+
+function CoverageFigure(props: {
+  title: string;
+  strips: readonly Strip[];
+  scale: RateScale;
+  instruments: readonly string[];
+  units: Units;
+}) {
+  const { title, scale, instruments, units } = props;
+  let y = AXIS_HEIGHT;
+  const strips = props.strips.map(({ row, layout }) => {
     const strip = { row, layout, y };
     y += layout.height;
     return strip;
@@ -78,7 +122,7 @@ export function CoverageFigure(props: { rows: readonly LedgerRow[]; instruments:
   };
   return (
     <ReportFigure
-      title="Coverage"
+      title={title}
       caption="One mark a scan at its heating rate; struck out: set aside; dashed: decades without a scan between two that have some."
       height={y + 4}
       legend={<InstrumentLegend names={instruments} instruments={instruments} />}
@@ -87,7 +131,7 @@ export function CoverageFigure(props: { rows: readonly LedgerRow[]; instruments:
       <svg x={NAME_WIDTH} y={18} width={scale.width} height={26} aria-hidden="true">
         <RateAxis scale={scale} />
       </svg>
-      <svg x={NAME_WIDTH} y={axisHeight} width={scale.width} height={y - axisHeight} aria-hidden="true">
+      <svg x={NAME_WIDTH} y={AXIS_HEIGHT} width={scale.width} height={y - AXIS_HEIGHT} aria-hidden="true">
         <RateRuling scale={scale} />
       </svg>
       {strips.map(({ row, layout, y: top }) => (
@@ -110,15 +154,16 @@ const OTHER_KINDS: CurveKind[] = ['growth', 'viscosity', 'ttt'];
 
 /** Every figure of one sample for which there are curves. */
 export function SampleFigures(props: {
-  sample: ReportSample;
+  curves: SampleCurves;
   scans: readonly ScanRow[];
   instruments: readonly string[];
   units: Units;
 }) {
-  const { sample, scans, instruments, units } = props;
-  const { thermogram, baseline, conversion, kissinger, energy } = sample.curves;
+  const { curves: all, scans, instruments, units } = props;
+  const { thermogram, baseline, conversion, kissinger, energy } = all;
   const lanes = thermogram && baseline ? buildLanes(thermogram, baseline, scans) : [];
   const laneLayout = layoutLanes(lanes, WIDTH, units);
+  const conversionLayout = layoutConversion(conversion?.series ?? [], WIDTH, units);
   const eventTitle = (title: string, event: number, of: number): string =>
     of > 1 ? `${title}, event ${event}` : title;
   return (
@@ -134,29 +179,25 @@ export function SampleFigures(props: {
           <ThermogramLanes layout={laneLayout} instruments={instruments} units={units} />
         </ReportFigure>
       )}
-      {conversion && conversion.series.length > 0 && (
+      {conversion && conversionLayout.series.length > 0 && (
         <ReportFigure
           {...FIGURES.conversion}
-          height={layoutConversion(conversion.series, WIDTH, units).box.height}
+          height={conversionLayout.box.height}
           legend={<InstrumentLegend names={instrumentsOf(conversion.series, instruments)} instruments={instruments} />}
         >
-          <ConversionPlot
-            layout={layoutConversion(conversion.series, WIDTH, units)}
-            instruments={instruments}
-            units={units}
-          />
+          <ConversionPlot layout={conversionLayout} instruments={instruments} units={units} />
         </ReportFigure>
       )}
       {kissinger &&
         kissinger.series.length > 0 &&
-        curvesByEvent(kissinger).map(({ event, series }, _, all) => {
+        curvesByEvent(kissinger).map(({ event, series }, _, events) => {
           const layout = layoutKissinger(series, WIDTH, units);
           const laws = layout.laws.map(lawName);
           return (
             <ReportFigure
               key={event}
               {...FIGURES.kissinger}
-              title={eventTitle(FIGURES.kissinger.title, event, all.length)}
+              title={eventTitle(FIGURES.kissinger.title, event, events.length)}
               height={layout.box.height}
               legend={
                 <>
@@ -172,13 +213,13 @@ export function SampleFigures(props: {
         })}
       {energy &&
         energy.series.length > 0 &&
-        curvesByEvent(energy).map(({ event, series }, _, all) => {
+        curvesByEvent(energy).map(({ event, series }, _, events) => {
           const layout = layoutEnergy(series, WIDTH);
           return (
             <ReportFigure
               key={event}
               {...FIGURES.energy}
-              title={eventTitle(FIGURES.energy.title, event, all.length)}
+              title={eventTitle(FIGURES.energy.title, event, events.length)}
               height={layout.height}
             >
               <EnergyPanels layout={layout} />
@@ -186,7 +227,7 @@ export function SampleFigures(props: {
           );
         })}
       {OTHER_KINDS.flatMap((kind) => {
-        const curves = sample.curves[kind];
+        const curves = all[kind];
         if (!curves || curves.series.length === 0) return [];
         const { title, caption } = FIGURES[kind as keyof typeof FIGURES];
         return splitCurves(curves).map((part) => {

@@ -1,40 +1,65 @@
-import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
+import { FORECAST_CAUTION, type ForecastRow } from '../../schema/wire/forecasts.ts';
+import type { ParameterRow } from '../../schema/wire/parameters.ts';
+import type { VerdictRow } from '../../schema/wire/verdicts.ts';
 import { EventTable } from '../charts/number-table.tsx';
+import type { ScanRow } from '../client/rows.ts';
 import type { Units } from '../format.ts';
 import { formatCount, formatFixed, formatRate } from '../format.ts';
 import { describeEstimate } from '../model/describe.ts';
-import { headlineEnergy, headlineExponent } from '../model/headline.ts';
+import { type EventNumbers, headlineEnergy, headlineExponent } from '../model/headline.ts';
 import type { LedgerRow } from '../model/ledger.ts';
 import { groupFlags, groupGaps } from '../model/next-steps.ts';
 import { describeVerdict } from '../model/verdict.ts';
 import { gapName, methodName, methodRank, SAMPLE_STATE_NAMES, sentence, verdictName } from '../words.ts';
-import type { ReportData, ReportSample } from './data.ts';
-import { CoverageFigure, SampleFigures } from './figures.tsx';
+import type { ReportData, ReportSample, SampleCurves } from './data.ts';
+import { CoverageFigures, SampleFigures } from './figures.tsx';
 import { GENERAL_METHODS, METHOD_TEXTS, VERDICT_METHOD } from './methods.ts';
 import { AdviceReport, EnergyReport, ForecastReport, InstrumentReport, ReportTable, ScanReport } from './tables.tsx';
 
-interface ReportProps {
+export interface ReportProps {
   data: ReportData;
   rows: readonly LedgerRow[];
   instruments: readonly string[];
   units: Units;
 }
 
+/** Rows of one sample. */
+export interface SampleTables {
+  scans: readonly ScanRow[];
+  parameters: readonly ParameterRow[];
+  verdicts: readonly VerdictRow[];
+  forecasts: readonly ForecastRow[];
+}
+
 const PLOT_WIDTH = 170;
 
-export function Report(props: ReportProps) {
-  const { data, rows, instruments, units } = props;
+/** What stands before the samples. */
+export function ReportHead(props: ReportProps & { figured: number }) {
+  const { data, rows, instruments, units, figured } = props;
   const { tables, samples } = data;
   return (
-    <main>
+    <>
       <Opening {...props} />
+      {figured < samples.length && (
+        <p>
+          So many samples make a page that no reader turns: the {figured} of them with the gravest flags are told with
+          their figures and every conversion; of the others the numbers, verdicts, forecasts and scans stand here, their
+          energies at each conversion in parameters.csv, and their figures on the page of each sample.
+        </p>
+      )}
       <h2>What was measured</h2>
-      <CoverageFigure rows={rows} instruments={instruments} units={units} />
+      <CoverageFigures rows={rows} instruments={instruments} units={units} />
       <InstrumentReport rows={tables.instruments} instruments={instruments} />
       <Methods data={data} />
-      {samples.map((sample) => (
-        <SampleSection key={sample.sample} {...props} sample={sample} />
-      ))}
+    </>
+  );
+}
+
+/** What stands behind the samples. */
+export function ReportEnd({ data, units }: ReportProps) {
+  const { tables } = data;
+  return (
+    <>
       {(tables.advice?.length ?? 0) > 0 && (
         <>
           <h2>What to measure next</h2>
@@ -44,7 +69,7 @@ export function Report(props: ReportProps) {
       )}
       <Doubts data={data} />
       <Provenance data={data} />
-    </main>
+    </>
   );
 }
 
@@ -55,6 +80,8 @@ function Opening({ data, rows, units }: ReportProps) {
   const rates = marks.map((mark) => mark.rateKPerS).filter((rate) => rate !== null);
   const low = rates.reduce((a, b) => Math.min(a, b), Number.POSITIVE_INFINITY);
   const high = rates.reduce((a, b) => Math.max(a, b), 0);
+  const verdicts = new Map(tables.verdicts?.map((row) => [`${row.sample}\u0000${row.event}`, row]));
+  const numbers = new Map(rows.filter((row) => row.role === 'sample').map((row) => [row.sample, row.numbers]));
   const estimate = (row: ReturnType<typeof headlineEnergy>, unit: string): string => {
     if (!row) return '–';
     const { value, spread, method } = describeEstimate(row);
@@ -84,11 +111,11 @@ function Opening({ data, rows, units }: ReportProps) {
         caption="The number that stands for each sample and event, with its 95 % interval. Every other method follows below."
         heads={['Sample', 'Activation energy, kJ/mol', 'Avrami exponent', 'Verdict and state']}
         rows={samples.flatMap((sample) => {
-          const events = rows.find((row) => row.sample === sample.sample && row.role === 'sample')?.numbers ?? [];
+          const events = numbers.get(sample.sample) ?? [];
           const state = SAMPLE_STATE_NAMES[sample.state] + (sample.reason ? `: ${sample.reason}` : '');
           if (events.length === 0) return [[sample.sample, '–', '–', state]];
           return events.map((event) => {
-            const verdict = tables.verdicts?.find((v) => v.sample === sample.sample && v.event === event.event);
+            const verdict = verdicts.get(`${sample.sample}\u0000${event.event}`);
             return [
               events.length > 1 ? `${sample.sample}, event ${event.event}` : sample.sample,
               estimate(headlineEnergy(event), ''),
@@ -138,14 +165,19 @@ function Methods({ data }: { data: ReportData }) {
   );
 }
 
-function SampleSection(props: ReportProps & { sample: ReportSample }) {
-  const { data, rows, instruments, units, sample } = props;
-  const { scans, parameters, verdicts, forecasts } = data.tables;
-  const own = <Row extends { sample: string | null }>(table: readonly Row[] | undefined): Row[] =>
-    (table ?? []).filter((row) => row.sample === sample.sample);
-  const ownScans = own(scans).filter((row) => row.role === 'sample');
-  const numbers = rows.find((row) => row.sample === sample.sample && row.role === 'sample')?.numbers ?? [];
-  const ownForecasts = own(forecasts);
+/** What a report tells of one sample, with its figures where there are curves. */
+export function SampleSection(props: {
+  sample: ReportSample;
+  /** The rows of this sample alone */
+  tables: SampleTables;
+  numbers: readonly EventNumbers[];
+  curves: SampleCurves | undefined;
+  instruments: readonly string[];
+  units: Units;
+}) {
+  const { sample, tables, numbers, curves, instruments, units } = props;
+  const scans = tables.scans.filter((row) => row.role === 'sample');
+  const { verdicts, forecasts, parameters } = tables;
   return (
     <>
       <h2>{sample.sample}</h2>
@@ -153,12 +185,12 @@ function SampleSection(props: ReportProps & { sample: ReportSample }) {
         {sentence(SAMPLE_STATE_NAMES[sample.state])}
         {sample.reason && `: ${sample.reason}`}.
       </p>
-      {own(verdicts).map((verdict) => (
+      {verdicts.map((verdict) => (
         <p key={verdict.event}>
           <strong>Verdict:</strong> {describeVerdict(verdict, units)}
         </p>
       ))}
-      <SampleFigures sample={sample} scans={ownScans} instruments={instruments} units={units} />
+      {curves && <SampleFigures curves={curves} scans={scans} instruments={instruments} units={units} />}
       {numbers.map((event) => (
         <div key={event.event} class="table-box">
           <EventTable
@@ -168,16 +200,16 @@ function SampleSection(props: ReportProps & { sample: ReportSample }) {
             plotWidth={PLOT_WIDTH}
             units={units}
           />
-          <EnergyReport rows={own(parameters).filter((row) => row.event === event.event)} />
+          {curves && <EnergyReport rows={parameters.filter((row) => row.event === event.event)} />}
         </div>
       ))}
-      {ownForecasts.length > 0 && (
+      {forecasts.length > 0 && (
         <>
-          <ForecastReport rows={ownForecasts} units={units} />
+          <ForecastReport rows={forecasts} units={units} />
           <p class="caution">{FORECAST_CAUTION}</p>
         </>
       )}
-      {ownScans.length > 0 && <ScanReport rows={ownScans} units={units} />}
+      {scans.length > 0 && <ScanReport rows={scans} units={units} />}
     </>
   );
 }
