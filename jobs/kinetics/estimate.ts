@@ -1,5 +1,10 @@
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
-import { type ArrheniusIntegral, addArrheniusIntegral, addStretch } from '../laws/arrhenius-integral.ts';
+import {
+  type ArrheniusIntegral,
+  addArrheniusIntegral,
+  addStretch,
+  fillRampIntegrals,
+} from '../laws/arrhenius-integral.ts';
 import { type JmakEstimate, JmakFit } from './avrami/non-isothermal.ts';
 import { CONVERSION_COUNT, type EventColumns, type EventData, GRID_INDEX } from './event-data.ts';
 import { fitVyazovkin } from './isoconversional/vyazovkin.ts';
@@ -39,8 +44,8 @@ export interface Estimates {
 export interface ProgrammeIntegrals {
   /** over the conversion step that ends at conversion k, for the scan at `row` of the curve scans */
   step(energy: number, x0: number, k: number, out: ArrheniusIntegral[]): void;
-  /** from the start of the programme to each conversion, scan-major */
-  cumulative(energy: number, x0: number, out: ArrheniusIntegral[]): void;
+  /** ln of the integral from the start of the programme to each conversion, scan-major, and its derivative by E, scale included */
+  cumulative(energy: number, x0: number, lnValue: Float64Array, byEnergy: Float64Array): void;
 }
 
 const reset = (o: ArrheniusIntegral): void => {
@@ -68,13 +73,14 @@ export function measuredIntegrals(data: EventData, curves: ArrayLike<number>): P
         add(j, k === 0 ? 0 : row(j, k - 1), row(j, k), energy, x0, out[j]);
       }
     },
-    cumulative(energy, x0, out) {
+    cumulative(energy, x0, lnValue, byEnergy) {
+      const sum = { value: 0, byEnergy: 0, byEnergy2: 0 };
       for (let j = 0; j < curves.length; j++) {
+        reset(sum);
         for (let k = 0; k < CONVERSION_COUNT; k++) {
-          const o = out[j * CONVERSION_COUNT + k];
-          if (k === 0) reset(o);
-          else Object.assign(o, out[j * CONVERSION_COUNT + k - 1]);
-          add(j, k === 0 ? 0 : row(j, k - 1), row(j, k), energy, x0, o);
+          add(j, k === 0 ? 0 : row(j, k - 1), row(j, k), energy, x0, sum);
+          lnValue[j * CONVERSION_COUNT + k] = Math.log(sum.value);
+          byEnergy[j * CONVERSION_COUNT + k] = sum.byEnergy / sum.value + x0 / GAS_CONSTANT;
         }
       }
     },
@@ -95,17 +101,13 @@ export function rampIntegrals(columns: EventColumns, curves: ArrayLike<number>):
         addStretch(from, T[at], (T[at] - from) / rate[i], c, c * x0, out[j]);
       }
     },
-    cumulative(energy, x0, out) {
-      const c = energy / GAS_CONSTANT;
+    cumulative(energy, x0, lnValue, byEnergy) {
       for (let j = 0; j < curves.length; j++) {
         const i = curves[j];
-        const from = Math.min(rampStartK[i], T[i * CONVERSION_COUNT] - 1);
-        for (let k = 0; k < CONVERSION_COUNT; k++) {
-          const to = T[i * CONVERSION_COUNT + k];
-          const o = out[j * CONVERSION_COUNT + k];
-          reset(o);
-          addStretch(from, to, (to - from) / rate[i], c, c * x0, o);
-        }
+        const at = i * CONVERSION_COUNT;
+        const start = Math.min(rampStartK[i], T[at] - 1);
+        const to = j * CONVERSION_COUNT;
+        fillRampIntegrals(start, T, at, CONVERSION_COUNT, rate[i], energy, x0, lnValue, byEnergy, to);
       }
     },
   };
@@ -148,7 +150,7 @@ export function createEstimator(
     const j = (row / CONVERSION_COUNT) | 0;
     return d.temperatureK[s.curves[j] * CONVERSION_COUNT + (row - j * CONVERSION_COUNT)];
   };
-  const jmak = new JmakFit(s.curveSigmaK, s.x0, temperatureAt, (e, o) => integrals.cumulative(e, s.x0, o));
+  const jmak = new JmakFit(s.curveSigmaK, s.x0, temperatureAt, (e, ln, by) => integrals.cumulative(e, s.x0, ln, by));
 
   return (warm) => {
     const out = peakEstimates(d, s, peakLnRate);

@@ -70,6 +70,61 @@ export function addStretch(T1: number, T2: number, dt: number, c: number, shift:
   out.byEnergy2 += (perKelvin / (GAS_CONSTANT * GAS_CONSTANT * c)) * (e2 - e1);
 }
 
+/** Below this part of the whole, ln, what lies before a ramp's start does not change the last digit. */
+const LN_NEGLIGIBLE = -37;
+/** Below this part ln(1 − part) is its first two terms. */
+const SMALL_PART = 1e-5;
+const onRamp: ArrheniusIntegral = { value: 0, byEnergy: 0, byEnergy2: 0 };
+
+/**
+ * ln J and d ln J/dE, scale included, of a ramp of `rate` K/s from startK up to each of `count` temperatures, T[at] and on, into the places
+ * from `to` on of `lnValue` and `byEnergy`. The closed form of `addStretch` in logarithms: with h/x = N(x)/D(x), ln[T N/(D β)] + x0 E/R − x and
+ * R d/dE = x0 + (1 − D/N)/c.
+ */
+export function fillRampIntegrals(
+  startK: number,
+  T: Float64Array,
+  at: number,
+  count: number,
+  rate: number,
+  energyJPerMol: number,
+  x0: number,
+  lnValue: Float64Array,
+  byEnergy: Float64Array,
+  to: number,
+): void {
+  const c = energyJPerMol / GAS_CONSTANT;
+  const shift = c * x0;
+  const xs = c / startK;
+  const hs = temperatureIntegralFactorFast(xs) / xs;
+  const lnStart = Math.log(startK * hs) - xs;
+  const slopeStart = 1 - 1 / hs;
+  const common = shift - Math.log(rate);
+  for (let k = 0; k < count; k++) {
+    const x = c / T[at + k];
+    if (!(x > LEAST_X) || Math.abs(xs - x) < SHORT_STRETCH) {
+      onRamp.value = 0;
+      onRamp.byEnergy = 0;
+      onRamp.byEnergy2 = 0;
+      addStretch(startK, T[at + k], (T[at + k] - startK) / rate, c, shift, onRamp);
+      lnValue[to + k] = Math.log(onRamp.value);
+      byEnergy[to + k] = onRamp.byEnergy / onRamp.value + x0 / GAS_CONSTANT;
+      continue;
+    }
+    const h = temperatureIntegralFactorFast(x) / x;
+    let ln = Math.log(T[at + k] * h) - x;
+    let slope = 1 - 1 / h;
+    const before = lnStart - ln;
+    if (before > LN_NEGLIGIBLE) {
+      const part = Math.exp(before);
+      slope = (slope - part * slopeStart) / (1 - part);
+      ln += part < SMALL_PART ? -part * (1 + part / 2) : Math.log1p(-part);
+    }
+    lnValue[to + k] = ln + common;
+    byEnergy[to + k] = (slope / c + x0) / GAS_CONSTANT;
+  }
+}
+
 /** Five-point Gauss–Legendre over panels of the stretch: any sign of c, all terms of one sign, so nothing cancels. */
 function addByQuadrature(T1: number, T2: number, dt: number, c: number, shift: number, out: ArrheniusIntegral): void {
   const panels = Math.max(

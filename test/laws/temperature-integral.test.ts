@@ -1,5 +1,5 @@
 import { describe, expect, test } from 'vitest';
-import { addStretch } from '../../jobs/laws/arrhenius-integral.ts';
+import { addStretch, fillRampIntegrals } from '../../jobs/laws/arrhenius-integral.ts';
 import {
   temperatureIntegral,
   temperatureIntegralFactor,
@@ -91,5 +91,26 @@ describe('Arrhenius integral along a ramp', () => {
     expect(Math.abs(out.value / simpson(k, dt) - 1)).toBeLessThan(1e-6);
     expect(Math.abs(out.byEnergy / simpson((t) => -k(t) * inverse(t), dt) - 1)).toBeLessThan(1e-6);
     expect(Math.abs(out.byEnergy2 / simpson((t) => k(t) * inverse(t) ** 2, dt) - 1)).toBeLessThan(1e-5);
+  });
+  test.each([
+    [150e3, 300, 600, 640], // a start that does not matter
+    [150e3, 560, 600, 640], // one that does
+    [300e3, 690, 690.5, 700], // so near that little else is left
+    [20e3, 280, 320, 360], // below the reach of the closed form
+  ])('logarithm and its slope for E = %d from %d K to %d and %d K', (E, start, T1, T2) => {
+    const x0 = 1 / T2;
+    const T = Float64Array.of(0, T1, T2);
+    const ln = new Float64Array(3);
+    const by = new Float64Array(3);
+    fillRampIntegrals(start, T, 1, 2, 0.5, E, x0, ln, by, 1);
+    for (const k of [1, 2]) {
+      const dt = (T[k] - start) / 0.5;
+      const at = (t: number) => 1 / (start + 0.5 * t) - x0;
+      const value = simpson((t) => Math.exp((-E / GAS_CONSTANT) * at(t)), dt);
+      const slope = simpson((t) => (-at(t) / GAS_CONSTANT) * Math.exp((-E / GAS_CONSTANT) * at(t)), dt) / value;
+      expect(Math.abs(ln[k] - Math.log(value))).toBeLessThan(1e-6);
+      expect(Math.abs(by[k] - slope)).toBeLessThan(1e-6 / GAS_CONSTANT / T1);
+    }
+    expect([ln[0], by[0]]).toEqual([0, 0]);
   });
 });

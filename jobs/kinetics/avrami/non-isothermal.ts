@@ -1,10 +1,13 @@
 import { GAS_CONSTANT } from '../../../schema/wire/units.ts';
-import type { ArrheniusIntegral } from '../../laws/arrhenius-integral.ts';
-import { approachMinimum, LeastSquares, type LeastSquaresResult } from '../../numeric/least-squares.ts';
+import { approachMinimum, type LeastSquaresResult } from '../../numeric/least-squares.ts';
+import { solveSymmetric } from '../../numeric/linear-solve.ts';
 import { CONVERSION_COUNT, CONVERSIONS } from '../event-data.ts';
 
-/** Fills ∫ exp(−(E/R)(1/T − x0)) dt and its derivative by E from the start of the programme to each conversion, scan-major. */
-export type CumulativeIntegrals = (energy: number, out: ArrheniusIntegral[]) => void;
+/**
+ * Fills ln ∫ exp(−(E/R)(1/T − x0)) dt from the start of the programme to each conversion, scan-major, and its derivative by E (the scale x0
+ * counts there too).
+ */
+export type CumulativeIntegrals = (energy: number, lnValue: Float64Array, byEnergy: Float64Array) => void;
 
 export interface JmakEstimate {
   energy: number;
@@ -25,12 +28,16 @@ export interface JmakQuality {
 
 /** Size of a meaningful change of (E, ln K at x0, n). */
 const SCALE = Float64Array.of(1e5, 1, 1);
+const CONVERSION = Float64Array.from(CONVERSIONS);
 
 /** Standard deviation of one α of a curve about the law when the scan sits right: noise and baseline, about half a per cent. */
 const CURVE_SIGMA = 0.005;
-/** Gauss–Newton steps for a scan's own shift: it is nearly linear. */
-const SHIFT_STEPS = 6;
-const SHIFT_SETTLED_K = 1e-5;
+/** Step ÷ scale at which a fit has converged: to the last digit, and in a draw, where what is left after such a step is a hundredth of it. */
+const LAST_DIGIT = 1e-9;
+const DRAW_TOLERANCE = 1e-5;
+const MOST_STEPS = 60;
+const DAMPING_LIMIT = 1e8;
+const P = 3;
 
 /**
  * Johnson–Mehl–Avrami–Kolmogorov on all scans of an event at once: α = 1 − exp[−(∫K dt)^n], K = exp(ln K0 − (E/R)(1/T − x0)), by
@@ -39,21 +46,29 @@ const SHIFT_SETTLED_K = 1e-5;
  *
  * One scan's whole curve moves together, so each scan has a temperature shift δ of its own, held by its scatter σ between scans: the sum
  * of squares is Σ_i [Σ_k (α̂(T_ik − δ_i) − α_k)²/σ_α² + δ_i²/σ_i²]. n then comes from the shape of each curve and E from where the curves
- * sit; without δ a scatter of 1.5 K on a chip read n 1.3 % low. δ acts on ln ∫K dt as −δ E/(R T²). The shifts are projected out (Kaufman
- * 1975), so the fit keeps three parameters.
+ * sit; without δ a scatter of 1.5 K on a chip read n 1.3 % low. δ acts on ln ∫K dt as −δ E/(R T²).
+ *
+ * Damped Gauss–Newton on (E, ln K0, n) and all δ together. Each δ meets only its own scan, so the normal matrix is a 3 × 3 block, a diagonal
+ * and a border: the diagonal is eliminated (Schur complement) while the one pass over the points makes the sums; no Jacobian is stored.
  */
 export class JmakFit {
-  private readonly integrals: ArrheniusIntegral[];
-  private readonly solver: LeastSquares;
-  private readonly curveRows: number;
   private readonly lnI: Float64Array;
+  private readonly byEnergy: Float64Array;
+  /** 1/(R T²), mol/(J K): what a shift of 1 K does to E/(R T), per J/mol */
   private readonly perKelvin: Float64Array;
-  /** each scan's shift at the last evaluation: the start of the next */
   private readonly shifts: Float64Array;
-  private readonly slope = new Float64Array(CONVERSION_COUNT);
+  private readonly trialShifts: Float64Array;
+  /** of the last pass: Σ of squares of α alone */
+  private curveSquares = 0;
+  /** Schur complement of the normal matrix and its right-hand side */
+  private readonly normal = new Float64Array(P * P);
+  private readonly gradient = new Float64Array(P);
+  /** per scan: Σ g², Σ g r, and Σ g J for the three parameters */
+  private readonly border: Float64Array;
 
   /**
-   * @param temperatureK at each conversion of each scan, scan-major; read at every fit   @param sigmaK scatter of each scan's temperature, K
+   * @param sigmaK scatter of each scan's temperature, K   @param temperatureAt K at each conversion of each scan, scan-major; read at every
+   * fit
    */
   constructor(
     private readonly sigmaK: ArrayLike<number>,
@@ -61,114 +76,36 @@ export class JmakFit {
     private readonly temperatureAt: (row: number) => number,
     private readonly cumulative: CumulativeIntegrals,
   ) {
-    const scanCount = sigmaK.length;
-    this.curveRows = scanCount * CONVERSION_COUNT;
-    this.integrals = Array.from({ length: this.curveRows }, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
-    this.lnI = new Float64Array(this.curveRows);
-    this.perKelvin = new Float64Array(this.curveRows);
-    this.shifts = new Float64Array(scanCount);
-    // The last row of each scan is its shift against its scatter.
-    this.solver = new LeastSquares(this.curveRows + scanCount, 3, (p, r, J) => this.evaluate(p, r, J));
+    const rows = sigmaK.length * CONVERSION_COUNT;
+    this.lnI = new Float64Array(rows);
+    this.byEnergy = new Float64Array(rows);
+    this.perKelvin = new Float64Array(rows);
+    this.shifts = new Float64Array(sigmaK.length);
+    this.trialShifts = new Float64Array(sigmaK.length);
+    this.border = new Float64Array(sigmaK.length * (P + 2));
   }
 
-  private evaluate(p: Float64Array, r: Float64Array, J?: Float64Array): void {
-    const [energy, lnK0, n] = p;
-    if (!(energy > 0) || !(n > 0.05) || n > 50) {
-      r.fill(Number.POSITIVE_INFINITY);
-      return;
-    }
-    this.cumulative(energy, this.integrals);
-    const c = energy / GAS_CONSTANT;
-    for (let row = 0; row < this.curveRows; row++) {
-      const T = this.temperatureAt(row);
-      this.lnI[row] = lnK0 + Math.log(this.integrals[row].value);
-      this.perKelvin[row] = -c / (T * T);
-    }
-    for (let i = 0; i < this.sigmaK.length; i++) this.evaluateScan(i, n, r, J);
-  }
-
-  /** Residuals of one scan at its best shift, with the Jacobian's part along the shift taken out. */
-  private evaluateScan(i: number, n: number, r: Float64Array, J?: Float64Array): void {
-    const { lnI, perKelvin, curveRows } = this;
-    const from = i * CONVERSION_COUNT;
-    const prior = CURVE_SIGMA / this.sigmaK[i];
-    let shift = this.shifts[i];
-    for (let step = 0; step < SHIFT_STEPS; step++) {
-      let gg = prior * prior;
-      let gr = prior * prior * shift;
-      for (let k = 0; k < CONVERSION_COUNT; k++) {
-        const X = Math.exp(n * (lnI[from + k] + perKelvin[from + k] * shift));
-        const left = Math.exp(-X);
-        const g = left * X * n * perKelvin[from + k];
-        gg += g * g;
-        gr += g * (1 - left - CONVERSIONS[k]);
-      }
-      const move = gr / gg;
-      shift -= move;
-      // The next move would be about this one squared over the width.
-      if (Math.abs(move) < SHIFT_SETTLED_K) break;
-    }
-    this.shifts[i] = shift;
-    let gg = prior * prior;
-    let g0 = 0;
-    let g1 = 0;
-    let g2 = 0;
-    for (let k = 0; k < CONVERSION_COUNT; k++) {
-      const row = from + k;
-      const shifted = lnI[row] + perKelvin[row] * shift;
-      const X = Math.exp(n * shifted);
-      const left = Math.exp(-X);
-      r[row] = 1 - left - CONVERSIONS[k];
-      if (!J) continue;
-      const slope = left * X;
-      this.slope[k] = slope;
-      const { value, byEnergy } = this.integrals[row];
-      const T = this.temperatureAt(row);
-      // d/dE of the scaled integral: the scale e^(x0 E/R) counts here, and the shift's share.
-      J[row * 3] = slope * n * (byEnergy / value + this.x0 / GAS_CONSTANT - shift / (GAS_CONSTANT * T * T));
-      J[row * 3 + 1] = slope * n;
-      J[row * 3 + 2] = slope * shifted;
-      const g = slope * n * perKelvin[row];
-      gg += g * g;
-      g0 += g * J[row * 3];
-      g1 += g * J[row * 3 + 1];
-      g2 += g * J[row * 3 + 2];
-    }
-    const last = curveRows + i;
-    r[last] = prior * shift;
-    if (!J) return;
-    for (let k = 0; k < CONVERSION_COUNT; k++) {
-      const row = from + k;
-      const g = (this.slope[k] * n * perKelvin[row]) / gg;
-      J[row * 3] -= g * g0;
-      J[row * 3 + 1] -= g * g1;
-      J[row * 3 + 2] -= g * g2;
-    }
-    J[last * 3] = (-prior * g0) / gg;
-    J[last * 3 + 1] = (-prior * g1) / gg;
-    J[last * 3 + 2] = (-prior * g2) / gg;
-  }
-
-  /** From a rough start: the library's Levenberg–Marquardt first, then the analytic one to the last digit. */
+  /** From a rough start, to the last digit. Where that fails the library's Levenberg–Marquardt brings it near first. */
   fitFromScratch(start: Float64Array): JmakEstimate {
-    const near = approachMinimum(
-      (p) => {
-        const r = new Float64Array(this.curveRows + this.sigmaK.length);
-        this.evaluate(p, r);
-        // The library squares what it gets: a large finite value stands for "outside the model's range".
-        return r.map((v) => (Number.isFinite(v) ? v : 1e3));
+    const own = this.solve(start, LAST_DIGIT);
+    const fit = own.converged ? own : this.solve(this.approach(start), LAST_DIGIT);
+    const rms = (sum: number, n: number) => Math.sqrt(sum / n);
+    const n = this.sigmaK.length;
+    return {
+      ...this.result(fit),
+      quality: {
+        residualRms: rms(this.curveSquares, n * CONVERSION_COUNT),
+        shiftRms: rms(
+          this.shifts.reduce((sum, d, i) => sum + (d / this.sigmaK[i]) ** 2, 0),
+          n,
+        ),
       },
-      start,
-      SCALE,
-      this.curveRows + this.sigmaK.length,
-    );
-    const result = this.result(this.solver.solve(near, SCALE));
-    return { ...result, quality: this.judge(result.fit.parameters) };
+    };
   }
 
   /** From a neighbouring answer (Monte Carlo draws). */
   fitFrom(start: Float64Array): JmakEstimate {
-    return this.result(this.solver.solve(start, SCALE, 30, 1e-7));
+    return this.result(this.solve(start, DRAW_TOLERANCE));
   }
 
   private result(fit: LeastSquaresResult): JmakEstimate {
@@ -176,10 +113,170 @@ export class JmakFit {
     return { energy, lnPrefactor: lnK0 + (energy * this.x0) / GAS_CONSTANT, exponent, fit };
   }
 
-  private judge(parameters: Float64Array): JmakQuality {
-    const r = new Float64Array(this.curveRows + this.sigmaK.length);
-    this.evaluate(parameters, r);
-    const rms = (v: Float64Array) => Math.sqrt(v.reduce((sum, x) => sum + x * x, 0) / v.length);
-    return { residualRms: rms(r.subarray(0, this.curveRows)), shiftRms: rms(r.subarray(this.curveRows)) / CURVE_SIGMA };
+  private solve(start: Float64Array, tolerance: number): LeastSquaresResult {
+    const { normal, gradient, border } = this;
+    const scans = this.sigmaK.length;
+    for (let row = 0; row < this.perKelvin.length; row++) {
+      this.perKelvin[row] = 1 / (GAS_CONSTANT * this.temperatureAt(row) ** 2);
+    }
+    let shifts = this.shifts.fill(0);
+    let trial = this.trialShifts;
+    const parameters = Float64Array.from(start);
+    const next = new Float64Array(P);
+    const keptNormal = new Float64Array(P * P);
+    const keptGradient = new Float64Array(P);
+    const keptBorder = new Float64Array(border.length);
+    let sum = this.accumulate(parameters, shifts);
+    let evaluations = 1;
+    let damping = 0;
+    let converged = false;
+    let message = `not converged after ${MOST_STEPS} iterations`;
+    for (let step = 0; step < MOST_STEPS; step++) {
+      if (!Number.isFinite(sum)) {
+        message = 'the model gave no finite value at the start';
+        break;
+      }
+      keptNormal.set(normal);
+      keptGradient.set(gradient);
+      keptBorder.set(border);
+      for (let i = 0; i < P; i++) normal[i * P + i] *= 1 + damping;
+      if (!solveSymmetric(normal, gradient, P)) {
+        message = 'the normal matrix is singular: the data do not determine every parameter';
+        break;
+      }
+      let largest = 0;
+      for (let i = 0; i < P; i++) {
+        next[i] = parameters[i] - gradient[i];
+        largest = Math.max(largest, Math.abs(gradient[i]) / SCALE[i]);
+      }
+      for (let i = 0; i < scans; i++) {
+        const b = i * (P + 2);
+        const move =
+          (border[b + 1] - border[b + 2] * gradient[0] - border[b + 3] * gradient[1] - border[b + 4] * gradient[2]) /
+          border[b];
+        trial[i] = shifts[i] - move;
+      }
+      if (largest < tolerance) {
+        parameters.set(next);
+        [shifts, trial] = [trial, shifts];
+        converged = true;
+        message = `last step ${largest.toExponential(1)} of the parameters' scale`;
+        break;
+      }
+      const sum2 = this.accumulate(next, trial);
+      evaluations++;
+      if (sum2 <= sum) {
+        parameters.set(next);
+        [shifts, trial] = [trial, shifts];
+        sum = sum2;
+        damping = damping < 1e-6 ? 0 : damping / 10;
+      } else {
+        normal.set(keptNormal);
+        gradient.set(keptGradient);
+        border.set(keptBorder);
+        if (damping > DAMPING_LIMIT) {
+          message = 'no step lowers the residual any more';
+          converged = largest < LAST_DIGIT ** 0.5;
+          break;
+        }
+        damping = damping === 0 ? 1e-3 : damping * 10;
+      }
+    }
+    if (shifts !== this.shifts) this.shifts.set(shifts);
+    return { parameters, sumOfSquares: sum, converged, message, evaluations };
+  }
+
+  /** One pass over the points: the sum of squares (infinite outside the model's range) and the sums that the next step needs. */
+  private accumulate(p: Float64Array, shifts: Float64Array): number {
+    const [energy, lnK0, n] = p;
+    if (!(energy > 0) || !(n > 0.05) || n > 50) return Number.POSITIVE_INFINITY;
+    const { lnI, byEnergy, perKelvin, border, normal } = this;
+    this.cumulative(energy, lnI, byEnergy);
+    let curveSquares = 0;
+    let shiftSquares = 0;
+    let [n00, n01, n02, n11, n12, n22] = [0, 0, 0, 0, 0, 0];
+    let [b0, b1, b2] = [0, 0, 0];
+    for (let i = 0; i < shifts.length; i++) {
+      const shift = shifts[i];
+      const prior = CURVE_SIGMA / this.sigmaK[i];
+      let gg = prior * prior;
+      let gr = prior * prior * shift;
+      let [g0, g1, g2] = [0, 0, 0];
+      shiftSquares += gr * shift;
+      const from = i * CONVERSION_COUNT;
+      for (let k = 0; k < CONVERSION_COUNT; k++) {
+        const row = from + k;
+        const perShift = perKelvin[row];
+        const lnX = lnK0 + lnI[row] - energy * perShift * shift;
+        const X = Math.exp(n * lnX);
+        const left = Math.exp(-X);
+        const r = 1 - left - CONVERSION[k];
+        const slope = left * X;
+        const j1 = slope * n;
+        const j0 = j1 * (byEnergy[row] - perShift * shift);
+        const j2 = slope * lnX;
+        const g = -j1 * energy * perShift;
+        curveSquares += r * r;
+        gg += g * g;
+        gr += g * r;
+        g0 += g * j0;
+        g1 += g * j1;
+        g2 += g * j2;
+        b0 += j0 * r;
+        b1 += j1 * r;
+        b2 += j2 * r;
+        n00 += j0 * j0;
+        n01 += j0 * j1;
+        n02 += j0 * j2;
+        n11 += j1 * j1;
+        n12 += j1 * j2;
+        n22 += j2 * j2;
+      }
+      const b = i * (P + 2);
+      border[b] = gg;
+      border[b + 1] = gr;
+      border[b + 2] = g0;
+      border[b + 3] = g1;
+      border[b + 4] = g2;
+      b0 -= (g0 * gr) / gg;
+      b1 -= (g1 * gr) / gg;
+      b2 -= (g2 * gr) / gg;
+      n00 -= (g0 * g0) / gg;
+      n01 -= (g0 * g1) / gg;
+      n02 -= (g0 * g2) / gg;
+      n11 -= (g1 * g1) / gg;
+      n12 -= (g1 * g2) / gg;
+      n22 -= (g2 * g2) / gg;
+    }
+    this.gradient[0] = b0;
+    this.gradient[1] = b1;
+    this.gradient[2] = b2;
+    normal[0] = n00;
+    normal[1] = normal[3] = n01;
+    normal[2] = normal[6] = n02;
+    normal[4] = n11;
+    normal[5] = normal[7] = n12;
+    normal[8] = n22;
+    this.curveSquares = curveSquares;
+    return curveSquares + shiftSquares;
+  }
+
+  /** Without shifts, by the library, whose numeric derivatives and adaptive damping forgive a poor start. */
+  private approach(start: Float64Array): Float64Array {
+    const rows = this.lnI.length;
+    return approachMinimum(
+      ([energy, lnK0, n]) => {
+        // The library squares what it gets: a large finite value stands for "outside the model's range".
+        if (!(energy > 0) || !(n > 0.05) || n > 50) return new Float64Array(rows).fill(1e3);
+        this.cumulative(energy, this.lnI, this.byEnergy);
+        return Float64Array.from(this.lnI, (v, row) => {
+          const X = Math.exp(n * (lnK0 + v));
+          return 1 - Math.exp(-X) - CONVERSION[row % CONVERSION_COUNT];
+        });
+      },
+      start,
+      SCALE,
+      rows,
+    );
   }
 }

@@ -17,11 +17,22 @@ export function vyazovkinWightLimits(
   work: ArrheniusIntegral[],
 ): [number, number] | undefined {
   const n = work.length;
+  // J_i/J_j − 1 = (u_i − u_j)/(1 + u_j) with u = J/mean − 1: one pass, and nothing cancels.
   const variance = (E: number): number => {
     integrals(E, work);
-    let sum = 0;
+    let mean = 0;
+    for (let i = 0; i < n; i++) mean += work[i].value / n;
+    let su = 0;
+    let suu = 0;
     for (let i = 0; i < n; i++) {
-      for (let j = 0; j < n; j++) if (i !== j) sum += (work[i].value / work[j].value - 1) ** 2;
+      const u = work[i].value / mean - 1;
+      su += u;
+      suu += u * u;
+    }
+    let sum = 0;
+    for (let j = 0; j < n; j++) {
+      const u = work[j].value / mean - 1;
+      sum += (suu - 2 * u * su + n * u * u) / (1 + u) ** 2;
     }
     return sum / (n * (n - 1));
   };
@@ -43,6 +54,9 @@ export function vyazovkinWightLimits(
   return low === undefined || high === undefined ? undefined : [low, high];
 }
 
+/** S² is flat at its minimum: this much of E changes it by less than a millionth. */
+const SETTLED = 1e-6;
+
 /** Golden section. */
 function minimise(f: (x: number) => number, low: number, high: number): number {
   const g = (Math.sqrt(5) - 1) / 2;
@@ -51,7 +65,7 @@ function minimise(f: (x: number) => number, low: number, high: number): number {
   let d = a + g * (b - a);
   let fc = f(c);
   let fd = f(d);
-  while (b - a > 1e-7 * high) {
+  while (b - a > SETTLED * high) {
     if (fc < fd) {
       [b, d, fd] = [d, c, fc];
       c = b - g * (b - a);

@@ -18,8 +18,8 @@ export interface EnergyBracket {
 const HEATING_BRACKET: EnergyBracket = { lowest: 1e3, highest: 2e6 };
 /** Effective energies on cooling fall below zero near the melting point. */
 export const COOLING_BRACKET: EnergyBracket = { lowest: -1e6, highest: 1e6 };
-/** The Newton step, relative to E or 1 kJ/mol, after which the next would be below rounding (convergence is quadratic). */
-const TOLERANCE = 1e-6;
+/** The Newton step, relative to E or 1 kJ/mol, after which the next would be below 1e-8 (convergence is quadratic). */
+const TOLERANCE = 1e-5;
 const LEAST_SCALE = 1e3;
 
 /**
@@ -36,7 +36,9 @@ export function fitVyazovkin(
   { lowest, highest }: EnergyBracket = HEATING_BRACKET,
 ): VyazovkinEstimate {
   let evaluations = 0;
-  const slopes = (energy: number): { first: number; second: number } => {
+  let second = 0;
+  /** dΦ/dE; d²Φ/dE² goes to `second`. */
+  const slope = (energy: number): number => {
     evaluations++;
     integrals(energy, work);
     let a = 0;
@@ -56,11 +58,12 @@ export function fitVyazovkin(
       b1 -= (w * r) / J;
       b2 += (w * (2 * r * r - J2 / J)) / J;
     }
-    return { first: a1 * b + a * b1, second: a2 * b + 2 * a1 * b1 + a * b2 };
+    second = a2 * b + 2 * a1 * b1 + a * b2;
+    return a1 * b + a * b1;
   };
   let energy = Math.min(highest, Math.max(lowest, start));
   for (let i = 0; i < 12; i++) {
-    const { first, second } = slopes(energy);
+    const first = slope(energy);
     if (!(second > 0) || !Number.isFinite(first)) break;
     const next = energy - first / second;
     if (!(next > lowest && next < highest)) break;
@@ -71,7 +74,7 @@ export function fitVyazovkin(
   try {
     const reach = 3 * Math.max(LEAST_SCALE, Math.abs(start));
     const low = Math.max(lowest, start - (lowest > 0 ? reach / 4 : reach));
-    energy = findRoot((e) => slopes(e).first, low, Math.min(highest, start + reach), 1e-6 * LEAST_SCALE);
+    energy = findRoot(slope, low, Math.min(highest, start + reach), 1e-6 * LEAST_SCALE);
     return { energy, converged: true, evaluations };
   } catch {
     return { energy: start, converged: false, evaluations };
