@@ -1,6 +1,6 @@
 import type { SharedLaw } from '../../schema/wire/shared-law.ts';
 import { lnTimeGradient } from '../forecast/index.ts';
-import { analyseBend, degreesLeft } from '../glass/verdict/analyse.ts';
+import { analyseBend, degreesLeft, settleBend } from '../glass/verdict/analyse.ts';
 import { collectJudged, lawData } from '../glass/verdict/collect.ts';
 import type { ConditionValue } from '../glass/verdict/condition.ts';
 import type { LawData, LawFit } from '../glass/verdict/law-fit.ts';
@@ -33,8 +33,9 @@ export function analyseForAdvice(
   const judged = collectJudged(event, scans, instruments);
   const { data, own } = lawData(judged, judged.hasCentroid ? 'centroid' : 'peak');
   if (degreesLeft(data) < 1) return undefined;
-  const found = analyseBend(data, own, undefined, 0);
-  if (!found) return undefined;
+  const settled = settleBend(data, own);
+  if (!settled) return undefined;
+  const found = analyseBend(data, own, settled, undefined, 0);
   const fit =
     goal === 'bend'
       ? found.full

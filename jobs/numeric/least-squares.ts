@@ -1,17 +1,20 @@
 import { levenbergMarquardt } from 'ml-levenberg-marquardt';
-import { solveSymmetric } from './linear-solve.ts';
+import { SymmetricSolver } from './linear-solve.ts';
 
 /** A model with analytic derivatives: fills residuals (length m) and, row-major, ∂residual/∂parameter (m × p). */
 export type Residuals = (parameters: Float64Array, residuals: Float64Array, jacobian: Float64Array) => void;
 
-export interface LeastSquaresResult {
+export interface Minimum {
   parameters: Float64Array;
-  /** p × p, residual variance × (JᵀJ)⁻¹; undefined when the normal matrix is singular */
-  covariance?: Float64Array;
   sumOfSquares: number;
   converged: boolean;
   message: string;
   evaluations: number;
+}
+
+export interface LeastSquaresResult extends Minimum {
+  /** p × p, residual variance × (JᵀJ)⁻¹; undefined when the normal matrix is singular */
+  covariance?: Float64Array;
 }
 
 const SMALLEST_STEP = 1e-9;
@@ -22,10 +25,14 @@ const SMALLEST_STEP = 1e-9;
  * Stops when every parameter moves by less than 1e-9 of its scale (`scale`, the size of a meaningful change).
  */
 export class LeastSquares {
-  private readonly residuals: Float64Array;
-  private readonly jacobian: Float64Array;
-  private readonly trialResiduals: Float64Array;
-  private readonly trialJacobian: Float64Array;
+  private residuals: Float64Array;
+  private jacobian: Float64Array;
+  private trialResiduals: Float64Array;
+  private trialJacobian: Float64Array;
+  private readonly trial: Float64Array;
+  private readonly normal: Float64Array;
+  private readonly gradient: Float64Array;
+  private readonly solver: SymmetricSolver;
 
   constructor(
     private readonly rows: number,
@@ -36,22 +43,20 @@ export class LeastSquares {
     this.trialResiduals = new Float64Array(rows);
     this.jacobian = new Float64Array(rows * p);
     this.trialJacobian = new Float64Array(rows * p);
+    this.trial = new Float64Array(p);
+    this.normal = new Float64Array(p * p);
+    this.gradient = new Float64Array(p);
+    this.solver = new SymmetricSolver(p);
   }
 
-  /** @param tolerance step ÷ scale at which the fit has converged */
-  solve(start: Float64Array, scale: Float64Array, maxIterations = 50, tolerance = SMALLEST_STEP): LeastSquaresResult {
-    const { p, rows } = this;
-    let r = this.residuals;
-    let J = this.jacobian;
-    let r2 = this.trialResiduals;
-    let J2 = this.trialJacobian;
-    const parameters = Float64Array.from(start);
-    const trial = new Float64Array(p);
-    const normal = new Float64Array(p * p);
-    const gradient = new Float64Array(p);
-    this.model(parameters, r, J);
+  /** The minimum alone, for draws. @param tolerance step ÷ scale at which the fit has converged */
+  minimise(start: Float64Array, scale: Float64Array, maxIterations = 50, tolerance = SMALLEST_STEP): Minimum {
+    const { p, rows, trial, normal, gradient, solver } = this;
+    const parameters = new Float64Array(p);
+    parameters.set(start);
+    this.model(parameters, this.residuals, this.jacobian);
     let evaluations = 1;
-    let sum = sumOfSquares(r);
+    let sum = sumOfSquares(this.residuals);
     let damping = 0;
     let converged = false;
     let message = `not converged after ${maxIterations} iterations`;
@@ -60,25 +65,26 @@ export class LeastSquares {
         message = 'the model gave no finite value at the start';
         break;
       }
-      makeNormal(r, J, rows, p, normal, gradient);
+      makeNormal(this.residuals, this.jacobian, rows, p, normal, gradient);
       for (let i = 0; i < p; i++) normal[i * p + i] *= 1 + damping;
-      if (!solveSymmetric(normal, gradient, p)) {
+      if (!solver.factor(normal)) {
         message = 'the normal matrix is singular: the data do not determine every parameter';
         break;
       }
+      solver.solve(gradient);
       let largest = 0;
       for (let i = 0; i < p; i++) {
         trial[i] = parameters[i] - gradient[i];
         largest = Math.max(largest, Math.abs(gradient[i]) / scale[i]);
       }
-      this.model(trial, r2, J2);
+      this.model(trial, this.trialResiduals, this.trialJacobian);
       evaluations++;
-      const sum2 = sumOfSquares(r2);
+      const sum2 = sumOfSquares(this.trialResiduals);
       // A rise within rounding at a step already below tolerance is convergence, not failure.
       if (sum2 <= sum || (largest < tolerance && Number.isFinite(sum2))) {
         parameters.set(trial);
-        [r, r2] = [r2, r];
-        [J, J2] = [J2, J];
+        [this.residuals, this.trialResiduals] = [this.trialResiduals, this.residuals];
+        [this.jacobian, this.trialJacobian] = [this.trialJacobian, this.jacobian];
         sum = sum2;
         damping = damping < 1e-6 ? 0 : damping / 10;
         if (largest < tolerance) {
@@ -95,18 +101,20 @@ export class LeastSquares {
         damping = damping === 0 ? 1e-3 : damping * 10;
       }
     }
-    makeNormal(r, J, rows, p, normal, gradient);
-    const covariance = new Float64Array(normal);
-    const solved = solveSymmetric(covariance, gradient, p);
-    const variance = sum / Math.max(1, rows - p);
-    return {
-      parameters,
-      ...(solved && { covariance: covariance.map((v) => v * variance) }),
-      sumOfSquares: sum,
-      converged,
-      message,
-      evaluations,
-    };
+    return { parameters, sumOfSquares: sum, converged, message, evaluations };
+  }
+
+  /** The minimum with its covariance. */
+  solve(start: Float64Array, scale: Float64Array, maxIterations = 50, tolerance = SMALLEST_STEP): LeastSquaresResult {
+    const { p, rows, normal, gradient, solver } = this;
+    const minimum = this.minimise(start, scale, maxIterations, tolerance);
+    makeNormal(this.residuals, this.jacobian, rows, p, normal, gradient);
+    if (!solver.factor(normal)) return minimum;
+    const covariance = new Float64Array(p * p);
+    solver.invert(covariance);
+    const variance = minimum.sumOfSquares / Math.max(1, rows - p);
+    for (let i = 0; i < covariance.length; i++) covariance[i] *= variance;
+    return { ...minimum, covariance };
   }
 }
 
@@ -129,6 +137,7 @@ function makeNormal(
   for (let k = 0; k < rows; k++) {
     for (let i = 0; i < p; i++) {
       const v = J[k * p + i];
+      if (v === 0) continue;
       gradient[i] += v * r[k];
       for (let j = 0; j <= i; j++) normal[i * p + j] += v * J[k * p + j];
     }

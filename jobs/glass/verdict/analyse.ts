@@ -3,7 +3,7 @@ import { studentQuantile } from '../../numeric/distributions.ts';
 import { fitLine } from '../../numeric/line.ts';
 import type { Random } from '../../numeric/random.ts';
 import { bootstrapBend } from './bootstrap.ts';
-import { fitLaw, type LagMode, type LawData, type LawFit, type LawSettings } from './law-fit.ts';
+import { fitLaw, type LagMode, type LawData, type LawFit, LawProblem, type LawSettings } from './law-fit.ts';
 import { profileLimits } from './profile.ts';
 import { applyScatter, effectiveDegrees, estimateScatter, type Scatter } from './scatter.ts';
 
@@ -81,28 +81,35 @@ function withBend({ parameters }: LawFit, q: number): Float64Array {
 export const degreesLeft = (d: LawData, state = false): number =>
   d.n - 3 - d.instruments - (state ? d.instruments - 1 : 0);
 
+/** The law with a bend and free lags at the weights that its own scatter gives. */
+export interface SettledBend {
+  full: LawFit;
+  scatter: Scatter;
+  stateDiffers: boolean;
+  /** where other laws' fits begin: the straight line through all scans */
+  start: [number, number];
+}
+
 /**
- * The bend and its interval. Writes the weights it settles on into `d.variance`.
+ * Fits the bend with all lags free. Writes the weights it settles on into `d.variance`.
  * @param own K, error of each temperature from its own noise
- * @param random without it the interval is the linear one and there is no p value (second opinions)
+ * @param near parameters of such a fit on nearly the same temperatures: it then begins there and not from several starts
  * @returns undefined when the bent law cannot be fitted
  */
-export function analyseBend(
-  d: LawData,
-  own: Float64Array,
-  random: Random | undefined,
-  draws: number,
-): BendAnalysis | undefined {
+export function settleBend(d: LawData, own: Float64Array, near?: LawFit): SettledBend | undefined {
   for (let i = 0; i < d.n; i++) d.variance[i] = own[i] ** 2 + START_SCATTER_K ** 2;
   const start = startOf(d);
-  let full = fitFull(d, start);
+  let full = near
+    ? fitLaw(d, { bend: 'free', lags: modes(d, 'free'), state: false }, [near.lnK0, near.lnEnergy, near.q])
+    : fitFull(d, start);
   if (!full.converged) return undefined;
   let scatter = estimateScatter(d, own, full.residualK, full.leverage);
   const settle = (): void => {
+    const problem = new LawProblem(d, full.settings);
     for (let round = 0; round < ROUNDS; round++) {
       scatter = estimateScatter(d, own, full.residualK, full.leverage);
       applyScatter(d, own, scatter);
-      full = fitLaw(d, full.settings, full.parameters);
+      full = problem.fit(full.parameters);
     }
   };
   settle();
@@ -113,6 +120,30 @@ export function analyseBend(
     settle();
     if (!full.converged) return undefined;
   }
+  return { full, scatter, stateDiffers: state !== undefined, start };
+}
+
+/** The bend and its linear 99 % half width: a second opinion. */
+export function bendOf(d: LawData, { full, scatter }: SettledBend): { bend: number; halfWidth99: number } {
+  const span = spanOf(d, full);
+  const t = studentQuantile(CONFIDENCE, effectiveDegrees(d, full, 2, scatter.degrees));
+  return { bend: full.q * span, halfWidth99: t * standardErrorOf(full) * span };
+}
+
+const standardErrorOf = (full: LawFit): number => Math.sqrt(full.inverse?.[2 * full.layout.p + 2] ?? Number.NaN);
+
+/**
+ * The bend, its interval and the evidence beside it.
+ * @param own K, error of each temperature from its own noise
+ * @param random without it the interval is the linear one and there is no p value: too few scans for a decision
+ */
+export function analyseBend(
+  d: LawData,
+  own: Float64Array,
+  { full, scatter, stateDiffers, start }: SettledBend,
+  random: Random | undefined,
+  draws: number,
+): BendAnalysis {
   const near = [full.lnK0, full.lnEnergy, full.q];
   const refit = (bend: LawSettings['bend'], lags: LagMode) =>
     fitLaw(d, { bend, lags: modes(d, lags), state: false }, near);
@@ -120,13 +151,14 @@ export function analyseBend(
     A: bestOf(d, { bend: 0, lags: modes(d, 'calibrated'), state: false }, near, start),
     L: bestOf(d, { bend: 0, lags: modes(d, 'free'), state: false }, near, start),
     G: refit('free', 'calibrated'),
-    GL: state ? refit('free', 'free') : full,
+    GL: stateDiffers ? refit('free', 'free') : full,
   };
   const span = spanOf(d, full);
-  const se = Math.sqrt(full.inverse?.[2 * full.layout.p + 2] ?? Number.NaN);
+  const se = standardErrorOf(full);
   const degrees = effectiveDegrees(d, full, 2, scatter.degrees);
   const t = studentQuantile(CONFIDENCE, degrees);
-  const straight = state ? fitLaw(d, { ...full.settings, bend: 0 }, near) : laws.L;
+  const t95 = studentQuantile(0.975, degrees);
+  const straight = stateDiffers ? fitLaw(d, { ...full.settings, bend: 0 }, near) : laws.L;
   const observed = Math.sqrt(Math.max(0, straight.deviance - full.deviance));
   let limits: [number, number] = [full.q - t * se, full.q + t * se];
   let pValue = Number.NaN;
@@ -154,15 +186,15 @@ export function analyseBend(
     bend: full.q * span,
     lower99: Math.min(limits[0] * span, limits[1] * span),
     upper99: Math.max(limits[0] * span, limits[1] * span),
-    lower95: (full.q - studentQuantile(0.975, degrees) * inflation * se) * span,
-    upper95: (full.q + studentQuantile(0.975, degrees) * inflation * se) * span,
+    lower95: (full.q - t95 * inflation * se) * span,
+    upper95: (full.q + t95 * inflation * se) * span,
     inflation,
     standardError: se,
     degrees,
     halfWidth99: (Math.abs(limits[1] - limits[0]) / 2) * span,
     pValue,
-    degreesOfFreedom: degreesLeft(d, state !== undefined),
-    stateDiffers: state !== undefined,
+    degreesOfFreedom: degreesLeft(d, stateDiffers),
+    stateDiffers,
     lagBeyond: { straight: beyond(0, laws.L), bent: beyond('free', full) },
   };
 }

@@ -1,5 +1,5 @@
 import { studentQuantile } from '../../numeric/distributions.ts';
-import { solveSymmetric } from '../../numeric/linear-solve.ts';
+import { SymmetricSolver } from '../../numeric/linear-solve.ts';
 import type { Random } from '../../numeric/random.ts';
 import type { LawData, LawFit } from './law-fit.ts';
 import { estimateScatter } from './scatter.ts';
@@ -24,17 +24,23 @@ export function bootstrapBend(
 ): { pValue: number; inflation: number } {
   const { p, rows } = fit.layout;
   const sigma = d.variance.map(Math.sqrt);
-  // Derivatives in K for the scans; the priors' rows stay in units of their error.
-  const design = fit.jacobian.map((v, at) => {
-    const k = (at / p) | 0;
-    return k < d.n ? v * sigma[k] : v;
-  });
+  // Derivatives in K for the scans (the priors' rows stay in units of their error), the bend's column last: whitened by the normal matrix, the
+  // right-hand side then ends in the ratio of the bend to its standard error.
+  const design = new Float64Array(rows * p);
+  for (let k = 0; k < rows; k++) {
+    for (let a = 0; a < p; a++) {
+      const to = a < fit.layout.bend ? a : a === fit.layout.bend ? p - 1 : a - 1;
+      design[k * p + to] = fit.jacobian[k * p + a] * (k < d.n ? sigma[k] : 1);
+    }
+  }
   const y = new Float64Array(rows);
   const variance = new Float64Array(d.n);
   const residual = new Float64Array(d.n);
   const leverage = new Float64Array(d.n);
   const normal = new Float64Array(p * p);
-  const solution = new Float64Array(p);
+  const white = new Float64Array(p);
+  const row = new Float64Array(p);
+  const solver = new SymmetricSolver(p);
   const ratios = new Float64Array(draws);
   let atLeast = 0;
   for (let draw = 0; draw < draws; draw++) {
@@ -42,29 +48,27 @@ export function bootstrapBend(
     variance.set(d.variance);
     for (let round = 0; round <= ROUNDS; round++) {
       normal.fill(0);
-      solution.fill(0);
+      white.fill(0);
       for (let k = 0; k < rows; k++) {
         const w = k < d.n ? 1 / variance[k] : 1;
         for (let a = 0; a < p; a++) {
           const v = w * design[k * p + a];
           if (v === 0) continue;
-          solution[a] += v * y[k];
+          white[a] += v * y[k];
           for (let b = 0; b <= a; b++) normal[a * p + b] += v * design[k * p + b];
         }
       }
-      for (let a = 0; a < p; a++) for (let b = 0; b < a; b++) normal[b * p + a] = normal[a * p + b];
-      if (!solveSymmetric(normal, solution, p)) break;
+      if (!solver.factor(normal)) break;
+      solver.whiten(white);
       if (round === ROUNDS) break;
       for (let i = 0; i < d.n; i++) {
+        for (let a = 0; a < p; a++) row[a] = design[i * p + a];
+        solver.whiten(row);
         let fitted = 0;
         let h = 0;
         for (let a = 0; a < p; a++) {
-          const v = design[i * p + a];
-          if (v === 0) continue;
-          fitted += v * solution[a];
-          let inner = 0;
-          for (let b = 0; b < p; b++) inner += normal[a * p + b] * design[i * p + b];
-          h += v * inner;
+          fitted += row[a] * white[a];
+          h += row[a] * row[a];
         }
         residual[i] = y[i] - fitted;
         leverage[i] = Math.min(0.999, h / variance[i]);
@@ -72,7 +76,7 @@ export function bootstrapBend(
       const scatter = estimateScatter(d, own, residual, leverage);
       for (let i = 0; i < d.n; i++) variance[i] = own[i] ** 2 + scatter.varianceK2[d.instrument[i]];
     }
-    ratios[draw] = Math.abs(solution[2]) / Math.sqrt(normal[2 * p + 2]);
+    ratios[draw] = Math.abs(white[p - 1]);
     if (ratios[draw] >= observed) atLeast++;
   }
   ratios.sort();

@@ -28,6 +28,9 @@ const ZETA3 = 1.2020569031595942;
 /** An inverted bend lets ln K fall by so much only; nodes beyond are held at this part of the local energy. */
 const LEAST_PART = 0.05;
 
+/** Newton stops at a step of this part of T: what is left is its square. */
+const ENOUGH = 1e-5;
+
 /** ln β at T with its derivatives; made once, filled in place. */
 export interface ConditionValue {
   value: number;
@@ -123,7 +126,7 @@ export class Condition {
       this.evaluate(T, lnK0, lnEnergy, q, scale, out);
       const step = (lnRate - out.value) / out.byTemperature;
       T += Math.max(-0.1 * T, Math.min(0.1 * T, step));
-      if (!(Math.abs(step) > 1e-8 * T)) break;
+      if (!(Math.abs(step) > ENOUGH * T)) break;
     }
     return T;
   }

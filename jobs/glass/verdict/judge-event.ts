@@ -13,7 +13,7 @@ import { localEnergy } from '../../laws/bend.ts';
 import { createRandom } from '../../numeric/random.ts';
 import { median } from '../../numeric/statistics.ts';
 import { adviseScans } from './advice.ts';
-import { analyseBend, type BendAnalysis, degreesLeft } from './analyse.ts';
+import { analyseBend, type BendAnalysis, bendOf, degreesLeft, settleBend } from './analyse.ts';
 import { collectJudged, type JudgedEvent, lawData } from './collect.ts';
 import { type Decision, decide, LEAST_DEGREES, missingScans } from './decide.ts';
 import { explain, lagInWords, scansInWords } from './sentences.ts';
@@ -53,11 +53,12 @@ export function judgeEvent(
   let analysis: BendAnalysis | undefined;
   if (left >= 1) {
     // A first pass for n alone, which the condition of the centroid needs.
-    const first = analyseBend(data, own, undefined, 0);
+    const first = settleBend(data, own);
     if (first) {
-      judged.exponent = Math.min(6, Math.max(0.7, median(exponentsUnder(judged, first, first.full))));
+      judged.exponent = Math.min(6, Math.max(0.7, median(exponentsUnder(judged, data, first.full))));
       ({ data, own } = lawData(judged, what));
-      analysis = analyseBend(data, own, left >= LEAST_DEGREES ? random : undefined, input.draws);
+      const settled = settleBend(data, own, first.full);
+      if (settled) analysis = analyseBend(data, own, settled, left >= LEAST_DEGREES ? random : undefined, input.draws);
     }
   }
   const decision: Decision =
@@ -80,7 +81,7 @@ export function judgeEvent(
   const laws = analysis ? lawEvidence(analysis) : [];
   const row = makeRow(input.sample, judged, decision, analysis, shared, laws);
   row.decides_next = decidesNext(decision, advice?.deciding ?? []);
-  const otherOpinions = analysis && judged.hasCentroid ? secondOpinions(judged) : [];
+  const otherOpinions = analysis && judged.hasCentroid ? secondOpinions(judged, analysis) : [];
   if (analysis) flags.push(...judgeFlags(where, decision, analysis, lags, otherOpinions, judged));
   if (decision.reason === 'too-few-scans') {
     flags.push(
@@ -203,11 +204,11 @@ function lagEvidence(judged: JudgedEvent, a: BendAnalysis, { verdict }: Decision
   });
 }
 
-function secondOpinions(judged: JudgedEvent): EventVerdict['otherOpinions'] {
+function secondOpinions(judged: JudgedEvent, { full }: BendAnalysis): EventVerdict['otherOpinions'] {
   return (['peak', 'half'] as const).flatMap((what) => {
     const { data, own } = lawData(judged, what);
-    const a = analyseBend(data, own, undefined, 0);
-    return a ? [{ of: what, bend: a.bend, halfWidth99: a.halfWidth99 }] : [];
+    const settled = settleBend(data, own, full);
+    return settled ? [{ of: what, ...bendOf(data, settled) }] : [];
   });
 }
 

@@ -1,6 +1,6 @@
 import type { BentScale } from '../../laws/bend.ts';
-import { LeastSquares } from '../../numeric/least-squares.ts';
-import { solveSymmetric } from '../../numeric/linear-solve.ts';
+import { LeastSquares, type Minimum } from '../../numeric/least-squares.ts';
+import { SymmetricSolver } from '../../numeric/linear-solve.ts';
 import type { Condition, ConditionValue } from './condition.ts';
 
 /** One characteristic temperature of each scan of an event, all instruments. */
@@ -68,6 +68,10 @@ export interface Layout {
 
 /** |q| beyond this is no bend of one process: a factor e⁶ in E over the measured span. */
 const LARGEST_BEND = 3;
+/** A draw has converged when its last step was this small against the scale below: the one after would be its square. */
+const DRAW_STEP = 1e-4;
+/** A temperature is carried on along its derivatives over this part of itself at most. */
+const FAR = 0.05;
 const SCALE = { lnK: 1, lnEnergy: 0.1, bend: 0.1, offset: 1, lag: 1 };
 
 export function layoutOf(d: LawData, s: LawSettings): Layout {
@@ -90,26 +94,80 @@ export function layoutOf(d: LawData, s: LawSettings): Layout {
 /**
  * Least squares of T_i = T(β_i; ln K0, E0, q) + a_j + τ_j β_i, T(β) from the condition of the characteristic temperature, weighted by each
  * temperature's variance; what calibration knows of a_j (and of τ_j where its mode is `calibrated`) enters as extra residuals.
- * @param start parameters of a neighbouring fit with the same layout, or (ln K0, ln E0, q) alone
- * @param priorDraws standard normal deviates added to the prior residuals (Monte Carlo), in their order
+ * Made once for data and settings, with all buffers; the weights are those of `d.variance` when a fit begins.
  */
-export function fitLaw(
-  d: LawData,
-  s: LawSettings,
-  start: ArrayLike<number>,
-  temperatureK: Float64Array = d.temperatureK,
-  priorDraws?: Float64Array,
-): LawFit {
-  const layout = layoutOf(d, s);
-  const { p, rows } = layout;
-  const fixed = s.bend === 'free' ? 0 : s.bend;
-  const at: ConditionValue = { value: 0, byTemperature: 0, byLogEnergy: 0, byBend: 0 };
-  const lnRate = d.rate.map(Math.log);
-  // Each solution of the condition starts from the one before.
-  const last = Float64Array.from(temperatureK);
-  const root = d.variance.map((v) => 1 / Math.sqrt(v));
-  const model = (x: Float64Array, r: Float64Array, J: Float64Array): void => {
-    const q = layout.bend >= 0 ? x[2] : fixed;
+export class LawProblem {
+  readonly layout: Layout;
+  private readonly solver: LeastSquares;
+  private readonly scale: Float64Array;
+  private readonly lnRate: Float64Array;
+  /** rate ÷ the instrument's fastest */
+  private readonly share: Float64Array;
+  private readonly root: Float64Array;
+  private readonly at: ConditionValue = { value: 0, byTemperature: 0, byLogEnergy: 0, byBend: 0 };
+  /** The last solution of each scan's condition and its derivatives by (ln K, ln E0, q): where the next one is looked for. */
+  private readonly solvedK: Float64Array;
+  private readonly slopes: Float64Array;
+  private readonly solvedAt: Float64Array;
+  private temperatureK: Float64Array;
+  private priorDraws: Float64Array | undefined;
+  private bend: number;
+
+  constructor(
+    private readonly d: LawData,
+    private readonly settings: LawSettings,
+  ) {
+    this.layout = layoutOf(d, settings);
+    const { p, rows } = this.layout;
+    this.solver = new LeastSquares(rows, p, (x, r, J) => this.evaluate(x, r, J));
+    this.scale = new Float64Array(p).fill(SCALE.offset);
+    this.scale[0] = SCALE.lnK;
+    this.scale[1] = SCALE.lnEnergy;
+    if (this.layout.bend >= 0) this.scale[2] = SCALE.bend;
+    this.bend = settings.bend === 'free' ? 0 : settings.bend;
+    this.lnRate = d.rate.map(Math.log);
+    this.share = d.rate.map((rate, i) => rate / d.topRate[d.instrument[i]]);
+    this.root = new Float64Array(d.n);
+    this.solvedK = new Float64Array(d.n);
+    this.slopes = new Float64Array(3 * d.n);
+    this.solvedAt = new Float64Array(3 * d.n);
+    this.temperatureK = d.temperatureK;
+  }
+
+  private begin(start: ArrayLike<number>, temperatureK: Float64Array, priorDraws: Float64Array | undefined) {
+    const { d, root, layout } = this;
+    this.temperatureK = temperatureK;
+    this.priorDraws = priorDraws;
+    for (let i = 0; i < d.n; i++) root[i] = 1 / Math.sqrt(d.variance[i]);
+    const from = new Float64Array(layout.p);
+    if (start.length === layout.p) from.set(start);
+    else for (let k = 0; k < (layout.bend >= 0 ? 3 : 2); k++) from[k] = start[k];
+    return from;
+  }
+
+  /** @param start parameters of a neighbouring fit with the same layout, or (ln K0, ln E0, q) alone */
+  fit(start: ArrayLike<number>, temperatureK: Float64Array = this.d.temperatureK): LawFit {
+    const from = this.begin(start, temperatureK, undefined);
+    this.solvedK.set(temperatureK);
+    this.slopes.fill(0);
+    const minimum = this.solver.minimise(from, this.scale, 60, 1e-6);
+    return this.describe(minimum);
+  }
+
+  /**
+   * The parameters alone, near a fit that came before: for draws.
+   * @param bend holds q at it where the settings hold it   @param priorDraws standard normal deviates added to the prior residuals, in order
+   */
+  draw(start: Float64Array, temperatureK: Float64Array, priorDraws: Float64Array, bend?: number): Minimum {
+    const from = this.begin(start, temperatureK, priorDraws);
+    if (bend !== undefined) this.bend = bend;
+    return this.solver.minimise(from, this.scale, 30, DRAW_STEP);
+  }
+
+  private evaluate(x: Float64Array, r: Float64Array, J: Float64Array): void {
+    const { d, layout, at, settings } = this;
+    const { p } = layout;
+    const q = layout.bend >= 0 ? x[2] : this.bend;
     if (!(Math.abs(q) < LARGEST_BEND) || !(Math.abs(x[1]) < 20)) {
       r.fill(Number.POSITIVE_INFINITY);
       return;
@@ -119,69 +177,90 @@ export function fitLaw(
       const j = d.instrument[i];
       const stateAt = layout.state >= 0 && j > 0 ? layout.state + j - 1 : -1;
       const lnK0 = x[0] + (stateAt >= 0 ? x[stateAt] : 0);
-      const T = d.condition.solve(lnRate[i], last[i], lnK0, x[1], q, d.scale, at);
-      if (T > 0) last[i] = T;
-      const w = root[i];
+      const T = this.solveScan(i, lnK0, x[1], q);
       const lagAt = layout.lag[j];
-      const share = d.rate[i] / d.topRate[j];
-      r[i] = w * (T + x[layout.offset + j] + (lagAt >= 0 ? x[lagAt] * share : 0) - temperatureK[i]);
+      const w = this.root[i];
+      r[i] = w * (T + x[layout.offset + j] + (lagAt >= 0 ? x[lagAt] * this.share[i] : 0) - this.temperatureK[i]);
       const per = -w / at.byTemperature;
       const row = i * p;
       J[row] = per;
       J[row + 1] = per * at.byLogEnergy;
       if (layout.bend >= 0) J[row + 2] = per * at.byBend;
       J[row + layout.offset + j] = w;
-      if (lagAt >= 0) J[row + lagAt] = w * share;
+      if (lagAt >= 0) J[row + lagAt] = w * this.share[i];
       if (stateAt >= 0) J[row + stateAt] = per;
     }
     let row = d.n;
+    const prior = (parameter: number, se: number) => {
+      r[row] = x[parameter] / se - (this.priorDraws ? this.priorDraws[row - d.n] : 0);
+      J[row * p + parameter] = 1 / se;
+      row++;
+    };
     for (let j = 0; j < d.instruments; j++) {
-      const prior = (parameter: number, se: number) => {
-        r[row] = x[parameter] / se - (priorDraws ? priorDraws[row - d.n] : 0);
-        J[row * p + parameter] = 1 / se;
-        row++;
-      };
       prior(layout.offset + j, d.offsetSeK[j]);
-      if (layout.lag[j] >= 0 && s.lags[j] === 'calibrated') prior(layout.lag[j], d.lagSeS[j] * d.topRate[j]);
+      if (layout.lag[j] >= 0 && settings.lags[j] === 'calibrated') prior(layout.lag[j], d.lagSeS[j] * d.topRate[j]);
     }
-  };
-  const from = new Float64Array(p);
-  if (start.length === p) from.set(start);
-  else for (let k = 0; k < (layout.bend >= 0 ? 3 : 2); k++) from[k] = start[k];
-  const scale = new Float64Array(p).fill(SCALE.offset);
-  scale[0] = SCALE.lnK;
-  scale[1] = SCALE.lnEnergy;
-  if (layout.bend >= 0) scale[2] = SCALE.bend;
-  const fit = new LeastSquares(rows, p, model).solve(from, scale, 60, 1e-6);
-  const x = fit.parameters;
-  const residuals = new Float64Array(rows);
-  const jacobian = new Float64Array(rows * p);
-  model(x, residuals, jacobian);
-  const inverse = invertNormal(jacobian, rows, p);
-  return {
-    settings: s,
-    lnK0: x[0],
-    lnEnergy: x[1],
-    q: layout.bend >= 0 ? x[2] : fixed,
-    offsetK: x.slice(layout.offset, layout.offset + d.instruments),
-    lagS: Float64Array.from(layout.lag, (at, j) => (at >= 0 ? x[at] / d.topRate[j] : 0)),
-    stateLnK: Float64Array.from({ length: d.instruments }, (_, j) =>
-      layout.state >= 0 && j > 0 ? x[layout.state + j - 1] : 0,
-    ),
-    deviance: fit.sumOfSquares,
-    converged: fit.converged && inverse !== undefined,
-    message: fit.message,
-    evaluations: fit.evaluations,
-    parameters: x,
-    layout,
-    jacobian,
-    inverse,
-    residualK: Float64Array.from({ length: d.n }, (_, i) => -residuals[i] / root[i]),
-    leverage: Float64Array.from({ length: d.n }, (_, i) =>
-      inverse ? Math.min(0.999, quadratic(jacobian, i, inverse, p)) : 0,
-    ),
-  };
+  }
+
+  /** Temperature of scan i under the law, from the last one carried on along its derivatives: mostly one evaluation is enough. */
+  private solveScan(i: number, lnK0: number, lnEnergy: number, q: number): number {
+    const { d, at, slopes, solvedAt, solvedK } = this;
+    const k = 3 * i;
+    const start =
+      solvedK[i] +
+      slopes[k] * (lnK0 - solvedAt[k]) +
+      slopes[k + 1] * (lnEnergy - solvedAt[k + 1]) +
+      slopes[k + 2] * (q - solvedAt[k + 2]);
+    const from = Math.abs(start - solvedK[i]) < FAR * solvedK[i] ? start : solvedK[i];
+    const T = d.condition.solve(this.lnRate[i], from, lnK0, lnEnergy, q, d.scale, at);
+    if (T > 0) {
+      solvedK[i] = T;
+      slopes[k] = -1 / at.byTemperature;
+      slopes[k + 1] = slopes[k] * at.byLogEnergy;
+      slopes[k + 2] = slopes[k] * at.byBend;
+      solvedAt[k] = lnK0;
+      solvedAt[k + 1] = lnEnergy;
+      solvedAt[k + 2] = q;
+    }
+    return T;
+  }
+
+  private describe(minimum: Minimum): LawFit {
+    const { d, layout, root, settings } = this;
+    const { p, rows } = layout;
+    const x = minimum.parameters;
+    const residuals = new Float64Array(rows);
+    const jacobian = new Float64Array(rows * p);
+    this.evaluate(x, residuals, jacobian);
+    const inverse = invertNormal(jacobian, rows, p);
+    const leverage = new Float64Array(d.n);
+    if (inverse) for (let i = 0; i < d.n; i++) leverage[i] = Math.min(0.999, quadratic(jacobian, i, inverse, p));
+    return {
+      settings,
+      lnK0: x[0],
+      lnEnergy: x[1],
+      q: layout.bend >= 0 ? x[2] : this.bend,
+      offsetK: x.slice(layout.offset, layout.offset + d.instruments),
+      lagS: Float64Array.from(layout.lag, (at, j) => (at >= 0 ? x[at] / d.topRate[j] : 0)),
+      stateLnK: Float64Array.from({ length: d.instruments }, (_, j) =>
+        layout.state >= 0 && j > 0 ? x[layout.state + j - 1] : 0,
+      ),
+      deviance: minimum.sumOfSquares,
+      converged: minimum.converged && inverse !== undefined,
+      message: minimum.message,
+      evaluations: minimum.evaluations,
+      parameters: x,
+      layout,
+      jacobian,
+      inverse,
+      residualK: residuals.subarray(0, d.n).map((r, i) => -r / root[i]),
+      leverage,
+    };
+  }
 }
+
+/** One fit; see LawProblem. */
+export const fitLaw = (d: LawData, s: LawSettings, start: ArrayLike<number>): LawFit => new LawProblem(d, s).fit(start);
 
 /** (JᵀJ)⁻¹, undefined where the rows do not determine every parameter. */
 export function invertNormal(jacobian: Float64Array, rows: number, p: number): Float64Array | undefined {
@@ -189,10 +268,13 @@ export function invertNormal(jacobian: Float64Array, rows: number, p: number): F
   for (let k = 0; k < rows; k++) {
     for (let a = 0; a < p; a++) {
       const v = jacobian[k * p + a];
-      if (v !== 0) for (let b = 0; b < p; b++) normal[a * p + b] += v * jacobian[k * p + b];
+      if (v !== 0) for (let b = 0; b <= a; b++) normal[a * p + b] += v * jacobian[k * p + b];
     }
   }
-  return solveSymmetric(normal, new Float64Array(p), p) ? normal : undefined;
+  const solver = new SymmetricSolver(p);
+  if (!solver.factor(normal)) return undefined;
+  solver.invert(normal);
+  return normal;
 }
 
 /** J_k C J_kᵀ */

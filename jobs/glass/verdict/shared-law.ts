@@ -7,7 +7,7 @@ import { mean, median } from '../../numeric/statistics.ts';
 import { type BendAnalysis, trueLimits } from './analyse.ts';
 import { exponentOfCurve, exponentOfWidth, type JudgedEvent } from './collect.ts';
 import { Condition, type ConditionValue } from './condition.ts';
-import { fitLaw, type LawData, type LawFit, type LawSettings } from './law-fit.ts';
+import { type LawData, type LawFit, LawProblem, type LawSettings } from './law-fit.ts';
 import { effectiveDegrees } from './scatter.ts';
 
 export interface SharedFit {
@@ -39,11 +39,12 @@ export function fitSharedLaw(
 ): SharedFit {
   const settings = settingsOf(a, verdict);
   const d = widenLags(a, settings);
-  const fit = fitLaw(d, settings, [a.full.lnK0, a.full.lnEnergy, a.full.q]);
+  const problem = new LawProblem(d, settings);
+  const fit = problem.fit([a.full.lnK0, a.full.lnEnergy, a.full.q]);
   const trueK = Float64Array.from({ length: d.n }, (_, i) =>
     materialK(d.temperatureK[i] - fit.residualK[i], fit, d, i),
   );
-  const exponents = exponentsUnder(judged, a, fit);
+  const exponents = exponentsUnder(judged, d, fit);
   const exponent = median(exponents);
   const { low, high } = trueLimits(d, fit);
   const drawn: SharedLawDraws = {
@@ -63,12 +64,11 @@ export function fitSharedLaw(
     resample(a, fit, random, T);
     for (let i = 0; i < priors.length; i++) priors[i] = random.normal();
     for (let i = 0; i < d.n; i++) pick[i] = exponents[random.integer(d.n)];
-    const f = fitLaw(d, settings, fit.parameters, T, priors);
-    const ok = f.converged;
-    const wide = (drawnValue: number, value: number) => value + (ok ? stretch * (drawnValue - value) : 0);
-    drawn.lnRateAtMiddle[k] = wide(f.lnK0, fit.lnK0);
-    drawn.energyJPerMol[k] = Math.exp(wide(f.lnEnergy, fit.lnEnergy));
-    drawn.bend[k] = wide(f.q, fit.q);
+    const { parameters: x, converged } = problem.draw(fit.parameters, T, priors);
+    const wide = (drawnValue: number, value: number) => value + (converged ? stretch * (drawnValue - value) : 0);
+    drawn.lnRateAtMiddle[k] = wide(x[0], fit.lnK0);
+    drawn.energyJPerMol[k] = Math.exp(wide(x[1], fit.lnEnergy));
+    drawn.bend[k] = fit.layout.bend >= 0 ? wide(x[2], fit.q) : fit.q;
     drawn.avramiExponent[k] = mean(pick);
   }
   return {
@@ -139,7 +139,7 @@ const materialK = (T: number, fit: LawFit, d: LawData, i: number): number =>
   T - fit.offsetK[d.instrument[i]] - fit.lagS[d.instrument[i]] * d.rate[i];
 
 /** n a scan under a fitted law: from its curve, or from its width where it has no curve. */
-export function exponentsUnder(judged: JudgedEvent, { data: d }: BendAnalysis, fit: LawFit): Float64Array {
+export function exponentsUnder(judged: JudgedEvent, d: LawData, fit: LawFit): Float64Array {
   const half = new Condition('half', 1);
   const at: ConditionValue = { value: 0, byTemperature: 0, byLogEnergy: 0, byBend: 0 };
   return Float64Array.from(judged.scans, (scan, i) => {
