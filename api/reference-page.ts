@@ -16,17 +16,25 @@ interface Schema {
   required?: string[];
   anyOf?: Schema[];
 }
-interface Operation {
+interface Media {
+  schema?: Schema;
+  example?: unknown;
+  examples?: Record<string, { value: unknown }>;
+}
+type Content = Record<string, Media>;
+export interface Operation {
+  operationId?: string;
   summary?: string;
   description?: string;
   parameters?: { name: string; in: string; required?: boolean; schema?: Schema; description?: string }[];
-  requestBody?: { content: Record<string, { schema?: Schema }> };
-  responses: Record<string, { description: string; content?: Record<string, { schema?: Schema }> }>;
+  requestBody?: { content: Content };
+  responses: Record<string, { description: string; content?: Content }>;
+  security?: Record<string, string[]>[];
 }
 export interface ApiDocument {
   info: { title: string; version: string; description?: string };
   paths?: Record<string, Record<string, Operation>>;
-  components?: { schemas?: Record<string, Schema> };
+  components?: { schemas?: Record<string, Schema>; securitySchemes?: Record<string, object> };
 }
 
 export const REFERENCE_STYLE = `
@@ -41,6 +49,7 @@ th,td{text-align:left;vertical-align:top;padding:.2rem .8rem .2rem 0;border-bott
 th:first-child,td:first-child{width:11rem}
 th:nth-child(2):not(:last-child),td:nth-child(2):not(:last-child){width:14rem}
 nav a{margin-right:1rem}
+pre{overflow-x:auto;font-size:.85em;background:#8882;padding:.5rem}
 `;
 
 const escapeText = (text: string): string =>
@@ -73,10 +82,32 @@ function wordsOf(schema: Schema | undefined, depth = 0): string {
   return escapeText(`${type}${schema.format ? ` (${schema.format})` : ''}${length}${range}${fallback}`);
 }
 
-const bodyRows = (content: Record<string, { schema?: Schema }> | undefined): string =>
+const bodyRows = (content: Content | undefined): string =>
   Object.entries(content ?? {})
     .map(([type, { schema }]) => `<code>${escapeText(type)}</code> ${wordsOf(schema)}`)
     .join('<br>');
+
+/** The example of a body, as text to copy. */
+const exampleOf = (content: Content | undefined): string =>
+  Object.values(content ?? {})
+    .filter(({ example }) => example !== undefined)
+    .map(
+      ({ example }) =>
+        `<pre>${escapeText(typeof example === 'string' ? example : JSON.stringify(example, null, 2))}</pre>`,
+    )
+    .join('');
+
+const isProblem = (status: string): boolean => Number(status) >= 400;
+
+/** Codes of the problems that an operation may answer with. */
+const refusalsOf = (responses: Operation['responses']): string =>
+  Object.entries(responses)
+    .filter(([status]) => isProblem(status))
+    .map(([status, { content }]) => {
+      const codes = Object.keys(Object.values(content ?? {})[0]?.examples ?? {});
+      return `${status} ${codes.map((code) => `<a href="#${code}">${code}</a>`).join(', ')}`;
+    })
+    .join('; ');
 
 function operationSection(path: string, method: string, operation: Operation): string {
   const parameters = (operation.parameters ?? [])
@@ -86,17 +117,22 @@ function operationSection(path: string, method: string, operation: Operation): s
     )
     .join('');
   const answers = Object.entries(operation.responses)
-    .filter(([status]) => status !== 'default')
+    .filter(([status]) => !isProblem(status))
     .map(
       ([status, r]) =>
         `<tr><td>${status}</td><td>${escapeText(r.description)}</td><td>${bodyRows(r.content)}</td></tr>`,
     )
     .join('');
-  return `<section><h3><span class="method">${method.toUpperCase()}</span> <code>${escapeText(path)}</code></h3>
+  return `<section id="${operation.operationId}"><h3><span class="method">${method.toUpperCase()}</span> <code>${escapeText(path)}</code></h3>
 <p>${proseOf(operation.summary ?? '')} ${proseOf(operation.description ?? '')}</p>
 ${parameters ? `<table><tr><th>parameter</th><th>in</th><th>takes</th></tr>${parameters}</table>` : ''}
 ${operation.requestBody ? `<p>Body: ${bodyRows(operation.requestBody.content)}</p>` : ''}
-<table><tr><th>answer</th><th></th><th></th></tr>${answers}</table></section>`;
+${exampleOf(operation.requestBody?.content)}
+<table><tr><th>answer</th><th></th><th></th></tr>${answers}</table>
+${Object.values(operation.responses)
+  .map(({ content }) => exampleOf(content))
+  .join('')}
+<p>Refused with: ${refusalsOf(operation.responses)}.</p></section>`;
 }
 
 /** The readable reference: one page without script or network, from the same document that programs read. */

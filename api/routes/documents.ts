@@ -1,12 +1,10 @@
 import { createRoute, z } from '@hono/zod-openapi';
 import type { Observer, Ports } from '../../jobs/ports/index.ts';
 import { checkStores, jobFigures } from '../../jobs/store/index.ts';
+import { describeApi } from '../document.ts';
 import { type ApiApp, answersOf, bodyOf, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
 import { Problem } from '../problems.ts';
-import { type ApiDocument, REFERENCE_STYLE, renderReference } from '../reference-page.ts';
-
-const DESCRIPTION =
-  'Crystallisation kinetics from heating scans. JSON with the column names of the result files as keys; missing is null. Lists are {items, next}. Errors are problems (RFC 9457). Unknown query parameters and body fields are refused. Result routes carry an ETag.';
+import { REFERENCE_STYLE, renderReference } from '../reference-page.ts';
 
 const openapiRoute = createRoute({
   method: 'get',
@@ -62,14 +60,9 @@ async function referencePolicy(): Promise<string> {
 }
 
 export function addDocumentRoutes(app: ApiApp, ports: Ports, observer?: Observer): void {
-  const document = () =>
-    app.getOpenAPI31Document({
-      openapi: '3.1.0',
-      info: { title: 'ratespan', version: '1', description: DESCRIPTION },
-    });
-  app.openapi(openapiRoute, (c) => c.json(document() as object, 200));
+  app.openapi(openapiRoute, (c) => c.json(describeApi(app) as object, 200));
   app.openapi(referenceRoute, async (c) =>
-    c.html(renderReference(document() as unknown as ApiDocument), 200, {
+    c.html(renderReference(describeApi(app)), 200, {
       'content-security-policy': await referencePolicy(),
     }),
   );

@@ -37,7 +37,7 @@ export const ROW_SHAPES = {
     sha256: text,
     sample: maybeText,
     instrument: maybeText,
-    role: z.enum(ROLES),
+    role: z.enum(ROLES).nullable(),
     event: maybeCount,
     status: z.enum(SCAN_STATES),
     reason: maybeText,

@@ -1,8 +1,11 @@
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { createApp } from '../../api/app.ts';
+import { EXAMPLES } from '../../api/examples.ts';
 import { PROBLEMS } from '../../api/problems.ts';
 import { ROW_SHAPES } from '../../api/shapes/rows.ts';
 import { RESULT_TABLES, type ResultTable } from '../../schema/wire/result-tables.ts';
+import { createShapeCheck } from './document-shapes.ts';
+import { operationsOf } from './draw-request.ts';
 import { type Body, type Harness, openHarness } from './harness.ts';
 
 let api: Harness;
@@ -25,16 +28,50 @@ test('the document lists exactly the routes that exist', async () => {
   expect(listed.length).toBeGreaterThan(25);
 });
 
-test('every route documents its query, its path and the shape of a problem', async () => {
+test('every route documents its name, query, path, and each problem in one shape with an example', async () => {
   const { body } = await api.get('/v1/openapi.json');
-  for (const [path, methods] of Object.entries(body.paths as Record<string, Record<string, Body>>))
-    for (const operation of Object.values(methods)) {
-      expect(operation.summary, path).toMatch(/\.$/);
-      expect(operation.responses.default.content).toHaveProperty(['application/problem+json']);
-      const named = [...path.matchAll(/\{(\w+)\}/g)].map((m) => m[1]);
-      const inPath = (operation.parameters ?? []).filter((p: Body) => p.in === 'path').map((p: Body) => p.name);
-      expect(inPath).toEqual(named);
+  const breach = createShapeCheck(body);
+  const names: string[] = [];
+  for (const { method, route, operation } of operationsOf(body)) {
+    const where = `${method} ${route}`;
+    names.push(operation.operationId);
+    expect(operation.summary, where).toMatch(/\.$/);
+    const named = [...route.matchAll(/\{(\w+)\}/g)].map((m) => m[1]);
+    const inPath = operation.parameters.filter((p: Body) => p.in === 'path').map((p: Body) => p.name);
+    expect(inPath).toEqual(named);
+    const refusals = Object.entries<Body>(operation.responses).filter(([status]) => Number(status) >= 400);
+    expect(refusals.length, where).toBeGreaterThan(2);
+    for (const [status, { content }] of refusals) {
+      const { schema, examples } = content['application/problem+json'];
+      expect(schema).toEqual({ $ref: '#/components/schemas/Problem' });
+      for (const [code, { value }] of Object.entries<Body>(examples)) {
+        expect(breach(schema, value), `${where} ${code}`).toBeUndefined();
+        expect([value.type, String(value.status)]).toEqual([`/v1/reference#${code}`, status]);
+      }
     }
+  }
+  for (const name of names) expect(name).toMatch(/^[a-z]+[A-Za-z]*$/);
+  expect(new Set(names).size).toBe(names.length);
+});
+
+test('every JSON body and answer has an example in its shape, and no example lacks its route', async () => {
+  const { body } = await api.get('/v1/openapi.json');
+  const breach = createShapeCheck(body);
+  const operations = operationsOf(body);
+  for (const { method, route, operation } of operations) {
+    const bodies = [
+      operation.requestBody?.content['application/json'],
+      ...Object.entries<Body>(operation.responses)
+        .filter(([status]) => Number(status) < 400)
+        .map(([, answer]) => answer.content?.['application/json']),
+    ];
+    for (const media of bodies.filter((m) => m !== undefined)) {
+      expect(media.example, `${method} ${route}`).toBeDefined();
+      if (route !== '/v1/openapi.json')
+        expect(breach(media.schema, media.example), `${method} ${route}`).toBeUndefined();
+    }
+  }
+  expect(Object.keys(EXAMPLES).sort()).toEqual(operations.map(({ method, route }) => `${method} ${route}`).sort());
 });
 
 test.each(Object.keys(RESULT_TABLES) as ResultTable[])('rows of %s have the columns of the file, in order', (table) => {

@@ -204,7 +204,7 @@ function judge({ sample, scans, instruments, facts, ranges, seed }: JudgeInput):
     rate_max_K_per_s: Math.max(...rates),
     decides_next: '',
   };
-  return { verdicts: [row], events: [], parameters: [], sharedLaws: [], flags: [] };
+  return { verdicts: scans.length > 0 ? [row] : [], events: [], parameters: [], sharedLaws: [], flags: [] };
 }
 
 function forecast({ sample, judged, goals, programmes, instruments }: SampleForecastInput): SampleForecastResult {

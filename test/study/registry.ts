@@ -9,6 +9,7 @@ import { largeScanStudy } from './large-scan.ts';
 import { mutatedFilesStudy } from './mutated-files.ts';
 import { crashStudy, serverlessStudy, soakStudy } from './operation.ts';
 import { reductionStudy } from './reduction.ts';
+import { requestsStudy } from './requests.ts';
 import { roundTripStudy } from './round-trip.ts';
 import { standardsStudy } from './standards.ts';
 import { twoEventsStudy } from './two-events.ts';
@@ -54,6 +55,10 @@ export const STUDIES: Record<string, { about: string; run: Study }> = {
   serverless: {
     about: 'the demo campaign through the real serverless runtime beside Node; memory, CPU and time a step',
     run: serverlessStudy,
+  },
+  requests: {
+    about: 'random requests of every role, drawn from the OpenAPI document, against what it says of each answer',
+    run: requestsStudy,
   },
   reduction: {
     about: 'single simulated scans: error of Tp, T(α) and ΔH against noise, drift and points',
