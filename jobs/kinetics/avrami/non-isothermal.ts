@@ -188,20 +188,31 @@ export class JmakFit {
 
   /** One pass over the points: the sum of squares (infinite outside the model's range) and the sums that the next step needs. */
   private accumulate(p: Float64Array, shifts: Float64Array): number {
-    const [energy, lnK0, n] = p;
+    const energy = p[0];
+    const lnK0 = p[1];
+    const n = p[2];
     if (!(energy > 0) || !(n > 0.05) || n > 50) return Number.POSITIVE_INFINITY;
     const { lnI, byEnergy, perKelvin, border, normal } = this;
     this.cumulative(energy, lnI, byEnergy);
     let curveSquares = 0;
     let shiftSquares = 0;
-    let [n00, n01, n02, n11, n12, n22] = [0, 0, 0, 0, 0, 0];
-    let [b0, b1, b2] = [0, 0, 0];
+    let n00 = 0;
+    let n01 = 0;
+    let n02 = 0;
+    let n11 = 0;
+    let n12 = 0;
+    let n22 = 0;
+    let b0 = 0;
+    let b1 = 0;
+    let b2 = 0;
     for (let i = 0; i < shifts.length; i++) {
       const shift = shifts[i];
       const prior = CURVE_SIGMA / this.sigmaK[i];
       let gg = prior * prior;
       let gr = prior * prior * shift;
-      let [g0, g1, g2] = [0, 0, 0];
+      let g0 = 0;
+      let g1 = 0;
+      let g2 = 0;
       shiftSquares += gr * shift;
       const from = i * CONVERSION_COUNT;
       for (let k = 0; k < CONVERSION_COUNT; k++) {
