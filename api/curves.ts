@@ -15,7 +15,7 @@ export interface ReducedSampleScan {
 const TEMPERATURE = { quantity: 'temperature', unit: 'K' };
 const CONVERSION = { quantity: 'conversion', unit: '1' };
 
-/** Axes of each kind; a thermogram's unit depends on whether the masses are known, that of growth on whether a growth rate is. */
+/** Axes of each kind; a thermogram's unit is that of the file, which each series tells; that of growth on whether a growth rate is. */
 export const CURVE_AXES: Record<CurveKind, Pick<Curves, 'x' | 'y'>> = {
   thermogram: { x: TEMPERATURE, y: { quantity: 'heat flow, exothermic up', unit: 'W or W/kg' } },
   baseline: { x: TEMPERATURE, y: { quantity: 'baseline of the heat flow, exothermic up', unit: 'W or W/kg' } },
@@ -32,15 +32,25 @@ export const CURVE_AXES: Record<CurveKind, Pick<Curves, 'x' | 'y'>> = {
 
 /** Heat flow of each scan as it was analysed, or the baseline under its event: not a number elsewhere, so left out there. */
 export function traceSeries(scans: ReducedSampleScan[], column: 'heatFlow' | 'baseline'): CurveSeries[] {
-  return scans.map(({ id, file, instrument, reduced: { trace } }) => {
+  return scans.map(({ id, file, instrument, reduced: { trace, heatFlowUnit } }) => {
     const x: number[] = [];
     const y: number[] = [];
+    const timeS: number[] = [];
     trace[column].forEach((value, i) => {
       if (!Number.isFinite(value)) return;
       x.push(trace.temperatureK[i]);
       y.push(value);
+      if (trace.timeS) timeS.push(trace.timeS[i]);
     });
-    return { name: file, instrument, scan_id: id, x, y };
+    return {
+      name: file,
+      instrument,
+      scan_id: id,
+      x,
+      y,
+      unit: heatFlowUnit,
+      ...(trace.timeS && { time_s: timeS }),
+    };
   });
 }
 

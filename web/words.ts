@@ -92,6 +92,7 @@ const STEP_NAMES: Record<string, string> = {
   'calibrate-instrument': 'calibrate an instrument',
   'fit-sample': 'fit a sample',
   'judge-curvature': 'judge the bend',
+  'forecast-sample': 'forecast a sample',
   'plan-campaign': 'plan the campaign',
 };
 

@@ -27,6 +27,10 @@ export const seriesShape = z.object({
   y: points,
   lower: points.optional(),
   upper: points.optional(),
+  /** Of y, where it may differ between series */
+  unit: z.string().optional(),
+  /** s from the start of a hold, whose temperature hardly changes */
+  time_s: points.optional(),
 });
 
 export const CurvesShape = z

@@ -49,7 +49,16 @@ export function reduceScan(scan: ReadScan, input: ReduceInput): ReduceOutcome {
     const s = chosen.candidates[0];
     const trace = makeTrace(scan.timeS, scan.temperatureK, scan.heatFlow, s.from, s.to, 0);
     const standard = input.role === 'standard' ? standardOf(scan, input, s) : undefined;
-    const reduced = { segments, segment: s.segment, ...(standard && { standard }), events: [], trace, flags };
+    const heatFlowUnit = unitOf(scan);
+    const reduced = {
+      segments,
+      segment: s.segment,
+      heatFlowUnit,
+      ...(standard && { standard }),
+      events: [],
+      trace,
+      flags,
+    };
     return { ok: true, reduced };
   }
 
@@ -77,6 +86,10 @@ export function reduceScan(scan: ReadScan, input: ReduceInput): ReduceOutcome {
   const context = createContext(scan, y, input, flags);
   return { ok: true, reduced: reduceChosen(context, segments, chosen.candidates) };
 }
+
+/** A voltage is told in W by the instrument's sensitivity. */
+const unitOf = ({ heatFlowUnit }: ScanContext['scan']): ReducedScan['heatFlowUnit'] =>
+  heatFlowUnit === 'W/kg' ? 'W/kg' : 'W';
 
 function reduceChosen(c: ScanContext, segments: Segment[], candidates: Segment[]): ReducedScan {
   const { scan, y, flags, input } = c;
@@ -112,11 +125,13 @@ function reduceChosen(c: ScanContext, segments: Segment[], candidates: Segment[]
     segment.to,
     c.shiftAt(segment.rateKPerS, (segment.startK + segment.endK) / 2),
     found.shown,
+    segment.kind === 'hold',
   );
   return {
     segments,
     segment: segment.segment,
     ...(massKg !== undefined && { massKg }),
+    heatFlowUnit: unitOf(scan),
     ...(glass && { glassTransitionK: glass.midpointK, glassTransitionOnsetK: glass.onsetK }),
     ...(meltingOnsetK !== undefined && { meltingOnsetK }),
     events,

@@ -8,7 +8,7 @@ const MOST_POINTS = 2000;
 
 /**
  * Thinned thermogram of rows [from, to): the lowest and the highest row of each block, so that no peak or spike is lost. The baseline is
- * NaN outside the event.
+ * NaN outside the event. The time of a hold is kept too.
  * @param y heat flow, exotherm up   @param shiftK added to the measured temperature
  */
 export function makeTrace(
@@ -19,6 +19,7 @@ export function makeTrace(
   to: number,
   shiftK: number,
   shown: { window: EventWindow; excess: Excess }[] = [],
+  isHold = false,
 ): ReducedTrace {
   const n = to - from;
   const blocks = Math.min(n, MOST_POINTS / 2);
@@ -47,6 +48,7 @@ export function makeTrace(
     trace.temperatureK[k] = T[i] + shiftK;
     trace.heatFlow[k] = y[i];
   });
+  if (isHold) trace.timeS = Float64Array.from(rows, (i) => t[i] - t[from]);
   for (const { window: w, excess: x } of shown) {
     const { leftS, rightS } = x.baseline;
     let bin = 0;

@@ -2,6 +2,8 @@ import { sql } from 'drizzle-orm';
 import type { CampaignStatus } from '../../schema/wire/campaign.ts';
 import { type SampleState, SCAN_STATES, type ScanState } from '../../schema/wire/states.ts';
 import type { Ports } from '../ports/index.ts';
+import type { Step } from './job-rows.ts';
+import { type StepPace, secondsLeft } from './time-left.ts';
 
 /** Finished jobs of a campaign from which its pace is told. */
 const PACE_JOBS = 200;
@@ -57,8 +59,8 @@ export async function campaignStatus(ports: Ports, campaignId: string): Promise<
 }
 
 /**
- * Seconds until the campaign is settled: work to come, a step at a time, over the pace at which that step's last jobs ended
- * (jobs that run side by side share the time). Null before any job of a step that is still to come has ended.
+ * Seconds until the campaign is settled: every step that is still to come, of scans and samples that no job is queued for yet too, at
+ * the pace of the jobs that ended last. Null before any job has ended.
  */
 async function estimateSeconds(
   ports: Ports,
@@ -66,22 +68,25 @@ async function estimateSeconds(
   scans: Record<ScanState, number>,
   samples: readonly SampleState[],
 ): Promise<number | null> {
-  const pace = await ports.database.read.all<{ step: string; meanMs: number; atOnce: number }>(sql`
+  const { read } = ports.database;
+  const paces = await read.all<StepPace>(sql`
     select step, avg(finished_at - started_at) as meanMs,
       max(1.0, sum(finished_at - started_at) * 1.0 / max(1, max(finished_at) - min(started_at))) as atOnce
     from (select step, started_at, finished_at from jobs where campaign_id = ${campaignId} and state = 'done' and started_at is not null
       order by finished_at desc limit ${PACE_JOBS}) group by step`);
-  const toCome: Record<string, number> = {
+  const open = await read.all<{ step: Step; count: number }>(sql`
+    select step, count(*) as count from jobs
+    where campaign_id = ${campaignId} and state in ('queued', 'running') group by step`);
+  const toFit = samples.filter((state) => ['waiting', 'queued', 'fitting', 'stale'].includes(state)).length;
+  const toCome: Partial<Record<Step, number>> = {
     'read-scan': scans.received,
-    'reduce-scan': scans.received + scans.read,
-    'fit-sample': samples.filter((state) => ['waiting', 'queued', 'fitting', 'stale'].includes(state)).length,
+    'reduce-scan': scans.read,
+    'fit-sample': toFit,
+    'judge-curvature': toFit,
+    'forecast-sample': toFit,
+    'plan-campaign': 1,
   };
-  let seconds = 0;
-  for (const [step, count] of Object.entries(toCome)) {
-    if (count === 0) continue;
-    const found = pace.find((row) => row.step === step);
-    if (!found) return null;
-    seconds += (count * found.meanMs) / found.atOnce / 1000;
-  }
-  return Math.round(seconds * 10) / 10;
+  for (const { step, count } of open) toCome[step] = Math.max(count, toCome[step] ?? 0);
+  const seconds = secondsLeft(toCome, paces);
+  return seconds === null ? null : Math.round(seconds * 10) / 10;
 }

@@ -26,6 +26,7 @@ export function encodeReduceOutcome(outcome: ReduceOutcome): Uint8Array {
   const { reduced } = outcome;
   const columns: Record<string, Float64Array> = {};
   for (const name of TRACE_COLUMNS) columns[`trace.${name}`] = reduced.trace[name];
+  if (reduced.trace.timeS) columns['trace.timeS'] = reduced.trace.timeS;
   reduced.events.forEach(({ curve }, i) => {
     if (curve) for (const name of CURVE_COLUMNS) columns[`${i}.${name}`] = curve[name];
   });
@@ -49,7 +50,10 @@ export function decodeReduceOutcome(bytes: Uint8Array): ReduceOutcome {
       events: events.map(({ hasCurve, ...event }, i) =>
         hasCurve ? { ...event, curve: pick(String(i), CURVE_COLUMNS) } : event,
       ),
-      trace: pick('trace', TRACE_COLUMNS),
+      trace: {
+        ...pick('trace', TRACE_COLUMNS),
+        ...(columns['trace.timeS'] && { timeS: columns['trace.timeS'] }),
+      },
       flags: stored.flags,
     },
   };

@@ -70,6 +70,8 @@ export interface ReducedTrace {
   temperatureK: Float64Array;
   heatFlow: Float64Array;
   baseline: Float64Array;
+  /** s from the start of the segment; of a hold only, whose temperature tells nothing */
+  timeS?: Float64Array;
 }
 
 /** Melting of a calibration standard on one scan, uncorrected for offset and lag. */
@@ -94,6 +96,8 @@ export interface ReducedScan {
   /** Segment analysed, 1-based */
   segment: number;
   massKg?: number;
+  /** Of the trace; a voltage is W by the instrument's sensitivity */
+  heatFlowUnit: 'W' | 'W/kg';
   /** Half-height midpoint (ISO 11357-2) and extrapolated onset of the glass transition, K */
   glassTransitionK?: number;
   glassTransitionOnsetK?: number;

@@ -99,6 +99,7 @@ function reduce(scan: ReadScan, input: ReduceInput): ReduceOutcome {
       segments: [{ segment: 1, kind: 'heating', from: 0, to: 40, rateKPerS, startK: 300, endK: 340 }],
       segment: input.segment ?? 1,
       massKg: input.massKg,
+      heatFlowUnit: 'W',
       ...(input.role === 'standard' &&
         meltsK > 0 && {
           standard: {

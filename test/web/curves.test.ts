@@ -1,8 +1,9 @@
 import { expect, test } from 'vitest';
 import { bandPath, linePath } from '../../web/charts/curve-path.ts';
 import { createPlotScale, createTemperatureScale } from '../../web/charts/plot-scale.ts';
+import { layoutLanes } from '../../web/charts/thermogram-lanes.tsx';
 import { tabsFromCsv } from '../../web/client/tabs.ts';
-import { type Curves, curveRows, curvesByEvent, splitCurves } from '../../web/model/curves.ts';
+import { buildLanes, type Curves, curveRows, curvesByEvent, partLanes, splitCurves } from '../../web/model/curves.ts';
 import { formatTime } from '../../web/model/forecast-words.ts';
 import { parseRoute, samplePath } from '../../web/routes.ts';
 
@@ -123,6 +124,32 @@ test('points of curves become rows with their units in the head', () => {
   expect(rows).toEqual([
     { series: 'event 1', instrument: null, 'temperature [K]': 1, 'time [s]': 2, lower95: 1, upper95: 3 },
   ]);
+});
+
+test('a hold is drawn over time, apart from the scans, and its file keeps both', () => {
+  const axes = { x: { quantity: 'temperature', unit: 'K' }, y: { quantity: 'heat flow', unit: 'W' } };
+  const trace = (name: string, x: number[], more = {}) => ({
+    name,
+    instrument: 'a',
+    scan_id: name,
+    unit: 'W/kg',
+    x,
+    y: [0, 1, 0],
+    ...more,
+  });
+  const series = [trace('ramp', [300, 400, 500]), trace('hold', [419, 420, 421], { time_s: [0, 900, 1800] })];
+  const thermogram: Curves = { kind: 'thermogram', ...axes, series };
+  const { scans, holds } = partLanes(buildLanes(thermogram, { kind: 'baseline', ...axes, series: [] }, []));
+  expect(scans.map(({ file, trace: { x } }) => [file, x])).toEqual([['ramp', [300, 400, 500]]]);
+  expect(holds.map(({ file, holdK, trace: { x } }) => [file, holdK, x])).toEqual([['hold', 420, [0, 900, 1800]]]);
+  const units = { temperature: '°C', rate: 'K/min' } as const;
+  const layout = layoutLanes(holds, 600, units);
+  expect(layout.xLabel).toBe('Time from the start of the hold, min');
+  expect(layout.x.ticks.map(({ label }) => label)).toContain('30');
+  expect(layoutLanes(scans, 600, units).xLabel).toBe('Temperature, °C');
+  const { columns, rows } = curveRows(thermogram);
+  expect(columns.slice(-2)).toEqual(['unit', 'time [s]']);
+  expect(rows[4]).toMatchObject({ series: 'hold', unit: 'W/kg', 'time [s]': 900, 'temperature [K]': 420 });
 });
 
 // RFC 4180, section 2: quoted fields may hold commas, line breaks and doubled quotes.

@@ -1,5 +1,5 @@
 import { expect, test } from 'vitest';
-import { createEventParser, type ServerEvent } from '../../web/client/events.ts';
+import { createEventParser, type ServerEvent } from '../../schema/wire/event-stream.ts';
 
 function parse(pieces: string[]): ServerEvent[] {
   const events: ServerEvent[] = [];

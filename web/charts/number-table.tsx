@@ -12,7 +12,7 @@ export function EventTable(props: {
   /** The sample has no other event */
   isOnly: boolean;
   numbers: EventNumbers;
-  /** Width of the interval plots, px */
+  /** Width of the interval plots, px; 0 leaves them out */
   plotWidth: number;
   units: Units;
 }) {
@@ -53,7 +53,7 @@ function Quantity(props: {
 }) {
   const { title, unit, rows, plotWidth, units } = props;
   if (rows.length === 0) return null;
-  const scale = rows.length > 1 ? createIntervalScale(rows, plotWidth) : undefined;
+  const scale = rows.length > 1 && plotWidth > 0 ? createIntervalScale(rows, plotWidth) : undefined;
   return (
     <tbody>
       <tr>

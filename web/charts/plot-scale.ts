@@ -57,6 +57,39 @@ export const createTemperatureScale = (
     ...(units.temperature === '°C' && { shown: celsiusFromKelvin, hidden: kelvinFromCelsius }),
   });
 
+/** Units of a time axis, from the span in s from which each is chosen. */
+const TIME_UNITS = [
+  { unit: 'h', seconds: 3600, from: 6 * 3600 },
+  { unit: 'min', seconds: 60, from: 600 },
+  { unit: 's', seconds: 1, from: 0 },
+];
+
+/** An axis of times in s, labelled in a unit that fits them. */
+export function createTimeScale(valuesS: readonly number[], range: [number, number]): PlotScale & { unit: string } {
+  const longest = Math.max(0, ...valuesS);
+  const { unit, seconds } = TIME_UNITS.find(({ from }) => longest >= from) ?? TIME_UNITS[2];
+  const count = Math.max(2, Math.round(Math.abs(range[1] - range[0]) / 90));
+  const scale = createPlotScale(valuesS, range, {
+    count,
+    shown: (value) => value / seconds,
+    hidden: (value) => value * seconds,
+  });
+  return { ...scale, unit };
+}
+
+/** Axis of a thermogram: temperature, or time for a hold. */
+export function createLaneScale(
+  lane: { holdK?: number } | undefined,
+  values: readonly number[],
+  range: [number, number],
+  units: Units,
+): { scale: PlotScale; label: string } {
+  if (lane?.holdK === undefined)
+    return { scale: createTemperatureScale(values, range, units), label: `Temperature, ${units.temperature}` };
+  const scale = createTimeScale(values, range);
+  return { scale, label: `Time from the start of the hold, ${scale.unit}` };
+}
+
 /** Equal steps with as many decimals as the step needs. */
 export function labelTicks(values: readonly number[]): { value: number; label: string }[] {
   const step = values.length > 1 ? values[1] - values[0] : 1;

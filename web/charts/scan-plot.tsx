@@ -2,11 +2,12 @@ import { formatExponent, formatTemperature, type Units } from '../format.ts';
 import type { ScanLane } from '../model/curves.ts';
 import { linePath } from './curve-path.ts';
 import { createPlotBox, labelWidth, type PlotBox, PlotFrame } from './plot-frame.tsx';
-import { createPlotScale, createTemperatureScale, extent, type PlotScale } from './plot-scale.ts';
+import { createLaneScale, createPlotScale, extent, type PlotScale } from './plot-scale.ts';
 
 export interface ScanPlotLayout {
   box: PlotBox;
   x: PlotScale;
+  xLabel: string;
   y: PlotScale;
   /** Ten to the power of this is taken out of the labels of y */
   exponent: number;
@@ -20,7 +21,7 @@ const rowsPerEvent = (width: number): number => (width < NARROW ? 4 : 2);
 const labelRows = (lane: ScanLane, width: number): number => rowsPerEvent(width) * Math.max(1, lane.rows.length);
 const LABEL_WIDTH = 104;
 
-/** Limits of the analysed event(s), K: where the baseline begins and ends. */
+/** Limits of the analysed event(s) where the baseline begins and ends: K, of a hold s from its start. */
 export function eventLimits(lane: ScanLane): [number, number] | undefined {
   const limits = lane.baseline && extent(lane.baseline.x);
   return limits?.length === 2 ? [limits[0], limits[1]] : undefined;
@@ -41,13 +42,24 @@ export function layoutScanPlot(lane: ScanLane, width: number, units: Units, isZo
   const options = { count: 5, shown: (value: number) => value * factor, hidden: (value: number) => value / factor };
   const ruler = createPlotScale(ys, [HEIGHT, 0], options);
   const box = createPlotBox(width, HEIGHT, labelWidth(ruler) + 10, 26 + labelRows(lane, width) * LABEL_STEP);
+  const { scale: x, label: xLabel } = createLaneScale(lane, extent(xs), [box.left, box.right], units);
   return {
     box,
-    x: createTemperatureScale(extent(xs), [box.left, box.right], units),
+    x,
+    xLabel,
     y: createPlotScale(ys, [box.bottom, box.top], options),
     exponent,
   };
 }
+
+/** Units with a name of their own, by the power of ten taken out. */
+const NAMED_UNITS: Record<string, Record<number, string>> = {
+  W: { [-9]: 'nW', [-6]: 'µW', [-3]: 'mW', 0: 'W' },
+  'W/kg': { [-3]: 'mW/kg', 0: 'W/kg', 3: 'W/g', 6: 'kW/g' },
+};
+
+const heatFlowUnit = (exponent: number, unit = ''): string =>
+  NAMED_UNITS[unit]?.[exponent] ?? [exponent === 0 ? '' : formatExponent(exponent), unit].filter(Boolean).join(' ');
 
 interface Label {
   name: string;
@@ -59,11 +71,13 @@ interface Label {
 /** Trace, baseline, limits and characteristic temperatures of one scan. */
 export function ScanPlot(props: { lane: ScanLane; layout: ScanPlotLayout; instrument: number; units: Units }) {
   const { lane, layout, instrument, units } = props;
-  const { box, x, y, exponent } = layout;
+  const { box, x, xLabel, y, exponent } = layout;
   const limits = eventLimits(lane);
   const isInside = (at: number): boolean => at >= box.left && at <= box.right;
   const rows = rowsPerEvent(box.width);
-  const labels = lane.rows
+  // Along a hold the temperatures of an event have no place of their own.
+  const told = lane.holdK === undefined ? lane.rows : [];
+  const labels = told
     .flatMap((row, i): Label[] => [
       { name: 'peak', temperatureK: row.peak_K, row: rows * i, side: 'middle' },
       { name: 'onset', temperatureK: row.onset_K, row: rows * i + 1, side: 'end' },
@@ -88,8 +102,8 @@ export function ScanPlot(props: { lane: ScanLane; layout: ScanPlotLayout; instru
       box={box}
       x={x}
       y={y}
-      xLabel={`Temperature, ${units.temperature}`}
-      yLabel={`Heat flow, ${exponent === 0 ? '' : `${formatExponent(exponent)} `}W or W/kg, exothermic up`}
+      xLabel={xLabel}
+      yLabel={`Heat flow, ${heatFlowUnit(exponent, lane.trace.unit)}, exothermic up`}
     >
       <g class={`lane hue-${instrument % 6}`}>
         {limits && (

@@ -1,9 +1,9 @@
-import { formatRate, type Units } from '../format.ts';
+import { formatRate, formatTemperature, type Units } from '../format.ts';
 import type { ScanLane } from '../model/curves.ts';
 import { linePath } from './curve-path.ts';
 import { InstrumentMark } from './instrument-mark.tsx';
 import { createPlotBox, type PlotBox, PlotFrame } from './plot-frame.tsx';
-import { createPlotScale, createTemperatureScale, extent, type PlotScale } from './plot-scale.ts';
+import { createLaneScale, createPlotScale, extent, type PlotScale } from './plot-scale.ts';
 
 export interface PlacedLane {
   lane: ScanLane;
@@ -19,6 +19,7 @@ export interface PlacedLane {
 export interface LaneLayout {
   box: PlotBox;
   x: PlotScale;
+  xLabel: string;
   laneHeight: number;
   /** Slowest first, at the foot */
   placed: PlacedLane[];
@@ -32,13 +33,21 @@ const NARROW_LABEL_WIDTH = 82;
 /** A curve may rise into the lane above by this share of a lane. */
 const OVERLAP = 0.5;
 
-/** Each scan in a lane of its own, slowest at the foot, every one scaled to its own height on one axis of temperature. */
+/**
+ * Each scan in a lane of its own, slowest at the foot, every one scaled to its own height on one axis: of temperature, or of time where
+ * all are holds.
+ */
 export function layoutLanes(lanes: readonly ScanLane[], width: number, units: Units): LaneLayout {
   const laneHeight = Math.max(SHORTEST_LANE, Math.min(TALLEST_LANE, ALL_LANES / Math.max(1, lanes.length)));
   const top = 26 + laneHeight * OVERLAP;
   const left = width < 480 ? NARROW_LABEL_WIDTH : LABEL_WIDTH;
   const box = { ...createPlotBox(width, top + lanes.length * laneHeight + 44, left, 26) };
-  const x = createTemperatureScale(extent(...lanes.map((lane) => lane.trace.x)), [box.left, box.right], units);
+  const { scale: x, label: xLabel } = createLaneScale(
+    lanes[0],
+    extent(...lanes.map((lane) => lane.trace.x)),
+    [box.left, box.right],
+    units,
+  );
   const placed = lanes.map((lane, i): PlacedLane => {
     const foot = box.bottom - 4 - i * laneHeight;
     const y = createPlotScale(extent(lane.trace.y), [foot, foot - laneHeight * (1 + OVERLAP)]);
@@ -48,10 +57,12 @@ export function layoutLanes(lanes: readonly ScanLane[], width: number, units: Un
       middle: foot - laneHeight / 2,
       path: linePath(lane.trace.x, lane.trace.y, x, y),
       baselinePath: lane.baseline ? linePath(lane.baseline.x, lane.baseline.y, x, y) : '',
-      peaks: lane.rows.flatMap((row) => (row.peak_K === null ? [] : [peakOf(lane, row.peak_K, x, y)])),
+      peaks: lane.rows.flatMap((row) =>
+        row.peak_K === null || lane.holdK !== undefined ? [] : [peakOf(lane, row.peak_K, x, y)],
+      ),
     };
   });
-  return { box, x, laneHeight, placed };
+  return { box, x, xLabel, laneHeight, placed };
 }
 
 /** The point of the trace nearest to a peak's temperature: the trace itself may be a hair off by smoothing. */
@@ -63,12 +74,18 @@ function peakOf(lane: ScanLane, peakK: number, x: PlotScale, y: PlotScale): { x:
   return { x: x.at(peakK), y: y.at(lane.trace.y[nearest] ?? 0) };
 }
 
+function laneName({ holdK, rateKPerS, isCooling }: ScanLane, units: Units): string {
+  if (holdK !== undefined) return `at ${formatTemperature(holdK, units)}`;
+  if (rateKPerS === null) return 'no rate';
+  return `${formatRate(rateKPerS, units)}${isCooling ? ' ↓' : ''}`;
+}
+
 /** Ground, curves, baselines and peaks of all lanes. */
 export function ThermogramLanes(props: { layout: LaneLayout; instruments: readonly string[]; units: Units }) {
   const { layout, instruments, units } = props;
-  const { box, x, placed } = layout;
+  const { box, x, xLabel, placed } = layout;
   return (
-    <PlotFrame box={box} x={x} xLabel={`Temperature, ${units.temperature}`} yLabel="Heat flow, exothermic up">
+    <PlotFrame box={box} x={x} xLabel={xLabel} yLabel="Heat flow, exothermic up">
       {placed.map(({ lane, path, baselinePath, peaks, middle }) => {
         const instrument = instruments.indexOf(lane.instrument);
         return (
@@ -80,8 +97,7 @@ export function ThermogramLanes(props: { layout: LaneLayout; instruments: readon
             ))}
             <InstrumentMark instrument={instrument} look="full" x={9} y={middle} />
             <text class="lane-label" x={22} y={(middle + 4).toFixed(1)}>
-              {lane.rateKPerS === null ? 'no rate' : formatRate(lane.rateKPerS, units)}
-              {lane.isCooling && ' ↓'}
+              {laneName(lane, units)}
             </text>
           </g>
         );

@@ -1,5 +1,5 @@
+import { createEventParser } from '../../schema/wire/event-stream.ts';
 import { loadStatus, openStatusStream } from './campaigns.ts';
-import { createEventParser } from './events.ts';
 import { asProblem, type Problem } from './request.ts';
 import type { Status } from './rows.ts';
 

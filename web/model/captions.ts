@@ -1,11 +1,16 @@
 import type { CurveKind } from './curves.ts';
 
 /** Title and words of each figure, on the page and in the report. */
-export const FIGURES: Record<Exclude<CurveKind, 'baseline'>, { title: string; caption: string }> = {
+export const FIGURES: Record<Exclude<CurveKind, 'baseline'> | 'hold', { title: string; caption: string }> = {
   thermogram: {
     title: 'Thermograms',
     caption:
       'Every scan on one axis of temperature, the fastest at the top, each drawn to its own height. Dashed: the baseline under the event, as far as the event reaches. A tick stands above each peak.',
+  },
+  hold: {
+    title: 'Holds',
+    caption:
+      'Every hold over time from its start, the coolest at the foot, each drawn to its own height. Dashed: the baseline under the event.',
   },
   conversion: {
     title: 'Conversion',

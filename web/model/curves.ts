@@ -9,6 +9,10 @@ export interface CurveSeries {
   y: number[];
   lower?: number[];
   upper?: number[];
+  /** Of y, where it may differ between series */
+  unit?: string;
+  /** s from the start of a hold */
+  time_s?: number[];
 }
 
 /** Kinds of curves a sample may have, in the order in which they are shown. */
@@ -39,6 +43,8 @@ export interface ScanLane {
   /** K/s, positive; null when not known */
   rateKPerS: number | null;
   isCooling: boolean;
+  /** Mean temperature of a hold, K: its curves run over time, x is s from its start */
+  holdK?: number;
   trace: CurveSeries;
   /** Missing where no event was found */
   baseline?: CurveSeries;
@@ -60,6 +66,7 @@ export function buildLanes(thermogram: Curves, baseline: Curves, scans: readonly
       seen.set(`${trace.name}\u0000${instrument}`, place + 1);
       const rows = ofFile.filter((row) => row.segment === (segments[place] ?? segments[0]));
       const signed = rows[0]?.rate_K_per_s ?? rows[0]?.rate_nominal_K_per_s ?? null;
+      const under = baseline.series.find((series) => series.scan_id === trace.scan_id && series.x.length > 0);
       return {
         key: trace.scan_id ?? `${trace.name} ${instrument} ${place}`,
         scanId: trace.scan_id,
@@ -67,13 +74,25 @@ export function buildLanes(thermogram: Curves, baseline: Curves, scans: readonly
         instrument,
         rateKPerS: signed === null || signed === 0 ? null : Math.abs(signed),
         isCooling: signed !== null && signed < 0,
-        trace,
-        baseline: baseline.series.find((series) => series.scan_id === trace.scan_id && series.x.length > 0),
+        ...(trace.time_s && { holdK: trace.x.reduce((sum, temperatureK) => sum + temperatureK, 0) / trace.x.length }),
+        trace: overTime(trace),
+        baseline: under && overTime(under),
         rows,
       };
     })
-    .sort((a, b) => (a.rateKPerS ?? 0) - (b.rateKPerS ?? 0) || (a.file < b.file ? -1 : 1));
+    .sort(
+      (a, b) =>
+        (a.holdK ?? 0) - (b.holdK ?? 0) || (a.rateKPerS ?? 0) - (b.rateKPerS ?? 0) || (a.file < b.file ? -1 : 1),
+    );
 }
+
+const overTime = (series: CurveSeries): CurveSeries => (series.time_s ? { ...series, x: series.time_s } : series);
+
+/** Scans and holds apart: one axis does not fit both. */
+export const partLanes = (lanes: readonly ScanLane[]): { scans: ScanLane[]; holds: ScanLane[] } => ({
+  scans: lanes.filter((lane) => lane.holdK === undefined),
+  holds: lanes.filter((lane) => lane.holdK !== undefined),
+});
 
 const FORECAST_METHOD = /^(model_free|shared_law)(?:, |$)/;
 
@@ -120,12 +139,16 @@ export function splitCurves(curves: Curves): { names: string[]; curves: Curves }
 /** Points of curves as rows for a CSV file. */
 export function curveRows(curves: Curves): { columns: string[]; rows: Record<string, string | number | null>[] } {
   const hasBand = curves.series.some((s) => s.lower !== undefined);
+  const hasUnit = curves.series.some((s) => s.unit !== undefined);
+  const hasTime = curves.series.some((s) => s.time_s !== undefined);
   const columns = [
     'series',
     'instrument',
     `${curves.x.quantity} [${curves.x.unit}]`,
     `${curves.y.quantity} [${curves.y.unit}]`,
   ];
+  if (hasUnit) columns.push('unit');
+  if (hasTime) columns.push('time [s]');
   if (hasBand) columns.push('lower95', 'upper95');
   const rows = curves.series.flatMap((s) =>
     s.x.map((x, i) => ({
@@ -133,6 +156,8 @@ export function curveRows(curves: Curves): { columns: string[]; rows: Record<str
       instrument: s.instrument ?? null,
       [columns[2]]: x,
       [columns[3]]: s.y[i],
+      ...(hasUnit && { unit: s.unit ?? null }),
+      ...(hasTime && { 'time [s]': s.time_s?.[i] ?? null }),
       ...(hasBand && { lower95: s.lower?.[i] ?? null, upper95: s.upper?.[i] ?? null }),
     })),
   );

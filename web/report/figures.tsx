@@ -13,7 +13,14 @@ import { layoutLanes, ThermogramLanes } from '../charts/thermogram-lanes.tsx';
 import type { ScanRow } from '../client/rows.ts';
 import type { Units } from '../format.ts';
 import { FIGURES } from '../model/captions.ts';
-import { buildLanes, type CurveKind, type CurveSeries, curvesByEvent, splitCurves } from '../model/curves.ts';
+import {
+  buildLanes,
+  type CurveKind,
+  type CurveSeries,
+  curvesByEvent,
+  partLanes,
+  splitCurves,
+} from '../model/curves.ts';
 import type { LedgerRow } from '../model/ledger.ts';
 import type { SampleCurves } from './data.ts';
 
@@ -162,23 +169,31 @@ export function SampleFigures(props: {
   const { curves: all, scans, instruments, units } = props;
   const { thermogram, baseline, conversion, kissinger, energy } = all;
   const lanes = thermogram && baseline ? buildLanes(thermogram, baseline, scans) : [];
-  const laneLayout = layoutLanes(lanes, WIDTH, units);
+  const parted = partLanes(lanes);
   const conversionLayout = layoutConversion(conversion?.series ?? [], WIDTH, units);
   const eventTitle = (title: string, event: number, of: number): string =>
     of > 1 ? `${title}, event ${event}` : title;
   return (
     <>
-      {lanes.length > 0 && (
-        <ReportFigure
-          {...FIGURES.thermogram}
-          height={laneLayout.box.height}
-          legend={
-            <InstrumentLegend names={instrumentsOf(thermogram?.series ?? [], instruments)} instruments={instruments} />
-          }
-        >
-          <ThermogramLanes layout={laneLayout} instruments={instruments} units={units} />
-        </ReportFigure>
-      )}
+      {(['thermogram', 'hold'] as const).map((kind) => {
+        const own = kind === 'hold' ? parted.holds : parted.scans;
+        if (own.length === 0) return null;
+        const layout = layoutLanes(own, WIDTH, units);
+        const names = instrumentsOf(
+          own.map((lane) => lane.trace),
+          instruments,
+        );
+        return (
+          <ReportFigure
+            key={kind}
+            {...FIGURES[kind]}
+            height={layout.box.height}
+            legend={<InstrumentLegend names={names} instruments={instruments} />}
+          >
+            <ThermogramLanes layout={layout} instruments={instruments} units={units} />
+          </ReportFigure>
+        );
+      })}
       {conversion && conversionLayout.series.length > 0 && (
         <ReportFigure
           {...FIGURES.conversion}

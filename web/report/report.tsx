@@ -179,7 +179,7 @@ export function SampleSection(props: {
   const scans = tables.scans.filter((row) => row.role === 'sample');
   const { verdicts, forecasts, parameters } = tables;
   return (
-    <>
+    <section class="sample">
       <h2>{sample.sample}</h2>
       <p>
         {sentence(SAMPLE_STATE_NAMES[sample.state])}
@@ -197,7 +197,7 @@ export function SampleSection(props: {
             sample={sample.sample}
             isOnly={numbers.length === 1}
             numbers={event}
-            plotWidth={PLOT_WIDTH}
+            plotWidth={curves ? PLOT_WIDTH : 0}
             units={units}
           />
           {curves && <EnergyReport rows={parameters.filter((row) => row.event === event.event)} />}
@@ -210,7 +210,7 @@ export function SampleSection(props: {
         </>
       )}
       {scans.length > 0 && <ScanReport rows={scans} units={units} />}
-    </>
+    </section>
   );
 }
 

@@ -44,6 +44,9 @@ th[scope="rowgroup"] { font-weight: 600; padding-top: 0.6rem; }
 tbody th { white-space: nowrap; }
 tbody th:has(.file) { white-space: normal; }
 .event-numbers tr:last-child td { border: 0; }
+@media screen {
+  .sample { content-visibility: auto; contain-intrinsic-size: auto 60rem; }
+}
 @media print {
   body { max-width: none; margin: 0; padding: 0; font-size: 9.5pt; }
   h2, h3, caption { break-after: avoid; }

@@ -7,13 +7,15 @@ import { units } from '../state/units.ts';
 
 /** The lanes of a sample, to point at and to choose from by pointer or arrow keys. */
 export function Lanes(props: {
+  /** Unique prefix of the element ids of the lanes */
+  idPrefix: string;
   lanes: readonly ScanLane[];
   instruments: readonly string[];
   width: number;
   pointed: Signal<string | undefined>;
   chosen: Signal<string | undefined>;
 }) {
-  const { lanes, instruments, width, pointed, chosen } = props;
+  const { idPrefix, lanes, instruments, width, pointed, chosen } = props;
   const layout = useMemo(() => layoutLanes(lanes, width, units.value), [lanes, width, units.value]);
   const { box, laneHeight } = layout;
   const chooseAt = (event: PointerEvent | MouseEvent): string | undefined => {
@@ -36,7 +38,7 @@ export function Lanes(props: {
   };
   const activeId = useComputed(() => {
     const place = lanes.findIndex((lane) => lane.key === pointed.value);
-    return place < 0 ? undefined : `lane-${place}`;
+    return place < 0 ? undefined : `${idPrefix}-${place}`;
   });
   const drawing = useMemo(
     () => <ThermogramLanes layout={layout} instruments={instruments} units={units.value} />,
@@ -47,7 +49,7 @@ export function Lanes(props: {
       class="lanes"
       role="listbox"
       tabIndex={0}
-      aria-label="Scans, slowest first. Arrow keys move, Enter shows the scan by itself."
+      aria-label={`${lanes[0]?.holdK === undefined ? 'Scans, slowest first' : 'Holds, coolest first'}. Arrow keys move, Enter shows one by itself.`}
       aria-activedescendant={activeId}
       onKeyDown={onKeyDown}
       onPointerMove={(event) => {
@@ -63,7 +65,13 @@ export function Lanes(props: {
       </svg>
       <div class="unseen">
         {lanes.map((lane, i) => (
-          <div key={lane.key} id={`lane-${i}`} role="option" tabIndex={-1} aria-selected={lane.key === chosen.value}>
+          <div
+            key={lane.key}
+            id={`${idPrefix}-${i}`}
+            role="option"
+            tabIndex={-1}
+            aria-selected={lane.key === chosen.value}
+          >
             {describeLane(lane)}
           </div>
         ))}
@@ -73,11 +81,13 @@ export function Lanes(props: {
 }
 
 export function describeLane(lane: ScanLane): string {
-  const peaks = lane.rows.filter((row) => row.peak_K !== null);
+  const peaks = lane.holdK === undefined ? lane.rows.filter((row) => row.peak_K !== null) : [];
   return [
-    lane.rateKPerS === null
-      ? 'no rate known'
-      : `${formatRate(lane.rateKPerS, units.value)}${lane.isCooling ? ' cooling' : ''}`,
+    lane.holdK !== undefined
+      ? `hold at ${formatTemperature(lane.holdK, units.value)}`
+      : lane.rateKPerS === null
+        ? 'no rate known'
+        : `${formatRate(lane.rateKPerS, units.value)}${lane.isCooling ? ' cooling' : ''}`,
     lane.instrument,
     ...peaks.map((row) => `peak ${formatTemperature(row.peak_K as number, units.value)}`),
   ].join(', ');

@@ -232,22 +232,25 @@ export function ScanFigure(props: {
   const limits = eventLimits(lane);
   const isZoomed = useSignal(false);
   const hasEvent = lane.baseline !== undefined;
+  const isHold = lane.holdK !== undefined;
   return (
     <Figure
       title={describeLane(lane)}
       of={of}
       curves={{
         kind: 'thermogram',
-        x: { quantity: 'temperature', unit: 'K' },
-        y: { quantity: 'heat flow', unit: 'W or W/kg' },
+        x: isHold ? { quantity: 'time', unit: 's' } : { quantity: 'temperature', unit: 'K' },
+        y: { quantity: 'heat flow', unit: lane.trace.unit ?? '' },
         series: [lane.trace, ...(lane.baseline ? [{ ...lane.baseline, name: `baseline of ${lane.file}` }] : [])],
       }}
       caption={
         <>
           <span class="file">{lane.file}</span>
-          {hasEvent
-            ? '. Shaded: from limit to limit of the event; drag a limit, or move it with the arrow keys.'
-            : '. No event was found.'}
+          {hasEvent && isHold
+            ? '. Shaded: from limit to limit of the event.'
+            : hasEvent
+              ? '. Shaded: from limit to limit of the event; drag a limit, or move it with the arrow keys.'
+              : '. No event was found.'}
         </>
       }
       tools={
@@ -288,7 +291,7 @@ export function ScanFigure(props: {
               instrument={instruments.indexOf(lane.instrument)}
               units={units.value}
             />
-            {limits && <LimitHandles layout={layout} standing={limits} moved={moved} />}
+            {limits && !isHold && <LimitHandles layout={layout} standing={limits} moved={moved} />}
           </svg>
         );
       }}

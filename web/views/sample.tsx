@@ -4,7 +4,7 @@ import { EventTable } from '../charts/number-table.tsx';
 import { StateGlyph } from '../charts/state-glyph.tsx';
 import { formatCount } from '../format.ts';
 import { FIGURES } from '../model/captions.ts';
-import { buildLanes, type CurveKind } from '../model/curves.ts';
+import { buildLanes, type CurveKind, partLanes } from '../model/curves.ts';
 import { numbersBySample } from '../model/headline.ts';
 import { tellableNow } from '../model/next-steps.ts';
 import { identifyScans } from '../model/scan-ids.ts';
@@ -44,6 +44,7 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
     const { thermogram, baseline } = data?.curves ?? {};
     return data && thermogram && baseline ? buildLanes(thermogram, baseline, data.scans) : [];
   }, [data]);
+  const parted = useMemo(() => partLanes(lanes), [lanes]);
   const instruments = useMemo(() => {
     const names = [...(data?.instruments ?? []), ...(data?.scans ?? [])].map((row) => row.instrument ?? '');
     return [...new Set(names)].filter(Boolean).sort((a, b) => (a < b ? -1 : 1));
@@ -111,16 +112,33 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
           <p class="waiting">No scan of this sample is reduced yet. Its curves are drawn here as soon as one is.</p>
         ) : (
           <>
-            <Figure
-              title={FIGURES.thermogram.title}
-              of={of}
-              curves={curves.thermogram}
-              caption={`${FIGURES.thermogram.caption} Choose a scan to see it by itself.`}
-              legend={<InstrumentKeys of={lanes.map((lane) => lane.trace)} instruments={instruments} />}
-              draw={(width) => (
-                <Lanes lanes={lanes} instruments={instruments} width={width} pointed={pointed} chosen={chosen} />
-              )}
-            />
+            <div class="figure-column">
+              {(['thermogram', 'hold'] as const).map((kind) => {
+                const own = kind === 'hold' ? parted.holds : parted.scans;
+                if (own.length === 0) return null;
+                const series = own.map((lane) => lane.trace);
+                return (
+                  <Figure
+                    key={kind}
+                    title={FIGURES[kind].title}
+                    of={of}
+                    curves={curves.thermogram && { ...curves.thermogram, series }}
+                    caption={`${FIGURES[kind].caption} Choose one to see it by itself.`}
+                    legend={<InstrumentKeys of={series} instruments={instruments} />}
+                    draw={(width) => (
+                      <Lanes
+                        idPrefix={kind}
+                        lanes={own}
+                        instruments={instruments}
+                        width={width}
+                        pointed={pointed}
+                        chosen={chosen}
+                      />
+                    )}
+                  />
+                );
+              })}
+            </div>
             <div class="figure-column">
               {shownId !== undefined && shownRow && (
                 <div id="scan-alone">
