@@ -2,7 +2,7 @@
 export const STEP_VERSIONS = {
   'read-scan': 1,
   'reduce-scan': 3,
-  'fit-sample': 2,
+  'fit-sample': 3,
   'judge-curvature': 1,
   'forecast-sample': 1,
 } as const;
