@@ -1,5 +1,5 @@
 import { openAsBlob } from 'node:fs';
-import { setTimeout as sleep } from 'node:timers/promises';
+import { Client as ApiClient, ApiProblem } from '../../api/client.ts';
 import type { CampaignStatus } from '../../schema/wire/campaign.ts';
 import type { ForecastRow } from '../../schema/wire/forecasts.ts';
 import type { ResultTable } from '../../schema/wire/result-tables.ts';
@@ -7,100 +7,81 @@ import type { FileReceipt, ResultRow } from '../store/index.ts';
 import type { FolderFile } from './campaign-folder.ts';
 import { ServerError, UsageError } from './exit.ts';
 
-/** Answers that say when to come again. */
-const WAIT_OUT = [429, 503];
-const WAIT_TRIES = 20;
-const LONGEST_WAIT_S = 60;
-
-/** Rows asked for in one page of a table. */
-const PAGE_ROWS = 1000;
+/** Refusals of one file that leave the others as they are. */
+const FILE_REFUSALS = [413, 422];
 
 /** The HTTP interface as the client verbs use it. Every failure is a ServerError that quotes what the server said. */
 export class Client {
   readonly #base: string;
-  readonly #token?: string;
+  readonly #api: ApiClient;
 
   constructor(url: string, token?: string) {
     if (!URL.canParse(url) || !/^https?:$/.test(new URL(url).protocol)) {
       throw new UsageError(`the server address must be an http(s) URL, not ${JSON.stringify(url)}`);
     }
     this.#base = url.replace(/\/+$/, '');
-    this.#token = token;
+    this.#api = new ApiClient(this.#base, { token });
   }
 
-  async #request(
-    method: string,
-    path: string,
-    body?: Blob | string,
-    accept: readonly number[] = [],
-  ): Promise<Response> {
-    const headers: Record<string, string> = {};
-    if (this.#token) headers.authorization = `Bearer ${this.#token}`;
-    if (body !== undefined)
-      headers['content-type'] = typeof body === 'string' ? 'application/json' : 'application/octet-stream';
-    let response: Response;
-    try {
-      response = await fetch(`${this.#base}/v1${path}`, { method, headers, body });
-      // The server names the time to wait when it takes no more for now, or a store of its is busy.
-      for (let tries = 1; WAIT_OUT.includes(response.status) && tries <= WAIT_TRIES; tries++) {
-        const seconds = Number(response.headers.get('retry-after'));
-        if (!(seconds > 0)) break;
-        await response.body?.cancel();
-        await sleep(Math.min(seconds, LONGEST_WAIT_S) * 1000);
-        response = await fetch(`${this.#base}/v1${path}`, { method, headers, body });
-      }
-    } catch (error) {
-      const cause = (error as Error).cause;
-      throw new ServerError(
-        `cannot reach ${this.#base}: ${cause instanceof Error ? cause.message : (error as Error).message}; is the server running (ratespan serve)?`,
-      );
-    }
-    if (response.ok || accept.includes(response.status)) return response;
-    const problem = (await response.json().catch(() => ({}))) as { title?: string; detail?: string };
-    throw new ServerError(
-      `${this.#base} answers ${response.status} to ${method} ${path.split('?')[0]}: ${[problem.title, problem.detail].filter(Boolean).join(': ') || response.statusText}`,
+  /** What the client throws, as the command line tells it. */
+  #explain(error: unknown): Error {
+    if (error instanceof ApiProblem) return new ServerError(`${this.#base} answers ${error.status}: ${error.message}`);
+    const { cause, message } = error as Error;
+    return new ServerError(
+      `cannot reach ${this.#base}: ${cause instanceof Error ? cause.message : message}; is the server running (ratespan serve)?`,
     );
   }
 
+  async #ask<T>(ask: (api: ApiClient) => Promise<T>): Promise<T> {
+    try {
+      return await ask(this.#api);
+    } catch (error) {
+      throw this.#explain(error);
+    }
+  }
+
   /** The campaign of that name, made if missing. @returns its id */
-  async openCampaign(name: string): Promise<string> {
-    const made = await this.#request('POST', '/campaigns', JSON.stringify({ name }), [409]);
-    if (made.status !== 409) return ((await made.json()) as { id: string }).id;
-    const found = await this.#request('GET', `/campaigns/${encodeURIComponent(name)}`);
-    return ((await found.json()) as { id: string }).id;
+  openCampaign(name: string): Promise<string> {
+    return this.#ask(async (api) => {
+      try {
+        return (await api.call('createCampaign', { body: { name } })).id;
+      } catch (error) {
+        if (!(error instanceof ApiProblem && error.code === 'name-taken')) throw error;
+        return (await api.call('getCampaign', { id: name })).id;
+      }
+    });
   }
 
-  async putFile(campaign: string, file: FolderFile): Promise<FileReceipt> {
-    const body = await openAsBlob(file.location);
-    const path = `/campaigns/${encodeURIComponent(campaign)}/files?path=${encodeURIComponent(file.path)}`;
-    const response = await this.#request('PUT', path, body, [422, 413]);
-    if (response.status === 202) return (await response.json()) as FileReceipt;
-    const problem = (await response.json().catch(() => ({}))) as { detail?: string };
-    return { file: file.path, outcome: 'refused', reason: problem.detail ?? response.statusText };
+  putFile(campaign: string, { path, location }: FolderFile): Promise<FileReceipt> {
+    return this.#ask(async (api) => {
+      try {
+        return await api.call('putFile', { id: campaign, query: { path }, body: await openAsBlob(location) });
+      } catch (error) {
+        if (!(error instanceof ApiProblem && FILE_REFUSALS.includes(error.status))) throw error;
+        return { file: path, outcome: 'refused', reason: error.problem.detail ?? error.message };
+      }
+    });
   }
 
-  async status(campaign: string): Promise<CampaignStatus> {
-    const response = await this.#request('GET', `/campaigns/${encodeURIComponent(campaign)}/status`);
-    return (await response.json()) as CampaignStatus;
+  status(campaign: string): Promise<CampaignStatus> {
+    return this.#ask((api) => api.call('getStatus', { id: campaign }));
   }
 
   /** The answer to one question about a sample, by its id. */
-  async forecast(sampleId: string, question: object): Promise<ForecastRow[]> {
-    const path = `/samples/${encodeURIComponent(sampleId)}/forecasts`;
-    const response = await this.#request('POST', path, JSON.stringify(question));
-    return ((await response.json()) as { items: ForecastRow[] }).items;
+  forecast(sampleId: string, question: object): Promise<ForecastRow[]> {
+    return this.#ask(
+      async (api) => (await api.call('forecast', { id: sampleId, body: question })).items as ForecastRow[],
+    );
   }
 
   /** All rows of a table, page by page. */
   async *rows(campaign: string, table: ResultTable): AsyncGenerator<ResultRow> {
-    let after: string | null = null;
-    do {
-      const from: string = after === null ? '' : `&after=${encodeURIComponent(after)}`;
-      const path = `/campaigns/${encodeURIComponent(campaign)}/${table}?limit=${PAGE_ROWS}${from}`;
-      const page = (await (await this.#request('GET', path)).json()) as { items: ResultRow[]; next: string | null };
-      yield* page.items;
-      after = page.next;
-    } while (after !== null);
+    const operation = `list${table[0].toUpperCase()}${table.slice(1)}` as `list${Capitalize<ResultTable>}`;
+    try {
+      for await (const row of this.#api.items(operation, { id: campaign })) yield { ...row };
+    } catch (error) {
+      throw this.#explain(error);
+    }
   }
 }
 

@@ -154,7 +154,7 @@ describe('the core is pure', () => {
 
 describe('rooms stay small', () => {
   /** Files over 400 lines, each with its reason. */
-  const LONG: Record<string, string> = {};
+  const LONG: Record<string, string> = { 'api/client-types.ts': 'written by a program from the OpenAPI document' };
   test('no file over 400 lines but the listed ones', () => {
     const long = all.filter((f) => readFileSync(join(root, f), 'utf8').split('\n').length > 400 && !(f in LONG));
     expect(long).toEqual([]);
