@@ -2,7 +2,9 @@ import type { MeltingData } from '../../schema/wire/forecasts.ts';
 import type { SharedLaw, SharedLawDraws } from '../../schema/wire/shared-law.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 import { lnDrivingFactor, turnbullDrivingForce } from '../glass/driving-force.ts';
-import { bentLogRate, localEnergy } from '../laws/bend.ts';
+import { lnRateCurve, localEnergyOf, type RateLaw, relativeDriving } from '../glass/shared-law-values.ts';
+import { localEnergy } from '../laws/bend.ts';
+import { fitLine } from '../numeric/line.ts';
 
 /** ln K(T), K in 1/s, with what an integration along a programme must know of it. */
 export interface RateCurve {
@@ -32,42 +34,45 @@ export const drawnParameters = (draws: SharedLawDraws, d: number): LawParameters
 
 /**
  * The shared law with E_loc held at its value at `frozenBelowK` for all lower temperatures (a glass is roughly Arrhenius; a bend
- * carried on below it is dangerously optimistic) and, where melting data exist, the driving force above the measured temperatures.
+ * carried on below it is dangerously optimistic) and, where melting data exist, the driving force above the measured temperatures, unless
+ * the law carries it already.
  */
 export function sharedRateCurve(law: SharedLaw, p: LawParameters, melting?: MeltingData): RateCurve {
-  const scale = { x0: law.x0PerK, dx: law.dxPerK };
-  const { lnRateAtMiddle, energyJPerMol, bend } = p;
+  const { x0PerK, dxPerK, driving } = law;
+  const own: RateLaw = { ...p, x0PerK, dxPerK, driving };
   const xf = 1 / law.frozenBelowK;
-  const frozenEnergy = localEnergy(xf, energyJPerMol, bend, scale);
-  const frozenLnRate = lnRateAtMiddle + bentLogRate(xf, energyJPerMol, bend, scale);
+  const frozenEnergy = localEnergyOf(own, law.frozenBelowK);
+  const lnRate = lnRateCurve(own);
+  const frozenLnRate = lnRate(law.frozenBelowK);
+  const scale = { x0: x0PerK, dx: dxPerK };
   return withDrive(
     {
-      lnRate(T) {
-        const x = 1 / T;
-        return x > xf
-          ? frozenLnRate - (frozenEnergy / GAS_CONSTANT) * (x - xf)
-          : lnRateAtMiddle + bentLogRate(x, energyJPerMol, bend, scale);
-      },
-      steepness: (T) => (1 / T > xf ? frozenEnergy : localEnergy(1 / T, energyJPerMol, bend, scale)),
+      lnRate: (T) => (1 / T > xf ? frozenLnRate - (frozenEnergy / GAS_CONSTANT) * (1 / T - xf) : lnRate(T)),
+      steepness: (T) =>
+        1 / T > xf
+          ? frozenEnergy
+          : Math.max(localEnergy(1 / T, p.energyJPerMol, p.bend, scale), driving?.enthalpyJPerMol ?? 0),
       breaksK: [law.frozenBelowK],
       exponent: p.avramiExponent,
     },
-    law.highestMeasuredK,
+    law,
     melting,
   );
 }
 
 /**
  * The straight Arrhenius law closest to the bent one over its measured span (least squares in ln K, even in 1/T): with f(u) = (e^(q u) − 1)/q
- * on −1 … 1 its slope is 3 (q cosh q − sinh q)/q³ and its mean (sinh q/q − 1)/q. The pessimistic end below the frozen point.
+ * on −1 … 1 its slope is 3 (q cosh q − sinh q)/q³ and its mean (sinh q/q − 1)/q. The pessimistic end below the frozen point. A driving force
+ * in the law counts with the slope and mean of its own least-squares line.
  */
 export function straightRateCurve(law: SharedLaw, p: LawParameters, melting?: MeltingData): RateCurve {
   const q = p.bend;
   const small = Math.abs(q) < 0.02;
   const slope = small ? 1 + (q * q) / 10 + q ** 4 / 280 : (3 * (q * Math.cosh(q) - Math.sinh(q))) / q ** 3;
   const mean = small ? q / 6 + q ** 3 / 120 : (Math.sinh(q) / q - 1) / q;
-  const energy = p.energyJPerMol * slope;
-  const lnRateAtMiddle = p.lnRateAtMiddle - ((p.energyJPerMol * law.dxPerK) / GAS_CONSTANT) * mean;
+  const drive = drivingLine(law);
+  const energy = p.energyJPerMol * slope - drive.energyJPerMol;
+  const lnRateAtMiddle = p.lnRateAtMiddle - ((p.energyJPerMol * law.dxPerK) / GAS_CONSTANT) * mean + drive.mean;
   return withDrive(
     {
       lnRate: (T) => lnRateAtMiddle - (energy / GAS_CONSTANT) * (1 / T - law.x0PerK),
@@ -75,9 +80,25 @@ export function straightRateCurve(law: SharedLaw, p: LawParameters, melting?: Me
       breaksK: [],
       exponent: p.avramiExponent,
     },
-    law.highestMeasuredK,
+    { ...law, driving: undefined },
     melting,
   );
+}
+
+const LINE_POINTS = 41;
+
+/** Least-squares line of the law's ln D, even in 1/T over its measured span: mean, and R × slope in J/mol. */
+function drivingLine(law: SharedLaw): { mean: number; energyJPerMol: number } {
+  if (!law.driving) return { mean: 0, energyJPerMol: 0 };
+  // The scale reaches to temperatures as measured; those of the material stay below melting.
+  const [from, to] = [1 / law.highestMeasuredK, 1 / law.lowestMeasuredK];
+  const x = Array.from({ length: LINE_POINTS }, (_, k) => from + ((to - from) * k) / (LINE_POINTS - 1) - law.x0PerK);
+  const drive = relativeDriving(law);
+  const line = fitLine(
+    x,
+    x.map((v) => drive(1 / (law.x0PerK + v))),
+  );
+  return { mean: line.intercept, energyJPerMol: GAS_CONSTANT * line.slope };
 }
 
 /** ln[1 − exp(−Δμ/RT)]; −∞ from the melting temperature up. Without an enthalpy the factor is 1 below melting. */
@@ -87,8 +108,16 @@ function lnDrivingForce({ meltingK, enthalpyJPerMol }: MeltingData, temperatureK
   return lnDrivingFactor(turnbullDrivingForce({ temperatureK: meltingK, enthalpyJPerMol }, temperatureK), temperatureK);
 }
 
-/** The law was fitted with the driving force in it: it enters only above the measured temperatures, relative to its value at the highest. */
-function withDrive(curve: RateCurve, highestMeasuredK: number, melting?: MeltingData): RateCurve {
+/**
+ * A law without a factor of its own was fitted with the driving force in it: it then enters only above the measured temperatures, relative to
+ * its value at the highest. Either way nothing crystallises from melting up.
+ */
+function withDrive(
+  curve: RateCurve,
+  { driving, highestMeasuredK }: Pick<SharedLaw, 'driving' | 'highestMeasuredK'>,
+  melting?: MeltingData,
+): RateCurve {
+  if (driving) return { ...curve, breaksK: [...curve.breaksK, driving.temperatureK] };
   if (!melting) return curve;
   const fromK = Math.min(highestMeasuredK, melting.meltingK - 1);
   const reference = lnDrivingForce(melting, fromK);

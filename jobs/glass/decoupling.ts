@@ -1,7 +1,7 @@
 import type { SharedLaw, SharedLawDraws } from '../../schema/wire/shared-law.ts';
-import { bentLogRate } from '../laws/bend.ts';
 import { fitLine } from '../numeric/line.ts';
 import { lnDrivingFactor, type Melting, thompsonSpaepenDrivingForce, turnbullDrivingForce } from './driving-force.ts';
+import { lnRateCurve, lnRateOf, type RateLaw } from './shared-law-values.ts';
 import { log10Viscosity, type ViscosityLaw } from './viscosity.ts';
 
 /** Published trend ξ ≈ 1.1 − 0.005 m (Ediger, Harrowell & Yu 2008, J. Chem. Phys. 128:034709; the two coefficients from memory). */
@@ -28,14 +28,6 @@ const BELOW_MELTING = 0.97;
 /** The liquid must span this much of 1/T (as T difference ÷ T) for a slope. */
 const LEAST_SPAN = 0.01;
 
-/** ln K of the shared law at T; K in 1/s. */
-export function lnRateOf(
-  law: Pick<SharedLaw, 'lnRateAtMiddle' | 'energyJPerMol' | 'bend' | 'x0PerK' | 'dxPerK'>,
-  T: number,
-): number {
-  return law.lnRateAtMiddle + bentLogRate(1 / T, law.energyJPerMol, law.bend, { x0: law.x0PerK, dx: law.dxPerK });
-}
-
 /**
  * ξ of K ∝ η^−ξ [1 − exp(−Δμ/(R T))] as the slope of ln K − ln(driving factor) against −ln η over the measured temperatures of the
  * supercooled liquid, for the law and for each of its draws. Holds if nuclei pre-exist: with nucleation on heating K carries both.
@@ -61,16 +53,18 @@ export function fitDecoupling(
   );
   const mobility = T.map((t) => -Math.LN10 * log10Viscosity(viscosity, t));
   const driving = T.map((t) => (melting ? lnDrivingFactor(DRIVING_FORCES[force](melting, t), t) : 0));
-  const slope = (l: Parameters<typeof lnRateOf>[0]): number =>
-    fitLine(
+  const slope = (l: RateLaw): number => {
+    const lnRate = lnRateCurve(l);
+    return fitLine(
       mobility,
-      T.map((t, k) => lnRateOf(l, t) - driving[k]),
+      T.map((t, k) => lnRate(t) - driving[k]),
     ).slope;
-  const scale = { x0PerK: law.x0PerK, dxPerK: law.dxPerK };
+  };
+  const held = { x0PerK: law.x0PerK, dxPerK: law.dxPerK, driving: law.driving };
   return {
     exponent: slope(law),
     drawn: Float64Array.from(draws.bend, (bend, k) =>
-      slope({ ...scale, bend, lnRateAtMiddle: draws.lnRateAtMiddle[k], energyJPerMol: draws.energyJPerMol[k] }),
+      slope({ ...held, bend, lnRateAtMiddle: draws.lnRateAtMiddle[k], energyJPerMol: draws.energyJPerMol[k] }),
     ),
     lowK,
     highK,

@@ -4,7 +4,7 @@ import type { GlassFacts } from '../../schema/wire/verdicts.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import { mean, standardDeviation } from '../numeric/statistics.ts';
 import { fitDecoupling, trendDecoupling } from './decoupling.ts';
-import type { Melting } from './driving-force.ts';
+import { meltingOf } from './driving-force.ts';
 import { fitMoynihan, type MoynihanFit } from './fragility.ts';
 import { makeParameter, type RowBase } from './rows.ts';
 import { stabilityNumbers } from './stability.ts';
@@ -121,13 +121,6 @@ export function readGlass(sample: string, facts: GlassFacts): GlassState {
 }
 
 const slowest = (seen: { temperatureK: number }[]): number | undefined => seen[0]?.temperatureK;
-
-/** A mole of the unit that attaches: the sheet's molar mass says which (alloys: mean molar mass per atom). */
-export function meltingOf({ meltingK, meltingEnthalpyJPerKg, molarMassKgPerMol }: GlassFacts): Melting | undefined {
-  if (meltingK === undefined || meltingEnthalpyJPerKg === undefined || molarMassKgPerMol === undefined)
-    return undefined;
-  return { temperatureK: meltingK, enthalpyJPerMol: meltingEnthalpyJPerKg * molarMassKgPerMol };
-}
 
 /** ξ, stability numbers and what to say of them, for one event. */
 export function glassOfEvent(

@@ -1,7 +1,7 @@
 import type { PlotCurve } from '../../schema/wire/verdicts.ts';
-import { localEnergy } from '../laws/bend.ts';
-import { standardDeviation } from '../numeric/statistics.ts';
-import { lnRateOf, log10GrowthRate } from './decoupling.ts';
+import { log10GrowthRate } from './decoupling.ts';
+import { localEnergyBand } from './rows.ts';
+import { lnRateOf } from './shared-law-values.ts';
 import type { BendAnalysis } from './verdict/analyse.ts';
 import type { JudgedEvent } from './verdict/collect.ts';
 import type { ConditionValue } from './verdict/condition.ts';
@@ -57,13 +57,10 @@ export function kissingerPlot(judged: JudgedEvent, a: BendAnalysis): PlotCurve {
 }
 
 /** Local activation energy against temperature with its 95 % band from the draws. */
-export function energyPlot({ law, draws }: SharedFit, t: number): PlotCurve {
-  const scale = { x0: law.x0PerK, dx: law.dxPerK };
+export function energyPlot(shared: SharedFit, t: number): PlotCurve {
+  const { law } = shared;
   const x = evenly(law.lowestMeasuredK, law.highestMeasuredK, 30);
-  const y = x.map((T) => localEnergy(1 / T, law.energyJPerMol, law.bend, scale) / 1e3);
-  const spread = x.map((T) =>
-    standardDeviation(draws.energyJPerMol.map((e, k) => Math.log(localEnergy(1 / T, e, draws.bend[k], scale)))),
-  );
+  const bands = x.map((T) => localEnergyBand(shared, t, T));
   return {
     kind: 'energy',
     x: { quantity: 'temperature', unit: 'K' },
@@ -72,9 +69,9 @@ export function energyPlot({ law, draws }: SharedFit, t: number): PlotCurve {
       {
         name: 'shared law',
         x,
-        y,
-        lower: y.map((v, k) => v * Math.exp(-t * spread[k])),
-        upper: y.map((v, k) => v * Math.exp(t * spread[k])),
+        y: bands.map((b) => b.value),
+        lower: bands.map((b) => b.lower),
+        upper: bands.map((b) => b.upper),
       },
     ],
   };

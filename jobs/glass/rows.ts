@@ -1,8 +1,8 @@
 import type { FlagCode } from '../../schema/wire/flags.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
-import { localEnergy } from '../laws/bend.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import { standardDeviation } from '../numeric/statistics.ts';
+import { localEnergyOf } from './shared-law-values.ts';
 import type { SharedFit } from './verdict/shared-law.ts';
 
 /** What rows of one event share. */
@@ -45,21 +45,32 @@ export function makeParameter(
 
 const ENERGY_POINTS = 5;
 
+/**
+ * E_loc at T with its 95 % ends, kJ/mol, even on a log scale. Draws scatter in the bent part; what the driving force takes off is known.
+ * @param t Student's quantile for the draws
+ */
+export function localEnergyBand(
+  { law, draws }: SharedFit,
+  t: number,
+  T: number,
+): { value: number; lower: number; upper: number } {
+  const value = localEnergyOf(law, T) / 1e3;
+  const u = (1 / T - law.x0PerK) / law.dxPerK;
+  const logs = draws.energyJPerMol.map((e, k) => Math.log(e) + draws.bend[k] * u);
+  const bent = localEnergyOf({ ...law, driving: undefined }, T) / 1e3;
+  const half = (t * standardDeviation(logs) * bent) / value;
+  return { value, lower: value * Math.exp(-half), upper: value * Math.exp(half) };
+}
+
 /** E_loc at five temperatures from the lowest to the highest measured, evenly in 1/T, with the draws' intervals. */
 export function localEnergyRows(base: RowBase, shared: SharedFit, flags: FlagCode[]): ParameterRow[] {
-  const { law, draws, degrees } = shared;
-  const t = studentQuantile(0.975, degrees);
-  const scale = { x0: law.x0PerK, dx: law.dxPerK };
-  const [from, to] = [1 / law.lowestMeasuredK, 1 / law.highestMeasuredK];
+  const t = studentQuantile(0.975, shared.degrees);
+  const [from, to] = [1 / shared.law.lowestMeasuredK, 1 / shared.law.highestMeasuredK];
   return Array.from({ length: ENERGY_POINTS }, (_, k) => {
-    const x = from + ((to - from) * k) / (ENERGY_POINTS - 1);
-    const value = localEnergy(x, law.energyJPerMol, law.bend, scale) / 1e3;
-    const spread = standardDeviation(
-      draws.energyJPerMol.map((e, i) => Math.log(localEnergy(x, e, draws.bend[i], scale))),
-    );
-    const interval = [value * Math.exp(-t * spread), value * Math.exp(t * spread)] as const;
-    return makeParameter(base, 'local_activation_energy', 'shared_law', 'kJ/mol', value, interval, {
-      temperature_K: 1 / x,
+    const T = 1 / (from + ((to - from) * k) / (ENERGY_POINTS - 1));
+    const { value, lower, upper } = localEnergyBand(shared, t, T);
+    return makeParameter(base, 'local_activation_energy', 'shared_law', 'kJ/mol', value, [lower, upper], {
+      temperature_K: T,
       flags,
     });
   });

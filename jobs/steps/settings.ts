@@ -3,8 +3,8 @@ export const STEP_VERSIONS = {
   'read-scan': 1,
   'reduce-scan': 3,
   'fit-sample': 3,
-  'judge-curvature': 1,
-  'forecast-sample': 1,
+  'judge-curvature': 2,
+  'forecast-sample': 2,
 } as const;
 
 /** Draws of the Monte Carlo behind each interval. */

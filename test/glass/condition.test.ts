@@ -1,6 +1,6 @@
 import { describe, expect, test } from 'vitest';
 import { Condition, type ConditionValue } from '../../jobs/glass/verdict/condition.ts';
-import { bentLaw } from '../study/generator/temperature-laws.ts';
+import { bentLaw, decoupledLaw } from '../study/generator/temperature-laws.ts';
 import { exactEvent } from '../study/verdict-events.ts';
 
 const at: ConditionValue = { value: 0, byTemperature: 0, byLogEnergy: 0, byBend: 0 };
@@ -39,6 +39,25 @@ describe('bent law: centroid, peak and T at α = 0.5 against the generator’s i
       });
     }
   }
+});
+
+// An Arrhenius mobility (the generator's MYEGA law with m = 12 − log10 η∞) under a driving force that takes a third off the local energy.
+test.each([1.5, 3])('with a driving force near melting: the three temperatures of the generator, n = %d', (n) => {
+  const former = { glassTransitionK: 500, fragility: 14.93, log10Infinity: -2.93 };
+  const melting = { temperatureK: 850, enthalpyJPerMol: 10_000 };
+  const law = decoupledLaw(former, { decoupling: 0.9, anchorK: 550, lnKAnchor: -3, melting });
+  const mobility = 0.9 * Math.LN10 * 14.93 * R * 500;
+  const scale = { x0: 1 / 600, dx: 2.5e-4 };
+  for (const rate of [0.1, 10, 1000]) {
+    const exact = exactEvent(law, n, rate, { offsetK: 0, lagS: 0, responseShare: 0 }, 840);
+    const truth = { centroid: exact.centroidK, peak: exact.peakK, half: exact.temperatureK[49] };
+    for (const what of ['centroid', 'peak', 'half'] as const) {
+      const c = new Condition(what, n, melting);
+      const T = c.solve(Math.log(rate), 600, law.lnK(600), Math.log(mobility), 0, scale, at);
+      expect(Math.abs(T - truth[what]) / exact.widthK).toBeLessThan(0.01);
+    }
+  }
+  expect(law.localEnergy(730) / mobility).toBeLessThan(0.72);
 });
 
 test('a lag moves the centroid by exactly lag × rate, whatever part of it is a response', () => {

@@ -1,5 +1,6 @@
 import { GAS_CONSTANT } from '../../../schema/wire/units.ts';
 import { type BentScale, bendTerm } from '../../laws/bend.ts';
+import { lnDrivingFactor, type Melting, turnbullDrivingForce } from '../driving-force.ts';
 
 /**
  * At which rate a characteristic temperature of a JMAK event comes to lie at T, for the bent law. The usual peak condition is
@@ -13,6 +14,9 @@ import { type BentScale, bendTerm } from '../../laws/bend.ts';
  *   time centroid: n ln X is the logarithm of an exponential variable (mean −γ, variance π²/6, third moment −2 ζ(3)), and T(ln X) has
  *   T' = G, T'' = G G1, T''' = G (G1² + G G2), so that the mean of T lies at ln X = −γ/n − d with
  *   d = −G1 (v + d²)/2 − (G1² + G G2)(μ + 3 v d)/6.
+ *
+ * With a driving force K carries D(T)/D(1/x0), D = 1 − exp(−γ), γ = (ΔH/R)(1/T − 1/Tm): every node is weighted by D(T')/D(T), and with
+ * L = d ln K/dT = 1/g + d ln D/dT in the place of 1/g, G1 = 1 − G L and G2 = −(G1 L + G dL/dT).
  */
 export type Characteristic = 'centroid' | 'peak' | 'half';
 
@@ -30,6 +34,7 @@ const LEAST_PART = 0.05;
 
 /** Newton stops at a step of this part of T: what is left is its square. */
 const ENOUGH = 1e-5;
+const BELOW_MELTING = 0.9995;
 
 /** ln β at T with its derivatives; made once, filled in place. */
 export interface ConditionValue {
@@ -47,14 +52,26 @@ export class Condition {
   private readonly mean: number;
   private readonly variance: number;
   private readonly third: number;
+  /** ΔH/R, K; 0 without a driving force */
+  private readonly enthalpyK: number;
+  private readonly meltingPerK: number;
 
   constructor(
     private readonly what: Characteristic,
     private readonly n: number,
+    /** what carries the driving force, if the law has one */
+    readonly driving?: Melting,
   ) {
     this.mean = -EULER / n;
     this.variance = (Math.PI * Math.PI) / (6 * n * n);
     this.third = (-2 * ZETA3) / n ** 3;
+    this.enthalpyK = driving ? driving.enthalpyJPerMol / GAS_CONSTANT : 0;
+    this.meltingPerK = driving ? 1 / driving.temperatureK : 0;
+  }
+
+  /** The same condition for a law with the driving force of a melting crystal. */
+  withDriving(driving: Melting): Condition {
+    return new Condition(this.what, this.n, driving);
   }
 
   /** @param lnK0 ln K at the scale's middle   @param lnEnergy ln(E0 / (J/mol))   @param q bend parameter */
@@ -65,6 +82,7 @@ export class Condition {
     const A = (energy0 * scale.dx) / GAS_CONSTANT;
     const local = Math.exp(q * u);
     const c = 1 / (A * local);
+    const { enthalpyK, meltingPerK } = this;
     let G = 0;
     let byLogEnergy = 0;
     let byBend = 0;
@@ -75,9 +93,14 @@ export class Condition {
       const step = small ? s * (1 - z / 2 + (z * z) / 3) : Math.log1p(z) / q;
       const at = u + step;
       const Tk = 1 / (scale.x0 + scale.dx * at);
-      const w = (WEIGHTS[k] * Tk * Tk) / (A * local * (1 + z));
+      let w = (WEIGHTS[k] * Tk * Tk) / (A * local * (1 + z));
+      let byStep = -2 * scale.dx * Tk - q;
+      if (enthalpyK > 0) {
+        const drive = -Math.expm1(-enthalpyK * (1 / Tk - meltingPerK));
+        w *= drive;
+        byStep += (scale.dx * enthalpyK * (1 - drive)) / drive;
+      }
       G += w;
-      const byStep = -2 * scale.dx * Tk - q;
       byLogEnergy += w * (-1 + byStep * (-s / (1 + z)));
       // d step/dq at fixed T: z grows as q e^(−q u).
       const moves = small ? -u * s - 0.5 * s * s : ((s * (1 - q * u)) / (1 + z) - step) / q;
@@ -90,14 +113,31 @@ export class Condition {
     const g = T * T * scale.dx * c;
     const perEnergy = g / (T * T);
     const g1 = perEnergy * (2 * T + q / scale.dx);
-    const G1 = 1 - G / g;
-    const G2 = ((G * g1) / g - G1) / g;
+    let L = 1 / g;
+    let slopeOfL = -g1 / (g * g);
+    let lnDrive = 0;
+    if (enthalpyK > 0) {
+      const drive = -Math.expm1(-enthalpyK * (1 / T - meltingPerK));
+      const perDrive = enthalpyK / (T * T * drive);
+      const fall = perDrive * (1 - drive);
+      L -= fall;
+      slopeOfL += (2 * fall) / T - perDrive * fall;
+      lnDrive = Math.log(drive) - this.lnReference(scale);
+      G /= drive;
+    }
+    const G1 = 1 - G * L;
+    const G2 = -(G1 * L + G * slopeOfL);
     const own = this.lnExtended(G, G1, G2);
-    out.value = lnK0 - A * term.value + Math.log(G) - own.lnX;
-    out.byTemperature = 1 / g + G1 / G - own.byG1 * G2;
+    out.value = lnK0 - A * term.value + lnDrive + Math.log(G) - own.lnX;
+    out.byTemperature = L + G1 / G - own.byG1 * G2;
     // G1 goes as 1/E0, and with q as the slope of g does.
     out.byLogEnergy = -A * term.value + byLogEnergy + own.byG1 * G1;
     out.byBend = -A * term.byQ + byBend - own.byG1 * (perEnergy / scale.dx - u * G1);
+  }
+
+  /** ln D at the middle of the scale, where ln K is ln K0. */
+  private lnReference({ x0 }: BentScale): number {
+    return this.driving ? lnDrivingFactor(turnbullDrivingForce(this.driving, 1 / x0), 1 / x0) : 0;
   }
 
   private lnExtended(G: number, G1: number, G2: number): { lnX: number; byG1: number } {
@@ -121,11 +161,13 @@ export class Condition {
     scale: BentScale,
     out: ConditionValue,
   ): number {
-    let T = start;
+    // At melting nothing drives the crystal: the condition is looked for below it.
+    const top = this.driving ? BELOW_MELTING * this.driving.temperatureK : Number.POSITIVE_INFINITY;
+    let T = Math.min(start, top);
     for (let i = 0; i < 30; i++) {
       this.evaluate(T, lnK0, lnEnergy, q, scale, out);
       const step = (lnRate - out.value) / out.byTemperature;
-      T += Math.max(-0.1 * T, Math.min(0.1 * T, step));
+      T = Math.min(T + Math.max(-0.1 * T, Math.min(0.1 * T, step)), (T + top) / 2, top);
       if (!(Math.abs(step) > ENOUGH * T)) break;
     }
     return T;

@@ -9,9 +9,10 @@ import type {
   VerdictRow,
 } from '../../../schema/wire/verdicts.ts';
 import { LAWS } from '../../../schema/wire/verdicts.ts';
-import { localEnergy } from '../../laws/bend.ts';
 import { createRandom } from '../../numeric/random.ts';
 import { median } from '../../numeric/statistics.ts';
+import { meltingOf } from '../driving-force.ts';
+import { localEnergyOf } from '../shared-law-values.ts';
 import { adviseScans } from './advice.ts';
 import { analyseBend, type BendAnalysis, bendOf, degreesLeft, settleBend } from './analyse.ts';
 import { collectJudged, type JudgedEvent, lawData } from './collect.ts';
@@ -68,7 +69,17 @@ export function judgeEvent(
         ? decide(analysis, !judged.hasCentroid, judged.widths)
         : { verdict: 'undecided', reason: 'fit-failed', missing: 0 };
   const shared =
-    analysis && fitSharedLaw(input.sample, judged, analysis, decision.verdict, glassTransitionK, random, input.draws);
+    analysis &&
+    fitSharedLaw(
+      input.sample,
+      judged,
+      analysis,
+      decision.verdict,
+      glassTransitionK,
+      random,
+      input.draws,
+      meltingOf(input.facts),
+    );
   const lags = analysis ? lagEvidence(judged, analysis, decision) : [];
   const advice =
     analysis && decision.reason === 'interval-wide'
@@ -147,12 +158,7 @@ function makeRow(
   const best = (names: readonly string[]) =>
     Math.min(...laws.filter((l) => names.includes(l.law)).map((l) => l.aicc ?? Number.POSITIVE_INFINITY));
   const energy = (T: number | undefined) =>
-    shared && T !== undefined
-      ? localEnergy(1 / T, shared.law.energyJPerMol, shared.law.bend, {
-          x0: shared.law.x0PerK,
-          dx: shared.law.dxPerK,
-        }) / 1e3
-      : undefined;
+    shared && T !== undefined ? localEnergyOf(shared.law, T) / 1e3 : undefined;
   return {
     sample,
     event: judged.event,

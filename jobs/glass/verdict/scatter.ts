@@ -60,19 +60,26 @@ export function applyScatter(d: LawData, own: Float64Array, scatter: Scatter): v
   for (let i = 0; i < d.n; i++) d.variance[i] = own[i] ** 2 + scatter.varianceK2[d.instrument[i]];
 }
 
+/** A combination of parameters: weight by index. */
+export type Combination = readonly (readonly [at: number, weight: number])[];
+
 /**
- * Degrees of freedom behind the standard error of parameter `at` (Satterthwaite 1946, Biometrics Bull. 2:110): each instrument's share of
- * the variance counts with the scatter's own degrees of freedom, the priors' share as known.
+ * Degrees of freedom behind the standard error of a combination of parameters (Satterthwaite 1946, Biometrics Bull. 2:110): each
+ * instrument's share of the variance counts with the scatter's own degrees of freedom, the priors' share as known.
  */
-export function effectiveDegrees(d: LawData, fit: LawFit, at: number, degrees: Float64Array): number {
+export function effectiveDegrees(d: LawData, fit: LawFit, of: number | Combination, degrees: Float64Array): number {
   const { inverse, jacobian, layout } = fit;
   if (!inverse) return LEAST_DEGREES;
   const { p, rows } = layout;
+  const along = new Float64Array(p);
+  for (const [at, weight] of typeof of === 'number' ? [[of, 1] as const] : of) {
+    for (let b = 0; b < p; b++) along[b] += weight * inverse[at * p + b];
+  }
   const shares = new Float64Array(d.instruments);
   let total = 0;
   for (let k = 0; k < rows; k++) {
     let c = 0;
-    for (let b = 0; b < p; b++) c += inverse[at * p + b] * jacobian[k * p + b];
+    for (let b = 0; b < p; b++) c += along[b] * jacobian[k * p + b];
     total += c * c;
     if (k < d.n) shares[d.instrument[k]] += c * c;
   }

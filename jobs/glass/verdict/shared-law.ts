@@ -4,11 +4,13 @@ import { localEnergy } from '../../laws/bend.ts';
 import { studentQuantile } from '../../numeric/distributions.ts';
 import type { Random } from '../../numeric/random.ts';
 import { mean, median } from '../../numeric/statistics.ts';
+import type { Melting } from '../driving-force.ts';
 import { type BendAnalysis, trueLimits } from './analyse.ts';
+import { believeBend } from './bend-belief.ts';
 import { exponentOfCurve, exponentOfWidth, type JudgedEvent } from './collect.ts';
 import { Condition, type ConditionValue } from './condition.ts';
-import { type LawData, type LawFit, LawProblem, type LawSettings } from './law-fit.ts';
-import { effectiveDegrees } from './scatter.ts';
+import { type LawData, type LawFit, LawProblem } from './law-fit.ts';
+import { type Combination, effectiveDegrees } from './scatter.ts';
 
 export interface SharedFit {
   law: SharedLaw;
@@ -25,8 +27,9 @@ export interface SharedFit {
 /**
  * The law that goes into forecasts: JMAK with the verdict's K(T) over all scans of the event. ln K0, E0 and q come from the characteristic
  * temperatures with each instrument's offset within what calibration allows and every lag free; n from the shape of every curve under that
- * law, so that a lag, which moves a curve as a whole, cannot reach it. `straight` and `instrument` hold q at 0, `material` leaves it free;
- * `undecided` takes the law that AICc favours, with the lags as that law has them.
+ * law, so that a lag, which moves a curve as a whole, cannot reach it. `straight` and `instrument` hold q at 0, `material` leaves it free,
+ * `undecided` holds it at its mean over both; the draws of all but `material` carry the bend that the data leave open (bend-belief.ts).
+ * @param melting where it is known, a law that may bend carries the driving force
  */
 export function fitSharedLaw(
   sample: string,
@@ -36,11 +39,12 @@ export function fitSharedLaw(
   glassTransitionK: number | undefined,
   random: Random,
   draws: number,
+  melting?: Melting,
 ): SharedFit {
-  const settings = settingsOf(a, verdict);
-  const d = widenLags(a, settings);
-  const problem = new LawProblem(d, settings);
-  const fit = problem.fit([a.full.lnK0, a.full.lnEnergy, a.full.q]);
+  const driven =
+    melting && verdict !== 'straight' && verdict !== 'instrument' ? fitLawOf(a, verdict, melting) : undefined;
+  const { d, problem, fit, openBend } = driven ?? fitLawOf(a, verdict, undefined)!;
+  const { driving } = d.condition;
   const trueK = Float64Array.from({ length: d.n }, (_, i) =>
     materialK(d.temperatureK[i] - fit.residualK[i], fit, d, i),
   );
@@ -53,22 +57,22 @@ export function fitSharedLaw(
     bend: new Float64Array(draws),
     avramiExponent: new Float64Array(draws),
   };
-  // Student's t is taken with n − p by whoever reads the draws; the weights are estimates, and an instrument with few scans has fewer.
   const degrees = Math.max(1, d.n - fit.layout.p + d.instruments);
-  const real = studentQuantile(0.975, effectiveDegrees(d, fit, 1, a.scatter.degrees)) * a.inflation;
-  const stretch = Math.max(1, real / studentQuantile(0.975, degrees)) * Math.max(1, 1 / Math.sqrt(meanSquare(a)));
+  const stretch = stretchOf(a, d, fit, degrees, low, high);
   const T = new Float64Array(d.n);
   const priors = new Float64Array(fit.layout.rows - d.n);
   const pick = new Float64Array(d.n);
+  const free = fit.layout.bend >= 0;
   for (let k = 0; k < draws; k++) {
-    resample(a, fit, random, T);
+    resample(a, d, fit, random, T);
     for (let i = 0; i < priors.length; i++) priors[i] = random.normal();
     for (let i = 0; i < d.n; i++) pick[i] = exponents[random.integer(d.n)];
-    const { parameters: x, converged } = problem.draw(fit.parameters, T, priors);
+    const q = free ? undefined : fit.q + openBend * random.normal();
+    const { parameters: x, converged } = problem.draw(fit.parameters, T, priors, q);
     const wide = (drawnValue: number, value: number) => value + (converged ? stretch * (drawnValue - value) : 0);
     drawn.lnRateAtMiddle[k] = wide(x[0], fit.lnK0);
     drawn.energyJPerMol[k] = Math.exp(wide(x[1], fit.lnEnergy));
-    drawn.bend[k] = fit.layout.bend >= 0 ? wide(x[2], fit.q) : fit.q;
+    drawn.bend[k] = wide(q ?? x[2], fit.q);
     drawn.avramiExponent[k] = mean(pick);
   }
   return {
@@ -85,6 +89,7 @@ export function fitSharedLaw(
       lowestMeasuredK: low,
       highestMeasuredK: high,
       ...(glassTransitionK !== undefined && { glassTransitionK }),
+      ...(driving && { driving }),
     },
     draws: drawn,
     fit,
@@ -94,25 +99,66 @@ export function fitSharedLaw(
   };
 }
 
-/** Lags free, as in the verdict itself: measured over campaigns with wrong calibrations, their error then hardly reaches the intervals of E. */
-function settingsOf(a: BendAnalysis, verdict: Verdict): LawSettings {
-  const free = a.full.settings;
-  if (verdict === 'undecided') return { ...favoured(a).settings, state: a.stateDiffers };
-  return { ...free, bend: verdict === 'material' ? 'free' : 0 };
+/** Nearer to melting than this the driving factor falls so fast that its own error rules the law. */
+const BELOW_MELTING = 0.97;
+
+/**
+ * The verdict's law over all scans, and by how much its held q may still move (one standard deviation).
+ * @param melting  @returns undefined where the driving force does not go with the measured temperatures
+ */
+function fitLawOf(a: BendAnalysis, verdict: Verdict, melting: Melting | undefined) {
+  const lags = verdict === 'undecided' ? favoured(a).settings.lags : a.full.settings.lags;
+  const base = widenLags(a);
+  if (melting && !(trueLimits(base, a.full).high < BELOW_MELTING * melting.temperatureK)) return undefined;
+  const d = melting ? { ...base, condition: base.condition.withDriving(melting) } : base;
+  const near = [a.full.lnK0, a.full.lnEnergy, a.full.q];
+  const state = a.full.settings.state;
+  const free = new LawProblem(d, { bend: 'free', lags, state });
+  const bent = free.fit(near);
+  if (melting && !bent.converged) return undefined;
+  if (verdict === 'material') return { d, problem: free, fit: bent, openBend: 0 };
+  const belief = believeBend(a, bent);
+  const centre = verdict === 'undecided' ? belief.mean : 0;
+  const problem = new LawProblem(d, { bend: centre, lags, state });
+  const openBend = Math.sqrt(belief.meanSquare + centre * (centre - 2 * belief.mean));
+  return { d, problem, fit: problem.fit([bent.lnK0, bent.lnEnergy]), openBend };
 }
 
 /**
  * Calibration's error of each lag, widened by as many times as the lag that the data ask for lies from it in joint standard errors, where that
- * is more than one (Birge 1932, Phys. Rev. 40:207): a contradiction too small to be called still belongs in the interval of E.
+ * is more than one (Birge 1932, Phys. Rev. 40:207): a contradiction too small to be called still belongs in the interval of E. Counts where
+ * lags are held to calibration.
  */
-function widenLags({ data: d, full, laws }: BendAnalysis, settings: LawSettings): LawData {
-  const free = settings.bend === 'free' ? full : laws.L;
-  const { layout, inverse } = free;
+function widenLags({ data: d, full }: BendAnalysis): LawData {
+  const { layout, inverse } = full;
   const lagSeS = d.lagSeS.map((se, j) => {
     const own = inverse ? Math.sqrt(inverse[layout.lag[j] * (layout.p + 1)]) / d.topRate[j] : 0;
-    return se * Math.max(1, Math.abs(free.lagS[j]) / Math.hypot(se, own));
+    return se * Math.max(1, Math.abs(full.lagS[j]) / Math.hypot(se, own));
   });
   return { ...d, lagSeS };
+}
+
+/**
+ * Student's t is taken with n − p by whoever reads the draws. The weights are estimates, and an instrument with few scans has fewer degrees
+ * of freedom: the draws are stretched to what the local energies at both ends and in the middle need.
+ */
+function stretchOf(a: BendAnalysis, d: LawData, fit: LawFit, degrees: number, low: number, high: number): number {
+  const ends = fit.layout.bend >= 0 ? [low, high].map((T) => (1 / T - d.scale.x0) / d.scale.dx) : [0];
+  const real = Math.max(
+    ...ends.map((u) => {
+      const energyThere: Combination =
+        u === 0
+          ? [[1, 1]]
+          : [
+              [1, 1],
+              [2, u],
+            ];
+      return studentQuantile(0.975, effectiveDegrees(d, fit, energyThere, a.scatter.degrees));
+    }),
+  );
+  return (
+    Math.max(1, (real * a.inflation) / studentQuantile(0.975, degrees)) * Math.max(1, 1 / Math.sqrt(meanSquare(a)))
+  );
 }
 
 /** Of the four laws the one with the lowest AICc; the plainest where the scans are too few for the others. */
@@ -140,7 +186,7 @@ const materialK = (T: number, fit: LawFit, d: LawData, i: number): number =>
 
 /** n a scan under a fitted law: from its curve, or from its width where it has no curve. */
 export function exponentsUnder(judged: JudgedEvent, d: LawData, fit: LawFit): Float64Array {
-  const half = new Condition('half', 1);
+  const half = new Condition('half', 1, d.condition.driving);
   const at: ConditionValue = { value: 0, byTemperature: 0, byLogEnergy: 0, byBend: 0 };
   return Float64Array.from(judged.scans, (scan, i) => {
     const shift = -fit.offsetK[d.instrument[i]] - fit.lagS[d.instrument[i]] * d.rate[i] - fit.residualK[i];
@@ -163,7 +209,7 @@ function meanSquare({ data: d, full }: BendAnalysis): number {
  * Whole residuals of randomly chosen scans, divided by their own standard error and multiplied by the target's, times 1/√(1 − leverage), on
  * the law's temperatures. Residuals come from the law with bend and lags free, so that neither counts as scatter.
  */
-function resample({ data: d, full }: BendAnalysis, fit: LawFit, random: Random, out: Float64Array): void {
+function resample({ full }: BendAnalysis, d: LawData, fit: LawFit, random: Random, out: Float64Array): void {
   for (let i = 0; i < d.n; i++) {
     const from = random.integer(d.n);
     const lift = Math.sqrt(d.variance[i] / (d.variance[from] * (1 - full.leverage[from])));
