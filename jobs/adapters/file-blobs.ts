@@ -17,12 +17,23 @@ const PART_AGE_MS = 86_400_000;
 
 const isMissing = (error: unknown) => (error as { code?: string }).code === 'ENOENT';
 
+export interface FileBlobsOptions {
+  /**
+   * Small derived blobs are written and read within the call. Each asynchronous call goes to another thread and back, which
+   * takes three times the time of the call itself; a process that answers requests must not wait for a disk all the same.
+   */
+  blocking?: boolean;
+}
+
+/** Largest blob that is written within the call, bytes. */
+const AT_ONCE_BYTES = 1e6;
+
 /**
  * Blobs as files below `root`. A blob is written under a temporary name and renamed, so that a key is either absent or
  * whole, also after a crash of the process. Originals are flushed to the disk first, so that they outlast a power cut too;
  * derived blobs are not: a damaged one is made again, and waiting for the disk twice a scan is what a campaign would wait for.
  */
-export function createFileBlobs(root: string): BlobStore {
+export function createFileBlobs(root: string, { blocking = false }: FileBlobsOptions = {}): BlobStore {
   const partsFolder = join(root, 'parts');
   const known = new Set<string>();
 
@@ -52,6 +63,9 @@ export function createFileBlobs(root: string): BlobStore {
       await makeFolder(partsFolder);
       await makeFolder(dirname(path));
       const part = join(partsFolder, randomBytes(12).toString('hex'));
+      const whole = body instanceof Uint8Array && body.byteLength === (length ?? body.byteLength) ? body : undefined;
+      if (blocking && isDerived(key) && whole && whole.byteLength <= AT_ONCE_BYTES)
+        return writeAtOnce(part, path, whole);
       try {
         const file = await open(part, 'wx');
         try {
@@ -71,7 +85,9 @@ export function createFileBlobs(root: string): BlobStore {
       return Readable.toWeb(fs.createReadStream('', { fd: file })) as ReadableStream<Uint8Array>;
     },
     async bytes(key) {
-      const { buffer, byteOffset, byteLength } = await readFile(pathOf(key)).catch(missing(key));
+      const { buffer, byteOffset, byteLength } = blocking
+        ? readAtOnce(pathOf(key), key)
+        : await readFile(pathOf(key)).catch(missing(key));
       return new Uint8Array(buffer, byteOffset, byteLength);
     },
     async has(key) {
@@ -105,6 +121,31 @@ async function removeOldParts(folder: string): Promise<void> {
     const path = join(folder, name);
     const { mtimeMs } = await stat(path).catch(() => ({ mtimeMs: Number.POSITIVE_INFINITY }));
     if (Date.now() - mtimeMs > PART_AGE_MS) await rm(path, { force: true });
+  }
+}
+
+/** A missing blob is found out by a question that throws nothing: most look-ups of a first run miss. */
+function readAtOnce(path: string, key: string): Buffer {
+  if (!fs.statSync(path, { throwIfNoEntry: false })) throw new BlobMissing(key);
+  try {
+    return fs.readFileSync(path);
+  } catch (error) {
+    throw isMissing(error) ? new BlobMissing(key) : error;
+  }
+}
+
+function writeAtOnce(part: string, path: string, bytes: Uint8Array): void {
+  try {
+    const file = fs.openSync(part, 'wx');
+    try {
+      for (let at = 0; at < bytes.byteLength; ) at += fs.writeSync(file, bytes.subarray(at));
+    } finally {
+      fs.closeSync(file);
+    }
+    fs.renameSync(part, path);
+  } catch (error) {
+    fs.rmSync(part, { force: true });
+    throw error;
   }
 }
 

@@ -22,6 +22,8 @@ export interface NodePortsOptions {
   blobsDir?: string;
   /** Worker threads for the computations; 0 computes inline. Default: the cores of the machine. */
   workers?: number;
+  /** The process answers no requests: it may wait for the disk where that is the quicker way. */
+  mute?: boolean;
 }
 
 const isRemote = (url: string) => /^(libsql|https?|wss?):/.test(url);
@@ -44,7 +46,7 @@ export async function openNodePorts(options: NodePortsOptions): Promise<Ports> {
   }
   return {
     database,
-    blobs: createFileBlobs(blobsDir),
+    blobs: createFileBlobs(blobsDir, { blocking: options.mute }),
     queue: createTableQueue(),
     clock: systemClock,
     compute,

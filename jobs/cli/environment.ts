@@ -27,7 +27,7 @@ export const observeOnStderr = (): Observer =>
 /** Stores of a database file given on the command line: blobs/ lies beside it. */
 export function storesOfFile(file: string): NodePortsOptions {
   const path = resolve(file);
-  return { dataDir: dirname(path), databaseUrl: path, blobsDir: join(dirname(path), 'blobs') };
+  return { dataDir: dirname(path), databaseUrl: path, blobsDir: join(dirname(path), 'blobs'), mute: true };
 }
 
 /** Opens the stores for the time of one call. */

@@ -62,8 +62,8 @@ export async function assignCampaign(ports: Ports, job: ClaimedJob): Promise<voi
     ports,
     job,
     (db, now) => [
-      ...changes.insert.map((scan) => insertScan(db, job.campaignId, placed(scan))),
-      ...changes.update.map(({ id, wanted: scan }) => reassignScan(db, id, placed(scan))),
+      ...changes.insert.map((scan) => insertScan(job.campaignId, placed(scan))),
+      ...changes.update.map(({ id, wanted: scan }) => reassignScan(id, placed(scan))),
       ...changes.remove.map((scan) => deleteScan(db, scan.id)),
       ...followFiles(db, job.campaignId),
       ...settleSamples(

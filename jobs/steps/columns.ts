@@ -1,15 +1,15 @@
 import type { ReadOutcome, ReadScan } from '../../schema/wire/scan.ts';
 import type { Ports } from '../ports/index.ts';
 import { hashOf } from '../store/ids.ts';
-import type { FileRow } from '../store/scan-rows.ts';
+import type { ColumnsSource } from '../store/scan-rows.ts';
 import { type ColumnsCache, decodeReadScan, encodeReadScan, readDerived } from './columns-store.ts';
 import { STEP_VERSIONS } from './settings.ts';
 
-export const columnsKeyOf = ({ campaignId, sha256, path }: FileRow): string =>
+export const columnsKeyOf = ({ campaignId, sha256, path }: ColumnsSource): string =>
   `derived/${campaignId}/columns-${hashOf(['read-scan', STEP_VERSIONS['read-scan'], sha256, path])}`;
 
 /** The columns of a file: looked up, or read from the original and stored. */
-export async function readOrLookUp(ports: Ports, file: FileRow): Promise<ReadOutcome> {
+export async function readOrLookUp(ports: Ports, file: ColumnsSource): Promise<ReadOutcome> {
   const key = columnsKeyOf(file);
   const stored = await readDerived(ports, key, decodeReadScan);
   if (stored) return { ok: true, scan: stored };
@@ -19,7 +19,7 @@ export async function readOrLookUp(ports: Ports, file: FileRow): Promise<ReadOut
 }
 
 /** The columns of a file that was read: from memory, from their blob, or from the original once more. */
-export async function loadColumns(ports: Ports, file: FileRow, cache: ColumnsCache): Promise<ReadScan> {
+export async function loadColumns(ports: Ports, file: ColumnsSource, cache: ColumnsCache): Promise<ReadScan> {
   const kept = cache.take(columnsKeyOf(file));
   if (kept) return kept;
   const outcome = await readOrLookUp(ports, file);

@@ -7,7 +7,7 @@ import {
   loadFile,
   loadReadyReductions,
   type ReductionRows,
-  type ScanRow,
+  type ScanToReduce,
   saveReadFile,
   saveReduction,
   saveRefusedFile,
@@ -55,8 +55,8 @@ async function reduceAtOnce(
   ports: Ports,
   ready: readonly ReductionRows[],
   columns: ReadScan,
-): Promise<{ scan: ScanRow; found: FoundReduction }[]> {
-  const reductions: { scan: ScanRow; found: FoundReduction }[] = [];
+): Promise<{ scan: ScanToReduce; found: FoundReduction }[]> {
+  const reductions: { scan: ScanToReduce; found: FoundReduction }[] = [];
   for (const [i, rows] of ready.entries()) {
     // Each reduction may hand the columns' memory to another thread; all but the last get a copy.
     const given = () => (i === ready.length - 1 ? columns : structuredClone(columns));

@@ -1,4 +1,4 @@
-import { and, asc, eq, sql } from 'drizzle-orm';
+import { and, eq, sql } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
 import {
   type Disposition,
@@ -9,7 +9,6 @@ import {
   type ReadSheetName,
   samples,
   scans,
-  sheetRows,
 } from '../../schema/tables/index.ts';
 import type { Flag } from '../../schema/wire/flags.ts';
 import type { PeakSheetRow } from '../../schema/wire/forecasts.ts';
@@ -19,6 +18,7 @@ import type { Ports } from '../ports/index.ts';
 import type { Statement } from './fence.ts';
 import { createId } from './ids.ts';
 import { touchSamples } from './job-rows.ts';
+import { allRows, json, text } from './statement.ts';
 
 export interface StoredFile {
   id: string;
@@ -74,19 +74,14 @@ export async function loadPlacedRows<T>(
   sheet: ReadSheetName,
   sample?: string,
 ): Promise<{ path: string; sha256: string; row: T }[]> {
-  const rows = await ports.database.read
-    .select({ path: files.path, sha256: files.sha256, row: sheetRows.body })
-    .from(sheetRows)
-    .innerJoin(files, eq(files.id, sheetRows.fileId))
-    .where(
-      and(
-        eq(sheetRows.campaignId, campaignId),
-        eq(sheetRows.sheet, sheet),
-        sample === undefined ? undefined : sql`json_extract(${sheetRows.body}, '$.sample') = ${sample}`,
-      ),
-    )
-    .orderBy(asc(files.path), asc(sheetRows.position));
-  return rows as { path: string; sha256: string; row: T }[];
+  const ofSample = sample === undefined ? text`` : text`and json_extract(body, '$.sample') = ${sample}`;
+  const rows = await allRows<{ path: string; sha256: string; body: string }>(
+    ports.database.read,
+    text`
+      select path, sha256, body from sheet_rows s join files f on f.id = s.file_id
+      where s.campaign_id = ${campaignId} and sheet = ${sheet} ${ofSample} order by path, position`,
+  );
+  return rows.map(({ path, sha256, body }) => ({ path, sha256, row: JSON.parse(body) as T }));
 }
 
 /** The same rows alone. */
@@ -153,15 +148,21 @@ export interface AssignedScan extends ScanPlace {
   flags: Flag[];
 }
 
-export const insertScan = (db: LibSQLDatabase, campaignId: string, scan: AssignedScan): Statement =>
-  db.insert(scans).values({ id: createId('scan'), campaignId, ...scan });
+export const insertScan = (campaignId: string, s: AssignedScan): Statement =>
+  text`
+    insert into scans (id, campaign_id, file_id, disposition, sample, instrument, role, segment, said, sheet_row, sheet_hash,
+      status, reason, flags)
+    values (${createId('scan')}, ${campaignId}, ${s.fileId}, ${s.disposition}, ${s.sample}, ${s.instrument}, ${s.role}, ${s.segment},
+      ${json(s.said)}, ${json(s.sheetRow)}, ${s.sheetHash}, ${s.status}, ${s.reason}, ${json(s.flags)})`;
 
 /** Gives a scan its new place; what was reduced from the old one no longer counts. */
-export const reassignScan = (db: LibSQLDatabase, scanId: string, scan: AssignedScan): Statement =>
-  db
-    .update(scans)
-    .set({ ...scan, reducedKey: null, result: null, eventNumbers: null, inputsRevision: sql`inputs_revision + 1` })
-    .where(eq(scans.id, scanId));
+export const reassignScan = (scanId: string, s: AssignedScan): Statement =>
+  text`
+    update scans set file_id = ${s.fileId}, disposition = ${s.disposition}, sample = ${s.sample}, instrument = ${s.instrument},
+      role = ${s.role}, segment = ${s.segment}, said = ${json(s.said)}, sheet_row = ${json(s.sheetRow)}, sheet_hash = ${s.sheetHash},
+      status = ${s.status}, reason = ${s.reason}, flags = ${json(s.flags)}, reduced_key = null, result = null,
+      event_numbers = null, inputs_revision = inputs_revision + 1
+    where id = ${scanId}`;
 
 export const deleteScan = (db: LibSQLDatabase, scanId: string): Statement =>
   db.delete(scans).where(eq(scans.id, scanId));

@@ -41,6 +41,13 @@ export async function claimJobs(ports: Ports, options: ClaimOptions): Promise<Cl
   const due = eager
     ? text`(next_try_at <= ${now} or (step = 'assign-scans' and attempts = 0))`
     : text`next_try_at <= ${now}`;
+  // Sheets first: an assignment by folder names would be made anew by the sheet. A message asks for one job and gets it.
+  const ripe =
+    jobId === undefined
+      ? text`(step <> 'assign-scans' or not exists (
+          select 1 from jobs sheet where sheet.campaign_id = jobs.campaign_id and sheet.state in ('queued', 'running')
+            and sheet.step in ('read-sheet', 'unpack-archive')))`
+      : text`1`;
   const within = text`${campaignId === undefined ? text`1` : text`campaign_id = ${campaignId}`} and ${jobId === undefined ? text`1` : text`id = ${jobId}`}`;
   const lapsed =
     jobId === undefined ? text`leased_until < ${now}` : text`(leased_until < ${now} or leased_by = ${owner})`;
@@ -53,7 +60,7 @@ export async function claimJobs(ports: Ports, options: ClaimOptions): Promise<Cl
       where id in (
         select id from (
           select * from (
-            select id, priority, rowid as row from jobs where state = 'queued' and ${due} and ${within}
+            select id, priority, rowid as row from jobs where state = 'queued' and ${due} and ${within} and ${ripe}
               and not exists (select 1 from jobs twin where twin.step = jobs.step and twin.subject = jobs.subject and twin.state = 'running')
             order by priority, rowid limit ${limit})
           union all

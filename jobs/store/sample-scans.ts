@@ -1,7 +1,6 @@
-import { and, asc, eq } from 'drizzle-orm';
-import { files, scans } from '../../schema/tables/index.ts';
 import type { ScanState } from '../../schema/wire/states.ts';
 import type { Ports } from '../ports/index.ts';
+import { allRows, text } from './statement.ts';
 
 export interface SampleScan {
   id: string;
@@ -12,11 +11,11 @@ export interface SampleScan {
 
 /** The scans of a sample with their files, those of standards and blanks apart, ordered by file and id. */
 export async function listSampleScans(ports: Ports, campaignId: string, sample: string): Promise<SampleScan[]> {
-  const rows = await ports.database.read
-    .select({ id: scans.id, file: files.path, instrument: scans.instrument, status: scans.status })
-    .from(scans)
-    .innerJoin(files, eq(scans.fileId, files.id))
-    .where(and(eq(scans.campaignId, campaignId), eq(scans.sample, sample), eq(scans.role, 'sample')))
-    .orderBy(asc(files.path), asc(scans.id));
+  const rows = await allRows<Omit<SampleScan, 'instrument'> & { instrument: string | null }>(
+    ports.database.read,
+    text`
+      select s.id as id, path as file, instrument, status from scans s join files f on f.id = file_id
+      where s.campaign_id = ${campaignId} and sample = ${sample} and role = 'sample' order by path, s.id`,
+  );
   return rows.map((row) => ({ ...row, instrument: row.instrument ?? '' }));
 }

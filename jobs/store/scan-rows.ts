@@ -71,9 +71,18 @@ export function saveFailedFile(db: LibSQLDatabase, campaignId: string, fileId: s
   ];
 }
 
+/** What finding or making the columns of a file takes. */
+export type ColumnsSource = Pick<FileRow, 'campaignId' | 'path' | 'sha256' | 'blobKey'>;
+
+/** What a reduction reads of its scan and what its write-back asks for. */
+export type ScanToReduce = Pick<
+  ScanRow,
+  'id' | 'campaignId' | 'sample' | 'instrument' | 'role' | 'segment' | 'sheetRow' | 'status' | 'inputsRevision'
+>;
+
 export interface ReductionRows {
-  scan: ScanRow;
-  file: FileRow;
+  scan: ScanToReduce;
+  file: ColumnsSource;
   calibration: InstrumentCalibration | null;
   instrumentRow: InstrumentSheetRow | null;
   sampleRow: SampleSheetRow | null;
@@ -82,8 +91,18 @@ export interface ReductionRows {
 const selectReductions = (db: LibSQLDatabase) =>
   db
     .select({
-      scan: scans,
-      file: files,
+      scan: {
+        id: scans.id,
+        campaignId: scans.campaignId,
+        sample: scans.sample,
+        instrument: scans.instrument,
+        role: scans.role,
+        segment: scans.segment,
+        sheetRow: scans.sheetRow,
+        status: scans.status,
+        inputsRevision: scans.inputsRevision,
+      },
+      file: { campaignId: files.campaignId, path: files.path, sha256: files.sha256, blobKey: files.blobKey },
       calibration: instruments.calibration,
       instrumentRow: instruments.sheetRow,
       sampleRow: sql<SampleSheetRow | null>`(
@@ -159,7 +178,7 @@ export async function loadSampleRow(
 
 /** Stores what a reduction found, unless the scan's inputs have changed since they were loaded. */
 export function saveReduction(
-  scan: ScanRow,
+  scan: ScanToReduce,
   found: {
     status: 'reduced' | 'set_aside';
     reason: string | null;

@@ -6,6 +6,7 @@ import type { Ports } from '../ports/index.ts';
 import { LOCAL_LAB } from './campaigns.ts';
 import { type Corrections, standingCorrections } from './correction-rows.ts';
 import { readReducedOrRevive } from './lost-blobs.ts';
+import { allRows, text } from './statement.ts';
 import type { ResultRow } from './tables/index.ts';
 import { loadScanRecord, scanRowsOf } from './tables/scan-table.ts';
 
@@ -44,15 +45,18 @@ export async function findScan(ports: Ports, scanId: string, lab = LOCAL_LAB): P
 
 /** The reduced curves of a scan, its events numbered over all scans of the sample, or undefined when it has none. */
 export async function readReducedScan(ports: Ports, scanId: string): Promise<ReducedScan | undefined> {
-  const [scan] = await ports.database.read
-    .select({ campaignId: scans.campaignId, key: scans.reducedKey, numbers: scans.eventNumbers })
-    .from(scans)
-    .where(and(eq(scans.id, scanId), eq(scans.status, 'reduced')));
+  const [scan] = await allRows<{ campaignId: string; key: string | null; numbers: string | null }>(
+    ports.database.read,
+    text`
+      select campaign_id as campaignId, reduced_key as key, event_numbers as numbers from scans
+      where id = ${scanId} and status = 'reduced'`,
+  );
   if (!scan?.key) return undefined;
   const outcome = await readReducedOrRevive(ports, scan.campaignId, scan.key);
   if (!outcome?.ok) return undefined;
   const { events, ...others } = outcome.reduced;
-  return { ...others, events: events.map((event, i) => ({ ...event, event: scan.numbers?.[i] ?? event.event })) };
+  const numbers: (number | undefined)[] = JSON.parse(scan.numbers ?? '[]');
+  return { ...others, events: events.map((event, i) => ({ ...event, event: numbers[i] ?? event.event })) };
 }
 
 export interface SampleView {

@@ -15,11 +15,14 @@ interface Opened {
 }
 
 const noRuntime = await runtimeProblem();
+async function openFiles(blocking: boolean): Promise<Opened> {
+  const folder = await mkdtemp(join(tmpdir(), 'ratespan-test-'));
+  return { blobs: createFileBlobs(folder, { blocking }), close: () => rm(folder, { recursive: true, force: true }) };
+}
+
 const adapters: Record<string, () => Promise<Opened>> = {
-  'file-blobs': async () => {
-    const folder = await mkdtemp(join(tmpdir(), 'ratespan-test-'));
-    return { blobs: createFileBlobs(folder), close: () => rm(folder, { recursive: true, force: true }) };
-  },
+  'file-blobs': () => openFiles(false),
+  'file-blobs within the call': () => openFiles(true),
   'r2-blobs': async () => {
     const miniflare = new Miniflare({
       modules: [{ type: 'ESModule', path: 'none.js', contents: 'export default { fetch: () => new Response() }' }],

@@ -7,12 +7,12 @@ import { createTableQueue } from '../../jobs/adapters/table-queue.ts';
 import { createArithmeticCompute } from '../runner/arithmetic-compute.ts';
 
 /** The stores of a folder as a process of a fault study has them: its clock is `skewMs` ahead, arithmetic stands in the place of the science. */
-export async function openFaultPorts(dataDir: string, skewMs = 0) {
+export async function openFaultPorts(dataDir: string, { skewMs = 0, blocking = false } = {}) {
   const database = await openFileDatabase(`${dataDir}/ratespan.db`);
   await migrateDatabase(database);
   return {
     database,
-    blobs: createFileBlobs(`${dataDir}/blobs`),
+    blobs: createFileBlobs(`${dataDir}/blobs`, { blocking }),
     queue: createTableQueue(),
     clock: { ...systemClock, now: () => Date.now() + skewMs },
     compute: createArithmeticCompute(),

@@ -28,10 +28,16 @@ const patch = (holder: Record<string, Call>, name: string, before: (...args: nev
   };
 };
 
+const { writeSync } = fs;
 const files = fs as unknown as Record<string, Call>;
 patch(files, 'write', (fd: number, bytes: Uint8Array) =>
-  dieHere(() => fs.writeSync(fd, bytes.subarray(0, bytes.byteLength >> 1))),
+  dieHere(() => writeSync(fd, bytes.subarray(0, bytes.byteLength >> 1))),
 );
+patch(files, 'writeSync', (fd: number, bytes: Uint8Array) =>
+  dieHere(() => writeSync(fd, bytes.subarray(0, bytes.byteLength >> 1))),
+);
+patch(files, 'renameSync', () => dieHere());
+patch(files, 'rmSync', () => dieHere());
 patch(fs.promises as unknown as Record<string, Call>, 'rename', () => dieHere());
 patch(fs.promises as unknown as Record<string, Call>, 'rm', () => dieHere());
 syncBuiltinESMExports();
@@ -45,7 +51,8 @@ const { createRunner } = await import('../../jobs/runner/index.ts');
 const { takeInCampaign } = await import('./fault-campaign.ts');
 const { openFaultPorts } = await import('./fault-ports.ts');
 
-const ports = await openFaultPorts(dataDir);
+// Both ways of writing blobs are swept: every other process waits for the disk within the call.
+const ports = await openFaultPorts(dataDir, { blocking: killAt % 2 === 1 });
 await createRunner(ports, { concurrency: 2, owner }).drain(await takeInCampaign(ports));
 ports.database.close();
 process.stdout.write(`${writes}\n`);

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { campaignStatus, withdrawMissingFiles } from '../../jobs/store/index.ts';
+import { campaignStatus, listJobs, withdrawMissingFiles } from '../../jobs/store/index.ts';
 import { forEachTest } from './each-test.ts';
 import { allTables, drain, rowsOf, send, type TestPorts } from './test-ports.ts';
 
@@ -112,6 +112,16 @@ describe('sheets', () => {
       'reduced',
     ]);
     expect(await rowsOf(ports, campaign, 'flags')).toEqual([]);
+  });
+
+  it('are waited for: files that came with their sheets are assigned once', async () => {
+    for (const n of [1, 2, 4]) await send(ports, campaign, `${n}.txt`, `rate ${n}`);
+    await send(ports, campaign, 'instruments.csv', 'instrument,kind\noven,furnace\n');
+    await send(ports, campaign, 'scans.csv', `${SHEET_HEAD}${[1, 2, 4].map((n) => `${n}.txt,A,oven,5\n`).join('')}`);
+    await drain(ports, campaign);
+    const jobs = await listJobs(ports, { campaignId: campaign });
+    expect(jobs.filter(({ step }) => step === 'assign-scans')).toHaveLength(1);
+    expect((await campaignStatus(ports, campaign)).samples).toMatchObject([{ sample: 'A', state: 'fitted' }]);
   });
 
   it('re-queue only the scan whose row changed, not those whose line moved', async () => {
