@@ -20,16 +20,17 @@ const TOP = 3;
 const MOST_SCANS = 20;
 const UNITS: Record<AdviceRow['goal'], AdviceRow['unit']> = { energy: 'kJ/mol', bend: '1', forecast: 'decades' };
 
-/** Full 95 % width of a goal with further scans; undefined where these scans cannot give it. */
-type Width = (more: readonly Candidate[]) => number | undefined;
+/** Full 95 % width of a goal, now or with `count` further scans of one kind; undefined where the scans cannot give it. */
+export type Width = (more?: Candidate, count?: number) => number | undefined;
 
 /**
  * The three scans that are expected to narrow each goal most, from the linearised covariance with one more row. Rows by goal in
  * the order asked, then by rank. A goal that the scans cannot give at all has no rows.
  */
 export function adviseScans(input: AdviceInput): AdviceRow[] {
+  const ofGoal = widthsOf(input);
   return input.goals.flatMap((goal) => {
-    const width = widthOf(input, goal);
+    const width = ofGoal(goal);
     const weighed = weighScans(input, goal, width);
     const run = input.scans.map((s) => ({ instrument: s.instrument, rateKPerS: s.event.rateKPerS }));
     return weighed.slice(0, TOP).map((w, i): AdviceRow => {
@@ -52,8 +53,8 @@ export function adviseScans(input: AdviceInput): AdviceRow[] {
 }
 
 /** All candidates of a goal, the best first; equal ones by instrument, then rate. */
-export function weighScans(input: AdviceInput, goal: AdviceGoal, width = widthOf(input, goal)): WeighedScan[] {
-  const linear = width([]);
+export function weighScans(input: AdviceInput, goal: AdviceGoal, width = widthsOf(input)(goal)): WeighedScan[] {
+  const linear = width();
   if (linear === undefined || !(linear > 0)) return [];
   const now = goal.now ?? linear;
   const temperature = expectedTemperatures(input);
@@ -70,37 +71,43 @@ export function weighScans(input: AdviceInput, goal: AdviceGoal, width = widthOf
   );
   return candidates
     .flatMap((candidate): WeighedScan[] => {
-      const after = width([candidate]);
+      const after = width(candidate);
       return after === undefined ? [] : [{ ...candidate, now, expected: (now * after) / linear }];
     })
     .sort((a, b) => a.expected - b.expected || compareText(a.instrument, b.instrument) || a.rateKPerS - b.rateKPerS);
 }
 
 /** How many scans like this one are expected to bring the width down to a part of what it is; null where that is out of reach. */
-export function scansToReach(width: Width, { instrument, rateKPerS }: Candidate, part: number): number | null {
-  const now = width([]);
+export function scansToReach(width: Width, candidate: Candidate, part: number): number | null {
+  const now = width();
   if (now === undefined) return null;
-  const more: Candidate[] = [];
-  while (more.length < MOST_SCANS) {
-    more.push({ instrument, rateKPerS });
-    const after = width(more);
-    if (after === undefined) return null;
-    if (after <= part * now) return more.length;
+  const reached = (count: number) => (width(candidate, count) ?? Number.POSITIVE_INFINITY) <= part * now;
+  if (!reached(MOST_SCANS)) return null;
+  // Every further scan narrows it: the smallest number that does is found by halving.
+  let [less, enough] = [0, MOST_SCANS];
+  while (enough - less > 1) {
+    const middle = (less + enough) >> 1;
+    if (reached(middle)) enough = middle;
+    else less = middle;
   }
-  return null;
+  return enough;
 }
 
-/** The width of a goal as a function of further scans; the fits behind it are made once. */
-export function widthOf(input: AdviceInput, goal: AdviceGoal): Width {
-  if (goal.goal === 'energy') return energyWidth(input);
-  const analysis = analyseForAdvice(input, goal.goal);
-  if (!analysis) return () => undefined;
-  const precision = new LawPrecision(analysis);
-  const wanted: LawGoal =
-    goal.goal === 'bend'
-      ? { gradient: [0, 0, analysis.span], exponentVariance: 0 }
-      : forecastGoal(analysis, goal.conversion, goal.temperatureK, input);
-  return (more) => precision.width(wanted, more);
+/** The width of any goal as a function of further scans; the fits behind them are made once, and only where a goal needs them. */
+export function widthsOf(input: AdviceInput): (goal: AdviceGoal) => Width {
+  let made: { analyses: ReturnType<typeof analyseForAdvice> } | undefined;
+  return (goal) => {
+    if (goal.goal === 'energy') return energyWidth(input);
+    made ??= { analyses: analyseForAdvice(input) };
+    const analysis = made.analyses?.[goal.goal];
+    if (!analysis) return () => undefined;
+    const precision = new LawPrecision(analysis);
+    const wanted: LawGoal =
+      goal.goal === 'bend'
+        ? { gradient: [0, 0, analysis.span], exponentVariance: 0, decides: 'bend' }
+        : forecastGoal(analysis, goal.conversion, goal.temperatureK, input);
+    return (more, count) => precision.width(wanted, more, count);
+  };
 }
 
 function energyWidth(input: AdviceInput): Width {
@@ -111,24 +118,32 @@ function energyWidth(input: AdviceInput): Width {
   if (rates.length < 2 || data.n < 3) return () => undefined;
   const precision = new EnergyPrecision(data, modelScatter(data, curves, rates.length), input.energyJPerMol);
   const temperature = expectedTemperatures(input);
-  return (more) => {
-    const width = precision.width(more.map((m) => ({ ...m, temperatureK: temperature(m.rateKPerS) })));
+  return (more, count) => {
+    const width = precision.width(more && { ...more, temperatureK: temperature(more.rateKPerS) }, count);
     return width === undefined ? undefined : width * 1e-3;
   };
 }
 
 /** Temperature of the event expected at a rate, K: along Kissinger's condition with the energy at hand, through the scan nearest in rate. */
 function expectedTemperatures({ scans, energyJPerMol }: AdviceInput): (rateKPerS: number) => number {
+  const lnRates = scans.map((s) => Math.log(s.event.rateKPerS));
+  const known = new Map<number, number>();
   return (rate) => {
-    const near = scans.reduce((a, b) =>
-      Math.abs(Math.log(b.event.rateKPerS / rate)) < Math.abs(Math.log(a.event.rateKPerS / rate)) ? b : a,
-    ).event;
+    const found = known.get(rate);
+    if (found !== undefined) return found;
+    const ln = Math.log(rate);
+    let near = 0;
+    for (let i = 1; i < scans.length; i++) if (Math.abs(lnRates[i] - ln) < Math.abs(lnRates[near] - ln)) near = i;
+    const { peakK } = scans[near].event;
     // ln(β/T²) falls by E/R for each 1/K.
-    let T = near.peakK;
+    let T = peakK;
     for (let i = 0; i < 30; i++) {
-      const step = Math.log(rate / near.rateKPerS) - 2 * Math.log(T / near.peakK);
-      T = 1 / (1 / near.peakK - (GAS_CONSTANT / energyJPerMol) * step);
+      const next = 1 / (1 / peakK - (GAS_CONSTANT / energyJPerMol) * (ln - lnRates[near] - 2 * Math.log(T / peakK)));
+      const step = Math.abs(next - T);
+      T = next;
+      if (step < 1e-12 * T) break;
     }
+    known.set(rate, T);
     return T;
   };
 }

@@ -50,7 +50,8 @@ function answerBy(
   limit: Limit,
   disagree: boolean,
 ): ForecastRow {
-  const drawn = Float64Array.from(m.draws, (draw) => ask.answerDraw(draw, m.estimate));
+  const drawn = new Float64Array(m.draws.length);
+  for (let d = 0; d < drawn.length; d++) drawn[d] = ask.answerDraw(m.draws[d], m.estimate);
   const value = ask.answer(m.estimate);
   const band = bandOf(value, drawn, m.degreesOfFreedom);
   const [lowK, highK] = ask.activeK(m.estimate);

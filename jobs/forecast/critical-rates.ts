@@ -4,8 +4,8 @@ import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { SharedLaw } from '../../schema/wire/shared-law.ts';
 import { type Band, bandOf, expFinite } from './band.ts';
 import { extentOf } from './kinetics.ts';
-import { accumulate, COARSE, FINE, type GaussRule, layPanels, lnIntegral } from './programme.ts';
-import { drawnParameters, type LawParameters, type RateCurve, sharedRateCurve } from './rate-curve.ts';
+import { COARSE, FINE, type GaussRule, layPanels, lnIntegralAlong, type Panels } from './programme.ts';
+import { drawnParameters, type RateCurve, sharedRateCurve } from './rate-curve.ts';
 import { findFastest } from './shared-kinetics.ts';
 
 /** Conversion that counts as crystallised unless another is set. */
@@ -29,18 +29,22 @@ export interface CriticalRates {
 export function findCriticalRates(source: ForecastSource, conversion = CRITICAL_CONVERSION): CriticalRates | undefined {
   const { law, lawDraws, melting, sample, event } = source;
   if (!law || !melting) return undefined;
-  const lnRate = (p: LawParameters, rule: GaussRule) => lnCriticalRate(law, p, melting, conversion, rule);
-  const drawn = Float64Array.from({ length: lawDraws?.bend.length ?? 0 }, (_, d) =>
-    lnRate(drawnParameters(lawDraws!, d), COARSE),
-  );
-  const heatingKPerS = spread(bandOf(lnRate(law, FINE), drawn, source.degreesOfFreedom));
+  const curve = sharedRateCurve(law, law, melting);
+  const panels = meltingRamp(curve, law, melting, FINE);
+  const lnRate = (of: RateCurve, along: Panels) =>
+    lnIntegralAlong(along, of.lnRate) - extentOf(conversion) / of.exponent;
+  // A draw's exponent moves a little more or less over a panel than the estimate's; three nodes bear twice the span.
+  const coarse = meltingRamp(curve, law, melting, COARSE);
+  const drawn = new Float64Array(lawDraws?.bend.length ?? 0);
+  for (let d = 0; d < drawn.length; d++)
+    drawn[d] = lnRate(sharedRateCurve(law, drawnParameters(lawDraws!, d), melting), coarse);
+  const heatingKPerS = spread(bandOf(lnRate(curve, panels), drawn, source.degreesOfFreedom));
   const where = { sample, event };
   if (melting.enthalpyJPerMol === undefined) {
     const detail = `No enthalpy of melting per mole: the driving force up to ${melting.meltingK.toFixed(0)} K counts as full, so the critical heating rate is too high, and no critical cooling rate is given.`;
     const action = 'Give the enthalpy of melting and the molar mass in samples.csv.';
     return { heatingKPerS, flags: [flag('driving-force-ignored', detail, action, where)] };
   }
-  const curve = sharedRateCurve(law, law, melting);
   const temperatureK = findFastest(curve.lnRate, law.lowestMeasuredK, melting.meltingK);
   const timeS = expFinite(extentOf(conversion) / law.avramiExponent - curve.lnRate(temperatureK));
   const detail = `The critical cooling rate rests on heating data, which count the nuclei of the quench; its law reaches up to ${law.highestMeasuredK.toFixed(0)} K and is carried on to melting at ${melting.meltingK.toFixed(0)} K.`;
@@ -50,23 +54,15 @@ export function findCriticalRates(source: ForecastSource, conversion = CRITICAL_
   return { heatingKPerS, coolingKPerS: heatingKPerS, nose: { temperatureK, timeS }, flags };
 }
 
-/** ∫K dT over all temperatures up to melting is the integral over time of a ramp of 1 K/s. */
-function lnCriticalRate(
-  law: SharedLaw,
-  p: LawParameters,
-  melting: MeltingData,
-  conversion: number,
-  rule: GaussRule,
-): number {
-  const curve = sharedRateCurve(law, p, melting);
+/** A ramp of 1 K/s from the cold to melting, along which the integral of K over time is ∫K dT over all temperatures. */
+function meltingRamp(curve: RateCurve, law: SharedLaw, { meltingK }: MeltingData, rule: GaussRule): Panels {
   const fromK = coldEnd(curve, law.lowestMeasuredK);
   const ramp = {
     name: '',
-    timeS: Float64Array.of(0, melting.meltingK - fromK),
-    temperatureK: Float64Array.of(fromK, melting.meltingK),
+    timeS: Float64Array.of(0, meltingK - fromK),
+    temperatureK: Float64Array.of(fromK, meltingK),
   };
-  const panels = layPanels(ramp, curve.steepness, curve.breaksK, rule);
-  return lnIntegral(accumulate(panels, curve.lnRate)) - extentOf(conversion) / p.avramiExponent;
+  return layPanels(ramp, curve.steepness, curve.breaksK, rule);
 }
 
 /** A temperature below which less than e^−40 of the rate is left. */

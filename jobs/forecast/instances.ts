@@ -1,6 +1,6 @@
 import type { ForecastSource } from '../../schema/wire/forecasts.ts';
-import { type Kinetics, TEMPERATURE_RANGE } from './kinetics.ts';
-import { modelFreeKinetics } from './model-free-kinetics.ts';
+import type { Kinetics } from './kinetics.ts';
+import { isWhole, modelFreeKinetics } from './model-free-kinetics.ts';
 import { drawnParameters, type LawParameters, sharedRateCurve, straightRateCurve } from './rate-curve.ts';
 import { findFastest, sharedKinetics } from './shared-kinetics.ts';
 
@@ -13,8 +13,6 @@ export interface Instances {
   /** The straight law beside a frozen one, and below which temperature it bounds the answer, K */
   pessimistic?: { kinetics: Kinetics; belowK: number };
 }
-
-const MELTING_LIMIT: Pick<Kinetics, 'fastestK'> = { fastestK: TEMPERATURE_RANGE.highest };
 
 /** The methods that a source supports, shared law first. */
 export function instancesOf(source: ForecastSource): Instances[] {
@@ -31,10 +29,9 @@ function sharedInstances({ law, lawDraws, melting, degreesOfFreedom }: ForecastS
   // Above melting nothing crystallises; where the driving force is known the rate has its top below that.
   const make = (p: LawParameters, of: typeof sharedRateCurve) => {
     const curve = of(law, p, melting);
-    const fastestK = melting
-      ? findFastest(curve.lnRate, law.lowestMeasuredK, melting.meltingK)
-      : MELTING_LIMIT.fastestK;
-    return sharedKinetics(curve, fastestK);
+    return melting
+      ? sharedKinetics(curve, () => findFastest(curve.lnRate, law.lowestMeasuredK, melting.meltingK))
+      : sharedKinetics(curve);
   };
   const draws: Kinetics[] = [];
   for (let d = 0; d < (lawDraws?.bend.length ?? 0); d++) {
@@ -54,23 +51,9 @@ function modelFreeInstances(source: ForecastSource): Instances | undefined {
   const { modelFree, modelFreeDraws } = source;
   if (!modelFree || !isWhole(modelFree.energyJPerMol) || !isWhole(modelFree.lnStep) || !isWhole(modelFree.share))
     return undefined;
-  const count = modelFree.conversions.length;
-  const draws: Kinetics[] = [];
-  const total = (modelFreeDraws?.lnStep.length ?? 0) / count;
-  for (let d = 0; d < total; d++) {
-    const energy = modelFreeDraws!.energyJPerMol.subarray(d * count, (d + 1) * count);
-    const lnStep = modelFreeDraws!.lnStep.subarray(d * count, (d + 1) * count);
-    if (isWhole(energy) && isWhole(lnStep)) draws.push(modelFreeKinetics(modelFree, energy, lnStep));
-  }
   return {
     method: 'model_free',
-    estimate: modelFreeKinetics(modelFree),
-    draws,
+    ...modelFreeKinetics(modelFree, modelFreeDraws),
     degreesOfFreedom: source.modelFreeDegreesOfFreedom ?? source.degreesOfFreedom,
   };
-}
-
-function isWhole(values: ArrayLike<number>): boolean {
-  for (let i = 0; i < values.length; i++) if (!Number.isFinite(values[i])) return false;
-  return values.length > 0;
 }

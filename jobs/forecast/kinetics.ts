@@ -1,4 +1,4 @@
-import type { Panels } from './programme.ts';
+import type { Accumulated, Panels } from './programme.ts';
 
 /**
  * A rate law with its numbers filled in (the estimate, or one draw), as the questions need it. Extents are ln X, X = −ln(1 − α): they stay
@@ -9,10 +9,13 @@ export interface Kinetics {
   lnTime(conversion: number, temperatureK: number): number;
   /** ln X after a time at a constant temperature */
   extent(temperatureK: number, timeS: number): number;
-  /** s from the programme's start; past its end the programme is taken to stay at its last temperature */
-  timeOn(panels: Panels, conversion: number): number;
+  /**
+   * s from the programme's start; past its end the programme is taken to stay at its last temperature
+   * @param done `accumulate` of these panels and this law's `lnRate`, where it is at hand
+   */
+  timeOn(panels: Panels, conversion: number, done?: Accumulated): number;
   /** ln X at the programme's end */
-  extentOn(panels: Panels): number;
+  extentOn(panels: Panels, done?: Accumulated): number;
   /** ln of a rate coefficient, for the weight of temperatures and the distance in decades */
   lnRate(temperatureK: number): number;
   /** J/mol, for the length of panels */

@@ -1,4 +1,4 @@
-import type { ModelFreeCurve } from '../../schema/wire/forecasts.ts';
+import type { ModelFreeCurve, ModelFreeDraws } from '../../schema/wire/forecasts.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 import { extentOf, type Kinetics, TEMPERATURE_RANGE } from './kinetics.ts';
 import { type Panels, partOfPanel } from './programme.ts';
@@ -9,91 +9,184 @@ const MOST_EXPONENT = 600;
 const STEP = 0.01;
 const LAST = 0.99;
 
+/** What all draws of one description share. */
+interface Shape {
+  curve: ModelFreeCurve;
+  count: number;
+  /** Share of the last segment that is done at the last conversion */
+  most: number;
+  /** The place of the conversion asked for last: a question asks all draws for the same one */
+  asked: number;
+  place: Place;
+}
+
+/** Segment that a conversion lies in, and the share of it done by then. */
+interface Place {
+  segment: number;
+  share: number;
+}
+
 /**
  * The isoconversional prediction (Vyazovkin & Sbirrazzuoli 2006, Macromol. Rapid Commun. 27:1515): each segment of conversion
  * takes the same ∫exp(−E_α/RT) dt along any programme. At a constant temperature t_α = Σ_k exp[lnStep_k + (E_k/R)(1/T − x0)].
- * @param energy J/mol, one a segment   @param lnStep one a segment
  */
-export function modelFreeKinetics(
-  curve: ModelFreeCurve,
-  energy: ArrayLike<number> = curve.energyJPerMol,
-  lnStep: ArrayLike<number> = curve.lnStep,
-): Kinetics {
-  const count = curve.conversions.length;
-  const middle = energy[count >> 1];
-  let steepest = 0;
-  for (let k = 0; k < count; k++) steepest = Math.max(steepest, Math.abs(energy[k]));
-  const lnNeeded = (k: number, T: number) => lnStep[k] + (energy[k] / GAS_CONSTANT) * (1 / T - curve.x0PerK);
-  const needed = (k: number, T: number) => Math.exp(Math.min(MOST_EXPONENT, lnNeeded(k, T)));
-  /** Share of segment k done in a second at T */
-  const pace = (k: number, T: number) => Math.exp(Math.min(MOST_EXPONENT, -lnNeeded(k, T)));
-  const most = shareAt(curve, LAST).share;
+export class ModelFreeKinetics implements Kinetics {
+  readonly mostConversion = LAST;
+  readonly fastestK = TEMPERATURE_RANGE.highest;
+  readonly breaksK: readonly number[] = [];
+  /** Segment k needs e^(a_k + c_k/T) s */
+  private readonly a: Float64Array;
+  private readonly c: Float64Array;
+  private readonly steepest: number;
 
-  /** Runs through segments along the panels. `stop`: segment and share at which the time is wanted; without it, the conversion at the end. */
-  const run = (panels: Panels, stop?: { segment: number; share: number }) => {
+  /** @param energy J/mol, one a segment, the first at `from`   @param lnStep likewise */
+  constructor(
+    private readonly shape: Shape,
+    energy: ArrayLike<number>,
+    lnStep: ArrayLike<number>,
+    from = 0,
+  ) {
+    const { count, curve } = shape;
+    this.a = new Float64Array(count);
+    this.c = new Float64Array(count);
+    let steepest = 0;
+    for (let k = 0; k < count; k++) {
+      const E = energy[from + k];
+      this.c[k] = E / GAS_CONSTANT;
+      this.a[k] = lnStep[from + k] - this.c[k] * curve.x0PerK;
+      steepest = Math.max(steepest, Math.abs(E));
+    }
+    this.steepest = steepest;
+  }
+
+  lnTime(conversion: number, T: number): number {
+    const { a, c } = this;
+    const { segment, share } = this.placeOf(conversion);
+    const x = 1 / T;
+    const last = a[segment] + c[segment] * x + Math.log(share);
+    let highest = last;
+    for (let k = 0; k < segment; k++) highest = Math.max(highest, a[k] + c[k] * x);
+    let sum = Math.exp(last - highest);
+    for (let k = 0; k < segment; k++) sum += Math.exp(a[k] + c[k] * x - highest);
+    return highest + Math.log(sum);
+  }
+
+  extent(T: number, timeS: number): number {
+    const { curve, count, most } = this.shape;
+    let left = timeS;
+    for (let k = 0; ; k++) {
+      const whole = this.needed(k, T);
+      if (k === count - 1 || left < whole) return extentOf(conversionAt(curve, k, Math.min(most, left / whole)));
+      left -= whole;
+    }
+  }
+
+  timeOn(panels: Panels, conversion: number): number {
+    return this.run(panels, this.placeOf(conversion)).timeS;
+  }
+
+  extentOn(panels: Panels): number {
+    const { segment, share } = this.run(panels);
+    return extentOf(conversionAt(this.shape.curve, segment, share));
+  }
+
+  lnRate(T: number): number {
+    const middle = this.c.length >> 1;
+    return this.c[middle] * (this.shape.curve.x0PerK - 1 / T);
+  }
+
+  steepness(): number {
+    return this.steepest;
+  }
+
+  private needed(k: number, T: number): number {
+    return Math.exp(Math.min(MOST_EXPONENT, this.a[k] + this.c[k] / T));
+  }
+
+  /** Share of segment k done in a second at T */
+  private pace(k: number, T: number): number {
+    return Math.exp(Math.min(MOST_EXPONENT, -this.a[k] - this.c[k] / T));
+  }
+
+  private placeOf(conversion: number): Place {
+    const { shape } = this;
+    if (conversion !== shape.asked) {
+      shape.place = shareAt(shape.curve, conversion);
+      shape.asked = conversion;
+    }
+    return shape.place;
+  }
+
+  /** Runs through segments along the panels. @param stop where the time is wanted; without it, the conversion at the end */
+  private run(panels: Panels, stop?: Place): { timeS: number; segment: number; share: number } {
+    const { count, most } = this.shape;
     const { nodes, weights } = panels.rule;
-    let k = 0;
-    let share = 0;
+    const { nodeK, weightS, fromK, toK } = panels;
+    const m = nodes.length;
     const goalOf = (segment: number) =>
       stop && segment === stop.segment ? stop.share : segment === count - 1 ? most : 1;
-    for (let p = 0; p < panels.startS.length; p++) {
+    let k = 0;
+    let share = 0;
+    let goal = goalOf(0);
+    for (let p = 0; p < weightS.length; p++) {
       let from = 0;
       for (;;) {
-        const T1 = panels.fromK[p];
-        const dT = panels.toK[p] - T1;
         let mean = 0;
-        for (let q = 0; q < nodes.length; q++) mean += weights[q] * pace(k, T1 + dT * (from + (1 - from) * nodes[q]));
-        const gained = mean * (1 - from) * panels.weightS[p];
-        const goal = goalOf(k);
+        if (from === 0) for (let q = 0; q < m; q++) mean += weights[q] * this.pace(k, nodeK[p * m + q]);
+        else {
+          const [T1, dT] = [fromK[p], toK[p] - fromK[p]];
+          for (let q = 0; q < m; q++) mean += weights[q] * this.pace(k, T1 + dT * (from + (1 - from) * nodes[q]));
+        }
+        const gained = mean * (1 - from) * weightS[p];
         if (share + gained < goal) {
           share += gained;
           break;
         }
         const segment = k;
-        from = partOfPanel(panels, p, (T) => pace(segment, T), goal - share, from);
+        from = partOfPanel(panels, p, (T) => this.pace(segment, T), goal - share, from);
         if (stop && k === stop.segment)
           return { timeS: panels.startS[p] + from * panels.lengthS[p], segment: k, share: goal };
         if (k === count - 1) return { timeS: panels.endS, segment: k, share: most };
         k++;
         share = 0;
+        goal = goalOf(k);
       }
     }
     let timeS = panels.endS;
     if (stop) {
-      for (let s = k; s <= stop.segment; s++) timeS += (goalOf(s) - (s === k ? share : 0)) * needed(s, panels.endK);
+      for (let s = k; s <= stop.segment; s++)
+        timeS += (goalOf(s) - (s === k ? share : 0)) * this.needed(s, panels.endK);
     }
     return { timeS, segment: k, share };
-  };
+  }
+}
 
-  return {
-    lnTime(conversion, T) {
-      const { segment, share } = shareAt(curve, conversion);
-      let highest = lnNeeded(segment, T) + Math.log(share);
-      for (let k = 0; k < segment; k++) highest = Math.max(highest, lnNeeded(k, T));
-      let sum = share * Math.exp(lnNeeded(segment, T) - highest);
-      for (let k = 0; k < segment; k++) sum += Math.exp(lnNeeded(k, T) - highest);
-      return highest + Math.log(sum);
-    },
-    extent(T, timeS) {
-      let left = timeS;
-      for (let k = 0; k < count; k++) {
-        const whole = needed(k, T);
-        if (k === count - 1 || left < whole) return extentOf(conversionAt(curve, k, Math.min(most, left / whole)));
-        left -= whole;
-      }
-      throw new RangeError('a model-free curve has no segments');
-    },
-    timeOn: (panels, conversion) => run(panels, shareAt(curve, conversion)).timeS,
-    extentOn(panels) {
-      const { segment, share } = run(panels);
-      return extentOf(conversionAt(curve, segment, share));
-    },
-    lnRate: (T) => -(middle / GAS_CONSTANT) * (1 / T - curve.x0PerK),
-    steepness: () => steepest,
-    breaksK: [],
-    fastestK: TEMPERATURE_RANGE.highest,
-    mostConversion: LAST,
+/** The estimate of a model-free description, and as many draws as there are, those with a number that is not finite left out. */
+export function modelFreeKinetics(
+  curve: ModelFreeCurve,
+  drawn?: ModelFreeDraws,
+): { estimate: ModelFreeKinetics; draws: ModelFreeKinetics[] } {
+  const count = curve.conversions.length;
+  const shape: Shape = {
+    curve,
+    count,
+    most: shareAt(curve, LAST).share,
+    asked: LAST,
+    place: shareAt(curve, LAST),
   };
+  const draws: ModelFreeKinetics[] = [];
+  const { energyJPerMol, lnStep } = drawn ?? { energyJPerMol: [], lnStep: [] };
+  for (let from = 0; from + count <= lnStep.length; from += count) {
+    if (isWhole(energyJPerMol, from, count) && isWhole(lnStep, from, count))
+      draws.push(new ModelFreeKinetics(shape, energyJPerMol, lnStep, from));
+  }
+  return { estimate: new ModelFreeKinetics(shape, curve.energyJPerMol, curve.lnStep), draws };
+}
+
+/** Whether `count` values from `from` on are all finite, and there is one. */
+export function isWhole(values: ArrayLike<number>, from = 0, count = values.length): boolean {
+  for (let i = from; i < from + count; i++) if (!Number.isFinite(values[i])) return false;
+  return count > 0;
 }
 
 const segmentOf = ({ conversions }: ModelFreeCurve, conversion: number): number => {
@@ -114,8 +207,8 @@ const tableX = (g: number): number => -Math.log1p(-(g + 1) * STEP);
 const startPower = ({ share }: ModelFreeCurve): number =>
   Math.log(share[1] / share[0]) / Math.log(tableX(1) / tableX(0));
 
-/** The segment a conversion lies in, and the share of it done by then. Between the rows of the table: straight, in the logarithms of X and share in the first segment. */
-function shareAt(curve: ModelFreeCurve, conversion: number): { segment: number; share: number } {
+/** The place of a conversion. Between the rows of the table: straight, in the logarithms of X and share in the first segment. */
+function shareAt(curve: ModelFreeCurve, conversion: number): Place {
   if (!(conversion > 0 && conversion <= LAST + 1e-12))
     throw new RangeError(`a model-free forecast needs a conversion in (0, ${LAST}]: ${conversion}`);
   const segment = segmentOf(curve, conversion);

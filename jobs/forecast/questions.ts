@@ -3,7 +3,14 @@ import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 import { findRoot } from '../numeric/root.ts';
 import { blockPanels, MOST_BLOCKS } from './blocks.ts';
 import { extentOf, type Kinetics, TEMPERATURE_RANGE } from './kinetics.ts';
-import { accumulate, COARSE, checkProgramme, FINE, layPanels, type Panels } from './programme.ts';
+import { type Accumulated, accumulate, COARSE, checkProgramme, FINE, layPanels, type Panels } from './programme.ts';
+
+/** Draws run along the blocks of a programme of more panels than this, along coarser panels of a shorter one. */
+const LONG_PROGRAMME = 3 * MOST_BLOCKS;
+/** Bins of temperature in which the weight of a programme is counted. */
+const BINS = 1024;
+/** Secants that find a limit near another one; they end at rounding after about five. */
+const MOST_SECANTS = 12;
 
 /** A question made ready: what each law answers on the even scale (ln t, ln X or K); `fine` for the estimate, coarser panels for draws. */
 export interface Ask {
@@ -37,27 +44,40 @@ export function prepareQuestion(q: ForecastQuestion, kinetics: readonly Kinetics
         lnFactor: (a, b, exponent) =>
           (a.extent(q.temperatureK, q.timeS) - b.extent(q.temperatureK, q.timeS)) / exponent,
       };
-    case 'temperature_limit':
+    case 'temperature_limit': {
+      const limit = once((k) => temperatureLimit(k, q.conversion, q.timeS));
       return {
-        answer: (k) => temperatureLimit(k, q.conversion, q.timeS),
-        answerDraw: (k) => temperatureLimit(k, q.conversion, q.timeS),
-        activeK: (k) => {
-          const T = temperatureLimit(k, q.conversion, q.timeS);
-          return [T, T];
-        },
-        lnFactor: (a, b) => b.lnTime(q.conversion, temperatureLimit(a, q.conversion, q.timeS)) - Math.log(q.timeS),
+        answer: limit,
+        answerDraw: (k, estimate) => temperatureLimit(k, q.conversion, q.timeS, limit(estimate)),
+        activeK: (k) => [limit(k), limit(k)],
+        lnFactor: (a, b) => b.lnTime(q.conversion, limit(a)) - Math.log(q.timeS),
       };
+    }
   }
 }
 
 /**
- * The highest temperature at which a conversion is not reached within a time: the root of ln t(T), bracketed between 20 K and the temperature
- * where crystallisation is fastest. NaN where even there it takes longer.
+ * The highest temperature at which a conversion is not reached within a time: the root of ln t(T), looked for from a temperature nearby by
+ * secants in 1/T, else bracketed between 20 K and the temperature where crystallisation is fastest. NaN where even there it takes longer.
  */
-export function temperatureLimit(k: Kinetics, conversion: number, timeS: number): number {
-  const excess = (x: number) => Math.max(-1e6, Math.min(1e6, k.lnTime(conversion, 1 / x) - Math.log(timeS)));
+export function temperatureLimit(k: Kinetics, conversion: number, timeS: number, nearK?: number): number {
+  const lnTime = Math.log(timeS);
+  const excess = (x: number) => Math.max(-1e6, Math.min(1e6, k.lnTime(conversion, 1 / x) - lnTime));
   const [cold, hot] = [1 / TEMPERATURE_RANGE.lowest, 1 / k.fastestK];
   if (excess(hot) > 0 || excess(cold) < 0) return Number.NaN;
+  if (nearK !== undefined && Number.isFinite(nearK)) {
+    let [x, f] = [1 / nearK, excess(1 / nearK)];
+    let slope = k.steepness(nearK) / GAS_CONSTANT;
+    for (let i = 0; i < MOST_SECANTS; i++) {
+      const next = x - f / slope;
+      if (!(next > hot && next < cold)) break;
+      if (Math.abs(next - x) <= 1e-14 * x) return 1 / next;
+      const g = excess(next);
+      slope = (g - f) / (next - x);
+      [x, f] = [next, g];
+      if (f === 0) return 1 / x;
+    }
+  }
   return 1 / findRoot(excess, hot, cold, 1e-15);
 }
 
@@ -67,30 +87,39 @@ function askProgramme(programme: ProgrammeTable, conversion: number | undefined,
     for (const k of kinetics) most = Math.max(most, k.steepness(T));
     return most;
   };
-  const breaks = [...new Set(kinetics.flatMap((k) => k.breaksK))];
+  const breaks = kinetics.flatMap((k) => k.breaksK);
   const fine = layPanels(programme, steepness, breaks, FINE);
-  const coarse = layPanels(programme, steepness, breaks, COARSE);
-  const answer = (k: Kinetics, panels: Panels) =>
-    conversion === undefined ? k.extentOn(panels) : Math.log(k.timeOn(panels, conversion));
-  const blocks = new Map<Kinetics, Panels>();
-  const forDraws = (estimate: Kinetics): Panels => {
-    if (coarse.startS.length <= 2 * MOST_BLOCKS) return coarse;
-    const made = blocks.get(estimate) ?? blockPanels(coarse, estimate.lnRate);
-    blocks.set(estimate, made);
-    return made;
-  };
+  const answerOn = (k: Kinetics, panels: Panels, done?: Accumulated) =>
+    conversion === undefined ? k.extentOn(panels, done) : Math.log(k.timeOn(panels, conversion, done));
+  const sums = once((k: Kinetics) => accumulate(fine, (T) => k.lnRate(T)));
+  const answer = once((k: Kinetics) => answerOn(k, fine, sums(k)));
+  const long = fine.startS.length > LONG_PROGRAMME;
+  const coarse = long ? undefined : layPanels(programme, steepness, breaks, COARSE);
+  const forDraws = once((estimate: Kinetics) => coarse ?? blockPanels(fine, (T) => estimate.lnRate(T), sums(estimate)));
   return {
-    answer: (k) => answer(k, fine),
-    answerDraw: (draw, estimate) => answer(draw, forDraws(estimate)),
-    activeK: (k) => activeTemperatures(coarse, k),
+    answer,
+    answerDraw: (draw, estimate) => answerOn(draw, forDraws(estimate)),
+    activeK: (k) => activeTemperatures(fine, sums(k)),
     lnFactor(a, b, exponent) {
-      if (conversion === undefined) return (answer(a, fine) - answer(b, fine)) / exponent;
+      if (conversion === undefined) return (answer(a) - answer(b)) / exponent;
       // Where a programme races through the event, times agree whatever the laws say: the extents at one moment are compared.
-      const timeS = a.timeOn(fine, conversion);
-      const until = cutProgramme(programme, timeS);
+      const until = cutProgramme(programme, Math.exp(answer(a)));
       const panels = layPanels(until, steepness, breaks, FINE);
       return (extentOf(conversion) - b.extentOn(panels)) / exponent;
     },
+  };
+}
+
+/** A function of a law that works each law out once. */
+function once<T>(of: (k: Kinetics) => T): (k: Kinetics) => T {
+  const known = new Map<Kinetics, T>();
+  return (k) => {
+    let found = known.get(k);
+    if (found === undefined) {
+      found = of(k);
+      known.set(k, found);
+    }
+    return found;
   };
 }
 
@@ -115,23 +144,37 @@ function cutProgramme({ name, timeS, temperatureK }: ProgrammeTable, untilS: num
   };
 }
 
-/** Temperatures between which the middle 95 % of ∫K dt of a programme builds up. */
-function activeTemperatures(panels: Panels, k: Kinetics): [number, number] {
-  const { sums } = accumulate(panels, k.lnRate);
+/**
+ * Temperatures between which the middle 95 % of ∫K dt of a programme builds up, as middles of its panels in the order of their starting
+ * temperatures. Panels are counted into narrow bins of temperature first, so that only the two bins in question are sorted.
+ */
+function activeTemperatures(panels: Panels, { sums }: Accumulated): [number, number] {
+  const { fromK, toK } = panels;
   const total = sums[sums.length - 1];
-  const order = Array.from(sums.keys()).sort((a, b) => panels.fromK[a] - panels.fromK[b]);
   const share = (p: number) => (total > 0 ? (sums[p] - (p === 0 ? 0 : sums[p - 1])) / total : 1 / sums.length);
-  let sum = 0;
-  let low = Number.NaN;
-  let high = Number.NaN;
-  for (const p of order) {
-    const middle = (panels.fromK[p] + panels.toK[p]) / 2;
-    sum += share(p);
-    if (Number.isNaN(low) && sum >= 0.025) low = middle;
-    if (Number.isNaN(high) && sum >= 0.975) high = middle;
+  let [least, most] = [Number.POSITIVE_INFINITY, 0];
+  for (let p = 0; p < fromK.length; p++) {
+    least = Math.min(least, fromK[p]);
+    most = Math.max(most, fromK[p]);
   }
-  const last = panels.toK[order[order.length - 1]];
-  return [Number.isNaN(low) ? last : low, Number.isNaN(high) ? last : high];
+  const binOf = (T: number) => Math.min(BINS - 1, Math.floor(((T - least) / (most - least || 1)) * BINS));
+  const bins = new Float64Array(BINS);
+  for (let p = 0; p < fromK.length; p++) bins[binOf(fromK[p])] += share(p);
+  const reach = (wanted: number): number => {
+    let [bin, sum] = [0, 0];
+    while (bin < BINS - 1 && sum + bins[bin] < wanted) sum += bins[bin++];
+    const inBin: number[] = [];
+    for (let p = 0; p < fromK.length; p++) if (binOf(fromK[p]) === bin) inBin.push(p);
+    inBin.sort((a, b) => fromK[a] - fromK[b]);
+    let at = inBin[inBin.length - 1];
+    for (const p of inBin) {
+      sum += share(p);
+      at = p;
+      if (sum >= wanted) break;
+    }
+    return at === undefined ? most : (fromK[at] + toK[at]) / 2;
+  };
+  return [reach(0.025), reach(0.975)];
 }
 
 function checkQuestion(q: ForecastQuestion): void {

@@ -36,6 +36,8 @@ export function makeForecastSource({
     lowestMeasuredK: shared?.law.lowestMeasuredK ?? modelFree!.lowestK,
     highestMeasuredK: shared?.law.highestMeasuredK ?? modelFree!.highestK,
     ...(glassTransitionK !== undefined && { glassTransitionK }),
+    ...(facts.series !== undefined &&
+      facts.solventFraction !== undefined && { solventFraction: facts.solventFraction }),
     ...(melting && { melting }),
     ...(shared && { verdict: shared.verdict, law: shared.law, lawDraws: shared.draws }),
     ...(modelFree && {

@@ -45,6 +45,10 @@ export function describeForecast(row: ForecastRow, source: ForecastSource, froze
     parts.push(
       `The glass transition at ${celsiusFromKelvin(source.glassTransitionK).toFixed(0)} °C lies between it and the data.`,
     );
+  if (source.solventFraction !== undefined && source.glassTransitionK !== undefined && row.temperature_C !== null)
+    parts.push(
+      `T − Tg(w) is ${(row.temperature_C - celsiusFromKelvin(source.glassTransitionK)).toFixed(1)} K, the solvent fraction w ${source.solventFraction}.`,
+    );
   if (row.flags.includes('forecast-straight'))
     parts.push('The law of the material bends, and this method carries a mean energy straight on.');
   if (row.flags.includes('forecasts-disagree'))

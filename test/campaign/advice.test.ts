@@ -1,8 +1,7 @@
 import { describe, expect, test } from 'vitest';
-import { adviseScans, scansToReach, weighScans, widthOf } from '../../jobs/campaign/advice.ts';
+import { adviseScans, scansToReach, weighScans, widthsOf } from '../../jobs/campaign/advice.ts';
 import type { AdviceInput } from '../../jobs/campaign/advice-input.ts';
 import { analyseForAdvice, LawPrecision } from '../../jobs/campaign/advice-law.ts';
-import { invertNormal } from '../../jobs/glass/verdict/law-fit.ts';
 import { studentQuantile } from '../../jobs/numeric/distributions.ts';
 import { createRandom } from '../../jobs/numeric/random.ts';
 import { GAS_CONSTANT as R } from '../../schema/wire/units.ts';
@@ -82,7 +81,7 @@ describe('advice for the activation energy', () => {
     const exact = input(RATES);
     exact.instruments[0].offsetSeK = 0;
     exact.instruments[0].lagSeS = 0;
-    const width = widthOf(exact, { goal: 'energy' })([])!;
+    const width = widthsOf(exact)({ goal: 'energy' })()!;
     // By hand: se(slope) = s/√Sxx with s the scatter in ln β, one weight for all; T at α = 0.5.
     const x = exact.scans.map((s) => 1 / s.event.curve!.temperatureK[49]);
     const y = exact.scans.map((s, i) => Math.log(s.event.rateKPerS * x[i] ** 2));
@@ -95,6 +94,23 @@ describe('advice for the activation energy', () => {
     expect(Math.abs(width / byHand - 1)).toBeLessThan(0.1);
   });
 
+  test('calibration errors, whose size is given, count with the normal quantile', () => {
+    const sure = input(RATES);
+    sure.instruments[0].offsetSeK = 0;
+    sure.instruments[0].lagSeS = 0;
+    const unsure = input(RATES);
+    unsure.instruments[0].offsetSeK = 0;
+    unsure.instruments[0].lagSeS = 0.7;
+    const [a, b] = [sure, unsure].map((i) => widthsOf(i)({ goal: 'energy' })()!);
+    // By hand: E = R × slope of ln(β/T²) against −1/T; a lag error τ moves T by τβ.
+    const x = sure.scans.map((s) => 1 / s.event.curve!.temperatureK[49]);
+    const mean = x.reduce((p, v) => p + v, 0) / x.length;
+    const sxx = x.reduce((p, v) => p + (v - mean) ** 2, 0);
+    const moved =
+      x.reduce((p, v, i) => p + (v - mean) * ENERGY * v ** 2 * sure.scans[i].event.rateKPerS * 0.7, 0) / sxx;
+    expect(Math.sqrt(b * b - a * a) / ((2 * 1.959964 * Math.abs(moved)) / 1e3)).toBeCloseTo(1, 3);
+  });
+
   test('the width shown stands, the expected one moves with it', () => {
     const [free] = adviseScans(input(RATES));
     const [shown] = adviseScans(input(RATES, { goals: [{ goal: 'energy', now: 2 * free.interval_now }] }));
@@ -104,7 +120,7 @@ describe('advice for the activation energy', () => {
 
   test('scans to a wanted width: one for hardly less, none for far less', () => {
     const some = input(RATES);
-    const width = widthOf(some, { goal: 'energy' });
+    const width = widthsOf(some)({ goal: 'energy' });
     const best = weighScans(some, { goal: 'energy' })[0];
     expect(scansToReach(width, best, best.expected / best.now + 1e-9)).toBe(1);
     const half = scansToReach(width, best, 0.5);
@@ -173,24 +189,45 @@ describe('advice for the bend and a forecast', () => {
     for (const row of rows) expect(row.interval_expected).toBeLessThan(row.interval_now);
   });
   test('one more row by the update is one more row in the normal equations', () => {
-    const campaign = two();
-    const analysis = analyseForAdvice(campaign, 'forecast')!;
+    const analysis = analyseForAdvice(two())!.forecast;
     const precision = new LawPrecision(analysis);
     const candidate = { instrument: 'furnace', rateKPerS: 0.02 };
-    const goal = { gradient: [1, 0, 0] as const, exponentVariance: 0 };
+    const goal = { gradient: [1, 0, 0] as const, exponentVariance: 0, decides: 'energy' as const };
+    // Only the exponent's share counts with t on n − p whatever the scatter: what is left of the ratio is the square root of the variances'.
     const { jacobian, layout } = analysis.fit;
-    const longer = new Float64Array((layout.rows + 1) * layout.p);
-    longer.set(jacobian);
-    longer.set(precision.row(candidate)!.row, layout.rows * layout.p);
-    const direct = (inverse: Float64Array, n: number) =>
-      2 * studentQuantile(0.975, n - layout.p + 2) * Math.sqrt(inverse[0]);
-    const n = campaign.scans.length;
-    expect(precision.width(goal)).toBeCloseTo(direct(invertNormal(jacobian, layout.rows, layout.p)!, n), 9);
-    expect(precision.width(goal, [candidate])).toBeCloseTo(
-      direct(invertNormal(longer, layout.rows + 1, layout.p)!, n + 1),
-      9,
-    );
+    const { p, rows } = layout;
+    const row = precision.row(candidate)!.row;
+    const varianceOf = (times: number) => {
+      // Independent: Gauss–Jordan on JᵀJ with `times` copies of the row.
+      const A = Array.from({ length: p }, (_, a) =>
+        Array.from({ length: 2 * p }, (_, b) => {
+          if (b >= p) return b - p === a ? 1 : 0;
+          let sum = times * row[a] * row[b];
+          for (let k = 0; k < rows; k++) sum += jacobian[k * p + a] * jacobian[k * p + b];
+          return sum;
+        }),
+      );
+      for (let c = 0; c < p; c++) {
+        const pivot = A[c][c];
+        A[c] = A[c].map((v) => v / pivot);
+        for (let r = 0; r < p; r++) if (r !== c) A[r] = A[r].map((v, b) => v - A[r][c] * A[c][b]);
+      }
+      return A[0][p];
+    };
+    const half = (t: number, variance: number) => 2 * t * Math.sqrt(variance);
+    const t = (times: number) => precision.width(goal, candidate, times)! / half(1, varianceOf(times));
+    // t falls with every scan, towards the normal quantile.
+    const quantiles = [0, 1, 2, 5, 20].map(t);
+    expect(quantiles).toEqual([...quantiles].sort((a, b) => b - a));
+    expect(quantiles[0]).toBeLessThan(studentQuantile(0.975, 3));
+    expect(quantiles[4]).toBeGreaterThan(studentQuantile(0.975, 1e4));
+    expect(quantiles[4]).toBeLessThan(studentQuantile(0.975, 14));
     // An instrument that the fit does not know can say nothing yet.
-    expect(precision.width(goal, [{ instrument: 'other', rateKPerS: 1 }])).toBeUndefined();
+    expect(precision.width(goal, { instrument: 'other', rateKPerS: 1 })).toBeUndefined();
+  });
+  test('five scans leave the bent law one degree of freedom: no advice on what is read from it', () => {
+    const few = { ...two(), scans: two().scans.slice(0, 5) };
+    expect(analyseForAdvice(few)).toBeUndefined();
+    expect(adviseScans(few)).toEqual([]);
   });
 });

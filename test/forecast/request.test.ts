@@ -3,7 +3,7 @@ import { blockPanels } from '../../jobs/forecast/blocks.ts';
 import { answerQuestion, MOST_PROGRAM_ROWS, questionOf } from '../../jobs/forecast/index.ts';
 import { instancesOf } from '../../jobs/forecast/instances.ts';
 import type { Kinetics } from '../../jobs/forecast/kinetics.ts';
-import { FINE, layPanels, type Panels } from '../../jobs/forecast/programme.ts';
+import { accumulate, FINE, layPanels, type Panels } from '../../jobs/forecast/programme.ts';
 import { standardDeviation } from '../../jobs/numeric/statistics.ts';
 import { LAW, sourceOf } from './sources.ts';
 
@@ -78,10 +78,11 @@ describe('the five forms of a request', () => {
     const source = sourceOf(LAW, { draws: 60 });
     const question = questionOf({ program: program.slice(0, 900), conversion: 1e-9 });
     if (!('programme' in question)) throw new Error('a programme');
-    const panelsOf = (k: Kinetics) => layPanels(question.programme, k.steepness, k.breaksK, FINE);
+    const panelsOf = (k: Kinetics) => layPanels(question.programme, (T) => k.steepness(T), k.breaksK, FINE);
     for (const m of instancesOf(source)) {
       const all = panelsOf(m.estimate);
-      const blocks = blockPanels(all, m.estimate.lnRate);
+      const lnRate = (T: number) => m.estimate.lnRate(T);
+      const blocks = blockPanels(all, lnRate, accumulate(all, lnRate));
       expect(all.startS.length).toBeGreaterThan(3 * blocks.startS.length);
       expect(m.estimate.extentOn(blocks)).toBeCloseTo(m.estimate.extentOn(all), 3);
       const spread = (panels: Panels) => standardDeviation(m.draws.map((draw) => draw.extentOn(panels)));
