@@ -74,6 +74,9 @@ export class SymmetricSolver {
   }
 }
 
+/** One a size: small systems are solved thousands of times a scan. */
+const solvers: SymmetricSolver[] = [];
+
 /**
  * Solves the normal equations of a small least-squares problem.
  * @param matrix p × p symmetric, row-major; overwritten by its inverse (in the original scale)
@@ -81,7 +84,8 @@ export class SymmetricSolver {
  * @returns false when the matrix is not positive definite to working precision (nothing useful in the outputs then)
  */
 export function solveSymmetric(matrix: Float64Array, rhs: Float64Array, p: number): boolean {
-  const solver = new SymmetricSolver(p);
+  solvers[p] ??= new SymmetricSolver(p);
+  const solver = solvers[p];
   if (!solver.factor(matrix)) return false;
   solver.solve(rhs);
   solver.invert(matrix);

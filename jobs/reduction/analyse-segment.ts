@@ -58,7 +58,7 @@ export function analyseSegment(
   // A step before the event makes its rough left half width come out too large.
   const first = bells[0] && { ...bells[0], leftS: Math.min(bells[0].leftS, MOST_LEFT * bells[0].rightS) };
   const glassEnd = first ? lowerBound(timeS, first.peakS - GLASS_BEFORE * first.leftS) : endOfRamp(c, segment);
-  const glass =
+  let glass =
     segment.kind === 'heating' ? findGlassTransition(timeS, c.y, segment.from, glassEnd, c.noise, first) : undefined;
   const limits = limitsOf(c, segment);
   const groups = limits && bells.length > 0 ? [bells] : groupBells(bells);
@@ -86,6 +86,7 @@ export function analyseSegment(
     };
     const done = reduceEvents(c, segment, group, room, events.length + 1);
     events.push(...done.events);
+    if (g === 0 && done.glass) glass = done.glass;
     if (done.shown) shown.push(done.shown);
   });
   const T = (t: number) => interpolate(timeS, temperatureK, t);

@@ -5,7 +5,8 @@ import { type FlankSums, TERMS } from './flank-sums.ts';
  * The baseline under an event: b = p0 + p1 u + p2 u² + p3 u³ + α (s0 + s1 u), u = (t − peak)/width. s0 is the step between glass or
  * liquid and crystal, s1 its slope, p2 and p3 a curvature common to both sides (drift of the instrument). Before the event α = 0, behind
  * it α = 1, so the coefficients follow from the two flanks alone by linear least squares, and only the evaluation under the event needs
- * α(t), found by iteration; with p2 = p3 = 0 this is the tangent baseline.
+ * α(t), found by iteration; with p2 = p3 = 0 this is the tangent baseline. Where a glass transition reaches into the event its logistic
+ * step L(t) stands beside the event's own: b = p0 + … + p3 u³ + s0 L + s1 α.
  *
  * Which terms a pair of flanks bears cannot be read off one test without jumps, so the models are averaged with weights exp(−BIC/2)
  * (Schwarz 1978; Hoeting et al. 1999, Statist. Sci. 14:382); the spread between them is part of the covariance.
@@ -23,10 +24,11 @@ export interface Baseline {
   side: 'both' | 'left' | 'right' | LogisticStep;
 }
 
-/** 1/(1 + exp(−(t − middle)/width)), s */
+/** S(z) = L(z) + 4 o L(z − 1) (1 − L(z − 1)), L(z) = 1/(1 + exp(−z)), z = (t − middle)/scale, o the overshoot in parts of the step */
 export interface LogisticStep {
   middleS: number;
   scaleS: number;
+  overshoot?: number;
 }
 
 /** Index sets of the models, simplest first. */
@@ -170,25 +172,43 @@ function solveModel(
 /** Values of the six terms at time t (s) and conversion α. */
 export function fillTerms(b: Baseline, t: number, alpha: number, terms: Float64Array): void {
   const u = (t - b.peakS) / b.widthS;
-  const a = stepShare(b, t, alpha);
   terms[0] = 1;
   terms[1] = u;
   terms[2] = u * u;
   terms[3] = u * u * u;
-  terms[4] = a;
-  terms[5] = a * u;
+  const { side } = b;
+  if (typeof side === 'object') {
+    terms[4] = stepAt(side, t);
+    terms[5] = alpha;
+    return;
+  }
+  terms[4] = stepShare(side, alpha);
+  terms[5] = terms[4] * u;
 }
 
 /** Baseline at time t (s) and conversion α. */
 export function baselineAt(b: Baseline, t: number, alpha: number): number {
   const u = (t - b.peakS) / b.widthS;
   const c = b.coefficients;
-  const a = stepShare(b, t, alpha);
-  return c[0] + u * (c[1] + u * (c[2] + u * c[3])) + a * (c[4] + c[5] * u);
+  const { side } = b;
+  const smooth = c[0] + u * (c[1] + u * (c[2] + u * c[3]));
+  if (typeof side === 'object') return smooth + c[4] * stepAt(side, t) + c[5] * alpha;
+  return smooth + stepShare(side, alpha) * (c[4] + c[5] * u);
 }
 
-function stepShare({ side }: Baseline, t: number, alpha: number): number {
-  if (side === 'both') return alpha;
-  if (side === 'right') return 1;
-  return side === 'left' ? 0 : 1 / (1 + Math.exp(-(t - side.middleS) / side.scaleS));
+/** What conversion adds to the baseline at time t for each unit of α: a + b (t − peak). */
+export function conversionStep({ side, coefficients: c, widthS }: Baseline): { level: number; slope: number } {
+  if (typeof side === 'object') return { level: c[5], slope: 0 };
+  return side === 'both' ? { level: c[4], slope: c[5] / widthS } : { level: 0, slope: 0 };
 }
+
+function stepAt({ middleS, scaleS, overshoot = 0 }: LogisticStep, t: number): number {
+  const z = (t - middleS) / scaleS;
+  const logistic = 1 / (1 + Math.exp(-z));
+  if (overshoot === 0) return logistic;
+  const behind = 1 / (1 + Math.exp(1 - z));
+  return logistic + 4 * overshoot * behind * (1 - behind);
+}
+
+const stepShare = (side: 'both' | 'left' | 'right', alpha: number): number =>
+  side === 'both' ? alpha : side === 'right' ? 1 : 0;

@@ -46,7 +46,7 @@ export function judgeEvent(e: ReducedEvent, about: Judged, where: object): Flag[
   if (about.glassOverlap) {
     tell(
       'glass-transition-overlap',
-      'The glass transition ends less than one width before the event, so there is no baseline between them: the one behind the event is extrapolated and conversions below 0.1 are left out.',
+      'The glass transition ends less than one width before the event, so there is no baseline between them: its step is part of what is fitted and conversions below 0.1 are left out.',
       'Nothing, or a rate at which the two lie further apart.',
     );
   }
@@ -63,7 +63,7 @@ export function judgeEvent(e: ReducedEvent, about: Judged, where: object): Flag[
   if (about.mergedWith > 0) {
     tell(
       'events-merged',
-      `The signal does not return to the baseline between this event and ${about.mergedWith === 1 ? 'its neighbour' : `${about.mergedWith} others`}; they were separated by fitted Fraser–Suzuki peaks.`,
+      `The signal does not return to the baseline between this event and ${about.mergedWith === 1 ? 'its neighbour' : `${about.mergedWith} others`}; they were separated by fitted asymmetric peaks.`,
       'Look at the thermogram; areas and early and late conversions carry the doubt of the separation.',
     );
   }

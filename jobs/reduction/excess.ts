@@ -1,5 +1,5 @@
 import { lowerBound } from '../numeric/local-polynomial.ts';
-import { type Baseline, baselineAt } from './baseline.ts';
+import { type Baseline, baselineAt, conversionStep } from './baseline.ts';
 import type { EventWindow } from './window.ts';
 
 /** An event with its baseline removed: bins [from, to) of the window, measured (not yet freed of the response). */
@@ -14,6 +14,8 @@ export interface Excess {
   area: number;
   /** of the whole excess that belongs to this event, a bin; missing where it stands alone */
   share?: Float64Array;
+  /** Part of the area that the separation from its neighbours leaves open */
+  openPart?: number;
 }
 
 /** Rounds of α → baseline → α; each shrinks the change by about step ÷ height, so the last is far below noise. */
@@ -39,7 +41,8 @@ export function subtractBaseline(
   const to = Math.max(from, lowerBound(w.t, baseline.rightS));
   const e = new Float64Array(n);
   const cumulative = new Float64Array(n);
-  const stepped = baseline.side === 'both' && (baseline.coefficients[4] !== 0 || baseline.coefficients[5] !== 0);
+  const { level: step, slope } = conversionStep(baseline);
+  const stepped = step !== 0 || slope !== 0;
   // The baseline of the left side once, then only the step under the event changes from round to round.
   for (let i = from; i < to; i++) e[i] = w.y[i] - baselineAt(baseline, w.t[i], 0);
   const above = stepped ? e.slice(from, to) : e;
@@ -48,7 +51,6 @@ export function subtractBaseline(
     if (start) for (let i = from; i < to; i++) cumulative[i] = start.cumulative[i] / start.area;
     else for (let i = from; i < to; i++) cumulative[i] = (i - from) / Math.max(1, to - 1 - from);
   }
-  const [step, slope] = [baseline.coefficients[4], baseline.coefficients[5] / baseline.widthS];
   const { t } = w;
   let area = stepped && start ? start.area : 1;
   let scale = 1;

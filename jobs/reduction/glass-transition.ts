@@ -126,17 +126,29 @@ function findStep(
   const cut = best.middle - 2.5 * best.width < start || best.middle + 1.5 * best.width > start + span;
   if (cut || !(height < 0) || gain < least * variance(gain)) return undefined;
   if (foot && -best.height < LEAST_HEIGHT_PART * foot.height) return undefined;
+  // d(step)/d(middle) has the norm² step²/(6 width) per unit of time.
+  const error = Math.sqrt((variance(gain) * 6 * best.width * step) / best.height ** 2);
+  return stepOf(best.middle, best.width, best.height, error, gain / variance(gain));
+}
+
+/** A logistic step as a glass transition; times in s, `significance` its squared ratio to the error. */
+export function stepOf(
+  middleS: number,
+  scaleS: number,
+  step: number,
+  midpointErrorS: number,
+  significance: number,
+): GlassTransition {
   return {
-    midpointS: best.middle,
+    midpointS: middleS,
     // The tangent at the middle of a logistic rises from the line before two widths earlier.
-    onsetS: best.middle - 2 * best.width,
-    scaleS: best.width,
-    // d(step)/d(middle) has the norm² step²/(6 width) per unit of time.
-    midpointErrorS: Math.sqrt((variance(gain) * 6 * best.width * step) / best.height ** 2),
-    fromS: best.middle - BEFORE_WIDTHS * best.width,
-    toS: best.middle + BEHIND_WIDTHS * best.width,
-    step: best.height,
-    significance: gain / variance(gain),
+    onsetS: middleS - 2 * scaleS,
+    scaleS,
+    midpointErrorS,
+    fromS: middleS - BEFORE_WIDTHS * scaleS,
+    toS: middleS + BEHIND_WIDTHS * scaleS,
+    step,
+    significance,
   };
 }
 

@@ -3,8 +3,9 @@ import { binsBetween, chooseFlanks } from './choose-flanks.ts';
 import { FLANK, type Limits, placeLimits, RAMP_REACH, type Room, widthOf } from './event-limits.ts';
 import { type Bell, type Excess, halfWidths, subtractBaseline } from './excess.ts';
 import { FlankSums } from './flank-sums.ts';
-import { findGlassTransition, GLASS_BEFORE } from './glass-transition.ts';
+import { findGlassTransition, GLASS_BEFORE, type GlassTransition } from './glass-transition.ts';
 import { CONVERSION_AT_PEAK, CONVERSION_AT_RIGHT_HALF, footArea, footAt } from './shape.ts';
+import type { StepUnderEvent } from './step-under-event.ts';
 import type { EventWindow } from './window.ts';
 
 export interface Isolated {
@@ -15,6 +16,8 @@ export interface Isolated {
   refit: (leftShiftS: number, rightShiftS: number) => Excess;
   glassOverlap: boolean;
   meltingOverlap: boolean;
+  /** Where a glass transition was fitted together with the event, and what that leaves open of its area, signal units × s */
+  together?: { glass: GlassTransition; areaError: number };
 }
 
 export type Isolation = Isolated | { cut: 'before' | 'behind' };
@@ -176,4 +179,22 @@ function tailStands(w: EventWindow, { excess: x, bells }: Isolated, side: 'left'
   }
   if (count < 3) return false;
   return sum / count > TAIL_HEIGHT_PART * height + (TAIL_SIGMAS * w.noise) / Math.sqrt(count);
+}
+
+/** The event above a baseline that was fitted together with it. @param bell of a first isolation */
+export function isolateAbove(w: EventWindow, bell: Bell, fitted: StepUnderEvent): Isolated | undefined {
+  const leftS = bell.peakS - RAMP_REACH.left.far * bell.leftS;
+  const rightS = Math.min(bell.peakS + RAMP_REACH.right.far * bell.rightS, w.t[w.t.length - 1]);
+  const excess = subtractBaseline(w, { ...fitted.baseline, leftS, rightS }, footArea(bell, leftS));
+  const own = halfWidths(w, excess, bell.leftS + bell.rightS);
+  if (!own) return undefined;
+  const { glass, areaError } = fitted;
+  return {
+    excess,
+    bells: [own],
+    refit: () => excess,
+    glassOverlap: glass.toS > own.peakS - RAMP_REACH.left.near * own.leftS,
+    meltingOverlap: false,
+    together: { glass, areaError },
+  };
 }

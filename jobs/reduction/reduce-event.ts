@@ -7,6 +7,7 @@ import { makeCurve, type Programme } from './curve.ts';
 import { FEW_POINTS, judgeEvent, TOO_FEW_POINTS } from './event-flags.ts';
 import { type Room, widthOf } from './event-limits.ts';
 import { type Bell, type Excess, straightLineArea } from './excess.ts';
+import type { GlassTransition } from './glass-transition.ts';
 import type { Isolated } from './isolate.ts';
 import { eventRate } from './rate.ts';
 import type { ScanContext } from './scan-context.ts';
@@ -35,7 +36,7 @@ export function reduceEvents(
   room: Room,
   first: number,
   programme: Programme = { rows: segment },
-): { events: ReducedEvent[]; shown?: Shown } {
+): { events: ReducedEvent[]; shown?: Shown; glass?: GlassTransition } {
   const { timeS } = c.scan;
   const width = widthOf(bells);
   const [begin, last] = [bells[0], bells[bells.length - 1]];
@@ -51,7 +52,8 @@ export function reduceEvents(
   const events = parts.map((x, i) =>
     completeEvent(c, w, segment, isolated, x, i, room, first + i, parts.length, programme),
   );
-  return { events, shown: { window: w, excess: isolated.excess } };
+  const { together } = isolated;
+  return { events, shown: { window: w, excess: isolated.excess }, ...(together && { glass: together.glass }) };
 }
 
 function completeEvent(
@@ -100,7 +102,8 @@ function completeEvent(
     areaError: Math.hypot(
       baseline.areaError,
       w.noise * Math.sqrt((x.to - x.from) * binS ** 2),
-      separationError(x, together),
+      separationError(x),
+      isolated.together?.areaError ?? 0,
     ),
     usableFrom: isolated.glassOverlap ? USABLE.glass : CONVERSION_GRID[0],
     usableTo: isolated.meltingOverlap ? USABLE.melting : CONVERSION_GRID[CONVERSION_GRID.length - 1],
@@ -139,9 +142,12 @@ function completeEvent(
   return event;
 }
 
-/** Share of an area that the separation of overlapping events leaves open, from trials at one width apart (study `reduction`). */
+/** Share of an area that the separation of overlapping events leaves open at least, from trials at one width apart (study `reduction`). */
 const SEPARATION_PART = 0.02;
-const separationError = (x: Excess, together: number): number => (together > 1 ? SEPARATION_PART * x.area : 0);
+/** … and times what letting the shapes free moves it: events of other laws than JMAK are off by up to twice that. */
+const MOVED_AREAS = 2;
+const separationError = (x: Excess): number =>
+  x.openPart === undefined ? 0 : Math.hypot(SEPARATION_PART, MOVED_AREAS * x.openPart) * x.area;
 
 /** The part of a refitted excess that belongs to one of several events. */
 function partOf(moved: Excess, share: Float64Array, w: EventWindow): Excess {

@@ -1,134 +1,168 @@
 import { LeastSquares } from '../numeric/least-squares.ts';
-import type { Bell, Excess } from './excess.ts';
+import { interpolate } from '../numeric/local-polynomial.ts';
+import {
+  type EventClock,
+  eventClock,
+  eventValues,
+  fillShape,
+  JMAK_TURN,
+  shapeAt,
+  TOP_OF_JMAK,
+  tailByTurn,
+  tailOfTurn,
+  WIDTH_IN_V,
+} from './event-model.ts';
+import { type Bell, type Excess, halfWidths } from './excess.ts';
 import type { EventWindow } from './window.ts';
 
-/**
- * Overlapping events by a sum of Fraser–Suzuki peaks (Fraser & Suzuki 1969, Anal. Chem. 41:37; Perejón et al. 2011, J. Phys. Chem. B
- * 115:1780): y = h exp(−ln 2/s² · ln²(1 + 2 s (t − p)/ω)), 0 where the bracket is not positive; s < 0 leans to later times. Bounds: s in
- * ASYMMETRY, p between its neighbours' starts, h and ω positive; kept by fitting ln h, ln ω and the arc tangent of s.
- */
-export interface SeparatedPeak {
-  height: number;
-  peakS: number;
-  /** full width at half maximum of the symmetric case, s */
-  omegaS: number;
-  asymmetry: number;
-}
-
-const ASYMMETRY = { middle: -0.2, reach: 0.45 };
-/** A JMAK event on a ramp has s = −0.39; several peaks are held near it by this weight, so that a shoulder does not take any shape it likes. */
-const JMAK_TURN = Math.tan(((-0.39 - ASYMMETRY.middle) / ASYMMETRY.reach) * (Math.PI / 2));
-const HELD_WITH_OTHERS = 0.6;
+/** One peak's tail is free to m = 0 ± this. Of several it is first held near JMAK, so that a shoulder does not take any shape it likes. */
+const TAIL_SPREAD = { held: 0.1, free: 0.3 };
+/** A fitted shape is not trusted below this part of the height, however quiet the signal. */
+const SHAPE_ERROR = 0.003;
 const PER_PEAK = 4;
 /** Bins used in the fit: more only costs time. */
 const MOST_ROWS = { one: 120, several: 400 };
 
 export interface Separation {
-  peaks: SeparatedPeak[];
+  /** fitted heat flow of each peak on the bins of the window, signal units, in order of time */
+  values: Float64Array[];
+  bells: Bell[];
+  /** How far each area moves, as a part of it, when the tails are let free: what the choice of shape leaves open */
+  open: number[];
   /** root mean square residual, signal units */
   residual: number;
 }
 
-/** @param start rough bells in order of time */
-export function separatePeaks(w: EventWindow, x: Excess, start: Bell[]): Separation | undefined {
-  const stride = Math.max(1, Math.ceil((x.to - x.from) / (start.length > 1 ? MOST_ROWS.several : MOST_ROWS.one)));
-  const rows: number[] = [];
-  for (let i = x.from; i < x.to; i += stride) rows.push(i);
-  const p = PER_PEAK * start.length;
-  if (rows.length <= p) return undefined;
-  const scaleY = Math.max(...start.map((b) => b.height));
-  const origin = start[0].peakS;
-  const unit = Math.min(...start.map((b) => b.leftS + b.rightS));
-  const parameters = new Float64Array(p);
-  start.forEach((b, k) => {
-    parameters.set(
-      [Math.log(b.height / scaleY), (b.peakS - origin) / unit, Math.log((b.leftS + b.rightS) / unit), JMAK_TURN],
-      k * PER_PEAK,
-    );
-  });
-  const fit = new LeastSquares(rows.length + start.length, p, (q, residuals, jacobian) => {
-    for (let r = 0; r < rows.length; r++) {
-      const t = (w.t[rows[r]] - origin) / unit;
-      residuals[r] = -x.e[rows[r]] / scaleY;
-      for (let k = 0; k < start.length; k++) {
-        const at = k * PER_PEAK;
-        const h = Math.exp(q[at]);
-        const omega = Math.exp(q[at + 2]);
-        const turn = q[at + 3];
-        const s = asymmetryOf(turn);
-        const z = 1 + (2 * s * (t - q[at + 1])) / omega;
-        const row = r * p + at;
-        if (z <= 1e-9) {
-          jacobian.fill(0, row, row + PER_PEAK);
-          continue;
-        }
-        const l = Math.log(z);
-        const y = h * Math.exp((-Math.LN2 * l * l) / (s * s));
-        const byL = (-2 * Math.LN2 * l * y) / (s * s);
+/**
+ * Overlapping events by a sum of bounded asymmetric peaks (Perejón et al. 2011, J. Phys. Chem. B 115:1780, here with the shapes of
+ * event-model.ts, of which JMAK events are members). Areas and steepnesses stay positive as logarithms.
+ * @param start rough bells in order of time   @param startS of the hold, missing on a ramp
+ */
+export function separatePeaks(
+  w: EventWindow,
+  x: Excess,
+  start: Bell[],
+  startS: number | undefined,
+): Separation | undefined {
+  const fit = fitPeaks(w, x, start, startS);
+  if (!fit) return undefined;
+  const { q, held, clock, scaleY, residual } = fit;
+  const values: Float64Array[] = [];
+  const bells: Bell[] = [];
+  const open: number[] = [];
+  for (const [k, b] of start.entries()) {
+    const at = k * PER_PEAK;
+    const own = eventValues(clock, {
+      area: scaleY * Math.exp(q[at]),
+      peak: q[at + 1],
+      steepness: Math.exp(q[at + 2]),
+      tail: tailOfTurn(q[at + 3]),
+    });
+    const bell = halfWidths(w, { ...x, from: 0, to: w.t.length, e: own }, b.leftS + b.rightS);
+    if (!bell) return undefined;
+    values.push(own);
+    bells.push(bell);
+    open.push(Math.abs(Math.expm1(held[at] - q[at])));
+  }
+  return { values, bells, open, residual };
+}
+
+/** Root mean square by which one peak misses an excess, signal units. @param startS of the hold, missing on a ramp */
+export const misfitOfOne = (w: EventWindow, x: Excess, bell: Bell, startS: number | undefined): number | undefined =>
+  fitPeaks(w, x, [bell], startS)?.residual;
+
+interface PeakFit {
+  /** ln area, peak, ln steepness and turn of each peak; `held` before the tails were let free */
+  q: Float64Array;
+  held: Float64Array;
+  clock: EventClock;
+  scaleY: number;
+  residual: number;
+}
+
+function fitPeaks(w: EventWindow, x: Excess, start: Bell[], startS: number | undefined): PeakFit | undefined {
+  const count = start.length;
+  const stride = Math.max(1, Math.ceil((x.to - x.from) / (count > 1 ? MOST_ROWS.several : MOST_ROWS.one)));
+  const rows = Math.ceil((x.to - x.from) / stride);
+  const p = PER_PEAK * count;
+  if (rows <= p) return undefined;
+  const highest = start.reduce((a, b) => (b.height > a.height ? b : a));
+  const scaleY = highest.height;
+  const clock = eventClock(w, highest.peakS, startS);
+  const parameters = startOf(w, clock, start, scaleY);
+  const error = Math.max(SHAPE_ERROR, w.noise / scaleY);
+  let pull = 0;
+  const fit = new LeastSquares(rows + count, p, (q, residuals, jacobian) => {
+    for (let r = 0; r < rows; r++) residuals[r] = -x.e[x.from + r * stride] / scaleY;
+    jacobian.fill(0, rows * p);
+    for (let k = 0; k < count; k++) {
+      const at = k * PER_PEAK;
+      const [b, peak, m] = [Math.exp(q[at + 2]), q[at + 1], tailOfTurn(q[at + 3])];
+      const turned = tailByTurn(q[at + 3]);
+      const size = Math.exp(q[at]) * b;
+      for (let r = 0, row = at; r < rows; r++, row += p) {
+        const i = x.from + r * stride;
+        const v = b * (clock.X[i] - peak);
+        fillShape(v, m);
+        const y = size * clock.slope[i] * shapeAt.value;
         residuals[r] += y;
         jacobian[row] = y;
-        jacobian[row + 1] = (byL / z) * ((-2 * s) / omega);
-        jacobian[row + 2] = (byL / z) * ((-2 * s * (t - q[at + 1])) / omega);
-        const byS = (2 * Math.LN2 * l * l * y) / s ** 3 + (byL / z) * ((2 * (t - q[at + 1])) / omega);
-        jacobian[row + 3] = byS * (ASYMMETRY.reach / (1 + turn * turn)) * (2 / Math.PI);
+        jacobian[row + 1] = -y * b * shapeAt.byV;
+        jacobian[row + 2] = y * (1 + v * shapeAt.byV);
+        jacobian[row + 3] = y * shapeAt.byTail * turned;
       }
-    }
-    for (let k = 0; k < start.length; k++) {
-      const row = rows.length + k;
-      const heldBy = start.length > 1 ? HELD_WITH_OTHERS : 0;
-      residuals[row] = heldBy * (q[k * PER_PEAK + 3] - JMAK_TURN);
-      jacobian.fill(0, row * p, (row + 1) * p);
-      jacobian[row * p + k * PER_PEAK + 3] = heldBy;
+      residuals[rows + k] = pull * m;
+      jacobian[(rows + k) * p + at + 3] = pull * turned;
     }
   });
-  const scale = new Float64Array(p).fill(1);
-  const found = fit.solve(parameters, scale, 60, 1e-5);
+  const scale = scaleOf(parameters, count);
+  let held = parameters;
+  if (count > 1) {
+    pull = error / TAIL_SPREAD.held;
+    held = fit.minimise(parameters, scale, 60, 1e-3).parameters;
+  }
+  pull = error / TAIL_SPREAD.free;
+  const found = fit.minimise(held, scale, 60, count > 1 ? 1e-5 : 1e-3);
   const q = found.parameters;
   if (!q.every(Number.isFinite)) return undefined;
-  const peaks = start.map((_, k) => ({
-    height: scaleY * Math.exp(q[k * PER_PEAK]),
-    peakS: origin + unit * q[k * PER_PEAK + 1],
-    omegaS: unit * Math.exp(q[k * PER_PEAK + 2]),
-    asymmetry: asymmetryOf(q[k * PER_PEAK + 3]),
-  }));
-  return { peaks, residual: scaleY * Math.sqrt(found.sumOfSquares / rows.length) };
+  return { q, held, clock, scaleY, residual: scaleY * Math.sqrt(found.sumOfSquares / rows) };
 }
 
-/** The pole at s = 0 (a Gaussian) is stepped over: 1e-4 differs from it by less than rounding of the data. */
-function asymmetryOf(turn: number): number {
-  const s = ASYMMETRY.middle + ASYMMETRY.reach * (2 / Math.PI) * Math.atan(turn);
-  return Math.abs(s) < 1e-4 ? 1e-4 : s;
+/** ln(area/height), peak and ln steepness in X, tail of each rough bell. */
+function startOf(w: EventWindow, clock: EventClock, bells: Bell[], scaleY: number): Float64Array {
+  const out = new Float64Array(PER_PEAK * bells.length);
+  bells.forEach((b, k) => {
+    const peak = interpolate(w.t, clock.X, b.peakS);
+    const slope = interpolate(w.t, clock.slope, b.peakS);
+    const steepness = WIDTH_IN_V / ((b.leftS + b.rightS) * slope);
+    const area = b.height / scaleY / (TOP_OF_JMAK * steepness * slope);
+    out.set([Math.log(area), peak, Math.log(steepness), JMAK_TURN], k * PER_PEAK);
+  });
+  return out;
 }
 
-export function peakValue({ height, peakS, omegaS, asymmetry: s }: SeparatedPeak, t: number): number {
-  const z = 1 + (2 * s * (t - peakS)) / omegaS;
-  if (z <= 1e-9) return 0;
-  const l = Math.log(z);
-  return height * Math.exp((-Math.LN2 * l * l) / (s * s));
-}
-
-/** Half widths in closed form: ln z = ± s at half height. */
-export function bellOf({ height, peakS, omegaS, asymmetry: s }: SeparatedPeak): Bell {
-  const sides = [(omegaS * -Math.expm1(-s)) / (2 * s), (omegaS * Math.expm1(s)) / (2 * s)];
-  return { height, peakS, leftS: sides[0], rightS: sides[1] };
+/** What counts as a change: a peak's is measured in its own width. */
+function scaleOf(parameters: Float64Array, count: number): Float64Array {
+  const scale = new Float64Array(parameters.length).fill(1);
+  for (let k = 0; k < count; k++) scale[k * PER_PEAK + 1] = 1 / Math.exp(parameters[k * PER_PEAK + 2]);
+  return scale;
 }
 
 /**
  * The measured excess divided among the peaks in proportion to their fitted heights at each time: what the fitted shapes miss stays with
  * the event it lies under.
  */
-export function partExcess(w: EventWindow, x: Excess, peaks: SeparatedPeak[]): Excess[] {
-  return peaks.map((own, k) => {
+export function partExcess(w: EventWindow, x: Excess, { values, bells, open }: Separation): Excess[] {
+  return values.map((own, k) => {
     const share = new Float64Array(w.t.length);
     const e = new Float64Array(w.t.length);
     const cumulative = new Float64Array(w.t.length);
     for (let i = x.from; i < x.to; i++) {
       let total = 0;
-      for (const peak of peaks) total += peakValue(peak, w.t[i]);
-      const value = peakValue(own, w.t[i]);
+      for (const peak of values) total += peak[i];
       // Outside every fitted peak the nearest one takes the rest.
-      const nearest = w.t[i] < own.peakS ? k === 0 : k === peaks.length - 1;
-      share[i] = total > 1e-6 * own.height ? value / total : nearest ? 1 : 0;
+      const nearest = w.t[i] < bells[k].peakS ? k === 0 : k === values.length - 1;
+      share[i] = total > 1e-6 * bells[k].height ? own[i] / total : nearest ? 1 : 0;
       e[i] = share[i] * x.e[i];
     }
     let sum = k === 0 ? x.cumulative[x.from] : 0;
@@ -138,6 +172,6 @@ export function partExcess(w: EventWindow, x: Excess, peaks: SeparatedPeak[]): E
       cumulative[i] = sum;
     }
     cumulative.fill(sum, x.to);
-    return { ...x, e, cumulative, area: sum, share };
+    return { ...x, e, cumulative, area: sum, share, openPart: open[k] };
   });
 }

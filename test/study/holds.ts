@@ -67,8 +67,9 @@ export function reduceHolds(seed: string, index: number, noise = 0.003): HoldsRe
       programme,
       massKg: 8e-6,
     };
-    const reduced = reduceModel(model, 3000, { noise, drift: 0.01, driftOrder: 2 }, random.fork(`hold ${halfS}`));
-    const event = reduced?.events[0];
+    const recording = { noise, drift: 0.01, driftOrder: 2 as const };
+    const outcome = reduceModel(model, { rows: 3000, recording }, random.fork(`hold ${halfS}`));
+    const event = outcome.ok ? outcome.reduced.events[0] : undefined;
     if (!event?.curve || event.holdK === undefined || event.holdReachedS === undefined) return [];
     return [{ temperatureK: event.holdK, fit: fitHold(event.curve.timeS, CONVERSION_GRID, event.holdReachedS) }];
   });

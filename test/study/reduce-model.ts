@@ -1,5 +1,5 @@
 import { reduceScan } from '../../jobs/reduction/index.ts';
-import type { ReducedScan } from '../../schema/wire/reduced.ts';
+import type { ReduceOutcome } from '../../schema/wire/reduced.ts';
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import {
   type Random,
@@ -10,19 +10,21 @@ import {
   solveScan,
 } from './generator/index.ts';
 
+export interface RecordedAs {
+  rows: number;
+  recording: RecordingSettings;
+  uneven?: Parameters<typeof samplingTimes>[3];
+  kind?: InstrumentCalibration['kind'];
+}
+
 /** Records a simulated scan and reduces it with the truth about its instrument on the sheet. */
-export function reduceModel(
-  model: ScanModel,
-  rows: number,
-  recording: RecordingSettings,
-  random: Random,
-): ReducedScan | undefined {
-  const { instrument } = model;
-  const solution = solveScan(model, samplingTimes(0, model.programme.endS, rows));
-  const recorded = recordScan(solution, instrument.offsetK, recording, random);
+export function reduceModel(model: ScanModel, as: RecordedAs, random: Random): ReduceOutcome {
+  const { instrument, massKg, selfHeating } = model;
+  const solution = solveScan(model, samplingTimes(0, model.programme.endS, as.rows, as.uneven));
+  const recorded = recordScan(solution, instrument.offsetK, as.recording, random);
   const calibration: InstrumentCalibration = {
     instrument: 'simulated',
-    kind: 'furnace',
+    kind: as.kind ?? 'furnace',
     source: 'sheet',
     offsetK: instrument.offsetK,
     offsetSeK: 0.1,
@@ -30,8 +32,9 @@ export function reduceModel(
     lagSeS: 0.05 * instrument.shiftS,
     responseS: instrument.responseS,
     standards: 0,
+    ...(selfHeating && { resistanceKPerW: selfHeating.contactS / (massKg * selfHeating.heatCapacityJPerKgK) }),
   };
-  const outcome = reduceScan(
+  return reduceScan(
     {
       timeS: recorded.timeS,
       temperatureK: recorded.temperatureK,
@@ -41,7 +44,6 @@ export function reduceModel(
       dialect: 'simulated',
       flags: [],
     },
-    { file: 'simulated', sample: 'simulated', role: 'sample', exotherm: 'up', massKg: model.massKg, calibration },
+    { file: 'simulated', sample: 'simulated', role: 'sample', exotherm: 'up', massKg, calibration },
   );
-  return outcome.ok ? outcome.reduced : undefined;
 }

@@ -51,7 +51,9 @@ export function reduceTwoEvents(seed: string, index: number): TwoEventsResult {
       programme: rampProgramme(limits[0].startK, Math.max(limits[0].endK, limits[1].endK), rate),
       massKg: 8e-6,
     };
-    return reduceModel(model, 3000, { noise: 0.005, drift: 0.05 }, random.fork(`rate ${rate}`));
+    const recording = { noise: 0.005, drift: 0.05 };
+    const outcome = reduceModel(model, { rows: 3000, recording }, random.fork(`rate ${rate}`));
+    return outcome.ok ? outcome.reduced : undefined;
   });
   const scans = reduced.flatMap((r, k) => (r ? [{ key: `${RATES[k]} K/s`, events: r.events }] : []));
   const { numbers } = matchEvents(scans);
