@@ -6,7 +6,7 @@ import {
   fillRampIntegrals,
 } from '../laws/arrhenius-integral.ts';
 import { type JmakEstimate, JmakFit } from './avrami/non-isothermal.ts';
-import { CONVERSION_COUNT, type EventColumns, type EventData, GRID_INDEX } from './event-data.ts';
+import { CONVERSION_COUNT, type EventColumns, type EventData, GRID_INDEX, usableWeights } from './event-data.ts';
 import { fitVyazovkin } from './isoconversional/vyazovkin.ts';
 import {
   augisBennettExponent,
@@ -120,6 +120,8 @@ export interface EstimateSettings {
   /** weights of all scans, and of the curve scans */
   weights: Float64Array;
   curveWeights: Float64Array;
+  /** conversions that each scan may be used at, scan-major over all scans; all when missing */
+  usable?: Uint8Array;
   /** scatter of each curve scan's temperature, K */
   curveSigmaK: Float64Array;
   /** Augis–Bennett's energy applies */
@@ -145,12 +147,21 @@ export function createEstimator(
   const lnReaction = new Float64Array(m);
   const lnRate = Float64Array.from(s.curves, (i) => Math.log(d.rate[i]));
   const peakLnRate = d.rate.map(Math.log);
+  const weights = usableWeights(d, s.curves, s.curveWeights, s.usable).at;
   const work: ArrheniusIntegral[] = Array.from({ length: m }, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
-  const temperatureAt = (row: number): number => {
+  /** place in the columns of a row of the curve scans */
+  const cell = (row: number): number => {
     const j = (row / CONVERSION_COUNT) | 0;
-    return d.temperatureK[s.curves[j] * CONVERSION_COUNT + (row - j * CONVERSION_COUNT)];
+    return s.curves[j] * CONVERSION_COUNT + (row - j * CONVERSION_COUNT);
   };
-  const jmak = new JmakFit(s.curveSigmaK, s.x0, temperatureAt, (e, ln, by) => integrals.cumulative(e, s.x0, ln, by));
+  const { usable } = s;
+  const jmak = new JmakFit(
+    s.curveSigmaK,
+    s.x0,
+    (row) => d.temperatureK[cell(row)],
+    (e, ln, by) => integrals.cumulative(e, s.x0, ln, by),
+    usable && Uint8Array.from({ length: m * CONVERSION_COUNT }, (_, row) => usable[cell(row)]),
+  );
 
   return (warm) => {
     const out = peakEstimates(d, s, peakLnRate);
@@ -161,7 +172,7 @@ export function createEstimator(
         T[j] = d.temperatureK[at];
         lnReaction[j] = d.lnRate[at];
       }
-      const slopes = inverseSlopes(lnRate, T, s.curveWeights, lnReaction);
+      const slopes = inverseSlopes(lnRate, T, weights[k], lnReaction);
       const kas = energyFromSlopes(slopes, KISSINGER.power, KISSINGER.factor);
       const uncorrected = energyFromSlopes(slopes, 0, 1);
       out.kissingerAkahiraSunose[k] = kas;
@@ -170,7 +181,7 @@ export function createEstimator(
       out.ozawaFlynnWallCurve[k] = uncorrected / flynnFactor(uncorrected, slopes.inverse);
       // In a draw the two energies move together: their ratio in the estimate is the better start.
       const start = warm ? (kas * warm.vyazovkin[k]) / warm.kissingerAkahiraSunose[k] : kas;
-      const v = fitVyazovkin((e, o) => integrals.step(e, slopes.inverse, k, o), s.curveWeights, start, work);
+      const v = fitVyazovkin((e, o) => integrals.step(e, slopes.inverse, k, o), weights[k], start, work);
       out.vyazovkin[k] = v.energy;
       out.vyazovkinConverged &&= v.converged;
     }

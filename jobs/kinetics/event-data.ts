@@ -11,6 +11,10 @@ export const GRID_INDEX: readonly number[] = CONVERSIONS.map((a) =>
 );
 /** Pooled values are means over 0.1 … 0.9. */
 export const POOLED = { from: 1, to: 18 } as const;
+/** Rounding of a limit of conversion. */
+const EDGE = 1e-9;
+/** Fewer distinct rates than this and no method applies (ICTAC 2011: at least three programmes). */
+export const LEAST_RATES = 3;
 
 /**
  * What the methods work on: one event on n scans, columns only. Scan-major: value of scan i at conversion k is [i × 19 + k].
@@ -34,6 +38,8 @@ export interface EventData extends EventColumns {
   instrument: Uint16Array;
   instruments: InstrumentCalibration[];
   baselineErrorK: Float64Array;
+  /** 1 where the scan may be used at that conversion (not where a glass transition or melting reaches into the event) */
+  usable: Uint8Array;
   /** Programme start → α = 0.01 → … → 0.99 as measured (lag removed), for integrals over T(t); undefined without a curve */
   programmes: ({ timeS: Float64Array; temperatureK: Float64Array; gridFrom: number } | undefined)[];
 }
@@ -65,6 +71,7 @@ export function collectEvent(event: number, input: FitScan[], instruments: Instr
     instruments: used,
     instrument: new Uint16Array(n),
     baselineErrorK: new Float64Array(n * CONVERSION_COUNT),
+    usable: new Uint8Array(n * CONVERSION_COUNT),
     programmes: [],
   };
   scans.forEach((scan, i) => {
@@ -86,6 +93,8 @@ export function collectEvent(event: number, input: FitScan[], instruments: Instr
       data.temperatureK[i * CONVERSION_COUNT + k] = c.temperatureK[g];
       data.lnRate[i * CONVERSION_COUNT + k] = Math.log(c.ratePerS[g]);
       data.baselineErrorK[i * CONVERSION_COUNT + k] = c.baselineErrorK[g];
+      const a = CONVERSIONS[k];
+      if (a > e.usableFrom - EDGE && a < e.usableTo + EDGE) data.usable[i * CONVERSION_COUNT + k] = 1;
     });
     const before = c.programmeTimeS.length - 1;
     const timeS = new Float64Array(before + c.timeS.length);
@@ -97,6 +106,49 @@ export function collectEvent(event: number, input: FitScan[], instruments: Instr
     data.programmes.push({ timeS, temperatureK, gridFrom: before });
   });
   return data;
+}
+
+/** Weights of the curve scans once some conversions of some scans are left out. */
+export interface UsableWeights {
+  /** at each conversion; those of all scans where too few rates are left */
+  at: Float64Array[];
+  /** three distinct rates are left at that conversion, so it gets a number */
+  determined: boolean[];
+  /** for methods over whole curves: scans that are usable throughout, or all where those have too few rates */
+  whole: Float64Array;
+}
+
+/** @param weights of the curve scans   @param usable scan-major over all scans; all of them when missing */
+export function usableWeights(
+  columns: Pick<EventColumns, 'rate'>,
+  curves: ArrayLike<number>,
+  weights: Float64Array,
+  usable?: Uint8Array,
+): UsableWeights {
+  const keep = (holds: (scan: number) => boolean) => {
+    const kept = weights.map((w, j) => (holds(curves[j]) ? w : 0));
+    const rates = Array.from(curves).filter((_, j) => kept[j] > 0);
+    const enough = distinctRates(rates.map((i) => Math.abs(columns.rate[i]))).length >= LEAST_RATES;
+    return { kept: enough ? kept : weights, enough };
+  };
+  const each = CONVERSIONS.map((_, k) => keep((i) => usable?.[i * CONVERSION_COUNT + k] !== 0));
+  return {
+    at: each.map((e) => e.kept),
+    determined: each.map((e) => e.enough),
+    whole: keep((i) => CONVERSIONS.every((_, k) => usable?.[i * CONVERSION_COUNT + k] !== 0)).kept,
+  };
+}
+
+/** Mean over the pooled conversions that are determined; NaN where none is. */
+export function pooledMean(values: ArrayLike<number>, determined: ArrayLike<boolean>): number {
+  let sum = 0;
+  let count = 0;
+  for (let k = POOLED.from; k < POOLED.to; k++) {
+    if (!determined[k]) continue;
+    sum += values[k];
+    count++;
+  }
+  return sum / count;
 }
 
 /** Heating rates that differ by more than 2 %. */

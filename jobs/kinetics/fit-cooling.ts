@@ -4,8 +4,15 @@ import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import { fitLine } from '../numeric/line.ts';
 import type { Random } from '../numeric/random.ts';
 import { fitOzawa, ozawaTemperatures } from './avrami/ozawa.ts';
-import { CONVERSION_COUNT, collectEvent, distinctRates, type EventColumns, type EventData } from './event-data.ts';
-import { type EventFit, LEAST_RATES } from './fit-event.ts';
+import {
+  CONVERSION_COUNT,
+  collectEvent,
+  distinctRates,
+  type EventColumns,
+  type EventData,
+  LEAST_RATES,
+} from './event-data.ts';
+import type { EventFit } from './fit-event.ts';
 import { fitProgrammes } from './isoconversional/programmes.ts';
 import { COOLING_BRACKET } from './isoconversional/vyazovkin.ts';
 import { drawCalibration } from './monte-carlo.ts';

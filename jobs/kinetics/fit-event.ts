@@ -13,7 +13,16 @@ import {
   measuredIntegrals,
   rampIntegrals,
 } from './estimate.ts';
-import { CONVERSIONS, collectEvent, distinctRates, POOLED } from './event-data.ts';
+import {
+  CONVERSION_COUNT,
+  CONVERSIONS,
+  collectEvent,
+  distinctRates,
+  type EventData,
+  LEAST_RATES,
+  pooledMean,
+  usableWeights,
+} from './event-data.ts';
 import { createFurtherEstimator, type FurtherEstimates, type FurtherPlan } from './further-estimates.ts';
 import { addAnalyticRows, addFurtherRows } from './further-rows.ts';
 import { findOutliers, JMAK_RESIDUAL, judgeEnergy, judgeJmak } from './judge-event.ts';
@@ -37,9 +46,6 @@ export interface EventFit {
   /** What forecasts need of ramps with curves */
   modelFree?: ModelFreeFit;
 }
-
-/** Fewer distinct rates than this and no method applies (ICTAC 2011: at least three programmes). */
-export const LEAST_RATES = 3;
 
 /**
  * All estimates of one event with their intervals, and beside them what they would be without its outliers and, where it is not known how
@@ -98,6 +104,8 @@ function fitScans(
     curves,
     weights: model.weights,
     curveWeights: Float64Array.from(curves, (i) => model.weights[i]),
+    // Left out where all is usable: the inner loops need not ask then.
+    ...(Array.from(curves).some((i) => !wholeCurve(data, i)) && { usable: data.usable }),
     curveSigmaK: Float64Array.from(curves, (i) => model.sigmaK[data.instrument[i]]),
     augisBennett: late < 0,
     curveMethods,
@@ -124,9 +132,10 @@ function fitScans(
     );
   }
 
+  const { determined, whole } = usableWeights(data, curves, settings.curveWeights, settings.usable);
   const measured = measuredIntegrals(data, curves);
   const estimate = createEstimator(data, settings, measured)();
-  const plots = curveMethods ? plotModels(data, curves, mean(estimate.vyazovkin.subarray(POOLED.from, POOLED.to))) : [];
+  const plots = curveMethods ? plotModels(data, curves, pooledMean(estimate.vyazovkin, determined)) : [];
   const avrami = curveMethods ? judgeJmak(estimate, where) : [];
   const tops = curveMethods && judgeTops(data, curves, plots, where);
   if (tops && !avrami.some((f) => f.code === 'not-avrami')) avrami.push(tops);
@@ -153,11 +162,11 @@ function fitScans(
   const undetermined = findUndeterminedEnergy(builder.rows, where);
   if (undetermined) flags.push(undetermined);
   if (more) {
-    const varies = judgeEnergy(estimate, drawn, model, where);
+    const varies = judgeEnergy(estimate, drawn, model, determined, where);
     if (varies) flags.push(varies);
-    builder.curveRows(estimate, varies ? ['energy-varies'] : []);
-    addAnalyticRows(builder, data, settings, estimate, measured);
-    addFurtherRows(builder, more, further);
+    builder.curveRows(estimate, varies ? ['energy-varies'] : [], determined);
+    addAnalyticRows(builder, data, settings, estimate);
+    addFurtherRows(builder, more, further, determined);
     const told = reportFurther(event, more, plan, curves.length * CONVERSIONS.length, where);
     reports.push(...told.reports, ...reportModels(event, plots));
     flags.push(...avrami, ...told.flags);
@@ -168,7 +177,7 @@ function fitScans(
   const modelFree: ModelFreeFit | undefined = curveMethods
     ? {
         event,
-        curve: describeModelFree(data, curves, settings.curveWeights, measured, estimate.vyazovkin, settings.x0),
+        curve: describeModelFree(data, curves, whole, measured, estimate.vyazovkin, settings.x0),
         draws: modelFreeDraws,
         degreesOfFreedom: Math.max(1, data.n - model.trendParameters),
         lowestK: Math.min(...data.peakK),
@@ -193,6 +202,7 @@ function runDraws(
     energyJPerMol: new Float64Array(settings.curveMethods ? draws * CONVERSIONS.length : 0),
     lnStep: new Float64Array(settings.curveMethods ? draws * CONVERSIONS.length : 0),
   };
+  const { whole } = usableWeights(model.data, settings.curves, settings.curveWeights, settings.usable);
   const work = Array.from(settings.curves, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
   const furtherEstimator = createFurtherEstimator(columns, settings, plan);
   const drawn: Estimates[] = [];
@@ -206,10 +216,13 @@ function runDraws(
     further.push(furtherEstimator(main, { main: estimate.main, further: estimate.further }));
     const at = d * CONVERSIONS.length;
     modelFreeDraws.energyJPerMol.set(main.vyazovkin, at);
-    modelFreeDraws.lnStep.set(averageSegments(ramp, settings.curveWeights, main.vyazovkin, settings.x0, work), at);
+    modelFreeDraws.lnStep.set(averageSegments(ramp, whole, main.vyazovkin, settings.x0, work), at);
   }
   return { drawn, further, causes, modelFreeDraws };
 }
+
+const wholeCurve = (data: EventData, i: number): boolean =>
+  data.usable.subarray(i * CONVERSION_COUNT, (i + 1) * CONVERSION_COUNT).every((u) => u === 1);
 
 const notComputed = (event: number, method: string, message: string, rows: number): FitReport => ({
   event,

@@ -1,9 +1,8 @@
 import type { ArrheniusIntegral } from '../laws/arrhenius-integral.ts';
-import { mean } from '../numeric/statistics.ts';
 import { fitMatusitaSakka, type MatusitaSakkaEstimate } from './avrami/matusita-sakka.ts';
 import { fitOzawa } from './avrami/ozawa.ts';
 import type { EstimateSettings, Estimates } from './estimate.ts';
-import { CONVERSION_COUNT, type EventColumns, POOLED } from './event-data.ts';
+import { CONVERSION_COUNT, type EventColumns, pooledMean, usableWeights } from './event-data.ts';
 import { fitVyazovkinLinear } from './isoconversional/vyazovkin-linear.ts';
 import { compensationLnPrefactor } from './models/compensation.ts';
 import { fitSestakBerggren, type SestakBerggrenEstimate } from './models/sestak-berggren.ts';
@@ -33,10 +32,11 @@ export interface Neighbour {
 /** Makes the function that computes them from the columns as they stand when it is called; buffers are made once. */
 export function createFurtherEstimator(
   d: EventColumns,
-  { curves, curveWeights }: EstimateSettings,
+  { curves, curveWeights, usable }: EstimateSettings,
   plan: FurtherPlan,
 ): (main: Estimates, warm?: Neighbour) => FurtherEstimates {
   const m = curves.length;
+  const { at, whole, determined } = usableWeights(d, curves, curveWeights, usable);
   const rate = Float64Array.from(curves, (i) => d.rate[i]);
   const lnRate = rate.map(Math.log);
   const T = new Float64Array(m);
@@ -46,15 +46,15 @@ export function createFurtherEstimator(
     for (let k = 0; k < CONVERSION_COUNT; k++) {
       for (let j = 0; j < m; j++) T[j] = d.temperatureK[curves[j] * CONVERSION_COUNT + k];
       const ratio = warm ? warm.further.vyazovkinLinear[k] / warm.main.starink[k] : 1;
-      vyazovkinLinear[k] = fitVyazovkinLinear(rate, T, curveWeights, main.starink[k] * ratio, work).energy;
+      vyazovkinLinear[k] = fitVyazovkinLinear(rate, T, at[k], main.starink[k] * ratio, work).energy;
     }
-    const energy = mean(main.friedman.subarray(POOLED.from, POOLED.to));
-    const sestakBerggren = plan.sestakBerggren ? fitSestakBerggren(d, curves, curveWeights) : undefined;
+    const energy = pooledMean(main.friedman, determined);
+    const sestakBerggren = plan.sestakBerggren ? fitSestakBerggren(d, curves, whole) : undefined;
     return {
       vyazovkinLinear,
-      friedmanLnPrefactor: compensationLnPrefactor(d, curves, curveWeights, energy),
-      ozawaExponent: fitOzawa(d, curves, lnRate, curveWeights, plan.ozawaTemperatures),
-      matusitaSakka: fitMatusitaSakka(d, curves, lnRate, curveWeights),
+      friedmanLnPrefactor: compensationLnPrefactor(d, curves, whole, energy),
+      ozawaExponent: fitOzawa(d, curves, lnRate, whole, plan.ozawaTemperatures),
+      matusitaSakka: fitMatusitaSakka(d, curves, lnRate, whole),
       ...(sestakBerggren && { sestakBerggren }),
     };
   };

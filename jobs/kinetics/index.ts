@@ -1,9 +1,9 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
 import type { FitInput, FitResult, FitScan, ParameterRow } from '../../schema/wire/parameters.ts';
 import { createRandom } from '../numeric/random.ts';
-import { distinctRates } from './event-data.ts';
+import { distinctRates, LEAST_RATES } from './event-data.ts';
 import { fitCooling } from './fit-cooling.ts';
-import { type EventFit, fitEvent, LEAST_RATES } from './fit-event.ts';
+import { type EventFit, fitEvent } from './fit-event.ts';
 import { fitHolds } from './fit-holds.ts';
 import { fitMixed } from './fit-mixed.ts';
 

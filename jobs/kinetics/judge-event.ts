@@ -1,8 +1,8 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
-import { mean, median, robustSigma, standardDeviation } from '../numeric/statistics.ts';
+import { median, robustSigma, standardDeviation } from '../numeric/statistics.ts';
 import type { Estimates } from './estimate.ts';
-import { CONVERSIONS, POOLED } from './event-data.ts';
+import { CONVERSIONS, POOLED, pooledMean } from './event-data.ts';
 import type { ScatterModel } from './monte-carlo.ts';
 
 /** E(α) that varies by more than this part of its mean over 0.1 … 0.9 raises `energy-varies` when its interval bears it (ICTAC 2011). */
@@ -46,21 +46,24 @@ export function judgeEnergy(
   estimate: Estimates,
   drawn: Estimates[],
   model: ScatterModel,
+  determined: readonly boolean[],
   where: { sample: string; event: number },
 ): Flag | undefined {
-  const E = estimate.vyazovkin.subarray(POOLED.from, POOLED.to);
-  let high = 0;
-  let low = 0;
-  E.forEach((e, k) => {
-    if (e > E[high]) high = k;
-    if (e < E[low]) low = k;
-  });
+  const E = estimate.vyazovkin;
+  let high = -1;
+  let low = -1;
+  for (let k = POOLED.from; k < POOLED.to; k++) {
+    if (!determined[k]) continue;
+    if (high < 0 || E[k] > E[high]) high = k;
+    if (low < 0 || E[k] < E[low]) low = k;
+  }
+  if (high < 0) return undefined;
   const range = E[high] - E[low];
-  const middle = mean(E);
-  const spread = standardDeviation(drawn.map((d) => d.vyazovkin[POOLED.from + high] - d.vyazovkin[POOLED.from + low]));
+  const middle = pooledMean(E, determined);
+  const spread = standardDeviation(drawn.map((d) => d.vyazovkin[high] - d.vyazovkin[low]));
   const error = studentQuantile(0.975, Math.max(1, model.curves.length - model.trendParameters)) * spread;
   if (!(range > ENERGY_VARIES * middle && range > error)) return undefined;
-  const at = (k: number) => CONVERSIONS[POOLED.from + k].toFixed(2);
+  const at = (k: number) => CONVERSIONS[k].toFixed(2);
   return flag(
     'energy-varies',
     `E goes from ${(E[low] / 1e3).toFixed(1)} kJ/mol at α = ${at(low)} to ${(E[high] / 1e3).toFixed(1)} at α = ${at(high)}, ${((100 * range) / middle).toFixed(0)} % of its mean (limit 10 %) and more than its interval ${(error / 1e3).toFixed(1)}. Open causes: more than one step, a bent rate law, a response of the instrument left in.`,

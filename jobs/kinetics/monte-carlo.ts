@@ -2,7 +2,14 @@ import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import type { Random } from '../numeric/random.ts';
 import type { DrawCauses } from './draw-spread.ts';
-import { CONVERSION_COUNT, type EventColumns, type EventData, emptyColumns, POOLED } from './event-data.ts';
+import {
+  CONVERSION_COUNT,
+  type EventColumns,
+  type EventData,
+  emptyColumns,
+  POOLED,
+  usableWeights,
+} from './event-data.ts';
 import { fitLogTrend, fitRateTrend, fitTemperatureTrend, type Trend } from './trend.ts';
 
 /**
@@ -86,11 +93,13 @@ function modelWithTrend(data: EventData, curves: Uint16Array, bent: boolean): Sc
   const w = some(weights);
   const temperature: Trend[] = [];
   const lnRate: Trend[] = [];
+  const usable = usableWeights(data, curves, w, data.usable).at;
   for (let k = 0; k < CONVERSION_COUNT && hasTrend; k++) {
-    const T = fitTemperatureTrend(rate, pick(data.temperatureK, k), w, bentCurves);
+    const T = fitTemperatureTrend(rate, pick(data.temperatureK, k), usable[k], bentCurves);
     temperature.push(T);
-    lnRate.push(fitRateTrend(rate, T.fitted, pick(data.lnRate, k), w, bentCurves));
+    lnRate.push(fitRateTrend(rate, T.fitted, pick(data.lnRate, k), usable[k], bentCurves));
   }
+  for (const trends of [temperature, lnRate]) fillUnusable(trends, data.usable, curves);
   return {
     data,
     bent,
@@ -104,6 +113,23 @@ function modelWithTrend(data: EventData, curves: Uint16Array, bent: boolean): Sc
     lnRate,
     curves,
   };
+}
+
+/** Where a scan is not usable its residual says nothing of scatter: that of its nearest usable conversion stands there. */
+function fillUnusable(trends: Trend[], usable: Uint8Array, curves: Uint16Array): void {
+  for (let j = 0; j < curves.length; j++) {
+    const at = curves[j] * CONVERSION_COUNT;
+    for (let k = 0; k < trends.length; k++) {
+      if (usable[at + k]) continue;
+      for (let away = 1; away < CONVERSION_COUNT; away++) {
+        const near = usable[at + k - away] && k >= away ? k - away : k + away;
+        if (near >= CONVERSION_COUNT || !usable[at + near]) continue;
+        trends[k].residuals[j] = trends[near].residuals[j];
+        trends[k].leverage[j] = trends[near].leverage[j];
+        break;
+      }
+    }
+  }
 }
 
 /**

@@ -4,7 +4,7 @@ import { studentQuantile } from '../numeric/distributions.ts';
 import { mean, standardDeviation } from '../numeric/statistics.ts';
 import { type DrawCauses, DrawSpread } from './draw-spread.ts';
 import type { EstimateSettings, Estimates } from './estimate.ts';
-import { CONVERSIONS, type EventData, POOLED } from './event-data.ts';
+import { CONVERSIONS, type EventData, pooledMean } from './event-data.ts';
 import { type ScatterModel, scanDegrees } from './monte-carlo.ts';
 import {
   BOSWELL,
@@ -129,7 +129,8 @@ export class RowBuilder {
     this.add(exponent, (v) => v.augisBennettExponent, e, 1, true, false);
   }
 
-  curveRows(e: Estimates, pooledFlags: FlagCode[]): void {
+  /** @param determined conversions that enough rates are usable at: the others get no row */
+  curveRows(e: Estimates, pooledFlags: FlagCode[], determined: readonly boolean[]): void {
     const methods: [string, (e: Estimates) => Float64Array][] = [
       ['friedman', (v) => v.friedman],
       ['kissinger_akahira_sunose', (v) => v.kissingerAkahiraSunose],
@@ -139,16 +140,9 @@ export class RowBuilder {
     ];
     for (const [method, of] of methods) {
       const where = { quantity: 'activation_energy', method, unit: 'kJ/mol' };
-      this.add(
-        { ...where, flags: pooledFlags },
-        (v) => mean(of(v).subarray(POOLED.from, POOLED.to)),
-        e,
-        1e-3,
-        true,
-        true,
-      );
+      this.add({ ...where, flags: pooledFlags }, (v) => pooledMean(of(v), determined), e, 1e-3, true, true);
       CONVERSIONS.forEach((conversion, k) => {
-        this.add({ ...where, conversion }, (v) => of(v)[k], e, 1e-3, true, true);
+        if (determined[k]) this.add({ ...where, conversion }, (v) => of(v)[k], e, 1e-3, true, true);
       });
     }
     if (!e.jmak) return;

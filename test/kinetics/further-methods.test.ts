@@ -5,6 +5,7 @@ import { fisherQuantile } from '../../jobs/numeric/distributions.ts';
 import type { FitInput, FitResult } from '../../schema/wire/parameters.ts';
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
+import { validate } from '../validation/validate.ts';
 import { exactScan, furnace } from './exact-curves.ts';
 import { sestakBerggrenScan, smearedScan } from './exact-laws.ts';
 
@@ -73,10 +74,16 @@ describe('intervals beside the Monte Carlo ones', () => {
     }
   });
   test('F quantiles are those of the table (NIST/SEMATECH e-Handbook 1.3.6.7.3, 5 %)', () => {
-    expect(fisherQuantile(0.95, 2, 2)).toBeCloseTo(19.0, 3);
-    expect(fisherQuantile(0.95, 4, 4)).toBeCloseTo(6.388, 3);
-    expect(fisherQuantile(0.95, 9, 9)).toBeCloseTo(3.179, 3);
-    expect(fisherQuantile(0.95, 1, 10)).toBeCloseTo(4.965, 3);
+    for (const [a, b, expected] of [
+      [2, 2, 19.0],
+      [4, 4, 6.388],
+      [9, 9, 3.179],
+      [1, 10, 4.965],
+    ]) {
+      const got = fisherQuantile(0.95, a, b);
+      const quantity = `F(0.95; ${a}, ${b})`;
+      validate({ method: 'quantiles', quantity, source: 'nistHandbook', expected, got, within: 5e-4 });
+    }
     expect(() => fisherQuantile(1, 2, 2)).toThrow(RangeError);
   });
 });

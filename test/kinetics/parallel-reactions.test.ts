@@ -1,6 +1,7 @@
 import { describe, expect, test } from 'vitest';
 import { fitSample } from '../../jobs/kinetics/index.ts';
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
+import { validate } from '../validation/validate.ts';
 import { parallelScan } from './parallel-reactions.ts';
 
 const furnace: InstrumentCalibration = {
@@ -55,16 +56,27 @@ describe('two parallel first-order reactions, 0.5 to 8 K/min', () => {
   test.each(EXACT)(
     'α = %d: Friedman, KAS, Starink and the linear Vyazovkin form to 1e-5',
     (a, _s, _f, friedman, kas, starink, full) => {
-      expect(at('friedman', a) / friedman).toBeCloseTo(1, 5);
-      expect(at('kissinger_akahira_sunose', a) / kas).toBeCloseTo(1, 5);
-      expect(at('starink', a) / starink).toBeCloseTo(1, 5);
-      expect(at('vyazovkin_linear', a) / full).toBeCloseTo(1, 5);
+      const check = (method: string, expected: number) =>
+        validate({
+          method,
+          quantity: `E at α = ${a}, two parallel reactions, kJ/mol`,
+          source: 'parallel',
+          expected,
+          got: at(method, a),
+          within: 5e-6 * expected,
+        });
+      check('friedman', friedman);
+      check('kissinger_akahira_sunose', kas);
+      check('starink', starink);
+      check('vyazovkin_linear', full);
     },
   );
   test('incremental Vyazovkin is Friedman’s E in the middle of its step, to 0.2 %, which the integral from zero is not', () => {
     for (const [a, , , friedman, , , full] of EXACT.slice(1)) {
       const middle = (friedman + at('friedman', Math.round(20 * a - 1) / 20)) / 2;
-      expect(Math.abs(at('vyazovkin', a) / middle - 1)).toBeLessThan(2e-3);
+      const quantity = `E of the step to α = ${a} against the middle of Friedman’s, two parallel reactions, kJ/mol`;
+      const [expected, got] = [middle, at('vyazovkin', a)];
+      validate({ method: 'vyazovkin', quantity, source: 'parallel', expected, got, within: 2e-3 * middle });
       if (a >= 0.3 && a <= 0.8) expect(at('vyazovkin', a) - full).toBeGreaterThan(3);
     }
   });

@@ -68,13 +68,14 @@ export class JmakFit {
 
   /**
    * @param sigmaK scatter of each scan's temperature, K   @param temperatureAt K at each conversion of each scan, scan-major; read at every
-   * fit
+   * fit   @param usable 0 for points to leave out; all count when missing
    */
   constructor(
     private readonly sigmaK: ArrayLike<number>,
     private readonly x0: number,
     private readonly temperatureAt: (row: number) => number,
     private readonly cumulative: CumulativeIntegrals,
+    private readonly usable?: Uint8Array,
   ) {
     const rows = sigmaK.length * CONVERSION_COUNT;
     this.lnI = new Float64Array(rows);
@@ -192,7 +193,7 @@ export class JmakFit {
     const lnK0 = p[1];
     const n = p[2];
     if (!(energy > 0) || !(n > 0.05) || n > 50) return Number.POSITIVE_INFINITY;
-    const { lnI, byEnergy, perKelvin, border, normal } = this;
+    const { lnI, byEnergy, perKelvin, border, normal, usable } = this;
     this.cumulative(energy, lnI, byEnergy);
     let curveSquares = 0;
     let shiftSquares = 0;
@@ -217,6 +218,7 @@ export class JmakFit {
       const from = i * CONVERSION_COUNT;
       for (let k = 0; k < CONVERSION_COUNT; k++) {
         const row = from + k;
+        if (usable && usable[row] === 0) continue;
         const perShift = perKelvin[row];
         const lnX = lnK0 + lnI[row] - energy * perShift * shift;
         const X = Math.exp(n * lnX);
