@@ -1,9 +1,10 @@
 import type { SharedLaw } from '../../schema/wire/shared-law.ts';
 import { lnTimeGradient } from '../forecast/index.ts';
-import { analyseBend, degreesLeft, settleBend } from '../glass/verdict/analyse.ts';
+import { analyseBend, type BendAnalysis, degreesLeft, settleBend } from '../glass/verdict/analyse.ts';
+import { believeBend } from '../glass/verdict/bend-belief.ts';
 import { collectJudged, lawData } from '../glass/verdict/collect.ts';
 import type { ConditionValue } from '../glass/verdict/condition.ts';
-import type { LawData, LawFit } from '../glass/verdict/law-fit.ts';
+import type { LawData, LawFit, Layout } from '../glass/verdict/law-fit.ts';
 import { fitSharedLaw } from '../glass/verdict/shared-law.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import { createRandom } from '../numeric/random.ts';
@@ -18,15 +19,14 @@ const LEAST_DEGREES = 2;
 export interface AdviceAnalysis {
   data: LawData;
   fit: LawFit;
-  /** The law with bend and lags free, from which the scatter and its degrees of freedom come */
-  full: LawFit;
-  /** Degrees of freedom behind each instrument's scatter */
-  scatterDegrees: Float64Array;
+  law: SharedLaw;
+  /** Where the fit holds its bend: what else the bend may be, from the same law with the bend free */
+  open?: { bent: LawFit; centred: boolean };
+  /** The verdict's analysis: the law with bend and lags free, from which the scatter and its degrees of freedom come */
+  bend: BendAnalysis;
   instruments: readonly string[];
   /** K, scatter of one scan with its own error, an instrument each */
   sigmaK: readonly number[];
-  /** B = q × span */
-  span: number;
 }
 
 /**
@@ -38,60 +38,53 @@ export function analyseForAdvice({
   event,
   scans,
   instruments,
-  verdict,
+  verdict = 'undecided',
+  law,
 }: AdviceInput): Record<'bend' | 'forecast', AdviceAnalysis> | undefined {
   const judged = collectJudged(event, scans, instruments);
   const { data, own } = lawData(judged, judged.hasCentroid ? 'centroid' : 'peak');
   if (degreesLeft(data) < LEAST_DEGREES) return undefined;
   const settled = settleBend(data, own);
   if (!settled) return undefined;
-  const found = analyseBend(data, own, settled, undefined, 0);
+  const bend = analyseBend(data, own, settled, undefined, 0);
   const sigmaK = judged.instruments.map((_, j) => {
     const errors = own.filter((__, i) => data.instrument[i] === j);
-    return Math.sqrt(found.scatter.varianceK2[j] + errors.reduce((s, v) => s + v * v, 0) / errors.length);
+    return Math.sqrt(bend.scatter.varianceK2[j] + errors.reduce((s, v) => s + v * v, 0) / errors.length);
   });
-  const common = {
-    data,
-    full: found.full,
-    scatterDegrees: found.scatter.degrees,
-    instruments: judged.instruments.map((c) => c.instrument),
-    sigmaK,
-    span: found.span,
+  const shared = fitSharedLaw(sample, judged, bend, verdict, undefined, createRandom(''), 0, law?.driving);
+  const common = { bend, law: shared.law, instruments: judged.instruments.map((c) => c.instrument), sigmaK };
+  const held = shared.fit.layout.bend < 0;
+  return {
+    bend: { ...common, data, fit: bend.full },
+    forecast: {
+      ...common,
+      data: shared.data,
+      fit: shared.fit,
+      ...(held && { open: { bent: shared.bent, centred: verdict === 'undecided' } }),
+    },
   };
-  const shared = fitSharedLaw(sample, judged, found, verdict ?? 'undecided', undefined, createRandom(''), 0);
-  return { bend: { ...common, fit: found.full }, forecast: { ...common, fit: shared.fit } };
 }
 
 /** The forecast of a time at a constant temperature as a goal: derivatives of log10 t, and the exponent's share of its variance. */
 export function forecastGoal(
-  { fit, data }: AdviceAnalysis,
+  { law: made, fit }: AdviceAnalysis,
   conversion: number,
   temperatureK: number,
-  { law, lawDraws, scans, avramiExponent }: AdviceInput,
+  { law, lawDraws }: AdviceInput,
 ): LawGoal {
-  const measured = scans.map((s) => s.event.centroidK);
-  const lowestMeasuredK = law?.lowestMeasuredK ?? Math.min(...measured);
   const at: SharedLaw = {
-    sample: '',
-    event: 0,
-    lnRateAtMiddle: fit.lnK0,
-    energyJPerMol: Math.exp(fit.lnEnergy),
+    ...made,
+    ...(law && { avramiExponent: law.avramiExponent, frozenBelowK: law.frozenBelowK }),
     bend: fit.q,
-    x0PerK: data.scale.x0,
-    dxPerK: data.scale.dx,
-    avramiExponent: law?.avramiExponent ?? avramiExponent,
-    frozenBelowK: law?.frozenBelowK ?? lowestMeasuredK,
-    lowestMeasuredK,
-    highestMeasuredK: law?.highestMeasuredK ?? Math.max(...measured),
   };
   const gradient = lnTimeGradient(at, temperatureK).map((v) => v / Math.LN10) as [number, number, number];
   const spread =
     lawDraws && lawDraws.avramiExponent.length > 1 ? standardDeviation(lawDraws.avramiExponent.map((n) => 1 / n)) : 0;
-  return {
-    gradient,
-    exponentVariance: ((Math.log(-Math.log1p(-conversion)) * spread) / Math.LN10) ** 2,
-    decides: 'energy',
-  };
+  const exponentVariance = ((Math.log(-Math.log1p(-conversion)) * spread) / Math.LN10) ** 2;
+  const ends = [made.lowestMeasuredK, made.highestMeasuredK].map((T) => (1 / T - made.x0PerK) / made.dxPerK);
+  // Whichever of the local energies at both ends has the fewest degrees of freedom sets the t of the draws.
+  const decides = fit.layout.bend >= 0 ? ends.map((u) => [0, 1, u] as const) : [[0, 1, 0] as const];
+  return { gradient, exponentVariance, decides };
 }
 
 /** What is wanted of the law, as its derivatives by (ln K0, ln E0, q) and a variance that no further scan narrows. */
@@ -99,8 +92,8 @@ export interface LawGoal {
   gradient: readonly [number, number, number];
   /** Variance from the Avrami exponent now, and the scans behind it: it falls as one over their number */
   exponentVariance: number;
-  /** Whose degrees of freedom the interval shown counts with */
-  decides: 'energy' | 'bend';
+  /** Combinations of (ln K0, ln E0, q) of which the one with the fewest degrees of freedom sets Student's t of the interval shown */
+  decides: readonly (readonly [number, number, number])[];
 }
 
 /** Whitened derivatives of one more scan's residual, K over its scatter, and the scan's instrument. */
@@ -120,7 +113,7 @@ export class LawPrecision {
 
   constructor(private readonly analysis: AdviceAnalysis) {
     this.d = analysis.data;
-    this.ownDegrees = this.ownDegreesOf(analysis.full.inverse, undefined, 0);
+    this.ownDegrees = this.ownDegreesOf(analysis.bend.full.inverse, undefined, 0);
   }
 
   /** Temperature expected at a rate, K, and the whitened row of derivatives; undefined for an instrument that the fit does not have. */
@@ -149,32 +142,57 @@ export class LawPrecision {
 
   /** Full 95 % width of the goal, now or with `count` further scans of one kind. */
   width(goal: LawGoal, more?: Candidate, count = more ? 1 : 0): number | undefined {
-    const { fit, full } = this.analysis;
+    const { fit, bend, open } = this.analysis;
     const { layout, inverse } = fit;
-    const added = more && this.row(more);
-    const addedFull = more && this.row(more, full);
-    if (!inverse || !full.inverse || (more && !(added && addedFull))) return undefined;
     const { p } = layout;
+    const added = more && this.row(more);
+    const addedFull = more && this.row(more, bend.full);
     const degrees = this.d.n + count - p + this.d.instruments;
-    if (degrees < 1) return undefined;
+    if (!inverse || !bend.full.inverse || (more && !(added && addedFull)) || degrees < 1) return undefined;
     const covariance = withRows(inverse, added?.row, p, count);
-    const gradient = new Float64Array(p);
-    gradient[0] = goal.gradient[0];
-    gradient[1] = goal.gradient[1];
-    if (layout.bend >= 0) gradient[layout.bend] = goal.gradient[2];
-    const variance = form(covariance, gradient, 0, p);
+    const openVariance = open ? this.openVariance(goal, open, more, count) : 0;
+    if (openVariance === undefined) return undefined;
+    const variance = form(covariance, spread(goal.gradient, layout), 0, p) + openVariance;
     const exponent = (goal.exponentVariance * this.d.n) / (this.d.n + count);
-    const own = this.ownDegreesOf(withRows(full.inverse, addedFull?.row, full.layout.p, count), addedFull, count);
-    const effective = this.effectiveDegrees(goal.decides === 'bend' ? layout.bend : 1, covariance, own, added, count);
+    const own = this.ownDegreesOf(
+      withRows(bend.full.inverse, addedFull?.row, bend.full.layout.p, count),
+      addedFull,
+      count,
+    );
+    let effective = degrees;
+    for (const of of goal.decides)
+      effective = Math.min(effective, this.effectiveDegrees(spread(of, layout), covariance, own, added, count));
     const t = studentQuantile(0.975, degrees);
     const lawT = effective < degrees ? studentQuantile(0.975, effective) : t;
     return 2 * Math.sqrt(lawT ** 2 * variance + t ** 2 * exponent);
   }
 
+  /**
+   * What the bend left open adds to the variance of the goal: with the bend moved, ln K0 and E0 follow along Σ_q/Σ_qq of the law with
+   * its bend free. A further scan tells more of the bend, by as much as its variance there falls.
+   */
+  private openVariance(
+    { gradient }: LawGoal,
+    { bent, centred }: NonNullable<AdviceAnalysis['open']>,
+    more: Candidate | undefined,
+    count: number,
+  ): number | undefined {
+    const { p, bend: q } = bent.layout;
+    const added = more && this.row(more, bent);
+    if (!bent.inverse || (more && !added)) return undefined;
+    const inverse = withRows(bent.inverse, added?.row, p, count);
+    const { mean, meanSquare } = believeBend(this.analysis.bend, { ...bent, inverse });
+    let along = 0;
+    spread(gradient, bent.layout).forEach((g, a) => {
+      along += (g * inverse[a * p + q]) / inverse[q * (p + 1)];
+    });
+    return (centred ? meanSquare - mean * mean : meanSquare) * along ** 2;
+  }
+
   /** Σ(1 − leverage) of each instrument's scans under the law with bend and lags free. */
   private ownDegreesOf(covariance: Float64Array | undefined, added: NewRow | undefined, count: number): Float64Array {
     const out = new Float64Array(this.d.instruments);
-    const { jacobian, layout } = this.analysis.full;
+    const { jacobian, layout } = this.analysis.bend.full;
     if (!covariance) return out;
     const { p } = layout;
     for (let i = 0; i < this.d.n; i++) out[this.d.instrument[i]] += 1 - form(covariance, jacobian, i, p);
@@ -182,9 +200,9 @@ export class LawPrecision {
     return out;
   }
 
-  /** Satterthwaite's degrees of freedom of one parameter: each instrument's share of its variance counts with its scatter's, priors as known. */
+  /** Satterthwaite's degrees of freedom of a combination of parameters: each instrument's share of its variance counts with its scatter's, priors as known. */
   private effectiveDegrees(
-    at: number,
+    of: Float64Array,
     covariance: Float64Array,
     own: Float64Array,
     added: NewRow | undefined,
@@ -192,11 +210,13 @@ export class LawPrecision {
   ): number {
     const { jacobian, layout } = this.analysis.fit;
     const { p, rows } = layout;
+    const along = new Float64Array(p);
+    for (let a = 0; a < p; a++) for (let b = 0; b < p; b++) along[a] += covariance[a * p + b] * of[b];
     const shares = new Float64Array(this.d.instruments);
     let total = 0;
     const take = (J: Float64Array, k: number, instrument: number, times: number) => {
       let c = 0;
-      for (let b = 0; b < p; b++) c += covariance[at * p + b] * J[k * p + b];
+      for (let b = 0; b < p; b++) c += along[b] * J[k * p + b];
       total += times * c * c;
       if (instrument >= 0) shares[instrument] += times * c * c;
     };
@@ -204,9 +224,18 @@ export class LawPrecision {
     if (added) take(added.row, 0, added.instrument, count);
     let sum = 0;
     for (let j = 0; j < shares.length; j++)
-      sum += shares[j] ** 2 / (this.analysis.scatterDegrees[j] + own[j] - this.ownDegrees[j]);
+      sum += shares[j] ** 2 / (this.analysis.bend.scatter.degrees[j] + own[j] - this.ownDegrees[j]);
     return Math.max(1, Math.min(1e4, (total * total) / sum));
   }
+}
+
+/** A combination of (ln K0, ln E0, q) in the parameters of a fit; a held q is none of them. */
+function spread(of: readonly [number, number, number], layout: Layout): Float64Array {
+  const out = new Float64Array(layout.p);
+  out[0] = of[0];
+  out[1] = of[1];
+  if (layout.bend >= 0) out[layout.bend] = of[2];
+  return out;
 }
 
 /** vᵀ C v for row k of v. */

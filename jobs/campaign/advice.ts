@@ -104,7 +104,7 @@ export function widthsOf(input: AdviceInput): (goal: AdviceGoal) => Width {
     const precision = new LawPrecision(analysis);
     const wanted: LawGoal =
       goal.goal === 'bend'
-        ? { gradient: [0, 0, analysis.span], exponentVariance: 0, decides: 'bend' }
+        ? { gradient: [0, 0, analysis.bend.span], exponentVariance: 0, decides: [[0, 0, 1]] }
         : forecastGoal(analysis, goal.conversion, goal.temperatureK, input);
     return (more, count) => precision.width(wanted, more, count);
   };

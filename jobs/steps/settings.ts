@@ -4,7 +4,7 @@ export const STEP_VERSIONS = {
   'reduce-scan': 4,
   'fit-sample': 3,
   'judge-curvature': 2,
-  'forecast-sample': 2,
+  'forecast-sample': 3,
 } as const;
 
 /** Draws of the Monte Carlo behind each interval. */

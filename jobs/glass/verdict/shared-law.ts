@@ -16,6 +16,9 @@ export interface SharedFit {
   law: SharedLaw;
   draws: SharedLawDraws;
   fit: LawFit;
+  /** what was fitted, and the same law with its bend free, on which the bend that is left open rests */
+  data: LawData;
+  bent: LawFit;
   /** temperature of the material at each scan, offset and lag taken out, K */
   trueK: Float64Array;
   /** n of each scan's curve (of its width where it has none) */
@@ -43,7 +46,7 @@ export function fitSharedLaw(
 ): SharedFit {
   const driven =
     melting && verdict !== 'straight' && verdict !== 'instrument' ? fitLawOf(a, verdict, melting) : undefined;
-  const { d, problem, fit, openBend } = driven ?? fitLawOf(a, verdict, undefined)!;
+  const { d, problem, fit, bent, openBend } = driven ?? fitLawOf(a, verdict, undefined)!;
   const { driving } = d.condition;
   const trueK = Float64Array.from({ length: d.n }, (_, i) =>
     materialK(d.temperatureK[i] - fit.residualK[i], fit, d, i),
@@ -93,6 +96,8 @@ export function fitSharedLaw(
     },
     draws: drawn,
     fit,
+    data: d,
+    bent,
     trueK,
     exponents,
     degrees,
@@ -116,12 +121,12 @@ function fitLawOf(a: BendAnalysis, verdict: Verdict, melting: Melting | undefine
   const free = new LawProblem(d, { bend: 'free', lags, state });
   const bent = free.fit(near);
   if (melting && !bent.converged) return undefined;
-  if (verdict === 'material') return { d, problem: free, fit: bent, openBend: 0 };
+  if (verdict === 'material') return { d, problem: free, fit: bent, bent, openBend: 0 };
   const belief = believeBend(a, bent);
   const centre = verdict === 'undecided' ? belief.mean : 0;
   const problem = new LawProblem(d, { bend: centre, lags, state });
   const openBend = Math.sqrt(belief.meanSquare + centre * (centre - 2 * belief.mean));
-  return { d, problem, fit: problem.fit([bent.lnK0, bent.lnEnergy]), openBend };
+  return { d, problem, fit: problem.fit([bent.lnK0, bent.lnEnergy]), bent, openBend };
 }
 
 /**
