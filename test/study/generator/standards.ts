@@ -1,4 +1,4 @@
-import { integrate, TIGHT } from './integrator.ts';
+import { integrate } from './integrator.ts';
 import type { Programme } from './programme.ts';
 import type { InstrumentModel, ScanSolution } from './scan-model.ts';
 
@@ -17,6 +17,12 @@ export const METALS: Record<'In' | 'Sn' | 'Zn', StandardMetal> = {
   Sn: { symbol: 'Sn', meltingK: 505.078, enthalpyJPerKg: 60_400, heatCapacityJPerKgK: 250 },
   Zn: { symbol: 'Zn', meltingK: 692.677, enthalpyJPerKg: 108_106, heatCapacityJPerKgK: 450 },
 };
+
+/**
+ * Enthalpy passes through 0 where melting begins, with a kink there: a tolerance relative to it alone would allow no step at all. 1e-7 J/kg is
+ * 4e-12 of an enthalpy of fusion.
+ */
+const TOLERANCE = { relativeTolerance: 1e-11, absoluteTolerance: 1e-7 };
 
 /**
  * Melting of a pure metal behind a contact resistance. The state is the metal's enthalpy h (J/kg, 0 = solid at T_m), so
@@ -73,7 +79,7 @@ export function solveStandard(
       // Height of the peak over the level of plain warming, for noise fractions.
       solution.eventW[k] = -solution.signalW[k] - massKg * capacity * leg.rateKPerS(t);
     },
-    TIGHT,
+    TOLERANCE,
   );
   return solution;
 }
