@@ -2,7 +2,7 @@ import type { SharedLaw, SharedLawDraws } from '../../schema/wire/shared-law.ts'
 import { fitLine } from '../numeric/line.ts';
 import { lnDrivingFactor, type Melting, thompsonSpaepenDrivingForce, turnbullDrivingForce } from './driving-force.ts';
 import { lnRateCurve, lnRateOf, type RateLaw } from './shared-law-values.ts';
-import { log10Viscosity, type ViscosityLaw } from './viscosity.ts';
+import { log10Viscosity, type ViscosityFit, type ViscosityLaw } from './viscosity.ts';
 
 /** Published trend ξ ≈ 1.1 − 0.005 m (Ediger, Harrowell & Yu 2008, J. Chem. Phys. 128:034709; the two coefficients from memory). */
 export const trendDecoupling = (fragility: number): number => 1.1 - 0.005 * fragility;
@@ -23,6 +23,8 @@ export interface Decoupling {
 }
 
 const POINTS = 15;
+/** Step of the differences: decades, K, units of m */
+const STEP = 0.01;
 /** Nearer to melting than this the driving force's own error rules. */
 const BELOW_MELTING = 0.97;
 /** The liquid must span this much of 1/T (as T difference ÷ T) for a slope. */
@@ -69,6 +71,32 @@ export function fitDecoupling(
     lowK,
     highK,
   };
+}
+
+/**
+ * Standard error of ξ from that of a fitted viscosity law: by central differences over its three parameters, whose errors go together (a table
+ * pins η between its rows far better than m at Tg).
+ */
+export function decouplingError(
+  law: SharedLaw,
+  { law: viscosity, covariance }: Pick<ViscosityFit, 'law' | 'covariance'>,
+  melting: Melting | undefined,
+): number {
+  if (!covariance) return 0;
+  const none = new Float64Array(0);
+  const draws = { lnRateAtMiddle: none, energyJPerMol: none, bend: none, avramiExponent: none };
+  const at = (part: Partial<ViscosityLaw>) =>
+    fitDecoupling(law, draws, { ...viscosity, ...part }, melting)?.exponent ?? Number.NaN;
+  const { log10Infinity, glassTransitionK, fragility } = viscosity;
+  const gradient = [
+    (at({ log10Infinity: log10Infinity + STEP }) - at({ log10Infinity: log10Infinity - STEP })) / (2 * STEP),
+    (at({ glassTransitionK: glassTransitionK + STEP }) - at({ glassTransitionK: glassTransitionK - STEP })) /
+      (2 * STEP),
+    (at({ fragility: fragility + STEP }) - at({ fragility: fragility - STEP })) / (2 * STEP),
+  ];
+  let variance = 0;
+  for (let a = 0; a < 3; a++) for (let b = 0; b < 3; b++) variance += gradient[a] * covariance[a * 3 + b] * gradient[b];
+  return Math.sqrt(Math.max(0, variance));
 }
 
 /** log10 of the growth rate (m/s) at T: K of the law scaled so that it meets one measured growth rate. Holds if nuclei pre-exist. */

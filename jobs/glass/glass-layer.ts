@@ -3,7 +3,8 @@ import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { GlassFacts } from '../../schema/wire/verdicts.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import { mean, standardDeviation } from '../numeric/statistics.ts';
-import { fitDecoupling, trendDecoupling } from './decoupling.ts';
+import { fitGordonTaylor, type GordonTaylorFit, glassTransitionOfMixture } from './composition.ts';
+import { decouplingError, fitDecoupling, trendDecoupling } from './decoupling.ts';
 import { meltingOf } from './driving-force.ts';
 import { fitMoynihan, type MoynihanFit } from './fragility.ts';
 import { makeParameter, type RowBase } from './rows.ts';
@@ -18,9 +19,11 @@ export interface GlassState {
   fits: ViscosityFit[];
   /** the law that growth is compared with: MYEGA of the table, else of (Tg, m) */
   viscosity?: ViscosityLaw;
-  /** one standard error of m as a part of it, where it is known */
+  /** one standard error of m as a part of it, where m comes from Tg(β) */
   fragilityError: number;
   glassTransitionK?: number;
+  /** Tg(w) over the sample's series */
+  composition?: GordonTaylorFit;
   rows: ParameterRow[];
   flags: Flag[];
 }
@@ -98,8 +101,13 @@ export function readGlass(sample: string, facts: GlassFacts): GlassState {
       ),
     );
   }
+  const composition = readComposition(sample, facts, flags);
   const glassTransitionK =
-    moynihan?.glassTransitionK ?? facts.glassTransitionK ?? slowest(seen) ?? myega?.law.glassTransitionK;
+    moynihan?.glassTransitionK ??
+    facts.glassTransitionK ??
+    slowest(seen) ??
+    myega?.law.glassTransitionK ??
+    (composition && glassTransitionOfMixture(composition.law, facts.solventFraction ?? 0));
   const fragility = moynihan?.fragility ?? facts.fragility;
   const spread = moynihan
     ? Math.log(moynihan.fragility95[1] / moynihan.fragility) / studentQuantile(0.975, Math.max(1, moynihan.degrees))
@@ -113,11 +121,39 @@ export function readGlass(sample: string, facts: GlassFacts): GlassState {
     moynihan,
     fits,
     viscosity,
-    fragilityError: myega ? (myega.fragilityError ?? 0) / myega.law.fragility : spread,
+    fragilityError: spread,
     glassTransitionK,
+    composition,
     rows,
     flags,
   };
+}
+
+/** Gordon and Taylor's law over the series that the sample belongs to. */
+function readComposition(sample: string, facts: GlassFacts, flags: Flag[]): GordonTaylorFit | undefined {
+  const { series, solventFraction, compositions = [] } = facts;
+  if (series === undefined || solventFraction === undefined) return undefined;
+  const found = fitGordonTaylor(compositions);
+  if (found?.fit.converged) return found;
+  flags.push(
+    flag(
+      'method-not-applicable',
+      `Tg(w) of the series ${series} is not fitted: samples.csv gives the glass transition of ${compositions.length} of its compositions${found ? ', which do not determine it' : ''}; three different ones are needed.`,
+      'Add compositions with their glass transition; the pure solvent, at a fraction of 1, is one.',
+      { sample },
+    ),
+  );
+  return undefined;
+}
+
+/** Tg(w) of the series, and where the measured temperatures lie above that of this composition. */
+function compositionSentence(facts: GlassFacts, { law, errors }: GordonTaylorFit, shared: SharedFit): string {
+  const w = facts.solventFraction ?? 0;
+  const Tg = glassTransitionOfMixture(law, w);
+  const { lowestMeasuredK: low, highestMeasuredK: high } = shared.law;
+  const part = (value: number, error: number | undefined, digits: number) =>
+    `${value.toFixed(digits)}${error === undefined ? '' : ` ± ${error.toFixed(digits)}`}`;
+  return `Over the series ${facts.series} Tg(w) follows Gordon and Taylor with ${part(law.solidK, errors?.solidK, 1)} K dry, ${part(law.solventK, errors?.solventK, 1)} K for the solvent and k = ${part(law.k, errors?.k, 2)} (one standard error); at w = ${w} it is ${Tg.toFixed(1)} K, and the event was measured at T − Tg(w) of ${(low - Tg).toFixed(1)} to ${(high - Tg).toFixed(1)} K.`;
 }
 
 const slowest = (seen: { temperatureK: number }[]): number | undefined => seen[0]?.temperatureK;
@@ -149,7 +185,9 @@ export function glassOfEvent(
         );
       }
       const t = studentQuantile(0.975, shared.degrees);
-      const spread = t * Math.hypot(standardDeviation(xi.drawn.map(Math.log)), glass.fragilityError);
+      const table = glass.fits.find((f) => f.law === glass.viscosity);
+      const fromViscosity = table ? decouplingError(shared.law, table, melting) / xi.exponent : glass.fragilityError;
+      const spread = t * Math.hypot(standardDeviation(xi.drawn.map(Math.log)), fromViscosity);
       const interval = [xi.exponent * Math.exp(-spread), xi.exponent * Math.exp(spread)] as const;
       rows.push(
         makeParameter(base, 'decoupling_exponent', 'shared_law', '1', xi.exponent, interval, {
@@ -162,6 +200,7 @@ export function glassOfEvent(
       );
     }
   }
+  if (shared && glass.composition) sentences.push(compositionSentence(facts, glass.composition, shared));
   rows.push(...stabilityRows(base, facts, glass, judged));
   return { rows, flags, sentences };
 }

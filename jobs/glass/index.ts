@@ -8,8 +8,6 @@ import { localEnergyRows, type RowBase } from './rows.ts';
 import { chooseScans } from './verdict/choose-scans.ts';
 import { judgeEvent } from './verdict/judge-event.ts';
 
-export { fitGordonTaylor, type GordonTaylor, glassTransitionOfMixture } from './composition.ts';
-
 /**
  * Whether the bend of a sample's Kissinger plot is the material's or an instrument's, and the glass layer on top. For each
  * event: the verdict with all its evidence, the law over all scans with its draws, local energies, decoupling, stability numbers, plots.

@@ -46,11 +46,12 @@ export function makeParameter(
 const ENERGY_POINTS = 5;
 
 /**
- * E_loc at T with its 95 % ends, kJ/mol, even on a log scale. Draws scatter in the bent part; what the driving force takes off is known.
+ * E_loc at T with its 95 % ends, kJ/mol, even on a log scale. Draws scatter in the bent part; what the driving force takes off is known, and
+ * where it is not, the law's shape has an error of its own.
  * @param t Student's quantile for the draws
  */
 export function localEnergyBand(
-  { law, draws }: SharedFit,
+  { law, draws, shapeVariance }: SharedFit,
   t: number,
   T: number,
 ): { value: number; lower: number; upper: number } {
@@ -58,7 +59,7 @@ export function localEnergyBand(
   const u = (1 / T - law.x0PerK) / law.dxPerK;
   const logs = draws.energyJPerMol.map((e, k) => Math.log(e) + draws.bend[k] * u);
   const bent = localEnergyOf({ ...law, driving: undefined }, T) / 1e3;
-  const half = (t * standardDeviation(logs) * bent) / value;
+  const half = (t * Math.hypot(standardDeviation(logs), Math.sqrt(shapeVariance(T))) * bent) / value;
   return { value, lower: value * Math.exp(-half), upper: value * Math.exp(half) };
 }
 

@@ -49,6 +49,8 @@ export interface ViscosityFit {
   /** standard errors; undefined with as many rows as parameters */
   fragilityError?: number;
   glassTransitionErrorK?: number;
+  /** 3 × 3, of (log10 η∞, Tg, m); undefined as above */
+  covariance?: Float64Array;
   /** root mean square residual, decades */
   scatter: number;
   rows: number;
@@ -109,6 +111,7 @@ export function fitViscosity(
     law: lawOf(best.parameters),
     fragilityError: error(2),
     glassTransitionErrorK: error(1),
+    covariance: n > 3 ? best.covariance : undefined,
     scatter: Math.sqrt(best.sumOfSquares / Math.max(1, n - 3)),
     rows: n,
     converged: best.converged,

@@ -23,7 +23,14 @@ import { endCorrections, loadCorrections, moveCorrections, type StoredCorrection
 import { hashOf } from '../store/ids.ts';
 import { queueReductions } from '../store/job-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
-import { loadGoals, loadPrograms, loadQuestionsHash, loadViscosities, saveQuestions } from '../store/question-rows.ts';
+import {
+  loadCompositions,
+  loadGoals,
+  loadPrograms,
+  loadQuestionsHash,
+  loadViscosities,
+  saveQuestions,
+} from '../store/question-rows.ts';
 import { assignScans, type WantedScan } from './assign-scans.ts';
 import { diffScans, type HashedScan, hashScanSheet, type ScanChanges } from './diff-scans.ts';
 
@@ -111,6 +118,7 @@ async function loadQuestions(ports: Ports, campaignId: string, { sheets }: Assig
   return [
     await loadGoals(ports, campaignId),
     await loadViscosities(ports, campaignId),
+    await loadCompositions(ports, campaignId),
     (await loadPrograms(ports, campaignId)).map(({ path, sha256 }) => [path, sha256]),
     sheets.instruments.map(({ instrument, rateMinKPerS, rateMaxKPerS }) => ({
       instrument,

@@ -1,11 +1,12 @@
 import { decodePacked, encodePacked } from '../../schema/wire/packed-blob.ts';
+import type { SampleSheetRow } from '../../schema/wire/scan.ts';
 import type { GlassFacts, InstrumentRange, JudgeResult } from '../../schema/wire/verdicts.ts';
 import type { Ports } from '../ports/index.ts';
 import type { FitRows } from '../store/fit-rows.ts';
 import { hashOf } from '../store/ids.ts';
 import { judgementKey, queueNext, saveJudgement } from '../store/judge-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
-import { loadBench, loadViscosities } from '../store/question-rows.ts';
+import { loadBench, loadCompositions, loadViscosities } from '../store/question-rows.ts';
 import { readDerived } from './columns-store.ts';
 import { inputsKeyOf, loadFitScans, loadOrderedFit, seedOf } from './sample-inputs.ts';
 import { FIT_DRAWS, STEP_VERSIONS } from './settings.ts';
@@ -37,15 +38,22 @@ export async function judgeStoredSample(ports: Ports, job: ClaimedJob): Promise<
 
 /** Sheet facts of a sample, its glass transitions as measured, and what the instruments can run. */
 export async function loadJudgeFacts(ports: Ports, rows: FitRows): Promise<JudgeFacts> {
-  const { sample: _name, line: _line, ...said } = rows.sampleRow ?? {};
+  const { sample: _name, line: _line, ...said }: Partial<SampleSheetRow> = rows.sampleRow ?? {};
   const viscosity = await loadViscosities(ports, rows.sample.campaignId, rows.sample.sample);
   const glassTransitions = glassTransitionsOf(rows);
+  const compositions =
+    said.series === undefined || said.solventFraction === undefined
+      ? []
+      : await loadCompositions(ports, rows.sample.campaignId, said.series);
   return {
     facts: {
       ...said,
       ...(glassTransitions.length > 0 && { glassTransitions }),
       ...(viscosity.length > 0 && {
         viscosity: viscosity.map(({ temperatureK, log10PaS }) => ({ temperatureK, log10PaS })),
+      }),
+      ...(compositions.length > 0 && {
+        compositions: compositions.map(({ series: _series, ...values }) => values),
       }),
     },
     ranges: (await loadBench(ports, rows.sample.campaignId)).ranges,

@@ -2,7 +2,7 @@ import { and, asc, eq } from 'drizzle-orm';
 import type { LibSQLDatabase } from 'drizzle-orm/libsql';
 import { campaigns, files, goals, instruments, sheetRows } from '../../schema/tables/index.ts';
 import type { GoalRow, ViscositySheetRow } from '../../schema/wire/forecasts.ts';
-import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
+import type { InstrumentCalibration, SampleSheetRow } from '../../schema/wire/scan.ts';
 import type { InstrumentRange } from '../../schema/wire/verdicts.ts';
 import type { Ports } from '../ports/index.ts';
 import { loadSheetRows } from './assignment-rows.ts';
@@ -36,6 +36,25 @@ export async function loadBench(
 
 export const loadViscosities = (ports: Ports, campaignId: string, sample?: string): Promise<ViscositySheetRow[]> =>
   loadSheetRows<ViscositySheetRow>(ports, campaignId, 'viscosity', sample);
+
+/** Rows of samples.csv that say where a composition of a series has its glass transition; the first row of a sample counts. */
+export async function loadCompositions(
+  ports: Ports,
+  campaignId: string,
+  series?: string,
+): Promise<{ series: string; solventFraction: number; glassTransitionK: number }[]> {
+  const rows = await loadSheetRows<SampleSheetRow>(ports, campaignId, 'samples');
+  const named = new Set<string>();
+  return rows.flatMap((row) => {
+    if (named.has(row.sample)) return [];
+    named.add(row.sample);
+    const { solventFraction, glassTransitionK } = row;
+    if (row.series === undefined || solventFraction === undefined || glassTransitionK === undefined) return [];
+    return series === undefined || series === row.series
+      ? [{ series: row.series, solventFraction, glassTransitionK }]
+      : [];
+  });
+}
 
 /** Goals set through the API, then those of goal.csv; of one sample or of all. */
 export async function loadGoals(ports: Ports, campaignId: string, sample?: string): Promise<GoalRow[]> {

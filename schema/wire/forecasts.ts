@@ -84,6 +84,8 @@ export interface ForecastSource {
   lowestMeasuredK: number;
   highestMeasuredK: number;
   glassTransitionK?: number;
+  /** Mass fraction of the solvent, of a sample in a composition series */
+  solventFraction?: number;
   melting?: MeltingData;
   law?: SharedLaw;
   lawDraws?: SharedLawDraws;

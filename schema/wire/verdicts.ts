@@ -34,6 +34,8 @@ export interface GlassFacts extends Omit<Partial<SampleSheetRow>, 'sample' | 'li
   glassTransitions?: { file: string; instrument: string; rateKPerS: number; temperatureK: number }[];
   /** Rows of viscosity.csv */
   viscosity?: { temperatureK: number; log10PaS: number }[];
+  /** Compositions of the sample's series whose glass transition samples.csv gives; mass fraction of the solvent */
+  compositions?: { solventFraction: number; glassTransitionK: number }[];
 }
 
 /** The rates an instrument can run, K/s; without it the usual range of its kind. */

@@ -2,6 +2,7 @@ import { type Flag, flag } from '../../../schema/wire/flags.ts';
 import type { FitScan } from '../../../schema/wire/parameters.ts';
 import type {
   EventVerdict,
+  GlassFacts,
   InstrumentRange,
   JudgeInput,
   LagEvidence,
@@ -25,6 +26,8 @@ const KIND_RATES = { furnace: [0.01, 8], chip: [10, 50_000] } as const;
 /** A second opinion off by more than this many of the joint 99 % half widths is told. */
 const OPINIONS_APART = 1;
 const NEGATIVE_ERRORS = 2;
+/** Here a driving force takes about 15 % off a local energy of 40 R T (entropy of melting 10 J/(mol K)). */
+const NEAR_MELTING = 0.85;
 
 export interface JudgedResult {
   verdict: EventVerdict;
@@ -94,6 +97,7 @@ export function judgeEvent(
   row.decides_next = decidesNext(decision, advice?.deciding ?? []);
   const otherOpinions = analysis && judged.hasCentroid ? secondOpinions(judged, analysis) : [];
   if (analysis) flags.push(...judgeFlags(where, decision, analysis, lags, otherOpinions, judged));
+  if (decision.verdict === 'material' && shared) flags.push(...meltingFlags(where, input.facts, shared));
   if (decision.reason === 'too-few-scans') {
     flags.push(
       flag(
@@ -108,7 +112,7 @@ export function judgeEvent(
     verdict: {
       row,
       reason: decision.reason,
-      sentences: explain(row, decision, analysis, lags, advice?.deciding ?? []),
+      sentences: explain(row, decision, lags, advice?.deciding ?? []),
       opinion: what,
       otherOpinions,
       laws,
@@ -126,6 +130,23 @@ export function judgeEvent(
     analysis,
     shared,
   };
+}
+
+/** A bent law without the driving force, on scans that come near melting: its local energy at the fast end rests on the bend's shape alone. */
+function meltingFlags(where: { sample: string; event: number }, facts: GlassFacts, { law }: SharedFit): Flag[] {
+  const { meltingK } = facts;
+  if (law.driving || meltingK === undefined || law.highestMeasuredK < NEAR_MELTING * meltingK) return [];
+  const known = meltingOf(facts) !== undefined;
+  return [
+    flag(
+      'driving-force-ignored',
+      `The fastest scan crystallises at ${law.highestMeasuredK.toFixed(0)} K, ${((100 * law.highestMeasuredK) / meltingK).toFixed(0)} % of the melting temperature of ${meltingK.toFixed(0)} K; the local energy there leaves the driving force out.`,
+      known
+        ? 'So near to melting its error would rule the law; check the melting temperature.'
+        : 'Give the enthalpy of melting and the molar mass in samples.csv.',
+      where,
+    ),
+  ];
 }
 
 function decidesNext(d: Decision, deciding: EventVerdict['deciding']): string {
@@ -157,15 +178,16 @@ function makeRow(
   const rates = judged.scans.map((s) => s.event.rateKPerS);
   const best = (names: readonly string[]) =>
     Math.min(...laws.filter((l) => names.includes(l.law)).map((l) => l.aicc ?? Number.POSITIVE_INFINITY));
+  const driven = shared?.drivenBend;
   const energy = (T: number | undefined) =>
     shared && T !== undefined ? localEnergyOf(shared.law, T) / 1e3 : undefined;
   return {
     sample,
     event: judged.event,
     verdict: decision.verdict,
-    bend: finite(a?.bend),
-    bend_lower99: finite(a?.lower99),
-    bend_upper99: finite(a?.upper99),
+    bend: finite(driven?.bend ?? a?.bend),
+    bend_lower99: finite(driven ? driven.bend - driven.halfWidth99 : a?.lower99),
+    bend_upper99: finite(driven ? driven.bend + driven.halfWidth99 : a?.upper99),
     p_value: finite(a?.pValue),
     delta_aicc: finite(best(['A', 'L']) - best(['G', 'GL'])),
     energy_low_rate_kJ_per_mol: finite(energy(shared?.law.lowestMeasuredK)),

@@ -1,5 +1,4 @@
 import type { DecidingScan, LagEvidence, VerdictRow } from '../../../schema/wire/verdicts.ts';
-import type { BendAnalysis } from './analyse.ts';
 import { type Decision, LEAST_DEGREES, STRAIGHT_WITHIN } from './decide.ts';
 
 export const inWords = (rateKPerS: number): string =>
@@ -22,7 +21,6 @@ export const lagInWords = (l: LagEvidence): string =>
 export function explain(
   row: VerdictRow,
   decision: Decision,
-  a: BendAnalysis | undefined,
   lags: readonly LagEvidence[],
   deciding: readonly DecidingScan[],
 ): string[] {
@@ -31,7 +29,8 @@ export function explain(
   const [low, high] = [row.energy_low_rate_kJ_per_mol, row.energy_high_rate_kJ_per_mol].map((v) =>
     v === null ? '–' : v.toFixed(0),
   );
-  const interval = a ? `${a.bend.toFixed(2)} (99 % interval ${a.lower99.toFixed(2)} to ${a.upper99.toFixed(2)})` : '';
+  const [bend, from, to] = [row.bend, row.bend_lower99, row.bend_upper99].map((v) => v?.toFixed(2) ?? '–');
+  const interval = `${bend} (99 % interval ${from} to ${to})`;
   const part = `${((Math.exp(STRAIGHT_WITHIN) - 1) * 100).toFixed(0)} %`;
   const beyond = lags.filter((l) => l.beyondCalibration).map(lagInWords);
   switch (decision.verdict) {

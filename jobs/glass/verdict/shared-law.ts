@@ -9,8 +9,10 @@ import { type BendAnalysis, trueLimits } from './analyse.ts';
 import { believeBend } from './bend-belief.ts';
 import { exponentOfCurve, exponentOfWidth, type JudgedEvent } from './collect.ts';
 import { Condition, type ConditionValue } from './condition.ts';
+import { type DrivenBend, drivenBend } from './driven-bend.ts';
 import { type LawData, type LawFit, LawProblem } from './law-fit.ts';
 import { type Combination, effectiveDegrees } from './scatter.ts';
+import { shapeVariance } from './shape-error.ts';
 
 export interface SharedFit {
   law: SharedLaw;
@@ -25,6 +27,10 @@ export interface SharedFit {
   exponents: Float64Array;
   /** n − p of the fit, for Student's t on the draws */
   degrees: number;
+  /** variance of ln E_loc at T beside the draws', where the law's shape is a guess */
+  shapeVariance(temperatureK: number): number;
+  /** the bend of a law that carries the driving force */
+  drivenBend?: DrivenBend;
 }
 
 /**
@@ -78,22 +84,23 @@ export function fitSharedLaw(
     drawn.bend[k] = wide(q ?? x[2], fit.q);
     drawn.avramiExponent[k] = mean(pick);
   }
+  const law: SharedLaw = {
+    sample,
+    event: judged.event,
+    lnRateAtMiddle: fit.lnK0,
+    energyJPerMol: Math.exp(fit.lnEnergy),
+    bend: fit.q,
+    x0PerK: d.scale.x0,
+    dxPerK: d.scale.dx,
+    avramiExponent: exponent,
+    frozenBelowK: Math.min(low, glassTransitionK ?? Number.POSITIVE_INFINITY),
+    lowestMeasuredK: low,
+    highestMeasuredK: high,
+    ...(glassTransitionK !== undefined && { glassTransitionK }),
+    ...(driving && { driving }),
+  };
   return {
-    law: {
-      sample,
-      event: judged.event,
-      lnRateAtMiddle: fit.lnK0,
-      energyJPerMol: Math.exp(fit.lnEnergy),
-      bend: fit.q,
-      x0PerK: d.scale.x0,
-      dxPerK: d.scale.dx,
-      avramiExponent: exponent,
-      frozenBelowK: Math.min(low, glassTransitionK ?? Number.POSITIVE_INFINITY),
-      lowestMeasuredK: low,
-      highestMeasuredK: high,
-      ...(glassTransitionK !== undefined && { glassTransitionK }),
-      ...(driving && { driving }),
-    },
+    law,
     draws: drawn,
     fit,
     data: d,
@@ -101,6 +108,8 @@ export function fitSharedLaw(
     trueK,
     exponents,
     degrees,
+    ...(free && driving && { drivenBend: drivenBend(law, d, fit, a.scatter.degrees, a.inflation) }),
+    shapeVariance: free && !driving ? shapeVariance(d, fit, a.inflation) : () => 0,
   };
 }
 
