@@ -1,10 +1,17 @@
 import { fileURLToPath } from 'node:url';
 import { defineConfig } from 'vitest/config';
+import { ValidationReporter } from './validation/reporter.ts';
 
 const root = fileURLToPath(new URL('..', import.meta.url));
 
 export default defineConfig({
   root,
   oxc: { jsx: { runtime: 'automatic', importSource: 'preact' } },
-  test: { include: ['test/**/*.test.ts', 'test/**/*.test.tsx'], testTimeout: 20_000, pool: 'forks', maxWorkers: 2 },
+  test: {
+    include: ['test/**/*.test.ts', 'test/**/*.test.tsx'],
+    testTimeout: 20_000,
+    pool: 'forks',
+    maxWorkers: 2,
+    reporters: ['default', new ValidationReporter('compare')],
+  },
 });

@@ -5,18 +5,23 @@ import {
   type StandardObservation,
 } from '../../jobs/calibration/index.ts';
 import { calibrateSimulated } from '../study/standards.ts';
+import type { SourceName } from '../validation/sources.ts';
+import { validate } from '../validation/validate.ts';
 
 // ITS-90 freezing points: Preston-Thomas, Metrologia 27 (1990) 3. Enthalpies: In, Archer & Rudtsch, J. Chem. Eng. Data 48
 // (2003) 1157, 28.6624 J/g; Zn, CRC Handbook, 7068 J/mol ÷ 65.38 g/mol; Sn, GEFTA recommendation 60.4 J/g (from memory).
-test.each([
-  ['indium 5 mg', 429.7485, 28_662.4],
-  ['Sn', 505.078, 60_400],
-  ['zinc-2', 692.677, 7068 / 0.06538],
-  ['Al', 933.473, 10_710 / 0.0269815385],
-])('%s is a known standard', (name, meltingK, enthalpy) => {
-  const found = findReferenceSubstance(name);
-  expect(found?.meltingK).toBe(meltingK);
-  expect((found?.enthalpyJPerKg ?? 0) / enthalpy).toBeCloseTo(1, 4);
+test.each<[string, number, number, SourceName]>([
+  ['indium 5 mg', 429.7485, 28_662.4, 'indiumEnthalpy'],
+  ['Sn', 505.078, 60_400, 'tinEnthalpy'],
+  ['zinc-2', 692.677, 7068 / 0.06538, 'handbookEnthalpy'],
+  ['Al', 933.473, 10_710 / 0.0269815385, 'handbookEnthalpy'],
+])('%s is a known standard', (name, meltingK, enthalpy, source) => {
+  const { meltingK: got = 0, enthalpyJPerKg = 0 } = findReferenceSubstance(name) ?? {};
+  const method = 'calibration';
+  validate({ method, quantity: `melting of «${name}», K`, source: 'its90', expected: meltingK, got, within: 0 });
+  const expected = enthalpy / 1e3;
+  const quantity = `enthalpy of melting of «${name}», J/g`;
+  validate({ method, quantity, source, expected, got: enthalpyJPerKg / 1e3, within: 5e-5 * expected });
 });
 
 test('a sample whose name merely holds a symbol is none', () => {

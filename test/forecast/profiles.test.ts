@@ -1,8 +1,17 @@
 import { describe, expect, test } from 'vitest';
 import { modelFreeKinetics } from '../../jobs/forecast/model-free-kinetics.ts';
-import { accumulate, COARSE, FINE, layPanels, lnIntegral, timeOfIntegral } from '../../jobs/forecast/programme.ts';
+import {
+  accumulate,
+  COARSE,
+  FINE,
+  layPanels,
+  lnIntegral,
+  lnIntegralAlong,
+  timeOfIntegral,
+} from '../../jobs/forecast/programme.ts';
 import { sharedRateCurve } from '../../jobs/forecast/rate-curve.ts';
 import type { SharedLaw } from '../../schema/wire/shared-law.ts';
+import { validate } from '../validation/validate.ts';
 import { LAW, programme } from './sources.ts';
 
 // Expected numbers: SciPy 1.17.1 (quad, brentq, expn), test/reference/scipy/forecast_profiles.py, which writes out laws and profiles itself.
@@ -53,12 +62,16 @@ describe('the shared law along a programme', () => {
   test.each([
     ['reflow', REFLOW, REFLOW_LAW, 4.024780596554e-1, 6.311698280978e-2],
     ['seasonal', SEASONAL, SEASONAL_LAW, 2.422012124981e-1, 8.58526357627e-2],
-  ])('%s profile: ∫K dt and conversion to 1e-8', (_, table, law, integral, conversion) => {
+  ])('%s profile: ∫K dt and conversion to 1e-8', (name, table, law, integral, conversion) => {
     const curve = sharedRateCurve(law, law);
     const panels = layPanels(table, curve.steepness, curve.breaksK, FINE);
     const theta = Math.exp(lnIntegral(accumulate(panels, curve.lnRate)));
-    expect(relative(theta, integral)).toBeLessThan(1e-8);
-    expect(relative(-Math.expm1(-(theta ** law.avramiExponent)), conversion)).toBeLessThan(1e-7);
+    const end = -Math.expm1(-(theta ** law.avramiExponent));
+    const given = { method: 'forecast, shared law', source: 'scipyForecast' } as const;
+    validate({ ...given, quantity: `∫K dt, ${name} profile`, expected: integral, got: theta, within: 1e-8 * integral });
+    const quantity = `conversion at the end, ${name} profile`;
+    validate({ ...given, quantity, expected: conversion, got: end, within: 1e-7 * conversion });
+    expect(relative(Math.exp(lnIntegralAlong(panels, curve.lnRate)), theta)).toBeLessThan(1e-12);
     // The rule of the draws is what it says: to 1e-5 on these.
     const coarse = layPanels(table, curve.steepness, curve.breaksK, COARSE);
     expect(relative(Math.exp(lnIntegral(accumulate(coarse, curve.lnRate))), integral)).toBeLessThan(1e-5);
@@ -69,8 +82,14 @@ describe('the shared law along a programme', () => {
     const panels = layPanels(REFLOW, curve.steepness, curve.breaksK, FINE);
     const done = accumulate(panels, curve.lnRate);
     const time = (a: number) => timeOfIntegral(panels, done, curve.lnRate, Math.log(-Math.log1p(-a)) / 3);
-    expect(relative(time(0.001), 243.0935553661)).toBeLessThan(1e-8);
-    expect(relative(time(0.05), 276.8556594057)).toBeLessThan(1e-8);
+    for (const [a, expected] of [
+      [0.001, 243.0935553661],
+      [0.05, 276.8556594057],
+    ]) {
+      const quantity = `time to α = ${a} in a reflow profile, s`;
+      const [got, within] = [time(a), 1e-8 * expected];
+      validate({ method: 'forecast, shared law', quantity, source: 'scipyForecast', expected, got, within });
+    }
   });
 
   test('a bent law through its frozen point', () => {
@@ -93,20 +112,27 @@ describe('the shared law along a programme', () => {
 describe('the model-free prediction along a programme', () => {
   test('reflow profile: the times of the first nine segments to 1e-8', () => {
     const conversions = Float64Array.from({ length: 19 }, (_, k) => (k + 1) / 20);
-    const kinetics = modelFreeKinetics({
+    const { estimate: kinetics } = modelFreeKinetics({
       conversions,
       energyJPerMol: conversions.map((_, k) => 150e3 + 4e3 * k),
       lnStep: conversions.map((_, k) => 2.2 - 0.12 * k + 0.006 * k * k),
       share: Float64Array.from({ length: 99 }, (_, g) => ((g % 5) + 1) / 5),
       x0PerK: 1 / 530,
     });
-    const panels = layPanels(REFLOW, kinetics.steepness, [], FINE);
+    const panels = layPanels(REFLOW, () => kinetics.steepness(), [], FINE);
     const expected = [
       235.4639028414, 242.858450844, 248.7419983663, 254.0903952046, 259.0110116632, 263.5927147343, 267.9103494729,
       272.290424785, 279.9598226801,
     ];
     for (const [k, t] of expected.entries())
-      expect(relative(kinetics.timeOn(panels, conversions[k]), t), `α = ${conversions[k]}`).toBeLessThan(1e-8);
+      validate({
+        method: 'forecast, model-free',
+        quantity: `time to α = ${conversions[k]} in a reflow profile, s`,
+        source: 'scipyForecast',
+        expected: t,
+        got: kinetics.timeOn(panels, conversions[k]),
+        within: 1e-8 * t,
+      });
     // The tenth is not reached: the conversion at the end lies between the ninth and the tenth.
     const end = -Math.expm1(-Math.exp(kinetics.extentOn(panels)));
     expect(end).toBeGreaterThan(0.45);

@@ -7,6 +7,7 @@ import {
 } from '../../jobs/laws/temperature-integral.ts';
 import { scaledExponentialIntegral } from '../../jobs/numeric/exponential-integral.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
+import { validate } from '../validation/validate.ts';
 
 // p(x) by mpmath 1.3.0 at 60 digits (table of the reference folder, temperature-integral/p_of_x_table.csv).
 const P: [number, number][] = [
@@ -37,13 +38,37 @@ const E1: [number, number][] = [
 
 describe('temperature integral', () => {
   test.each(P)('p(%d) to 1e-10 relative', (x, p) => {
-    expect(Math.abs(temperatureIntegral(x) / p - 1)).toBeLessThan(1e-10);
+    const got = temperatureIntegral(x);
+    validate({
+      method: 'temperature integral',
+      quantity: `p(${x})`,
+      source: 'mpmath',
+      expected: p,
+      got,
+      within: 1e-10 * p,
+    });
   });
   test.each(LOG_P)('−log10 p(%d) to its printed digits', (x, logP) => {
-    expect(Math.abs(-Math.log10(temperatureIntegral(x)) - logP)).toBeLessThan(6e-11 * Math.max(1, logP / 10));
+    validate({
+      method: 'temperature integral',
+      quantity: `−log10 p(${x})`,
+      source: 'mpmath',
+      expected: logP,
+      got: -Math.log10(temperatureIntegral(x)),
+      within: 6e-11 * Math.max(1, logP / 10),
+    });
   });
   test.each(E1)('E1(%d) to its printed digits', (x, e1) => {
-    expect(Math.abs(scaledExponentialIntegral(1, x) * Math.exp(-x) - e1)).toBeLessThan(6e-10);
+    const got = scaledExponentialIntegral(1, x) * Math.exp(-x);
+    const quantity = `E1(${x})`;
+    validate({
+      method: 'temperature integral',
+      quantity,
+      source: 'abramowitzStegun',
+      expected: e1,
+      got,
+      within: 6e-10,
+    });
   });
   test('series and continued fraction meet at x = 1', () => {
     for (const n of [1, 2] as const) {
@@ -59,7 +84,14 @@ describe('temperature integral', () => {
       [20, -1.60394e-6],
     ]) {
       const error = 100 * (temperatureIntegralFactorFast(x) / temperatureIntegralFactor(x) - 1);
-      expect(Math.abs(error / percent - 1)).toBeLessThan(1e-3);
+      validate({
+        method: 'temperature integral',
+        quantity: `error of the fast form at x = ${x}, %`,
+        source: 'mpmath',
+        expected: percent,
+        got: error,
+        within: 1e-3 * Math.abs(percent),
+      });
     }
   });
   test('x ≤ 0 is refused with the value', () => {

@@ -9,6 +9,7 @@ import { fitLocalPolynomial } from '../../jobs/numeric/local-polynomial.ts';
 import { createRandom } from '../../jobs/numeric/random.ts';
 import { findRoot } from '../../jobs/numeric/root.ts';
 import { mean, robustSigma, standardDeviation } from '../../jobs/numeric/statistics.ts';
+import { validate } from '../validation/validate.ts';
 
 describe('Student quantile', () => {
   // t(0.975, ν), NIST/SEMATECH e-Handbook of Statistical Methods, section 1.3.6.7.2, three decimals as printed there.
@@ -22,7 +23,9 @@ describe('Student quantile', () => {
     [30, 2.042],
     [100, 1.984],
   ])('ν = %d', (degrees, t) => {
-    expect(studentQuantile(0.975, degrees)).toBeCloseTo(t, 3);
+    const got = studentQuantile(0.975, degrees);
+    const quantity = `t(0.975, ${degrees})`;
+    validate({ method: 'quantiles', quantity, source: 'nistHandbook', expected: t, got, within: 5e-4 });
   });
   test('identities: ν = 1 is tan(π(p − ½)), ν = 2 in closed form', () => {
     for (const p of [0.6, 0.9, 0.975, 0.995]) {
@@ -38,11 +41,20 @@ describe('straight line', () => {
   const x = [0.2, 337.4, 118.2, 884.6, 10.1, 226.5, 666.3, 996.3, 448.6, 777.0, 558.2, 0.4, 0.6, 775.5, 666.9, 338.0, 447.5, 11.6, 556.0, 228.1, 995.8, 887.6, 120.2, 0.3, 0.3, 556.8, 339.1, 887.2, 999.0, 779.0, 11.1, 118.3, 229.2, 669.1, 448.9, 0.5]; // biome-ignore format: data
   test('NIST StRD Norris: certified slope, intercept and errors', () => {
     const line = fitLine(x, y);
-    expect(line.intercept).toBeCloseTo(-0.262323073774029, 11);
-    expect(line.slope).toBeCloseTo(1.00211681802045, 12);
-    expect(line.interceptError).toBeCloseTo(0.232818234301152, 11);
-    expect(line.slopeError).toBeCloseTo(0.429796848199937e-3, 13);
-    expect(line.scatter).toBeCloseTo(0.884796396144373, 11);
+    const check = (quantity: string, expected: number, got: number, within: number) =>
+      validate({
+        method: 'straight line',
+        quantity: `Norris, ${quantity}`,
+        source: 'nistReference',
+        expected,
+        got,
+        within,
+      });
+    check('intercept', -0.262323073774029, line.intercept, 5e-12);
+    check('slope', 1.00211681802045, line.slope, 5e-13);
+    check('error of the intercept', 0.232818234301152, line.interceptError, 5e-12);
+    check('error of the slope', 0.429796848199937e-3, line.slopeError, 5e-14);
+    check('residual standard deviation', 0.884796396144373, line.scatter, 5e-12);
   });
   test('a weight of two is a row twice', () => {
     const once = fitLine([1, 2, 3, 4], [1, 3, 2, 5], [1, 2, 1, 1]);
@@ -59,8 +71,10 @@ describe('straight line', () => {
     ];
     for (const [Tg, A, B] of printed) {
       const line = fitLine(lnRate, Tg);
-      expect(Math.abs(line.intercept - A)).toBeLessThan(0.15);
-      expect(Math.abs(line.slope - B)).toBeLessThan(0.015);
+      const given = { method: 'straight line', source: 'seGePb' } as const;
+      const named = (letter: string) => `Lasocka ${letter} of Tg ${Tg[0]} … ${Tg[4]} K`;
+      validate({ ...given, quantity: named('A'), expected: A, got: line.intercept, within: 0.15 });
+      validate({ ...given, quantity: named('B'), expected: B, got: line.slope, within: 0.015 });
     }
   });
 });
@@ -83,11 +97,20 @@ describe('least squares', () => {
   ])('NIST StRD Misra1a from start %d, %d to eight digits with its errors', (b1, b2) => {
     const fit = solver.solve(Float64Array.of(b1, b2), Float64Array.of(100, 1e-4), 200);
     expect(fit.converged).toBe(true);
-    expect(Math.abs(fit.parameters[0] / 2.3894212918e2 - 1)).toBeLessThan(1e-8);
-    expect(Math.abs(fit.parameters[1] / 5.5015643181e-4 - 1)).toBeLessThan(1e-8);
-    expect(Math.sqrt(fit.covariance![0]) / 2.7070075241).toBeCloseTo(1, 7);
-    expect(Math.sqrt(fit.covariance![3]) / 7.2668688436e-6).toBeCloseTo(1, 7);
-    expect(fit.sumOfSquares / 1.2455138894e-1).toBeCloseTo(1, 8);
+    const check = (quantity: string, expected: number, got: number, relative: number) =>
+      validate({
+        method: 'least squares',
+        quantity: `Misra1a from ${b1}, ${quantity}`,
+        source: 'nistReference',
+        expected,
+        got,
+        within: relative * expected,
+      });
+    check('b1', 2.3894212918e2, fit.parameters[0], 1e-8);
+    check('b2', 5.5015643181e-4, fit.parameters[1], 1e-8);
+    check('error of b1', 2.7070075241, Math.sqrt(fit.covariance![0]), 5e-8);
+    check('error of b2', 7.2668688436e-6, Math.sqrt(fit.covariance![3]), 5e-8);
+    check('residual sum of squares', 1.2455138894e-1, fit.sumOfSquares, 5e-9);
   });
   test('agrees with the Levenberg–Marquardt library', () => {
     const ours = solver.solve(Float64Array.of(250, 0.0005), Float64Array.of(100, 1e-4), 200);
@@ -155,7 +178,9 @@ describe('local polynomial', () => {
       return fitLocalPolynomial(x, y, 2, 2, 2).value;
     });
     [-3, 12, 17, 12, -3].forEach((w, k) => {
-      expect(weights[k]).toBeCloseTo(w, 9);
+      const quantity = `smoothing weight ${k + 1} of 5, × 35`;
+      const got = weights[k];
+      validate({ method: 'local polynomial', quantity, source: 'savitzkyGolay', expected: w, got, within: 5e-10 });
     });
   });
   test('a cubic comes back exactly from uneven points, with all derivatives', () => {
@@ -171,7 +196,9 @@ describe('local polynomial', () => {
 
 describe('root finding and random numbers', () => {
   test('Brent finds cos x = x (Dottie number, 0.739085133215160…)', () => {
-    expect(findRoot((x) => Math.cos(x) - x, 0, 1)).toBeCloseTo(0.7390851332151607, 12);
+    const got = findRoot((x) => Math.cos(x) - x, 0, 1);
+    const expected = 0.7390851332151607;
+    validate({ method: 'root', quantity: 'cos x = x', source: 'dottie', expected, got, within: 5e-13 });
   });
   test('no sign change is refused with both values', () => {
     expect(() => findRoot((x) => x * x + 1, -1, 1)).toThrow(/no sign change/);
