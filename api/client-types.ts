@@ -256,7 +256,16 @@ export interface Sample {
 }
 
 export interface Curves {
-  kind: 'thermogram' | 'baseline' | 'conversion' | 'kissinger' | 'energy' | 'growth' | 'viscosity' | 'ttt';
+  kind:
+    | 'thermogram'
+    | 'baseline'
+    | 'conversion'
+    | 'kissinger'
+    | 'energy'
+    | 'local_energy'
+    | 'growth'
+    | 'viscosity'
+    | 'ttt';
   x: { quantity: string; unit: string };
   y: { quantity: string; unit: string };
   series: {
@@ -517,7 +526,18 @@ export interface Operations {
   /** Curves of one kind, at most 2000 points each, extremes kept. */
   getSampleCurves: {
     id: string;
-    query: { kind: 'thermogram' | 'baseline' | 'conversion' | 'kissinger' | 'energy' | 'growth' | 'viscosity' | 'ttt' };
+    query: {
+      kind:
+        | 'thermogram'
+        | 'baseline'
+        | 'conversion'
+        | 'kissinger'
+        | 'energy'
+        | 'local_energy'
+        | 'growth'
+        | 'viscosity'
+        | 'ttt';
+    };
     body: undefined;
     answer: Curves;
   };

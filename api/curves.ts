@@ -25,6 +25,7 @@ export const CURVE_AXES: Record<CurveKind, Pick<Curves, 'x' | 'y'>> = {
     y: { quantity: 'ln(heating rate / peak temperature squared)', unit: 'ln(1/(K s))' },
   },
   energy: { x: CONVERSION, y: { quantity: 'activation energy', unit: 'kJ/mol' } },
+  local_energy: { x: TEMPERATURE, y: { quantity: 'local activation energy', unit: 'kJ/mol' } },
   growth: { x: { quantity: 'log10 viscosity', unit: 'Pa s' }, y: { quantity: 'log10 K', unit: '1/s' } },
   viscosity: { x: { quantity: 'Tg/T', unit: '1' }, y: { quantity: 'log10 viscosity', unit: 'Pa s' } },
   ttt: { x: TEMPERATURE, y: { quantity: 'time', unit: 's' } },
@@ -165,6 +166,14 @@ export function kissingerLawSeries(judged: EventPlots): CurveSeries[] {
       ),
   );
 }
+
+/** E_loc of the shared law against temperature with its 95 % band: the verdict counts it among its energies. */
+export const localEnergySeries = (judged: EventPlots): CurveSeries[] =>
+  judged.flatMap(({ event, plots }) =>
+    plots
+      .filter((plot) => plot.kind === 'energy')
+      .flatMap((plot) => plot.series.map((series) => namedByEvent(event, series))),
+  );
 
 /** Growth against viscosity, or viscosity against Tg/T; with the axes of the plot, which know whether a growth rate anchors it. */
 export function glassCurves(judged: EventPlots, kind: 'growth' | 'viscosity'): Pick<Curves, 'x' | 'y' | 'series'> {

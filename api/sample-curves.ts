@@ -17,6 +17,7 @@ import {
   glassCurves,
   kissingerLawSeries,
   kissingerSeries,
+  localEnergySeries,
   type ReducedSampleScan,
   traceSeries,
   transformationSeries,
@@ -57,6 +58,7 @@ async function makeCurves(ports: Ports, sample: SampleView, kind: CurveKind, sou
       ...kissingerLawSeries(await sources.plots()),
     ],
     energy: async () => energySeries(await sources.parameters({ quantity: 'activation_energy' })),
+    local_energy: async () => localEnergySeries(await sources.plots()),
     ttt: async () => transformationSeries(await answerTransformation(ports, sample.id)),
   };
   return { kind, ...CURVE_AXES[kind], series: await series[kind]() };

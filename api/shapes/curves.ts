@@ -7,6 +7,7 @@ export const CURVE_KINDS = [
   'conversion',
   'kissinger',
   'energy',
+  'local_energy',
   'growth',
   'viscosity',
   'ttt',

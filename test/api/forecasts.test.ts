@@ -144,6 +144,11 @@ describe('a campaign with curves', () => {
     const law = kissinger.series.find((s: Body) => s.name === 'event 1, straight, lags as calibrated');
     const slope = (law.y.at(-1) - law.y[0]) / (law.x.at(-1) - law.x[0]);
     expect(Math.abs((-slope * 8.31446261815324e-3) / TRUE_ENERGY_KJ_PER_MOL - 1)).toBeLessThan(0.02);
+    const local = (await api.get(`/v1/samples/${sample}/curves?kind=local_energy`)).body;
+    expect([local.x.unit, local.y.unit, local.series[0].name]).toEqual(['K', 'kJ/mol', 'event 1, shared law']);
+    const { y, lower, upper } = local.series[0];
+    expect(Math.abs(y[0] / TRUE_ENERGY_KJ_PER_MOL - 1)).toBeLessThan(0.02);
+    expect(lower[0] < y[0] && y[0] < upper[0]).toBe(true);
     expect((await api.get(`/v1/samples/${sample}/curves?kind=growth`)).body.series).toEqual([]);
   });
 });

@@ -27,6 +27,11 @@ export const FIGURES: Record<Exclude<CurveKind, 'baseline'> | 'hold', { title: s
     caption:
       'One panel a method, all on the same axes, with its 95 % band; the other methods stand faint behind. The axis spans at least ±5 % of the mean.',
   },
+  local_energy: {
+    title: 'Local activation energy over temperature',
+    caption:
+      'Slope of the law over all scans, with its 95 % band, over the measured temperatures of the material. It falls with temperature where the verdict is a bend of the material.',
+  },
   growth: { title: 'Growth rate', caption: 'Holds if nuclei exist before the scan begins.' },
   viscosity: { title: 'Viscosity', caption: 'Measured or derived viscosity over temperature.' },
   ttt: {

@@ -22,6 +22,7 @@ export type CurveKind =
   | 'conversion'
   | 'kissinger'
   | 'energy'
+  | 'local_energy'
   | 'growth'
   | 'viscosity'
   | 'ttt';
