@@ -8,6 +8,7 @@ import { laboratoriesStudy } from './laboratories.ts';
 import { largeScanStudy } from './large-scan.ts';
 import { mutatedFilesStudy } from './mutated-files.ts';
 import { crashStudy, serverlessStudy, soakStudy } from './operation.ts';
+import { packageStudy } from './package.ts';
 import { reductionStudy } from './reduction.ts';
 import { requestsStudy } from './requests.ts';
 import { roundTripStudy } from './round-trip.ts';
@@ -55,6 +56,10 @@ export const STUDIES: Record<string, { about: string; run: Study }> = {
   serverless: {
     about: 'the demo campaign through the real serverless runtime beside Node; memory, CPU and time a step',
     run: serverlessStudy,
+  },
+  package: {
+    about: 'the tarball of npm pack installed in an empty folder: demo, run, serve, report and typed client from it',
+    run: packageStudy,
   },
   requests: {
     about: 'random requests of every role, drawn from the OpenAPI document, against what it says of each answer',

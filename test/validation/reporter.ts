@@ -1,6 +1,6 @@
 import { existsSync, readFileSync, writeFileSync } from 'node:fs';
 import { fileURLToPath } from 'node:url';
-import type { Reporter, TestModule } from 'vitest/node';
+import type { Reporter, TestModule, Vitest } from 'vitest/node';
 import { fileOfLine, lineOf, type PlacedCheck, writeChapter } from './chapter.ts';
 
 const root = fileURLToPath(new URL('../..', import.meta.url));
@@ -11,7 +11,13 @@ export const CHAPTER = `${root}test/VALIDATION.md`;
  * have just its lines in the chapter, and its tables; otherwise the run fails.
  */
 export class ValidationReporter implements Reporter {
+  #isFiltered = false;
+
   constructor(private readonly mode: 'write' | 'compare') {}
+
+  onInit(vitest: Vitest): void {
+    this.#isFiltered = vitest.config.testNamePattern !== undefined;
+  }
 
   onTestRunEnd(modules: readonly TestModule[]): void {
     const ran = modules.map(collect);
@@ -27,6 +33,7 @@ export class ValidationReporter implements Reporter {
       process.stdout.write(`written: ${CHAPTER}\n`);
       return;
     }
+    if (this.#isFiltered) return;
     const kept = existsSync(CHAPTER) ? readFileSync(CHAPTER, 'utf8') : '';
     const lines = kept.split('\n');
     const stale = ran
@@ -55,7 +62,7 @@ function collect(module: TestModule) {
     (test.meta().validation ?? []).map((check) => ({ ...check, file })),
   );
   const tables = tests.flatMap((test) => test.meta().simulated ?? []);
-  // A test that is left out by choice (`.skipIf`) leaves nothing; one left out by a filter would.
+  // A test that is left out by choice (`.skipIf`) leaves nothing.
   const whole =
     module.state() === 'passed' &&
     tests.every((test) => test.result().state === 'passed' || test.options.mode === 'skip');
