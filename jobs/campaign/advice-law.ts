@@ -77,19 +77,27 @@ export function forecastGoal(
     ...(law && { avramiExponent: law.avramiExponent, frozenBelowK: law.frozenBelowK }),
     bend: fit.q,
   };
-  const gradient = lnTimeGradient(at, temperatureK).map((v) => v / Math.LN10) as [number, number, number];
+  const gradientAt = (frozenBelowK: number) =>
+    lnTimeGradient({ ...at, frozenBelowK }, temperatureK).map((v) => v / Math.LN10) as [number, number, number];
   const spread =
     lawDraws && lawDraws.avramiExponent.length > 1 ? standardDeviation(lawDraws.avramiExponent.map((n) => 1 / n)) : 0;
   const exponentVariance = ((Math.log(-Math.log1p(-conversion)) * spread) / Math.LN10) ** 2;
   const ends = [made.lowestMeasuredK, made.highestMeasuredK].map((T) => (1 / T - made.x0PerK) / made.dxPerK);
   // Whichever of the local energies at both ends has the fewest degrees of freedom sets the t of the draws.
   const decides = fit.layout.bend >= 0 ? ends.map((u) => [0, 1, u] as const) : [[0, 1, 0] as const];
-  return { gradient, exponentVariance, decides };
+  return {
+    gradient: gradientAt(at.frozenBelowK),
+    frozen: { belowK: at.frozenBelowK, gradientAt },
+    exponentVariance,
+    decides,
+  };
 }
 
 /** What is wanted of the law, as its derivatives by (ln K0, ln E0, q) and a variance that no further scan narrows. */
 export interface LawGoal {
   gradient: readonly [number, number, number];
+  /** A scan whose event lies below the frozen point takes that point along, and with it what the bend may do below the others */
+  frozen?: { belowK: number; gradientAt(frozenBelowK: number): readonly [number, number, number] };
   /** Variance from the Avrami exponent now, and the scans behind it: it falls as one over their number */
   exponentVariance: number;
   /** Combinations of (ln K0, ln E0, q) of which the one with the fewest degrees of freedom sets Student's t of the interval shown */
@@ -150,9 +158,11 @@ export class LawPrecision {
     const degrees = this.d.n + count - p + this.d.instruments;
     if (!inverse || !bend.full.inverse || (more && !(added && addedFull)) || degrees < 1) return undefined;
     const covariance = withRows(inverse, added?.row, p, count);
-    const openVariance = open ? this.openVariance(goal, open, more, count) : 0;
+    const lower = added && goal.frozen && added.temperatureK < goal.frozen.belowK;
+    const gradient = lower ? goal.frozen!.gradientAt(added.temperatureK) : goal.gradient;
+    const openVariance = open ? this.openVariance(gradient, open, more, count) : 0;
     if (openVariance === undefined) return undefined;
-    const variance = form(covariance, spread(goal.gradient, layout), 0, p) + openVariance;
+    const variance = form(covariance, spread(gradient, layout), 0, p) + openVariance;
     const exponent = (goal.exponentVariance * this.d.n) / (this.d.n + count);
     const own = this.ownDegreesOf(
       withRows(bend.full.inverse, addedFull?.row, bend.full.layout.p, count),
@@ -172,7 +182,7 @@ export class LawPrecision {
    * its bend free. A further scan tells more of the bend, by as much as its variance there falls.
    */
   private openVariance(
-    { gradient }: LawGoal,
+    gradient: LawGoal['gradient'],
     { bent, centred }: NonNullable<AdviceAnalysis['open']>,
     more: Candidate | undefined,
     count: number,

@@ -133,14 +133,12 @@ function obtainWidth(
   }
   const made = sourceOfCampaign(c, seed, LAW_DRAWS, false);
   if (!made) return undefined;
-  // The frozen point would move with the slowest scan: the band above it alone is compared.
-  const source = { ...made.source, law: { ...made.source.law!, frozenBelowK: 1 } };
-  const [row] = answerQuestion(source, {
+  const [row] = answerQuestion(made.source, {
     question: 'time_to_conversion',
     conversion: goal.conversion,
     temperatureK: goal.temperatureK,
   });
-  return { width: Math.log10(row.upper95! / row.lower95!), bent: source.law.bend !== 0 };
+  return { width: Math.log10(row.upper95! / row.lower95!), bent: made.verdict === 'material' };
 }
 
 /** Vyazovkin's E at α = 0.5, J/mol: estimate from the ideal ramps, and the half width of its interval as the fit makes it. */

@@ -1,12 +1,11 @@
 import { answerQuestion, createForecaster } from '../../jobs/forecast/index.ts';
+import { FIT_DRAWS } from '../../jobs/steps/settings.ts';
 import { drawForecastCampaign, type MaterialKind, sourceOfCampaign, trueLnTime } from './forecast-campaigns.ts';
 import { createProgramme, jmakLaw, seededRandom, solveScan } from './generator/index.ts';
 import type { StudyOptions } from './registry.ts';
 import { markdownTable, percent, quantile } from './table.ts';
 
-/** Draws of each campaign: the spread of 60 is known to 9 %. */
-const DRAWS = 60;
-/** The model-free part costs twice the rest: every fourth campaign has it. */
+/** The model-free part costs most: every fourth campaign has it. */
 const MODEL_FREE_EVERY = 4;
 const KINDS: readonly MaterialKind[] = ['straight', 'bent', 'bent-glass'];
 
@@ -27,7 +26,7 @@ export interface ForecastTrial {
 export function tryForecast(
   seed: string,
   kind: MaterialKind,
-  draws = DRAWS,
+  draws = FIT_DRAWS,
   withModelFree = true,
 ): ForecastTrial | undefined {
   const random = seededRandom(`forecast-question/${seed}/${kind}`);
@@ -97,7 +96,7 @@ export function tryHold(seed: string): { shared: number; free: number } | undefi
 export function forecastStudy({ count = 200, seed }: StudyOptions): string {
   const rows = KINDS.flatMap((kind) => {
     const all = Array.from({ length: count }, (_, i) =>
-      tryForecast(`${seed}/${i}`, kind, DRAWS, i % MODEL_FREE_EVERY === 0),
+      tryForecast(`${seed}/${i}`, kind, FIT_DRAWS, i % MODEL_FREE_EVERY === 0),
     ).filter((t) => t !== undefined);
     const sides = kind === 'bent-glass' ? (['below'] as const) : (['below', 'above'] as const);
     return sides.map((side) => {
