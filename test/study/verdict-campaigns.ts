@@ -54,6 +54,8 @@ export interface CampaignWish {
   bend?: number;
   fragility?: number;
   lagFactor?: number;
+  /** samples.csv leaves the enthalpy of melting out */
+  meltingUnknown?: boolean;
 }
 
 /** Draws one campaign; `wish` fixes what a test wants fixed. Same random stream, same campaign. */
@@ -144,7 +146,7 @@ export function drawCampaign(random: Random, seed: string, wish: CampaignWish = 
       sample: 'S',
       scans,
       instruments: used.map((j) => instruments[j]),
-      facts: material.facts,
+      facts: wish.meltingUnknown ? { ...material.facts, meltingEnthalpyJPerKg: undefined } : material.facts,
       seed,
       draws: 400,
     },
