@@ -4,6 +4,8 @@ import {
   addArrheniusIntegral,
   addStretch,
   fillRampIntegrals,
+  type LnIntegrals,
+  setLnIntegral,
 } from '../laws/arrhenius-integral.ts';
 import { type JmakEstimate, JmakFit } from './avrami/non-isothermal.ts';
 import { CONVERSION_COUNT, type EventColumns, type EventData, GRID_INDEX, usableWeights } from './event-data.ts';
@@ -44,8 +46,8 @@ export interface Estimates {
 export interface ProgrammeIntegrals {
   /** over the conversion step that ends at conversion k, for the scan at `row` of the curve scans */
   step(energy: number, x0: number, k: number, out: ArrheniusIntegral[]): void;
-  /** ln of the integral from the start of the programme to each conversion, scan-major, and its derivative by E, scale included */
-  cumulative(energy: number, x0: number, lnValue: Float64Array, byEnergy: Float64Array): void;
+  /** logarithm of the integral from the start of the programme to each conversion, scan-major */
+  cumulative(energy: number, x0: number, out: LnIntegrals): void;
 }
 
 const reset = (o: ArrheniusIntegral): void => {
@@ -73,14 +75,13 @@ export function measuredIntegrals(data: EventData, curves: ArrayLike<number>): P
         add(j, k === 0 ? 0 : row(j, k - 1), row(j, k), energy, x0, out[j]);
       }
     },
-    cumulative(energy, x0, lnValue, byEnergy) {
+    cumulative(energy, x0, out) {
       const sum = { value: 0, byEnergy: 0, byEnergy2: 0 };
       for (let j = 0; j < curves.length; j++) {
         reset(sum);
         for (let k = 0; k < CONVERSION_COUNT; k++) {
           add(j, k === 0 ? 0 : row(j, k - 1), row(j, k), energy, x0, sum);
-          lnValue[j * CONVERSION_COUNT + k] = Math.log(sum.value);
-          byEnergy[j * CONVERSION_COUNT + k] = sum.byEnergy / sum.value + x0 / GAS_CONSTANT;
+          setLnIntegral(sum, x0, out, j * CONVERSION_COUNT + k);
         }
       }
     },
@@ -101,13 +102,13 @@ export function rampIntegrals(columns: EventColumns, curves: ArrayLike<number>):
         addStretch(from, T[at], (T[at] - from) / rate[i], c, c * x0, out[j]);
       }
     },
-    cumulative(energy, x0, lnValue, byEnergy) {
+    cumulative(energy, x0, out) {
       for (let j = 0; j < curves.length; j++) {
         const i = curves[j];
         const at = i * CONVERSION_COUNT;
         const start = Math.min(rampStartK[i], T[at] - 1);
         const to = j * CONVERSION_COUNT;
-        fillRampIntegrals(start, T, at, CONVERSION_COUNT, rate[i], energy, x0, lnValue, byEnergy, to);
+        fillRampIntegrals(start, T, at, CONVERSION_COUNT, rate[i], energy, x0, out, to);
       }
     },
   };
@@ -159,7 +160,7 @@ export function createEstimator(
     s.curveSigmaK,
     s.x0,
     (row) => d.temperatureK[cell(row)],
-    (e, ln, by) => integrals.cumulative(e, s.x0, ln, by),
+    (e, out) => integrals.cumulative(e, s.x0, out),
     usable && Uint8Array.from({ length: m * CONVERSION_COUNT }, (_, row) => usable[cell(row)]),
   );
 

@@ -76,10 +76,16 @@ const LN_NEGLIGIBLE = -37;
 const SMALL_PART = 1e-5;
 const onRamp: ArrheniusIntegral = { value: 0, byEnergy: 0, byEnergy2: 0 };
 
+/** ln J and its first two derivatives by E, scale included, in columns. */
+export interface LnIntegrals {
+  value: Float64Array;
+  byEnergy: Float64Array;
+  byEnergy2: Float64Array;
+}
+
 /**
- * ln J and d ln J/dE, scale included, of a ramp of `rate` K/s from startK up to each of `count` temperatures, T[at] and on, into the places
- * from `to` on of `lnValue` and `byEnergy`. The closed form of `addStretch` in logarithms: with h/x = N(x)/D(x), ln[T N/(D β)] + x0 E/R − x and
- * R d/dE = x0 + (1 − D/N)/c.
+ * ln J of a ramp of `rate` K/s from startK up to each of `count` temperatures, T[at] and on, into the places from `to` on of `out`. The
+ * closed form of `addStretch` in logarithms: with c = E/R and H = h/x, ln[T H/β] + x0 c − x, then x0 + s/c with s = 1 − 1/H, then (x/H − s²)/c².
  */
 export function fillRampIntegrals(
   startK: number,
@@ -89,16 +95,17 @@ export function fillRampIntegrals(
   rate: number,
   energyJPerMol: number,
   x0: number,
-  lnValue: Float64Array,
-  byEnergy: Float64Array,
+  out: LnIntegrals,
   to: number,
 ): void {
+  const { value, byEnergy, byEnergy2 } = out;
   const c = energyJPerMol / GAS_CONSTANT;
   const shift = c * x0;
   const xs = c / startK;
   const hs = temperatureIntegralFactorFast(xs) / xs;
   const lnStart = Math.log(startK * hs) - xs;
   const slopeStart = 1 - 1 / hs;
+  const bendStart = xs / hs - slopeStart * slopeStart;
   const common = shift - Math.log(rate);
   for (let k = 0; k < count; k++) {
     const x = c / T[at + k];
@@ -107,22 +114,34 @@ export function fillRampIntegrals(
       onRamp.byEnergy = 0;
       onRamp.byEnergy2 = 0;
       addStretch(startK, T[at + k], (T[at + k] - startK) / rate, c, shift, onRamp);
-      lnValue[to + k] = Math.log(onRamp.value);
-      byEnergy[to + k] = onRamp.byEnergy / onRamp.value + x0 / GAS_CONSTANT;
+      setLnIntegral(onRamp, x0, out, to + k);
       continue;
     }
     const h = temperatureIntegralFactorFast(x) / x;
     let ln = Math.log(T[at + k] * h) - x;
     let slope = 1 - 1 / h;
+    let bend = x / h - slope * slope;
     const before = lnStart - ln;
     if (before > LN_NEGLIGIBLE) {
       const part = Math.exp(before);
-      slope = (slope - part * slopeStart) / (1 - part);
+      const left = 1 - part;
+      const apart = slopeStart - slope;
+      bend = (bend - part * bendStart) / left - (part * apart * apart) / (left * left);
+      slope -= (part * apart) / left;
       ln += part < SMALL_PART ? -part * (1 + part / 2) : Math.log1p(-part);
     }
-    lnValue[to + k] = ln + common;
+    value[to + k] = ln + common;
     byEnergy[to + k] = (slope / c + x0) / GAS_CONSTANT;
+    byEnergy2[to + k] = bend / (energyJPerMol * energyJPerMol);
   }
+}
+
+/** The logarithm of an integral and its derivatives, scale included, at one place of `out`. */
+export function setLnIntegral(integral: ArrheniusIntegral, x0: number, out: LnIntegrals, at: number): void {
+  const slope = integral.byEnergy / integral.value;
+  out.value[at] = Math.log(integral.value);
+  out.byEnergy[at] = slope + x0 / GAS_CONSTANT;
+  out.byEnergy2[at] = integral.byEnergy2 / integral.value - slope * slope;
 }
 
 /** Five-point Gauss–Legendre over panels of the stretch: any sign of c, all terms of one sign, so nothing cancels. */

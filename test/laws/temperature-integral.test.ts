@@ -129,20 +129,21 @@ describe('Arrhenius integral along a ramp', () => {
     [150e3, 560, 600, 640], // one that does
     [300e3, 690, 690.5, 700], // so near that little else is left
     [20e3, 280, 320, 360], // below the reach of the closed form
-  ])('logarithm and its slope for E = %d from %d K to %d and %d K', (E, start, T1, T2) => {
+  ])('logarithm, its slope and bend for E = %d from %d K to %d and %d K', (E, start, T1, T2) => {
     const x0 = 1 / T2;
     const T = Float64Array.of(0, T1, T2);
-    const ln = new Float64Array(3);
-    const by = new Float64Array(3);
-    fillRampIntegrals(start, T, 1, 2, 0.5, E, x0, ln, by, 1);
+    const out = { value: new Float64Array(3), byEnergy: new Float64Array(3), byEnergy2: new Float64Array(3) };
+    fillRampIntegrals(start, T, 1, 2, 0.5, E, x0, out, 1);
     for (const k of [1, 2]) {
       const dt = (T[k] - start) / 0.5;
       const at = (t: number) => 1 / (start + 0.5 * t) - x0;
       const value = simpson((t) => Math.exp((-E / GAS_CONSTANT) * at(t)), dt);
-      const slope = simpson((t) => (-at(t) / GAS_CONSTANT) * Math.exp((-E / GAS_CONSTANT) * at(t)), dt) / value;
-      expect(Math.abs(ln[k] - Math.log(value))).toBeLessThan(1e-6);
-      expect(Math.abs(by[k] - slope)).toBeLessThan(1e-6 / GAS_CONSTANT / T1);
+      const moment = (power: number) =>
+        simpson((t) => (-at(t) / GAS_CONSTANT) ** power * Math.exp((-E / GAS_CONSTANT) * at(t)), dt) / value;
+      expect(Math.abs(out.value[k] - Math.log(value))).toBeLessThan(1e-6);
+      expect(Math.abs(out.byEnergy[k] - moment(1))).toBeLessThan(1e-6 / GAS_CONSTANT / T1);
+      expect(Math.abs(out.byEnergy2[k] * E ** 2 - (moment(2) - moment(1) ** 2) * E ** 2)).toBeLessThan(2e-3);
     }
-    expect([ln[0], by[0]]).toEqual([0, 0]);
+    expect([out.value[0], out.byEnergy[0], out.byEnergy2[0]]).toEqual([0, 0, 0]);
   });
 });

@@ -1,13 +1,11 @@
 import { GAS_CONSTANT } from '../../../schema/wire/units.ts';
+import type { LnIntegrals } from '../../laws/arrhenius-integral.ts';
 import { approachMinimum, type LeastSquaresResult } from '../../numeric/least-squares.ts';
 import { solveSymmetric } from '../../numeric/linear-solve.ts';
 import { CONVERSION_COUNT, CONVERSIONS } from '../event-data.ts';
 
-/**
- * Fills ln ∫ exp(−(E/R)(1/T − x0)) dt from the start of the programme to each conversion, scan-major, and its derivative by E (the scale x0
- * counts there too).
- */
-export type CumulativeIntegrals = (energy: number, lnValue: Float64Array, byEnergy: Float64Array) => void;
+/** Fills ln ∫ exp(−(E/R)(1/T − x0)) dt from the start of the programme to each conversion, scan-major. */
+export type CumulativeIntegrals = (energy: number, out: LnIntegrals) => void;
 
 export interface JmakEstimate {
   energy: number;
@@ -35,6 +33,8 @@ const CURVE_SIGMA = 0.005;
 /** Step ÷ scale at which a fit has converged: to the last digit, and in a draw, where what is left after such a step is a hundredth of it. */
 const LAST_DIGIT = 1e-9;
 const DRAW_TOLERANCE = 1e-5;
+/** In a draw integrals are carried this part of E along their derivatives: what is left out is below 1e-7. */
+const REACH = 5e-3;
 const MOST_STEPS = 60;
 const DAMPING_LIMIT = 1e8;
 const P = 3;
@@ -52,8 +52,10 @@ const P = 3;
  * and a border: the diagonal is eliminated (Schur complement) while the one pass over the points makes the sums; no Jacobian is stored.
  */
 export class JmakFit {
-  private readonly lnI: Float64Array;
-  private readonly byEnergy: Float64Array;
+  private readonly integrals: LnIntegrals;
+  /** where `integrals` were made, J/mol, and the part of it that they may be carried */
+  private madeAt = 0;
+  private reach = 0;
   /** 1/(R T²), mol/(J K): what a shift of 1 K does to E/(R T), per J/mol */
   private readonly perKelvin: Float64Array;
   private readonly shifts: Float64Array;
@@ -78,8 +80,8 @@ export class JmakFit {
     private readonly usable?: Uint8Array,
   ) {
     const rows = sigmaK.length * CONVERSION_COUNT;
-    this.lnI = new Float64Array(rows);
-    this.byEnergy = new Float64Array(rows);
+    const column = () => new Float64Array(rows);
+    this.integrals = { value: column(), byEnergy: column(), byEnergy2: column() };
     this.perKelvin = new Float64Array(rows);
     this.shifts = new Float64Array(sigmaK.length);
     this.trialShifts = new Float64Array(sigmaK.length);
@@ -88,8 +90,8 @@ export class JmakFit {
 
   /** From a rough start, to the last digit. Where that fails the library's Levenberg–Marquardt brings it near first. */
   fitFromScratch(start: Float64Array): JmakEstimate {
-    const own = this.solve(start, LAST_DIGIT);
-    const fit = own.converged ? own : this.solve(this.approach(start), LAST_DIGIT);
+    const own = this.solve(start, LAST_DIGIT, 0);
+    const fit = own.converged ? own : this.solve(this.approach(start), LAST_DIGIT, 0);
     const rms = (sum: number, n: number) => Math.sqrt(sum / n);
     const n = this.sigmaK.length;
     return {
@@ -106,7 +108,7 @@ export class JmakFit {
 
   /** From a neighbouring answer (Monte Carlo draws). */
   fitFrom(start: Float64Array): JmakEstimate {
-    return this.result(this.solve(start, DRAW_TOLERANCE));
+    return this.result(this.solve(start, DRAW_TOLERANCE, REACH));
   }
 
   private result(fit: LeastSquaresResult): JmakEstimate {
@@ -114,7 +116,10 @@ export class JmakFit {
     return { energy, lnPrefactor: lnK0 + (energy * this.x0) / GAS_CONSTANT, exponent, fit };
   }
 
-  private solve(start: Float64Array, tolerance: number): LeastSquaresResult {
+  /** @param tolerance step ÷ scale   @param reach see `REACH`; 0: integrals anew for every E */
+  private solve(start: Float64Array, tolerance: number, reach: number): LeastSquaresResult {
+    this.reach = reach;
+    this.madeAt = 0;
     const { normal, gradient, border } = this;
     const scans = this.sigmaK.length;
     for (let row = 0; row < this.perKelvin.length; row++) {
@@ -193,8 +198,13 @@ export class JmakFit {
     const lnK0 = p[1];
     const n = p[2];
     if (!(energy > 0) || !(n > 0.05) || n > 50) return Number.POSITIVE_INFINITY;
-    const { lnI, byEnergy, perKelvin, border, normal, usable } = this;
-    this.cumulative(energy, lnI, byEnergy);
+    const { perKelvin, border, normal, usable } = this;
+    if (!(Math.abs(energy - this.madeAt) < this.reach * energy)) {
+      this.cumulative(energy, this.integrals);
+      this.madeAt = energy;
+    }
+    const { value, byEnergy, byEnergy2 } = this.integrals;
+    const moved = energy - this.madeAt;
     let curveSquares = 0;
     let shiftSquares = 0;
     let n00 = 0;
@@ -220,13 +230,14 @@ export class JmakFit {
         const row = from + k;
         if (usable && usable[row] === 0) continue;
         const perShift = perKelvin[row];
-        const lnX = lnK0 + lnI[row] - energy * perShift * shift;
+        const bend = moved * byEnergy2[row];
+        const lnX = lnK0 + value[row] + moved * (byEnergy[row] + bend / 2) - energy * perShift * shift;
         const X = Math.exp(n * lnX);
         const left = Math.exp(-X);
         const r = 1 - left - CONVERSION[k];
         const slope = left * X;
         const j1 = slope * n;
-        const j0 = j1 * (byEnergy[row] - perShift * shift);
+        const j0 = j1 * (byEnergy[row] + bend - perShift * shift);
         const j2 = slope * lnX;
         const g = -j1 * energy * perShift;
         curveSquares += r * r;
@@ -276,13 +287,14 @@ export class JmakFit {
 
   /** Without shifts, by the library, whose numeric derivatives and adaptive damping forgive a poor start. */
   private approach(start: Float64Array): Float64Array {
-    const rows = this.lnI.length;
+    const { value } = this.integrals;
+    const rows = value.length;
     return approachMinimum(
       ([energy, lnK0, n]) => {
         // The library squares what it gets: a large finite value stands for "outside the model's range".
         if (!(energy > 0) || !(n > 0.05) || n > 50) return new Float64Array(rows).fill(1e3);
-        this.cumulative(energy, this.lnI, this.byEnergy);
-        return Float64Array.from(this.lnI, (v, row) => {
+        this.cumulative(energy, this.integrals);
+        return Float64Array.from(value, (v, row) => {
           const X = Math.exp(n * (lnK0 + v));
           return 1 - Math.exp(-X) - CONVERSION[row % CONVERSION_COUNT];
         });
