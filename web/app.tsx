@@ -29,6 +29,7 @@ function View() {
       return (
         <Notice
           tone="stop"
+          isPage
           title="No page at this address"
           detail={`Nothing is shown at ${path.value}.`}
           action="Go to the list of campaigns and choose one."

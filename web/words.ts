@@ -115,4 +115,7 @@ export const flagMeaning = (code: FlagCode): string => FLAG_CODES[code]?.[1] ?? 
 
 /** First letter as a capital and no line break before a unit, for sentences made of table texts. */
 export const sentence = (text: string): string =>
-  (text.charAt(0).toUpperCase() + text.slice(1)).replace(/(\d) (?=%|K\b|s\b)/g, '$1\u00a0');
+  (text.charAt(0).toUpperCase() + text.slice(1)).replace(
+    /(\d) (?=%|°C|(?:K|s|min|h|d|days|years|kJ|decades)\b)/g,
+    '$1\u00a0',
+  );

@@ -186,6 +186,7 @@ const forecasts: ReportData['tables']['forecasts'] = [
     goal: 'met',
     beyond_measured_decades: 3,
     detail: 'At least 200 days.',
+    caution: '',
   },
 ];
 

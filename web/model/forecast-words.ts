@@ -1,3 +1,4 @@
+import type { FlagCode } from '../../schema/wire/flags.ts';
 import type { ForecastRow } from '../../schema/wire/forecasts.ts';
 import { kelvinFromCelsius } from '../../schema/wire/units.ts';
 import { formatSignificant, formatTemperature, type Units } from '../format.ts';
@@ -55,6 +56,13 @@ const GOALS: Record<ForecastRow['goal'], string> = {
   '': '',
 };
 
+/** Doubts that the answer in words tells already where these words stand in it. */
+const TOLD_AS: Partial<Record<FlagCode, RegExp>> = {
+  extrapolates: /outside the measured/,
+  'forecasts-disagree': /methods differ/,
+  'forecast-straight': /straight on/,
+};
+
 /** One row of the forecasts in words. */
 export function describeForecast(row: ForecastRow, units: Units): ForecastWords {
   const at =
@@ -74,7 +82,11 @@ export function describeForecast(row: ForecastRow, units: Units): ForecastWords 
     answer: show(row.value),
     band: row.lower95 === null && row.upper95 === null ? '' : `${show(row.lower95)} to ${show(row.upper95)}`,
     method: row.method === 'model_free' ? 'model-free' : 'shared law',
-    words: [row.detail, GOALS[row.goal], ...row.flags.map((code) => `${sentence(flagMeaning(code))}.`)]
+    words: [
+      sentence(row.detail),
+      GOALS[row.goal],
+      ...row.flags.filter((code) => !TOLD_AS[code]?.test(row.detail)).map((code) => `${sentence(flagMeaning(code))}.`),
+    ]
       .filter(Boolean)
       .join(' '),
   };

@@ -1,5 +1,6 @@
 import type { VerdictRow } from '../../schema/wire/verdicts.ts';
 import { formatEstimate, formatFixed, formatRate, formatSignificant, type Units } from '../format.ts';
+import { sentence } from '../words.ts';
 
 const OPENINGS: Record<VerdictRow['verdict'], string> = {
   straight: 'One straight law holds over all rates.',
@@ -25,6 +26,6 @@ export function describeVerdict(row: VerdictRow, units: Units): string {
     );
   }
   if (p !== null) sentences.push(`p ${p < 0.001 ? '< 0.001' : `= ${formatFixed(p, 3)}`} for a straight law.`);
-  if (row.decides_next !== '') sentences.push(`To decide it: ${row.decides_next}.`.replace(/\.\.$/, '.'));
+  if (row.decides_next !== '') sentences.push(sentence(`To decide it: ${row.decides_next}.`.replace(/\.\.$/, '.')));
   return sentences.join(' ');
 }

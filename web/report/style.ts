@@ -42,7 +42,10 @@ th[scope="rowgroup"] { font-weight: 600; padding-top: 0.6rem; }
 .unseen { position: absolute; width: 1px; height: 1px; overflow: hidden; clip-path: inset(50%); white-space: nowrap; }
 .interval-mark { display: block; max-width: none; }
 tbody th { white-space: nowrap; }
-tbody th:has(.file) { white-space: normal; }
+tbody th:has(.file), .with-words tbody th { white-space: normal; }
+.with-words td:last-child { min-width: 14rem; }
+.with-words td, .with-words th { padding-right: 0.5rem; }
+.hash { font-size: 0.78em; }
 .event-numbers tr:last-child td { border: 0; }
 @media screen {
   .sample { content-visibility: auto; contain-intrinsic-size: auto 60rem; }

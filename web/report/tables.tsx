@@ -20,11 +20,13 @@ export function ReportTable(props: {
   caption: string;
   heads: readonly string[];
   rows: readonly (readonly ComponentChildren[])[];
+  /** The last column holds sentences: the others leave it room */
+  hasWords?: boolean;
 }) {
-  const { caption, heads, rows } = props;
+  const { caption, heads, rows, hasWords } = props;
   return (
     <div class="table-box">
-      <table>
+      <table class={hasWords ? 'with-words' : undefined}>
         <caption>{caption}</caption>
         <thead>
           <tr>
@@ -40,7 +42,7 @@ export function ReportTable(props: {
             <tr key={i}>
               <th scope="row">{name}</th>
               {cells.map((cell, k) => (
-                <td key={k} class={k < heads.length - 2 ? 'number' : undefined}>
+                <td key={k} class={k < heads.length - (hasWords ? 3 : 2) ? 'number' : undefined}>
                   {cell}
                 </td>
               ))}
@@ -84,6 +86,7 @@ export function ScanReport({ rows, units }: { rows: readonly ScanRow[]; units: U
   const sorted = [...rows].sort((a, b) => Math.abs(rate(a)) - Math.abs(rate(b)) || (a.file < b.file ? -1 : 1));
   return (
     <ReportTable
+      hasWords
       caption="Scans, slowest first: one row a scan and event."
       heads={['Rate', 'Instrument', 'Mass', 'Glass transition', 'Onset', 'Peak', 'Enthalpy', 'File, state and flags']}
       rows={sorted.map((row) => [
@@ -139,6 +142,7 @@ export function EnergyReport({ rows }: { rows: readonly ParameterRow[] }) {
 export function ForecastReport({ rows, units }: { rows: readonly ForecastRow[]; units: Units }) {
   return (
     <ReportTable
+      hasWords
       caption="Forecasts with 95 % bands; in words, the pessimistic end comes first."
       heads={['Question', 'Answer', '95 % band', 'Method', 'In words, with doubts']}
       rows={rows.map((row) => {
@@ -152,6 +156,7 @@ export function ForecastReport({ rows, units }: { rows: readonly ForecastRow[]; 
 export function AdviceReport({ rows, units }: { rows: readonly AdviceRow[]; units: Units }) {
   return (
     <ReportTable
+      hasWords
       caption="Scans that would narrow an interval most."
       heads={['Sample', 'Instrument', 'Rate', 'Interval now', 'Expected', 'Why']}
       rows={rows.map((row) => [

@@ -21,15 +21,21 @@ export interface LivePage<Data> {
 const RELOAD_AFTER_MS = 1_000;
 const RETRY_AFTER_MS = 3_000;
 
-/** Opens a page of a campaign: its name, its status as it changes, and the page's data, loaded again after every change. */
+/**
+ * Opens a page of a campaign: its name, its status as it changes, and the page's data, loaded again after every change. The first
+ * load may show a part of the data before the rest has come.
+ */
 export function openLivePage<Data>(
   id: string,
-  load: (status: Status, signal: AbortSignal) => Promise<Data>,
+  load: (status: Status, signal: AbortSignal, showPart: (data: Data) => void) => Promise<Data>,
 ): LivePage<Data> {
   const abort = new AbortController();
   let loading = false;
   let changed = false;
 
+  const showPart = (data: Data): void => {
+    if (live.data.value === undefined && !abort.signal.aborted) live.data.value = data;
+  };
   const loadData = async (): Promise<void> => {
     if (loading) {
       changed = true;
@@ -40,7 +46,7 @@ export function openLivePage<Data>(
       changed = false;
       const started = performance.now();
       try {
-        if (live.status.value) live.data.value = await load(live.status.value, abort.signal);
+        if (live.status.value) live.data.value = await load(live.status.value, abort.signal, showPart);
         live.problem.value = undefined;
       } catch (error) {
         if (abort.signal.aborted) return;
@@ -63,7 +69,16 @@ export function openLivePage<Data>(
     close: () => abort.abort(),
   };
 
-  const start = async (): Promise<void> => {
+  let seen = '';
+  const take = (status: Status, isNews: boolean): void => {
+    const { queued, running, failed } = status.jobs;
+    const text = JSON.stringify([status.scans, status.samples, status.settled, queued, running, failed]);
+    // The same again is not told on: whatever shows the status would be worked out anew.
+    if (text !== seen || status.eta_s !== live.status.value?.eta_s) live.status.value = status;
+    if (isNews || text !== seen || live.problem.value) void loadData();
+    seen = text;
+  };
+  const nameCampaign = async (): Promise<void> => {
     while (live.campaign.value === undefined) {
       try {
         live.campaign.value = await loadCampaign(id, abort.signal);
@@ -72,31 +87,27 @@ export function openLivePage<Data>(
         const problem = asProblem(error);
         live.problem.value = problem;
         // A refusal stays one; a server that is away or busy may come back.
-        if (problem.status >= 400 && problem.status < 500 && problem.status !== 429) return;
+        if (problem.status >= 400 && problem.status < 500 && problem.status !== 429) {
+          abort.abort();
+          return;
+        }
         live.link.value = 'offline';
         await new Promise((resolve) => setTimeout(resolve, RETRY_AFTER_MS));
       }
     }
-    let seen = '';
-    await followStatus(
-      id,
-      {
-        onStatus(status, isNews) {
-          const { queued, running, failed } = status.jobs;
-          const text = JSON.stringify([status.scans, status.samples, status.settled, queued, running, failed]);
-          // The same again is not told on: whatever shows the status would be worked out anew.
-          if (text !== seen || status.eta_s !== live.status.value?.eta_s) live.status.value = status;
-          if (isNews || text !== seen || live.problem.value) void loadData();
-          seen = text;
-        },
-        onLink(link, problem) {
-          live.link.value = link;
-          if (link === 'offline' && problem) live.problem.value = problem;
-        },
-      },
-      abort.signal,
-    );
   };
-  void start();
+  // Name and status are asked for side by side: the page waits for as few answers in turn as can be.
+  void nameCampaign();
+  void followStatus(
+    id,
+    {
+      onStatus: take,
+      onLink(link, problem) {
+        live.link.value = link;
+        if (link === 'offline' && problem) live.problem.value = problem;
+      },
+    },
+    abort.signal,
+  );
   return live;
 }

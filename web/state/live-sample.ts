@@ -2,23 +2,14 @@ import type { GapRow } from '../../schema/wire/campaign.ts';
 import type { AdviceRow, ForecastRow } from '../../schema/wire/forecasts.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { VerdictRow } from '../../schema/wire/verdicts.ts';
-import { loadCurves, loadParameters, loadSample, loadTable } from '../client/campaigns.ts';
+import { loadCurves, loadParameters, loadSample, loadTable, type TableRows } from '../client/campaigns.ts';
 import { Problem } from '../client/request.ts';
 import type { FlagRow, InstrumentRow, SampleView, ScanRow, Status, StatusSample } from '../client/rows.ts';
 import type { CurveKind, Curves } from '../model/curves.ts';
 import { openLivePage } from './live-page.ts';
 
-/** Kinds of curves the server gives of a sample. */
-const KINDS: CurveKind[] = [
-  'thermogram',
-  'baseline',
-  'conversion',
-  'kissinger',
-  'energy',
-  'growth',
-  'viscosity',
-  'ttt',
-];
+/** Kinds of curves shown below the thermograms. */
+const LATER_KINDS: CurveKind[] = ['conversion', 'kissinger', 'energy', 'local_energy', 'growth', 'viscosity', 'ttt'];
 
 export interface SampleData {
   sample: StatusSample;
@@ -37,7 +28,7 @@ export interface SampleData {
 
 /** Opens the page of one sample, named by its name or its id. */
 export const openSample = (campaignId: string, name: string) =>
-  openLivePage(campaignId, async (status: Status, signal): Promise<SampleData> => {
+  openLivePage(campaignId, async (status: Status, signal, showPart): Promise<SampleData> => {
     const sample = status.samples.find((s) => s.sample === name) ?? status.samples.find((s) => s.id === name);
     if (!sample) {
       throw new Problem(
@@ -48,20 +39,31 @@ export const openSample = (campaignId: string, name: string) =>
       );
     }
     const filter = { sample: sample.sample };
-    const [listed, scans, flags, gaps, verdicts, forecasts, advice, instruments, parameters, ...curves] =
-      await Promise.all([
-        loadSample(sample.id, signal),
-        loadTable(campaignId, 'scans', filter, signal),
-        loadTable(campaignId, 'flags', filter, signal),
-        loadTable(campaignId, 'gaps', filter, signal),
-        loadTable(campaignId, 'verdicts', filter, signal),
-        loadTable(campaignId, 'forecasts', filter, signal),
-        loadTable(campaignId, 'advice', filter, signal),
-        loadTable(campaignId, 'instruments', {}, signal),
-        loadParameters(campaignId, filter, signal),
-        ...KINDS.map((kind) => loadCurves(sample.id, kind, signal)),
-      ]);
-    const byKind = Object.fromEntries(curves.map((c) => [c.kind, c]));
-    const tables = { scans, flags, gaps, verdicts, forecasts, advice, instruments, parameters };
-    return { sample, listed: listed.scans, ...tables, curves: byKind };
+    const load = <Table extends keyof TableRows>(table: Table) => loadTable(campaignId, table, filter, signal);
+    // First what the top of the page shows; a browser sends a few requests at a time, in this order.
+    const early = Promise.all([
+      loadCurves(sample.id, 'thermogram', signal),
+      loadCurves(sample.id, 'baseline', signal),
+      load('scans'),
+      loadSample(sample.id, signal),
+      load('verdicts'),
+    ]).then(([thermogram, baseline, scans, listed, verdicts]) => {
+      const rest = { flags: [], gaps: [], parameters: [], instruments: [], forecasts: [], advice: [] };
+      const part = { sample, listed: listed.scans, scans, verdicts, curves: { thermogram, baseline } };
+      showPart({ ...part, ...rest });
+      return part;
+    });
+    const [part, flags, gaps, forecasts, advice, instruments, parameters, ...curves] = await Promise.all([
+      early,
+      load('flags'),
+      load('gaps'),
+      load('forecasts'),
+      load('advice'),
+      loadTable(campaignId, 'instruments', {}, signal),
+      loadParameters(campaignId, filter, signal),
+      ...LATER_KINDS.map((kind) => loadCurves(sample.id, kind, signal)),
+    ]);
+    const later = Object.fromEntries(curves.map((c) => [c.kind, c]));
+    const tables = { flags, gaps, forecasts, advice, instruments, parameters };
+    return { ...part, ...tables, curves: { ...part.curves, ...later } };
   });

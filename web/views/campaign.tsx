@@ -45,7 +45,7 @@ export function CampaignView({ id }: { id: string }) {
   if (!campaign) {
     return problem ? (
       <>
-        <ProblemNotice problem={problem} />
+        <ProblemNotice problem={problem} isPage />
         <p>
           <a href="/">All campaigns</a>
         </p>

@@ -6,6 +6,7 @@ import { saveFigureAsPng, saveFigureAsSvg } from '../client/figure-file.ts';
 import { saveFile } from '../client/save.ts';
 import { type Curves, curveRows } from '../model/curves.ts';
 import { SaveSign } from './download.tsx';
+import { useNear } from './use-near.ts';
 import { useWidth } from './use-width.ts';
 
 /** A plot with its title, its words and the buttons that save it as SVG, PNG and, where it shows curves, as CSV. */
@@ -24,6 +25,10 @@ export function Figure(props: {
   const { title, of, curves, caption, legend, tools, draw } = props;
   const [frame, width] = useWidth<HTMLDivElement>();
   const figure = useRef<HTMLElement>(null);
+  const { isNear } = useNear(figure);
+  // Drawn when it first comes near, and kept: what was seen does not jump.
+  const isDrawn = useRef(false);
+  isDrawn.current ||= isNear.value;
   const trouble = useSignal('');
   const svg = (): SVGSVGElement | null => figure.current?.querySelector('.figure-frame svg') ?? null;
   const run = (save: (drawn: SVGSVGElement) => void | Promise<void>) => async () => {
@@ -53,7 +58,9 @@ export function Figure(props: {
       </div>
       {tools}
       <div class="figure-frame">
-        <div ref={frame}>{width > 0 && draw(width)}</div>
+        <div ref={frame} class={isDrawn.current ? undefined : 'figure-to-come'}>
+          {width > 0 && isDrawn.current && draw(width)}
+        </div>
       </div>
       {legend && <ul class="legend figure-legend">{legend}</ul>}
       <figcaption>{caption}</figcaption>

@@ -8,14 +8,16 @@ export function Notice(props: {
   title: string;
   detail: string;
   action: string;
+  /** It stands for a whole page: its title is the page's */
+  isPage?: boolean;
   children?: ComponentChildren;
 }) {
-  const { tone, title, detail, action, children } = props;
+  const { tone, title, detail, action, isPage, children } = props;
   return (
     <div class={`notice tone-${tone}`} role="alert">
       <SeverityGlyph severity={tone} />
       <div>
-        <p class="notice-title">{title}</p>
+        {isPage ? <h1 class="notice-title">{title}</h1> : <p class="notice-title">{title}</p>}
         <p>{detail}</p>
         <p>{action}</p>
         {children && <p>{children}</p>}
@@ -24,8 +26,9 @@ export function Notice(props: {
   );
 }
 
-export const ProblemNotice = ({ problem }: { problem: Problem }) => (
+export const ProblemNotice = ({ problem, isPage }: { problem: Problem; isPage?: boolean }) => (
   <Notice
+    isPage={isPage}
     tone={problem.status === 0 ? 'warn' : 'stop'}
     title={problem.title}
     detail={problem.detail}

@@ -37,7 +37,7 @@ export function NotYet(props: { problem: Problem | undefined; what: string; camp
   if (!problem) return <p class="waiting">Loading {what}…</p>;
   return (
     <>
-      <ProblemNotice problem={problem} />
+      <ProblemNotice problem={problem} isPage />
       <p>
         <a href={campaignPath(campaignId)}>To the campaign</a>, <a href="/">all campaigns</a>
       </p>
