@@ -1,3 +1,4 @@
+import { FLAG_CODES } from '../schema/wire/flags.ts';
 import { PROBLEMS } from './problems.ts';
 
 /** The parts of the OpenAPI document that the page shows. */
@@ -157,15 +158,22 @@ export function renderReference(document: ApiDocument): string {
         `<tr id="${code}"><td><code>${code}</code></td><td>${status}</td><td>${escapeText(title)}</td><td>${escapeText(action)}</td></tr>`,
     )
     .join('');
+  const flags = Object.entries(FLAG_CODES)
+    .map(
+      ([code, [severity, meaning]]) =>
+        `<tr id="flag-${code}"><td><code>${code}</code></td><td>${severity}</td><td>${escapeText(meaning)}</td></tr>`,
+    )
+    .join('');
   return `<!doctype html>
 <html lang="en"><head><meta charset="utf-8"><meta name="viewport" content="width=device-width,initial-scale=1">
 <title>${escapeText(document.info.title)} reference</title><style>${REFERENCE_STYLE}</style></head><body>
 <h1>${escapeText(document.info.title)} ${escapeText(document.info.version)}</h1>
 <p>${escapeText(document.info.description ?? '')}</p>
-<nav><a href="#routes">Routes</a><a href="#shapes">Shapes</a><a href="#problems">Problems</a><a href="/v1/openapi.json">OpenAPI document</a></nav>
+<nav><a href="#routes">Routes</a><a href="#shapes">Shapes</a><a href="#problems">Problems</a><a href="#flags">Flags</a><a href="/v1/openapi.json">OpenAPI document</a></nav>
 <h2 id="routes">Routes</h2>${operations}
 <h2 id="shapes">Shapes</h2>${shapes}
 <h2 id="problems">Problems</h2><table><tr><th>code</th><th>status</th><th>meaning</th><th>what to do</th></tr>${problems}</table>
+<h2 id="flags">Flags</h2><table><tr><th>code</th><th>severity</th><th>meaning</th></tr>${flags}</table>
 </body></html>
 `;
 }
