@@ -18,7 +18,7 @@ import { adviseScans } from './advice.ts';
 import { analyseBend, type BendAnalysis, bendOf, degreesLeft, settleBend } from './analyse.ts';
 import { collectJudged, type JudgedEvent, lawData } from './collect.ts';
 import { type Decision, decide, LEAST_DEGREES, missingScans } from './decide.ts';
-import { explain, lagInWords, scansInWords } from './sentences.ts';
+import { compareLaws, explain, lagInWords, scansInWords } from './sentences.ts';
 import { exponentsUnder, fitSharedLaw, type SharedFit } from './shared-law.ts';
 
 /** Rates that each kind of calorimeter usually reaches, K/s. */
@@ -112,7 +112,10 @@ export function judgeEvent(
     verdict: {
       row,
       reason: decision.reason,
-      sentences: explain(row, decision, lags, advice?.deciding ?? []),
+      sentences: [
+        ...explain(row, decision, lags, advice?.deciding ?? []),
+        ...(shared?.rivals ? [compareLaws(shared.rivals)] : []),
+      ],
       opinion: what,
       otherOpinions,
       laws,

@@ -1,5 +1,6 @@
 import type { DecidingScan, LagEvidence, VerdictRow } from '../../../schema/wire/verdicts.ts';
 import { type Decision, LEAST_DEGREES, STRAIGHT_WITHIN } from './decide.ts';
+import type { RivalShapes } from './shape-error.ts';
 
 export const inWords = (rateKPerS: number): string =>
   rateKPerS < 1
@@ -56,6 +57,17 @@ export function explain(
         ...(deciding.length > 0 ? [`What would settle it: ${scansInWords(deciding)}.`] : []),
       ];
   }
+}
+
+/** VFT and MYEGA beside the bent law; a change of the deviance below this tells nothing. */
+const TELLS = 4;
+
+export function compareLaws({ vft, myega }: RivalShapes): string {
+  const say = (name: string, change: number) =>
+    Math.abs(change) < TELLS
+      ? `${name} fits as well (deviance ${change >= 0 ? '+' : '−'}${Math.abs(change).toFixed(1)})`
+      : `${name} fits ${change > 0 ? 'worse' : 'better'} by ${Math.abs(change).toFixed(1)} in deviance`;
+  return `With as many parameters as the bent law, to first order: ${say('VFT', vft)}, ${say('MYEGA', myega)}.`;
 }
 
 function undecided({ reason, missing }: Decision, interval: string, part: string): string {

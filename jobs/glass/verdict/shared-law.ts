@@ -12,7 +12,7 @@ import { Condition, type ConditionValue } from './condition.ts';
 import { type DrivenBend, drivenBend } from './driven-bend.ts';
 import { type LawData, type LawFit, LawProblem } from './law-fit.ts';
 import { type Combination, effectiveDegrees } from './scatter.ts';
-import { shapeVariance } from './shape-error.ts';
+import { type RivalShapes, rivalShapes, shapeVariance } from './shape-error.ts';
 
 export interface SharedFit {
   law: SharedLaw;
@@ -29,6 +29,8 @@ export interface SharedFit {
   degrees: number;
   /** variance of ln E_loc at T beside the draws', where the law's shape is a guess */
   shapeVariance(temperatureK: number): number;
+  /** VFT and MYEGA in the place of a free bend */
+  rivals?: RivalShapes;
   /** the bend of a law that carries the driving force */
   drivenBend?: DrivenBend;
 }
@@ -108,6 +110,7 @@ export function fitSharedLaw(
     trueK,
     exponents,
     degrees,
+    ...(free && { rivals: rivalShapes(d, fit) }),
     ...(free && driving && { drivenBend: drivenBend(law, d, fit, a.scatter.degrees, a.inflation) }),
     shapeVariance: free && !driving ? shapeVariance(d, fit, a.inflation) : () => 0,
   };
