@@ -31,17 +31,29 @@ export const CURVE_AXES: Record<CurveKind, Pick<Curves, 'x' | 'y'>> = {
   ttt: { x: TEMPERATURE, y: { quantity: 'time', unit: 's' } },
 };
 
+/** Rounds to a millionth of the largest size: beyond any noise, and half the bytes. */
+function createRounding(values: Float64Array): (value: number) => number {
+  let size = 0;
+  for (const value of values) if (Math.abs(value) > size) size = Math.abs(value);
+  const digits = 6 - Math.ceil(Math.log10(size || 1));
+  // Dividing by a whole power of ten gives the shortest decimal; multiplying by its inverse would not.
+  const factor = 10 ** Math.abs(digits);
+  return digits >= 0 ? (value) => Math.round(value * factor) / factor : (value) => Math.round(value / factor) * factor;
+}
+
 /** Heat flow of each scan as it was analysed, or the baseline under its event: not a number elsewhere, so left out there. */
 export function traceSeries(scans: ReducedSampleScan[], column: 'heatFlow' | 'baseline'): CurveSeries[] {
   return scans.map(({ id, file, instrument, reduced: { trace, heatFlowUnit } }) => {
     const x: number[] = [];
     const y: number[] = [];
     const timeS: number[] = [];
+    const round = createRounding(trace[column]);
+    const roundTime = createRounding(trace.timeS ?? new Float64Array(0));
     trace[column].forEach((value, i) => {
       if (!Number.isFinite(value)) return;
-      x.push(trace.temperatureK[i]);
-      y.push(value);
-      if (trace.timeS) timeS.push(trace.timeS[i]);
+      x.push(Math.round(trace.temperatureK[i] * 1000) / 1000);
+      y.push(round(value));
+      if (trace.timeS) timeS.push(roundTime(trace.timeS[i]));
     });
     return {
       name: file,

@@ -61,7 +61,11 @@ async function makeCurves(ports: Ports, sample: SampleView, kind: CurveKind, sou
     local_energy: async () => localEnergySeries(await sources.plots()),
     ttt: async () => transformationSeries(await answerTransformation(ports, sample.id)),
   };
-  return { kind, ...CURVE_AXES[kind], series: await series[kind]() };
+  const { x, y } = CURVE_AXES[kind];
+  const made = await series[kind]();
+  const units = new Set(made.flatMap(({ unit }) => unit ?? []));
+  const [unit] = units;
+  return { kind, x, y: units.size === 1 ? { ...y, unit } : y, series: made };
 }
 
 /** The curves of one kind of a sample. */
