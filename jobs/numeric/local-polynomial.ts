@@ -9,6 +9,7 @@ export interface LocalFit {
   /** standard error ÷ noise of one point */
   valueNoise: number;
   slopeNoise: number;
+  curvatureNoise: number;
   points: number;
 }
 
@@ -67,6 +68,7 @@ export function fitLocalPolynomial(
       third: 0,
       valueNoise: 1,
       slopeNoise: Number.POSITIVE_INFINITY,
+      curvatureNoise: Number.POSITIVE_INFINITY,
       points: to - from,
     };
   }
@@ -77,6 +79,7 @@ export function fitLocalPolynomial(
     third: p > 3 ? (6 * rhs[3]) / unit ** 3 : 0,
     valueNoise: Math.sqrt(normal[0]),
     slopeNoise: p > 1 ? Math.sqrt(normal[p + 1]) / unit : Number.POSITIVE_INFINITY,
+    curvatureNoise: p > 2 ? (2 * Math.sqrt(normal[2 * p + 2])) / (unit * unit) : Number.POSITIVE_INFINITY,
     points: to - from,
   };
 }

@@ -35,7 +35,7 @@ export function findLandmarks(w: EventWindow, x: Excess, shape: EventShape): Lan
     if (!(bend < 0)) break;
     const step = Math.max(-half, Math.min(half, -slope / bend));
     peakS += step;
-    peakErrorS = (w.noise * f.slopeNoise) / Math.abs(bend);
+    peakErrorS = (w.noise * Math.hypot(f.slopeNoise, (r + w.undoneS) * f.curvatureNoise)) / Math.abs(bend);
     if (Math.abs(step) < 1e-7 * shape.widthS) break;
   }
   const top = binAt(w, x, peakS);

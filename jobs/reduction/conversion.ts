@@ -3,7 +3,7 @@ import { fitLocalPolynomial, interpolate, lowerBound } from '../numeric/local-po
 import { fillTerms } from './baseline.ts';
 import type { Bell, Excess } from './excess.ts';
 import { TERMS } from './flank-sums.ts';
-import { type Smoothed, smoothExcess, valueAt } from './smooth.ts';
+import { type Smoothed, smoothSignal, valueAt } from './smooth.ts';
 import type { EventWindow } from './window.ts';
 
 /**
@@ -22,7 +22,7 @@ const SMOOTHING_HALF_WIDTH = 1 / 7;
 
 export function shapeEvent(w: EventWindow, x: Excess, { peakS, leftS, rightS }: Bell, responseS: number): EventShape {
   const widthS = leftS + rightS;
-  return { peakS, widthS, responseS, smoothed: smoothExcess(w, x, SMOOTHING_HALF_WIDTH * widthS) };
+  return { peakS, widthS, responseS, smoothed: smoothSignal(w.t, x.e, x.from, x.to, SMOOTHING_HALF_WIDTH * widthS) };
 }
 
 /** Signal freed of response and its slope at time t; `hint` is a bin near it. */

@@ -1,6 +1,6 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
 import type { ReducedEvent } from '../../schema/wire/reduced.ts';
-import type { SelfHeating } from './self-heating.ts';
+import { type SelfHeating, WARMING_ERROR_PART } from './self-heating.ts';
 
 export const FEW_POINTS = 20;
 export const TOO_FEW_POINTS = 8;
@@ -19,6 +19,8 @@ export interface Judged {
   lagK: number;
   responseUnknown: boolean;
   selfHeating?: SelfHeating;
+  /** What the event warms its sample by at the peak, K; its temperatures hold that already */
+  warmingK: number;
   glassOverlap: boolean;
   meltingOverlap: boolean;
   knownArea: boolean;
@@ -89,7 +91,7 @@ export function judgeEvent(e: ReducedEvent, about: Judged, where: object): Flag[
     const out = heating.number > SELF_HEATING.out ? '; above 1 the event stays out of the kinetics' : '';
     tell(
       'self-heating',
-      `The event warms its own sample: S is ${heating.number.toPrecision(2)} (it matters above ${SELF_HEATING.told}${out}).`,
+      `The event warms its own sample: S is ${heating.number.toPrecision(2)} (it matters above ${SELF_HEATING.told}${out}). Its temperatures are raised by what it warms, ${about.warmingK.toPrecision(2)} K at the peak, which is known to ${100 * WARMING_ERROR_PART} %.`,
       'Use less mass or a lower rate.',
     );
   }

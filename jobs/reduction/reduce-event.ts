@@ -2,7 +2,15 @@ import { flag } from '../../schema/wire/flags.ts';
 import { CONVERSION_GRID, type ReducedEvent, type Segment } from '../../schema/wire/reduced.ts';
 import { lowerBound } from '../numeric/local-polynomial.ts';
 import { findLandmarks, type Landmarks } from './characteristic.ts';
-import { baselineError, conversionOfTime, shapeEvent, temperatureAt, timesOfGrid } from './conversion.ts';
+import {
+  baselineError,
+  binAt,
+  conversionOfTime,
+  shapeEvent,
+  temperatureAt,
+  timesOfGrid,
+  trueSignal,
+} from './conversion.ts';
 import { makeCurve, type Programme } from './curve.ts';
 import { FEW_POINTS, judgeEvent, TOO_FEW_POINTS } from './event-flags.ts';
 import { type Room, widthOf } from './event-limits.ts';
@@ -11,12 +19,15 @@ import type { GlassTransition } from './glass-transition.ts';
 import type { Isolated } from './isolate.ts';
 import { eventRate } from './rate.ts';
 import type { ScanContext } from './scan-context.ts';
-import { type SelfHeating, selfHeatingOf } from './self-heating.ts';
+import { type SelfHeating, selfHeatingOf, warmingOf } from './self-heating.ts';
 import { separateEvents } from './separate-events.ts';
+import { undoResponse } from './undo-response.ts';
 import { averageWindow, type EventWindow } from './window.ts';
 
 /** Half width of the surroundings that are looked at, full widths: limits and the longest flanks fit in. */
 const SURROUNDINGS = { before: 8, behind: 7 };
+/** From this part of the measured width on a response is undone before limits are set: its tail is longer than the event's own. */
+const UNDONE_FIRST = 0.3;
 const USABLE = { glass: 0.1, melting: 0.8 };
 
 export interface Shown {
@@ -42,8 +53,10 @@ export function reduceEvents(
   const [begin, last] = [bells[0], bells[bells.length - 1]];
   const from = Math.max(segment.from, lowerBound(timeS, begin.peakS - SURROUNDINGS.before * width));
   const to = Math.min(segment.to, lowerBound(timeS, last.peakS + SURROUNDINGS.behind * width));
-  const w = averageWindow(timeS, c.scan.temperatureK, c.y, from, to, width, c.noise);
-  const separated = separateEvents(w, bells, room);
+  const measured = averageWindow(timeS, c.scan.temperatureK, c.y, from, to, width, c.noise);
+  const undone = room.responseS > UNDONE_FIRST * width;
+  const w = undone ? undoResponse(measured, room.responseS, width) : measured;
+  const separated = separateEvents(w, bells, undone ? { ...room, responseS: 0 } : room);
   if ('cut' in separated) {
     const events = bells.map((bell, i) => cutEvent(c, w, segment, bell, separated.cut, first + i));
     return { events };
@@ -71,13 +84,14 @@ function completeEvent(
   const { input, scan } = c;
   const { calibration } = input;
   const where = { ...c.where, event: number };
-  const responseS = Math.max(0, calibration.responseS ?? 0);
+  const responseS = Math.max(0, calibration.responseS ?? 0) - w.undoneS;
   const bell = isolated.bells[index];
   const shape = shapeEvent(w, x, bell, responseS);
   const marks = findLandmarks(w, x, shape);
   const rate = eventRate(c, marks, segment, where);
   const shiftK = c.shiftAt(rate, temperatureAt(w, marks.peakS, shape.widthS / 10));
   const T = (t: number) => temperatureAt(w, t, shape.widthS / 10) + shiftK;
+  const warming = warmingOf(c, w, x, shape);
   const perSecond = 1 / ((w.t[1] - w.t[0]) / w.binSize);
   const points = Math.round(marks.widthS * perSecond);
   const times = timesOfGrid(w, x, conversionOfTime(w, x, shape), shape.peakS);
@@ -86,6 +100,11 @@ function completeEvent(
     return x.share ? partOf(moved, x.share, w) : moved;
   };
   const baseline = baselineError(w, x, shape, times, refit);
+  const tail = isolated.meltingOverlap && room.knownArea === undefined ? HIDDEN_TAIL_PART * x.area : 0;
+  const error = baseline.error.map((s, k) => {
+    const hidden = (tail * CONVERSION_GRID[k]) / trueSignal(w, shape, times[k], binAt(w, x, times[k])).value;
+    return Math.hypot(Math.hypot(s, hidden) * Math.abs(rate), warming.part * warming.at(times[k]));
+  });
   const stepK = Math.abs(rate) / perSecond;
   const binS = w.t[1] - w.t[0];
   const event: ReducedEvent = {
@@ -93,16 +112,20 @@ function completeEvent(
     kind: segment.kind,
     rateKPerS: rate,
     onsetK: T(marks.onsetS),
-    peakK: T(marks.peakS),
+    peakK: T(marks.peakS) + warming.at(marks.peakS),
     endK: T(marks.endS),
     widthK: marks.widthS * Math.abs(rate),
-    centroidK: T(marks.centroidS),
-    peakErrorK: Math.max(Math.abs(rate) * marks.peakErrorS, points < TOO_FEW_POINTS ? stepK / Math.sqrt(12) : 0),
+    centroidK: T(marks.centroidS) + warming.mean,
+    peakErrorK: Math.hypot(
+      Math.max(Math.abs(rate) * marks.peakErrorS, points < TOO_FEW_POINTS ? stepK / Math.sqrt(12) : 0),
+      warming.part * warming.at(marks.peakS),
+    ),
     area: x.area,
     areaError: Math.hypot(
       baseline.areaError,
       w.noise * Math.sqrt((x.to - x.from) * binS ** 2),
       separationError(x),
+      tail,
       isolated.together?.areaError ?? 0,
     ),
     usableFrom: isolated.glassOverlap ? USABLE.glass : CONVERSION_GRID[0],
@@ -114,9 +137,8 @@ function completeEvent(
   if (scan.heatFlowUnit === 'W/kg') event.enthalpyJPerKg = x.area;
   else if (c.massKg) event.enthalpyJPerKg = x.area / c.massKg;
   let selfHeating: SelfHeating | undefined;
-  const error = baseline.error.map((s) => s * Math.abs(rate));
   if (points >= FEW_POINTS && x.area > 5 * event.areaError) {
-    event.curve = makeCurve(c, w, x, shape, times, T, error, programme, shiftK);
+    event.curve = makeCurve(c, w, x, shape, times, (t) => T(t) + warming.at(t), error, programme, shiftK);
     if (segment.kind === 'heating') {
       const enthalpy = event.enthalpyJPerKg ?? input.crystallizationEnthalpyJPerKg;
       selfHeating = selfHeatingOf(c, event.curve, marks.height, enthalpy);
@@ -131,6 +153,7 @@ function completeEvent(
         lagK: calibration.lagS * rate,
         responseUnknown: calibration.responseS === undefined,
         ...(selfHeating && { selfHeating }),
+        warmingK: warming.at(marks.peakS),
         glassOverlap: isolated.glassOverlap,
         meltingOverlap: isolated.meltingOverlap,
         knownArea: room.knownArea !== undefined,
@@ -144,10 +167,13 @@ function completeEvent(
 
 /** Share of an area that the separation of overlapping events leaves open at least, from trials at one width apart (study `reduction`). */
 const SEPARATION_PART = 0.02;
-/** … and times what letting the shapes free moves it: events of other laws than JMAK are off by up to twice that. */
-const MOVED_AREAS = 2;
+/** … and this part of what letting the shapes free moves it by, from trials with two events of another law than JMAK. */
+const MOVED_AREAS = 0.4;
 const separationError = (x: Excess): number =>
   x.openPart === undefined ? 0 : Math.hypot(SEPARATION_PART, MOVED_AREAS * x.openPart) * x.area;
+
+/** What a JMAK-shaped tail behind the melting leaves open of the area (study `reduction`, melting one width above). */
+const HIDDEN_TAIL_PART = 0.01;
 
 /** The part of a refitted excess that belongs to one of several events. */
 function partOf(moved: Excess, share: Float64Array, w: EventWindow): Excess {

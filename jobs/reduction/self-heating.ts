@@ -1,11 +1,17 @@
 import { CONVERSION_GRID, type ReducedCurve } from '../../schema/wire/reduced.ts';
+import { binAt, type EventShape, trueSignal } from './conversion.ts';
+import type { Excess } from './excess.ts';
 import type { ScanContext } from './scan-context.ts';
+import type { EventWindow } from './window.ts';
 
 /** J/(kg K), where the sheet gives none. */
 const ASSUMED_HEAT_CAPACITY = 500;
 /** Grid rows between which ln(−ln(1 − α)) of a JMAK event is straight in T: α = 0.2 and 0.7. */
 const [LOW, HIGH] = [19, 69];
 const TYPICAL_EXPONENT = 3;
+
+/** A standard's resistance holds for its own contact: for another sample it may be this part off. */
+export const WARMING_ERROR_PART = 0.3;
 
 export interface SelfHeating {
   /** Self-heating number */
@@ -41,5 +47,30 @@ export function selfHeatingOf(
     number: contactS * rise * Math.max(...curve.ratePerS) * steepness,
     bound: true,
     heatCapacityAssumed: input.heatCapacityJPerKgK === undefined,
+  };
+}
+
+/** What an event warms its sample by, K; all 0 where the thermal resistance is not known. */
+export interface Warming {
+  at: (t: number) => number;
+  /** over the event, weighted by its heat flow */
+  mean: number;
+  /** standard error, part of it */
+  part: number;
+}
+
+/**
+ * The sample is R_th φ warmer than its programme says while an event gives off φ. At the top φ is stationary, so that the heating rate there
+ * is the programme's and Kissinger's condition holds at this temperature.
+ */
+export function warmingOf({ input, scan }: ScanContext, w: EventWindow, x: Excess, shape: EventShape): Warming {
+  const resistance = scan.heatFlowUnit === 'W/kg' ? 0 : (input.calibration.resistanceKPerW ?? 0);
+  if (!(resistance > 0)) return { at: () => 0, mean: 0, part: 0 };
+  let squares = 0;
+  for (let i = x.from + 1; i < x.to; i++) squares += (w.t[i] - w.t[i - 1]) * x.e[i] ** 2;
+  return {
+    at: (t) => resistance * Math.max(0, trueSignal(w, shape, t, binAt(w, x, t)).value),
+    mean: (resistance * squares) / x.area,
+    part: WARMING_ERROR_PART,
   };
 }

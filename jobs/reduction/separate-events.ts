@@ -13,7 +13,7 @@ const LEAST_SHARE = 0.08;
 
 /** … and for a glass transition under it where it is missed by this much. */
 const STEP_MISFIT_PART = 0.006;
-/** A bump before an event, lower than this part of it, may be the liquid between its glass transition and itself. */
+/** A bump lower than this part of an event may be baseline, or the liquid between a glass transition and the event. */
 const BUMP_PART = 0.3;
 /** What noise adds to a misfit, errors of a bin. */
 const MISFIT_SIGMAS = 1.2;
@@ -34,7 +34,7 @@ export function separateEvents(w: EventWindow, bells: Bell[], room: Room): Separ
     const stepped = bump ? aboveStep(w, second, room) : undefined;
     if (stepped) return stepped;
     const isolated = isolateEvents(w, bells, room, byPeaks);
-    if ('cut' in isolated) return isolated;
+    if ('cut' in isolated) return withoutBumps(w, bells, room) ?? isolated;
     return { isolated, parts: partExcess(w, isolated.excess, separation!) };
   }
   const isolated = isolateEvents(w, bells, room);
@@ -63,6 +63,14 @@ export function separateEvents(w: EventWindow, bells: Bell[], room: Room): Separ
   const both = isolateEvents(w, peaks, room, byPeaks);
   if ('cut' in both || !separation) return alone;
   return { isolated: both, parts: partExcess(w, both.excess, separation) };
+}
+
+/** The highest of several bells alone, where the others are bumps of the baseline. */
+function withoutBumps(w: EventWindow, bells: Bell[], room: Room): Separated | undefined {
+  const [highest, second] = [...bells].sort((a, b) => b.height - a.height);
+  if (second.height > BUMP_PART * highest.height) return undefined;
+  const alone = separateEvents(w, [highest], room);
+  return 'cut' in alone ? undefined : alone;
 }
 
 /** Where a flank of full length before the event would begin, s. */

@@ -15,8 +15,10 @@ import {
 import { type Bell, type Excess, halfWidths } from './excess.ts';
 import type { EventWindow } from './window.ts';
 
-/** One peak's tail is free to m = 0 ± this. Of several it is first held near JMAK, so that a shoulder does not take any shape it likes. */
-const TAIL_SPREAD = { held: 0.1, free: 0.3 };
+/** Tails are free to m = 0 ± this … */
+const TAIL_SPREAD = 0.3;
+/** … but those of several are first held at JMAK by this weight, so that a shoulder does not take any shape it likes. */
+const HELD = 1;
 /** A fitted shape is not trusted below this part of the height, however quiet the signal. */
 const SHAPE_ERROR = 0.003;
 const PER_PEAK = 4;
@@ -27,7 +29,7 @@ export interface Separation {
   /** fitted heat flow of each peak on the bins of the window, signal units, in order of time */
   values: Float64Array[];
   bells: Bell[];
-  /** How far each area moves, as a part of it, when the tails are let free: what the choice of shape leaves open */
+  /** How far each area moves, as a part of it, from the JMAK shape to the free one */
   open: number[];
   /** root mean square residual, signal units */
   residual: number;
@@ -118,10 +120,10 @@ function fitPeaks(w: EventWindow, x: Excess, start: Bell[], startS: number | und
   const scale = scaleOf(parameters, count);
   let held = parameters;
   if (count > 1) {
-    pull = error / TAIL_SPREAD.held;
+    pull = HELD;
     held = fit.minimise(parameters, scale, 60, 1e-3).parameters;
   }
-  pull = error / TAIL_SPREAD.free;
+  pull = error / TAIL_SPREAD;
   const found = fit.minimise(held, scale, 60, count > 1 ? 1e-5 : 1e-3);
   const q = found.parameters;
   if (!q.every(Number.isFinite)) return undefined;

@@ -1,5 +1,4 @@
 import { fitLocalPolynomial } from '../numeric/local-polynomial.ts';
-import type { Excess } from './excess.ts';
 import type { EventWindow } from './window.ts';
 
 /** Value, slope and curvature of a signal on the bins of a window, from local cubics. */
@@ -19,27 +18,26 @@ const EVEN = 1e-3;
  * Local cubics through the bins within ± half of each bin [from, to) (Savitzky & Golay 1964). On even bins one set of weights serves all
  * of them; on uneven ones, and at the ends, each bin has its own fit.
  */
-export function smoothExcess(w: EventWindow, x: Excess, half: number): Smoothed {
-  const n = w.t.length;
+export function smoothSignal(t: Float64Array, e: Float64Array, from: number, to: number, half: number): Smoothed {
+  const n = t.length;
   const out = { value: new Float64Array(n), slope: new Float64Array(n), curvature: new Float64Array(n) };
-  const step = (w.t[n - 1] - w.t[0]) / (n - 1);
+  const step = (t[n - 1] - t[0]) / (n - 1);
   const m = Math.floor(half / step + 1e-9);
-  const weights = m >= 2 && isEven(w.t, step) ? cubicWeights(m, step) : undefined;
-  const { e } = x;
-  for (let i = x.from; i < x.to; i++) {
+  const weights = m >= 2 && isEven(t, step) ? cubicWeights(m, step) : undefined;
+  for (let i = from; i < to; i++) {
     if (weights && i >= m && i + m < n) {
       out.value[i] = weigh(weights.value, e, i - m);
       out.slope[i] = weigh(weights.slope, e, i - m);
       out.curvature[i] = weigh(weights.curvature, e, i - m);
     } else {
-      const f = fitLocalPolynomial(w.t, x.e, w.t[i], half, 3, i);
+      const f = fitLocalPolynomial(t, e, t[i], half, 3, i);
       out.value[i] = f.value;
       out.slope[i] = f.slope;
       out.curvature[i] = f.curvature;
     }
   }
-  const middle = Math.min(n - 1, (x.from + x.to) >> 1);
-  const { valueNoise, slopeNoise } = fitLocalPolynomial(w.t, x.e, w.t[middle], half, 3, middle);
+  const middle = Math.min(n - 1, (from + to) >> 1);
+  const { valueNoise, slopeNoise } = fitLocalPolynomial(t, e, t[middle], half, 3, middle);
   return { ...out, valueNoise, slopeNoise };
 }
 

@@ -42,7 +42,7 @@ const MOST_ROWS = 300;
 /** What is fitted, widths before and behind the peak. */
 const REACH = { before: 6, behind: 4 };
 /** Middles tried, half widths of the left side before the peak, and spreads of the step, widths. */
-const MIDDLES = { from: -4.5, to: -0.35, step: 0.1 };
+const MIDDLES = { from: -4.5, to: -0.8, step: 0.1 };
 const SPREADS = [0.06, 0.12, 0.25];
 /** A real event is not quite of these shapes: this part of its height counts as noise. */
 const SHAPE_ERROR = 0.002;
@@ -54,6 +54,9 @@ const LEAST_GAIN = 12;
 const MISFIT_LEFT = 0.4;
 const LEAST_HEIGHT_PART = 0.01;
 const LEAST_SIGMAS = 7;
+/** Nearer to the peak, or broader than this, widths, a step only mends a shape that is none of the family. */
+const NEAREST = -0.6;
+const BROADEST = 0.25;
 
 /** @param bell rough, of the one event there is   @returns undefined where no step is needed, or none is found */
 export function fitStepUnderEvent(w: EventWindow, bell: Bell, room: Room): StepUnderEvent | undefined {
@@ -90,7 +93,7 @@ export function fitStepUnderEvent(w: EventWindow, bell: Bell, room: Room): StepU
     return undefined;
   const middleS = bell.peakS + q[MIDDLE] * width;
   const scaleS = Math.exp(q[SPREAD]) * width;
-  if (middleS - 2 * scaleS < rows.t[0] || middleS > bell.peakS) return undefined;
+  if (middleS - 2 * scaleS < rows.t[0] || q[MIDDLE] > NEAREST || scaleS > BROADEST * width) return undefined;
   const h = bell.height;
   const coefficients = new Float64Array(TERMS);
   const covarianceOfTerms = new Float64Array(TERMS * TERMS);
@@ -240,5 +243,12 @@ function coarser(w: EventWindow, from: number, to: number): EventWindow {
       for (let i = from + r * size; i < from + (r + 1) * size; i++) sum += column[i];
       return sum / size;
     });
-  return { t: mean(w.t), T: mean(w.T), y: mean(w.y), noise: w.noise / Math.sqrt(size), binSize: w.binSize * size };
+  return {
+    t: mean(w.t),
+    T: mean(w.T),
+    y: mean(w.y),
+    noise: w.noise / Math.sqrt(size),
+    binSize: w.binSize * size,
+    undoneS: w.undoneS,
+  };
 }

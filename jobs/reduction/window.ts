@@ -10,6 +10,8 @@ export interface EventWindow {
   noise: number;
   /** file rows a bin */
   binSize: number;
+  /** First-order response that y has been freed of already, s */
+  undoneS: number;
 }
 
 /** Bins over the full width at half maximum: the averaging error is then about 2e-5 of the height. */
@@ -45,5 +47,5 @@ export function averageWindow(
     out.T[b] = sT / size;
     out.y[b] = sy / size;
   }
-  return { ...out, noise: rowNoise / Math.sqrt(size), binSize: size };
+  return { ...out, noise: rowNoise / Math.sqrt(size), binSize: size, undoneS: 0 };
 }

@@ -28,7 +28,8 @@ export function reduceModel(model: ScanModel, as: RecordedAs, random: Random): R
     source: 'sheet',
     offsetK: instrument.offsetK,
     offsetSeK: 0.1,
-    lagS: instrument.shiftS + instrument.responseS,
+    // Standards feel the contact as well: it delays an onset like the rest of the shift.
+    lagS: instrument.shiftS + instrument.responseS + (selfHeating?.contactS ?? 0),
     lagSeS: 0.05 * instrument.shiftS,
     responseS: instrument.responseS,
     standards: 0,
