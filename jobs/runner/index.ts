@@ -11,6 +11,8 @@ export { keepHouse, keepHouseHourly } from './housekeeping.ts';
 const POLL_MS = 500;
 const SWEEP_EVERY_MS = LEASE_MS / 2;
 const HEARTBEAT_MS = LEASE_MS / 3;
+/** Longest rest after claims that failed in a row: stores that are out of reach are asked ever less often. */
+const LONGEST_REST_MS = 10_000;
 /** How long a stop waits for jobs in flight before they are handed back. */
 const GRACE_MS = 10_000;
 
@@ -100,13 +102,18 @@ export function createRunner(ports: Ports, { concurrency, owner, observer }: Run
   }
 
   async function loop(): Promise<void> {
-    while (!stopping.signal.aborted) {
+    for (let failures = 0; !stopping.signal.aborted; ) {
+      const before = failures;
       const took = await fill().catch((error) => {
-        observer?.trouble('no job could be claimed', error);
+        failures++;
+        // Told at the 1st, 2nd, 4th, 8th … in a row: a store that is gone for days must not fill the disk with its log.
+        if ((failures & (failures - 1)) === 0)
+          observer?.trouble(`no job could be claimed, ${failures} times in a row`, error);
         return false;
       });
+      if (failures === before) failures = 0;
       if (took && inFlight.size < concurrency) continue;
-      await rest(POLL_MS);
+      await rest(Math.min(LONGEST_REST_MS, POLL_MS * 2 ** failures));
     }
   }
 

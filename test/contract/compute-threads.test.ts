@@ -1,4 +1,4 @@
-import { mkdtemp, rm, writeFile } from 'node:fs/promises';
+import { mkdtemp, readFile, rm, writeFile } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, expect, it } from 'vitest';
@@ -35,6 +35,29 @@ it('a replacement that cannot load its file ends every task with the reason, ins
   await expect(threads.readScan(new Uint8Array(1), 'a.txt')).rejects.toThrow(/exited with code: 3/);
   const message = () => threads.readScan(new Uint8Array(1), 'a.txt').catch((error: Error) => error.message);
   await expect.poll(message).toMatch(/cannot load .*vanishing\.mjs.*half an update/);
+  await threads.close();
+});
+
+it('threads that can never load again are given up after a few starts, whatever is asked of them', async () => {
+  const [gone, starts] = [join(folder, 'gone-for-good'), join(folder, 'starts')];
+  const path = await threadFile(
+    'counted.mjs',
+    `import { appendFileSync, existsSync } from 'node:fs';
+    appendFileSync(${JSON.stringify(starts)}, 'x');
+    if (existsSync(${JSON.stringify(gone)})) throw new Error('half an update');
+    export const ready = () => true;
+    export const readScan = () => process.exit(3);`,
+  );
+  const threads = await openComputeThreads(2, path);
+  await writeFile(gone, '');
+  const asked: Promise<unknown>[] = [];
+  for (let n = 0; n < 40; n++) {
+    asked.push(threads.readScan(new Uint8Array(1), 'a.txt').catch((error) => error));
+    await new Promise((resolve) => setTimeout(resolve, 25));
+  }
+  expect((await Promise.all(asked)).every((answer) => answer instanceof Error)).toBe(true);
+  // Two at the start; each that died at a task or at loading, and those under way when the pool was given up.
+  expect((await readFile(starts, 'utf8')).length).toBeLessThanOrEqual(8);
   await threads.close();
 });
 

@@ -5,7 +5,7 @@ import { makeZip } from '../instrument/zip-file.ts';
 const bytesOf = (text: string) => new TextEncoder().encode(text);
 
 /** Every kind of file once: sheets, scans, an archive, a file that is refused, the same bytes twice, a path sent twice. */
-const FILES: readonly (readonly [string, Uint8Array])[] = [
+export const FILES: readonly (readonly [string, Uint8Array])[] = [
   ['instruments.csv', bytesOf('instrument,kind,offset [K]\noven,furnace,0.5\n')],
   [
     'scans.csv',

@@ -2,6 +2,7 @@ import { readdir, truncate } from 'node:fs/promises';
 import { join } from 'node:path';
 import { eq, sql } from 'drizzle-orm';
 import { afterEach, beforeEach, describe, expect, test } from 'vitest';
+import { createObserver } from '../../jobs/adapters/observer.ts';
 import type { JobEvent, Ports } from '../../jobs/ports/index.ts';
 import { createRunner, keepHouse } from '../../jobs/runner/index.ts';
 import { createCampaign, deleteCampaign, receiveFile, refitCampaign } from '../../jobs/store/index.ts';
@@ -210,4 +211,29 @@ test('housekeeping deletes blobs that nothing names once they are a day old, and
   expect(await allTables(ports, id)).toBe(expected);
   await deleteCampaign(ports, id);
   expect(await keysNow()).toEqual([]);
+});
+
+test('a database out of reach for a day is asked ever less often and fills no log', async () => {
+  let [asked, told] = [0, 0];
+  const gone = {
+    ...ports.database,
+    write: () => {
+      asked++;
+      return Promise.reject(coded('ECONNREFUSED'));
+    },
+  };
+  // No wake-up is heard, so that every rest is on the clock of the test.
+  const queue = { wake: async () => undefined };
+  const observer = { ...createObserver(() => undefined), trouble: () => void told++ };
+  const runner = createRunner({ ...ports, database: gone, queue }, { concurrency: 2, owner: 'test', observer });
+  runner.start();
+  for (let passed = 0; passed < 86_400_000; passed += 10_000) {
+    await new Promise((resolve) => setImmediate(resolve));
+    ports.clock.advance(10_000);
+  }
+  await runner.stop();
+  expect(asked).toBeGreaterThan(1_000);
+  // Once every ten seconds, and a line at each doubling.
+  expect(asked).toBeLessThan(8_700);
+  expect(told).toBeLessThan(15);
 });

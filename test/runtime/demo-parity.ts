@@ -4,10 +4,12 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { setTimeout as sleep } from 'node:timers/promises';
 import { closePorts, openNodePorts } from '../../jobs/adapters/node-ports.ts';
+import { createObserver } from '../../jobs/adapters/observer.ts';
 import { createRunner } from '../../jobs/runner/index.ts';
 import { buildDemoCampaign } from '../../jobs/simulate/index.ts';
 import { createCampaign, readTable, receiveFile } from '../../jobs/store/index.ts';
 import { csvTable } from '../../schema/wire/result-tables.ts';
+import { openHeapGauge } from './isolate-heap.ts';
 import { startRuntime } from './start-runtime.ts';
 
 export interface DemoParity {
@@ -19,6 +21,10 @@ export interface DemoParity {
   /** Resident memory of the runtime before the first request and at its highest, MB. */
   idleMb: number;
   peakMb: number;
+  /** Memory of the program's isolate alone, MB: before the first file, and the most seen of what is in use and of what is held, buffers included. */
+  isolate: { idleMb: number; usedMb: number; heldMb: number; looks: number };
+  /** CPU time of a step on Node with one job at a time, mean and longest, ms: claim, step and write-back. */
+  nodeCpu: { step: string; meanMs: number; longestMs: number }[];
   /** CPU time of the runtime over the whole campaign, s. */
   cpuS: number;
   /** Requests to the database. */
@@ -28,8 +34,8 @@ export interface DemoParity {
 /** The whole demo campaign through the real serverless runtime and through Node. */
 export async function compareHomes(limitS: number): Promise<DemoParity> {
   const { files } = buildDemoCampaign();
-  const node = await tableOfNode(files);
-  const runtime = await startRuntime();
+  const { table: node, cpu: nodeCpu } = await runOnNode(files);
+  const runtime = await startRuntime({ inspect: true });
   try {
     const authorization = `Bearer ${runtime.token}`;
     const ask = (method: string, path: string, body?: BodyInit, type?: string) =>
@@ -42,6 +48,7 @@ export async function compareHomes(limitS: number): Promise<DemoParity> {
     const pids = runtimeProcesses();
     const idleMb = residentMb(pids);
     const idleCpuS = cpuSeconds(pids);
+    const heap = await watchHeap(runtime.inspector as URL);
     const made = await ask('POST', '/v1/campaigns', '{"name":"demo"}', 'application/json');
     const { id } = (await made.json()) as { id: string };
     let peakMb = idleMb;
@@ -85,7 +92,9 @@ export async function compareHomes(limitS: number): Promise<DemoParity> {
       };
     });
     const cpuS = cpuSeconds(pids) - idleCpuS;
-    return { node, serverless, steps, idleMb, peakMb, cpuS, databaseRequests: runtime.bridge.requests };
+    const isolate = await heap.stop();
+    const databaseRequests = runtime.bridge.requests;
+    return { node, serverless, steps, idleMb, peakMb, isolate, nodeCpu, cpuS, databaseRequests };
   } finally {
     await runtime.close();
   }
@@ -124,16 +133,60 @@ export function compareTables(one: string, other: string): TableDifference {
   return found;
 }
 
-async function tableOfNode(files: readonly { path: string; bytes: Uint8Array }[]): Promise<string> {
+const LOOK_EVERY_MS = 20;
+
+/** Looks at the memory of an isolate between its tasks until stopped. What a step has used and not yet freed is in it. */
+async function watchHeap(inspector: URL): Promise<{ stop(): Promise<DemoParity['isolate']> }> {
+  const gauge = await openHeapGauge(inspector);
+  const idle = await gauge.read();
+  const found = { idleMb: idle.usedMb + idle.buffersMb, usedMb: 0, heldMb: 0, looks: 0 };
+  let over = false;
+  const looking = (async () => {
+    while (!over) {
+      const { usedMb, heapMb, buffersMb } = await gauge.read();
+      found.usedMb = Math.max(found.usedMb, usedMb + buffersMb);
+      found.heldMb = Math.max(found.heldMb, heapMb + buffersMb);
+      found.looks++;
+      await sleep(LOOK_EVERY_MS);
+    }
+  })();
+  // Told by `stop`: where something else failed first, the closed runtime must not hide it.
+  looking.catch(() => undefined);
+  return {
+    async stop() {
+      over = true;
+      await looking;
+      gauge.close();
+      return found;
+    },
+  };
+}
+
+async function runOnNode(
+  files: readonly { path: string; bytes: Uint8Array }[],
+): Promise<{ table: string; cpu: DemoParity['nodeCpu'] }> {
   const dataDir = await mkdtemp(join(tmpdir(), 'ratespan-parity-'));
   const ports = await openNodePorts({ dataDir, workers: 0 });
   try {
     const { id } = await createCampaign(ports, 'demo');
     for (const { path, bytes } of files) await receiveFile(ports, id, path, bytes);
-    await createRunner(ports, { concurrency: 1, owner: 'parity' }).drain(id);
+    const spent = new Map<string, number[]>();
+    let before = process.cpuUsage();
+    const observer = createObserver(() => undefined);
+    observer.job = ({ step }) => {
+      const { user, system } = process.cpuUsage(before);
+      before = process.cpuUsage();
+      spent.set(step, [...(spent.get(step) ?? []), (user + system) / 1000]);
+    };
+    await createRunner(ports, { concurrency: 1, owner: 'parity', observer }).drain(id);
     const rows: Record<string, unknown>[] = [];
     for await (const row of readTable(ports, id, 'parameters')) rows.push(row);
-    return csvTable('parameters', rows);
+    const cpu = [...spent].map(([step, ms]) => ({
+      step,
+      meanMs: ms.reduce((a, b) => a + b, 0) / ms.length,
+      longestMs: Math.max(...ms),
+    }));
+    return { table: csvTable('parameters', rows), cpu };
   } finally {
     await closePorts(ports);
     await rm(dataDir, { recursive: true, force: true });

@@ -12,6 +12,9 @@ export interface HranaBridge {
   url: string;
   /** Requests whose text this matches are cut off without an answer, as by a server that is gone. */
   cut?: RegExp;
+  /** Takes no connection any more, and takes them again under the same address. */
+  pause(): Promise<void>;
+  resume(): Promise<void>;
   /** Requests answered so far. */
   requests: number;
   close(): Promise<void>;
@@ -170,19 +173,24 @@ export async function startHranaBridge(file: string, token: string): Promise<Hra
       return send(400, failureOf(error));
     }
   });
-  await new Promise<void>((resolve) => server.listen(0, '127.0.0.1', resolve));
+  const listen = (on: number) => new Promise<void>((resolve) => server.listen(on, '127.0.0.1', resolve));
+  await listen(0);
+  const { port } = server.address() as AddressInfo;
+  const pause = () =>
+    new Promise<void>((resolve) => {
+      server.close(() => resolve());
+      server.closeAllConnections();
+    });
   const bridge: HranaBridge = {
-    url: `http://127.0.0.1:${(server.address() as AddressInfo).port}`,
+    url: `http://127.0.0.1:${port}`,
     requests: 0,
-    close: () =>
-      new Promise((resolve) => {
-        clearTimeout(idle);
-        server.closeAllConnections();
-        server.close(() => {
-          db.close();
-          resolve();
-        });
-      }),
+    pause,
+    resume: () => listen(port),
+    close: async () => {
+      clearTimeout(idle);
+      await pause();
+      db.close();
+    },
   };
   return bridge;
 }

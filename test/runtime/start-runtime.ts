@@ -35,6 +35,8 @@ export interface Runtime {
   bridge: HranaBridge;
   /** A keeper's token. */
   token: string;
+  /** Inspector of the isolate of the program, apart from those of the emulated bucket and queue. */
+  inspector?: URL;
   close(): Promise<void>;
 }
 
@@ -43,10 +45,12 @@ export interface RuntimeOptions {
   pagesDir?: string;
   /** 0 takes a free one. */
   port?: number;
+  /** Opens the inspector, which tells the memory of the program's own isolate. */
+  inspect?: boolean;
 }
 
 /** The program of api/worker.ts as deployed, in the real runtime, over a bucket, a queue and a libSQL server of its own. */
-export async function startRuntime({ pagesDir, port = 0 }: RuntimeOptions = {}): Promise<Runtime> {
+export async function startRuntime({ pagesDir, port = 0, inspect }: RuntimeOptions = {}): Promise<Runtime> {
   const root = new URL('../..', import.meta.url);
   const toml = await readFile(new URL('wrangler.toml', root), 'utf8');
   const setting = (name: string) => new RegExp(`^${name} = "(.+)"$`, 'm').exec(toml)?.[1] as string;
@@ -76,6 +80,7 @@ export async function startRuntime({ pagesDir, port = 0 }: RuntimeOptions = {}):
     host: '127.0.0.1',
     port,
     cf: false,
+    ...(inspect && { inspectorPort: 0 }),
     // Its log lines are not for the report of the tests.
     handleRuntimeStdio: (out: Readable, err: Readable) => {
       out.resume();
@@ -105,6 +110,7 @@ export async function startRuntime({ pagesDir, port = 0 }: RuntimeOptions = {}):
     database,
     bridge,
     token,
+    ...(inspect && { inspector: new URL('/core:user:', await miniflare.getInspectorURL()) }),
     close: async () => {
       await miniflare.dispose();
       database.close();

@@ -7,7 +7,7 @@ import { intervalsStudy } from './intervals.ts';
 import { laboratoriesStudy } from './laboratories.ts';
 import { largeScanStudy } from './large-scan.ts';
 import { mutatedFilesStudy } from './mutated-files.ts';
-import { crashStudy, serverlessStudy, soakStudy } from './operation.ts';
+import { crashStudy, outageStudy, serverlessStudy, soakStudy } from './operation.ts';
 import { packageStudy } from './package.ts';
 import { reductionStudy } from './reduction.ts';
 import { requestsStudy } from './requests.ts';
@@ -48,6 +48,10 @@ export const STUDIES: Record<string, { about: string; run: Study }> = {
     about:
       '8 senders, 3 workers with clocks apart, one killed every few seconds, odd deliveries: --count campaigns of 50 scans',
     run: soakStudy,
+  },
+  outage: {
+    about: 'a remote database gone for --count seconds (60) while files arrive and workers compute',
+    run: outageStudy,
   },
   footprint: {
     about: 'start-up and memory of the built serve, empty and with --count scans (10 000) in the database',

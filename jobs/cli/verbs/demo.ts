@@ -1,11 +1,13 @@
 import { mkdir, open, readFile, rm, writeFile } from 'node:fs/promises';
 import { dirname, join } from 'node:path';
+import { FORECAST_CAUTION } from '../../../schema/wire/forecasts.ts';
 import { buildDemoCampaign, type DemoCampaign } from '../../simulate/index.ts';
 import type { ResultRow } from '../../store/index.ts';
 import { wholeNumber } from '../arguments.ts';
 import { listCampaignFolder } from '../campaign-folder.ts';
 import { Client } from '../client.ts';
 import { compareWithTruth } from '../demo-check.ts';
+import { compareGoals } from '../demo-goals-check.ts';
 import { dataFolder } from '../environment.ts';
 import { EXIT } from '../exit.ts';
 import { followCampaign } from '../follow.ts';
@@ -59,7 +61,7 @@ async function sendAndCompare(
   const campaign = await client.openCampaign(CAMPAIGN);
   const { refused } = await sendFolder(client, campaign, await listCampaignFolder(folder), terminal);
   const status = await followCampaign(() => client.status(campaign), terminal);
-  const collect = async (table: 'parameters' | 'flags' | 'gaps'): Promise<ResultRow[]> => {
+  const collect = async (table: 'parameters' | 'flags' | 'gaps' | 'forecasts'): Promise<ResultRow[]> => {
     const rows: ResultRow[] = [];
     for await (const row of client.rows(campaign, table)) rows.push(row);
     return rows;
@@ -69,11 +71,14 @@ async function sendAndCompare(
     flags: await collect('flags'),
     gaps: await collect('gaps'),
   });
+  const goals = compareGoals(demoCampaign.goals, await collect('forecasts'));
   terminal.out(`\nSYNTHETIC data: three invented materials on three invented instruments, truth known\n\n${text}`);
+  terminal.out(`\n${goals.text}${FORECAST_CAUTION}\n`);
   return [
     ...refused.map(({ file, reason }) => `${file} was refused: ${reason}`),
     ...(status.jobs.failed > 0 ? [`${status.jobs.failed} jobs failed`] : []),
     ...failures,
+    ...goals.failures,
   ];
 }
 
@@ -103,7 +108,9 @@ async function takeStore(home: string): Promise<DemoStore> {
     if (holder > 0 && isAlive(holder)) continue;
     await rm(mark, { force: true });
     // `wx` fails when another demo was quicker.
-    const file = await open(mark, 'wx').catch(() => undefined);
+    const file = await open(mark, 'wx').catch((error: NodeJS.ErrnoException) => {
+      if (error.code !== 'EEXIST') throw error;
+    });
     if (!file) continue;
     await file.writeFile(String(process.pid));
     await file.close();
