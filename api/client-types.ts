@@ -181,6 +181,7 @@ export interface ForecastsRow {
   goal: 'met' | 'not_met' | 'cannot_say' | '';
   beyond_measured_decades: number;
   detail: string;
+  caution: string;
 }
 
 export interface AdviceRow {
@@ -195,6 +196,7 @@ export interface AdviceRow {
   unit: '1' | 'kJ/mol' | 'decades';
   scans_to_half: number | null;
   sentence: string;
+  caution: string;
 }
 
 export interface FlagsRow {
@@ -228,6 +230,7 @@ export interface ForecastAnswer {
     goal: 'met' | 'not_met' | 'cannot_say' | '';
     beyond_measured_decades: number;
     detail: string;
+    caution: string;
   }[];
   /** Stands on every forecast. */
   caution: string;

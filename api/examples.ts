@@ -124,6 +124,7 @@ const ROWS: Record<ResultTable, Record<string, unknown>> = {
     goal: '',
     beyond_measured_decades: 3.83,
     detail: 'At least 2.64 days, most likely 2.9 days, at most 3.2 days.',
+    caution: FORECAST_CAUTION,
   },
   advice: {
     sample: 'ribbon',
@@ -137,6 +138,7 @@ const ROWS: Record<ResultTable, Record<string, unknown>> = {
     unit: 'kJ/mol',
     scans_to_half: null,
     sentence: 'One more scan at 0.0167 K/s (1 K/min) on furnace-east widens the rates downwards by a factor of 2.',
+    caution: FORECAST_CAUTION,
   },
   coverage: {
     sample: 'ribbon',

@@ -114,6 +114,7 @@ export const ROW_SHAPES = {
     goal: z.enum(['met', 'not_met', 'cannot_say', '']),
     beyond_measured_decades: number,
     detail: text,
+    caution: text,
   }),
   advice: z.object({
     sample: text,
@@ -127,6 +128,7 @@ export const ROW_SHAPES = {
     unit: z.enum(['kJ/mol', '1', 'decades']),
     scans_to_half: maybeNumber,
     sentence: text,
+    caution: text,
   }),
   coverage: z.object({
     sample: text,

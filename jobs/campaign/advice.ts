@@ -1,4 +1,4 @@
-import type { AdviceRow } from '../../schema/wire/forecasts.ts';
+import { type AdviceRow, FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 import { collectEvent, distinctRates } from '../kinetics/event-data.ts';
 import { modelScatter } from '../kinetics/monte-carlo.ts';
@@ -47,6 +47,7 @@ export function adviseScans(input: AdviceInput): AdviceRow[] {
         unit,
         scans_to_half: scansToReach(width, w, 0.5),
         sentence: adviceSentence(goal.goal, w, { now: w.now, expected: w.expected, unit }, run),
+        caution: FORECAST_CAUTION,
       };
     });
   });

@@ -1,5 +1,11 @@
 import type { FlagCode } from '../../schema/wire/flags.ts';
-import type { ForecastQuestion, ForecastRow, ForecastSource, GoalAnswer } from '../../schema/wire/forecasts.ts';
+import {
+  FORECAST_CAUTION,
+  type ForecastQuestion,
+  type ForecastRow,
+  type ForecastSource,
+  type GoalAnswer,
+} from '../../schema/wire/forecasts.ts';
 import { celsiusFromKelvin } from '../../schema/wire/units.ts';
 import { type Band, bandOf, expFinite } from './band.ts';
 import { type Instances, instancesOf } from './instances.ts';
@@ -84,6 +90,7 @@ function answerBy(
     goal: judge(question, shown, limit),
     beyond_measured_decades: decades,
     detail: '',
+    caution: FORECAST_CAUTION,
   };
   if (row.conversion === null && limit.conversion !== undefined) row.conversion = limit.conversion;
   if (row.time_s === null && limit.timeS !== undefined) row.time_s = limit.timeS;

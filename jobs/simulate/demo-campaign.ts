@@ -1,6 +1,7 @@
 import type { FlagCode } from '../../schema/wire/flags.ts';
 import { GAS_CONSTANT, kelvinPerSecond } from '../../schema/wire/units.ts';
 import { createRandom, type Random } from '../numeric/random.ts';
+import { demoGoals, type GoalTruth, SEASONS_PATH, writeGoalSheet, writeSeasons } from './demo-goals.ts';
 import { CHIP_NORTH, type DemoInstrument, FURNACE_EAST, FURNACE_WEST } from './demo-instruments.ts';
 import { DEMO_EXCIPIENT, DEMO_FILM, DEMO_MATERIALS, DEMO_RIBBON, type DemoMaterial } from './demo-materials.ts';
 import { type DemoScanRow, writeInstrumentsSheet, writeSamplesSheet, writeScansSheet } from './demo-sheets.ts';
@@ -35,6 +36,8 @@ export interface DemoCampaign {
   files: { path: string; bytes: Uint8Array }[];
   truth: SampleTruth[];
   flaws: PlantedFlaw[];
+  /** Questions of its goal.csv */
+  goals: GoalTruth[];
 }
 
 interface DemoScan {
@@ -82,7 +85,7 @@ function planScans(): DemoScan[] {
   ];
 }
 
-/** Files, truth and planted flaws of the demo. The same on every call. */
+/** Files, truth, questions and planted flaws of the demo. The same on every call. */
 export function buildDemoCampaign(): DemoCampaign {
   const random = createRandom(SEED);
   const rows: DemoScanRow[] = [];
@@ -113,16 +116,20 @@ export function buildDemoCampaign(): DemoCampaign {
     }
     peaks.set(scan.material.sample, seen);
   }
+  const goals = demoGoals();
   const encode = (text: string): Uint8Array => new TextEncoder().encode(text);
   return {
     files: [
       { path: 'scans.csv', bytes: encode(writeScansSheet(rows)) },
       { path: 'instruments.csv', bytes: encode(writeInstrumentsSheet()) },
       { path: 'samples.csv', bytes: encode(writeSamplesSheet()) },
+      { path: 'goal.csv', bytes: encode(writeGoalSheet(goals)) },
+      { path: SEASONS_PATH, bytes: encode(writeSeasons()) },
       ...data,
     ],
     truth: DEMO_MATERIALS.map((material) => truthOf(material, peaks.get(material.sample)!)),
     flaws,
+    goals,
   };
 }
 

@@ -1,5 +1,6 @@
 export { type SimulatedConversion, simulateConversion } from './conversion.ts';
 export { buildDemoCampaign, type DemoCampaign, type PlantedFlaw, type SampleTruth } from './demo-campaign.ts';
+export type { GoalTruth } from './demo-goals.ts';
 export { followProgramme, linearRamp, type Programme } from './programme.ts';
 export {
   type ArrheniusLaw,

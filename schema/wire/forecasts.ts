@@ -25,6 +25,7 @@ export const FORECAST_TABLES = {
     'goal',
     'beyond_measured_decades',
     'detail',
+    'caution',
   ],
   advice: [
     'sample',
@@ -38,6 +39,7 @@ export const FORECAST_TABLES = {
     'unit',
     'scans_to_half',
     'sentence',
+    'caution',
   ],
 } as const satisfies Record<string, readonly string[]>;
 
@@ -141,6 +143,8 @@ export interface ForecastRow {
   /** Decades of rate coefficient between the forecast's temperature and the nearest measured one */
   beyond_measured_decades: number;
   detail: string;
+  /** FORECAST_CAUTION, so that a row taken out of its table keeps it */
+  caution: string;
 }
 
 /** One row of `peaks.csv`, SI. */
@@ -189,4 +193,5 @@ export interface AdviceRow {
   /** Scans like this one that are expected to halve the interval; null where no number within reach does */
   scans_to_half: number | null;
   sentence: string;
+  caution: string;
 }

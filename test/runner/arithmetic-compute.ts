@@ -228,6 +228,7 @@ function forecast({ sample, judged, goals, programmes, instruments }: SampleFore
     goal: '',
     beyond_measured_decades: 0,
     detail: '',
+    caution: '',
   };
   return { sources: [], forecasts: [row], advice: [], parameters: [], flags: [] };
 }
