@@ -39,22 +39,32 @@ const PROGRAMME_COLUMNS: readonly SheetColumn[] = [
 /** Error of a peak temperature where the table states none, K. */
 const PEAK_ERROR_K = 0.5;
 
-/** `peaks.csv`. A row without any temperature is flagged and left out; a missing error is 0.5 K, flagged once a sheet. */
+/** `peaks.csv`. A row without peak, onset and glass transition is flagged and left out; melting temperatures are flagged once, since nothing uses them; a missing error is 0.5 K, flagged once a sheet. */
 export function readPeaksSheet(bytes: Uint8Array, file: string): SheetRows<PeakSheetRow> {
   const { rows, flags } = readSheet(bytes, file, PEAK_COLUMNS);
   const peaks: PeakSheetRow[] = [];
   let assumed = 0;
+  const molten: number[] = [];
   for (const row of rows.map((r) => withLine<PeakSheetRow>(r))) {
     const { peakK, onsetK, glassTransitionK, meltingK, line } = row;
-    if ([peakK, onsetK, glassTransitionK, meltingK].every((T) => T === undefined)) {
-      flags.push(
-        damaged(file, `line ${line} has no temperature`, 'Fill in its peak, onset, glass transition or melting.'),
-      );
+    if (meltingK !== undefined) molten.push(line);
+    if ([peakK, onsetK, glassTransitionK].every((T) => T === undefined)) {
+      const has = meltingK === undefined ? 'no temperature' : 'no temperature but a melting one, which is not used';
+      flags.push(damaged(file, `line ${line} has ${has}`, 'Fill in its peak, onset or glass transition.'));
       continue;
     }
     if (row.peakErrorK === undefined && peakK !== undefined) assumed++;
     peaks.push({ ...row, peakErrorK: row.peakErrorK ?? PEAK_ERROR_K });
   }
+  if (molten.length > 0)
+    flags.push(
+      flag(
+        'sheet-column-unused',
+        `The melting temperatures of ${molten.length} rows, from line ${molten[0]} on, are kept beside the rows and used nowhere: stability and forecasts take the sample’s.`,
+        'Give the melting temperature of the sample in samples.csv.',
+        { file },
+      ),
+    );
   if (assumed > 0)
     flags.push(
       flag(

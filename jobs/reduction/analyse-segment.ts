@@ -1,3 +1,4 @@
+import { flag } from '../../schema/wire/flags.ts';
 import type { ReducedEvent, Segment } from '../../schema/wire/reduced.ts';
 import { interpolate, lowerBound } from '../numeric/local-polynomial.ts';
 import type { Room } from './event-limits.ts';
@@ -45,6 +46,16 @@ function limitsOf({ input, scan, shiftAt }: ScanContext, segment: Segment): Room
   return { leftS, rightS };
 }
 
+function limitsUnused({ input, where }: ScanContext, { segment, startK }: Segment) {
+  const limits = (input.limitsK ?? []).map((K) => K.toFixed(1)).join(' to ');
+  return flag(
+    'limits-unused',
+    `The limits ${limits} K were left out: segment ${segment} is a hold at ${startK.toFixed(1)} K and has one temperature, so they cut its event nowhere.`,
+    'Take the limits back, or name a heating segment.',
+    where,
+  );
+}
+
 /** Events, glass transition and melting of one segment; `before` is the segment that leads to it. */
 export function analyseSegment(
   c: ScanContext,
@@ -54,7 +65,10 @@ export function analyseSegment(
 ): SegmentFindings {
   const { timeS, temperatureK } = c.scan;
   const bells: Bell[] = withoutRipple(c, segment, excursions).map((x) => ({ ...x, height: x.prominence }));
-  if (segment.kind === 'hold') return reduceHold(c, segment, before, bells);
+  if (segment.kind === 'hold') {
+    if (c.input.limitsK) c.flags.push(limitsUnused(c, segment));
+    return reduceHold(c, segment, before, bells);
+  }
   // A step before the event makes its rough left half width come out too large.
   const first = bells[0] && { ...bells[0], leftS: Math.min(bells[0].leftS, MOST_LEFT * bells[0].rightS) };
   const glassEnd = first ? lowerBound(timeS, first.peakS - GLASS_BEFORE * first.leftS) : endOfRamp(c, segment);

@@ -29,6 +29,7 @@ export const FLAG_CODES = {
   'no-event': ['note', 'no exotherm was found in the analysed segment'],
   'event-cut': ['warn', 'the event is cut by the end of the segment'],
   'event-small': ['warn', 'the area is below five times its baseline error'],
+  'limits-unused': ['warn', 'limits in kelvin say nothing on a hold'],
   'events-merged': ['note', 'overlapping events were separated by fitted peaks'],
   'few-points': ['warn', 'too few points over the event'],
   'baseline-doubt': ['warn', 'the choice of baseline moves the result noticeably'],

@@ -29,6 +29,14 @@ it('peaks.csv in SI, half a kelvin where no error is stated', () => {
   ]);
 });
 
+it('peaks.csv: melting temperatures are told to be used nowhere, and a row of nothing else is left out', () => {
+  const text =
+    'sample;instrument;rate [K/min];peak [K];melting [K];peak error [K]\nS;F;60;500;700;0.2\nS;F;30;;701;0.2\n';
+  const { rows, flags } = readPeaksSheet(bytesOf(text), 'peaks.csv');
+  expect(rows.map((r) => r.line)).toEqual([2]);
+  expect(flags.map((f) => f.code)).toEqual(['sheet-damaged', 'sheet-column-unused']);
+});
+
 it.each([
   ['Pa s', 11.5],
   ['Pa·s', 11.5],
