@@ -32,9 +32,9 @@ export async function followCampaign(
   }
 }
 
-function progressText({ scans, samples, jobs }: CampaignStatus): string {
+function progressText({ scans, samples, jobs, eta_s }: CampaignStatus): string {
   const total = Object.values(scans).reduce((a, b) => a + b, 0);
   const settled = SETTLED_SCAN_STATES.reduce((sum, state) => sum + scans[state], 0);
   const fitted = samples.filter((s) => s.state === 'fitted' || s.state === 'insufficient').length;
-  return `${progressBar(settled, total, 'scans')}, ${fitted}/${samples.length} samples, ${jobs.queued + jobs.running} jobs`;
+  return `${progressBar(settled, total, 'scans', eta_s)}, ${fitted}/${samples.length} samples, ${jobs.queued + jobs.running} jobs`;
 }

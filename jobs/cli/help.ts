@@ -63,6 +63,7 @@ export const VERBS = {
       token: TOKEN,
       wait: { text: 'follow the jobs until the campaign is settled' },
       quiet: QUIET,
+      json: JSON_SWITCH,
     },
   },
   table: {

@@ -17,9 +17,11 @@ export async function sendFolder(
 ): Promise<SentFolder> {
   for (const sentence of skipped) terminal.note(`not sent: ${sentence}`);
   const sent: SentFolder = { outcomes: {}, refused: [] };
+  const startedMs = performance.now();
   for (const [i, file] of files.entries()) {
     terminal.interrupt.throwIfAborted();
-    terminal.progress(progressBar(i, files.length, 'files sent'));
+    const leftS = i > 0 ? (((performance.now() - startedMs) / i) * (files.length - i)) / 1000 : undefined;
+    terminal.progress(progressBar(i, files.length, 'files sent', leftS));
     const { outcome, reason } = await client.putFile(campaign, file);
     sent.outcomes[outcome] = (sent.outcomes[outcome] ?? 0) + 1;
     if (outcome !== 'refused') continue;

@@ -43,8 +43,13 @@ export function createTerminal(interrupt: AbortSignal, quiet = false): Terminal 
   };
 }
 
-/** `[######..................] 12/48 what` */
-export function progressBar(done: number, total: number, what: string): string {
+/** `[######..................] 12/48 what, 40 s left`; without `leftS` nobody knows yet how long. */
+export function progressBar(done: number, total: number, what: string, leftS?: number | null): string {
   const cells = total > 0 ? Math.round((BAR_CELLS * done) / total) : 0;
-  return `[${'#'.repeat(cells)}${'.'.repeat(BAR_CELLS - cells)}] ${done}/${total} ${what}`;
+  return `[${'#'.repeat(cells)}${'.'.repeat(BAR_CELLS - cells)}] ${done}/${total} ${what}${leftText(leftS)}`;
+}
+
+function leftText(leftS?: number | null): string {
+  if (leftS === undefined || leftS === null || !(leftS > 0)) return '';
+  return leftS < 100 ? `, ${Math.ceil(leftS)} s left` : `, ${Math.ceil(leftS / 60)} min left`;
 }

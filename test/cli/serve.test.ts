@@ -23,8 +23,9 @@ test('serve, send --wait and table: what a folder gives over HTTP is what run gi
       /sent 8 files to campaign over HTTP: 2 sheet, 6 accepted\nsettled: 1 of 1 samples fitted, 0 jobs failed\n$/,
     );
     vi.stubEnv('RATESPAN_URL', url);
-    const again = await runHere(['send', input, '--campaign', 'over HTTP', '--wait']);
+    const again = await runHere(['send', input, '--campaign', 'over HTTP', '--wait', '--json']);
     expect(again.err).toMatch(/: 8 known\n/);
+    expect(JSON.parse(again.out)).toMatchObject({ outcomes: { known: 8 }, refused: [], status: { settled: true } });
 
     vi.stubEnv('RATESPAN_URL', '');
     vi.stubEnv('RATESPAN_DATA', data);

@@ -3,6 +3,7 @@ import { describe, expect, test } from 'vitest';
 import { parseVerbArguments, wholeNumber } from '../../jobs/cli/arguments.ts';
 import { UsageError } from '../../jobs/cli/exit.ts';
 import { generalHelp, VERBS, type VerbName, verbHelp } from '../../jobs/cli/help.ts';
+import { progressBar } from '../../jobs/cli/terminal.ts';
 import { runCli, runHere, temporaryFolder, writeTree } from './helpers.ts';
 
 describe('arguments', () => {
@@ -51,5 +52,23 @@ describe('exit codes', () => {
     expect(missing.err).toMatch(/^ratespan: cannot read the folder .*nowhere: there is no such folder\n$/);
     expect(unreachable.code).toBe(4);
     expect(unreachable.err).toMatch(/^ratespan: cannot reach http:\/\/127\.0\.0\.1:1: /);
+  });
+});
+
+describe('progress', () => {
+  test('a bar says how much is done and, where known, how long it takes', () => {
+    expect(progressBar(6, 24, 'scans')).toBe('[######..................] 6/24 scans');
+    expect(progressBar(0, 0, 'scans', null)).toBe('[........................] 0/0 scans');
+    expect(progressBar(24, 24, 'scans', 0)).toBe(`[${'#'.repeat(24)}] 24/24 scans`);
+    expect(progressBar(12, 24, 'files', 41.2)).toMatch(/ 12\/24 files, 42 s left$/);
+    expect(progressBar(12, 24, 'files', 301)).toMatch(/ 12\/24 files, 6 min left$/);
+  });
+  test('nothing is coloured, so NO_COLOR holds by itself', async () => {
+    const { readFile, readdir } = await import('node:fs/promises');
+    const room = join(import.meta.dirname, '../../jobs/cli');
+    const files = (await readdir(room, { recursive: true })).filter((file) => file.endsWith('.ts'));
+    for (const file of files)
+      expect(await readFile(join(room, file), 'utf8')).not.toMatch(/\\u001b\[\d+(;\d+)*m|\\x1b/);
+    expect(files.length).toBeGreaterThan(20);
   });
 });

@@ -22,8 +22,9 @@ export async function send(
   const { outcomes, refused } = await sendFolder(client, campaign, listed, terminal);
   const counts = Object.entries(outcomes).map(([outcome, n]) => `${n} ${outcome}`);
   terminal.note(`sent ${listed.files.length} files to campaign ${String(values.campaign)}: ${counts.join(', ')}`);
-  if (values.wait) {
-    const status = await followCampaign(() => client.status(campaign), terminal);
+  const status = values.wait ? await followCampaign(() => client.status(campaign), terminal) : undefined;
+  if (values.json) terminal.out(`${JSON.stringify({ campaign, outcomes, refused, status }, null, 2)}\n`);
+  if (status) {
     const fitted = status.samples.filter((s) => s.state === 'fitted').length;
     terminal.note(`settled: ${fitted} of ${status.samples.length} samples fitted, ${status.jobs.failed} jobs failed`);
     if (status.jobs.failed > 0) return EXIT.failed;
