@@ -2,7 +2,7 @@ import type { ForecastSource } from '../../schema/wire/forecasts.ts';
 import type { Kinetics } from './kinetics.ts';
 import { isWhole, modelFreeKinetics } from './model-free-kinetics.ts';
 import { drawnParameters, type LawParameters, sharedRateCurve, straightRateCurve } from './rate-curve.ts';
-import { findFastest, sharedKinetics } from './shared-kinetics.ts';
+import { findFastest, SharedKinetics } from './shared-kinetics.ts';
 
 /** One method's law with its numbers filled in: the estimate, every draw, and the pessimistic law where there is one. */
 export interface Instances {
@@ -27,12 +27,9 @@ export function instancesOf(source: ForecastSource): Instances[] {
 function sharedInstances({ law, lawDraws, melting, degreesOfFreedom }: ForecastSource): Instances | undefined {
   if (!law || !isWhole([law.lnRateAtMiddle, law.energyJPerMol, law.bend, law.avramiExponent])) return undefined;
   // Above melting nothing crystallises; where the driving force is known the rate has its top below that.
-  const make = (p: LawParameters, of: typeof sharedRateCurve) => {
-    const curve = of(law, p, melting);
-    return melting
-      ? sharedKinetics(curve, () => findFastest(curve.lnRate, law.lowestMeasuredK, melting.meltingK))
-      : sharedKinetics(curve);
-  };
+  const fastest =
+    melting && ((lnRate: Kinetics['lnRate']) => findFastest(lnRate, law.lowestMeasuredK, melting.meltingK));
+  const make = (p: LawParameters, of: typeof sharedRateCurve) => new SharedKinetics(of(law, p, melting), fastest);
   const draws: Kinetics[] = [];
   for (let d = 0; d < (lawDraws?.bend.length ?? 0); d++) {
     const p = drawnParameters(lawDraws!, d);

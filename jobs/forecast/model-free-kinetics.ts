@@ -20,10 +20,11 @@ interface Shape {
   place: Place;
 }
 
-/** Segment that a conversion lies in, and the share of it done by then. */
+/** Segment that a conversion lies in, and the share of it done by then, with its logarithm. */
 interface Place {
   segment: number;
   share: number;
+  lnShare: number;
 }
 
 /**
@@ -34,40 +35,27 @@ export class ModelFreeKinetics implements Kinetics {
   readonly mostConversion = LAST;
   readonly fastestK = TEMPERATURE_RANGE.highest;
   readonly breaksK: readonly number[] = [];
-  /** Segment k needs e^(a_k + c_k/T) s */
-  private readonly a: Float64Array;
-  private readonly c: Float64Array;
-  private readonly steepest: number;
 
-  /** @param energy J/mol, one a segment, the first at `from`   @param lnStep likewise */
+  /** @param steepest J/mol, the largest |E| of its segments   @param at where its own begin in `a` and `c` of the shape */
   constructor(
     private readonly shape: Shape,
-    energy: ArrayLike<number>,
-    lnStep: ArrayLike<number>,
-    from = 0,
-  ) {
-    const { count, curve } = shape;
-    this.a = new Float64Array(count);
-    this.c = new Float64Array(count);
-    let steepest = 0;
-    for (let k = 0; k < count; k++) {
-      const E = energy[from + k];
-      this.c[k] = E / GAS_CONSTANT;
-      this.a[k] = lnStep[from + k] - this.c[k] * curve.x0PerK;
-      steepest = Math.max(steepest, Math.abs(E));
-    }
-    this.steepest = steepest;
-  }
+    private readonly a: Float64Array,
+    private readonly c: Float64Array,
+    private readonly steepest: number,
+    private readonly at: number,
+  ) {}
 
   lnTime(conversion: number, T: number): number {
-    const { a, c } = this;
-    const { segment, share } = this.placeOf(conversion);
+    const { a, c, at } = this;
+    const { segment, lnShare } = this.placeOf(conversion);
     const x = 1 / T;
-    const last = a[segment] + c[segment] * x + Math.log(share);
+    const end = at + segment;
+    const last = a[end] + c[end] * x + lnShare;
+    if (segment === 0) return last;
     let highest = last;
-    for (let k = 0; k < segment; k++) highest = Math.max(highest, a[k] + c[k] * x);
+    for (let k = at; k < end; k++) highest = Math.max(highest, a[k] + c[k] * x);
     let sum = Math.exp(last - highest);
-    for (let k = 0; k < segment; k++) sum += Math.exp(a[k] + c[k] * x - highest);
+    for (let k = at; k < end; k++) sum += Math.exp(a[k] + c[k] * x - highest);
     return highest + Math.log(sum);
   }
 
@@ -91,8 +79,7 @@ export class ModelFreeKinetics implements Kinetics {
   }
 
   lnRate(T: number): number {
-    const middle = this.c.length >> 1;
-    return this.c[middle] * (this.shape.curve.x0PerK - 1 / T);
+    return this.c[this.at + (this.shape.count >> 1)] * (this.shape.curve.x0PerK - 1 / T);
   }
 
   steepness(): number {
@@ -100,18 +87,18 @@ export class ModelFreeKinetics implements Kinetics {
   }
 
   private needed(k: number, T: number): number {
-    return Math.exp(Math.min(MOST_EXPONENT, this.a[k] + this.c[k] / T));
+    return Math.exp(Math.min(MOST_EXPONENT, this.a[this.at + k] + this.c[this.at + k] / T));
   }
 
   /** Share of segment k done in a second at T */
   private pace(k: number, T: number): number {
-    return Math.exp(Math.min(MOST_EXPONENT, -this.a[k] - this.c[k] / T));
+    return Math.exp(Math.min(MOST_EXPONENT, -this.a[this.at + k] - this.c[this.at + k] / T));
   }
 
   private placeOf(conversion: number): Place {
     const { shape } = this;
     if (conversion !== shape.asked) {
-      shape.place = shareAt(shape.curve, conversion);
+      shape.place = placeAt(shape.curve, conversion);
       shape.asked = conversion;
     }
     return shape.place;
@@ -172,16 +159,30 @@ export function modelFreeKinetics(
     count,
     most: shareAt(curve, LAST).share,
     asked: LAST,
-    place: shareAt(curve, LAST),
+    place: placeAt(curve, LAST),
   };
-  const draws: ModelFreeKinetics[] = [];
-  const { energyJPerMol, lnStep } = drawn ?? { energyJPerMol: [], lnStep: [] };
-  for (let from = 0; from + count <= lnStep.length; from += count) {
-    if (isWhole(energyJPerMol, from, count) && isWhole(lnStep, from, count))
-      draws.push(new ModelFreeKinetics(shape, energyJPerMol, lnStep, from));
-  }
-  return { estimate: new ModelFreeKinetics(shape, curve.energyJPerMol, curve.lnStep), draws };
+  const make = (energy: Float64Array, lnStep: Float64Array): ModelFreeKinetics[] => {
+    const out: ModelFreeKinetics[] = [];
+    const total = Math.floor(lnStep.length / count) * count;
+    // Segment k needs e^(a_k + c_k/T) s; one array for all draws, no objects but the law itself.
+    const c = Float64Array.from(energy, (E) => E / GAS_CONSTANT);
+    const a = lnStep.map((v, i) => v - c[i] * curve.x0PerK);
+    for (let at = 0; at < total; at += count) {
+      if (!isWhole(c, at, count) || !isWhole(a, at, count)) continue;
+      let steepest = 0;
+      for (let k = at; k < at + count; k++) steepest = Math.max(steepest, Math.abs(energy[k]));
+      out.push(new ModelFreeKinetics(shape, a, c, steepest, at));
+    }
+    return out;
+  };
+  const [estimate] = make(curve.energyJPerMol, curve.lnStep);
+  return { estimate, draws: drawn ? make(drawn.energyJPerMol, drawn.lnStep) : [] };
 }
+
+const placeAt = (curve: ModelFreeCurve, conversion: number): Place => {
+  const { segment, share } = shareAt(curve, conversion);
+  return { segment, share, lnShare: Math.log(share) };
+};
 
 /** Whether `count` values from `from` on are all finite, and there is one. */
 export function isWhole(values: ArrayLike<number>, from = 0, count = values.length): boolean {
@@ -208,7 +209,7 @@ const startPower = ({ share }: ModelFreeCurve): number =>
   Math.log(share[1] / share[0]) / Math.log(tableX(1) / tableX(0));
 
 /** The place of a conversion. Between the rows of the table: straight, in the logarithms of X and share in the first segment. */
-function shareAt(curve: ModelFreeCurve, conversion: number): Place {
+function shareAt(curve: ModelFreeCurve, conversion: number): { segment: number; share: number } {
   if (!(conversion > 0 && conversion <= LAST + 1e-12))
     throw new RangeError(`a model-free forecast needs a conversion in (0, ${LAST}]: ${conversion}`);
   const segment = segmentOf(curve, conversion);

@@ -4,6 +4,7 @@ import type { AdviceInput } from '../../jobs/campaign/advice-input.ts';
 import { analyseForAdvice, LawPrecision } from '../../jobs/campaign/advice-law.ts';
 import { studentQuantile } from '../../jobs/numeric/distributions.ts';
 import { createRandom } from '../../jobs/numeric/random.ts';
+import { FORECAST_CAUTION, FORECAST_TABLES } from '../../schema/wire/forecasts.ts';
 import { GAS_CONSTANT as R } from '../../schema/wire/units.ts';
 import { exactScan } from '../kinetics/exact-curves.ts';
 
@@ -187,6 +188,10 @@ describe('advice for the bend and a forecast', () => {
       ['forecast', 3, 'decades'],
     ]);
     for (const row of rows) expect(row.interval_expected).toBeLessThan(row.interval_now);
+  });
+  test('the caution stands on every row', () => {
+    expect(FORECAST_TABLES.advice).toContain('caution');
+    for (const row of rows) expect(row.caution).toBe(FORECAST_CAUTION);
   });
   test('one more row by the update is one more row in the normal equations', () => {
     const analysis = analyseForAdvice(two())!.bend;

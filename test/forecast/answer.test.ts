@@ -289,7 +289,9 @@ describe('forecasts.csv', () => {
         ).not.toThrow();
       }
   });
-  test('the caution stands in one place', () => {
+  test('the caution stands on every row, so that a table or a row taken out of it keeps it', () => {
     expect(FORECAST_CAUTION).toContain('not a basis for process-safety, medical or release decisions');
+    expect(FORECAST_TABLES.forecasts).toContain('caution');
+    for (const row of forecastTable(source, [], [])) expect(row.caution).toBe(FORECAST_CAUTION);
   });
 });
