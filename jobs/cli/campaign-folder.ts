@@ -3,7 +3,7 @@ import { createReadStream, type Dirent } from 'node:fs';
 import { access, readdir, realpath, stat } from 'node:fs/promises';
 import { join, resolve } from 'node:path';
 import { pipeline } from 'node:stream/promises';
-import { sheetKind } from '../instrument/index.ts';
+import { sheetKind, unpackedPath } from '../instrument/index.ts';
 import { UsageError } from './exit.ts';
 
 export interface FolderFile {
@@ -25,7 +25,8 @@ const compare = (a: string, b: string): number => (a < b ? -1 : a > b ? 1 : 0);
 
 /**
  * Lists a campaign folder. Not read, and said so: hidden files and folders (a leading dot), a folder below that holds a
- * run.json (results of a run), linked folders (they could lead in circles), and `except` (the results of this run).
+ * run.json (results of a run), linked folders (they could lead in circles), `x.txt.gz` beside `x.txt` (one path to a campaign,
+ * where the later one would replace the other at every run), and `except` (the results of this run).
  * Throws UsageError when the folder cannot be read.
  */
 export async function listCampaignFolder(folder: string, except: readonly string[] = []): Promise<CampaignFolder> {
@@ -61,8 +62,15 @@ export async function listCampaignFolder(folder: string, except: readonly string
   }
 
   await visit(root, '');
+  const paths = new Set(files.map(({ path }) => path));
+  const single = files.filter(({ path }) => {
+    const plain = unpackedPath(path);
+    const twice = plain !== path && paths.has(plain);
+    if (twice) skipped.push(`${path} unpacks to ${plain}, which is there too and counts`);
+    return !twice;
+  });
   const first = (file: FolderFile): number => (sheetKind(file.path) ? 0 : 1);
-  return { files: files.sort((a, b) => first(a) - first(b) || compare(a.path, b.path)), skipped };
+  return { files: single.sort((a, b) => first(a) - first(b) || compare(a.path, b.path)), skipped };
 }
 
 function unreadable(location: string, error: NodeJS.ErrnoException): UsageError {

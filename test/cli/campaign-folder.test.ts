@@ -37,6 +37,14 @@ test('sheets come first, then files by path; names are NFC; what is not read is 
   ]);
 });
 
+test('of a file and its gzipped namesake the plain one counts, and both are named', async () => {
+  const folder = await temporaryFolder();
+  await writeTree(folder, { 'a/1.txt': 'x', 'a/1.txt.gz': 'other', 'a/2.txt.gz': 'alone' });
+  const { files, skipped } = await listCampaignFolder(folder);
+  expect(files.map((f) => f.path)).toEqual(['a/1.txt', 'a/2.txt.gz']);
+  expect(skipped).toEqual(['a/1.txt.gz unpacks to a/1.txt, which is there too and counts']);
+});
+
 test('a folder that is none is a UsageError', async () => {
   const folder = await temporaryFolder();
   await writeTree(folder, { file: 'x' });
