@@ -76,6 +76,19 @@ it('repeats of a later sheet only what rests on it', async () => {
   expect(ports.compute.counts).toEqual(counts);
 });
 
+it('judges a sample of a composition series again when another composition’s glass transition changes', async () => {
+  const sheet = (wet: number) =>
+    `sample,series,solvent fraction,glass transition [°C]\nA,sugar,0.05,\ndry,sugar,0,60\nwet,sugar,0.2,${wet}\nwater,sugar,1,-137\n`;
+  await sendAll([...SCANS, ['samples.csv', sheet(-5)]]);
+  await drain(ports, campaign);
+  const counts = { ...ports.compute.counts };
+  const { judgeCurvature } = ports.compute.laterCounts;
+  await send(ports, campaign, 'samples.csv', sheet(-8));
+  await drain(ports, campaign);
+  expect(ports.compute.counts.fitSample).toBe(counts.fitSample);
+  expect(ports.compute.laterCounts.judgeCurvature).toBe(judgeCurvature + 1);
+});
+
 it('sets goals through the store, beside those of the sheet', async () => {
   await sendAll([...SCANS, ...SHEETS]);
   await drain(ports, campaign);
