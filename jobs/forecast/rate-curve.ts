@@ -39,7 +39,9 @@ export const drawnParameters = (draws: SharedLawDraws, d: number): LawParameters
  */
 export function sharedRateCurve(law: SharedLaw, p: LawParameters, melting?: MeltingData): RateCurve {
   const { x0PerK, dxPerK, driving } = law;
-  const own: RateLaw = { ...p, x0PerK, dxPerK, driving };
+  const { lnRateAtMiddle, energyJPerMol, bend } = p;
+  // Written out: made for every draw, and a spread costs more than all the rest.
+  const own: RateLaw = { lnRateAtMiddle, energyJPerMol, bend, x0PerK, dxPerK, driving };
   const xf = 1 / law.frozenBelowK;
   const frozenEnergy = localEnergyOf(own, law.frozenBelowK);
   const lnRate = lnRateCurve(own);
