@@ -101,8 +101,9 @@ function completeEvent(
   };
   const baseline = baselineError(w, x, shape, times, refit);
   const tail = isolated.meltingOverlap && room.knownArea === undefined ? HIDDEN_TAIL_PART * x.area : 0;
+  const open = Math.hypot(tail, MOVED_AREAS * (x.openPart ?? 0) * x.area);
   const error = baseline.error.map((s, k) => {
-    const hidden = (tail * CONVERSION_GRID[k]) / trueSignal(w, shape, times[k], binAt(w, x, times[k])).value;
+    const hidden = (open * CONVERSION_GRID[k]) / trueSignal(w, shape, times[k], binAt(w, x, times[k])).value;
     return Math.hypot(Math.hypot(s, hidden) * Math.abs(rate), warming.part * warming.at(times[k]));
   });
   const stepK = Math.abs(rate) / perSecond;
