@@ -9,10 +9,14 @@ import {
   assignmentFromPath,
   isProgram,
   pathProblem,
+  readGoalSheet,
   readInstrumentsSheet,
+  readPeaksSheet,
+  readProgram,
   readSamplesSheet,
   readScan,
   readScansSheet,
+  readViscositySheet,
   sheetKind,
   unpackArchive,
 } from '../instrument/index.ts';
@@ -38,7 +42,14 @@ interface FileReading {
   flags: Flag[];
 }
 
-const SHEET_READERS = { scans: readScansSheet, instruments: readInstrumentsSheet, samples: readSamplesSheet } as const;
+const SHEET_READERS = {
+  scans: readScansSheet,
+  instruments: readInstrumentsSheet,
+  samples: readSamplesSheet,
+  peaks: readPeaksSheet,
+  viscosity: readViscositySheet,
+  goal: readGoalSheet,
+} as const;
 
 /** `run --dry`: reads every file and says how it and its columns are understood; computes and writes nothing. */
 export async function describeFolder(
@@ -89,11 +100,14 @@ function describeFile(file: string, bytes: Uint8Array, sheetRows: readonly ScanS
   const problem = pathProblem(file);
   if (problem) return { file, kind: 'set aside', reason: `the path ${problem}`, flags: [] };
   const sheet = sheetKind(file);
-  if (sheet === 'scans' || sheet === 'instruments' || sheet === 'samples') {
+  if (sheet) {
     const { rows, flags } = SHEET_READERS[sheet](bytes, file);
     return { file, kind: 'sheet', rows: rows.length, flags };
   }
-  if (sheet || isProgram(file)) return { file, kind: sheet ? 'sheet' : 'programme', flags: [] };
+  if (isProgram(file)) {
+    const { programme, flags } = readProgram(bytes, file);
+    return { file, kind: 'programme', rows: programme?.timeS.length ?? 0, flags };
+  }
   const assignment = assign(file, sheetRows);
   const outcome = readScan(bytes, file);
   if (!outcome.ok) {
