@@ -1,5 +1,6 @@
 import { fitSample } from '../../jobs/kinetics/index.ts';
 import { reduceScan } from '../../jobs/reduction/index.ts';
+import { FIT_DRAWS } from '../../jobs/steps/settings.ts';
 import type { FitScan } from '../../schema/wire/parameters.ts';
 import type { InstrumentCalibration, ReadScan } from '../../schema/wire/scan.ts';
 import {
@@ -253,7 +254,7 @@ export function intervalsStudy({ count = 200, seed }: StudyOptions): string {
   const widths: (string | number)[][] = [];
   const pooled = INTERVAL_QUANTITIES.map(() => 0);
   for (const cell of cells) {
-    const r = runCell(cell, count, 100, seed);
+    const r = runCell(cell, count, FIT_DRAWS, seed);
     r.held.forEach((h, q) => {
       pooled[q] += h / cells.length;
     });
