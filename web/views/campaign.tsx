@@ -51,7 +51,7 @@ export function CampaignView({ id }: { id: string }) {
         </p>
       </>
     ) : (
-      <p class="waiting">Loading the campaign…</p>
+      <h1 class="waiting">Loading the campaign…</h1>
     );
   }
   const isEmpty = tables !== undefined && built?.length === 0 && tables.scans.length === 0;

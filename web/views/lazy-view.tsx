@@ -21,6 +21,6 @@ export function lazyView<Props extends object>(load: () => Promise<ComponentType
     }, []);
     if (problem) return <ProblemNotice problem={problem} />;
     const View = loaded;
-    return View ? createElement(View, props) : <p class="waiting">Loading the page…</p>;
+    return View ? createElement(View, props) : <h1 class="waiting">Loading the page…</h1>;
   };
 }

@@ -34,7 +34,7 @@ export function PageHead(props: {
 /** While a page has nothing to show yet: what it waits for, or why it cannot. */
 export function NotYet(props: { problem: Problem | undefined; what: string; campaignId: string }) {
   const { problem, what, campaignId } = props;
-  if (!problem) return <p class="waiting">Loading {what}…</p>;
+  if (!problem) return <h1 class="waiting">Loading {what}…</h1>;
   return (
     <>
       <ProblemNotice problem={problem} isPage />
