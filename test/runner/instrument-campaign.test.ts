@@ -25,17 +25,21 @@ import { rowsOf } from './test-ports.ts';
 
 /** Synthetic, from the independent generator: one oven of which the sheets say nothing, measured by its standards. */
 const OVEN = { offsetK: 0.8, shiftS: 2.5, responseS: 0 };
-const CONTACT_S = 1;
+/** One thermal resistance between sensor and pan for metals and glass alike, K/W (size: common practice, no source). */
+const RESISTANCE = 40;
+const GLASS = { massKg: 10e-6, heatCapacityJPerKgK: 500 };
+const contactS = (massKg: number, heatCapacityJPerKgK: number) => RESISTANCE * massKg * heatCapacityJPerKgK;
 const RATES = [2, 5, 10, 20, 40].map((rate) => rate / 60);
 const ENERGY = 280e3;
 const EXPONENT = 3;
 
 function standardFile(symbol: 'In' | 'Zn', rate: number): Uint8Array {
   const metal = METALS[symbol];
-  const meltS = Math.sqrt((2 * metal.enthalpyJPerKg * CONTACT_S) / (metal.heatCapacityJPerKgK * rate));
+  const contact = contactS(8e-6, metal.heatCapacityJPerKgK);
+  const meltS = Math.sqrt((2 * metal.enthalpyJPerKg * contact) / (metal.heatCapacityJPerKgK * rate));
   const reach = rate * (8 * meltS + 12 * OVEN.shiftS) + 3;
   const programme = rampProgramme(metal.meltingK - reach, metal.meltingK + reach, rate);
-  const solved = solveStandard(metal, OVEN, CONTACT_S, programme, 8e-6, samplingTimes(0, programme.endS, 1500));
+  const solved = solveStandard(metal, OVEN, contact, programme, 8e-6, samplingTimes(0, programme.endS, 1500));
   const random = seededRandom(`${symbol} ${rate}`);
   const recorded = recordScan(solved, OVEN.offsetK, { noise: 0.002, drift: 0.02 }, random);
   return writeScan(recorded, { dialect: PLAIN_DIALECT, exotherm: 'up', massKg: 8e-6 });
@@ -54,9 +58,14 @@ function folder(): Map<string, Uint8Array> {
       instrument: 'oven',
       model: {
         sample: { events: [{ temperature, rate: jmakLaw(EXPONENT), enthalpyJPerKg: 45e3 }] },
-        instrument: OVEN,
+        // The heat of the event crosses the same resistance: it warms the glass, and that part of the shift is the contact's.
+        instrument: { ...OVEN, shiftS: OVEN.shiftS - contactS(GLASS.massKg, GLASS.heatCapacityJPerKgK) },
+        selfHeating: {
+          contactS: contactS(GLASS.massKg, GLASS.heatCapacityJPerKgK),
+          heatCapacityJPerKgK: GLASS.heatCapacityJPerKgK,
+        },
         programme: rampProgramme(limits.startK, limits.endK, rateKPerS),
-        massKg: 10e-6,
+        massKg: GLASS.massKg,
       },
       recording: { noise: 0.002, drift: 0.02 },
       pointsOverWidth: 80,
@@ -121,8 +130,11 @@ describe('an oven known by its standards alone', () => {
       rows.find(
         (r) => r.quantity === quantity && r.method === method && r.variant === '' && r.interval === 'monte_carlo',
       )?.value as number;
-    expect(Math.abs(headline('activation_energy', 'kissinger') / (ENERGY / 1e3) - 1)).toBeLessThan(0.02);
-    expect(Math.abs(headline('avrami_exponent', 'jmak') / EXPONENT - 1)).toBeLessThan(0.05);
+    // The event warms its sample by up to 1 K: methods on T(t) as it was do not mind; Kissinger, who takes a straight ramp, reads low.
+    for (const method of ['friedman', 'vyazovkin', 'jmak'])
+      expect(Math.abs(headline('activation_energy', method) / (ENERGY / 1e3) - 1)).toBeLessThan(0.005);
+    expect(Math.abs(headline('activation_energy', 'kissinger') / (ENERGY / 1e3) - 1)).toBeLessThan(0.03);
+    expect(Math.abs(headline('avrami_exponent', 'jmak') / EXPONENT - 1)).toBeLessThan(0.01);
     const [verdict] = await table('verdicts');
     expect(verdict.verdict).not.toBe('material');
   });
