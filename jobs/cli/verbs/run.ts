@@ -124,17 +124,26 @@ async function takeFiles(
 ): Promise<{ file: string; reason: string }[]> {
   const refused: { file: string; reason: string }[] = [];
   await withdrawMissingFiles(ports, campaign.id, new Set(files.map((f) => f.path)));
-  for (const [i, file] of files.entries()) {
-    terminal.interrupt.throwIfAborted();
-    terminal.progress(progressBar(i, files.length, 'files taken in'));
-    const receipt = await receiveFile(ports, campaign.id, file.path, await openBody(file), file.bytes);
-    if (receipt.outcome !== 'refused') continue;
-    const reason = receipt.reason ?? 'refused';
-    refused.push({ file: file.path, reason });
-    terminal.warn(`refused: ${file.path}: ${reason}`);
-  }
+  let taken = 0;
+  const next = files.values();
+  const takeOneByOne = async () => {
+    for (const file of next) {
+      terminal.interrupt.throwIfAborted();
+      terminal.progress(progressBar(taken++, files.length, 'files taken in'));
+      const receipt = await receiveFile(ports, campaign.id, file.path, await openBody(file), file.bytes);
+      if (receipt.outcome !== 'refused') continue;
+      const reason = receipt.reason ?? 'refused';
+      refused.push({ file: file.path, reason });
+      terminal.warn(`refused: ${file.path}: ${reason}`);
+    }
+  };
+  await Promise.all(Array.from({ length: TAKEN_AT_ONCE }, takeOneByOne));
+  refused.sort((a, b) => (a.file < b.file ? -1 : 1));
   return refused;
 }
+
+/** Files under way at once: while one is written safely to disk the next is read and noted. */
+const TAKEN_AT_ONCE = 4;
 
 /** Files up to this size are read whole: a stream for each of many small files takes longer than the file, bytes. */
 const READ_WHOLE_BYTES = 4e6;
