@@ -162,6 +162,10 @@ const J_PER_KG_TO_J_PER_G = 1e-3;
 
 /** Rows of scans.csv of one scan: one an event, or one with an empty event. */
 export function scanRowsOf(scan: ScanRecord): ResultRow[] {
+  // What was found in a scan before its file was replaced depends on when that was: only that it was there is told.
+  if (scan.status === 'superseded') {
+    return [{ ...EMPTY_ROW, file: scan.path, sha256: scan.sha256, status: scan.status }];
+  }
   const { result, sheetRow } = scan;
   const analysed = result?.segments.find((segment) => segment.segment === result.segment);
   const massKg = result?.massKg ?? sheetRow?.massKg;
