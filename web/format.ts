@@ -24,9 +24,19 @@ function decimalsFor(value: number, digits: number): number {
   return Math.max(0, digits - 1 - Math.floor(Math.log10(Math.abs(value))));
 }
 
-/** Significant digits without trailing zeros after the point, e.g. 3 digits: 0.16667 → `0.167`, 20 → `20`. */
+/** Below this a number is written with a power of ten: zeros after the point cannot be counted by eye. */
+const SMALLEST_PLAIN = 1e-4;
+
+/**
+ * Significant digits without trailing zeros after the point, e.g. 3 digits: 0.16667 → `0.167`, 20 → `20`, 1.49e-17 → `1.49 × 10⁻¹⁷`.
+ */
 export function formatSignificant(value: number, digits = 3): string {
   const rounded = Number(value.toPrecision(digits));
+  if (rounded !== 0 && Math.abs(rounded) < SMALLEST_PLAIN) {
+    const exponent = Math.floor(Math.log10(Math.abs(rounded)));
+    const mantissa = Number((rounded / 10 ** exponent).toPrecision(digits));
+    return `${formatSignificant(mantissa, digits)}\u00a0×\u00a0${formatExponent(exponent)}`;
+  }
   const decimals = decimalsFor(rounded, digits);
   const text = formatFixed(rounded, decimals);
   return decimals > 0 ? text.replace(/\.?0+$/, '') : text;

@@ -34,6 +34,9 @@ test('significant digits keep zeros before the point and drop those after it', (
   expect(formatSignificant(0.05)).toBe('0.05');
   expect(formatSignificant(9.999)).toBe('10');
   expect(formatSignificant(0)).toBe('0');
+  expect(formatSignificant(1.4891e-17)).toBe('1.49\u00a0×\u00a010⁻¹⁷');
+  expect(formatSignificant(-9.9999e-5)).toBe('\u2212' + '0.0001');
+  expect(formatSignificant(-2e-300)).toBe('\u22122\u00a0×\u00a010⁻³⁰⁰');
 });
 
 describe('value and interval (digits by common practice, no source)', () => {
