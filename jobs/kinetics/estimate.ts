@@ -114,7 +114,7 @@ export function rampIntegrals(columns: EventColumns, curves: ArrayLike<number>):
   };
 }
 
-/** What does not change between draws, made once an event. */
+/** What the estimates rest on beside the columns, made once an event; a draw may overwrite the weights and the scatter. */
 export interface EstimateSettings {
   /** scans with curves */
   curves: Uint16Array;
@@ -135,7 +135,7 @@ export interface EstimateSettings {
 
 /**
  * Makes the function that computes all peak, isoconversional and JMAK estimates from the columns as they stand when it is called: buffers
- * are made once and the columns may be overwritten between calls (Monte Carlo).
+ * are made once and the columns and weights may be overwritten between calls (Monte Carlo).
  * The function's argument: neighbouring estimates to start from; without them JMAK is fitted from a rough start.
  */
 export function createEstimator(
@@ -148,7 +148,8 @@ export function createEstimator(
   const lnReaction = new Float64Array(m);
   const lnRate = Float64Array.from(s.curves, (i) => Math.log(d.rate[i]));
   const peakLnRate = d.rate.map(Math.log);
-  const weights = usableWeights(d, s.curves, s.curveWeights, s.usable).at;
+  const used = usableWeights(d, s.curves, s.curveWeights, s.usable).at;
+  const weights = new Float64Array(m);
   const work: ArrheniusIntegral[] = Array.from({ length: m }, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
   /** place in the columns of a row of the curve scans */
   const cell = (row: number): number => {
@@ -172,8 +173,9 @@ export function createEstimator(
         const at = s.curves[j] * CONVERSION_COUNT + k;
         T[j] = d.temperatureK[at];
         lnReaction[j] = d.lnRate[at];
+        weights[j] = used[k][j] > 0 ? s.curveWeights[j] : 0;
       }
-      const slopes = inverseSlopes(lnRate, T, weights[k], lnReaction);
+      const slopes = inverseSlopes(lnRate, T, weights, lnReaction);
       const kas = energyFromSlopes(slopes, KISSINGER.power, KISSINGER.factor);
       const uncorrected = energyFromSlopes(slopes, 0, 1);
       out.kissingerAkahiraSunose[k] = kas;
@@ -182,7 +184,7 @@ export function createEstimator(
       out.ozawaFlynnWallCurve[k] = uncorrected / flynnFactor(uncorrected, slopes.inverse);
       // In a draw the two energies move together: their ratio in the estimate is the better start.
       const start = warm ? (kas * warm.vyazovkin[k]) / warm.kissingerAkahiraSunose[k] : kas;
-      const v = fitVyazovkin((e, o) => integrals.step(e, slopes.inverse, k, o), weights[k], start, work);
+      const v = fitVyazovkin((e, o) => integrals.step(e, slopes.inverse, k, o), weights, start, work);
       out.vyazovkin[k] = v.energy;
       out.vyazovkinConverged &&= v.converged;
     }

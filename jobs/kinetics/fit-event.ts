@@ -28,7 +28,7 @@ import { addAnalyticRows, addFurtherRows } from './further-rows.ts';
 import { findOutliers, JMAK_RESIDUAL, judgeEnergy, judgeJmak } from './judge-event.ts';
 import { judgeTops, noteExponent, plotModels, reportFurther, reportModels } from './judge-model.ts';
 import { averageSegments, describeModelFree } from './model-free.ts';
-import { drawBuffer, drawColumns, modelScatter, type ScatterModel } from './monte-carlo.ts';
+import { drawBuffer, drawColumns, drawWeights, modelScatter, type ScatterModel } from './monte-carlo.ts';
 import { RowBuilder } from './parameter-rows.ts';
 import { LATEST_START } from './peak-methods.ts';
 import {
@@ -196,20 +196,27 @@ function runDraws(
   draws: number,
 ): { drawn: Estimates[]; further: FurtherEstimates[]; causes: DrawCauses[]; modelFreeDraws: ModelFreeDraws } {
   const columns = drawBuffer(model.data);
+  const drawnSettings = {
+    ...settings,
+    weights: settings.weights.slice(),
+    curveWeights: settings.curveWeights.slice(),
+    curveSigmaK: settings.curveSigmaK.slice(),
+  };
   const ramp = rampIntegrals(columns, settings.curves);
-  const estimator = createEstimator(columns, settings, ramp);
+  const estimator = createEstimator(columns, drawnSettings, ramp);
   const modelFreeDraws: ModelFreeDraws = {
     energyJPerMol: new Float64Array(settings.curveMethods ? draws * CONVERSIONS.length : 0),
     lnStep: new Float64Array(settings.curveMethods ? draws * CONVERSIONS.length : 0),
   };
   const { whole } = usableWeights(model.data, settings.curves, settings.curveWeights, settings.usable);
   const work = Array.from(settings.curves, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
-  const furtherEstimator = createFurtherEstimator(columns, settings, plan);
+  const furtherEstimator = createFurtherEstimator(columns, drawnSettings, plan);
   const drawn: Estimates[] = [];
   const further: FurtherEstimates[] = [];
   const causes: DrawCauses[] = [];
   for (let d = 0; d < draws; d++) {
     causes.push(drawColumns(model, random, columns));
+    drawWeights(model, random, drawnSettings);
     const main = estimator(estimate.main);
     drawn.push(main);
     if (!estimate.further) continue;

@@ -36,7 +36,9 @@ export function createFurtherEstimator(
   plan: FurtherPlan,
 ): (main: Estimates, warm?: Neighbour) => FurtherEstimates {
   const m = curves.length;
-  const { at, whole, determined } = usableWeights(d, curves, curveWeights, usable);
+  const { at, whole: usedWhole, determined } = usableWeights(d, curves, curveWeights, usable);
+  const weights = new Float64Array(m);
+  const whole = new Float64Array(m);
   const rate = Float64Array.from(curves, (i) => d.rate[i]);
   const lnRate = rate.map(Math.log);
   const T = new Float64Array(m);
@@ -44,10 +46,14 @@ export function createFurtherEstimator(
   return (main, warm) => {
     const vyazovkinLinear = new Float64Array(CONVERSION_COUNT);
     for (let k = 0; k < CONVERSION_COUNT; k++) {
-      for (let j = 0; j < m; j++) T[j] = d.temperatureK[curves[j] * CONVERSION_COUNT + k];
+      for (let j = 0; j < m; j++) {
+        T[j] = d.temperatureK[curves[j] * CONVERSION_COUNT + k];
+        weights[j] = at[k][j] > 0 ? curveWeights[j] : 0;
+      }
       const ratio = warm ? warm.further.vyazovkinLinear[k] / warm.main.starink[k] : 1;
-      vyazovkinLinear[k] = fitVyazovkinLinear(rate, T, at[k], main.starink[k] * ratio, work).energy;
+      vyazovkinLinear[k] = fitVyazovkinLinear(rate, T, weights, main.starink[k] * ratio, work).energy;
     }
+    for (let j = 0; j < m; j++) whole[j] = usedWhole[j] > 0 ? curveWeights[j] : 0;
     const energy = pooledMean(main.friedman, determined);
     const sestakBerggren = plan.sestakBerggren ? fitSestakBerggren(d, curves, whole) : undefined;
     return {

@@ -2,7 +2,7 @@
 export const STEP_VERSIONS = {
   'read-scan': 1,
   'reduce-scan': 6,
-  'fit-sample': 4,
+  'fit-sample': 5,
   'judge-curvature': 2,
   'forecast-sample': 3,
 } as const;
