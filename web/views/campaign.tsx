@@ -55,6 +55,8 @@ export function CampaignView({ id }: { id: string }) {
     );
   }
   const isEmpty = tables !== undefined && built?.length === 0 && tables.scans.length === 0;
+  // Where the buttons stand depends on whether there is anything: moved later they would lose the keyboard's focus.
+  const hasPlace = built !== undefined || problem !== undefined;
   const numbered = rows.filter((row) => row.numbers.length > 0).map((row) => row.sample);
   const unassigned = tables?.scans.filter((scan) => scan.status === 'unassigned') ?? [];
   return (
@@ -62,7 +64,7 @@ export function CampaignView({ id }: { id: string }) {
       <div class="campaign-head">
         <div class="campaign-title">
           <h1>{campaign.name}</h1>
-          {!isEmpty && <FileDesk uploads={uploads} isEmpty={false} />}
+          {hasPlace && !isEmpty && <FileDesk uploads={uploads} isEmpty={false} />}
         </div>
         {status && !isEmpty && <WholeDownloads campaign={campaign} />}
         {status && <Progress status={status} link={live.link.value} jobsHref={jobsPath(campaign.id)} />}
