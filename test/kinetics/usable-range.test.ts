@@ -1,5 +1,7 @@
 import { expect, test } from 'vitest';
+import { CONVERSION_COUNT, collectEvent } from '../../jobs/kinetics/event-data.ts';
 import { fitSample } from '../../jobs/kinetics/index.ts';
+import { modelScatter } from '../../jobs/kinetics/monte-carlo.ts';
 import type { FitResult, FitScan } from '../../schema/wire/parameters.ts';
 import { CONVERSION_GRID } from '../../schema/wire/reduced.ts';
 import { exactScan, furnace } from './exact-curves.ts';
@@ -48,4 +50,22 @@ test('two of five cut: the other three still give the rows above, by themselves'
 test('unmarked, the same spoilt curves are off: the mark is what helps', () => {
   const blind = analyse(exact.map((s) => ({ ...spoil(s), event: { ...spoil(s).event, usableTo: 0.99 } })));
   expect(Math.abs(find(blind, 'avrami_exponent', 'jmak') / 2.7 - 1)).toBeGreaterThan(0.005);
+});
+
+test('where a scan is not usable, what stands for its scatter is that of its nearest usable conversion', () => {
+  // Scans out of place by 0.1–0.5 K, so that residuals differ from scan to scan; the first two are spoilt above 0.8.
+  const moved = [2, 5, 10, 20, 40].map((b, i) =>
+    exactScan(240e3, 42, 2.7, b / 60, 400, `scan-${i}`, [1, -3, 5, -2, 1][i] / 10),
+  );
+  const data = collectEvent(
+    1,
+    moved.map((s, i) => (i < 2 ? spoil(s) : s)),
+    [furnace],
+  );
+  const { temperature } = modelScatter(data, Uint16Array.from([0, 1, 2, 3, 4]), 5);
+  expect(Array.from(data.usable.subarray(15, CONVERSION_COUNT))).toEqual([1, 0, 0, 0]);
+  for (const k of [16, 17, 18]) {
+    expect(temperature[k].residuals[0]).toBe(temperature[15].residuals[0]);
+    expect(temperature[k].residuals[3]).not.toBe(temperature[15].residuals[3]);
+  }
 });

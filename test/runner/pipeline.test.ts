@@ -236,6 +236,12 @@ describe('files sent again', () => {
     ]);
     await drain(ports, campaign);
     expect(await statusOf('A/oven/3.txt')).toEqual(['superseded']);
+    // Read and reduced before, but its row would not say so had it gone a moment sooner.
+    const gone = (await rowsOf(ports, campaign, 'scans')).find((row) => row.file === 'A/oven/3.txt')!;
+    const told = Object.entries(gone).filter(
+      ([, cell]) => cell !== null && !(Array.isArray(cell) && cell.length === 0),
+    );
+    expect(told.map(([column]) => column)).toEqual(['file', 'sha256', 'status']);
     expect(await rowsOf(ports, campaign, 'parameters')).toMatchObject([{ scan_count: 2 }]);
   });
 });
