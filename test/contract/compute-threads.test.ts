@@ -34,7 +34,7 @@ it('a replacement that cannot load its file ends every task with the reason, ins
   await writeFile(gone, '');
   await expect(threads.readScan(new Uint8Array(1), 'a.txt')).rejects.toThrow(/exited with code: 3/);
   const message = () => threads.readScan(new Uint8Array(1), 'a.txt').catch((error: Error) => error.message);
-  await expect.poll(message).toMatch(/cannot load .*vanishing\.mjs.*half an update/);
+  await expect.poll(message, { timeout: 15_000 }).toMatch(/cannot load .*vanishing\.mjs.*half an update/);
   await threads.close();
 });
 

@@ -141,43 +141,52 @@ test('a table that meets lost curves has them made again', async () => {
   expect(await allTables(ports, id)).toBe(expected);
 });
 
+function promised() {
+  let resolve: () => void = () => {};
+  const promise = new Promise<void>((done) => {
+    resolve = done;
+  });
+  return { promise, resolve };
+}
+
 test('a stop hands back what is not finished in time, and its late end counts for nothing', async () => {
   const { id } = await createCampaign(ports, 'trial');
   await receiveFile(ports, id, 'A/oven/1.txt', new TextEncoder().encode('rate 1'));
-  let finish: () => void = () => {};
+  const [entered, held, ended] = [promised(), promised(), promised()];
   const ends: JobEvent[] = [];
   const slow: Ports = {
     ...ports,
     compute: {
       ...ports.compute,
       readScan: async (...args) => {
-        await new Promise<void>((resolve) => {
-          finish = resolve;
-        });
+        entered.resolve();
+        await held.promise;
         return ports.compute.readScan(...args);
       },
     },
   };
-  const observer = { request() {}, trouble() {}, figures: () => '', job: (event: JobEvent) => ends.push(event) };
-  const runner = createRunner(slow, { concurrency: 1, owner: 'slow', observer });
+  const job = (event: JobEvent) => {
+    if (event.step !== 'read-scan') return;
+    ends.push(event);
+    ended.resolve();
+  };
+  const runner = createRunner(slow, {
+    concurrency: 1,
+    owner: 'slow',
+    observer: { request() {}, trouble() {}, figures: () => '', job },
+  });
   runner.start();
   const jobNow = async () =>
     (await ports.database.read.select().from(jobs).where(eq(jobs.step, 'read-scan')))[0] ?? { state: 'none' };
-  await expect
-    .poll(async () => {
-      ports.clock.advance(250);
-      return (await jobNow()).state;
-    })
-    .toBe('running');
-  const stopped = runner.stop(1_000);
-  for (let turn = 0; turn < 20; turn++) await new Promise((resolve) => setImmediate(resolve));
-  ports.clock.advance(1_001);
-  await stopped;
+  const ticking = setInterval(() => ports.clock.advance(250), 5);
+  await entered.promise;
+  expect(await jobNow()).toMatchObject({ state: 'running' });
+  await runner.stop(1_000);
+  clearInterval(ticking);
   expect(await jobNow()).toMatchObject({ state: 'queued', attempts: 0, lastError: 'its worker was stopped' });
-  finish();
-  await expect
-    .poll(() => ends.filter((event) => event.step === 'read-scan').map((event) => event.end))
-    .toEqual(['late']);
+  held.resolve();
+  await ended.promise;
+  expect(ends.map((event) => event.end)).toEqual(['late']);
   expect(await jobNow()).toMatchObject({ state: 'queued' });
   await drain(ports, id);
   expect(await jobNow()).toMatchObject({ state: 'done', attempts: 1 });
