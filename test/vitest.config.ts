@@ -11,6 +11,9 @@ export default defineConfig({
     include: ['test/**/*.test.ts', 'test/**/*.test.tsx'],
     testTimeout: 20_000,
     pool: 'forks',
+    // Files share their worker's modules, which hold hardly any state: loading them anew for each file took a third of the time.
+    isolate: false,
+    restoreMocks: true,
     maxWorkers: 2,
     reporters: ['default', new ValidationReporter('compare')],
   },
