@@ -11,6 +11,17 @@ export interface Band {
 const LEAST_DRAWS = 20;
 const LEAST_SHARE = 0.9;
 
+/** The quantile of the last degrees of freedom: a diagram asks hundreds of bands of one source, and it costs more than the rest of a band. */
+let [lastDegrees, lastQuantile] = [Number.NaN, Number.NaN];
+
+function halfQuantile(degreesOfFreedom: number): number {
+  if (degreesOfFreedom !== lastDegrees) {
+    lastQuantile = studentQuantile(0.975, Math.max(1, degreesOfFreedom));
+    lastDegrees = degreesOfFreedom;
+  }
+  return lastQuantile;
+}
+
 /**
  * Estimate ± t(0.975, n − p) × spread of the draws. No ends where too few draws answer: a band is never made of the draws that happened to.
  */
@@ -25,7 +36,7 @@ export function bandOf(value: number, drawn: ArrayLike<number>, degreesOfFreedom
   const mean = sum / count;
   let squares = 0;
   for (let d = 0; d < drawn.length; d++) if (Number.isFinite(drawn[d])) squares += (drawn[d] - mean) ** 2;
-  const half = studentQuantile(0.975, Math.max(1, degreesOfFreedom)) * Math.sqrt(squares / (count - 1));
+  const half = halfQuantile(degreesOfFreedom) * Math.sqrt(squares / (count - 1));
   return { value, lower: value - half, upper: value + half };
 }
 

@@ -65,8 +65,8 @@ function meltingRamp(curve: RateCurve, law: SharedLaw, { meltingK }: MeltingData
   return layPanels(ramp, curve.steepness, curve.breaksK, rule);
 }
 
-/** A temperature below which less than e^−40 of the rate is left. */
-function coldEnd(curve: RateCurve, fromK: number): number {
+/** A temperature below which less than e^−40 of the rate at `fromK` is left. */
+export function coldEnd(curve: RateCurve, fromK: number): number {
   const top = curve.lnRate(fromK);
   let T = fromK;
   while (T > 20 && curve.lnRate(T) > top - 40) T *= 0.95;

@@ -179,7 +179,7 @@ export function modelFreeKinetics(
   return { estimate, draws: drawn ? make(drawn.energyJPerMol, drawn.lnStep) : [] };
 }
 
-const placeAt = (curve: ModelFreeCurve, conversion: number): Place => {
+export const placeAt = (curve: ModelFreeCurve, conversion: number): Place => {
   const { segment, share } = shareAt(curve, conversion);
   return { segment, share, lnShare: Math.log(share) };
 };

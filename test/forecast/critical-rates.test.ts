@@ -1,5 +1,5 @@
 import { describe, expect, test } from 'vitest';
-import { criticalRateRows, drawHeating, drawTransformation, findCriticalRates } from '../../jobs/forecast/index.ts';
+import { criticalRateRows, drawTransformation, findCriticalRates } from '../../jobs/forecast/index.ts';
 import { GAS_CONSTANT as R } from '../../schema/wire/units.ts';
 import { validate } from '../validation/validate.ts';
 import { LAW, sourceOf, straightLaw } from './sources.ts';
@@ -8,7 +8,6 @@ const law = { ...straightLaw(250e3, 36, 3, 600, 700), frozenBelowK: 600 };
 const CRITICAL = 5.936772450986e3;
 const NOSE_K = 968.997426396;
 const NOSE_S = 1.301424998511e-2;
-const HEATED_K = 787.497255926;
 const melting = { meltingK: 1000, enthalpyJPerMol: 20e3 };
 const source = sourceOf(law, { sdExponent: 0.02 }, { melting });
 
@@ -82,18 +81,13 @@ describe('diagrams', () => {
       expect(line.upper[i]).toBeGreaterThanOrEqual(t);
     });
     expect(Math.abs(line.x[fastest] - NOSE_K)).toBeLessThan(6);
+    line.x.forEach((T, i) => {
+      expect(line.beyondMeasuredK[i]).toBe(T < 600 ? 600 - T : T > 700 ? T - 700 : 0);
+    });
     expect(fastest).toBeLessThan(line.x.length - 1);
-  });
-  test('constant heating: the temperature of α = 0.5 at 2 K/s to 1e-6 K', () => {
-    const [line] = drawHeating(source, [2, 0.2], [0.5]);
-    expect(Array.from(line.x)).toEqual([0.2, 2]);
-    expect(Math.abs(line.y[1] - HEATED_K)).toBeLessThan(1e-4);
-    expect(line.y[0]).toBeLessThan(line.y[1]);
-    expect(line.lower[1]).toBeLessThan(line.y[1]);
   });
   test('a source without a law draws the model-free lines only', () => {
     const free = { ...source, law: undefined, lawDraws: undefined };
-    expect(drawHeating(free, [1])).toEqual([]);
     expect(new Set(drawTransformation(free).map((l) => l.method))).toEqual(new Set(['model_free']));
   });
 });
