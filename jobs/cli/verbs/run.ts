@@ -15,6 +15,7 @@ import {
   campaignStatus,
   createCampaign,
   findCampaign,
+  listInputs,
   receiveFile,
   withdrawMissingFiles,
 } from '../../store/index.ts';
@@ -65,8 +66,10 @@ export async function run([folder]: string[], values: Values, terminal: Terminal
     const computed = performance.now();
     const rows = await writeResultTables(ports, campaign.id, out);
     await writeReportFile(ports, campaign, out);
+    const hashes = new Map((await listInputs(ports, campaign.id)).map(({ file, sha256 }) => [file, sha256]));
     const inputs = [];
-    for (const file of listed.files) inputs.push({ file: file.path, sha256: await hashFile(file.location) });
+    for (const { path, location } of listed.files)
+      inputs.push({ file: path, sha256: hashes.get(path) ?? (await hashFile(location)) });
     const written = performance.now();
     const seconds = (from: number, to: number): number => Number(((to - from) / 1000).toFixed(3));
     await writeRunRecord(out, {

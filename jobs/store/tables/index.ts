@@ -19,13 +19,12 @@ export async function* readTable(
   table: ResultTable,
   filter: TableFilter = {},
 ): AsyncGenerator<ResultRow> {
-  const { offset = 0, limit = Number.POSITIVE_INFINITY } = filter;
-  let position = 0;
+  const { limit = Number.POSITIVE_INFINITY } = filter;
   if (limit <= 0) return;
-  for await (const row of await rowsOf(ports, campaignId, table, filter)) {
-    if (position++ < offset) continue;
+  let given = 0;
+  for await (const row of rowsFrom(ports, campaignId, table, filter)) {
     yield row;
-    if (position >= offset + limit) return;
+    if (++given >= limit) return;
   }
 }
 
@@ -39,30 +38,46 @@ export async function* readCurrentTable(
     if (table !== 'scans' || row.status !== 'superseded') yield row;
 }
 
-async function rowsOf(
-  ports: Ports,
-  campaignId: string,
-  table: ResultTable,
-  filter: TableFilter,
-): Promise<Iterable<ResultRow> | AsyncIterable<ResultRow>> {
-  const { sample } = filter;
+type Rows = Iterable<ResultRow> | AsyncIterable<ResultRow>;
+
+/** From position `offset` on. */
+function rowsFrom(ports: Ports, campaignId: string, table: ResultTable, filter: TableFilter): Rows {
   switch (table) {
     case 'parameters':
       return readParameterTable(ports, campaignId, filter);
+    case 'verdicts':
+    case 'forecasts':
+    case 'advice':
+      return readBodies(ports, campaignId, table, filter);
+    default:
+      return skipRows(otherTable(ports, campaignId, table, filter.sample), filter.offset);
+  }
+}
+
+type OtherTable = Exclude<ResultTable, 'parameters' | 'verdicts' | 'forecasts' | 'advice'>;
+
+async function otherTable(
+  ports: Ports,
+  campaignId: string,
+  table: OtherTable,
+  sample: string | undefined,
+): Promise<Rows> {
+  switch (table) {
     case 'scans':
       return readScanTable(ports, campaignId, sample);
     case 'conversion':
       return readConversionTable(ports, campaignId, sample);
     case 'instruments':
       return readInstrumentTable(ports, campaignId);
-    case 'verdicts':
-    case 'forecasts':
-    case 'advice':
-      return readBodies(ports, campaignId, table, sample);
     case 'coverage':
     case 'gaps':
       return readPlanTable(ports, campaignId, table, sample);
     case 'flags':
       return (await readFlagTable(ports, campaignId)).filter((row) => sample === undefined || row.sample === sample);
   }
+}
+
+async function* skipRows(rows: Promise<Rows>, offset = 0): AsyncGenerator<ResultRow> {
+  let position = 0;
+  for await (const row of await rows) if (position++ >= offset) yield row;
 }

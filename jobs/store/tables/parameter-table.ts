@@ -2,46 +2,50 @@ import { and, asc, eq } from 'drizzle-orm';
 import { instruments, parameters, plans } from '../../../schema/tables/index.ts';
 import type { Ports } from '../../ports/index.ts';
 import type { ResultRow, TableFilter } from './result-row.ts';
+import { sampleChunks } from './sample-chunks.ts';
 import { compareCells } from './scan-table.ts';
 
-/** By sample and event, then as the steps ordered them: fit, verdict, forecast. */
-export async function readParameterTable(
+/** By sample and event, then as the steps ordered them: fit, verdict, forecast. From position `offset` on. */
+export async function* readParameterTable(
   ports: Pick<Ports, 'database'>,
   campaignId: string,
-  { sample, quantity, method, event }: TableFilter,
-): Promise<ResultRow[]> {
-  const rows = await ports.database.read
-    .select()
-    .from(parameters)
-    .where(
-      and(
-        eq(parameters.campaignId, campaignId),
-        sample === undefined ? undefined : eq(parameters.sample, sample),
-        quantity === undefined ? undefined : eq(parameters.quantity, quantity),
-        method === undefined ? undefined : eq(parameters.method, method),
-        event === undefined ? undefined : eq(parameters.event, event),
-      ),
-    )
-    .orderBy(asc(parameters.sample), asc(parameters.event), asc(parameters.position));
-  return rows.map((row) => ({
-    sample: row.sample,
-    event: row.event,
-    quantity: row.quantity,
-    method: row.method,
-    conversion: row.conversion,
-    temperature_K: row.temperatureK,
-    value: row.value,
-    unit: row.unit,
-    lower95: row.lower95,
-    upper95: row.upper95,
-    scan_count: row.scanCount,
-    rate_min_K_per_s: row.rateMinKPerS,
-    rate_max_K_per_s: row.rateMaxKPerS,
-    flags: row.flags,
-    interval: row.interval,
-    variant: row.variant,
-  }));
+  { sample, quantity, method, event, offset }: TableFilter,
+): AsyncGenerator<ResultRow> {
+  const where = and(
+    eq(parameters.campaignId, campaignId),
+    sample === undefined ? undefined : eq(parameters.sample, sample),
+    quantity === undefined ? undefined : eq(parameters.quantity, quantity),
+    method === undefined ? undefined : eq(parameters.method, method),
+    event === undefined ? undefined : eq(parameters.event, event),
+  );
+  for await (const { of, skip } of sampleChunks(ports, parameters, where, offset)) {
+    const rows = await ports.database.read
+      .select()
+      .from(parameters)
+      .where(of)
+      .orderBy(asc(parameters.sample), asc(parameters.event), asc(parameters.position));
+    for (let i = skip; i < rows.length; i++) yield resultRowOf(rows[i]);
+  }
 }
+
+const resultRowOf = (row: typeof parameters.$inferSelect): ResultRow => ({
+  sample: row.sample,
+  event: row.event,
+  quantity: row.quantity,
+  method: row.method,
+  conversion: row.conversion,
+  temperature_K: row.temperatureK,
+  value: row.value,
+  unit: row.unit,
+  lower95: row.lower95,
+  upper95: row.upper95,
+  scan_count: row.scanCount,
+  rate_min_K_per_s: row.rateMinKPerS,
+  rate_max_K_per_s: row.rateMaxKPerS,
+  flags: row.flags,
+  interval: row.interval,
+  variant: row.variant,
+});
 
 /** Calibrated instruments by name. */
 export async function readInstrumentTable(ports: Pick<Ports, 'database'>, campaignId: string): Promise<ResultRow[]> {
