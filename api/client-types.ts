@@ -268,7 +268,8 @@ export interface Curves {
     | 'local_energy'
     | 'growth'
     | 'viscosity'
-    | 'ttt';
+    | 'ttt'
+    | 'constant_heating';
   x: { quantity: string; unit: string };
   y: { quantity: string; unit: string };
   series: {
@@ -281,7 +282,9 @@ export interface Curves {
     upper?: number[];
     unit?: string;
     time_s?: number[];
+    beyond_measured_K?: number[];
   }[];
+  caution?: string;
 }
 
 export interface Scan {
@@ -393,6 +396,7 @@ export interface CalibrationCurves {
     upper?: number[];
     unit?: string;
     time_s?: number[];
+    beyond_measured_K?: number[];
   }[];
 }
 
@@ -539,7 +543,8 @@ export interface Operations {
         | 'local_energy'
         | 'growth'
         | 'viscosity'
-        | 'ttt';
+        | 'ttt'
+        | 'constant_heating';
     };
     body: undefined;
     answer: Curves;

@@ -29,6 +29,7 @@ export const CURVE_AXES: Record<CurveKind, Pick<Curves, 'x' | 'y'>> = {
   growth: { x: { quantity: 'log10 viscosity', unit: 'Pa s' }, y: { quantity: 'log10 K', unit: '1/s' } },
   viscosity: { x: { quantity: 'Tg/T', unit: '1' }, y: { quantity: 'log10 viscosity', unit: 'Pa s' } },
   ttt: { x: TEMPERATURE, y: { quantity: 'time', unit: 's' } },
+  constant_heating: { x: { quantity: 'heating rate', unit: 'K/s' }, y: TEMPERATURE },
 };
 
 /** Rounds to a millionth of the largest size: beyond any noise, and half the bytes. */
@@ -194,20 +195,4 @@ export function glassCurves(judged: EventPlots, kind: 'growth' | 'viscosity'): P
   );
   const { x, y } = found[0]?.plot ?? CURVE_AXES[kind];
   return { x, y, series: found.flatMap(({ event, plot }) => plot.series.map((series) => namedByEvent(event, series))) };
-}
-
-/** Time to each conversion against temperature, with its band, one series an event, method and conversion. */
-export function transformationSeries(
-  lines: {
-    event: number;
-    line: { method: string; conversion: number } & Record<'x' | 'y' | 'lower' | 'upper', Float64Array>;
-  }[],
-): CurveSeries[] {
-  return lines.map(({ event, line }) => ({
-    name: `event ${event}, ${line.method}, conversion ${line.conversion}`,
-    x: [...line.x],
-    y: [...line.y],
-    lower: [...line.lower],
-    upper: [...line.upper],
-  }));
 }

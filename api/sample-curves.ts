@@ -1,5 +1,5 @@
 import type { Ports } from '../jobs/ports/index.ts';
-import { answerTransformation } from '../jobs/steps/answer-forecast.ts';
+import { readDiagrams } from '../jobs/steps/answer-forecast.ts';
 import {
   listSampleScans,
   type ResultRow,
@@ -9,6 +9,7 @@ import {
   type SampleView,
   type TableFilter,
 } from '../jobs/store/index.ts';
+import { FORECAST_CAUTION } from '../schema/wire/forecasts.ts';
 import type { ResultTable } from '../schema/wire/result-tables.ts';
 import {
   CURVE_AXES,
@@ -20,8 +21,8 @@ import {
   localEnergySeries,
   type ReducedSampleScan,
   traceSeries,
-  transformationSeries,
 } from './curves.ts';
+import { criticalRateSeries, diagramSeries } from './diagram-series.ts';
 import { CURVE_KINDS, type CurveKind, type CurveSeries, type Curves } from './shapes/curves.ts';
 
 async function reducedScans(ports: Ports, { campaignId, sample }: SampleView): Promise<ReducedSampleScan[]> {
@@ -37,6 +38,7 @@ async function reducedScans(ports: Ports, { campaignId, sample }: SampleView): P
 interface CurveSources {
   reduced(): Promise<ReducedSampleScan[]>;
   plots(): ReturnType<typeof readSamplePlots>;
+  diagrams(): ReturnType<typeof readDiagrams>;
   scans(): Promise<ResultRow[]>;
   /** Rows of one quantity or method at least */
   parameters(filter: TableFilter): Promise<ResultRow[]>;
@@ -47,7 +49,7 @@ function once<Value>(read: () => Promise<Value>): () => Promise<Value> {
   return () => (value ??= read());
 }
 
-async function makeCurves(ports: Ports, sample: SampleView, kind: CurveKind, sources: CurveSources): Promise<Curves> {
+async function makeCurves(kind: CurveKind, sources: CurveSources): Promise<Curves> {
   if (kind === 'growth' || kind === 'viscosity') return { kind, ...glassCurves(await sources.plots(), kind) };
   const series: Record<Exclude<CurveKind, 'growth' | 'viscosity'>, () => Promise<CurveSeries[]>> = {
     thermogram: async () => traceSeries(await sources.reduced(), 'heatFlow'),
@@ -59,13 +61,24 @@ async function makeCurves(ports: Ports, sample: SampleView, kind: CurveKind, sou
     ],
     energy: async () => energySeries(await sources.parameters({ quantity: 'activation_energy' })),
     local_energy: async () => localEnergySeries(await sources.plots()),
-    ttt: async () => transformationSeries(await answerTransformation(ports, sample.id)),
+    ttt: async () => diagramSeries((await sources.diagrams())('ttt')),
+    constant_heating: async () => {
+      const drawn = (await sources.diagrams())('constant_heating');
+      const critical = await sources.parameters({ quantity: 'critical_heating_rate' });
+      return [...diagramSeries(drawn), ...criticalRateSeries(drawn, critical)];
+    },
   };
   const { x, y } = CURVE_AXES[kind];
   const made = await series[kind]();
   const units = new Set(made.flatMap(({ unit }) => unit ?? []));
   const [unit] = units;
-  return { kind, x, y: units.size === 1 ? { ...y, unit } : y, series: made };
+  return {
+    kind,
+    x,
+    y: units.size === 1 ? { ...y, unit } : y,
+    series: made,
+    ...((kind === 'ttt' || kind === 'constant_heating') && { caution: FORECAST_CAUTION }),
+  };
 }
 
 /** The curves of one kind of a sample. */
@@ -76,9 +89,10 @@ export function readCurves(ports: Ports, sample: SampleView, kind: CurveKind): P
       rows.push(row);
     return rows;
   };
-  return makeCurves(ports, sample, kind, {
+  return makeCurves(kind, {
     reduced: () => reducedScans(ports, sample),
     plots: () => readSamplePlots(ports, sample.id),
+    diagrams: () => readDiagrams(ports, sample.id),
     scans: () => rowsOf('scans', {}),
     parameters: (filter) => rowsOf('parameters', filter),
   });
@@ -93,12 +107,13 @@ export async function readEveryCurve(
   const sources: CurveSources = {
     reduced: once(() => reducedScans(ports, sample)),
     plots: once(() => readSamplePlots(ports, sample.id)),
+    diagrams: once(() => readDiagrams(ports, sample.id)),
     scans: async () => rows.scans,
     parameters: async () => rows.parameters,
   };
   const curves: Partial<Record<CurveKind, Curves>> = {};
   for (const kind of CURVE_KINDS) {
-    const found = await makeCurves(ports, sample, kind, sources);
+    const found = await makeCurves(kind, sources);
     if (found.series.length > 0) curves[kind] = found;
   }
   return curves;

@@ -9,7 +9,7 @@ import { type ApiApp, answersOf, BY_ID, ID_PARAM, oneOf, strict } from '../opena
 import { Problem } from '../problems.ts';
 import { isUnchanged, requireCampaign, requireOf, resultAnswers } from '../results.ts';
 import { readCurves } from '../sample-curves.ts';
-import { CURVE_KINDS, CurvesShape } from '../shapes/curves.ts';
+import { CURVE_KINDS, CURVE_NOTES, CurvesShape } from '../shapes/curves.ts';
 import { AnswerShape, QUESTION_FORMS, QuestionBody, questionOf } from '../shapes/forecasts.ts';
 
 const SampleShape = z
@@ -35,6 +35,7 @@ const curvesRoute = createRoute({
   method: 'get',
   path: '/v1/samples/{id}/curves',
   summary: 'Curves of one kind, at most 2000 points each, extremes kept.',
+  description: CURVE_NOTES,
   request: { params: ID_PARAM, query: strict({ kind: oneOf(CURVE_KINDS) }) },
   responses: resultAnswers(CurvesShape, 'The curves.'),
 });

@@ -11,8 +11,12 @@ export const CURVE_KINDS = [
   'growth',
   'viscosity',
   'ttt',
+  'constant_heating',
 ] as const;
 export type CurveKind = (typeof CURVE_KINDS)[number];
+
+export const CURVE_NOTES =
+  'The diagrams `ttt` (time at constant temperature) and `constant_heating` (temperature at constant heating rate) have one series an event, method and conversion, with the 95 % band and with the distance of each point from the measured temperatures. Where a critical heating rate is known a series of that name stands upright at it up to the melting temperature, and there goes to the lower and to the upper end of its interval.';
 
 /** Points of one curve at most. */
 export const CURVE_POINTS = 2000;
@@ -32,6 +36,8 @@ export const seriesShape = z.object({
   unit: z.string().optional(),
   /** s from the start of a hold, whose temperature hardly changes */
   time_s: points.optional(),
+  /** How far the temperature of each point of a forecast lies outside the measured ones, K */
+  beyond_measured_K: points.optional(),
 });
 
 export const CurvesShape = z
@@ -40,6 +46,8 @@ export const CurvesShape = z
     x: axisShape,
     y: axisShape,
     series: z.array(seriesShape),
+    /** What stands on every forecast */
+    caution: z.string().optional(),
   })
   .openapi('Curves');
 export type Curves = z.infer<typeof CurvesShape>;

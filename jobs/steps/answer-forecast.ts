@@ -1,5 +1,5 @@
-import type { ForecastQuestion, ForecastRow } from '../../schema/wire/forecasts.ts';
-import { answerQuestion, type DiagramLine, drawTransformation } from '../forecast/index.ts';
+import type { ForecastQuestion, ForecastRow, ForecastSource } from '../../schema/wire/forecasts.ts';
+import { answerQuestion, type DiagramLine, drawHeating, drawTransformation } from '../forecast/index.ts';
 import type { Ports } from '../ports/index.ts';
 import { readForecastSources } from '../store/forecast-sources.ts';
 
@@ -16,11 +16,28 @@ export async function answerForecast(
   return sources.flatMap((source) => answerQuestion(source, question));
 }
 
-/** Lines of the time–temperature–transformation diagram, by event. */
-export async function answerTransformation(
+const DIAGRAMS = {
+  ttt: (source: ForecastSource) => drawTransformation(source),
+  constant_heating: (source: ForecastSource) => drawHeating(source),
+};
+
+/** A diagram of one event. */
+export interface EventDiagram {
+  event: number;
+  meltingK?: number;
+  lines: DiagramLine[];
+}
+
+/** Diagrams of every event of a sample, drawn when asked for, from one look at what its forecasts left. */
+export async function readDiagrams(
   ports: Ports,
   sampleId: string,
-): Promise<{ event: number; line: DiagramLine }[]> {
+): Promise<(kind: keyof typeof DIAGRAMS) => EventDiagram[]> {
   const sources = await readForecastSources(ports, sampleId);
-  return sources.flatMap((source) => drawTransformation(source).map((line) => ({ event: source.event, line })));
+  return (kind) =>
+    sources.map((source) => ({
+      event: source.event,
+      lines: DIAGRAMS[kind](source),
+      ...(source.melting && { meltingK: source.melting.meltingK }),
+    }));
 }

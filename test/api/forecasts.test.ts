@@ -16,6 +16,7 @@ beforeAll(async () => {
     goals: [{ sample: 'glass', conversion: 0.01, temperature_C: 250, time_s: 60 }],
   });
   campaign = made.body.id;
+  await api.upload(campaign, 'samples.csv', new TextEncoder().encode('sample,melting temperature [°C]\nglass,450\n'));
   for (const [path, bytes] of smallCampaign()) await api.upload(campaign, path, bytes);
   await api.drain();
   sample = (await api.get(`/v1/campaigns/${campaign}/status`)).body.samples[0].id;
@@ -150,6 +151,35 @@ describe('a campaign with curves', () => {
     expect(Math.abs(y[0] / TRUE_ENERGY_KJ_PER_MOL - 1)).toBeLessThan(0.02);
     expect(lower[0] < y[0] && y[0] < upper[0]).toBe(true);
     expect((await api.get(`/v1/samples/${sample}/curves?kind=growth`)).body.series).toEqual([]);
+  });
+
+  it('draws constant heating with bands, the distance from the data and the critical heating rate', async () => {
+    const { body } = await api.get(`/v1/samples/${sample}/curves?kind=constant_heating`);
+    expect([body.x, body.y]).toEqual([
+      { quantity: 'heating rate', unit: 'K/s' },
+      { quantity: 'temperature', unit: 'K' },
+    ]);
+    expect(body.caution).toBe(FORECAST_CAUTION);
+    for (const method of ['shared_law', 'model_free']) {
+      const half = body.series.find((s: Body) => s.name === `event 1, ${method}, conversion 0.5`);
+      // At the slowest measured rate, 2 K/min: ∫K dT up to the true temperature of one half is β [−ln(1 − α)]^(1/n), by steps of 0.01 K.
+      const at = half.x.findIndex((rate: number) => rate >= 2 / 60);
+      let sum = 0;
+      let trueK = 400;
+      for (; sum < half.x[at] * Math.LN2 ** (1 / 3); trueK += 0.01)
+        sum += 0.01 / trueTimeS(1 - 1 / Math.E, trueK - 273.15);
+      expect(Math.abs(half.y[at] - trueK)).toBeLessThan(1);
+      expect(half.lower[at] < half.y[at] && half.y[at] < half.upper[at]).toBe(true);
+      expect(half.beyond_measured_K[at]).toBeLessThan(2);
+      expect(half.beyond_measured_K[0]).toBeGreaterThan(20);
+    }
+    const row = (await table('parameters')).find((p) => p.quantity === 'critical_heating_rate')!;
+    const critical = body.series.find((s: Body) => s.name === 'event 1, shared_law, critical heating rate');
+    expect(critical.x).toEqual([row.value, row.value, row.lower95, row.upper95]);
+    expect(critical.y.slice(1)).toEqual([723.15, 723.15, 723.15]);
+    const onePercent = body.series.find((s: Body) => s.name === 'event 1, shared_law, conversion 0.01');
+    expect(Math.abs(onePercent.x.at(-1) / row.value - 1)).toBeLessThan(1e-3);
+    expect(onePercent.y.at(-1)).toBeGreaterThan(720);
   });
 });
 

@@ -1,5 +1,8 @@
+import { h } from 'preact';
+import { renderToString } from 'preact-render-to-string';
 import { expect, test } from 'vitest';
 import { bandPath, linePath } from '../../web/charts/curve-path.ts';
+import { CurvePlot, layoutCurvePlot } from '../../web/charts/curve-plot.tsx';
 import { createPlotScale, createTemperatureScale } from '../../web/charts/plot-scale.ts';
 import { layoutLanes } from '../../web/charts/thermogram-lanes.tsx';
 import { tabsFromCsv } from '../../web/client/tabs.ts';
@@ -116,6 +119,26 @@ test('curves part by event, and by method of forecast', () => {
   const [first] = splitCurves(curves(['event 1, shared_law, conversion 0.5', 'event 1, model_free, conversion 0.01']));
   expect(first.names).toEqual(['shared law']);
   expect(first.curves.series.map((s) => s.name)).toEqual(['α = 0.5']);
+});
+
+test('a diagram of heating has both axes in the chosen units, and is heavy where it was measured', () => {
+  const heating: Curves = {
+    kind: 'constant_heating',
+    x: { quantity: 'heating rate', unit: 'K/s' },
+    y: { quantity: 'temperature', unit: 'K' },
+    series: [{ name: 'α = 0.5', x: [0.001, 0.1, 1, 10], y: [400, 420, 440, 460], beyond_measured_K: [9, 0, 0, 11] }],
+  };
+  const layout = layoutCurvePlot(heating, 600, { temperature: '°C', rate: 'K/min' });
+  expect([layout.xLabel, layout.yLabel]).toEqual(['Heating rate, K/min', 'Temperature, °C']);
+  // 60 K/min are 1 K/s, 160 °C are 433.15 K.
+  expect(layout.x.ticks.find(({ label }) => label === '10')?.at).toBeCloseTo(layout.x.at(1 / 6), 6);
+  expect(layout.y.ticks.find(({ label }) => label === '160')?.at).toBeCloseTo(layout.y.at(433.15), 6);
+  const drawn = renderToString(h(CurvePlot, { layout, instruments: [] }));
+  const [measured] = /class="law measured dash-0" d="([^"]+)"/.exec(drawn)?.slice(1) ?? [];
+  expect(measured).toBe(linePath([0.1, 1], [420, 440], layout.x, layout.y));
+  const { columns, rows } = curveRows(heating);
+  expect(columns.at(-1)).toBe('beyond_measured [K]');
+  expect(rows.map((row) => row['beyond_measured [K]'])).toEqual([9, 0, 0, 11]);
 });
 
 test('points of curves become rows with their units in the head', () => {

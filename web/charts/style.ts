@@ -198,6 +198,10 @@ export const CHART_STYLE = `
   stroke-width: 1.4;
 }
 
+.measured {
+  stroke-width: 2.6;
+}
+
 .dash-1 {
   stroke-dasharray: 7 4;
 }

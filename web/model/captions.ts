@@ -1,3 +1,4 @@
+import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import type { CurveKind } from './curves.ts';
 
 /** Title and words of each figure, on the page and in the report. */
@@ -36,7 +37,10 @@ export const FIGURES: Record<Exclude<CurveKind, 'baseline'> | 'hold', { title: s
   viscosity: { title: 'Viscosity', caption: 'Measured or derived viscosity over temperature.' },
   ttt: {
     title: 'Time, temperature, transformation',
-    caption:
-      'Time to reach a conversion when held at each temperature, with its 95 % band. An aid to planning experiments, not a basis for process-safety, medical or release decisions.',
+    caption: `Time to reach a conversion when held at each temperature, with its 95 % band; heavy within the measured temperatures, carried on outside. ${FORECAST_CAUTION}`,
+  },
+  constant_heating: {
+    title: 'Constant heating',
+    caption: `Temperature at which a conversion is reached on heating from the cold at a constant rate, with its 95 % band; heavy within the measured temperatures, carried on outside. Where melting is known, lines of the shared law end there, and an upright line stands at the critical heating rate, above which less than 1 % crystallises, with its 95 % interval across its top. ${FORECAST_CAUTION}`,
   },
 };

@@ -13,6 +13,8 @@ export interface CurveSeries {
   unit?: string;
   /** s from the start of a hold */
   time_s?: number[];
+  /** K of each point's temperature outside the measured ones */
+  beyond_measured_K?: number[];
 }
 
 /** Kinds of curves a sample may have, in the order in which they are shown. */
@@ -25,7 +27,8 @@ export type CurveKind =
   | 'local_energy'
   | 'growth'
   | 'viscosity'
-  | 'ttt';
+  | 'ttt'
+  | 'constant_heating';
 
 /** Body of GET /samples/:id/curves. */
 export interface Curves {
@@ -142,6 +145,7 @@ export function curveRows(curves: Curves): { columns: string[]; rows: Record<str
   const hasBand = curves.series.some((s) => s.lower !== undefined);
   const hasUnit = curves.series.some((s) => s.unit !== undefined);
   const hasTime = curves.series.some((s) => s.time_s !== undefined);
+  const hasBeyond = curves.series.some((s) => s.beyond_measured_K !== undefined);
   const columns = [
     'series',
     'instrument',
@@ -151,6 +155,7 @@ export function curveRows(curves: Curves): { columns: string[]; rows: Record<str
   if (hasUnit) columns.push('unit');
   if (hasTime) columns.push('time [s]');
   if (hasBand) columns.push('lower95', 'upper95');
+  if (hasBeyond) columns.push('beyond_measured [K]');
   const rows = curves.series.flatMap((s) =>
     s.x.map((x, i) => ({
       series: s.name,
@@ -160,6 +165,7 @@ export function curveRows(curves: Curves): { columns: string[]; rows: Record<str
       ...(hasUnit && { unit: s.unit ?? null }),
       ...(hasTime && { 'time [s]': s.time_s?.[i] ?? null }),
       ...(hasBand && { lower95: s.lower?.[i] ?? null, upper95: s.upper?.[i] ?? null }),
+      ...(hasBeyond && { 'beyond_measured [K]': s.beyond_measured_K?.[i] ?? null }),
     })),
   );
   return { columns, rows };

@@ -157,7 +157,7 @@ function CoverageFigure(props: {
   );
 }
 
-const OTHER_KINDS: CurveKind[] = ['local_energy', 'growth', 'viscosity', 'ttt'];
+const OTHER_KINDS: CurveKind[] = ['local_energy', 'growth', 'viscosity', 'ttt', 'constant_heating'];
 
 /** Every figure of one sample for which there are curves. */
 export function SampleFigures(props: {

@@ -9,7 +9,7 @@ import type { CurveKind, Curves } from '../model/curves.ts';
 import { openLivePage } from './live-page.ts';
 
 /** Kinds of curves shown below the thermograms. */
-const LATER_KINDS: CurveKind[] = ['conversion', 'kissinger', 'energy', 'local_energy', 'growth', 'viscosity', 'ttt'];
+const LATER_KINDS: CurveKind[] = ['conversion', 'kissinger', 'energy', 'local_energy', 'growth', 'viscosity', 'ttt', 'constant_heating'];
 
 export interface SampleData {
   sample: StatusSample;

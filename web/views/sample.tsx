@@ -25,7 +25,7 @@ import { ConversionFigure, EnergyFigures, InstrumentKeys, KissingerFigures, Othe
 import { ScanPanel } from './scan-panel.tsx';
 import { ScanTable } from './scan-table.tsx';
 
-const OTHER_KINDS: CurveKind[] = ['local_energy', 'growth', 'viscosity', 'ttt'];
+const OTHER_KINDS: CurveKind[] = ['local_energy', 'growth', 'viscosity', 'ttt', 'constant_heating'];
 
 /** One sample: its scans, what they give, and what is in doubt. */
 export function SampleView({ id, sample: name }: { id: string; sample: string }) {
