@@ -6,7 +6,7 @@ import { queueNext } from '../store/judge-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
 import { listSamples } from '../store/views.ts';
 import { compareText } from './assign-scans.ts';
-import { readDerived } from './columns-store.ts';
+import { readDerived } from './read-derived.ts';
 import { inputsKeyOf, loadFitScans, loadOrderedFit, seedOf } from './sample-inputs.ts';
 import { FIT_DRAWS } from './settings.ts';
 

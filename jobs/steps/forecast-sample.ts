@@ -12,9 +12,9 @@ import { hashOf } from '../store/ids.ts';
 import { saveForecasts } from '../store/judge-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
 import { loadBench, loadGoals, loadPrograms, type ProgramFile } from '../store/question-rows.ts';
-import { readDerived } from './columns-store.ts';
 import { readStoredFit } from './fit-sample.ts';
 import { type JudgeFacts, judgeKeyOf, loadJudgeFacts, readStoredJudgement } from './judge-curvature.ts';
+import { readDerived } from './read-derived.ts';
 import { inputsKeyOf, loadFitScans, loadOrderedFit } from './sample-inputs.ts';
 import { STEP_VERSIONS } from './settings.ts';
 

@@ -7,7 +7,7 @@ import { type ClaimedJob, failAttempt } from '../store/leases.ts';
 import { saveFailedFile, saveFailedScan } from '../store/scan-rows.ts';
 import { assignCampaign } from './assign-campaign.ts';
 import { calibrateInstrument } from './calibrate-instrument.ts';
-import type { ColumnsCache } from './columns-store.ts';
+import type { ColumnsCache } from './columns.ts';
 import { fitStoredSample } from './fit-sample.ts';
 import { forecastStoredSample } from './forecast-sample.ts';
 import { judgeStoredSample } from './judge-curvature.ts';
@@ -17,7 +17,7 @@ import { readSheetFile } from './read-sheet.ts';
 import { reduceStoredScan } from './reduce-scan.ts';
 import { unpackArchiveFile } from './unpack-archive.ts';
 
-export { ColumnsCache } from './columns-store.ts';
+export { ColumnsCache } from './columns.ts';
 
 const STEPS: Record<Step, (ports: Ports, job: ClaimedJob, cache: ColumnsCache) => Promise<void>> = {
   'read-sheet': readSheetFile,

@@ -7,7 +7,7 @@ import { hashOf } from '../store/ids.ts';
 import { judgementKey, queueNext, saveJudgement } from '../store/judge-rows.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
 import { loadBench, loadCompositions, loadViscosities } from '../store/question-rows.ts';
-import { readDerived } from './columns-store.ts';
+import { readDerived } from './read-derived.ts';
 import { inputsKeyOf, loadFitScans, loadOrderedFit, seedOf } from './sample-inputs.ts';
 import { FIT_DRAWS, STEP_VERSIONS } from './settings.ts';
 

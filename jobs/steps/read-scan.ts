@@ -12,19 +12,18 @@ import {
   saveReduction,
   saveRefusedFile,
 } from '../store/scan-rows.ts';
-import { columnsKeyOf, readOrLookUp } from './columns.ts';
-import type { ColumnsCache } from './columns-store.ts';
+import { type ColumnsCache, readColumns } from './columns.ts';
 import { highestHeatingRate } from './highest-rate.ts';
 import { type FoundReduction, reduceRows } from './reduce-scan.ts';
 
 /**
- * Step `read-scan`: the bytes of a data file to columns, kept as a blob, or the file set aside with the reason. Scans whose
- * instrument is calibrated already are reduced in the same go, which spares them a job and reading the columns back.
+ * Step `read-scan`: the bytes of a data file to columns, or the file set aside with the reason. Scans whose
+ * instrument is calibrated already are reduced in the same go, which spares them a job and reading the columns again.
  */
 export async function readScanFile(ports: Ports, job: ClaimedJob, cache: ColumnsCache): Promise<void> {
   const file = await loadFile(ports, job.subject);
   if (file?.state !== 'unread') return completeJob(ports, job);
-  const outcome = await readOrLookUp(ports, file);
+  const outcome = await readColumns(ports, file);
   if (!outcome.ok) {
     const { code, reason, action } = outcome.refusal;
     const flags = [flag(code, reason, action, { file: file.path })];
@@ -33,16 +32,15 @@ export async function readScanFile(ports: Ports, job: ClaimedJob, cache: Columns
   }
   const { scan } = outcome;
   const { flags } = scan;
-  const columnsKey = columnsKeyOf(file);
   const highestRateKPerS = highestHeatingRate(scan.timeS, scan.temperatureK);
   const ready = await loadReadyReductions(ports, file, highestRateKPerS);
-  if (ready.length === 0) cache.keep(columnsKey, scan);
+  if (ready.length === 0) cache.keep(file, scan);
   const reductions = await reduceAtOnce(ports, ready, scan);
   await completeJob(
     ports,
     job,
     (_db, now) => [
-      ...saveReadFile(file, { columnsKey, highestRateKPerS, flags }),
+      ...saveReadFile(file, { highestRateKPerS, flags }),
       ...reductions.flatMap((reduction) => saveReduction(reduction.scan, reduction.found)),
       ...queueReductions(file.campaignId, now, { fileId: file.id }),
     ],

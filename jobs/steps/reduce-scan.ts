@@ -7,9 +7,9 @@ import type { Ports } from '../ports/index.ts';
 import { hashOf } from '../store/ids.ts';
 import { type ClaimedJob, completeJob } from '../store/leases.ts';
 import { type FileRow, loadReduction, type ReductionRows, saveReduction } from '../store/scan-rows.ts';
-import { loadColumns, readOrLookUp } from './columns.ts';
-import { type ColumnsCache, readDerived } from './columns-store.ts';
+import { type ColumnsCache, loadColumns, readColumns } from './columns.ts';
 import { findReference, type ReferenceProblem, unreadable } from './find-reference.ts';
+import { readDerived } from './read-derived.ts';
 import { STEP_VERSIONS } from './settings.ts';
 
 /** What a reduction stores on its scan. */
@@ -67,7 +67,7 @@ async function reduceOrRefuse(
     flags: [],
   });
   if ('problem' in reference) return refuse(reference);
-  const read = await readOrLookUp(ports, reference);
+  const read = await readColumns(ports, reference);
   if (!read.ok) return refuse(unreadable(reference.path, read.refusal.reason));
   return ports.compute.reduceScan(await columns(), { ...input, reference: read.scan });
 }

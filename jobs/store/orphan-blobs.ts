@@ -48,7 +48,6 @@ async function namedKeys(ports: Ports, keys: readonly string[]): Promise<Set<str
       text`
         select name from (
           select blob_key as name from files where campaign_id = ${id}
-          union all select substr(columns_key, -64) from files where campaign_id = ${id}
           union all select substr(reduced_key, -64) from scans where campaign_id = ${id}
           union all select fit_key from samples where campaign_id = ${id}
           union all select judge_key from samples where campaign_id = ${id}

@@ -29,14 +29,11 @@ export async function loadFile(ports: Ports, id: string): Promise<FileRow | unde
 const scanSamples = (fileId: string) => sql`select sample from scans where file_id = ${fileId} and role = 'sample'`;
 
 /** A data file was read: its scans go on. */
-export function saveReadFile(
-  file: FileRow,
-  read: { columnsKey: string; highestRateKPerS: number; flags: Flag[] },
-): Statement[] {
+export function saveReadFile(file: FileRow, read: { highestRateKPerS: number; flags: Flag[] }): Statement[] {
   return [
     text`
-      update files set state = 'read', reason = null, columns_key = ${read.columnsKey},
-        highest_rate_k_per_s = ${read.highestRateKPerS}, flags = ${json(read.flags)} where id = ${file.id}`,
+      update files set state = 'read', reason = null, highest_rate_k_per_s = ${read.highestRateKPerS},
+        flags = ${json(read.flags)} where id = ${file.id}`,
     text`update scans set status = 'read' where file_id = ${file.id} and status = 'received'`,
     // A faster scan may make a chip of what was taken for a furnace.
     text`
@@ -71,8 +68,8 @@ export function saveFailedFile(db: LibSQLDatabase, campaignId: string, fileId: s
   ];
 }
 
-/** What finding or making the columns of a file takes. */
-export type ColumnsSource = Pick<FileRow, 'campaignId' | 'path' | 'sha256' | 'blobKey'>;
+/** What reading the columns of a file, and a hash of what was read, takes. */
+export type DataFile = Pick<FileRow, 'campaignId' | 'path' | 'sha256' | 'blobKey'>;
 
 /** What a reduction reads of its scan and what its write-back asks for. */
 export type ScanToReduce = Pick<
@@ -82,7 +79,7 @@ export type ScanToReduce = Pick<
 
 export interface ReductionRows {
   scan: ScanToReduce;
-  file: ColumnsSource;
+  file: DataFile;
   calibration: InstrumentCalibration | null;
   instrumentRow: InstrumentSheetRow | null;
   sampleRow: SampleSheetRow | null;

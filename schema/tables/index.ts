@@ -49,7 +49,7 @@ export const files = sqliteTable(
     superseded: integer('superseded', { mode: 'boolean' }).notNull().default(false),
     state: text('state').$type<FileState>().notNull(),
     reason: text('reason'),
-    /** Derived columns blob once read. */
+    /** No longer written: it stays for workers of an older version that run beside newer ones. */
     columnsKey: text('columns_key'),
     /** Highest heating rate over the file, K/s, once read: tells a chip from a furnace. */
     highestRateKPerS: real('highest_rate_k_per_s'),

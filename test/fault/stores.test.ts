@@ -51,7 +51,7 @@ describe('a full disk', () => {
     const id = await takeInCampaign(narrow);
     // Far longer than the attempts of a step that fails would last.
     await runFor(narrow, 3 * 60_000);
-    const waiting = await ports.database.read.select().from(jobs).where(eq(jobs.step, 'read-scan'));
+    const waiting = await ports.database.read.select().from(jobs).where(eq(jobs.step, 'reduce-scan'));
     const held = waiting.filter((job) => job.state === 'queued');
     expect(held.length).toBeGreaterThan(2);
     for (const job of held) {

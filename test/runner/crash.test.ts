@@ -59,7 +59,6 @@ async function sendAll(ports: Ports, campaign: string): Promise<void> {
 async function expectWhole(ports: TestPorts, campaign: string): Promise<void> {
   const named = await ports.database.read.all<{ key: string }>(sql`
     select blob_key as key from files where campaign_id = ${campaign}
-    union all select columns_key from files where campaign_id = ${campaign} and columns_key is not null
     union all select reduced_key from scans where campaign_id = ${campaign} and reduced_key is not null`);
   for (const { key } of named) expect(await ports.blobs.has(key), key).toBe(true);
   const open = await ports.database.read.all(

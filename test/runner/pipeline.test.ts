@@ -138,7 +138,8 @@ describe('sheets', () => {
     expect(answer.outcome).toBe('replaced');
     await drain(ports, campaign);
     expect(ports.compute.counts).toEqual({
-      readScan: 3,
+      // The columns of a scan that is reduced anew are read from its original once more.
+      readScan: before.readScan + 1,
       reduceScan: before.reduceScan + 1,
       fitSample: before.fitSample + 1,
     });
@@ -168,7 +169,6 @@ describe('sheets', () => {
       [1, 'reduced'],
       [3, 'reduced'],
     ]);
-    expect(ports.compute.counts.readScan).toBe(1);
   });
 
   it('send only the scans of a corrected instrument or sample back to reduction', async () => {
@@ -179,10 +179,10 @@ describe('sheets', () => {
     expect(ports.compute.counts).toEqual({ readScan: 4, reduceScan: 4, fitSample: 2 });
     await send(ports, campaign, 'instruments.csv', 'instrument,kind,lag [s]\nstove,furnace,3\noven,furnace,2\n');
     await drain(ports, campaign);
-    expect(ports.compute.counts).toEqual({ readScan: 4, reduceScan: 6, fitSample: 3 });
+    expect(ports.compute.counts).toEqual({ readScan: 6, reduceScan: 6, fitSample: 3 });
     await send(ports, campaign, 'samples.csv', 'sample,melting temperature [K]\nA,900\n');
     await drain(ports, campaign);
-    expect(ports.compute.counts).toEqual({ readScan: 4, reduceScan: 8, fitSample: 4 });
+    expect(ports.compute.counts).toEqual({ readScan: 8, reduceScan: 8, fitSample: 4 });
   });
 });
 
