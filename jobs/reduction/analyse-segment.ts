@@ -4,14 +4,18 @@ import { interpolate, lowerBound } from '../numeric/local-polynomial.ts';
 import type { Room } from './event-limits.ts';
 import type { Bell } from './excess.ts';
 import { type Excursion, findExcursions } from './find-event.ts';
-import { findGlassTransition, GLASS_BEFORE, MOST_LEFT } from './glass-transition.ts';
+import { GLASS_BEFORE, MOST_LEFT } from './glass-transition.ts';
 import { reduceHold } from './hold.ts';
+import { endOfRamp, lookForGlass } from './look-for-glass.ts';
 import { findMelting } from './melting.ts';
 import { reduceEvents, type Shown } from './reduce-event.ts';
 import { offsetAt, type ScanContext } from './scan-context.ts';
+import { rangeOf } from './trace.ts';
 
 /** A further exotherm counts as an event from this part of the strongest one on. */
 const LEAST_PART = 0.06;
+/** Up to this part of a segment's rows an exotherm is the kick of its start. */
+const START_PART = 0.08;
 /** Reach of an event's foot and tail in half widths, and the flank two events need between them to stand apart, widths. */
 const FOOT = 4;
 const TAIL = 2.8;
@@ -70,10 +74,13 @@ export function analyseSegment(
     return reduceHold(c, segment, before, bells);
   }
   // A step before the event makes its rough left half width come out too large.
-  const first = bells[0] && { ...bells[0], leftS: Math.min(bells[0].leftS, MOST_LEFT * bells[0].rightS) };
+  // The kick of a start hides no glass transition behind it.
+  const kickEnd = segment.from + START_PART * (segment.to - segment.from);
+  const event = bells.find((b) => lowerBound(timeS, b.peakS - GLASS_BEFORE * b.leftS) > kickEnd);
+  const first = event && { ...event, leftS: Math.min(event.leftS, MOST_LEFT * event.rightS) };
   const glassEnd = first ? lowerBound(timeS, first.peakS - GLASS_BEFORE * first.leftS) : endOfRamp(c, segment);
-  let glass =
-    segment.kind === 'heating' ? findGlassTransition(timeS, c.y, segment.from, glassEnd, c.noise, first) : undefined;
+  const looked = segment.kind === 'heating' ? lookForGlass(c, segment, glassEnd, first) : {};
+  let { glass } = looked;
   const limits = limitsOf(c, segment);
   const groups = limits && bells.length > 0 ? [bells] : groupBells(bells);
   const highest = Math.max(...bells.map((b) => b.height));
@@ -104,6 +111,7 @@ export function analyseSegment(
     if (done.shown) shown.push(done.shown);
   });
   const T = (t: number) => interpolate(timeS, temperatureK, t);
+  if (!glass && looked.doubt) c.flags.push(looked.doubt);
   // A step or an onset comes late by the whole lag: the response delays it like everything else.
   const { calibration } = c.input;
   const trueK = (t: number) => T(t) - offsetAt(calibration, T(t)) - calibration.lagS * segment.rateKPerS;
@@ -119,9 +127,9 @@ export function analyseSegment(
  * Exotherms below this part of the segment's signal are held against its glass transition, and are ripple below this part of that; not
  * where an endotherm above this part of the signal could be taken for the step.
  */
-const SMALL = { ofSignal: 0.05, ofStep: 0.1, endotherm: 0.1 };
+const SMALL = { ofSignal: 0.05, ofStep: 0.15, endotherm: 0.1 };
 
-/** On a quiet instrument ripple of the baseline stands out of the noise: no event where a glass transition is ten times higher. */
+/** On a quiet instrument ripple of the baseline stands out of the noise: no event where a glass transition is seven times higher. */
 function withoutRipple(c: ScanContext, segment: Segment, excursions: Excursion[]): Excursion[] {
   const highest = Math.max(0, ...excursions.map((x) => x.prominence));
   const { from, kind } = segment;
@@ -131,28 +139,8 @@ function withoutRipple(c: ScanContext, segment: Segment, excursions: Excursion[]
   const flipped = c.y.map((v) => -v);
   const endotherms = findExcursions(c.scan.timeS, flipped, from, to);
   if (endotherms.some((x) => x.prominence > SMALL.endotherm * range)) return excursions;
-  const glass = findGlassTransition(c.scan.timeS, c.y, from, to, c.noise);
+  const { glass } = lookForGlass(c, segment, to);
   return glass && highest < -SMALL.ofStep * glass.step ? [] : excursions;
-}
-
-/** Highest less lowest value of rows [from, to). */
-export function rangeOf(y: Float64Array, from = 0, to = y.length): number {
-  let [low, high] = [Number.POSITIVE_INFINITY, Number.NEGATIVE_INFINITY];
-  for (let i = from; i < to; i++) {
-    if (y[i] < low) low = y[i];
-    if (y[i] > high) high = y[i];
-  }
-  return high - low;
-}
-
-/** The last rows of a segment may belong to what follows: they are left out where no event says where to stop. */
-const LAST_PART = 0.02;
-
-function endOfRamp(c: ScanContext, { from, to, startK, endK }: Segment): number {
-  const lastK = endK - LAST_PART * (endK - startK);
-  let end = to;
-  while (end > from && c.scan.temperatureK[end - 1] > lastK) end--;
-  return end;
 }
 
 /** Whole area of the event, W s or J/kg, where enthalpy (and mass) say it. */

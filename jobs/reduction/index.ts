@@ -2,7 +2,7 @@ import { type Flag, flag } from '../../schema/wire/flags.ts';
 import type { ReducedEvent, ReducedScan, ReduceOutcome, Segment } from '../../schema/wire/reduced.ts';
 import type { ReadScan } from '../../schema/wire/scan.ts';
 import type { ReduceInput } from '../../schema/wire/step-inputs.ts';
-import { analyseSegment, findEvents, rangeOf } from './analyse-segment.ts';
+import { analyseSegment, findEvents } from './analyse-segment.ts';
 import { chooseSegments } from './choose-segments.ts';
 import { findDirection } from './direction.ts';
 import type { Excursion } from './find-event.ts';
@@ -11,7 +11,7 @@ import { createContext, type ScanContext } from './scan-context.ts';
 import { findSegments } from './segments.ts';
 import { bridgeSpikes } from './spikes.ts';
 import { reduceStandard } from './standard.ts';
-import { makeTrace } from './trace.ts';
+import { makeTrace, rangeOf } from './trace.ts';
 
 export { type EventMatching, type MatchScan, matchEvents } from './match-events.ts';
 

@@ -60,3 +60,13 @@ export function makeTrace(
   }
   return trace;
 }
+
+/** Highest less lowest value of rows [from, to). */
+export function rangeOf(y: Float64Array, from = 0, to = y.length): number {
+  let [low, high] = [Number.POSITIVE_INFINITY, Number.NEGATIVE_INFINITY];
+  for (let i = from; i < to; i++) {
+    if (y[i] < low) low = y[i];
+    if (y[i] > high) high = y[i];
+  }
+  return high - low;
+}

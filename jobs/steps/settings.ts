@@ -1,7 +1,7 @@
 /** Part of every result key: grows when a step's results change for the same inputs, so that stored ones are not taken for its own. */
 export const STEP_VERSIONS = {
   'read-scan': 1,
-  'reduce-scan': 6,
+  'reduce-scan': 7,
   'fit-sample': 5,
   'judge-curvature': 2,
   'forecast-sample': 3,

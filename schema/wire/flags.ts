@@ -35,6 +35,7 @@ export const FLAG_CODES = {
   'baseline-doubt': ['warn', 'the choice of baseline moves the result noticeably'],
   'melting-overlap': ['warn', 'melting follows before the signal returns to the baseline'],
   'glass-transition-overlap': ['warn', 'the glass transition lies too close before the event'],
+  'glass-transition-doubtful': ['note', 'steps of the signal that may be a glass transition, and none was taken'],
   'mass-unknown': ['note', 'no mass: no enthalpy per gram'],
   'rate-off-nominal': ['warn', 'measured heating rate differs from the nominal one by more than 2 %'],
   'rate-unsteady': ['warn', 'heating rate drifts by more than 5 % within the event'],

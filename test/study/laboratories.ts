@@ -20,6 +20,8 @@ export interface LaboratoryScan {
   rowsInRange: number;
   onsetK?: number;
   midpointK?: number;
+  /** Why there is no glass transition, as the user is told */
+  doubt?: string;
   outcome: string;
 }
 
@@ -58,7 +60,9 @@ export function reduceLaboratories(): LaboratoryScan[] {
     const { glassTransitionOnsetK: onsetK, glassTransitionK: midpointK } = reduced;
     const { kind, startK, endK, rateKPerS } = reduced.segments[reduced.segment - 1];
     const segment = `${kind} ${startK.toFixed(0)} to ${endK.toFixed(0)} K at ${(60 * rateKPerS).toFixed(1)} K/min`;
-    return { ...base, outcome: segment, ...(midpointK !== undefined && { onsetK, midpointK }) };
+    const doubt = reduced.flags.find(({ code }) => code === 'glass-transition-doubtful')?.detail;
+    const glass = midpointK !== undefined && { onsetK, midpointK };
+    return { ...base, outcome: segment, ...glass, ...(doubt !== undefined && { doubt }) };
   });
 }
 
@@ -102,8 +106,8 @@ export function laboratoriesStudy(): string {
   return [
     `${scans.length} measured scans, ${scans.filter((s) => s.rows > 0).length} read; uncorrected (no standards were published with them).`,
     markdownTable(
-      ['file', 'rows', 'rows 363 to 403 K', 'analysed', 'Tg onset, K', 'Tg midpoint, K'],
-      scans.map((s) => [s.file, s.rows, s.rowsInRange, s.outcome, show(s.onsetK), show(s.midpointK)]),
+      ['file', 'rows', 'rows 363 to 403 K', 'analysed', 'Tg onset, K', 'Tg midpoint, K', 'why none'],
+      scans.map((s) => [s.file, s.rows, s.rowsInRange, s.outcome, show(s.onsetK), show(s.midpointK), s.doubt ?? '']),
     ),
     markdownTable(['K/min', 'laboratory', 'found', 'mean onset, K', 'mean midpoint, K', 'spread within, K'], byGroup),
     ['Spread of the mean midpoints between laboratories:', ...(byRate.length ? byRate : ['- no rate with two'])].join(

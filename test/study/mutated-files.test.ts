@@ -1,5 +1,5 @@
 import { expect, test } from 'vitest';
-import { readMutated } from './mutated-files.ts';
+import { readMutated } from './read-mutated.ts';
 
 // The whole table: `npm run study -- mutated-files` (20 000 files).
 test('400 mutated files are read soundly or refused with a reason, none over 2 s', () => {

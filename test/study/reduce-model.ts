@@ -15,13 +15,15 @@ export interface RecordedAs {
   recording: RecordingSettings;
   uneven?: Parameters<typeof samplingTimes>[3];
   kind?: InstrumentCalibration['kind'];
+  /** What the fractions of the recording refer to, W; by default the events' height */
+  heightW?: number;
 }
 
 /** Records a simulated scan and reduces it with the truth about its instrument on the sheet. */
 export function reduceModel(model: ScanModel, as: RecordedAs, random: Random): ReduceOutcome {
   const { instrument, massKg, selfHeating } = model;
   const solution = solveScan(model, samplingTimes(0, model.programme.endS, as.rows, as.uneven));
-  const recorded = recordScan(solution, instrument.offsetK, as.recording, random);
+  const recorded = recordScan(solution, instrument.offsetK, as.recording, random, as.heightW);
   const calibration: InstrumentCalibration = {
     instrument: 'simulated',
     kind: as.kind ?? 'furnace',

@@ -10,6 +10,7 @@ import { mutatedFilesStudy } from './mutated-files.ts';
 import { crashStudy, outageStudy, serverlessStudy, soakStudy } from './operation.ts';
 import { packageStudy } from './package.ts';
 import { reductionStudy } from './reduction.ts';
+import { glassStudy } from './reduction-glass.ts';
 import { requestsStudy } from './requests.ts';
 import { roundTripStudy } from './round-trip.ts';
 import { standardsStudy } from './standards.ts';
@@ -72,6 +73,10 @@ export const STUDIES: Record<string, { about: string; run: Study }> = {
   reduction: {
     about: 'single simulated scans: error of Tp, T(α) and ΔH against noise, drift and points',
     run: reductionStudy,
+  },
+  'reduction-glass': {
+    about: 'glass transitions found on simulated scans that have one, and on those that have none',
+    run: glassStudy,
   },
   standards: {
     about: 'indium, tin and zinc at five rates: error and interval of offset, lag and heat factor',

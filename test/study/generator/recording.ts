@@ -17,6 +17,10 @@ export interface RecordingSettings {
   clipAbove?: number;
   /** Single-point spikes: how many and how high */
   spikes?: { count: number; height: number };
+  /** Jumps of the level, up or down: how many and how high at most */
+  jumps?: { count: number; height: number };
+  /** The instrument settles at the start, exponentially: from how high, and within which part of the scan */
+  settling?: { height: number; part: number };
 }
 
 /** One recorded scan: reported temperature and heat flow, exotherm up. */
@@ -54,6 +58,15 @@ export function recordScan(
   const where = random.fork('spikes');
   for (let s = 0; s < (settings.spikes?.count ?? 0); s++)
     heatFlowW[where.integer(count)] += heightW * settings.spikes!.height * (where.uniform() < 0.5 ? -1 : 1);
+  const leaps = random.fork('jumps');
+  for (let s = 0; s < (settings.jumps?.count ?? 0); s++) {
+    const leap = heightW * settings.jumps!.height * leaps.between(-1, 1);
+    for (let k = leaps.integer(count); k < count; k++) heatFlowW[k] += leap;
+  }
+  if (settings.settling) {
+    const { height, part } = settings.settling;
+    for (let k = 0; k < count; k++) heatFlowW[k] += heightW * height * Math.exp(-k / (part * count));
+  }
   if (settings.clipAbove !== undefined) {
     const limit = minimumOf(heatFlowW) + settings.clipAbove * heightW;
     for (let k = 0; k < count; k++) heatFlowW[k] = Math.min(heatFlowW[k], limit);
