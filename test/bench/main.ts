@@ -47,7 +47,7 @@ print(json.dumps({"code": code, "wall_s": w, "cpu_s": u.ru_utime + u.ru_stime, "
 
 const median = (v: number[]): number => [...v].sort((a, b) => a - b)[v.length >> 1];
 
-/** Where our time goes, in one thread: reading and reducing, fitting without draws, draws. */
+/** Where our time goes, in one thread, CPU: reading and reducing, fitting without draws, draws. */
 function ownStages(folder: string, samples: number): Record<string, number> {
   const sheet = readFileSync(join(folder, 'scans.csv'), 'utf8');
   const files = new Map<string, Uint8Array>();
@@ -56,16 +56,48 @@ function ownStages(folder: string, samples: number): Record<string, number> {
     const file = line.split(',')[0];
     if (file) files.set(file, readFileSync(join(folder, file)));
   }
-  const at: number[] = [performance.now()];
+  const clock = () => {
+    const { user, system } = process.cpuUsage();
+    return (user + system) / 1e6;
+  };
+  const at: number[] = [clock()];
   const reduced = reduceCampaign(files);
-  at.push(performance.now());
+  at.push(clock());
   const names = [...new Set(reduced.scans.map((s) => s.row.sample))].slice(0, samples);
   for (const name of names) fitReducedSample(reduced, name, 2);
-  at.push(performance.now());
+  at.push(clock());
   for (const name of names) fitReducedSample(reduced, name, 402);
-  at.push(performance.now());
-  const s = (k: number) => (at[k + 1] - at[k]) / 1e3;
+  at.push(clock());
+  const s = (k: number) => at[k + 1] - at[k];
   return { read_reduce_s: s(0), fit_s: s(1), draws_400_s: s(2) - s(1) };
+}
+
+/** Where the script's time goes, in one process: its own functions over the same files; draws are what is left of the whole. */
+function peerStages(folder: string): Record<string, number> {
+  const program = `
+import csv, importlib.util, json, os, sys, time
+spec = importlib.util.spec_from_file_location("peer", sys.argv[1]); peer = importlib.util.module_from_spec(spec); spec.loader.exec_module(peer)
+folder, np, R = sys.argv[2], peer.np, peer.R
+lags = {r["instrument"]: float(r["lag [s]"]) for r in csv.DictReader(open(os.path.join(folder, "instruments.csv")))}
+by = {}
+for r in csv.DictReader(open(os.path.join(folder, "scans.csv"))): by.setdefault(r["sample"], []).append(r)
+clock = time.process_time; at = [clock()]
+reduced = [[peer.reduce(r, lags[r["instrument"]], folder) for r in rows] for rows in by.values()]; at.append(clock())
+for scans in reduced:
+    b, Tp = (np.array([s[k] for s in scans]) for k in ("beta", "Tp")); t, T, r = (np.array([s[k] for s in scans]) for k in ("t", "T", "r"))
+    E = peer.fits(b, Tp, t, T, r)["kissinger"]
+    peer.jmak(b, T, np.array([E / 1e5, np.log(b.mean() * E / R / Tp.mean() ** 2), 2.5]))
+at.append(clock())
+for name, rows in by.items(): peer.sample((name, rows, lags, folder))
+at.append(clock())
+one, two, all = (at[k + 1] - at[k] for k in range(3))
+print(json.dumps({"read_reduce_s": one, "fit_s": two, "draws_400_s": all - one - two}))`;
+  const done = spawnSync('python3', ['-c', program, values.peer, folder], {
+    encoding: 'utf8',
+    env: { ...process.env, OPENBLAS_NUM_THREADS: '1' },
+  });
+  if (done.status !== 0) throw new Error(`the script's stages ended with ${done.status}: ${done.stderr.slice(-500)}`);
+  return JSON.parse(done.stdout);
 }
 
 const record: unknown[] = [];
@@ -104,13 +136,19 @@ try {
     console.log('ours', JSON.stringify(ours));
     console.log('peer', JSON.stringify(peers));
     console.log('ours, one thread, by stage', JSON.stringify(stages));
-    if (peers.length > 0) {
+    const theirs = peers.length > 0 ? peerStages(folder) : undefined;
+    if (theirs) {
+      console.log('peer, one process, by stage', JSON.stringify(theirs));
+      const ratios = Object.entries(stages).map(
+        ([stage, s]) => `${stage.slice(0, -2)} ${(theirs[stage] / s).toFixed(2)}`,
+      );
+      console.log(`peer ÷ ours by stage, CPU: ${ratios.join(', ')}`);
       const ratio = (of: (t: Timed) => number) => (median(peers.map(of)) / median(ours.map(of))).toFixed(2);
       console.log(
         `median: ours ${wall.toFixed(2)} s; peer ÷ ours: wall ${ratio((t) => t.wall_s)}, CPU ${ratio((t) => t.cpu_s)}, memory ${ratio((t) => t.peak_mb)}`,
       );
     }
-    record.push({ count, rows: Number(values.rows), node: process.version, ours, peers, stages });
+    record.push({ count, rows: Number(values.rows), node: process.version, ours, peers, stages, theirs });
   }
 } finally {
   await rm(work, { recursive: true, force: true });
