@@ -5,9 +5,9 @@ import { mean } from '../numeric/statistics.ts';
 /** What was drawn, beside what came of it: one row a draw. */
 export interface DrawCauses {
   /** offset and lag error of each instrument: sizes that are given, not estimated */
-  calibration: Float64Array;
+  calibration: ArrayLike<number>;
   /** shift of each scan, K: its size was estimated from the scatter of its instrument's scans */
-  shifts: Float64Array;
+  shifts: ArrayLike<number>;
 }
 
 /**
@@ -38,33 +38,31 @@ export class DrawSpread {
    */
   constructor(causes: readonly DrawCauses[], degrees: number, scanDegrees: readonly number[]) {
     this.degrees = [Math.max(1, degrees), Number.POSITIVE_INFINITY];
-    const take = (of: (c: DrawCauses) => Float64Array, degreesOf: (k: number) => number) => {
-      for (let k = 0; k < (causes.length > 0 ? of(causes[0]).length : 0); k++) {
-        const column = Float64Array.from(causes, (c) => of(c)[k]);
+    const take = (cause: keyof DrawCauses, degreesOf: (k: number) => number) => {
+      for (let k = 0; k < (causes.length > 0 ? causes[0][cause].length : 0); k++) {
+        const column = new Float64Array(causes.length);
+        for (let d = 0; d < column.length; d++) column[d] = causes[d][cause][k];
         const m = mean(column);
-        const centred = column.map((v) => v - m);
-        if (centred.every((v) => Math.abs(v) < 1e-12)) continue;
+        let largest = 0;
+        for (let d = 0; d < column.length; d++) {
+          column[d] -= m;
+          largest = Math.max(largest, Math.abs(column[d]));
+        }
+        if (largest < 1e-12) continue;
         const nu = degreesOf(k);
         if (!this.degrees.includes(nu)) this.degrees.push(nu);
-        this.columns.push(centred);
+        this.columns.push(column);
         this.part.push(this.degrees.indexOf(nu));
       }
     };
-    take(
-      (c) => c.calibration,
-      () => Number.POSITIVE_INFINITY,
-    );
-    take(
-      (c) => c.shifts,
-      (k) => Math.max(1, scanDegrees[k]),
-    );
+    take('calibration', () => Number.POSITIVE_INFINITY);
+    take('shifts', (k) => Math.max(1, scanDegrees[k]));
     this.variance = new Float64Array(this.degrees.length);
     const p = this.columns.length;
     const normal = new Float64Array(p * p);
     for (let i = 0; i < p; i++) {
       for (let j = 0; j <= i; j++) {
-        let sum = 0;
-        for (let d = 0; d < causes.length; d++) sum += this.columns[i][d] * this.columns[j][d];
+        const sum = product(this.columns[i], this.columns[j]);
         normal[i * p + j] = sum;
         normal[j * p + i] = sum;
       }
@@ -75,18 +73,16 @@ export class DrawSpread {
   }
 
   /** Half width for values given one a draw in the order of the constructor's; NaN where they have no spread to speak of. */
-  halfWidth(values: readonly number[]): number {
+  halfWidth(values: ArrayLike<number>): number {
     const { columns, inverse, part, variance } = this;
     const p = columns.length;
     const n = values.length;
     const m = mean(values);
-    let total = 0;
-    for (const v of values) total += (v - m) ** 2;
+    const centred = new Float64Array(n);
+    for (let d = 0; d < n; d++) centred[d] = values[d] - m;
+    const total = product(centred, centred);
     const moments = new Float64Array(p);
-    for (let i = 0; i < p; i++) {
-      const column = columns[i];
-      for (let d = 0; d < n; d++) moments[i] += column[d] * (values[d] - m);
-    }
+    for (let i = 0; i < p; i++) moments[i] = product(columns[i], centred);
     variance.fill(0);
     let explained = 0;
     for (let i = 0; i < p; i++) {
@@ -101,6 +97,18 @@ export class DrawSpread {
     variance[0] += Math.max(0, total - explained);
     return Math.sqrt(squaredHalfWidth(variance, this.degrees) / (n - 1));
   }
+}
+
+/** Σ a b, in two sums side by side: one alone waits for itself. */
+function product(a: Float64Array, b: Float64Array): number {
+  let even = 0;
+  let odd = 0;
+  let d = 0;
+  for (; d + 1 < a.length; d += 2) {
+    even += a[d] * b[d];
+    odd += a[d + 1] * b[d + 1];
+  }
+  return d < a.length ? even + odd + a[d] * b[d] : even + odd;
 }
 
 /** (95 % half width)² of a sum of independent parts, each with the degrees of freedom behind its variance (infinite: given). */

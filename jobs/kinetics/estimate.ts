@@ -9,7 +9,7 @@ import {
 } from '../laws/arrhenius-integral.ts';
 import { type JmakEstimate, JmakFit } from './avrami/non-isothermal.ts';
 import { CONVERSION_COUNT, type EventColumns, type EventData, GRID_INDEX, usableWeights } from './event-data.ts';
-import { fitVyazovkin } from './isoconversional/vyazovkin.ts';
+import { fitVyazovkin, meanLnIntegral } from './isoconversional/vyazovkin.ts';
 import {
   augisBennettExponent,
   BOSWELL,
@@ -21,6 +21,9 @@ import {
   kissingerLnPrefactor,
   STARINK,
 } from './peak-methods.ts';
+
+/** Index of α = 0.5. */
+const MIDDLE = 9;
 
 /** Every number of one event, estimate or draw. Energies J/mol, ln A of 1/s; arrays over the 19 conversions. */
 export interface Estimates {
@@ -36,6 +39,8 @@ export interface Estimates {
   ozawaFlynnWallCurve: Float64Array;
   vyazovkin: Float64Array;
   vyazovkinConverged: boolean;
+  /** ln of the time integral that each step of conversion needs at Vyazovkin's E (see `averageSegments`), mean over the scans */
+  lnStep: Float64Array;
   jmak?: JmakEstimate;
 }
 
@@ -135,7 +140,8 @@ export interface EstimateSettings {
 
 /**
  * Makes the function that computes all peak, isoconversional and JMAK estimates from the columns as they stand when it is called: buffers
- * are made once and the columns and weights may be overwritten between calls (Monte Carlo).
+ * are made once and the columns and weights may be overwritten between calls (Monte Carlo). Each call overwrites what the one before
+ * returned.
  * The function's argument: neighbouring estimates to start from; without them JMAK is fitted from a rough start.
  */
 export function createEstimator(
@@ -148,25 +154,38 @@ export function createEstimator(
   const lnReaction = new Float64Array(m);
   const lnRate = Float64Array.from(s.curves, (i) => Math.log(d.rate[i]));
   const peakLnRate = d.rate.map(Math.log);
-  const used = usableWeights(d, s.curves, s.curveWeights, s.usable).at;
+  const { at: used, whole } = usableWeights(d, s.curves, s.curveWeights, s.usable);
+  const segmentWeights = whole.slice();
   const weights = new Float64Array(m);
   const work: ArrheniusIntegral[] = Array.from({ length: m }, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
-  /** place in the columns of a row of the curve scans */
-  const cell = (row: number): number => {
-    const j = (row / CONVERSION_COUNT) | 0;
-    return s.curves[j] * CONVERSION_COUNT + (row - j * CONVERSION_COUNT);
-  };
-  const { usable } = s;
   const jmak = new JmakFit(
     s.curveSigmaK,
     s.x0,
-    (row) => d.temperatureK[cell(row)],
+    d.temperatureK,
+    s.curves,
     (e, out) => integrals.cumulative(e, s.x0, out),
-    usable && Uint8Array.from({ length: m * CONVERSION_COUNT }, (_, row) => usable[cell(row)]),
+    s.usable,
   );
+  const column = () => new Float64Array(CONVERSION_COUNT);
+  const out: Estimates = {
+    kissinger: Number.NaN,
+    kissingerLnPrefactor: Number.NaN,
+    boswell: Number.NaN,
+    ozawaFlynnWall: Number.NaN,
+    augisBennett: Number.NaN,
+    augisBennettExponent: Number.NaN,
+    friedman: column(),
+    kissingerAkahiraSunose: column(),
+    starink: column(),
+    ozawaFlynnWallCurve: column(),
+    vyazovkin: column(),
+    vyazovkinConverged: true,
+    lnStep: column(),
+  };
 
   return (warm) => {
-    const out = peakEstimates(d, s, peakLnRate);
+    Object.assign(out, peakEstimates(d, s, peakLnRate));
+    out.vyazovkinConverged = true;
     if (!s.curveMethods) return out;
     for (let k = 0; k < CONVERSION_COUNT; k++) {
       for (let j = 0; j < m; j++) {
@@ -187,10 +206,12 @@ export function createEstimator(
       const v = fitVyazovkin((e, o) => integrals.step(e, slopes.inverse, k, o), weights, start, work);
       out.vyazovkin[k] = v.energy;
       out.vyazovkinConverged &&= v.converged;
+      out.lnStep[k] =
+        meanLnIntegral(v, segmentWeights, work) + (v.energy * s.x0 - v.madeAt * slopes.inverse) / GAS_CONSTANT;
     }
     // ln K at x0 from Kissinger's peak condition ln β = ln K + ln(R T²/E), n from the width.
     out.jmak = warm?.jmak
-      ? jmak.fitFrom(warm.jmak.fit.parameters)
+      ? jmak.fitFrom(warm.jmak.fit.parameters, out.vyazovkin[MIDDLE] / warm.vyazovkin[MIDDLE])
       : jmak.fitFromScratch(
           Float64Array.of(
             out.kissinger,
@@ -202,7 +223,12 @@ export function createEstimator(
   };
 }
 
-function peakEstimates(d: EventColumns, s: EstimateSettings, lnRate: Float64Array): Estimates {
+type PeakEstimates = Pick<
+  Estimates,
+  'kissinger' | 'kissingerLnPrefactor' | 'boswell' | 'ozawaFlynnWall' | 'augisBennett' | 'augisBennettExponent'
+>;
+
+function peakEstimates(d: EventColumns, s: EstimateSettings, lnRate: Float64Array): PeakEstimates {
   const slopes = inverseSlopes(lnRate, d.peakK, s.weights);
   const kissinger = energyFromSlopes(slopes, KISSINGER.power, KISSINGER.factor);
   const uncorrected = energyFromSlopes(slopes, 0, 1);
@@ -214,11 +240,5 @@ function peakEstimates(d: EventColumns, s: EstimateSettings, lnRate: Float64Arra
     ozawaFlynnWall: uncorrected / flynnFactor(uncorrected, slopes.inverse),
     augisBennett: s.augisBennett ? fitAugisBennett(d.rate, d.peakK, d.rampStartK, s.weights).energy : Number.NaN,
     augisBennettExponent: augisBennettExponent(d.peakK, d.widthK, kissinger, s.weights),
-    friedman: new Float64Array(CONVERSION_COUNT),
-    kissingerAkahiraSunose: new Float64Array(CONVERSION_COUNT),
-    starink: new Float64Array(CONVERSION_COUNT),
-    ozawaFlynnWallCurve: new Float64Array(CONVERSION_COUNT),
-    vyazovkin: new Float64Array(CONVERSION_COUNT),
-    vyazovkinConverged: true,
   };
 }

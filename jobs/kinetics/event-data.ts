@@ -64,8 +64,9 @@ export function collectEvent(event: number, input: FitScan[], instruments: Instr
   );
   const n = scans.length;
   const used = instruments.filter((c) => scans.some((s) => s.instrument === c.instrument));
+  // The spread stands last: V8 gives each object that is spread first and then added to a hidden class of its own, and code that has met the
+  // class of another sample is thrown away and compiled again.
   const data: EventData = {
-    ...emptyColumns(n),
     event,
     scans,
     instruments: used,
@@ -73,6 +74,7 @@ export function collectEvent(event: number, input: FitScan[], instruments: Instr
     baselineErrorK: new Float64Array(n * CONVERSION_COUNT),
     usable: new Uint8Array(n * CONVERSION_COUNT),
     programmes: [],
+    ...emptyColumns(n),
   };
   scans.forEach((scan, i) => {
     const e = scan.event;

@@ -1,11 +1,11 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
-import type { ModelFreeDraws } from '../../schema/wire/forecasts.ts';
 import type { FitReport, FitScan, ModelFreeFit, ParameterRow } from '../../schema/wire/parameters.ts';
 import type { InstrumentCalibration } from '../../schema/wire/scan.ts';
 import type { Random } from '../numeric/random.ts';
 import { mean } from '../numeric/statistics.ts';
 import { ozawaTemperatures } from './avrami/ozawa.ts';
 import type { DrawCauses } from './draw-spread.ts';
+import { DrawnColumns } from './drawn-columns.ts';
 import {
   createEstimator,
   type EstimateSettings,
@@ -27,7 +27,7 @@ import { createFurtherEstimator, type FurtherEstimates, type FurtherPlan } from 
 import { addAnalyticRows, addFurtherRows } from './further-rows.ts';
 import { findOutliers, JMAK_RESIDUAL, judgeEnergy, judgeJmak } from './judge-event.ts';
 import { judgeTops, noteExponent, plotModels, reportFurther, reportModels } from './judge-model.ts';
-import { averageSegments, describeModelFree } from './model-free.ts';
+import { describeModelFree } from './model-free.ts';
 import { drawBuffer, drawColumns, drawWeights, modelScatter, type ScatterModel } from './monte-carlo.ts';
 import { RowBuilder } from './parameter-rows.ts';
 import { LATEST_START } from './peak-methods.ts';
@@ -105,7 +105,7 @@ function fitScans(
     weights: model.weights,
     curveWeights: Float64Array.from(curves, (i) => model.weights[i]),
     // Left out where all is usable: the inner loops need not ask then.
-    ...(Array.from(curves).some((i) => !wholeCurve(data, i)) && { usable: data.usable }),
+    usable: Array.from(curves).some((i) => !wholeCurve(data, i)) ? data.usable : undefined,
     curveSigmaK: Float64Array.from(curves, (i) => model.sigmaK[data.instrument[i]]),
     augisBennett: late < 0,
     curveMethods,
@@ -146,14 +146,7 @@ function fitScans(
     sestakBerggren: misshapen,
   };
   const more = curveMethods ? createFurtherEstimator(data, settings, plan)(estimate) : undefined;
-  const { drawn, further, causes, modelFreeDraws } = runDraws(
-    model,
-    settings,
-    plan,
-    { main: estimate, further: more },
-    random,
-    draws,
-  );
+  const { drawn, causes } = runDraws(model, settings, plan, { main: estimate, further: more }, random, draws);
   flags.push(...findOutliers(model, where));
   const builder = new RowBuilder(sample, data, curves, model, drawn, causes);
   const reports = reportFits(event, estimate, curves.length);
@@ -166,7 +159,7 @@ function fitScans(
     if (varies) flags.push(varies);
     builder.curveRows(estimate, varies ? ['energy-varies'] : [], determined);
     addAnalyticRows(builder, data, settings, estimate);
-    addFurtherRows(builder, more, further, determined);
+    addFurtherRows(builder, more, drawn, determined);
     const told = reportFurther(event, more, plan, curves.length * CONVERSIONS.length, where);
     reports.push(...told.reports, ...reportModels(event, plots));
     flags.push(...avrami, ...told.flags);
@@ -178,7 +171,7 @@ function fitScans(
     ? {
         event,
         curve: describeModelFree(data, curves, whole, measured, estimate.vyazovkin, settings.x0),
-        draws: modelFreeDraws,
+        draws: { energyJPerMol: drawn.byDraw(drawn.curve.vyazovkin), lnStep: drawn.byDraw(drawn.curve.lnStep) },
         degreesOfFreedom: Math.max(1, data.n - model.trendParameters),
         lowestK: Math.min(...data.peakK),
         highestK: Math.max(...data.peakK),
@@ -194,7 +187,7 @@ function runDraws(
   estimate: { main: Estimates; further: FurtherEstimates | undefined },
   random: Random,
   draws: number,
-): { drawn: Estimates[]; further: FurtherEstimates[]; causes: DrawCauses[]; modelFreeDraws: ModelFreeDraws } {
+): { drawn: DrawnColumns; causes: DrawCauses[] } {
   const columns = drawBuffer(model.data);
   const drawnSettings = {
     ...settings,
@@ -202,30 +195,18 @@ function runDraws(
     curveWeights: settings.curveWeights.slice(),
     curveSigmaK: settings.curveSigmaK.slice(),
   };
-  const ramp = rampIntegrals(columns, settings.curves);
-  const estimator = createEstimator(columns, drawnSettings, ramp);
-  const modelFreeDraws: ModelFreeDraws = {
-    energyJPerMol: new Float64Array(settings.curveMethods ? draws * CONVERSIONS.length : 0),
-    lnStep: new Float64Array(settings.curveMethods ? draws * CONVERSIONS.length : 0),
-  };
-  const { whole } = usableWeights(model.data, settings.curves, settings.curveWeights, settings.usable);
-  const work = Array.from(settings.curves, () => ({ value: 0, byEnergy: 0, byEnergy2: 0 }));
+  const estimator = createEstimator(columns, drawnSettings, rampIntegrals(columns, settings.curves));
   const furtherEstimator = createFurtherEstimator(columns, drawnSettings, plan);
-  const drawn: Estimates[] = [];
-  const further: FurtherEstimates[] = [];
+  const drawn = new DrawnColumns(draws);
+  const neighbour = estimate.further && { main: estimate.main, further: estimate.further };
   const causes: DrawCauses[] = [];
   for (let d = 0; d < draws; d++) {
     causes.push(drawColumns(model, random, columns));
     drawWeights(model, random, drawnSettings);
     const main = estimator(estimate.main);
-    drawn.push(main);
-    if (!estimate.further) continue;
-    further.push(furtherEstimator(main, { main: estimate.main, further: estimate.further }));
-    const at = d * CONVERSIONS.length;
-    modelFreeDraws.energyJPerMol.set(main.vyazovkin, at);
-    modelFreeDraws.lnStep.set(averageSegments(ramp, whole, main.vyazovkin, settings.x0, work), at);
+    drawn.keep(d, main, neighbour && furtherEstimator(main, neighbour));
   }
-  return { drawn, further, causes, modelFreeDraws };
+  return { drawn, causes };
 }
 
 const wholeCurve = (data: EventData, i: number): boolean =>

@@ -2,6 +2,7 @@ import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { ArrheniusIntegral } from '../laws/arrhenius-integral.ts';
 import { mean } from '../numeric/statistics.ts';
 import { studentFactor } from './draw-spread.ts';
+import type { DrawnColumns } from './drawn-columns.ts';
 import { type EstimateSettings, type Estimates, measuredIntegrals } from './estimate.ts';
 import { CONVERSION_COUNT, CONVERSIONS, type EventData, pooledMean, usableWeights } from './event-data.ts';
 import type { FurtherEstimates } from './further-estimates.ts';
@@ -16,62 +17,40 @@ const ENERGY = { quantity: 'activation_energy', unit: 'kJ/mol' };
 export function addFurtherRows(
   builder: RowBuilder,
   e: FurtherEstimates,
-  drawn: FurtherEstimates[],
+  drawn: DrawnColumns,
   determined: readonly boolean[],
 ): void {
-  const add = (
-    quantity: string,
-    method: string,
-    unit: string,
-    of: (f: FurtherEstimates) => number,
-    log: boolean,
-    scale = 1,
-    conversion?: number,
-  ) =>
-    builder.addDrawn(
-      { quantity, method, unit, ...(conversion !== undefined && { conversion }) },
-      of(e) * scale,
-      drawn.map((d) => of(d) * scale),
-      log,
+  const energy = (method: string, value: number, column: Float64Array, conversion?: number) =>
+    builder.add(
+      { ...ENERGY, method, ...(conversion !== undefined && { conversion }) },
+      value,
+      column,
+      1e-3,
+      true,
       true,
     );
-  const energy = (method: string, of: (f: FurtherEstimates) => number, conversion?: number) =>
-    add(ENERGY.quantity, method, ENERGY.unit, of, true, 1e-3, conversion);
-  energy('vyazovkin_linear', (f) => pooledMean(f.vyazovkinLinear, determined));
+  const add = (quantity: string, method: string, unit: string, value: number, column: Float64Array, log: boolean) =>
+    builder.add({ quantity, method, unit }, value, column, 1, log, true);
+  const linear = drawn.curve.vyazovkinLinear;
+  energy('vyazovkin_linear', pooledMean(e.vyazovkinLinear, determined), drawn.pooled(linear, determined));
   for (const [k, a] of CONVERSIONS.entries())
-    if (determined[k]) energy('vyazovkin_linear', (f) => f.vyazovkinLinear[k], a);
-  add('ln_prefactor', 'friedman', 'ln(1/s)', (f) => f.friedmanLnPrefactor, false);
-  add('avrami_exponent', 'ozawa', '1', (f) => f.ozawaExponent, true);
-  energy('matusita_sakka', (f) => f.matusitaSakka.scaledEnergy / f.matusitaSakka.exponent);
-  add('avrami_exponent', 'matusita_sakka', '1', (f) => f.matusitaSakka.exponent, true);
-  if (!e.sestakBerggren) return;
-  const of = (pick: (s: NonNullable<FurtherEstimates['sestakBerggren']>) => number) => (f: FurtherEstimates) =>
-    f.sestakBerggren ? pick(f.sestakBerggren) : Number.NaN;
+    if (determined[k]) energy('vyazovkin_linear', e.vyazovkinLinear[k], drawn.atConversion(linear, k), a);
+  add('ln_prefactor', 'friedman', 'ln(1/s)', e.friedmanLnPrefactor, drawn.further.friedmanLnPrefactor, false);
+  add('avrami_exponent', 'ozawa', '1', e.ozawaExponent, drawn.further.ozawaExponent, true);
+  const { exponent, scaledEnergy } = drawn.matusitaSakka;
   energy(
-    'sestak_berggren',
-    of((s) => s.energy),
+    'matusita_sakka',
+    e.matusitaSakka.scaledEnergy / e.matusitaSakka.exponent,
+    scaledEnergy.map((v, d) => v / exponent[d]),
   );
-  add(
-    'ln_prefactor',
-    'sestak_berggren',
-    'ln(1/s)',
-    of((s) => s.lnPrefactor),
-    false,
-  );
-  add(
-    'model_exponent_m',
-    'sestak_berggren',
-    '1',
-    of((s) => s.m),
-    false,
-  );
-  add(
-    'model_exponent_n',
-    'sestak_berggren',
-    '1',
-    of((s) => s.n),
-    false,
-  );
+  add('avrami_exponent', 'matusita_sakka', '1', e.matusitaSakka.exponent, exponent, true);
+  if (!e.sestakBerggren) return;
+  const { sestakBerggren: s } = e;
+  const columns = drawn.sestakBerggren;
+  energy('sestak_berggren', s.energy, columns.energy);
+  add('ln_prefactor', 'sestak_berggren', 'ln(1/s)', s.lnPrefactor, columns.lnPrefactor, false);
+  add('model_exponent_m', 'sestak_berggren', '1', s.m, columns.m, false);
+  add('model_exponent_n', 'sestak_berggren', '1', s.n, columns.n, false);
 }
 
 /** Analytic intervals beside the Monte Carlo ones: Student's t of each isoconversional line, and Vyazovkin & Wight's. */

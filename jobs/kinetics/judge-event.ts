@@ -1,6 +1,7 @@
 import { type Flag, flag } from '../../schema/wire/flags.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import { median, robustSigma, standardDeviation } from '../numeric/statistics.ts';
+import type { DrawnColumns } from './drawn-columns.ts';
 import type { Estimates } from './estimate.ts';
 import { CONVERSIONS, POOLED, pooledMean } from './event-data.ts';
 import type { ScatterModel } from './monte-carlo.ts';
@@ -44,7 +45,7 @@ export function findOutliers(model: ScatterModel, where: { sample: string; event
 /** `energy-varies` where E(α) changes by more than 10 % of its mean and more than its interval. */
 export function judgeEnergy(
   estimate: Estimates,
-  drawn: Estimates[],
+  drawn: DrawnColumns,
   model: ScatterModel,
   determined: readonly boolean[],
   where: { sample: string; event: number },
@@ -60,7 +61,9 @@ export function judgeEnergy(
   if (high < 0) return undefined;
   const range = E[high] - E[low];
   const middle = pooledMean(E, determined);
-  const spread = standardDeviation(drawn.map((d) => d.vyazovkin[high] - d.vyazovkin[low]));
+  const { vyazovkin } = drawn.curve;
+  const lowest = drawn.atConversion(vyazovkin, low);
+  const spread = standardDeviation(drawn.atConversion(vyazovkin, high).map((v, d) => v - lowest[d]));
   const error = studentQuantile(0.975, Math.max(1, model.curves.length - model.trendParameters)) * spread;
   if (!(range > ENERGY_VARIES * middle && range > error)) return undefined;
   const at = (k: number) => CONVERSIONS[k].toFixed(2);

@@ -32,6 +32,23 @@ export interface ScatterModel {
   temperature: Trend[];
   lnRate: Trend[];
   curves: Uint16Array;
+  parts: DrawParts;
+}
+
+/** What every draw is put together from. Residuals are divided by √(1 − leverage). */
+interface DrawParts {
+  /** K, and ln FWHM: one a scan */
+  peak: Float64Array;
+  width: Float64Array;
+  /** place of each scan among the curve scans, −1 without a curve */
+  curveOf: Int32Array;
+  /** scan-major over the curve scans; empty without a trend */
+  fittedK: Float64Array;
+  residualK: Float64Array;
+  fittedLnRate: Float64Array;
+  residualLnRate: Float64Array;
+  /** K, the part of a point's baseline error that the scatter between scans does not hold already */
+  baselineK: Float64Array;
 }
 
 /** The bent trend needs this many distinct rates over this span to be told from scatter. */
@@ -100,7 +117,7 @@ function modelWithTrend(data: EventData, curves: Uint16Array, bent: boolean): Sc
     lnRate.push(fitRateTrend(rate, T.fitted, pick(data.lnRate, k), usable[k], bentCurves));
   }
   for (const trends of [temperature, lnRate]) fillUnusable(trends, data.usable, curves);
-  return {
+  const model = {
     data,
     bent,
     trendParameters: bent ? 3 : 2,
@@ -112,6 +129,33 @@ function modelWithTrend(data: EventData, curves: Uint16Array, bent: boolean): Sc
     temperature,
     lnRate,
     curves,
+  };
+  return { parts: drawParts(model), ...model };
+}
+
+function drawParts({ data, sigmaK, peak, width, temperature, lnRate, curves }: Omit<ScatterModel, 'parts'>): DrawParts {
+  const lifted = (t: Trend) => t.residuals.map((r, i) => r / Math.sqrt(1 - t.leverage[i]));
+  const scanMajor = (columns: Float64Array[]) =>
+    Float64Array.from({ length: columns.length * curves.length }, (_, cell) => {
+      const j = Math.floor(cell / CONVERSION_COUNT);
+      return columns[cell - j * CONVERSION_COUNT][j];
+    });
+  const curveOf = new Int32Array(data.n).fill(-1);
+  curves.forEach((i, j) => {
+    curveOf[i] = j;
+  });
+  return {
+    peak: lifted(peak),
+    width: lifted(width),
+    curveOf,
+    fittedK: scanMajor(temperature.map((t) => t.fitted)),
+    residualK: scanMajor(temperature.map(lifted)),
+    fittedLnRate: scanMajor(lnRate.map((t) => t.fitted)),
+    residualLnRate: scanMajor(lnRate.map(lifted)),
+    baselineK: data.baselineErrorK.map((error, cell) => {
+      const sigma = sigmaK[data.instrument[Math.floor(cell / CONVERSION_COUNT)]];
+      return Math.sqrt(Math.max(0, error * error - sigma * sigma));
+    }),
   };
 }
 
@@ -170,43 +214,42 @@ function instrumentScatter(
  * @returns what was drawn, for the split of the variance
  */
 export function drawColumns(model: ScatterModel, random: Random, out: EventColumns): DrawCauses {
-  const { data, curves } = model;
-  const calibration = data.instruments.map((c) => drawCalibration(c, random));
-  const curveOf = new Int32Array(data.n).fill(-1);
-  curves.forEach((i, j) => {
-    curveOf[i] = j;
-  });
-  const shifts = new Float64Array(data.n);
+  const { data, parts, sigmaK } = model;
+  const { curveOf, fittedK, residualK, fittedLnRate, residualLnRate, baselineK } = parts;
+  const calibration: number[] = [];
+  for (const c of data.instruments) {
+    const { offset, lag } = drawCalibration(c, random);
+    calibration.push(offset, lag);
+  }
+  const shifts: number[] = [];
   for (let i = 0; i < data.n; i++) {
     let from = random.integer(data.n);
     if (curveOf[i] >= 0) while (curveOf[from] < 0) from = random.integer(data.n);
     const at = data.instrument[i];
-    const scale = model.sigmaK[at] / model.sigmaK[data.instrument[from]];
-    const shift = calibration[at].offset + calibration[at].lag * data.rate[i];
+    const scale = sigmaK[at] / sigmaK[data.instrument[from]];
+    const shift = calibration[2 * at] + calibration[2 * at + 1] * data.rate[i];
     const baseline = random.normal();
-    const lift = (h: number) => scale / Math.sqrt(1 - h);
-    out.peakK[i] = model.peak.fitted[i] + lift(model.peak.leverage[from]) * model.peak.residuals[from] - shift;
-    out.widthK[i] = Math.exp(
-      model.width.fitted[i] + (model.width.residuals[from] * lift(model.width.leverage[from])) / scale,
-    );
-    const j = curveOf[i];
-    const f = curveOf[from];
-    shifts[i] = out.peakK[i] + shift - model.peak.fitted[i];
-    if (j < 0 || model.temperature.length === 0) continue;
-    const middle = model.temperature[MIDDLE];
-    shifts[i] = lift(middle.leverage[f]) * middle.residuals[f];
+    out.peakK[i] = model.peak.fitted[i] + scale * parts.peak[from] - shift;
+    out.widthK[i] = Math.exp(model.width.fitted[i] + parts.width[from]);
+    if (curveOf[i] < 0 || fittedK.length === 0) {
+      shifts.push(out.peakK[i] + shift - model.peak.fitted[i]);
+      continue;
+    }
+    const own = curveOf[i] * CONVERSION_COUNT;
+    const other = curveOf[from] * CONVERSION_COUNT;
+    shifts.push(scale * residualK[other + MIDDLE]);
+    // A large baseline share may not turn the curve back on itself.
+    let least = Number.NEGATIVE_INFINITY;
     for (let k = 0; k < CONVERSION_COUNT; k++) {
-      const T = model.temperature[k];
-      const r = model.lnRate[k];
       const cell = i * CONVERSION_COUNT + k;
-      const extra = Math.sqrt(Math.max(0, data.baselineErrorK[cell] ** 2 - model.sigmaK[at] ** 2));
-      const drawn = T.fitted[j] + lift(T.leverage[f]) * T.residuals[f] + baseline * extra - shift;
-      // A large baseline share may not turn the curve back on itself.
-      out.temperatureK[cell] = k === 0 ? drawn : Math.max(drawn, out.temperatureK[cell - 1] + LEAST_SIGMA_K);
-      out.lnRate[cell] = r.fitted[j] + lift(r.leverage[f]) * r.residuals[f];
+      const drawn = fittedK[own + k] + scale * residualK[other + k] + baseline * baselineK[cell] - shift;
+      const kept = Math.max(drawn, least);
+      out.temperatureK[cell] = kept;
+      least = kept + LEAST_SIGMA_K;
+      out.lnRate[cell] = fittedLnRate[own + k] + scale * residualLnRate[other + k];
     }
   }
-  return { calibration: Float64Array.from(calibration.flatMap((c) => [c.offset, c.lag])), shifts };
+  return { calibration, shifts };
 }
 
 /** A scatter estimated from few scans may come out small by chance, not nothing. */
@@ -227,16 +270,17 @@ export interface DrawnWeights {
 export function drawWeights(model: ScatterModel, random: Random, out: DrawnWeights): void {
   const { data, scatterDegrees, curves, weights, sigmaK } = model;
   if (data.instruments.length < 2) return;
-  const ratio = Float64Array.from(scatterDegrees, (nu) => {
-    const part = 2 / (9 * Math.max(1, nu));
-    return Math.max(LEAST_VARIANCE_RATIO, (1 - part + random.normal() * Math.sqrt(part)) ** 3);
-  });
+  const ratio: number[] = [];
+  for (let at = 0; at < scatterDegrees.length; at++) {
+    const part = 2 / (9 * Math.max(1, scatterDegrees[at]));
+    ratio.push(Math.max(LEAST_VARIANCE_RATIO, (1 - part + random.normal() * Math.sqrt(part)) ** 3));
+  }
   for (let i = 0; i < data.n; i++) out.weights[i] = weights[i] / ratio[data.instrument[i]];
-  curves.forEach((i, j) => {
-    const at = data.instrument[i];
-    out.curveWeights[j] = out.weights[i];
+  for (let j = 0; j < curves.length; j++) {
+    const at = data.instrument[curves[j]];
+    out.curveWeights[j] = out.weights[curves[j]];
     out.curveSigmaK[j] = sigmaK[at] * Math.sqrt(ratio[at]);
-  });
+  }
 }
 
 /** Errors of offset and lag; an instrument without standards or sheet values has a lag of unknown size that can only be positive. */

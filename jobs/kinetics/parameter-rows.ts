@@ -3,6 +3,7 @@ import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import { mean, standardDeviation } from '../numeric/statistics.ts';
 import { type DrawCauses, DrawSpread } from './draw-spread.ts';
+import type { DrawnColumns } from './drawn-columns.ts';
 import type { EstimateSettings, Estimates } from './estimate.ts';
 import { CONVERSIONS, type EventData, pooledMean } from './event-data.ts';
 import { type ScatterModel, scanDegrees } from './monte-carlo.ts';
@@ -35,32 +36,21 @@ export class RowBuilder {
     private readonly data: EventData,
     private readonly curves: Uint16Array,
     model: ScatterModel,
-    private readonly drawn: Estimates[],
+    private readonly drawn: DrawnColumns,
     causes: readonly DrawCauses[],
   ) {
     this.spread = new DrawSpread(causes, data.n - model.trendParameters, scanDegrees(model));
   }
 
   /**
-   * A row with the Monte Carlo interval: estimate ± t × spread of the draws (`DrawSpread`), on a log scale for positive quantities.
-   * @param scale of the unit printed, e.g. 1e-3 for kJ
+   * A row with the Monte Carlo interval: estimate ± t × spread of the draws (`DrawSpread`), on a log scale for positive quantities;
+   * nothing for a value that is not finite.
+   * @param drawn the draws' values   @param scale of the unit printed, e.g. 1e-3 for kJ
    */
-  private add(
-    where: Where,
-    of: (e: Estimates) => number,
-    estimate: Estimates,
-    scale: number,
-    log: boolean,
-    onCurves: boolean,
-  ): void {
-    const drawn = this.drawn.map((d) => of(d) * scale);
-    this.addDrawn(where, of(estimate) * scale, drawn, log, onCurves);
-  }
-
-  /** A row with the Monte Carlo interval from values in the unit printed; nothing for a value that is not finite. */
-  addDrawn(where: Where, value: number, drawn: number[], log: boolean, onCurves: boolean): void {
+  add(where: Where, estimate: number, drawn: Float64Array, scale: number, log: boolean, onCurves: boolean): void {
+    const value = estimate * scale;
     if (!Number.isFinite(value)) return;
-    const half = this.spread.halfWidth(log ? drawn.map(Math.log) : drawn);
+    const half = this.spread.halfWidth(drawn.map((v) => (log ? Math.log(v * scale) : v * scale)));
     const bounded = Number.isFinite(half) && (!log || value > 0);
     this.push(
       where,
@@ -103,75 +93,57 @@ export class RowBuilder {
 
   peakRows(e: Estimates, s: EstimateSettings): void {
     const { rate, peakK, rampStartK } = this.data;
+    const drawn = this.drawn.peak;
     const energy = (
       method: string,
-      of: (e: Estimates) => number,
+      of: keyof DrawnColumns['peak'],
       line: EnergyEstimate,
       variant: ParameterRow['variant'] = '',
     ) => {
       const where = { quantity: 'activation_energy', method, unit: 'kJ/mol', variant };
-      this.add(where, of, e, 1e-3, true, false);
+      this.add(where, e[of], drawn[of], 1e-3, true, false);
       if (this.data.n > 2) {
         const half = studentQuantile(0.975, this.data.n - 2) * line.energyError * 1e-3;
         const value = line.energy * 1e-3;
         this.push(where, value, [value - half, value + half], 'student_t', false);
       }
     };
-    energy('kissinger', (v) => v.kissinger, fitEnergyLine(rate, peakK, KISSINGER.power, KISSINGER.factor, s.weights));
-    if (s.augisBennett) {
-      energy('augis_bennett', (v) => v.augisBennett, fitAugisBennett(rate, peakK, rampStartK, s.weights));
-    }
-    energy('boswell', (v) => v.boswell, fitEnergyLine(rate, peakK, BOSWELL.power, BOSWELL.factor, s.weights));
-    energy('ozawa_flynn_wall', (v) => v.ozawaFlynnWall, fitOzawaFlynnWall(rate, peakK, s.weights), 'peak');
+    energy('kissinger', 'kissinger', fitEnergyLine(rate, peakK, KISSINGER.power, KISSINGER.factor, s.weights));
+    if (s.augisBennett) energy('augis_bennett', 'augisBennett', fitAugisBennett(rate, peakK, rampStartK, s.weights));
+    energy('boswell', 'boswell', fitEnergyLine(rate, peakK, BOSWELL.power, BOSWELL.factor, s.weights));
+    energy('ozawa_flynn_wall', 'ozawaFlynnWall', fitOzawaFlynnWall(rate, peakK, s.weights), 'peak');
     const prefactor = { quantity: 'ln_prefactor', method: 'kissinger', unit: 'ln(1/s)' };
-    this.add(prefactor, (v) => v.kissingerLnPrefactor, e, 1, false, false);
+    this.add(prefactor, e.kissingerLnPrefactor, drawn.kissingerLnPrefactor, 1, false, false);
     const exponent = { quantity: 'avrami_exponent', method: 'augis_bennett', unit: '1' };
-    this.add(exponent, (v) => v.augisBennettExponent, e, 1, true, false);
+    this.add(exponent, e.augisBennettExponent, drawn.augisBennettExponent, 1, true, false);
   }
 
   /** @param determined conversions that enough rates are usable at: the others get no row */
   curveRows(e: Estimates, pooledFlags: FlagCode[], determined: readonly boolean[]): void {
-    const methods: [string, (e: Estimates) => Float64Array][] = [
-      ['friedman', (v) => v.friedman],
-      ['kissinger_akahira_sunose', (v) => v.kissingerAkahiraSunose],
-      ['starink', (v) => v.starink],
-      ['ozawa_flynn_wall', (v) => v.ozawaFlynnWallCurve],
-      ['vyazovkin', (v) => v.vyazovkin],
-    ];
+    const { drawn } = this;
+    const methods = [
+      ['friedman', 'friedman'],
+      ['kissinger_akahira_sunose', 'kissingerAkahiraSunose'],
+      ['starink', 'starink'],
+      ['ozawa_flynn_wall', 'ozawaFlynnWallCurve'],
+      ['vyazovkin', 'vyazovkin'],
+    ] as const;
     for (const [method, of] of methods) {
       const where = { quantity: 'activation_energy', method, unit: 'kJ/mol' };
-      this.add({ ...where, flags: pooledFlags }, (v) => pooledMean(of(v), determined), e, 1e-3, true, true);
+      const column = drawn.curve[of];
+      const pooled = drawn.pooled(column, determined);
+      this.add({ ...where, flags: pooledFlags }, pooledMean(e[of], determined), pooled, 1e-3, true, true);
       CONVERSIONS.forEach((conversion, k) => {
-        if (determined[k]) this.add({ ...where, conversion }, (v) => of(v)[k], e, 1e-3, true, true);
+        if (determined[k])
+          this.add({ ...where, conversion }, e[of][k], drawn.atConversion(column, k), 1e-3, true, true);
       });
     }
     if (!e.jmak) return;
-    const of = (pick: (j: NonNullable<Estimates['jmak']>) => number) => (v: Estimates) =>
-      v.jmak ? pick(v.jmak) : Number.NaN;
-    this.add(
-      { quantity: 'activation_energy', method: 'jmak', unit: 'kJ/mol' },
-      of((j) => j.energy),
-      e,
-      1e-3,
-      true,
-      true,
-    );
-    this.add(
-      { quantity: 'ln_prefactor', method: 'jmak', unit: 'ln(1/s)' },
-      of((j) => j.lnPrefactor),
-      e,
-      1,
-      false,
-      true,
-    );
-    this.add(
-      { quantity: 'avrami_exponent', method: 'jmak', unit: '1' },
-      of((j) => j.exponent),
-      e,
-      1,
-      true,
-      true,
-    );
+    const { energy, lnPrefactor, exponent } = drawn.jmak;
+    const row = (quantity: string, unit: string) => ({ quantity, method: 'jmak', unit });
+    this.add(row('activation_energy', 'kJ/mol'), e.jmak.energy, energy, 1e-3, true, true);
+    this.add(row('ln_prefactor', 'ln(1/s)'), e.jmak.lnPrefactor, lnPrefactor, 1, false, true);
+    this.add(row('avrami_exponent', '1'), e.jmak.exponent, exponent, 1, true, true);
   }
 
   /** Mean enthalpy of the scans with a known mass, with Student's interval of the mean. */

@@ -39,8 +39,30 @@ export function addArrheniusIntegral(
   out: ArrheniusIntegral,
 ): void {
   const c = energyJPerMol / GAS_CONSTANT;
+  const shift = c * x0;
+  // What the end of a stretch costs serves the start of the next: its row, exponential and factor.
+  let knownRow = -1;
+  let e1 = 0;
+  let h1 = 0;
   for (let i = from; i < to; i++) {
-    addStretch(temperatureK[i], temperatureK[i + 1], timeS[i + 1] - timeS[i], c, c * x0, out);
+    const T1 = temperatureK[i];
+    const T2 = temperatureK[i + 1];
+    const x1 = c / T1;
+    const x2 = c / T2;
+    if (!(x1 > LEAST_X && x2 > LEAST_X && Math.abs(x1 - x2) >= SHORT_STRETCH)) {
+      addStretch(T1, T2, timeS[i + 1] - timeS[i], c, shift, out);
+      continue;
+    }
+    if (knownRow !== i) {
+      e1 = Math.exp(shift - x1);
+      h1 = temperatureIntegralFactorFast(x1) / x1;
+    }
+    const e2 = Math.exp(shift - x2);
+    const h2 = temperatureIntegralFactorFast(x2) / x2;
+    addClosedForm(T1, T2, timeS[i + 1] - timeS[i], c, e1, h1, e2, h2, out);
+    knownRow = i + 1;
+    e1 = e2;
+    h1 = h2;
   }
 }
 
@@ -64,9 +86,24 @@ export function addStretch(T1: number, T2: number, dt: number, c: number, shift:
   const e2 = Math.exp(shift - x2);
   const h1 = temperatureIntegralFactorFast(x1) / x1;
   const h2 = temperatureIntegralFactorFast(x2) / x2;
+  addClosedForm(T1, T2, dt, c, e1, h1, e2, h2, out);
+}
+
+/** With e = exp(shift − x) and h(x)/x at both ends. */
+function addClosedForm(
+  T1: number,
+  T2: number,
+  dt: number,
+  c: number,
+  e1: number,
+  h1: number,
+  e2: number,
+  h2: number,
+  out: ArrheniusIntegral,
+): void {
   const perKelvin = dt / (T2 - T1);
   out.value += perKelvin * (T2 * h2 * e2 - T1 * h1 * e1);
-  out.byEnergy -= (perKelvin / GAS_CONSTANT) * ((e2 * (1 - h2)) / x2 - (e1 * (1 - h1)) / x1);
+  out.byEnergy -= (perKelvin / (GAS_CONSTANT * c)) * (T2 * e2 * (1 - h2) - T1 * e1 * (1 - h1));
   out.byEnergy2 += (perKelvin / (GAS_CONSTANT * GAS_CONSTANT * c)) * (e2 - e1);
 }
 

@@ -1,8 +1,9 @@
 import { GAS_CONSTANT } from '../../../schema/wire/units.ts';
 import type { LnIntegrals } from '../../laws/arrhenius-integral.ts';
 import { approachMinimum, type LeastSquaresResult } from '../../numeric/least-squares.ts';
-import { solveSymmetric } from '../../numeric/linear-solve.ts';
+import { SymmetricSolver } from '../../numeric/linear-solve.ts';
 import { CONVERSION_COUNT, CONVERSIONS } from '../event-data.ts';
+import { LN_LN } from './ozawa.ts';
 
 /** Fills ln ∫ exp(−(E/R)(1/T − x0)) dt from the start of the programme to each conversion, scan-major. */
 export type CumulativeIntegrals = (energy: number, out: LnIntegrals) => void;
@@ -27,6 +28,9 @@ export interface JmakQuality {
 /** Size of a meaningful change of (E, ln K at x0, n). */
 const SCALE = Float64Array.of(1e5, 1, 1);
 const CONVERSION = Float64Array.from(CONVERSIONS);
+const LN_LN_1A = Float64Array.from(LN_LN);
+/** dα/d ln X at each conversion. */
+const SLOPE = CONVERSION.map((a) => -(1 - a) * Math.log1p(-a));
 
 /** Standard deviation of one α of a curve about the law when the scan sits right: noise and baseline, about half a per cent. */
 const CURVE_SIGMA = 0.005;
@@ -36,6 +40,8 @@ const DRAW_TOLERANCE = 1e-5;
 /** In a draw integrals are carried this part of E along their derivatives: what is left out is below 1e-7. */
 const REACH = 5e-3;
 const MOST_STEPS = 60;
+/** A first step of a draw beyond this, in units of `SCALE`, is not taken. */
+const FIRST_STEP = 1;
 const DAMPING_LIMIT = 1e8;
 const P = 3;
 
@@ -48,7 +54,8 @@ const P = 3;
  * of squares is Σ_i [Σ_k (α̂(T_ik − δ_i) − α_k)²/σ_α² + δ_i²/σ_i²]. n then comes from the shape of each curve and E from where the curves
  * sit; without δ a scatter of 1.5 K on a chip read n 1.3 % low. δ acts on ln ∫K dt as −δ E/(R T²).
  *
- * Damped Gauss–Newton on (E, ln K0, n) and all δ together. Each δ meets only its own scan, so the normal matrix is a 3 × 3 block, a diagonal
+ * Damped Gauss–Newton on (E, ln K0, n) and all δ together. A draw takes its first step in ln[−ln(1−α)] = n ln ∫K dt, where the law is all but
+ * linear and costs no exponential. Each δ meets only its own scan, so the normal matrix is a 3 × 3 block, a diagonal
  * and a border: the diagonal is eliminated (Schur complement) while the one pass over the points makes the sums; no Jacobian is stored.
  */
 export class JmakFit {
@@ -67,17 +74,26 @@ export class JmakFit {
   private readonly gradient = new Float64Array(P);
   /** per scan: Σ g², Σ g r, and Σ g J for the three parameters */
   private readonly border: Float64Array;
+  /** the sums before a step that may have to be taken back */
+  private readonly keptNormal = new Float64Array(P * P);
+  private readonly keptGradient = new Float64Array(P);
+  private readonly keptBorder: Float64Array;
+  private readonly next = new Float64Array(P);
+  private readonly solver = new SymmetricSolver(P);
+  /** per row of the curve scans */
+  private readonly usable?: Uint8Array;
 
   /**
-   * @param sigmaK scatter of each scan's temperature, K   @param temperatureAt K at each conversion of each scan, scan-major; read at every
-   * fit   @param usable 0 for points to leave out; all count when missing
+   * @param sigmaK scatter of each curve scan's temperature, K   @param temperatureK scan-major over all scans, read at every fit
+   * @param curves scans with curves   @param usable 0 for points to leave out, as `temperatureK`; all count when missing
    */
   constructor(
     private readonly sigmaK: ArrayLike<number>,
     private readonly x0: number,
-    private readonly temperatureAt: (row: number) => number,
+    private readonly temperatureK: Float64Array,
+    private readonly curves: ArrayLike<number>,
     private readonly cumulative: CumulativeIntegrals,
-    private readonly usable?: Uint8Array,
+    usable?: Uint8Array,
   ) {
     const rows = sigmaK.length * CONVERSION_COUNT;
     const column = () => new Float64Array(rows);
@@ -86,6 +102,13 @@ export class JmakFit {
     this.shifts = new Float64Array(sigmaK.length);
     this.trialShifts = new Float64Array(sigmaK.length);
     this.border = new Float64Array(sigmaK.length * (P + 2));
+    this.keptBorder = new Float64Array(this.border.length);
+    this.usable =
+      usable &&
+      Uint8Array.from(
+        { length: rows },
+        (_, row) => usable[curves[Math.floor(row / CONVERSION_COUNT)] * CONVERSION_COUNT + (row % CONVERSION_COUNT)],
+      );
   }
 
   /** From a rough start, to the last digit. Where that fails the library's Levenberg–Marquardt brings it near first. */
@@ -95,7 +118,6 @@ export class JmakFit {
     const rms = (sum: number, n: number) => Math.sqrt(sum / n);
     const n = this.sigmaK.length;
     return {
-      ...this.result(fit),
       quality: {
         residualRms: rms(this.curveSquares, n * CONVERSION_COUNT),
         shiftRms: rms(
@@ -103,12 +125,14 @@ export class JmakFit {
           n,
         ),
       },
+      ...this.result(fit),
     };
   }
 
-  /** From a neighbouring answer (Monte Carlo draws). */
-  fitFrom(start: Float64Array): JmakEstimate {
-    return this.result(this.solve(start, DRAW_TOLERANCE, REACH));
+  /** From a neighbouring answer (Monte Carlo draws). @param energyRatio by which other methods' E differs from theirs there */
+  fitFrom(neighbour: Float64Array, energyRatio: number): JmakEstimate {
+    const [energy, lnK0, exponent] = neighbour;
+    return this.result(this.solve(Float64Array.of(energy * energyRatio, lnK0, exponent), DRAW_TOLERANCE, REACH));
   }
 
   private result(fit: LeastSquaresResult): JmakEstimate {
@@ -116,23 +140,28 @@ export class JmakFit {
     return { energy, lnPrefactor: lnK0 + (energy * this.x0) / GAS_CONSTANT, exponent, fit };
   }
 
-  /** @param tolerance step ÷ scale   @param reach see `REACH`; 0: integrals anew for every E */
+  /** @param tolerance step ÷ scale   @param reach see `REACH`; 0: integrals anew for every E, and no step in the logarithm first */
   private solve(start: Float64Array, tolerance: number, reach: number): LeastSquaresResult {
     this.reach = reach;
     this.madeAt = 0;
-    const { normal, gradient, border } = this;
-    const scans = this.sigmaK.length;
-    for (let row = 0; row < this.perKelvin.length; row++) {
-      this.perKelvin[row] = 1 / (GAS_CONSTANT * this.temperatureAt(row) ** 2);
+    const { normal, gradient, border, keptNormal, keptGradient, keptBorder, next } = this;
+    for (let i = 0; i < this.curves.length; i++) {
+      for (let k = 0; k < CONVERSION_COUNT; k++) {
+        const T = this.temperatureK[this.curves[i] * CONVERSION_COUNT + k];
+        this.perKelvin[i * CONVERSION_COUNT + k] = 1 / (GAS_CONSTANT * T * T);
+      }
     }
     let shifts = this.shifts.fill(0);
     let trial = this.trialShifts;
-    const parameters = Float64Array.from(start);
-    const next = new Float64Array(P);
-    const keptNormal = new Float64Array(P * P);
-    const keptGradient = new Float64Array(P);
-    const keptBorder = new Float64Array(border.length);
-    let sum = this.accumulate(parameters, shifts);
+    const parameters = start.slice();
+    if (reach > 0) {
+      this.accumulate(parameters, shifts, true);
+      if (this.makeStep(parameters, shifts, trial, 0) < FIRST_STEP) {
+        parameters.set(next);
+        [shifts, trial] = [trial, shifts];
+      }
+    }
+    let sum = this.accumulate(parameters, shifts, false);
     let evaluations = 1;
     let damping = 0;
     let converged = false;
@@ -145,22 +174,10 @@ export class JmakFit {
       keptNormal.set(normal);
       keptGradient.set(gradient);
       keptBorder.set(border);
-      for (let i = 0; i < P; i++) normal[i * P + i] *= 1 + damping;
-      if (!solveSymmetric(normal, gradient, P)) {
+      const largest = this.makeStep(parameters, shifts, trial, damping);
+      if (Number.isNaN(largest)) {
         message = 'the normal matrix is singular: the data do not determine every parameter';
         break;
-      }
-      let largest = 0;
-      for (let i = 0; i < P; i++) {
-        next[i] = parameters[i] - gradient[i];
-        largest = Math.max(largest, Math.abs(gradient[i]) / SCALE[i]);
-      }
-      for (let i = 0; i < scans; i++) {
-        const b = i * (P + 2);
-        const move =
-          (border[b + 1] - border[b + 2] * gradient[0] - border[b + 3] * gradient[1] - border[b + 4] * gradient[2]) /
-          border[b];
-        trial[i] = shifts[i] - move;
       }
       if (largest < tolerance) {
         parameters.set(next);
@@ -169,7 +186,7 @@ export class JmakFit {
         message = `last step ${largest.toExponential(1)} of the parameters' scale`;
         break;
       }
-      const sum2 = this.accumulate(next, trial);
+      const sum2 = this.accumulate(next, trial, false);
       evaluations++;
       if (sum2 <= sum) {
         parameters.set(next);
@@ -192,8 +209,35 @@ export class JmakFit {
     return { parameters, sumOfSquares: sum, converged, message, evaluations };
   }
 
-  /** One pass over the points: the sum of squares (infinite outside the model's range) and the sums that the next step needs. */
-  private accumulate(p: Float64Array, shifts: Float64Array): number {
+  /**
+   * The step that the sums of the last pass ask for, parameters into `next` and shifts into `trial`; the sums are overwritten.
+   * @returns its largest part ÷ scale, NaN where the matrix is singular
+   */
+  private makeStep(parameters: Float64Array, shifts: Float64Array, trial: Float64Array, damping: number): number {
+    const { normal, gradient, border, next } = this;
+    for (let i = 0; i < P; i++) normal[i * P + i] *= 1 + damping;
+    if (!this.solver.factor(normal)) return Number.NaN;
+    this.solver.solve(gradient);
+    let largest = 0;
+    for (let i = 0; i < P; i++) {
+      next[i] = parameters[i] - gradient[i];
+      largest = Math.max(largest, Math.abs(gradient[i]) / SCALE[i]);
+    }
+    for (let i = 0; i < shifts.length; i++) {
+      const b = i * (P + 2);
+      const move =
+        (border[b + 1] - border[b + 2] * gradient[0] - border[b + 3] * gradient[1] - border[b + 4] * gradient[2]) /
+        border[b];
+      trial[i] = shifts[i] - move;
+    }
+    return largest;
+  }
+
+  /**
+   * One pass over the points: the sum of squares (infinite outside the model's range) and the sums that the next step needs.
+   * @param logarithmic residuals are those of n ln X from ln[−ln(1−α)], times dα/d ln X
+   */
+  private accumulate(p: Float64Array, shifts: Float64Array, logarithmic: boolean): number {
     const energy = p[0];
     const lnK0 = p[1];
     const n = p[2];
@@ -232,10 +276,14 @@ export class JmakFit {
         const perShift = perKelvin[row];
         const bend = moved * byEnergy2[row];
         const lnX = lnK0 + value[row] + moved * (byEnergy[row] + bend / 2) - energy * perShift * shift;
-        const X = Math.exp(n * lnX);
-        const left = Math.exp(-X);
-        const r = 1 - left - CONVERSION[k];
-        const slope = left * X;
+        let slope = SLOPE[k];
+        let r = slope * (n * lnX - LN_LN_1A[k]);
+        if (!logarithmic) {
+          const X = Math.exp(n * lnX);
+          const left = Math.exp(-X);
+          r = 1 - left - CONVERSION[k];
+          slope = left * X;
+        }
         const j1 = slope * n;
         const j0 = j1 * (byEnergy[row] + bend - perShift * shift);
         const j2 = slope * lnX;
