@@ -96,7 +96,7 @@ export function collectEvent(event: number, input: FitScan[], instruments: Instr
       data.lnRate[i * CONVERSION_COUNT + k] = Math.log(c.ratePerS[g]);
       data.baselineErrorK[i * CONVERSION_COUNT + k] = c.baselineErrorK[g];
       const a = CONVERSIONS[k];
-      if (a > e.usableFrom - EDGE && a < e.usableTo + EDGE) data.usable[i * CONVERSION_COUNT + k] = 1;
+      if (isUsable(e, a)) data.usable[i * CONVERSION_COUNT + k] = 1;
     });
     const before = c.programmeTimeS.length - 1;
     const timeS = new Float64Array(before + c.timeS.length);
@@ -110,6 +110,10 @@ export function collectEvent(event: number, input: FitScan[], instruments: Instr
   return data;
 }
 
+/** Whether a scan counts at a conversion. */
+export const isUsable = (e: FitScan['event'], conversion: number): boolean =>
+  conversion > e.usableFrom - EDGE && conversion < e.usableTo + EDGE;
+
 /** Weights of the curve scans once some conversions of some scans are left out. */
 export interface UsableWeights {
   /** at each conversion; those of all scans where too few rates are left */
@@ -120,17 +124,20 @@ export interface UsableWeights {
   whole: Float64Array;
 }
 
-/** @param weights of the curve scans   @param usable scan-major over all scans; all of them when missing */
+/**
+ * @param weights of the curve scans   @param usable scan-major over all scans; all of them when missing
+ * @param distinct how many programmes are distinct among some scans: heating rates unless said otherwise
+ */
 export function usableWeights(
   columns: Pick<EventColumns, 'rate'>,
   curves: ArrayLike<number>,
   weights: Float64Array,
   usable?: Uint8Array,
+  distinct = (scans: number[]) => distinctRates(scans.map((i) => Math.abs(columns.rate[i]))).length,
 ): UsableWeights {
   const keep = (holds: (scan: number) => boolean) => {
     const kept = weights.map((w, j) => (holds(curves[j]) ? w : 0));
-    const rates = Array.from(curves).filter((_, j) => kept[j] > 0);
-    const enough = distinctRates(rates.map((i) => Math.abs(columns.rate[i]))).length >= LEAST_RATES;
+    const enough = distinct(Array.from(curves).filter((_, j) => kept[j] > 0)) >= LEAST_RATES;
     return { kept: enough ? kept : weights, enough };
   };
   const each = CONVERSIONS.map((_, k) => keep((i) => usable?.[i * CONVERSION_COUNT + k] !== 0));
@@ -151,6 +158,27 @@ export function pooledMean(values: ArrayLike<number>, determined: ArrayLike<bool
     count++;
   }
   return sum / count;
+}
+
+/** Holds further apart than this are different temperatures, K. */
+export const APART_K = 0.5;
+
+/** Hold temperatures that differ by more than half a kelvin. */
+export function distinctTemperatures(temperatures: readonly number[]): number[] {
+  const out: number[] = [];
+  for (const T of [...temperatures].sort((a, b) => a - b)) {
+    if (out.length === 0 || T > out[out.length - 1] + APART_K) out.push(T);
+  }
+  return out;
+}
+
+/** Distinct programmes among scans of any kind: rates of the ramps and temperatures of the holds. */
+export function distinctProgrammes(scans: readonly FitScan[]): { rates: number[]; temperatures: number[] } {
+  const ramps = scans.filter((s) => s.event.kind !== 'hold');
+  return {
+    rates: distinctRates(ramps.map((s) => Math.abs(s.event.rateKPerS))),
+    temperatures: distinctTemperatures(scans.flatMap((s) => s.event.holdK ?? [])),
+  };
 }
 
 /** Heating rates that differ by more than 2 %. */

@@ -56,9 +56,10 @@ export function fitCooling(
     return { parameters: [], reports: [report('friedman', false, detail, 0)], flags };
   }
   const data = collectEvent(event, withCurves, calibrations);
-  const { estimate, drawn } = fitProgrammes(data, COOLING_BRACKET, random, draws);
+  const fit = fitProgrammes(data, COOLING_BRACKET, random, draws);
+  const converged = fit.estimate.converged && fit.counts.vyazovkin.determined.some(Boolean);
   const list = new RowList(sample, event, data);
-  list.programmes(estimate, drawn, ['cooling']);
+  list.programmes(fit, ['cooling']);
   const curves = Uint16Array.from(data.scans.keys());
   const lnRate = data.rate.map((b) => Math.log(-b));
   const weights = new Float64Array(data.n).fill(1);
@@ -68,8 +69,8 @@ export function fitCooling(
     report('kissinger', false, NOT_COMPUTED, data.n),
     report(
       'vyazovkin',
-      estimate.converged,
-      estimate.converged ? 'cooling ramps' : 'no minimum between −1000 and 1000 kJ/mol at some conversion',
+      converged,
+      converged ? 'cooling ramps' : 'no minimum between −1000 and 1000 kJ/mol at some conversion',
       rows,
     ),
   ];

@@ -8,25 +8,14 @@ import type { Random } from '../numeric/random.ts';
 import { mean, standardDeviation } from '../numeric/statistics.ts';
 import { fitArrhenius, type Hold, holdDraws } from './avrami/hold-series.ts';
 import { fitHold, localExponent } from './avrami/isothermal.ts';
-import { collectEvent } from './event-data.ts';
+import { APART_K, collectEvent, distinctTemperatures } from './event-data.ts';
 import type { EventFit } from './fit-event.ts';
 import { noteExponent } from './judge-model.ts';
 import { RowList } from './row-list.ts';
 
-/** Holds further apart than this are different temperatures, K. */
-const APART_K = 0.5;
 /** A hold reached after this conversion is no isothermal scan. */
 const LATEST_REACHED = 0.05;
 const LEAST_TEMPERATURES = 3;
-
-/** Hold temperatures that differ by more than half a kelvin. */
-export function distinctTemperatures(temperatures: readonly number[]): number[] {
-  const out: number[] = [];
-  for (const T of [...temperatures].sort((a, b) => a - b)) {
-    if (out.length === 0 || T > out[out.length - 1] + APART_K) out.push(T);
-  }
-  return out;
-}
 
 /** Holds of one event: isothermal JMAK of each, the mean exponent, and E and ln A from ln K against 1/T. */
 export function fitHolds(

@@ -1,9 +1,9 @@
 import type { FlagCode } from '../../schema/wire/flags.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
-import { mean, standardDeviation } from '../numeric/statistics.ts';
-import { CONVERSIONS, type EventData, POOLED } from './event-data.ts';
-import type { ProgrammeEstimates } from './isoconversional/programmes.ts';
+import { standardDeviation } from '../numeric/statistics.ts';
+import { CONVERSIONS, type EventData, pooledMean } from './event-data.ts';
+import type { ProgrammeEstimates, ProgrammeFit } from './isoconversional/programmes.ts';
 
 export interface RowOptions {
   conversion?: number;
@@ -70,15 +70,15 @@ export class RowList {
     this.push(quantity, method, unit, value, [limits[0], limits[1]], o);
   }
 
-  /** E(α) and its mean over 0.1 … 0.9 by Friedman and incremental Vyazovkin. */
-  programmes(e: ProgrammeEstimates, drawn: ProgrammeEstimates[], pooledFlags: FlagCode[]): void {
-    const degrees = this.data.n - 2;
+  /** E(α) and its mean over 0.1 … 0.9 by Friedman and incremental Vyazovkin; no row where too few programmes are usable. */
+  programmes({ estimate, drawn, counts }: ProgrammeFit, pooledFlags: FlagCode[]): void {
     for (const method of ['friedman', 'vyazovkin'] as const) {
-      const pooled = (p: ProgrammeEstimates) => mean(p[method].subarray(POOLED.from, POOLED.to)) * 1e-3;
-      const row = (of: (p: ProgrammeEstimates) => number, o: RowOptions) =>
-        this.drawn('activation_energy', method, 'kJ/mol', of(e), drawn.map(of), degrees, o);
-      row(pooled, { flags: pooledFlags });
-      for (const [k, conversion] of CONVERSIONS.entries()) row((p) => p[method][k] * 1e-3, { conversion });
+      const { scans, determined } = counts[method];
+      const row = (of: (p: ProgrammeEstimates) => number, count: number, o: RowOptions) =>
+        this.drawn('activation_energy', method, 'kJ/mol', of(estimate), drawn.map(of), count - 2, o);
+      row((p) => pooledMean(p[method], determined) * 1e-3, pooledMean(scans, determined), { flags: pooledFlags });
+      for (const [k, conversion] of CONVERSIONS.entries())
+        if (determined[k]) row((p) => p[method][k] * 1e-3, scans[k], { conversion });
     }
   }
 }

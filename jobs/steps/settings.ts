@@ -2,7 +2,7 @@
 export const STEP_VERSIONS = {
   'read-scan': 1,
   'reduce-scan': 7,
-  'fit-sample': 5,
+  'fit-sample': 6,
   'judge-curvature': 2,
   'forecast-sample': 3,
 } as const;
