@@ -53,6 +53,9 @@ const SHORT_FLANK = 0.9;
 export const BLOCK_WIDTHS = 1 / 6;
 export const BLOCK_HEIGHT_PART = 4e-4;
 
+/** Noise that does not average out within a block is taken as independent from one stretch of this length to the next. */
+export const FLICKER_WIDTHS = 0.7;
+
 /** Models of less weight add nothing. */
 const LEAST_WEIGHT = 1e-9;
 

@@ -15,6 +15,8 @@ export interface Landmarks {
   height: number;
 }
 
+/** Slope at the top of noise that does not average out, in units of it a half width of the cubic (study `reduction`, pink noise). */
+const FLICKER_SLOPE = 2;
 /** Half width of the cubic through the top, full widths: wide enough to average noise, its bias is 2e-3 of the width. */
 const TOP_HALF_WIDTH = 1 / 5;
 
@@ -35,7 +37,8 @@ export function findLandmarks(w: EventWindow, x: Excess, shape: EventShape): Lan
     if (!(bend < 0)) break;
     const step = Math.max(-half, Math.min(half, -slope / bend));
     peakS += step;
-    peakErrorS = (w.noise * Math.hypot(f.slopeNoise, (r + w.undoneS) * f.curvatureNoise)) / Math.abs(bend);
+    const white = w.noise * Math.hypot(f.slopeNoise, (r + w.undoneS) * f.curvatureNoise);
+    peakErrorS = Math.hypot(white, (FLICKER_SLOPE * w.flicker) / half) / Math.abs(bend);
     if (Math.abs(step) < 1e-7 * shape.widthS) break;
   }
   const top = binAt(w, x, peakS);

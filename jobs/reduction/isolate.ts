@@ -1,4 +1,4 @@
-import { type Baseline, BLOCK_HEIGHT_PART, BLOCK_WIDTHS, baselineAt, fitBaseline } from './baseline.ts';
+import { type Baseline, BLOCK_HEIGHT_PART, BLOCK_WIDTHS, baselineAt, FLICKER_WIDTHS, fitBaseline } from './baseline.ts';
 import { binsBetween, chooseFlanks } from './choose-flanks.ts';
 import { FLANK, type Limits, placeLimits, RAMP_REACH, type Room, widthOf } from './event-limits.ts';
 import { type Bell, type Excess, halfWidths, subtractBaseline } from './excess.ts';
@@ -114,6 +114,7 @@ function fitOnce(
   const sums = new FlankSums(w, top.peakS, width, room.footless ? undefined : first);
   const bin = (w.t[w.t.length - 1] - w.t[0]) / (w.t.length - 1);
   const variance = w.noise ** 2 + Math.max(1, (BLOCK_WIDTHS * width) / bin) * (BLOCK_HEIGHT_PART * top.height) ** 2;
+  const open = variance + w.flicker ** 2 * Math.max(1, (FLICKER_WIDTHS * width) / bin);
   const least = Math.max(FLANK.least * width, 3 * bin);
   const flanksAt = (leftS: number, rightS: number) =>
     chooseFlanks(w, sums, room, limits, { leftS, rightS }, { width, height: top.height, variance, least });
@@ -125,7 +126,7 @@ function fitOnce(
         ? 'none'
         : 'free';
   const fitAt = (leftS: number, rightS: number, start: Excess | undefined): Excess | undefined => {
-    const baseline = fitBaseline(sums, flanksAt(leftS, rightS), { leftS, rightS }, variance, steps);
+    const baseline = fitBaseline(sums, flanksAt(leftS, rightS), { leftS, rightS }, open, steps);
     if (!baseline) return undefined;
     if (meltingOverlap) return cutAtMelting(w, baseline, top, room);
     // The step being part of the baseline, the event may begin under it.

@@ -22,10 +22,17 @@ import type { ScanContext } from './scan-context.ts';
 import { type SelfHeating, selfHeatingOf, warmingOf } from './self-heating.ts';
 import { separateEvents } from './separate-events.ts';
 import { undoResponse } from './undo-response.ts';
-import { averageWindow, type EventWindow } from './window.ts';
+import { averageWindow, type EventWindow, flickerOf } from './window.ts';
 
 /** Half width of the surroundings that are looked at, full widths: limits and the longest flanks fit in. */
 const SURROUNDINGS = { before: 8, behind: 7 };
+/** Where an event is, half widths from its peak: beyond, what is not smooth is noise. */
+const EVENT_REACH = { left: 4, right: 2.8 };
+/**
+ * What noise that does not average out leaves open, in units of it: of the mean height over the width, and of the conversion in the middle
+ * of the event (study `reduction`, pink noise).
+ */
+const FLICKER = { area: 2, conversion: 1.5 };
 /** From this part of the measured width on a response is undone before limits are set: its tail is longer than the event's own. */
 const UNDONE_FIRST = 0.3;
 const USABLE = { glass: 0.1, melting: 0.8 };
@@ -53,7 +60,9 @@ export function reduceEvents(
   const [begin, last] = [bells[0], bells[bells.length - 1]];
   const from = Math.max(segment.from, lowerBound(timeS, begin.peakS - SURROUNDINGS.before * width));
   const to = Math.min(segment.to, lowerBound(timeS, last.peakS + SURROUNDINGS.behind * width));
-  const measured = averageWindow(timeS, c.scan.temperatureK, c.y, from, to, width, c.noise);
+  const averaged = averageWindow(timeS, c.scan.temperatureK, c.y, from, to, width, c.noise);
+  const beside = [begin.peakS - EVENT_REACH.left * begin.leftS, last.peakS + EVENT_REACH.right * last.rightS] as const;
+  const measured = { ...averaged, flicker: flickerOf(averaged, width, ...beside) };
   const undone = room.responseS > UNDONE_FIRST * width;
   const w = undone ? undoResponse(measured, room.responseS, width) : measured;
   const separated = separateEvents(w, bells, undone ? { ...room, responseS: 0 } : room);
@@ -102,9 +111,12 @@ function completeEvent(
   const baseline = baselineError(w, x, shape, times, refit);
   const tail = isolated.meltingOverlap && room.knownArea === undefined ? HIDDEN_TAIL_PART * x.area : 0;
   const open = Math.hypot(tail, MOVED_AREAS * (x.openPart ?? 0) * x.area);
+  const flickerWs = FLICKER.conversion * w.flicker * shape.widthS;
   const error = baseline.error.map((s, k) => {
-    const hidden = (open * CONVERSION_GRID[k]) / trueSignal(w, shape, times[k], binAt(w, x, times[k])).value;
-    return Math.hypot(Math.hypot(s, hidden) * Math.abs(rate), warming.part * warming.at(times[k]));
+    const signal = trueSignal(w, shape, times[k], binAt(w, x, times[k])).value;
+    const hidden = (open * CONVERSION_GRID[k]) / signal;
+    const own = (flickerWs * Math.sqrt(CONVERSION_GRID[k] * (1 - CONVERSION_GRID[k]))) / signal;
+    return Math.hypot(Math.hypot(s, hidden, own) * Math.abs(rate), warming.part * warming.at(times[k]));
   });
   const stepK = Math.abs(rate) / perSecond;
   const binS = w.t[1] - w.t[0];
@@ -125,6 +137,7 @@ function completeEvent(
     areaError: Math.hypot(
       baseline.areaError,
       w.noise * Math.sqrt((x.to - x.from) * binS ** 2),
+      FLICKER.area * w.flicker * shape.widthS,
       separationError(x),
       tail,
       isolated.together?.areaError ?? 0,

@@ -248,6 +248,7 @@ function coarser(w: EventWindow, from: number, to: number): EventWindow {
     T: mean(w.T),
     y: mean(w.y),
     noise: w.noise / Math.sqrt(size),
+    flicker: w.flicker,
     binSize: w.binSize * size,
     undoneS: w.undoneS,
   };

@@ -27,6 +27,14 @@ test.each([
   }
 });
 
+test('noise that does not average out: the errors stated for Tp, T(0.5) and ΔH hold most of the truth', () => {
+  const results = Array.from({ length: 8 }, (_, index) =>
+    reduceSimulated(difficulty('pink noise 0.3 %'), 'test', index),
+  );
+  for (const key of ['peakInErrors', 'halfInErrors', 'enthalpyInErrors'] as const)
+    expect(results.filter((r) => Math.abs(r[key] ?? 9) < 2).length, key).toBeGreaterThanOrEqual(7);
+});
+
 test('two events one width apart: the area of the first within 5 %', () => {
   for (let index = 0; index < 3; index++) {
     const result = reduceSimulated(difficulty('second event 1 width above, noise 1 %'), 'test', index);

@@ -49,6 +49,7 @@ export const DIFFICULTIES: Difficulty[] = [
   { name: 'noise 2 %', recording: { noise: 0.02 } },
   { name: 'noise 5 %', recording: { noise: 0.05 } },
   { name: 'pink noise 0.3 %', recording: { pinkNoise: 0.003 } },
+  { name: 'pink noise 1 %, white 0.1 %', recording: { noise: 0.001, pinkNoise: 0.01 } },
   { name: 'drift 5 %, parabola', recording: { driftOrder: 2 } },
   { name: 'drift 20 %, parabola', recording: { drift: 0.2, driftOrder: 2 } },
   { name: 'drift 20 %', recording: { drift: 0.2 } },
@@ -119,9 +120,10 @@ export interface ReductionErrors {
   half?: number;
   late?: number;
   enthalpy?: number;
-  /** Errors of ΔH and T(0.5) ÷ the errors stated for them: area, baseline */
+  /** Errors of ΔH, T(0.5) and Tp ÷ the errors stated for them: area, baseline, peak */
   enthalpyInErrors?: number;
   halfInErrors?: number;
+  peakInErrors?: number;
   /** Midpoint of the glass transition, in units of the event's width */
   glassTransition?: number;
   /** What stopped it */
@@ -234,6 +236,7 @@ export function reduceSimulated(difficulty: Difficulty, seed: string, index: num
     enthalpy,
     enthalpyInErrors: enthalpy && (enthalpy * event.area) / (event.areaError * (1 + enthalpy)),
     halfInErrors: event.curve && half && (half * truth.widthK) / event.curve.baselineErrorK[49],
+    peakInErrors: (event.peakK - truth.peakK) / event.peakErrorK,
     glassTransition:
       glass && glassTransitionK !== undefined ? (glassTransitionK - glass.temperatureK) / truth.widthK : undefined,
     reason: event.curve ? undefined : 'no curve',
@@ -249,7 +252,7 @@ export function reductionStudy({ count = 40, seed }: StudyOptions): string {
       const errors = results.flatMap((result) => (result[column] === undefined ? [] : [Math.abs(result[column])]));
       return errors.length === 0 ? '–' : `${percent(quantile(errors, 0.5), 1)} / ${percent(quantile(errors, 0.95), 1)}`;
     });
-    const held = (['enthalpyInErrors', 'halfInErrors'] as const).map((column) => {
+    const held = (['enthalpyInErrors', 'halfInErrors', 'peakInErrors'] as const).map((column) => {
       const sizes = results.flatMap((result) => (result[column] === undefined ? [] : [Math.abs(result[column])]));
       return sizes.length === 0 ? '–' : percent(sizes.filter((v) => v < 2).length / sizes.length, 0);
     });
@@ -269,6 +272,7 @@ export function reductionStudy({ count = 40, seed }: StudyOptions): string {
         'Tg',
         'ΔH in 2 errors',
         'T(0.5) in 2 errors',
+        'Tp in 2 errors',
         'not reduced',
         'flags',
       ],
