@@ -14,6 +14,7 @@ import { addDocumentRoutes } from './routes/documents.ts';
 import { addFileRoutes } from './routes/files.ts';
 import { addInstrumentRoutes } from './routes/instruments.ts';
 import { addJobRoutes } from './routes/jobs.ts';
+import { addOverviewRoutes } from './routes/overview.ts';
 import { addResultRoutes } from './routes/results.ts';
 import { addSampleRoutes } from './routes/samples.ts';
 import { addScanRoutes } from './routes/scans.ts';
@@ -87,6 +88,7 @@ export function createApp(ports: Ports, options: AppOptions): ApiApp {
   addCampaignRoutes(app, ports);
   addFileRoutes(app, ports);
   addStatusRoutes(app, ports, options.stream ?? STREAM_TIMES);
+  addOverviewRoutes(app, ports);
   addTableRoutes(app, ports);
   addResultRoutes(app, ports);
   addSampleRoutes(app, ports);

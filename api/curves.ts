@@ -68,6 +68,30 @@ export function traceSeries(scans: ReducedSampleScan[], column: 'heatFlow' | 'ba
   });
 }
 
+/** Pieces of an outline: two points each, about one a px of a plot. */
+const OUTLINE_PIECES = 200;
+
+/** A curve as a first look needs it: of each piece the lowest and the highest point, in their order, and both ends. */
+export function outlineOf(series: CurveSeries): CurveSeries {
+  const count = series.x.length;
+  if (count <= 2 * OUTLINE_PIECES) return series;
+  const kept = new Set([0, count - 1]);
+  for (let piece = 0; piece < OUTLINE_PIECES; piece++) {
+    const from = Math.floor((piece * count) / OUTLINE_PIECES);
+    const to = Math.floor(((piece + 1) * count) / OUTLINE_PIECES);
+    let low = from;
+    let high = from;
+    for (let i = from + 1; i < to; i++) {
+      if (series.y[i] < series.y[low]) low = i;
+      if (series.y[i] > series.y[high]) high = i;
+    }
+    kept.add(low).add(high);
+  }
+  const places = [...kept].sort((a, b) => a - b);
+  const of = (column: number[]) => places.map((i) => column[i]);
+  return { ...series, x: of(series.x), y: of(series.y), ...(series.time_s && { time_s: of(series.time_s) }) };
+}
+
 /** α(T) of every event that has a curve. */
 export function conversionSeries(scans: ReducedSampleScan[]): CurveSeries[] {
   return scans.flatMap(({ id, file, instrument, reduced }) =>

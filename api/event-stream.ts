@@ -14,8 +14,8 @@ export interface StampedStatus {
   status: CampaignStatus;
 }
 
-/** Names a state: it changes when anything in the body changes but the running ages. */
-const eventId = ({ revision, status: { jobs } }: StampedStatus): string =>
+/** Names a state, also as the id of its event: it changes when anything in the body changes but the running ages. */
+export const stateId = ({ revision, status: { jobs } }: StampedStatus): string =>
   [revision, jobs.queued, jobs.running, jobs.failed].join('.');
 
 /**
@@ -34,7 +34,7 @@ export function streamStatus(
     while (!stream.aborted && clock.now() < end) {
       const stamped = await load();
       if (!stamped) return;
-      const id = eventId(stamped);
+      const id = stateId(stamped);
       if (id !== last) await stream.writeSSE({ event: 'status', id, data: JSON.stringify(stamped.status) });
       last = id;
       await stream.sleep(times.pollMs);

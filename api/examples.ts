@@ -236,6 +236,18 @@ export const EXAMPLES: Readonly<Record<string, OperationExamples>> = {
     id: 'streamStatus',
     answer: `event: status\nid: 130.0.0.0\ndata: ${JSON.stringify(status)}\n\n`,
   },
+  'get /v1/campaigns/{id}/overview': {
+    id: 'getOverview',
+    answer: {
+      campaign,
+      status,
+      state: '130.0.0.0',
+      tables: { scans: [ROWS.scans], verdicts: [ROWS.verdicts], instruments: [ROWS.instruments] },
+      is_whole: true,
+      scans: [{ id: SCAN_ID, file: FILE, instrument: 'furnace-east', status: 'reduced' }],
+      outlines: [curves],
+    },
+  },
   ...tables,
   'get /v1/campaigns/{id}/results.zip': { id: 'getResults' },
   'get /v1/campaigns/{id}/report': { id: 'getReport' },

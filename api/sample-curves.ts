@@ -19,6 +19,7 @@ import {
   kissingerLawSeries,
   kissingerSeries,
   localEnergySeries,
+  outlineOf,
   type ReducedSampleScan,
   traceSeries,
 } from './curves.ts';
@@ -68,15 +69,18 @@ async function makeCurves(kind: CurveKind, sources: CurveSources): Promise<Curve
       return [...diagramSeries(drawn), ...criticalRateSeries(drawn, critical)];
     },
   };
+  return onAxes(kind, await series[kind]());
+}
+
+function onAxes(kind: CurveKind, series: CurveSeries[]): Curves {
   const { x, y } = CURVE_AXES[kind];
-  const made = await series[kind]();
-  const units = new Set(made.flatMap(({ unit }) => unit ?? []));
+  const units = new Set(series.flatMap(({ unit }) => unit ?? []));
   const [unit] = units;
   return {
     kind,
     x,
     y: units.size === 1 ? { ...y, unit } : y,
-    series: made,
+    series,
     ...((kind === 'ttt' || kind === 'constant_heating') && { caution: FORECAST_CAUTION }),
   };
 }
@@ -117,4 +121,13 @@ export async function readEveryCurve(
     if (found.series.length > 0) curves[kind] = found;
   }
   return curves;
+}
+
+/** Thermograms and baselines as outlines, from one look at the reduced scans. */
+export async function readOutlines(ports: Ports, sample: SampleView): Promise<Curves[]> {
+  const scans = await reducedScans(ports, sample);
+  return [
+    onAxes('thermogram', traceSeries(scans, 'heatFlow').map(outlineOf)),
+    onAxes('baseline', traceSeries(scans, 'baseline').map(outlineOf)),
+  ];
 }

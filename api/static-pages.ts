@@ -22,8 +22,9 @@ export function createPages(webDir: string): (request: Request) => Promise<Respo
     const hashed = c.res.ok && c.req.path.startsWith('/assets/');
     c.res.headers.set('cache-control', hashed ? 'public, max-age=31536000, immutable' : 'no-cache');
   });
-  pages.use(serveStatic({ root: webDir }));
+  // The build leaves compressed forms beside the files.
+  pages.use(serveStatic({ root: webDir, precompressed: true }));
   pages.get('/assets/*', (c) => c.text('no such file', 404));
-  pages.get('*', serveStatic({ path: index }));
+  pages.get('*', serveStatic({ path: index, precompressed: true }));
   return async (request) => pages.fetch(request);
 }

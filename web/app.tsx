@@ -1,3 +1,4 @@
+import { laterViews } from './later-views.ts';
 import { path } from './router.ts';
 import { parseRoute } from './routes.ts';
 import { CampaignView } from './views/campaign.tsx';
@@ -7,10 +8,9 @@ import { Masthead } from './views/masthead.tsx';
 import { Notice } from './views/notice.tsx';
 import { TokenForm } from './views/token-form.tsx';
 
-// The first page stays small: what is a step further in comes when it is asked for.
-const SampleView = lazyView(async () => (await import('./views/sample.tsx')).SampleView);
-const InstrumentView = lazyView(async () => (await import('./views/instrument.tsx')).InstrumentView);
-const JobsView = lazyView(async () => (await import('./views/jobs.tsx')).JobsView);
+const SampleView = lazyView(laterViews.sample);
+const InstrumentView = lazyView(laterViews.instrument);
+const JobsView = lazyView(laterViews.jobs);
 
 function View() {
   const route = parseRoute(path.value);

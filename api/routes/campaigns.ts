@@ -2,7 +2,6 @@ import { createRoute } from '@hono/zod-openapi';
 import type { Ports } from '../../jobs/ports/index.ts';
 import {
   CAMPAIGN_NAME_LIMIT,
-  type Campaign,
   createCampaign,
   deleteCampaign,
   listCampaigns,
@@ -26,7 +25,7 @@ import {
 } from '../openapi.ts';
 import { Problem } from '../problems.ts';
 import { pageOf, requireCampaign } from '../results.ts';
-import { CampaignShape } from '../shapes/campaign.ts';
+import { CampaignShape, campaignBody } from '../shapes/campaign.ts';
 import { GoalsShape, goalRowOf } from '../shapes/forecasts.ts';
 
 const NewBody = strict({ name: textOf(CAMPAIGN_NAME_LIMIT), goals: GoalsShape.optional() });
@@ -94,39 +93,32 @@ const goalsRoute = createRoute({
   responses: answersOf(202, GoalsBody, 'The goals as they are kept.'),
 });
 
-const shapeOf = ({ id, name, createdAt, revision }: Campaign) => ({
-  id,
-  name,
-  created_at: new Date(createdAt).toISOString(),
-  revision,
-});
-
 export function addCampaignRoutes(app: ApiApp, ports: Ports): void {
   app.openapi(createCampaignRoute, async (c) => {
     const { name, goals = [] } = c.req.valid('json');
     const campaign = await createCampaign(ports, name, c.get('access').lab);
     if (goals.length > 0) await setGoals(ports, campaign.id, goals.map(goalRowOf));
-    return c.json(shapeOf(campaign), 201, { location: `/v1/campaigns/${campaign.id}` });
+    return c.json(campaignBody(campaign), 201, { location: `/v1/campaigns/${campaign.id}` });
   });
 
   app.openapi(listRoute, async (c) => {
     const { limit, after } = c.req.valid('query');
     const campaigns = await listCampaigns(ports, { lab: c.get('access').lab, after, limit: limit + 1 });
-    return c.json(pageOf(campaigns, limit, shapeOf), 200);
+    return c.json(pageOf(campaigns, limit, campaignBody), 200);
   });
 
   app.openapi(getRoute, async (c) => {
     const campaign = await requireCampaign(c, ports, c.req.valid('param').id);
     const instruments = await listInstruments(ports, campaign.id);
     return c.json(
-      { ...shapeOf(campaign), instruments: instruments.map(({ id, instrument }) => ({ id, instrument })) },
+      { ...campaignBody(campaign), instruments: instruments.map(({ id, instrument }) => ({ id, instrument })) },
       200,
     );
   });
 
   app.openapi(renameRoute, async (c) => {
     const { id } = await requireCampaign(c, ports, c.req.valid('param').id);
-    return c.json(shapeOf(await renameCampaign(ports, id, c.req.valid('json').name)), 200);
+    return c.json(campaignBody(await renameCampaign(ports, id, c.req.valid('json').name)), 200);
   });
 
   app.openapi(deleteRoute, async (c) => {
@@ -154,6 +146,6 @@ export function addCampaignRoutes(app: ApiApp, ports: Ports): void {
   app.openapi(refitRoute, async (c) => {
     const { id } = await requireCampaign(c, ports, c.req.valid('param').id);
     await refitCampaign(ports, id);
-    return c.json(shapeOf(await requireCampaign(c, ports, id)), 202);
+    return c.json(campaignBody(await requireCampaign(c, ports, id)), 202);
   });
 }

@@ -3,7 +3,7 @@ import type { Ports } from '../../jobs/ports/index.ts';
 import { answerForecast } from '../../jobs/steps/answer-forecast.ts';
 import { findSample, listSampleScans } from '../../jobs/store/index.ts';
 import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
-import { SAMPLE_STATES, SCAN_STATES } from '../../schema/wire/states.ts';
+import { SAMPLE_STATES } from '../../schema/wire/states.ts';
 import { jsonById } from '../json-body.ts';
 import { type ApiApp, answersOf, BY_ID, ID_PARAM, oneOf, strict } from '../openapi.ts';
 import { Problem } from '../problems.ts';
@@ -11,6 +11,7 @@ import { isUnchanged, requireCampaign, requireOf, resultAnswers } from '../resul
 import { readCurves } from '../sample-curves.ts';
 import { CURVE_KINDS, CURVE_NOTES, CurvesShape } from '../shapes/curves.ts';
 import { AnswerShape, QUESTION_FORMS, QuestionBody, questionOf } from '../shapes/forecasts.ts';
+import { SampleScansShape } from '../shapes/overview.ts';
 
 const SampleShape = z
   .object({
@@ -19,7 +20,7 @@ const SampleShape = z
     sample: z.string(),
     state: z.enum(SAMPLE_STATES),
     reason: z.string().nullable(),
-    scans: z.array(z.object({ id: z.string(), file: z.string(), instrument: z.string(), status: z.enum(SCAN_STATES) })),
+    scans: SampleScansShape,
   })
   .openapi('Sample');
 

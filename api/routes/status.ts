@@ -28,7 +28,7 @@ const streamRoute = createRoute({
 });
 
 /** Adds to each sample the id under which its own routes know it. */
-async function readStatus(ports: Ports, campaignId: string): Promise<z.infer<typeof StatusShape>> {
+export async function readStatus(ports: Ports, campaignId: string): Promise<z.infer<typeof StatusShape>> {
   const [status, samples] = await Promise.all([campaignStatus(ports, campaignId), listSamples(ports, campaignId)]);
   const ids = new Map(samples.map(({ sample, id }) => [sample, id]));
   return { ...status, samples: status.samples.map((s) => ({ id: ids.get(s.sample) ?? '', ...s })) };

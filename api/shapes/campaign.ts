@@ -1,4 +1,5 @@
 import { z } from '@hono/zod-openapi';
+import type { Campaign } from '../../jobs/store/index.ts';
 import type { CampaignStatus } from '../../schema/wire/campaign.ts';
 import { JOB_STATES, SAMPLE_STATES, SCAN_STATES, type ScanState } from '../../schema/wire/states.ts';
 
@@ -17,6 +18,13 @@ export const CampaignShape = z
     revision: count.openapi({ description: 'Grows with every change of anything that the campaign shows.' }),
   })
   .openapi('Campaign');
+
+export const campaignBody = ({ id, name, createdAt, revision }: Campaign) => ({
+  id,
+  name,
+  created_at: new Date(createdAt).toISOString(),
+  revision,
+});
 
 export const StatusShape = z
   .object({

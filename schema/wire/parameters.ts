@@ -74,3 +74,10 @@ export interface FitResult {
   flags: Flag[];
   modelFree?: ModelFreeFit[];
 }
+
+/** Which parameters are the headline numbers of a sample: what narrows the table to each of them. */
+export const HEADLINES = [
+  { quantity: 'activation_energy', method: 'vyazovkin' },
+  { quantity: 'activation_energy', method: 'kissinger' },
+  { quantity: 'avrami_exponent' },
+];

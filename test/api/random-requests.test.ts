@@ -2,7 +2,7 @@ import { expect, test } from 'vitest';
 import { sendRandomRequests } from './random-requests.ts';
 
 const REQUESTS = 3000;
-const SEED = 'requests of the suite';
+const SEED = 'requests of the suite, anew';
 
 // Property: whoever asks whatever, the answer is one that the document names for the route, in its shape, and none is a failure of ours.
 // `npm run study -- requests` sends more.

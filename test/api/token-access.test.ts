@@ -73,7 +73,7 @@ const LEAST_ROLES: Record<TokenRole | 'none', string> = {
   none: 'get /healthz, get /readyz, get /v1/openapi.json, get /v1/reference',
   reader: `get /v1/campaigns, get /v1/campaigns/{id}, get /v1/campaigns/{id}/advice, get /v1/campaigns/{id}/conversion,
     get /v1/campaigns/{id}/coverage, get /v1/campaigns/{id}/flags, get /v1/campaigns/{id}/forecasts, get /v1/campaigns/{id}/gaps,
-    get /v1/campaigns/{id}/instruments, get /v1/campaigns/{id}/parameters, get /v1/campaigns/{id}/report,
+    get /v1/campaigns/{id}/instruments, get /v1/campaigns/{id}/overview, get /v1/campaigns/{id}/parameters, get /v1/campaigns/{id}/report,
     get /v1/campaigns/{id}/results.zip, get /v1/campaigns/{id}/scans, get /v1/campaigns/{id}/status, get /v1/campaigns/{id}/stream,
     get /v1/campaigns/{id}/verdicts, get /v1/instruments/{id}, get /v1/instruments/{id}/curves, get /v1/jobs, get /v1/samples/{id},
     get /v1/samples/{id}/curves, get /v1/scans/{id}, get /v1/scans/{id}/history, get /v1/scans/{id}/original,

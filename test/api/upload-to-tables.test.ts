@@ -114,6 +114,40 @@ test('filters of the parameters give just the rows that match', async () => {
   );
 });
 
+test('the overview of a campaign is what its single routes give', async () => {
+  const { body } = await api.get(`/v1/campaigns/${id}/overview`);
+  expect(body.status).toEqual((await api.get(`/v1/campaigns/${id}/status`)).body);
+  const { parameters, ...tables } = body.tables;
+  for (const [table, rows] of Object.entries(tables))
+    expect(rows, table).toEqual(await allRows(`/v1/campaigns/${id}/${table}`));
+  expect(Object.keys(tables)).toEqual(['scans', 'coverage', 'gaps', 'flags', 'instruments', 'advice']);
+  const exponents = await allRows(`/v1/campaigns/${id}/parameters?quantity=avrami_exponent`);
+  expect(exponents.length).toBeGreaterThan(0);
+  expect(parameters).toEqual(expect.arrayContaining(exponents));
+  expect(body.is_whole).toBe(true);
+});
+
+test('the overview of a sample outlines its curves: fewer points of the same curve, extremes among them', async () => {
+  const { body } = await api.get(`/v1/campaigns/${id}/overview?sample=glass`);
+  const [{ id: sampleId }] = body.status.samples;
+  expect(body.scans).toEqual((await api.get(`/v1/samples/${sampleId}`)).body.scans);
+  expect(body.tables.scans).toEqual(await allRows(`/v1/campaigns/${id}/scans?sample=glass`));
+  for (const { kind, series } of body.outlines) {
+    const { series: whole } = (await api.get(`/v1/samples/${sampleId}/curves?kind=${kind}`)).body;
+    expect(series).toHaveLength(whole.length);
+    series.forEach((outline: { x: number[]; y: number[] }, i: number) => {
+      const { x, y } = whole[i] as { x: number[]; y: number[] };
+      expect(outline.x.length).toBeLessThanOrEqual(402);
+      const points = new Set(x.map((value, k) => `${value} ${y[k]}`));
+      expect(outline.x.every((value, k) => points.has(`${value} ${outline.y[k]}`))).toBe(true);
+      expect([Math.min(...outline.y), Math.max(...outline.y)]).toEqual([Math.min(...y), Math.max(...y)]);
+      expect([outline.x[0], outline.x.at(-1)]).toEqual([x[0], x.at(-1)]);
+    });
+  }
+  expect(body.outlines[0].series[0].x.length).toBeGreaterThan(100);
+  expect((await api.get(`/v1/campaigns/${id}/overview?sample=nobody`)).body.outlines).toBeUndefined();
+});
+
 test('the same bytes again are known, whatever the path, and change nothing', async () => {
   const before = (await api.get(`/v1/campaigns/${id}/parameters?limit=1000`)).body;
   for (const [path, bytes] of files) {

@@ -1,4 +1,10 @@
-import type { Page } from 'playwright-core';
+import { createServer } from 'node:http';
+import type { AddressInfo } from 'node:net';
+import { getRequestListener } from '@hono/node-server';
+import { inject } from 'vitest';
+import { outlineOf } from '../../api/curves.ts';
+import { MAX_LIMIT } from '../../api/openapi.ts';
+import { createPages } from '../../api/static-pages.ts';
 import { FLAG_CODES, type FlagCode } from '../../schema/wire/flags.ts';
 import { SCAN_STATES } from '../../schema/wire/states.ts';
 
@@ -129,38 +135,70 @@ const TABLES: Record<string, readonly object[]> = {
   })),
 };
 
-/** Answers the API from memory with a campaign of 200 samples × 40 scans, paged as the server pages. */
-export async function answerLargeCampaign(page: Page): Promise<void> {
-  await page.route('**/v1/**', async (route) => {
-    const url = new URL(route.request().url());
-    const parts = url.pathname.split('/').slice(2);
-    const json = (body: unknown) => route.fulfill({ contentType: 'application/json', body: JSON.stringify(body) });
-    if (parts[0] === 'samples' && parts.length === 2) return json({ id: parts[1], sample: '', scans: [] });
-    if (parts[0] === 'samples') return json(curves(url.searchParams.get('kind') ?? '', Number(parts[1].slice(2))));
-    if (parts.length === 2) return json({ id: 'large', name: 'large', created_at: '2026-01-01T00:00:00Z' });
-    if (parts[2] === 'status') return json(status);
-    if (parts[2] === 'stream')
-      // Resumed, the stream has nothing new to tell.
-      return route.fulfill({
-        contentType: 'text/event-stream',
-        body: route.request().headers()['last-event-id'] ? ':\n\n' : `id: 1\ndata: ${JSON.stringify(status)}\n\n`,
-      });
-    const sample = url.searchParams.get('sample');
-    const method = url.searchParams.get('method');
-    const quantity = url.searchParams.get('quantity');
-    const rows = TABLES[parts[2]].filter((row) => {
-      const cells = row as Record<string, unknown>;
-      return (
-        (sample === null || cells.sample === sample) &&
-        (method === null || cells.method === method) &&
-        (quantity === null || cells.quantity === quantity)
-      );
-    });
-    const after = Number(url.searchParams.get('after') ?? 0);
-    const limit = Number(url.searchParams.get('limit'));
-    return json({
-      items: rows.slice(after, after + limit),
-      next: after + limit < rows.length ? String(after + limit) : null,
-    });
+function overview(sample: string | null): object {
+  const head = {
+    campaign: { id: 'large', name: 'large', created_at: '2026-01-01T00:00:00Z', revision: 1 },
+    status,
+    state: '1',
+  };
+  const first = (table: string, rows = TABLES[table]) => rows.slice(0, MAX_LIMIT);
+  const tables = ['scans', 'coverage', 'gaps', 'flags', 'instruments', 'advice', 'parameters'];
+  if (sample === null)
+    return { ...head, is_whole: false, tables: Object.fromEntries(tables.map((table) => [table, first(table)])) };
+  const place = status.samples.findIndex((s) => s.sample === sample);
+  return {
+    ...head,
+    is_whole: true,
+    tables: { scans: scans[place], verdicts: TABLES.verdicts, instruments: TABLES.instruments },
+    scans: [],
+    outlines: ['thermogram', 'baseline'].map((kind) => {
+      const whole = curves(kind, place);
+      return { ...whole, series: whole.series.map(outlineOf) };
+    }),
+  };
+}
+
+function answer(url: URL): object {
+  const parts = url.pathname.split('/').slice(2);
+  const asked = (name: string) => url.searchParams.get(name);
+  if (parts[0] === 'samples' && parts.length === 2) return { id: parts[1], sample: '', scans: [] };
+  if (parts[0] === 'samples') return curves(asked('kind') ?? '', Number(parts[1].slice(2)));
+  if (parts[2] === 'status') return status;
+  if (parts[2] === 'overview') return overview(asked('sample'));
+  const rows = TABLES[parts[2]].filter((row) => {
+    const cells = row as Record<string, unknown>;
+    return ['sample', 'method', 'quantity'].every((name) => asked(name) === null || cells[name] === asked(name));
   });
+  const after = Number(asked('after') ?? 0);
+  const limit = Number(asked('limit'));
+  return {
+    items: rows.slice(after, after + limit),
+    next: after + limit < rows.length ? String(after + limit) : null,
+  };
+}
+
+/** The page, and the API from memory with a campaign of 200 samples × 40 scans, paged as the server pages. */
+export async function serveLargeCampaign(): Promise<{ url: string; stop(): Promise<void> }> {
+  const pages = createPages(inject('webDir'));
+  const answered = new Map<string, string>();
+  const handle = async (request: Request): Promise<Response> => {
+    const url = new URL(request.url);
+    if (!url.pathname.startsWith('/v1/')) return pages(request);
+    // A stream that has nothing new to tell: the page knows the state from its first answer.
+    if (url.pathname.endsWith('/stream'))
+      return new Response(new ReadableStream(), { headers: { 'content-type': 'text/event-stream' } });
+    const body = answered.get(request.url) ?? JSON.stringify(answer(url));
+    answered.set(request.url, body);
+    return new Response(body, { headers: { 'content-type': 'application/json' } });
+  };
+  const server = createServer(getRequestListener(handle, { overrideGlobalObjects: false }));
+  await new Promise<void>((resolve) => server.listen(0, '127.0.0.1', () => resolve()));
+  return {
+    url: `http://127.0.0.1:${(server.address() as AddressInfo).port}`,
+    stop: () =>
+      new Promise((resolve) => {
+        server.close(() => resolve());
+        server.closeAllConnections();
+      }),
+  };
 }

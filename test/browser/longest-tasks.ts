@@ -9,10 +9,12 @@ interface TraceEvent {
   tdur?: number;
 }
 
-/** The better of two runs: a shared machine slows either by chance. */
+/** The better of two runs, where times are asserted: a shared machine slows either by chance. */
 export async function longestTasks(page: Page, act: () => Promise<void>): Promise<number[]> {
-  const runs = [await traceTasks(page, act), await traceTasks(page, act)];
-  return runs[0][0] < runs[1][0] ? runs[0] : runs[1];
+  const first = await traceTasks(page, act);
+  if (process.env.RATESPAN_SPEED === undefined) return first;
+  const second = await traceTasks(page, act);
+  return first[0] < second[0] ? first : second;
 }
 
 /**

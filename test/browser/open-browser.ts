@@ -1,6 +1,9 @@
 import { existsSync } from 'node:fs';
 import { delimiter, join } from 'node:path';
-import { type Browser, chromium } from 'playwright-core';
+import { type Browser, type BrowserContextOptions, chromium, type Page } from 'playwright-core';
+
+/** How long a page is waited for to show something, a fit of a campaign among it: no measure of speed, but of patience. */
+const PATIENCE_MS = 120_000;
 
 const NAMES = ['chromium', 'chromium-browser', 'chrome', 'google-chrome'];
 
@@ -23,3 +26,9 @@ export const openBrowser = (executablePath: string): Promise<Browser> =>
       '--disable-sync',
     ],
   });
+
+export async function openPage(browser: Browser, options: BrowserContextOptions = {}): Promise<Page> {
+  const page = await browser.newPage(options);
+  page.setDefaultTimeout(PATIENCE_MS);
+  return page;
+}

@@ -1,8 +1,7 @@
 import { mkdir, mkdtemp, rm, writeFile } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { dirname, join } from 'node:path';
-import { fileURLToPath } from 'node:url';
-import { build } from 'vite';
+import { inject } from 'vitest';
 import { startServer } from '../../api/node.ts';
 import { closePorts, openNodePorts } from '../../jobs/adapters/node-ports.ts';
 import { createRunner } from '../../jobs/runner/index.ts';
@@ -14,15 +13,12 @@ export interface TestServer {
   stop(): Promise<void>;
 }
 
-/** The real server, page and job runner in this process, on a fresh database; the page is built from the sources first. */
+/** The real server, page and job runner in this process, on a fresh database. */
 export async function serveCampaigns(): Promise<TestServer> {
   const folder = await mkdtemp(join(tmpdir(), 'ratespan-browser-'));
-  const webDir = join(folder, 'web');
-  const configFile = fileURLToPath(new URL('../../web/vite.config.ts', import.meta.url));
-  await build({ configFile, logLevel: 'error', build: { outDir: webDir } });
   const ports = await openNodePorts({ dataDir: join(folder, 'data'), workers: 0 });
   const runner = createRunner(ports, { concurrency: 2, owner: 'browser test' });
-  const server = await startServer({ ports, port: 0, host: '127.0.0.1', webDir });
+  const server = await startServer({ ports, port: 0, host: '127.0.0.1', webDir: inject('webDir') });
   runner.start();
   return {
     url: server.url,

@@ -1,9 +1,9 @@
-import { scaleLog } from 'd3-scale';
 import { formatPowerOfTen, rateInUnit, type Units } from '../format.ts';
 import { NORMAL_95 } from '../model/correction.ts';
 import { bandPath, linePath } from './curve-path.ts';
 import { createPlotBox, labelWidth, PlotFrame } from './plot-frame.tsx';
 import { createPlotScale, extent, type PlotScale } from './plot-scale.ts';
+import { logScale } from './scales.ts';
 
 export interface Correction {
   offsetK: number;
@@ -41,14 +41,15 @@ export function CorrectionPlot(props: {
   const { rates, value, lower, upper } = correctionCurve(correction, low, high);
   const values = extent(lower, upper, [0]);
   const box = createPlotBox(width, HEIGHT, labelWidth(createPlotScale(values, [HEIGHT, 0])) + 10);
-  const logarithmic = scaleLog([rateInUnit(low, units), rateInUnit(high, units)], [box.left, box.right]);
+  const ends: [number, number] = [rateInUnit(low, units), rateInUnit(high, units)];
+  const logarithmic = logScale(ends, [box.left, box.right]);
   const ticks: PlotScale['ticks'] = [];
-  const [first, last] = logarithmic.domain().map(Math.log10);
+  const [first, last] = ends.map(Math.log10);
   for (let exponent = Math.ceil(first); exponent <= last; exponent++)
-    ticks.push({ at: logarithmic(10 ** exponent), label: formatPowerOfTen(exponent) });
+    ticks.push({ at: logarithmic.at(10 ** exponent), label: formatPowerOfTen(exponent) });
   const x: PlotScale = {
-    at: (rate) => logarithmic(rateInUnit(rate, units)),
-    valueAt: (px) => (logarithmic.invert(px) * low) / rateInUnit(low, units),
+    at: (rate) => logarithmic.at(rateInUnit(rate, units)),
+    valueAt: (px) => (logarithmic.valueAt(px) * low) / rateInUnit(low, units),
     range: [box.left, box.right],
     ticks,
   };

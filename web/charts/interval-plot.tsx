@@ -1,5 +1,5 @@
-import { scaleLinear } from 'd3-scale';
 import { labelTicks } from './plot-scale.ts';
+import { linearScale, roundTicks } from './scales.ts';
 
 /** A linear scale shared by the rows of one small interval plot. */
 export interface IntervalScale {
@@ -26,13 +26,13 @@ export function createIntervalScale(
   const reach = Math.max(3 * typical, 0.005 * Math.max(...values.map(Math.abs)));
   const low = Math.min(...rows.map((row, i) => row.value - Math.min(halves[i], reach)));
   const high = Math.max(...rows.map((row, i) => row.value + Math.min(halves[i], reach)));
-  const scale = scaleLinear([low, high], [PADDING, width - PADDING]);
+  const { at } = linearScale([low, high], [PADDING, width - PADDING]);
   // Fewer ticks until their labels have room.
   for (let count = 4; ; count--) {
-    const ticks = labelTicks(scale.ticks(count)).map(({ value, label }) => ({ x: scale(value), label }));
+    const ticks = labelTicks(roundTicks(low, high, count)).map(({ value, label }) => ({ x: at(value), label }));
     const room = ticks.length > 1 ? ticks[1].x - ticks[0].x : width;
     const wanted = Math.max(...ticks.map(({ label }) => label.length)) * DIGIT_WIDTH + LABEL_ROOM;
-    if (room >= wanted || count === 1) return { width, x: scale, ticks };
+    if (room >= wanted || count === 1) return { width, x: at, ticks };
   }
 }
 

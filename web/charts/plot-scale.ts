@@ -1,6 +1,6 @@
-import { scaleLinear } from 'd3-scale';
 import { celsiusFromKelvin, kelvinFromCelsius } from '../../schema/wire/units.ts';
 import { formatFixed, type Units } from '../format.ts';
+import { linearScale, roundTicks } from './scales.ts';
 
 /** A linear axis of a plot. Pure: the same on the page and on the server. */
 export interface PlotScale {
@@ -40,9 +40,12 @@ export function createPlotScale(
   // Room is made in the numbers shown: a logarithm has none below its lowest value otherwise.
   const [first, last] = [shown(low), shown(high)];
   const room = last > first ? (last - first) * 0.03 : Math.abs(first) * 0.05 || 1;
-  const scale = scaleLinear([first - room, last + room], range);
-  const ticks = labelTicks(scale.ticks(count)).map(({ value, label }) => ({ at: scale(value), label }));
-  return { at: (value) => scale(shown(value)), valueAt: (px) => hidden(scale.invert(px)), range, ticks };
+  const scale = linearScale([first - room, last + room], range);
+  const ticks = labelTicks(roundTicks(first - room, last + room, count)).map(({ value, label }) => ({
+    at: scale.at(value),
+    label,
+  }));
+  return { at: (value) => scale.at(shown(value)), valueAt: (px) => hidden(scale.valueAt(px)), range, ticks };
 }
 
 /** An axis of temperatures in K, labelled in the chosen unit. */

@@ -1,5 +1,5 @@
-import { scaleLog } from 'd3-scale';
 import { formatPowerOfTen, rateInUnit, type Units } from '../format.ts';
+import { logScale } from './scales.ts';
 
 /** Places heating rates on a logarithmic axis of a given width in px. Pure: the same on the page and on the server. */
 export interface RateScale {
@@ -33,20 +33,20 @@ export function createRateScale(ratesKPerS: readonly (number | null)[], width: n
   low -= missing;
   high += missing;
 
-  const scale = scaleLog([10 ** low, 10 ** high], [start + PADDING, Math.max(start + 2 * PADDING, width - PADDING)]);
-  const decadeWidth = scale(10) - scale(1);
+  const { at } = logScale([10 ** low, 10 ** high], [start + PADDING, Math.max(start + 2 * PADDING, width - PADDING)]);
+  const decadeWidth = at(10) - at(1);
   const every = Math.max(1, Math.ceil(LABEL_DISTANCE / decadeWidth));
   const decades = [];
   const steps = [];
   for (let exponent = Math.floor(low); exponent <= high; exponent++) {
     for (let factor = 2; factor < 10 && decadeWidth >= RULED_DECADE; factor++) {
       const value = factor * 10 ** exponent;
-      if (value > 10 ** low && value < 10 ** high) steps.push(scale(value));
+      if (value > 10 ** low && value < 10 ** high) steps.push(at(value));
     }
     if (exponent < low) continue;
     const hasLabel = exponent % every === 0;
-    decades.push({ x: scale(10 ** exponent), label: formatPowerOfTen(exponent), hasLabel });
+    decades.push({ x: at(10 ** exponent), label: formatPowerOfTen(exponent), hasLabel });
   }
-  const x = (rate: number | null): number => (rate === null ? start / 2 : scale(rateInUnit(rate, units)));
+  const x = (rate: number | null): number => (rate === null ? start / 2 : at(rateInUnit(rate, units)));
   return { width, x, start, unit: units.rate, decades, steps };
 }

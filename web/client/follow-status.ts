@@ -18,9 +18,17 @@ const POLLS_PER_TRY = 5;
 
 const pause = (ms: number): Promise<void> => new Promise((resolve) => setTimeout(resolve, ms));
 
-/** Follows a campaign until the signal aborts: the stream first, resumed when it ends; polling while it cannot be had. */
-export async function followStatus(id: string, listener: StatusListener, signal: AbortSignal): Promise<void> {
-  let lastEventId: string | undefined;
+/**
+ * Follows a campaign until the signal aborts: the stream first, resumed when it ends; polling while it cannot be had. A state that is
+ * `known` is not told again.
+ */
+export async function followStatus(
+  id: string,
+  listener: StatusListener,
+  signal: AbortSignal,
+  known?: string,
+): Promise<void> {
+  let lastEventId = known;
   while (!signal.aborted) {
     const started = performance.now();
     try {

@@ -34,11 +34,26 @@ const unreachable = (cause: unknown): Problem =>
     'Check that the server runs (ratespan serve) and that this computer reaches it; the page keeps trying.',
   );
 
+let ahead: { route: string; answer: Promise<Response> } | undefined;
+
+/** Sends a request before whoever needs its answer is there; the next request of the same route takes the answer. */
+export function askAhead(route: string): void {
+  const answer = request(route);
+  // Told to whoever takes it.
+  answer.catch(() => undefined);
+  ahead = { route, answer };
+}
+
 /**
  * One request to the API under `/v1`.
  * Throws a Problem for every answer that is not 2xx (problem+json where given) and when no answer comes.
  */
 export async function request(route: string, init: RequestInit = {}): Promise<Response> {
+  if (ahead?.route === route && init.method === undefined) {
+    const { answer } = ahead;
+    ahead = undefined;
+    return answer;
+  }
   let response: Response;
   const token = accessToken.value;
   const headers = token === '' ? init.headers : { ...init.headers, authorization: `Bearer ${token}` };
@@ -62,6 +77,13 @@ export const asProblem = (error: unknown): Problem =>
     ? error
     : new Problem(0, 'The page met an error', String(error), 'Reload the page; if it stays, report it with this text.');
 
+/** A page of a list route. */
+const pageRoute = (route: string, filter: Record<string, string>, after?: string): string =>
+  `${route}?${new URLSearchParams({ ...filter, limit: '1000', ...(after === undefined ? {} : { after }) })}`;
+
+/** The first page of a whole list route. */
+export const firstPage = (route: string): string => pageRoute(route, {});
+
 /** All items of a list route, page after page. */
 export async function requestAll<Item>(
   route: string,
@@ -71,8 +93,7 @@ export async function requestAll<Item>(
   const items: Item[] = [];
   let after: string | undefined;
   do {
-    const query = new URLSearchParams({ ...filter, limit: '1000', ...(after === undefined ? {} : { after }) });
-    const page = await (await request(`${route}?${query}`, { signal })).json();
+    const page = await (await request(pageRoute(route, filter, after), { signal })).json();
     items.push(...page.items);
     after = page.next ?? undefined;
   } while (after !== undefined);

@@ -1,8 +1,10 @@
-import { type Signal, signal } from '@preact/signals';
+import { batch, type Signal, signal } from '@preact/signals';
 import { loadCampaign } from '../client/campaigns.ts';
 import { followStatus, type Link } from '../client/follow-status.ts';
+import { loadOverview, type Overview } from '../client/overview.ts';
 import { asProblem, type Problem } from '../client/request.ts';
 import type { Campaign, Status } from '../client/rows.ts';
+import { afterPaint } from './after-paint.ts';
 
 export interface LivePage<Data> {
   campaign: Signal<Campaign | undefined>;
@@ -21,21 +23,26 @@ export interface LivePage<Data> {
 const RELOAD_AFTER_MS = 1_000;
 const RETRY_AFTER_MS = 3_000;
 
-/**
- * Opens a page of a campaign: its name, its status as it changes, and the page's data, loaded again after every change. The first
- * load may show a part of the data before the rest has come.
- */
+/** What a page shows first, from one answer. */
+export interface FirstLook<Data> {
+  /** The one sample that the page is about */
+  sample?: string;
+  /** The page's data as far as the overview has them */
+  show(overview: Overview): Data | undefined;
+  /** Whether more data is to come after that */
+  hasMore(overview: Overview): boolean;
+}
+
+/** Opens a page of a campaign: its name, its status as it changes, and the page's data, loaded again after every change. */
 export function openLivePage<Data>(
   id: string,
-  load: (status: Status, signal: AbortSignal, showPart: (data: Data) => void) => Promise<Data>,
+  load: (status: Status, signal: AbortSignal) => Promise<Data>,
+  first?: FirstLook<Data>,
 ): LivePage<Data> {
   const abort = new AbortController();
   let loading = false;
   let changed = false;
 
-  const showPart = (data: Data): void => {
-    if (live.data.value === undefined && !abort.signal.aborted) live.data.value = data;
-  };
   const loadData = async (): Promise<void> => {
     if (loading) {
       changed = true;
@@ -46,7 +53,7 @@ export function openLivePage<Data>(
       changed = false;
       const started = performance.now();
       try {
-        if (live.status.value) live.data.value = await load(live.status.value, abort.signal, showPart);
+        if (live.status.value) live.data.value = await load(live.status.value, abort.signal);
         live.problem.value = undefined;
       } catch (error) {
         if (abort.signal.aborted) return;
@@ -70,18 +77,20 @@ export function openLivePage<Data>(
   };
 
   let seen = '';
+  const textOf = ({ scans, samples, settled, jobs: { queued, running, failed } }: Status): string =>
+    JSON.stringify([scans, samples, settled, queued, running, failed]);
   const take = (status: Status, isNews: boolean): void => {
-    const { queued, running, failed } = status.jobs;
-    const text = JSON.stringify([status.scans, status.samples, status.settled, queued, running, failed]);
+    const text = textOf(status);
     // The same again is not told on: whatever shows the status would be worked out anew.
     if (text !== seen || status.eta_s !== live.status.value?.eta_s) live.status.value = status;
     if (isNews || text !== seen || live.problem.value) void loadData();
     seen = text;
   };
-  const nameCampaign = async (): Promise<void> => {
-    while (live.campaign.value === undefined) {
+  /** Asks until the server answers; a refusal is told and ends the page. */
+  const insist = async (ask: () => Promise<void>): Promise<void> => {
+    while (!abort.signal.aborted) {
       try {
-        live.campaign.value = await loadCampaign(id, abort.signal);
+        return await ask();
       } catch (error) {
         if (abort.signal.aborted) return;
         const problem = asProblem(error);
@@ -96,18 +105,41 @@ export function openLivePage<Data>(
       }
     }
   };
-  // Name and status are asked for side by side: the page waits for as few answers in turn as can be.
-  void nameCampaign();
-  void followStatus(
-    id,
-    {
-      onStatus: take,
-      onLink(link, problem) {
-        live.link.value = link;
-        if (link === 'offline' && problem) live.problem.value = problem;
+  const follow = (known?: string): void =>
+    void followStatus(
+      id,
+      {
+        onStatus: take,
+        onLink(link, problem) {
+          live.link.value = link;
+          if (link === 'offline' && problem) live.problem.value = problem;
+        },
       },
-    },
-    abort.signal,
-  );
+      abort.signal,
+      known,
+    );
+  const lookFirst = async ({ sample, show, hasMore }: FirstLook<Data>): Promise<void> => {
+    const overview = await loadOverview(id, sample, abort.signal);
+    batch(() => {
+      live.campaign.value = overview.campaign;
+      live.data.value = show(overview);
+      live.problem.value = undefined;
+      seen = textOf(overview.status);
+      live.status.value = overview.status;
+    });
+    // What the reader sees first is not held up by what comes next.
+    afterPaint(() => {
+      if (hasMore(overview)) void loadData();
+      follow(overview.state);
+    });
+  };
+  if (first) void insist(() => lookFirst(first));
+  else {
+    // Name and status are asked for side by side: the page waits for as few answers in turn as can be.
+    void insist(async () => {
+      live.campaign.value = await loadCampaign(id, abort.signal);
+    });
+    follow();
+  }
   return live;
 }

@@ -1,8 +1,10 @@
 import { useEffect, useMemo } from 'preact/hooks';
+import type { GapRow } from '../../schema/wire/campaign.ts';
+import type { Campaign, FlagRow, Status } from '../client/rows.ts';
 import { instrumentNames, type LedgerRow, ledgerSteps } from '../model/ledger.ts';
 import { tellableNow } from '../model/next-steps.ts';
 import { jobsPath } from '../routes.ts';
-import { openCampaign } from '../state/live-campaign.ts';
+import { openCampaign, type Tables } from '../state/live-campaign.ts';
 import { createUploads } from '../state/uploads.ts';
 import { WholeDownloads } from './download.tsx';
 import { FileDesk, Outcomes } from './file-desk.tsx';
@@ -12,6 +14,7 @@ import { NextSteps } from './next-steps.tsx';
 import { ProblemNotice } from './notice.tsx';
 import { Numbers } from './numbers.tsx';
 import { Progress } from './progress.tsx';
+import { useParts } from './use-parts.ts';
 import { useSteps } from './use-steps.ts';
 
 const NOTHING: readonly LedgerRow[] = [];
@@ -57,8 +60,6 @@ export function CampaignView({ id }: { id: string }) {
   const isEmpty = tables !== undefined && built?.length === 0 && tables.scans.length === 0;
   // Where the buttons stand depends on whether there is anything: moved later they would lose the keyboard's focus.
   const hasPlace = built !== undefined || problem !== undefined;
-  const numbered = rows.filter((row) => row.numbers.length > 0).map((row) => row.sample);
-  const unassigned = tables?.scans.filter((scan) => scan.status === 'unassigned') ?? [];
   return (
     <>
       <div class="campaign-head">
@@ -74,19 +75,39 @@ export function CampaignView({ id }: { id: string }) {
       <Outcomes uploads={uploads} />
       {!built && !problem && <p class="waiting">Loading the tables…</p>}
       {tables && built && !isEmpty && (
-        <>
-          <Ledger campaign={campaign} rows={rows} instruments={instruments} unassigned={unassigned} />
-          <NextSteps
-            campaign={campaign}
-            flags={told.flags}
-            gaps={told.gaps}
-            advice={tables.advice}
-            isSettled={status?.settled ?? false}
-          />
-          <Numbers campaign={campaign} samples={numbered} revision={tables} />
-          <InstrumentTable campaign={campaign} rows={tables.instruments} names={instruments} />
-        </>
+        <Body campaign={campaign} tables={tables} rows={rows} told={told} instruments={instruments} status={status} />
       )}
+    </>
+  );
+}
+
+/** What stands below the head of a campaign that has files. */
+function Body(props: {
+  campaign: Campaign;
+  tables: Tables;
+  rows: readonly LedgerRow[];
+  told: { flags: FlagRow[]; gaps: GapRow[] };
+  instruments: readonly string[];
+  status: Status | undefined;
+}) {
+  const { campaign, tables, rows, told, instruments, status } = props;
+  const drawn = useParts(4);
+  const numbered = rows.filter((row) => row.numbers.length > 0).map((row) => row.sample);
+  const unassigned = tables.scans.filter((scan) => scan.status === 'unassigned');
+  return (
+    <>
+      <Ledger campaign={campaign} rows={rows} instruments={instruments} unassigned={unassigned} />
+      {drawn > 1 && (
+        <NextSteps
+          campaign={campaign}
+          flags={told.flags}
+          gaps={told.gaps}
+          advice={tables.advice}
+          isSettled={status?.settled ?? false}
+        />
+      )}
+      {drawn > 2 && <Numbers campaign={campaign} samples={numbered} revision={tables} />}
+      {drawn > 3 && <InstrumentTable campaign={campaign} rows={tables.instruments} names={instruments} />}
     </>
   );
 }

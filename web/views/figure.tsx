@@ -19,13 +19,15 @@ export function Figure(props: {
   caption: ComponentChildren;
   legend?: ComponentChildren;
   tools?: ComponentChildren;
+  /** Whether it stands at the top of the page */
+  isFirst?: boolean;
   /** Draws the figure at a width in px: one svg element, which may stand within others */
   draw(width: number): ComponentChildren;
 }) {
-  const { title, of, curves, caption, legend, tools, draw } = props;
+  const { title, of, curves, caption, legend, tools, isFirst, draw } = props;
   const [frame, width] = useWidth<HTMLDivElement>();
   const figure = useRef<HTMLElement>(null);
-  const { isNear } = useNear(figure);
+  const { isNear } = useNear(figure, isFirst);
   // Drawn when it first comes near, and kept: what was seen does not jump.
   const isDrawn = useRef(false);
   isDrawn.current ||= isNear.value;

@@ -1,5 +1,5 @@
 import { type ComponentType, createElement } from 'preact';
-import { useEffect, useState } from 'preact/hooks';
+import { useLayoutEffect, useState } from 'preact/hooks';
 import { asProblem, type Problem } from '../client/request.ts';
 import { ProblemNotice } from './notice.tsx';
 
@@ -9,7 +9,8 @@ export function lazyView<Props extends object>(load: () => Promise<ComponentType
   return function LazyView(props: Props) {
     const [problem, setProblem] = useState<Problem | undefined>(undefined);
     const [, redraw] = useState(0);
-    useEffect(() => {
+    // Before the screen is painted: a view whose script is there already is shown at once.
+    useLayoutEffect(() => {
       if (loaded) return;
       load().then(
         (view) => {

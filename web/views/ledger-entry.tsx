@@ -14,6 +14,9 @@ import { units } from '../state/units.ts';
 import { gapName, SAMPLE_STATE_NAMES, sentence, verdictName } from '../words.ts';
 import { changeSoon, useNear } from './use-near.ts';
 
+/** Rows that are drawn without looking whether they are in the window. */
+const FIRST_ROWS = 5;
+
 interface EntryProps {
   campaignId: string;
   row: LedgerRow;
@@ -32,7 +35,7 @@ interface EntryProps {
 export function LedgerEntry(props: EntryProps) {
   const { campaignId, row, index, scale, instruments, tabRow } = props;
   const item = useRef<HTMLLIElement>(null);
-  const { isNear, height } = useNear(item);
+  const { isNear, height } = useNear(item, index < FIRST_ROWS);
   const isDrawn = useComputed(() => isNear.value || tabRow.value === index);
   const shown = useSignal(row);
   useLayoutEffect(() => {
@@ -47,7 +50,7 @@ export function LedgerEntry(props: EntryProps) {
     [isDrawn.value, shown.value, campaignId, index, scale, instruments],
   );
   return isDrawn.value ? (
-    <li class="entry" ref={item}>
+    <li class={index < FIRST_ROWS ? 'entry is-first' : 'entry'} ref={item}>
       {drawing}
     </li>
   ) : (

@@ -1,7 +1,9 @@
-import { useSignal } from '@preact/signals';
+import { type Signal, useSignal } from '@preact/signals';
+import type { ComponentChildren } from 'preact';
 import { useEffect, useMemo } from 'preact/hooks';
 import { EventTable } from '../charts/number-table.tsx';
 import { StateGlyph } from '../charts/state-glyph.tsx';
+import type { Campaign, ScanRow, Status } from '../client/rows.ts';
 import { formatCount } from '../format.ts';
 import { FIGURES } from '../model/captions.ts';
 import { buildLanes, type CurveKind, partLanes } from '../model/curves.ts';
@@ -10,7 +12,7 @@ import { tellableNow } from '../model/next-steps.ts';
 import { identifyScans } from '../model/scan-ids.ts';
 import { describeVerdict } from '../model/verdict.ts';
 import { samplePath } from '../routes.ts';
-import { openSample } from '../state/live-sample.ts';
+import { openSample, type SampleData } from '../state/live-sample.ts';
 import { units } from '../state/units.ts';
 import { SAMPLE_STATE_NAMES, verdictName } from '../words.ts';
 import { Downloads } from './download.tsx';
@@ -24,6 +26,7 @@ import { NotYet, PageHead } from './page-head.tsx';
 import { ConversionFigure, EnergyFigures, InstrumentKeys, KissingerFigures, OtherFigures } from './sample-figures.tsx';
 import { ScanPanel } from './scan-panel.tsx';
 import { ScanTable } from './scan-table.tsx';
+import { useParts } from './use-parts.ts';
 
 const OTHER_KINDS: CurveKind[] = ['local_energy', 'growth', 'viscosity', 'ttt', 'constant_heating'];
 
@@ -52,9 +55,7 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
   const ids = useMemo(() => identifyScans(data?.scans ?? [], data?.listed ?? []), [data]);
   if (!campaign || !data) return <NotYet problem={problem} what="the sample" campaignId={id} />;
 
-  const { sample, curves, scans } = data;
-  const told = tellableNow(data.flags, data.gaps, live.status.value);
-  const numbers = numbersBySample(data.parameters).get(sample.sample) ?? [];
+  const { sample, curves, scans, below } = data;
   const others = live.status.value?.samples ?? [];
   const place = others.findIndex((s) => s.id === sample.id);
   const neighbours = [
@@ -120,6 +121,7 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
                 return (
                   <Figure
                     key={kind}
+                    isFirst
                     title={FIGURES[kind].title}
                     of={of}
                     curves={curves.thermogram && { ...curves.thermogram, series }}
@@ -141,17 +143,19 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
             </div>
             <div class="figure-column">
               {shownId !== undefined && shownRow && (
-                <div id="scan-alone">
-                  <ScanPanel
-                    key={shownId}
-                    scanId={shownId}
-                    row={shownRow}
-                    lane={lanes.find((lane) => lane.key === shownId)}
-                    of={of}
-                    instruments={instruments}
-                    onCorrected={() => live.reload()}
-                  />
-                </div>
+                <AfterPaint>
+                  <div id="scan-alone">
+                    <ScanPanel
+                      key={shownId}
+                      scanId={shownId}
+                      row={shownRow}
+                      lane={lanes.find((lane) => lane.key === shownId)}
+                      of={of}
+                      instruments={instruments}
+                      onCorrected={() => live.reload()}
+                    />
+                  </div>
+                </AfterPaint>
               )}
               {curves.conversion && curves.conversion.series.length > 0 && (
                 <ConversionFigure curves={curves.conversion} of={of} instruments={instruments} pointed={pointed} />
@@ -159,17 +163,62 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
             </div>
           </>
         )}
-        {curves.kissinger && curves.kissinger.series.length > 0 && (
-          <KissingerFigures curves={curves.kissinger} of={of} instruments={instruments} />
-        )}
-        {curves.energy && curves.energy.series.length > 0 && <EnergyFigures curves={curves.energy} of={of} />}
-        {OTHER_KINDS.map((kind) => {
-          const other = curves[kind];
-          return other && other.series.length > 0 ? (
-            <OtherFigures key={kind} curves={other} of={of} instruments={instruments} />
-          ) : null;
-        })}
+        {below && <MoreFigures curves={curves} of={of} instruments={instruments} />}
       </section>
+      {below && (
+        <Below
+          data={{ ...data, below }}
+          campaign={campaign}
+          status={live.status.value}
+          ids={ids}
+          instruments={instruments}
+          pointed={pointed}
+          onShow={show}
+        />
+      )}
+    </>
+  );
+}
+
+/** Drawn once what stands before it is on the screen. */
+const AfterPaint = ({ children }: { children: ComponentChildren }) => <>{useParts(2) > 1 && children}</>;
+
+/** Figures below those of the scans. */
+function MoreFigures(props: { curves: SampleData['curves']; of: readonly string[]; instruments: readonly string[] }) {
+  const { curves, of, instruments } = props;
+  return (
+    <>
+      {curves.kissinger && curves.kissinger.series.length > 0 && (
+        <KissingerFigures curves={curves.kissinger} of={of} instruments={instruments} />
+      )}
+      {curves.energy && curves.energy.series.length > 0 && <EnergyFigures curves={curves.energy} of={of} />}
+      {OTHER_KINDS.map((kind) => {
+        const other = curves[kind];
+        return other && other.series.length > 0 ? (
+          <OtherFigures key={kind} curves={other} of={of} instruments={instruments} />
+        ) : null;
+      })}
+    </>
+  );
+}
+
+/** What stands below the figures. */
+function Below(props: {
+  data: Required<SampleData>;
+  campaign: Campaign;
+  status: Status | undefined;
+  ids: Map<ScanRow, string>;
+  instruments: readonly string[];
+  pointed: Signal<string | undefined>;
+  onShow(key: string): void;
+}) {
+  const { data, campaign, status, ids, instruments, pointed, onShow } = props;
+  const { sample, scans, below } = data;
+  const told = tellableNow(below.flags, below.gaps, status);
+  const numbers = numbersBySample(below.parameters).get(sample.sample) ?? [];
+  const drawn = useParts(4);
+  return (
+    <>
       <section class="numbers" aria-labelledby="numbers-title">
         <div class="section-head">
           <h2 id="numbers-title">Numbers</h2>
@@ -192,26 +241,30 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
           </div>
         )}
       </section>
-      {(sample.state === 'fitted' || data.forecasts.length > 0) && (
-        <Forecasts campaign={campaign} sample={sample} rows={data.forecasts} />
+      {drawn > 1 && (sample.state === 'fitted' || below.forecasts.length > 0) && (
+        <Forecasts campaign={campaign} sample={sample} rows={below.forecasts} />
       )}
-      <NextSteps
-        campaign={campaign}
-        sample={sample.sample}
-        flags={told.flags}
-        gaps={told.gaps}
-        advice={data.advice}
-        isSettled={live.status.value?.settled ?? false}
-      />
-      <ScanTable
-        campaign={campaign}
-        sample={sample.sample}
-        scans={scans}
-        ids={ids}
-        instruments={instruments}
-        pointed={pointed}
-        onShow={show}
-      />
+      {drawn > 2 && (
+        <NextSteps
+          campaign={campaign}
+          sample={sample.sample}
+          flags={told.flags}
+          gaps={told.gaps}
+          advice={below.advice}
+          isSettled={status?.settled ?? false}
+        />
+      )}
+      {drawn > 3 && (
+        <ScanTable
+          campaign={campaign}
+          sample={sample.sample}
+          scans={scans}
+          ids={ids}
+          instruments={instruments}
+          pointed={pointed}
+          onShow={onShow}
+        />
+      )}
       <p class="small">{formatCount(scans.length, 'row')}, one a scan and event.</p>
     </>
   );

@@ -45,9 +45,12 @@ export interface Nearness {
   height: ReadonlySignal<number>;
 }
 
-/** Tells when an element comes near the window, a few elements a frame, so that a jump down a long page draws without a stall. */
-export function useNear(element: RefObject<HTMLElement | null>): Nearness {
-  const seen = useSignal(false);
+/**
+ * Tells when an element comes near the window, a few elements a frame, so that a jump down a long page draws without a stall. What
+ * surely stands in the first window `isFirst`: it is drawn without looking.
+ */
+export function useNear(element: RefObject<HTMLElement | null>, isFirst = false): Nearness {
+  const seen = useSignal(isFirst);
   const height = useSignal(0);
   const isNear = useComputed(() => seen.value || isPrinting.value);
   useLayoutEffect(() => {

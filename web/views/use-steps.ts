@@ -1,7 +1,8 @@
 import { useLayoutEffect, useState } from 'preact/hooks';
 
-/** Time spent on steps before the browser gets its turn, ms. */
+/** Time spent on steps before the browser gets its turn, ms; while nothing stands on the page there is nothing to be quick for. */
 const TURN_MS = 8;
+const FIRST_TURN_MS = 40;
 
 const nextTurn = (): Promise<void> => new Promise((resolve) => setTimeout(resolve, 0));
 
@@ -18,7 +19,7 @@ export function useSteps<Outcome>(
     let isDropped = false;
     const run = async (): Promise<void> => {
       const steps = begin();
-      let turnEnds = performance.now() + TURN_MS;
+      let turnEnds = performance.now() + (outcome === undefined ? FIRST_TURN_MS : TURN_MS);
       for (let step = steps?.next(); step !== undefined && !isDropped; step = steps?.next()) {
         if (step.done) return setOutcome(step.value);
         if (performance.now() < turnEnds) continue;
