@@ -60,156 +60,6 @@ export interface CampaignStatus {
   eta_s: number | null;
 }
 
-export interface Overview {
-  campaign: Campaign;
-  status: CampaignStatus;
-  /** Names this state to `…/stream` as its Last-Event-ID. */
-  state: string;
-  tables: {
-    parameters?: {
-      sample: string;
-      event: number;
-      quantity: string;
-      method: string;
-      conversion: number | null;
-      temperature_K: number | null;
-      value: number;
-      unit: string;
-      lower95: number | null;
-      upper95: number | null;
-      scan_count: number;
-      rate_min_K_per_s: number;
-      rate_max_K_per_s: number;
-      flags: string[];
-      interval: 'monte_carlo' | 'student_t' | 'f_ratio';
-      variant: '' | 'peak' | 'without_outliers' | 'full_response';
-    }[];
-    scans?: {
-      file: string;
-      sha256: string;
-      sample: string | null;
-      instrument: string | null;
-      role: 'sample' | 'standard' | 'blank' | null;
-      event: number | null;
-      status: 'received' | 'read' | 'reduced' | 'set_aside' | 'failed' | 'unassigned' | 'excluded' | 'superseded';
-      reason: string | null;
-      rate_nominal_K_per_s: number | null;
-      rate_K_per_s: number | null;
-      mass_mg: number | null;
-      glass_transition_K: number | null;
-      onset_K: number | null;
-      peak_K: number | null;
-      end_K: number | null;
-      width_K: number | null;
-      enthalpy_J_per_g: number | null;
-      flags: string[];
-      segment: number | null;
-      replicate: string | null;
-      centroid_K: number | null;
-    }[];
-    instruments?: {
-      instrument: string;
-      kind: 'furnace' | 'chip';
-      offset_K: number;
-      offset_se_K: number;
-      lag_s: number;
-      lag_se_s: number;
-      heat_factor: number | null;
-      heat_factor_se: number | null;
-      standards: number;
-      source: 'standards' | 'sheet' | 'prior';
-      offset_slope: number | null;
-      response_time_s: number | null;
-    }[];
-    verdicts?: {
-      sample: string;
-      event: number;
-      verdict: 'straight' | 'instrument' | 'material' | 'undecided';
-      bend: number | null;
-      bend_lower99: number | null;
-      bend_upper99: number | null;
-      p_value: number | null;
-      delta_aicc: number | null;
-      energy_low_rate_kJ_per_mol: number | null;
-      energy_high_rate_kJ_per_mol: number | null;
-      instruments: string[];
-      rate_min_K_per_s: number;
-      rate_max_K_per_s: number;
-      decides_next: string;
-    }[];
-    advice?: {
-      sample: string;
-      rank: number;
-      instrument: string;
-      rate_K_per_s: number;
-      goal: 'energy' | 'bend' | 'forecast';
-      interval_now: number;
-      interval_expected: number;
-      event: number;
-      unit: '1' | 'kJ/mol' | 'decades';
-      scans_to_half: number | null;
-      sentence: string;
-      caution: string;
-    }[];
-    coverage?: {
-      sample: string;
-      decade_low_K_per_s: number;
-      decade_high_K_per_s: number;
-      instrument: string;
-      scan_count: number;
-      rates: number[];
-    }[];
-    gaps?: { sample: string; code: string; detail: string; action: string }[];
-    flags?: {
-      severity: 'note' | 'warn' | 'stop';
-      code: string;
-      sample: string | null;
-      instrument: string | null;
-      file: string | null;
-      event: number | null;
-      detail: string;
-      action: string;
-    }[];
-  };
-  is_whole: boolean;
-  scans?: {
-    id: string;
-    file: string;
-    instrument: string;
-    status: 'received' | 'read' | 'reduced' | 'set_aside' | 'failed' | 'unassigned' | 'excluded' | 'superseded';
-  }[];
-  outlines?: Curves[];
-}
-
-export interface Curves {
-  kind:
-    | 'thermogram'
-    | 'baseline'
-    | 'conversion'
-    | 'kissinger'
-    | 'energy'
-    | 'local_energy'
-    | 'growth'
-    | 'viscosity'
-    | 'ttt'
-    | 'constant_heating';
-  x: { quantity: string; unit: string };
-  y: { quantity: string; unit: string };
-  series: {
-    name: string;
-    instrument?: string;
-    scan_id?: string;
-    x: number[];
-    y: number[];
-    lower?: number[];
-    upper?: number[];
-    unit?: string;
-    time_s?: number[];
-    beyond_measured_K?: number[];
-  }[];
-  caution?: string;
-}
-
 export interface ParametersRow {
   sample: string;
   event: number;
@@ -408,6 +258,35 @@ export interface Sample {
   }[];
 }
 
+export interface Curves {
+  kind:
+    | 'thermogram'
+    | 'baseline'
+    | 'conversion'
+    | 'kissinger'
+    | 'energy'
+    | 'local_energy'
+    | 'growth'
+    | 'viscosity'
+    | 'ttt'
+    | 'constant_heating';
+  x: { quantity: string; unit: string };
+  y: { quantity: string; unit: string };
+  series: {
+    name: string;
+    instrument?: string;
+    scan_id?: string;
+    x: number[];
+    y: number[];
+    lower?: number[];
+    upper?: number[];
+    unit?: string;
+    time_s?: number[];
+    beyond_measured_K?: number[];
+  }[];
+  caution?: string;
+}
+
 export interface Scan {
   id: string;
   campaign_id: string;
@@ -543,12 +422,12 @@ export interface Operations {
   /** Campaigns, ordered by id. */
   listCampaigns: {
     id: undefined;
-    query: { limit?: number; after?: string };
+    query: { limit?: number; after?: string; format?: 'json' | 'csv' };
     body: undefined;
     answer: { items: Campaign[]; next: string | null };
   };
   /** One campaign, by id or name. */
-  getCampaign: { id: string; query: undefined; body: undefined; answer: Campaign };
+  getCampaign: { id: string; query: { format?: 'json' | 'csv' }; body: undefined; answer: Campaign };
   /** Give a campaign another name. */
   renameCampaign: { id: string; query: undefined; body: { name: string }; answer: Campaign };
   /** Delete a campaign with everything in it. */
@@ -560,7 +439,12 @@ export interface Operations {
   /** Send one file: a scan, a sheet, or a .gz or .zip of them. */
   putFile: { id: string; query: { path: string }; body: Blob | Uint8Array<ArrayBuffer> | string; answer: ReceivedFile };
   /** Send a handful of files as a form: at most 50 files and 8 MB. */
-  postFiles: { id: string; query: undefined; body: FormData; answer: { items: ReceivedFile[]; next: string | null } };
+  postFiles: {
+    id: string;
+    query: { format?: 'json' | 'csv' };
+    body: FormData;
+    answer: { items: ReceivedFile[]; next: string | null };
+  };
   /** Every scan and what was found in it. */
   listScans: {
     id: string;
@@ -569,11 +453,9 @@ export interface Operations {
     answer: { items: ScansRow[]; next: string | null };
   };
   /** Where the campaign stands. */
-  getStatus: { id: string; query: undefined; body: undefined; answer: CampaignStatus };
+  getStatus: { id: string; query: { format?: 'json' | 'csv' }; body: undefined; answer: CampaignStatus };
   /** The same as server-sent events `status`, one at every change. */
   streamStatus: { id: string; query: undefined; body: undefined; answer: Response };
-  /** What a page about a campaign, or about one sample of it, shows first: everything in one answer. */
-  getOverview: { id: string; query: { sample?: string }; body: undefined; answer: Overview };
   /** The consolidated kinetic parameters. */
   listParameters: {
     id: string;
@@ -650,9 +532,9 @@ export interface Operations {
   /** The report of a campaign: one page with every plot and table, without network. */
   getReport: { id: string; query: undefined; body: undefined; answer: Response };
   /** Answer one question about times, temperatures and conversions, from the draws of the last fit. */
-  forecast: { id: string; query: undefined; body: ForecastQuestion; answer: ForecastAnswer };
+  forecast: { id: string; query: { format?: 'json' | 'csv' }; body: ForecastQuestion; answer: ForecastAnswer };
   /** One sample and its scans. Its numbers are in the parameters table of its campaign. */
-  getSample: { id: string; query: undefined; body: undefined; answer: Sample };
+  getSample: { id: string; query: { format?: 'json' | 'csv' }; body: undefined; answer: Sample };
   /** Curves of one kind, at most 2000 points each, extremes kept. */
   getSampleCurves: {
     id: string;
@@ -668,18 +550,19 @@ export interface Operations {
         | 'viscosity'
         | 'ttt'
         | 'constant_heating';
+      format?: 'json' | 'csv';
     };
     body: undefined;
     answer: Curves;
   };
   /** One scan. */
-  getScan: { id: string; query: undefined; body: undefined; answer: Scan };
+  getScan: { id: string; query: { format?: 'json' | 'csv' }; body: undefined; answer: Scan };
   /** Correct what the sheet says of a scan. */
   correctScan: { id: string; query: undefined; body: ScanCorrections; answer: Scan };
   /** What was corrected on a scan, oldest first. */
   listScanHistory: {
     id: string;
-    query: undefined;
+    query: { format?: 'json' | 'csv' };
     body: undefined;
     answer: { items: ScanHistoryEntry[]; next: string | null };
   };
@@ -688,11 +571,22 @@ export interface Operations {
   /** One instrument and its correction. */
   getInstrument: { id: string; query: undefined; body: undefined; answer: Instrument };
   /** How late its standards melt against heating rate, and the correction drawn from them. */
-  getInstrumentCurves: { id: string; query: { kind: 'calibration' }; body: undefined; answer: CalibrationCurves };
+  getInstrumentCurves: {
+    id: string;
+    query: { kind: 'calibration'; format?: 'json' | 'csv' };
+    body: undefined;
+    answer: CalibrationCurves;
+  };
   /** Jobs, ordered by id. */
   listJobs: {
     id: undefined;
-    query: { state?: 'queued' | 'running' | 'done' | 'failed'; campaign?: string; limit?: number; after?: string };
+    query: {
+      state?: 'queued' | 'running' | 'done' | 'failed';
+      campaign?: string;
+      limit?: number;
+      after?: string;
+      format?: 'json' | 'csv';
+    };
     body: undefined;
     answer: { items: Job[]; next: string | null };
   };
@@ -724,7 +618,6 @@ export const OPERATIONS = {
   listScans: ['GET', '/v1/campaigns/{id}/scans'],
   getStatus: ['GET', '/v1/campaigns/{id}/status'],
   streamStatus: ['GET', '/v1/campaigns/{id}/stream'],
-  getOverview: ['GET', '/v1/campaigns/{id}/overview'],
   listParameters: ['GET', '/v1/campaigns/{id}/parameters'],
   listConversion: ['GET', '/v1/campaigns/{id}/conversion'],
   listVerdicts: ['GET', '/v1/campaigns/{id}/verdicts'],

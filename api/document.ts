@@ -1,3 +1,4 @@
+import { CSV_RULE } from './csv-lists.ts';
 import { EXAMPLES } from './examples.ts';
 import type { ApiApp } from './openapi.ts';
 import { PROBLEMS, type ProblemCode, problemType } from './problems.ts';
@@ -5,6 +6,7 @@ import type { ApiDocument, Operation } from './reference-page.ts';
 
 const DESCRIPTION = [
   'Crystallisation kinetics from heating scans. JSON with the column names of the result files as keys; missing is null. Lists are {items, next}.',
+  CSV_RULE,
   'Errors are problems (RFC 9457), listed by status with every route. Unknown query parameters and body fields are refused. Result routes carry an ETag.',
   'Stable within /v1: routes, operation names, ids, keys with their units, order of the columns, codes of problems and flags, states. Keys, columns, codes, optional parameters and routes may be added: a client leaves aside what it does not know.',
   'Not promised: wording of sentences (title, detail, action, reason, sentence), the last digits of numbers after a change of version, the form of an id, of `next` and of an ETag, /metrics, the two pages, the report, and the order of lists where none is named.',

@@ -13,7 +13,8 @@ const KEPT_LIMIT = 1e6;
 
 async function hashRequest(c: Context): Promise<string> {
   const body = await c.req.raw.clone().arrayBuffer();
-  const head = new TextEncoder().encode(`${c.req.method} ${new URL(c.req.url).pathname} `);
+  const { pathname, search } = new URL(c.req.url);
+  const head = new TextEncoder().encode(`${c.req.method} ${pathname}${search} `);
   const bytes = new Uint8Array(head.length + body.byteLength);
   bytes.set(head);
   bytes.set(new Uint8Array(body), head.length);

@@ -1,6 +1,6 @@
 import { bodyLimit } from 'hono/body-limit';
 import type { z } from 'zod';
-import { BY_ID } from './openapi.ts';
+import { ID_PARAM, NO_QUERY } from './openapi.ts';
 import { Problem } from './problems.ts';
 
 /** Bytes of a JSON body. */
@@ -18,13 +18,13 @@ const bodyOf = <S extends z.ZodType>(schema: S) =>
   ({ required: true, content: { 'application/json': { schema } } }) as const;
 
 /** What a route to one thing by its id says of the JSON that it takes. */
-export const jsonById = <S extends z.ZodType>(schema: S) => ({
+export const jsonById = <S extends z.ZodType, Q extends z.ZodObject = typeof NO_QUERY>(schema: S, query?: Q) => ({
   middleware: limitJson,
-  request: { ...BY_ID, body: bodyOf(schema) },
+  request: { params: ID_PARAM, query: (query ?? NO_QUERY) as Q, body: bodyOf(schema) },
 });
 
 /** The same for a route to a whole collection. */
 export const jsonToList = <S extends z.ZodType>(schema: S) => ({
   middleware: limitJson,
-  request: { query: BY_ID.query, body: bodyOf(schema) },
+  request: { query: NO_QUERY, body: bodyOf(schema) },
 });

@@ -16,7 +16,7 @@ export interface ZipEntry {
 export const tableEntries = (ports: Ports, campaignId: string): ZipEntry[] =>
   (Object.keys(RESULT_TABLES) as ResultTable[]).map((table) => ({
     name: `${table}.csv`,
-    body: () => csvStream(table, readCurrentTable(ports, campaignId, table)),
+    body: () => csvStream(RESULT_TABLES[table], readCurrentTable(ports, campaignId, table)),
   }));
 
 /** A zip archive made while it is sent: one entry is open at a time, none is whole in memory. */

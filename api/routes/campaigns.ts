@@ -11,6 +11,7 @@ import {
   setGoals,
 } from '../../jobs/store/index.ts';
 import { quote } from '../../schema/wire/flags.ts';
+import { answerCsv, byIdOrCsv, columnsOf, everyItem, formatQuery, orCsv } from '../csv-lists.ts';
 import { jsonById, jsonToList } from '../json-body.ts';
 import {
   type ApiApp,
@@ -31,6 +32,8 @@ import { GoalsShape, goalRowOf } from '../shapes/forecasts.ts';
 const NewBody = strict({ name: textOf(CAMPAIGN_NAME_LIMIT), goals: GoalsShape.optional() });
 const NameBody = strict({ name: textOf(CAMPAIGN_NAME_LIMIT) });
 const GoalsBody = strict({ goals: GoalsShape });
+/** A list does not tell the instruments of its campaigns. */
+const LIST_COLUMNS = columnsOf(CampaignShape.omit({ instruments: true }));
 
 const createCampaignRoute = createRoute({
   method: 'post',
@@ -44,16 +47,16 @@ const listRoute = createRoute({
   method: 'get',
   path: '/v1/campaigns',
   summary: 'Campaigns, ordered by id.',
-  request: { query: strict(PAGE_QUERY) },
-  responses: answersOf(200, listOf(CampaignShape), 'A page of campaigns.'),
+  request: { query: strict({ ...PAGE_QUERY, ...formatQuery('every campaign, whatever limit and after say') }) },
+  responses: orCsv(answersOf(200, listOf(CampaignShape), 'A page of campaigns.')),
 });
 
 const getRoute = createRoute({
   method: 'get',
   path: '/v1/campaigns/{id}',
   summary: 'One campaign, by id or name.',
-  request: BY_ID,
-  responses: answersOf(200, CampaignShape, 'The campaign.'),
+  request: byIdOrCsv('its instruments'),
+  responses: orCsv(answersOf(200, CampaignShape, 'The campaign.')),
 });
 
 const renameRoute = createRoute({
@@ -102,18 +105,18 @@ export function addCampaignRoutes(app: ApiApp, ports: Ports): void {
   });
 
   app.openapi(listRoute, async (c) => {
-    const { limit, after } = c.req.valid('query');
-    const campaigns = await listCampaigns(ports, { lab: c.get('access').lab, after, limit: limit + 1 });
-    return c.json(pageOf(campaigns, limit, campaignBody), 200);
+    const { limit, after, format } = c.req.valid('query');
+    const { lab } = c.get('access');
+    const load = (page: { limit: number; after?: string }) => listCampaigns(ports, { lab, ...page });
+    if (format === 'csv') return answerCsv(c, 'campaigns', LIST_COLUMNS, everyItem(load, campaignBody));
+    return c.json(pageOf(await load({ after, limit: limit + 1 }), limit, campaignBody), 200);
   });
 
   app.openapi(getRoute, async (c) => {
     const campaign = await requireCampaign(c, ports, c.req.valid('param').id);
-    const instruments = await listInstruments(ports, campaign.id);
-    return c.json(
-      { ...campaignBody(campaign), instruments: instruments.map(({ id, instrument }) => ({ id, instrument })) },
-      200,
-    );
+    const instruments = (await listInstruments(ports, campaign.id)).map(({ id, instrument }) => ({ id, instrument }));
+    if (c.req.valid('query').format === 'csv') return answerCsv(c, 'instruments', ['id', 'instrument'], instruments);
+    return c.json({ ...campaignBody(campaign), instruments }, 200);
   });
 
   app.openapi(renameRoute, async (c) => {

@@ -4,7 +4,8 @@ import type { Ports } from '../../jobs/ports/index.ts';
 import { FILE_LIMIT_BYTES, receiveFile } from '../../jobs/store/index.ts';
 import { quote } from '../../schema/wire/flags.ts';
 import type { ApiEnv } from '../access.ts';
-import { type ApiApp, answersOf, ID_PARAM, listOf, NO_QUERY, strict } from '../openapi.ts';
+import { answerCsv, byIdOrCsv, columnsOf, orCsv } from '../csv-lists.ts';
+import { type ApiApp, answersOf, ID_PARAM, listOf, strict } from '../openapi.ts';
 import { Problem } from '../problems.ts';
 import { requireCampaign } from '../results.ts';
 import { ReceivedShape } from '../shapes/campaign.ts';
@@ -37,8 +38,7 @@ const formRoute = createRoute({
   summary: 'Send a handful of files as a form: at most 50 files and 8 MB.',
   description: 'Field `files[]`, once a file; the file name is its path. A refused file does not hold up the others.',
   request: {
-    params: ID_PARAM,
-    query: NO_QUERY,
+    ...byIdOrCsv('what became of each file'),
     body: {
       content: {
         'multipart/form-data': {
@@ -50,7 +50,7 @@ const formRoute = createRoute({
       },
     },
   },
-  responses: answersOf(202, listOf(ReceivedShape), 'What became of each file.'),
+  responses: orCsv(answersOf(202, listOf(ReceivedShape), 'What became of each file.')),
 });
 
 type ApiContext = Context<ApiEnv>;
@@ -114,6 +114,7 @@ export function addFileRoutes(app: ApiApp, ports: Ports): void {
     const items: z.infer<typeof ReceivedShape>[] = [];
     for (const file of await readForm(c))
       items.push(await receiveFile(ports, campaign.id, file.name, file.stream(), file.size));
+    if (c.req.valid('query').format === 'csv') return answerCsv(c, 'files', columnsOf(ReceivedShape), items, 202);
     return c.json({ items, next: null }, 202);
   });
 }

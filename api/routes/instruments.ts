@@ -2,6 +2,8 @@ import { createRoute, z } from '@hono/zod-openapi';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { answerCalibration, type CalibrationPoints } from '../../jobs/steps/answer-calibration.ts';
 import { findInstrument, readTable } from '../../jobs/store/index.ts';
+import { orCsv } from '../csv-lists.ts';
+import { answerCurvesCsv, CURVES_CSV } from '../curves-csv.ts';
 import { type ApiApp, BY_ID, ID_PARAM, oneOf, strict } from '../openapi.ts';
 import { isUnchanged, requireCampaign, requireOf, resultAnswers } from '../results.ts';
 import { axisShape, type CurveSeries, seriesShape } from '../shapes/curves.ts';
@@ -34,8 +36,8 @@ const curvesRoute = createRoute({
   method: 'get',
   path: '/v1/instruments/{id}/curves',
   summary: 'How late its standards melt against heating rate, and the correction drawn from them.',
-  request: { params: ID_PARAM, query: strict({ kind: oneOf(['calibration']) }) },
-  responses: resultAnswers(CalibrationShape, 'The curves.'),
+  request: { params: ID_PARAM, query: strict({ kind: oneOf(['calibration']), ...CURVES_CSV }) },
+  responses: orCsv(resultAnswers(CalibrationShape, 'The curves.')),
 });
 
 /** Half width of a 95 % interval in standard errors. */
@@ -79,14 +81,12 @@ export function addInstrumentRoutes(app: ApiApp, ports: Ports): void {
     const { id, campaignId } = await requireInstrument(c, ports, c.req.valid('param').id);
     if (isUnchanged(c, await requireCampaign(c, ports, campaignId))) return c.body(null, 304);
     const points = await answerCalibration(ports, id);
-    return c.json(
-      {
-        kind: 'calibration' as const,
-        x: { quantity: 'heating rate', unit: 'K/s' },
-        y: { quantity: 'measured onset − melting temperature', unit: 'K' },
-        series: points ? calibrationSeries(points) : [],
-      },
-      200,
-    );
+    const curves = {
+      kind: 'calibration' as const,
+      x: { quantity: 'heating rate', unit: 'K/s' },
+      y: { quantity: 'measured onset − melting temperature', unit: 'K' },
+      series: points ? calibrationSeries(points) : [],
+    };
+    return c.req.valid('query').format === 'csv' ? answerCurvesCsv(c, curves) : c.json(curves, 200);
   });
 }

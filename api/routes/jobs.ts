@@ -2,6 +2,7 @@ import { createRoute } from '@hono/zod-openapi';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { type JobView, listJobs, retryJob } from '../../jobs/store/index.ts';
 import { JOB_STATES } from '../../schema/wire/states.ts';
+import { answerCsv, columnsOf, everyItem, formatQuery, orCsv } from '../csv-lists.ts';
 import { type ApiApp, answersOf, BY_ID, listOf, oneOf, PAGE_QUERY, strict, textOf } from '../openapi.ts';
 import { pageOf, requireCampaign } from '../results.ts';
 import { JobShape } from '../shapes/campaign.ts';
@@ -15,9 +16,10 @@ const listRoute = createRoute({
       state: oneOf(JOB_STATES).optional(),
       campaign: textOf(80).optional().openapi({ description: 'Id or name of a campaign.' }),
       ...PAGE_QUERY,
+      ...formatQuery('every such job, whatever limit and after say'),
     }),
   },
-  responses: answersOf(200, listOf(JobShape), 'A page of jobs.'),
+  responses: orCsv(answersOf(200, listOf(JobShape), 'A page of jobs.')),
 });
 
 const retryRoute = createRoute({
@@ -40,11 +42,12 @@ const shapeOf = ({ next_try_at, created_at, started_at, finished_at, ...job }: J
 
 export function addJobRoutes(app: ApiApp, ports: Ports): void {
   app.openapi(listRoute, async (c) => {
-    const { state, campaign, limit, after } = c.req.valid('query');
+    const { state, campaign, limit, after, format } = c.req.valid('query');
     const { lab } = c.get('access');
     const campaignId = campaign === undefined ? undefined : (await requireCampaign(c, ports, campaign)).id;
-    const jobs = await listJobs(ports, { lab, state, campaignId, after, limit: limit + 1 });
-    return c.json(pageOf(jobs, limit, shapeOf), 200);
+    const load = (page: { limit: number; after?: string }) => listJobs(ports, { lab, state, campaignId, ...page });
+    if (format === 'csv') return answerCsv(c, 'jobs', columnsOf(JobShape), everyItem(load, shapeOf));
+    return c.json(pageOf(await load({ after, limit: limit + 1 }), limit, shapeOf), 200);
   });
   app.openapi(retryRoute, async (c) =>
     c.json(shapeOf(await retryJob(ports, c.req.valid('param').id, c.get('access').lab)), 202),

@@ -4,14 +4,17 @@ import { answerForecast } from '../../jobs/steps/answer-forecast.ts';
 import { findSample, listSampleScans } from '../../jobs/store/index.ts';
 import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import { SAMPLE_STATES } from '../../schema/wire/states.ts';
+import { answerCsv, byIdOrCsv, columnsOf, formatQuery, orCsv } from '../csv-lists.ts';
+import { answerCurvesCsv, CURVES_CSV } from '../curves-csv.ts';
 import { jsonById } from '../json-body.ts';
-import { type ApiApp, answersOf, BY_ID, ID_PARAM, oneOf, strict } from '../openapi.ts';
+import { type ApiApp, answersOf, ID_PARAM, oneOf, strict } from '../openapi.ts';
 import { Problem } from '../problems.ts';
 import { isUnchanged, requireCampaign, requireOf, resultAnswers } from '../results.ts';
 import { readCurves } from '../sample-curves.ts';
 import { CURVE_KINDS, CURVE_NOTES, CurvesShape } from '../shapes/curves.ts';
 import { AnswerShape, QUESTION_FORMS, QuestionBody, questionOf } from '../shapes/forecasts.ts';
 import { SampleScansShape } from '../shapes/overview.ts';
+import { ROW_SHAPES } from '../shapes/rows.ts';
 
 const SampleShape = z
   .object({
@@ -28,8 +31,8 @@ const sampleRoute = createRoute({
   method: 'get',
   path: '/v1/samples/{id}',
   summary: 'One sample and its scans. Its numbers are in the parameters table of its campaign.',
-  request: BY_ID,
-  responses: resultAnswers(SampleShape, 'The sample.'),
+  request: byIdOrCsv('its scans'),
+  responses: orCsv(resultAnswers(SampleShape, 'The sample.')),
 });
 
 const curvesRoute = createRoute({
@@ -37,8 +40,8 @@ const curvesRoute = createRoute({
   path: '/v1/samples/{id}/curves',
   summary: 'Curves of one kind, at most 2000 points each, extremes kept.',
   description: CURVE_NOTES,
-  request: { params: ID_PARAM, query: strict({ kind: oneOf(CURVE_KINDS) }) },
-  responses: resultAnswers(CurvesShape, 'The curves.'),
+  request: { params: ID_PARAM, query: strict({ kind: oneOf(CURVE_KINDS), ...CURVES_CSV }) },
+  responses: orCsv(resultAnswers(CurvesShape, 'The curves.')),
 });
 
 const requireSample = requireOf('sample', findSample);
@@ -48,8 +51,8 @@ const forecastRoute = createRoute({
   path: '/v1/samples/{id}/forecasts',
   summary: 'Answer one question about times, temperatures and conversions, from the draws of the last fit.',
   description: FORECAST_CAUTION,
-  ...jsonById(QuestionBody),
-  responses: answersOf(200, AnswerShape, 'The answer by every method that the data support.'),
+  ...jsonById(QuestionBody, strict(formatQuery('the answers, one a row'))),
+  responses: orCsv(answersOf(200, AnswerShape, 'The answer by every method that the data support.')),
 });
 
 export function addSampleRoutes(app: ApiApp, ports: Ports): void {
@@ -59,7 +62,10 @@ export function addSampleRoutes(app: ApiApp, ports: Ports): void {
     if (!question)
       throw new Problem('invalid-input', `body: the fields given ask no question; allowed: ${QUESTION_FORMS}`);
     try {
-      return c.json({ items: await answerForecast(ports, sample.id, question), caution: FORECAST_CAUTION }, 200);
+      const items = await answerForecast(ports, sample.id, question);
+      if (c.req.valid('query').format === 'csv')
+        return answerCsv(c, 'forecast', columnsOf(ROW_SHAPES.forecasts), items);
+      return c.json({ items, caution: FORECAST_CAUTION }, 200);
     } catch (error) {
       if (error instanceof RangeError) throw new Problem('invalid-input', `body: ${error.message}`);
       throw error;
@@ -71,13 +77,16 @@ export function addSampleRoutes(app: ApiApp, ports: Ports): void {
     if (isUnchanged(c, await requireCampaign(c, ports, sample.campaignId))) return c.body(null, 304);
     const { id, campaignId, state, reason } = sample;
     const scans = await listSampleScans(ports, campaignId, sample.sample);
+    if (c.req.valid('query').format === 'csv')
+      return answerCsv(c, 'sample', columnsOf(SampleShape.shape.scans.element), scans);
     return c.json({ id, campaign_id: campaignId, sample: sample.sample, state, reason, scans }, 200);
   });
 
   app.openapi(curvesRoute, async (c) => {
     const sample = await requireSample(c, ports, c.req.valid('param').id);
-    const { kind } = c.req.valid('query');
+    const { kind, format } = c.req.valid('query');
     if (isUnchanged(c, await requireCampaign(c, ports, sample.campaignId))) return c.body(null, 304);
-    return c.json(await readCurves(ports, sample, kind), 200);
+    const curves = await readCurves(ports, sample, kind);
+    return format === 'csv' ? answerCurvesCsv(c, curves) : c.json(curves, 200);
   });
 }

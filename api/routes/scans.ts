@@ -2,6 +2,7 @@ import { createRoute, z } from '@hono/zod-openapi';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { correctScan, findScan, readScanHistory, type ScanView } from '../../jobs/store/index.ts';
 import type { CorrectionField, CorrectionValue } from '../../schema/wire/corrections.ts';
+import { answerCsv, byIdOrCsv, columnsOf, orCsv } from '../csv-lists.ts';
 import { jsonById } from '../json-body.ts';
 import { type ApiApp, answersOf, BY_ID, bodyOf, listOf, PROBLEM_ANSWER } from '../openapi.ts';
 import { Problem } from '../problems.ts';
@@ -30,8 +31,8 @@ const scanRoute = createRoute({
   method: 'get',
   path: '/v1/scans/{id}',
   summary: 'One scan.',
-  request: BY_ID,
-  responses: resultAnswers(ScanShape, 'The scan.'),
+  request: byIdOrCsv('its rows of the scans table'),
+  responses: orCsv(resultAnswers(ScanShape, 'The scan.')),
 });
 
 const originalRoute = createRoute({
@@ -56,8 +57,8 @@ const historyRoute = createRoute({
   method: 'get',
   path: '/v1/scans/{id}/history',
   summary: 'What was corrected on a scan, oldest first.',
-  request: BY_ID,
-  responses: resultAnswers(listOf(HistoryShape), 'The corrections.'),
+  request: byIdOrCsv('the corrections'),
+  responses: orCsv(resultAnswers(listOf(HistoryShape), 'The corrections.')),
 });
 
 const shapeOf = ({ id, campaignId, bytes, rows, corrections }: ScanView): z.infer<typeof ScanShape> => ({
@@ -79,6 +80,7 @@ export function addScanRoutes(app: ApiApp, ports: Ports): void {
   app.openapi(scanRoute, async (c) => {
     const scan = await requireScan(c, ports, c.req.valid('param').id);
     if (isUnchanged(c, await requireCampaign(c, ports, scan.campaignId))) return c.body(null, 304);
+    if (c.req.valid('query').format === 'csv') return answerCsv(c, 'scan', columnsOf(ROW_SHAPES.scans), scan.rows);
     return c.json(shapeOf(scan), 200);
   });
 
@@ -102,6 +104,7 @@ export function addScanRoutes(app: ApiApp, ports: Ports): void {
       cause,
       at: new Date(at).toISOString(),
     }));
+    if (c.req.valid('query').format === 'csv') return answerCsv(c, 'history', columnsOf(HistoryShape), items);
     return c.json({ items, next: null }, 200);
   });
 

@@ -1,8 +1,9 @@
 import { createRoute, z } from '@hono/zod-openapi';
 import type { Ports } from '../../jobs/ports/index.ts';
 import { campaignStatus, findCampaign, listSamples } from '../../jobs/store/index.ts';
+import { answerCsv, byIdOrCsv, columnsOf, orCsv } from '../csv-lists.ts';
 import { type StreamTimes, streamStatus } from '../event-stream.ts';
-import { type ApiApp, answersOf, BY_ID, bodyOf, ID_PARAM, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
+import { type ApiApp, answersOf, bodyOf, ID_PARAM, NO_QUERY, PROBLEM_ANSWER } from '../openapi.ts';
 import { requireCampaign } from '../results.ts';
 import { StatusShape } from '../shapes/campaign.ts';
 
@@ -10,8 +11,8 @@ const statusRoute = createRoute({
   method: 'get',
   path: '/v1/campaigns/{id}/status',
   summary: 'Where the campaign stands.',
-  request: BY_ID,
-  responses: answersOf(200, StatusShape, 'The state now.'),
+  request: byIdOrCsv('its samples'),
+  responses: orCsv(answersOf(200, StatusShape, 'The state now.')),
 });
 
 const streamRoute = createRoute({
@@ -37,7 +38,10 @@ export async function readStatus(ports: Ports, campaignId: string): Promise<z.in
 export function addStatusRoutes(app: ApiApp, ports: Ports, times: StreamTimes): void {
   app.openapi(statusRoute, async (c) => {
     const campaign = await requireCampaign(c, ports, c.req.valid('param').id);
-    return c.json(await readStatus(ports, campaign.id), 200);
+    const status = await readStatus(ports, campaign.id);
+    if (c.req.valid('query').format === 'csv')
+      return answerCsv(c, 'samples', columnsOf(StatusShape.shape.samples.element), status.samples);
+    return c.json(status, 200);
   });
   app.openapi(streamRoute, async (c) => {
     const { id } = await requireCampaign(c, ports, c.req.valid('param').id);

@@ -5,9 +5,9 @@ import { type ResultRow, readTable, type TableFilter } from '../../jobs/store/in
 import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import { RESULT_TABLES, type ResultTable } from '../../schema/wire/result-tables.ts';
 import type { ApiEnv } from '../access.ts';
-import { csvStream } from '../csv-stream.ts';
-import { type ApiApp, ID_PARAM, listOf, oneOf, PAGE_QUERY, PROBLEM_ANSWER, strict, textOf } from '../openapi.ts';
-import { isUnchanged, requireCampaign, UNCHANGED_ANSWER } from '../results.ts';
+import { answerCsv, formatQuery, orCsv } from '../csv-lists.ts';
+import { type ApiApp, ID_PARAM, listOf, PAGE_QUERY, strict, textOf } from '../openapi.ts';
+import { isUnchanged, requireCampaign, resultAnswers } from '../results.ts';
 import { ROW_SHAPES } from '../shapes/rows.ts';
 
 const positionError = 'the `next` of the page before';
@@ -21,9 +21,7 @@ const TABLE_QUERY = {
     .regex(/^\d{1,9}$/, { error: positionError })
     .optional()
     .openapi({ description: 'The `next` of the page before.' }),
-  format: oneOf(['json', 'csv'])
-    .default('json')
-    .openapi({ description: '`csv` gives the whole table, whatever limit and after say.' }),
+  ...formatQuery('the whole table, whatever limit and after say'),
 };
 
 const SAMPLE_FILTER = { sample: textOf(200).optional() };
@@ -52,33 +50,13 @@ const SUMMARIES: Record<ResultTable, string> = {
   flags: 'What to know and what to do.',
 };
 
-function answersOf<T extends ResultTable>(table: T) {
-  return {
-    200: {
-      description: 'A page of rows, or the whole table as CSV.',
-      content: {
-        'application/json': {
-          schema: listOf(ROW_SHAPES[table].openapi(`${table[0].toUpperCase()}${table.slice(1)}Row`)),
-        },
-        'text/csv': { schema: z.string() },
-      },
-    },
-    304: UNCHANGED_ANSWER,
-    default: PROBLEM_ANSWER,
-  };
-}
-
 type Query = { limit: number; after?: string; format: 'json' | 'csv' } & TableFilter;
 
 async function answerTable(c: Context<ApiEnv>, ports: Ports, id: string, table: ResultTable, query: Query) {
   const { limit, after, format, ...filter } = query;
   const campaign = await requireCampaign(c, ports, id);
   if (isUnchanged(c, campaign)) return c.body(null, 304);
-  if (format === 'csv')
-    return c.body(csvStream(table, readTable(ports, campaign.id, table, filter)), 200, {
-      'content-type': 'text/csv; charset=utf-8; header=present',
-      'content-disposition': `attachment; filename="${table}.csv"`,
-    });
+  if (format === 'csv') return answerCsv(c, table, RESULT_TABLES[table], readTable(ports, campaign.id, table, filter));
   const offset = Number(after ?? 0);
   const items: ResultRow[] = [];
   for await (const row of readTable(ports, campaign.id, table, { ...filter, offset, limit: limit + 1 }))
@@ -95,7 +73,12 @@ export function addTableRoutes(app: ApiApp, ports: Ports): void {
       path: `/v1/campaigns/{id}/${table}` as const,
       summary: SUMMARIES[table],
       request: { params: ID_PARAM, query },
-      responses: answersOf(table),
+      responses: orCsv(
+        resultAnswers(
+          listOf(ROW_SHAPES[table].openapi(`${table[0].toUpperCase()}${table.slice(1)}Row`)),
+          'A page of rows, or the whole table as CSV.',
+        ),
+      ),
     });
     app.openapi(route, async (c) => {
       const answer = await answerTable(c, ports, c.req.valid('param').id, table, c.req.valid('query') as Query);

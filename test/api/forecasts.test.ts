@@ -2,6 +2,7 @@ import { strFromU8, unzipSync } from 'fflate';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import { RESULT_TABLES } from '../../schema/wire/result-tables.ts';
+import { csvRecords } from './csv-cells.ts';
 import { type Body, type Harness, openHarness } from './harness.ts';
 import { smallCampaign, TRUE_ENERGY_KJ_PER_MOL } from './small-campaign.ts';
 
@@ -180,6 +181,40 @@ describe('a campaign with curves', () => {
     const onePercent = body.series.find((s: Body) => s.name === 'event 1, shared_law, conversion 0.01');
     expect(Math.abs(onePercent.x.at(-1) / row.value - 1)).toBeLessThan(1e-3);
     expect(onePercent.y.at(-1)).toBeGreaterThan(720);
+  });
+});
+
+describe('curves and answers as CSV', () => {
+  const csv = async (method: string, path: string, body?: unknown) => {
+    const headers: Record<string, string> = body ? { 'content-type': 'application/json' } : {};
+    const response = await api.send(method, path, {
+      headers,
+      ...(body !== undefined && { body: JSON.stringify(body) }),
+    });
+    const [columns, ...records] = csvRecords(await response.text());
+    return records.map((record) => Object.fromEntries(columns.map((column, i) => [column, record[i]])));
+  };
+  it.each(['ttt', 'thermogram', 'kissinger'])('one row a point of %s', async (kind) => {
+    const path = `/v1/samples/${sample}/curves?kind=${kind}`;
+    const { x, y, series } = (await api.get(path)).body;
+    const expected = series.flatMap((s: Body) =>
+      s.x.map((_: number, i: number) => {
+        const point = Object.entries<Body>(s).map(([key, v]) => [key, String(Array.isArray(v) ? v[i] : v)]);
+        const axes = { x_quantity: x.quantity, x_unit: x.unit, y_quantity: y.quantity, y_unit: y.unit };
+        return { ...axes, ...Object.fromEntries(point) };
+      }),
+    );
+    const points = await csv('GET', `${path}&format=csv`);
+    expect(points.length).toBeGreaterThan(10);
+    expect(points.map((p) => Object.fromEntries(Object.entries(p).filter(([, v]) => v !== '')))).toEqual(expected);
+  });
+  it('one row an answer, with the caution', async () => {
+    const rows = await csv('POST', `/v1/samples/${sample}/forecasts?format=csv`, {
+      temperature_C: 260,
+      conversion: 0.5,
+    });
+    expect(rows.map((row) => row.method)).toEqual(['shared_law', 'model_free']);
+    for (const row of rows) expect(row.caution).toBe(FORECAST_CAUTION);
   });
 });
 

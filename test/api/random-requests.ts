@@ -3,6 +3,7 @@ import { createRandom, type Random } from '../../jobs/numeric/random.ts';
 import { createCampaign, createToken, findCampaign, LOCAL_LAB } from '../../jobs/store/index.ts';
 import { TOKEN_ROLES } from '../../schema/wire/states.ts';
 import { drain, openTestPorts, send, type TestPorts } from '../runner/test-ports.ts';
+import { csvRecords } from './csv-cells.ts';
 import { createShapeCheck } from './document-shapes.ts';
 import { type DocumentedOperation, drawValue, operationsOf } from './draw-request.ts';
 import { type Body, HOST } from './harness.ts';
@@ -217,6 +218,7 @@ async function breachOf(
   if (!documented.content) return text === '' ? undefined : `a body where none is documented: ${text.slice(0, 200)}`;
   const media = documented.content[type];
   if (!media) return `media type ${type} is not documented for ${response.status}`;
+  if (type === 'text/csv') return unevenRecord(text);
   if (!/json/.test(type)) return typeof text === 'string' ? undefined : 'no body';
   const value = JSON.parse(text);
   const wrong = breach(media.schema, value);
@@ -224,6 +226,14 @@ async function breachOf(
   if (response.status >= 400 && !(value.type.split('#')[1] in media.examples))
     return `${value.type} is not listed under ${response.status}`;
   return undefined;
+}
+
+/** What a CSV has that is no table: another count of cells than its head. */
+function unevenRecord(text: string): string | undefined {
+  const [head, ...records] = csvRecords(text);
+  if (!head || head.includes('')) return `no columns: ${text.slice(0, 200)}`;
+  const odd = records.find((record) => record.length !== head.length);
+  return odd && `${odd.length} cells under ${head.length} columns: ${odd.join(' | ').slice(0, 200)}`;
 }
 
 /** A stream goes on; what came first is enough. */
