@@ -60,6 +60,156 @@ export interface CampaignStatus {
   eta_s: number | null;
 }
 
+export interface Overview {
+  campaign: Campaign;
+  status: CampaignStatus;
+  /** Names this state to `…/stream` as its Last-Event-ID. */
+  state: string;
+  tables: {
+    parameters?: {
+      sample: string;
+      event: number;
+      quantity: string;
+      method: string;
+      conversion: number | null;
+      temperature_K: number | null;
+      value: number;
+      unit: string;
+      lower95: number | null;
+      upper95: number | null;
+      scan_count: number;
+      rate_min_K_per_s: number;
+      rate_max_K_per_s: number;
+      flags: string[];
+      interval: 'monte_carlo' | 'student_t' | 'f_ratio';
+      variant: '' | 'peak' | 'without_outliers' | 'full_response';
+    }[];
+    scans?: {
+      file: string;
+      sha256: string;
+      sample: string | null;
+      instrument: string | null;
+      role: 'sample' | 'standard' | 'blank' | null;
+      event: number | null;
+      status: 'received' | 'read' | 'reduced' | 'set_aside' | 'failed' | 'unassigned' | 'excluded' | 'superseded';
+      reason: string | null;
+      rate_nominal_K_per_s: number | null;
+      rate_K_per_s: number | null;
+      mass_mg: number | null;
+      glass_transition_K: number | null;
+      onset_K: number | null;
+      peak_K: number | null;
+      end_K: number | null;
+      width_K: number | null;
+      enthalpy_J_per_g: number | null;
+      flags: string[];
+      segment: number | null;
+      replicate: string | null;
+      centroid_K: number | null;
+    }[];
+    instruments?: {
+      instrument: string;
+      kind: 'furnace' | 'chip';
+      offset_K: number;
+      offset_se_K: number;
+      lag_s: number;
+      lag_se_s: number;
+      heat_factor: number | null;
+      heat_factor_se: number | null;
+      standards: number;
+      source: 'standards' | 'sheet' | 'prior';
+      offset_slope: number | null;
+      response_time_s: number | null;
+    }[];
+    verdicts?: {
+      sample: string;
+      event: number;
+      verdict: 'straight' | 'instrument' | 'material' | 'undecided';
+      bend: number | null;
+      bend_lower99: number | null;
+      bend_upper99: number | null;
+      p_value: number | null;
+      delta_aicc: number | null;
+      energy_low_rate_kJ_per_mol: number | null;
+      energy_high_rate_kJ_per_mol: number | null;
+      instruments: string[];
+      rate_min_K_per_s: number;
+      rate_max_K_per_s: number;
+      decides_next: string;
+    }[];
+    advice?: {
+      sample: string;
+      rank: number;
+      instrument: string;
+      rate_K_per_s: number;
+      goal: 'energy' | 'bend' | 'forecast';
+      interval_now: number;
+      interval_expected: number;
+      event: number;
+      unit: '1' | 'kJ/mol' | 'decades';
+      scans_to_half: number | null;
+      sentence: string;
+      caution: string;
+    }[];
+    coverage?: {
+      sample: string;
+      decade_low_K_per_s: number;
+      decade_high_K_per_s: number;
+      instrument: string;
+      scan_count: number;
+      rates: number[];
+    }[];
+    gaps?: { sample: string; code: string; detail: string; action: string }[];
+    flags?: {
+      severity: 'note' | 'warn' | 'stop';
+      code: string;
+      sample: string | null;
+      instrument: string | null;
+      file: string | null;
+      event: number | null;
+      detail: string;
+      action: string;
+    }[];
+  };
+  is_whole: boolean;
+  scans?: {
+    id: string;
+    file: string;
+    instrument: string;
+    status: 'received' | 'read' | 'reduced' | 'set_aside' | 'failed' | 'unassigned' | 'excluded' | 'superseded';
+  }[];
+  outlines?: Curves[];
+}
+
+export interface Curves {
+  kind:
+    | 'thermogram'
+    | 'baseline'
+    | 'conversion'
+    | 'kissinger'
+    | 'energy'
+    | 'local_energy'
+    | 'growth'
+    | 'viscosity'
+    | 'ttt'
+    | 'constant_heating';
+  x: { quantity: string; unit: string };
+  y: { quantity: string; unit: string };
+  series: {
+    name: string;
+    instrument?: string;
+    scan_id?: string;
+    x: number[];
+    y: number[];
+    lower?: number[];
+    upper?: number[];
+    unit?: string;
+    time_s?: number[];
+    beyond_measured_K?: number[];
+  }[];
+  caution?: string;
+}
+
 export interface ParametersRow {
   sample: string;
   event: number;
@@ -258,35 +408,6 @@ export interface Sample {
   }[];
 }
 
-export interface Curves {
-  kind:
-    | 'thermogram'
-    | 'baseline'
-    | 'conversion'
-    | 'kissinger'
-    | 'energy'
-    | 'local_energy'
-    | 'growth'
-    | 'viscosity'
-    | 'ttt'
-    | 'constant_heating';
-  x: { quantity: string; unit: string };
-  y: { quantity: string; unit: string };
-  series: {
-    name: string;
-    instrument?: string;
-    scan_id?: string;
-    x: number[];
-    y: number[];
-    lower?: number[];
-    upper?: number[];
-    unit?: string;
-    time_s?: number[];
-    beyond_measured_K?: number[];
-  }[];
-  caution?: string;
-}
-
 export interface Scan {
   id: string;
   campaign_id: string;
@@ -456,6 +577,8 @@ export interface Operations {
   getStatus: { id: string; query: { format?: 'json' | 'csv' }; body: undefined; answer: CampaignStatus };
   /** The same as server-sent events `status`, one at every change. */
   streamStatus: { id: string; query: undefined; body: undefined; answer: Response };
+  /** What a page about a campaign, or about one sample of it, shows first: everything in one answer. */
+  getOverview: { id: string; query: { sample?: string }; body: undefined; answer: Overview };
   /** The consolidated kinetic parameters. */
   listParameters: {
     id: string;
@@ -618,6 +741,7 @@ export const OPERATIONS = {
   listScans: ['GET', '/v1/campaigns/{id}/scans'],
   getStatus: ['GET', '/v1/campaigns/{id}/status'],
   streamStatus: ['GET', '/v1/campaigns/{id}/stream'],
+  getOverview: ['GET', '/v1/campaigns/{id}/overview'],
   listParameters: ['GET', '/v1/campaigns/{id}/parameters'],
   listConversion: ['GET', '/v1/campaigns/{id}/conversion'],
   listVerdicts: ['GET', '/v1/campaigns/{id}/verdicts'],
