@@ -18,11 +18,13 @@ const readme = read('README.md');
 const developers = read('DEVELOPERS.md');
 const sorted = (values: Iterable<string>): string[] => [...new Set(values)].sort();
 
-const sources = ['api', 'jobs', 'schema', 'web'].flatMap((room) =>
-  readdirSync(join(root, room), { recursive: true, encoding: 'utf8' })
-    .filter((file) => /\.tsx?$/.test(file))
-    .map((file) => join(room, file)),
-);
+const filesOf = (rooms: readonly string[]) =>
+  rooms.flatMap((room) =>
+    readdirSync(join(root, room), { recursive: true, encoding: 'utf8' })
+      .filter((file) => /\.tsx?$/.test(file))
+      .map((file) => join(room, file)),
+  );
+const sources = filesOf(['api', 'jobs', 'schema', 'web']);
 
 /** Rows of the table under a header that starts with these cells: first cells only. */
 function firstCells(text: string, header: string): string[] {
@@ -67,6 +69,14 @@ describe('command line', () => {
     expect(inCode.filter((name) => !ours.includes(name))).toEqual(inCode.includes('NO_COLOR') ? ['NO_COLOR'] : []);
     for (const text of [readme, generalHelp()])
       expect(sorted([...text.matchAll(/\bRATESPAN_[A-Z_]+/g)].map(([name]) => name))).toEqual(ours);
+  });
+  test('DEVELOPERS and the tests know the same environment variables', () => {
+    const inTests = filesOf(['test']).flatMap((file) =>
+      [...read(file).matchAll(/process\.env\.([A-Z_]+)/g)].map(([, name]) => name),
+    );
+    const named = [...developers.matchAll(/`([A-Z_]+)=/g)].map(([, name]) => name);
+    // The search path is the system's.
+    expect(sorted(named)).toEqual(sorted(inTests.filter((name) => name !== 'PATH')));
   });
 });
 
