@@ -110,7 +110,7 @@ function completeEvent(
   };
   const baseline = baselineError(w, x, shape, times, refit);
   const tail = isolated.meltingOverlap && room.knownArea === undefined ? HIDDEN_TAIL_PART * x.area : 0;
-  const open = Math.hypot(tail, MOVED_AREAS * (x.openPart ?? 0) * x.area);
+  const open = Math.hypot(tail, (x.openPart ?? 0) * x.area);
   const flickerWs = FLICKER.conversion * w.flicker * shape.widthS;
   const error = baseline.error.map((s, k) => {
     const signal = trueSignal(w, shape, times[k], binAt(w, x, times[k])).value;
@@ -132,6 +132,7 @@ function completeEvent(
     peakErrorK: Math.hypot(
       Math.max(Math.abs(rate) * marks.peakErrorS, points < TOO_FEW_POINTS ? stepK / Math.sqrt(12) : 0),
       warming.part * warming.at(marks.peakS),
+      MOVED_PEAK * (x.openPart ?? 0) * marks.widthS * Math.abs(rate),
     ),
     area: x.area,
     areaError: Math.hypot(
@@ -181,10 +182,10 @@ function completeEvent(
 
 /** Share of an area that the separation of overlapping events leaves open at least, from trials at one width apart (study `reduction`). */
 const SEPARATION_PART = 0.02;
-/** … and this part of what letting the shapes free moves it by, from trials with two events of another law than JMAK. */
-const MOVED_AREAS = 0.4;
+/** What an area that is open by its whole leaves open of the peak's place, widths. */
+const MOVED_PEAK = 0.25;
 const separationError = (x: Excess): number =>
-  x.openPart === undefined ? 0 : Math.hypot(SEPARATION_PART, MOVED_AREAS * x.openPart) * x.area;
+  x.openPart === undefined ? 0 : Math.hypot(SEPARATION_PART, x.openPart) * x.area;
 
 /** What a JMAK-shaped tail behind the melting leaves open of the area (study `reduction`, melting one width above). */
 const HIDDEN_TAIL_PART = 0.01;

@@ -21,6 +21,10 @@ const TAIL_SPREAD = 0.3;
 const HELD = 1;
 /** A fitted shape is not trusted below this part of the height, however quiet the signal. */
 const SHAPE_ERROR = 0.003;
+/** … nor below this one when shapes are compared. */
+const LEAST_SHAPE_ERROR = 0.001;
+/** What a shape misses is alike in so many neighbouring rows: they count as one. */
+const SAME = 10;
 const PER_PEAK = 4;
 /** Bins used in the fit: more only costs time. */
 const MOST_ROWS = { one: 120, several: 400 };
@@ -29,7 +33,7 @@ export interface Separation {
   /** fitted heat flow of each peak on the bins of the window, signal units, in order of time */
   values: Float64Array[];
   bells: Bell[];
-  /** How far each area moves, as a part of it, from the JMAK shape to the free one */
+  /** By how much other shapes that the data bear move each area, parts of it */
   open: number[];
   /** root mean square residual, signal units */
   residual: number;
@@ -48,10 +52,9 @@ export function separatePeaks(
 ): Separation | undefined {
   const fit = fitPeaks(w, x, start, startS);
   if (!fit) return undefined;
-  const { q, held, clock, scaleY, residual } = fit;
+  const { q, open, clock, scaleY, residual } = fit;
   const values: Float64Array[] = [];
   const bells: Bell[] = [];
-  const open: number[] = [];
   for (const [k, b] of start.entries()) {
     const at = k * PER_PEAK;
     const own = eventValues(clock, {
@@ -64,7 +67,6 @@ export function separatePeaks(
     if (!bell) return undefined;
     values.push(own);
     bells.push(bell);
-    open.push(Math.abs(Math.expm1(held[at] - q[at])));
   }
   return { values, bells, open, residual };
 }
@@ -74,13 +76,31 @@ export const misfitOfOne = (w: EventWindow, x: Excess, bell: Bell, startS: numbe
   fitPeaks(w, x, [bell], startS)?.residual;
 
 interface PeakFit {
-  /** ln area, peak, ln steepness and turn of each peak; `held` before the tails were let free */
+  /** ln area, peak, ln steepness and turn of each peak */
   q: Float64Array;
-  held: Float64Array;
+  /** By how much other shapes that the data bear move each area, parts of it */
+  open: number[];
   clock: EventClock;
   scaleY: number;
   residual: number;
 }
+
+/**
+ * Shapes of several overlapping peaks, fewest parameters first. Areas and free shapes of peaks one width apart exchange: two shapes of their own
+ * are 30 % off in the areas where they miss the curve by 3e-4 of its height. So the peaks share what the data do not ask them to differ in.
+ * `tail` and `steepness`: 1 held (tails at JMAK, or both alike), 0 free.
+ */
+const SHAPES = [
+  { held: 0, tails: 1, steepnesses: 1, parameters: (k: number) => 2 * k + 2 },
+  { held: 1, tails: 0, steepnesses: 0, parameters: (k: number) => 3 * k },
+  { held: 0, tails: 1, steepnesses: 0, parameters: (k: number) => 3 * k + 1 },
+  { held: 0, tails: 0, steepnesses: 0, parameters: (k: number) => 4 * k },
+];
+const JMAK = 1;
+/** Where events are not JMAK, the family is near their shapes at best: this part of what leaving JMAK moves an area by stays open. */
+const MOVED_AREAS = 0.3;
+/** Weight by which what is held or shared is. */
+const TIED = 3;
 
 function fitPeaks(w: EventWindow, x: Excess, start: Bell[], startS: number | undefined): PeakFit | undefined {
   const count = start.length;
@@ -93,8 +113,10 @@ function fitPeaks(w: EventWindow, x: Excess, start: Bell[], startS: number | und
   const clock = eventClock(w, highest.peakS, startS);
   const parameters = startOf(w, clock, start, scaleY);
   const error = Math.max(SHAPE_ERROR, w.noise / scaleY);
-  let pull = 0;
-  const fit = new LeastSquares(rows + count, p, (q, residuals, jacobian) => {
+  let pull = error / TAIL_SPREAD;
+  let tie = { tails: 0, steepnesses: 0 };
+  const ties = rows + count;
+  const fit = new LeastSquares(rows + 3 * count, p, (q, residuals, jacobian) => {
     for (let r = 0; r < rows; r++) residuals[r] = -x.e[x.from + r * stride] / scaleY;
     jacobian.fill(0, rows * p);
     for (let k = 0; k < count; k++) {
@@ -115,19 +137,46 @@ function fitPeaks(w: EventWindow, x: Excess, start: Bell[], startS: number | und
       }
       residuals[rows + k] = pull * m;
       jacobian[(rows + k) * p + at + 3] = pull * turned;
+      // Each peak's steepness and tail beside those of the first.
+      residuals[ties + 2 * k] = tie.steepnesses * (q[at + 2] - q[2]);
+      residuals[ties + 2 * k + 1] = tie.tails * (m - tailOfTurn(q[3]));
+      if (k === 0) continue;
+      jacobian[(ties + 2 * k) * p + at + 2] = tie.steepnesses;
+      jacobian[(ties + 2 * k) * p + 2] = -tie.steepnesses;
+      jacobian[(ties + 2 * k + 1) * p + at + 3] = tie.tails * turned;
+      jacobian[(ties + 2 * k + 1) * p + 3] = -tie.tails * tailByTurn(q[3]);
     }
   });
   const scale = scaleOf(parameters, count);
-  let held = parameters;
-  if (count > 1) {
-    pull = HELD;
-    held = fit.minimise(parameters, scale, 60, 1e-3).parameters;
+  if (count === 1) {
+    const { parameters: q, sumOfSquares } = fit.minimise(parameters, scale, 60, 1e-3);
+    if (!q.every(Number.isFinite)) return undefined;
+    return { q, open: [0], clock, scaleY, residual: scaleY * Math.sqrt(sumOfSquares / rows) };
   }
-  pull = error / TAIL_SPREAD;
-  const found = fit.minimise(held, scale, 60, count > 1 ? 1e-5 : 1e-3);
-  const q = found.parameters;
-  if (!q.every(Number.isFinite)) return undefined;
-  return { q, held, clock, scaleY, residual: scaleY * Math.sqrt(found.sumOfSquares / rows) };
+  const variance = (w.noise / scaleY) ** 2 + LEAST_SHAPE_ERROR ** 2;
+  let near = parameters;
+  const fits = SHAPES.map(({ held, tails, steepnesses, parameters: used }, i) => {
+    pull = held ? HELD : error / TAIL_SPREAD;
+    tie = { tails: TIED * tails, steepnesses: TIED * steepnesses };
+    const { parameters: q, sumOfSquares } = fit.minimise(near, scale, 60, 1e-5);
+    // The free shapes begin where the shared tail ended; the others at the rough bells.
+    near = i === 0 ? parameters : q;
+    return { q, sumOfSquares, score: sumOfSquares / variance / SAME + used(count) * Math.log(rows / SAME) };
+  });
+  if (!fits.every(({ q, score }) => q.every(Number.isFinite) && Number.isFinite(score))) return undefined;
+  const best = fits.reduce((a, b) => (b.score < a.score ? b : a));
+  const open = start.map((_, k) => {
+    let total = 0;
+    let squares = 0;
+    for (const { q, score } of fits) {
+      const weight = Math.exp(-(score - best.score) / 2);
+      total += weight;
+      squares += weight * Math.expm1(q[k * PER_PEAK] - best.q[k * PER_PEAK]) ** 2;
+    }
+    const moved = Math.min(1, Math.abs(Math.expm1(fits[JMAK].q[k * PER_PEAK] - best.q[k * PER_PEAK])));
+    return Math.hypot(Math.sqrt(squares / total), MOVED_AREAS * moved);
+  });
+  return { q: best.q, open, clock, scaleY, residual: scaleY * Math.sqrt(best.sumOfSquares / rows) };
 }
 
 /** ln(area/height), peak and ln steepness in X, tail of each rough bell. */

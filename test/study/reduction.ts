@@ -35,7 +35,14 @@ export interface Difficulty {
   /** Self-heating number */
   selfHeating?: number;
   /** A second event of the same law this many widths above, with this part of the first one's heat */
-  overlap?: { widthsAbove: number; part: number; law?: readonly [number, number] };
+  overlap?: {
+    widthsAbove: number;
+    part: number;
+    law?: readonly [number, number];
+    /** Exponent of its JMAK law and its energy ÷ the first one's */
+    exponent?: number;
+    energy?: number;
+  };
   /** Exponents M and N of a Šesták–Berggren law in the place of JMAK's */
   law?: readonly [number, number];
 }
@@ -109,6 +116,25 @@ export const DIFFICULTIES: Difficulty[] = [
     overlap: { widthsAbove: 1, part: 0.7, law: [0.6, 1.2] },
     law: [0.6, 1.2],
   },
+  {
+    name: 'second event 1 width above, both of another law, energies apart by 20 %',
+    overlap: { widthsAbove: 1, part: 0.7, law: [0.6, 1.2], energy: 1.2 },
+    law: [0.6, 1.2],
+  },
+  {
+    name: 'second event 1 width above, both of another law with a long tail',
+    overlap: { widthsAbove: 1, part: 0.7, law: [0.5, 1.5] },
+    law: [0.5, 1.5],
+  },
+  {
+    name: 'second event 1 width above, the first of another law, the second JMAK',
+    overlap: { widthsAbove: 1, part: 0.7, exponent: 3 },
+    law: [0.6, 1.2],
+  },
+  {
+    name: 'second event 1 width above, both JMAK, energies apart by 20 %',
+    overlap: { widthsAbove: 1, part: 0.7, energy: 1.2 },
+  },
   { name: 'self-heating S = 0.1', selfHeating: 0.1 },
   { name: 'self-heating S = 0.5', selfHeating: 0.5 },
 ];
@@ -158,8 +184,12 @@ function drawScan(difficulty: Difficulty, random: Random): Drawn {
       ...(overlap
         ? [
             {
-              temperature: arrheniusLawWithPeak(energy, peakK + overlap.widthsAbove * widthK, rateKPerS),
-              rate: overlap.law ? sestakBerggrenLaw(...overlap.law) : jmakLaw(exponent),
+              temperature: arrheniusLawWithPeak(
+                energy * (overlap.energy ?? 1),
+                peakK + overlap.widthsAbove * widthK,
+                rateKPerS,
+              ),
+              rate: overlap.law ? sestakBerggrenLaw(...overlap.law) : jmakLaw(overlap.exponent ?? exponent),
               enthalpyJPerKg: overlap.part * enthalpyJPerKg,
             },
           ]
