@@ -92,10 +92,10 @@ export function outlineOf(series: CurveSeries): CurveSeries {
   return { ...series, x: of(series.x), y: of(series.y), ...(series.time_s && { time_s: of(series.time_s) }) };
 }
 
-/** α(T) of every event that has a curve. */
+/** α(T) of every event that has a curve; of a hold also its times from the start of the hold. */
 export function conversionSeries(scans: ReducedSampleScan[]): CurveSeries[] {
   return scans.flatMap(({ id, file, instrument, reduced }) =>
-    reduced.events.flatMap(({ event, curve }) =>
+    reduced.events.flatMap(({ event, curve, holdReachedS }) =>
       curve
         ? [
             {
@@ -104,6 +104,7 @@ export function conversionSeries(scans: ReducedSampleScan[]): CurveSeries[] {
               scan_id: id,
               x: [...curve.temperatureK],
               y: [...CONVERSION_GRID],
+              ...(holdReachedS !== undefined && { time_s: [...curve.timeS].map((timeS) => timeS - holdReachedS) }),
             },
           ]
         : [],

@@ -6,7 +6,15 @@ import { CurvePlot, layoutCurvePlot } from '../../web/charts/curve-plot.tsx';
 import { createPlotScale, createTemperatureScale } from '../../web/charts/plot-scale.ts';
 import { layoutLanes } from '../../web/charts/thermogram-lanes.tsx';
 import { tabsFromCsv } from '../../web/client/tabs.ts';
-import { buildLanes, type Curves, curveRows, curvesByEvent, partLanes, splitCurves } from '../../web/model/curves.ts';
+import {
+  buildLanes,
+  type Curves,
+  curveRows,
+  curvesByEvent,
+  partConversion,
+  partLanes,
+  splitCurves,
+} from '../../web/model/curves.ts';
 import { formatTime } from '../../web/model/forecast-words.ts';
 import { parseRoute, samplePath } from '../../web/routes.ts';
 
@@ -173,6 +181,34 @@ test('a hold is drawn over time, apart from the scans, and its file keeps both',
   const { columns, rows } = curveRows(thermogram);
   expect(columns.slice(-2)).toEqual(['unit', 'time [s]']);
   expect(rows[4]).toMatchObject({ series: 'hold', unit: 'W/kg', 'time [s]': 900, 'temperature [K]': 420 });
+});
+
+test('holds of different lengths share a logarithmic axis, each with the same share of it in front of its end', () => {
+  const times = (endS: number): number[] => Array.from({ length: 200 }, (_, i) => (endS * (i + 1)) / 200);
+  const trace = (name: string, endS: number) => ({
+    name,
+    instrument: 'furnace',
+    scan_id: name,
+    x: times(endS).map(() => 400),
+    y: times(endS).map((t) => t / endS),
+    time_s: times(endS),
+  });
+  const axes = { x: { quantity: 'temperature', unit: 'K' }, y: { quantity: 'heat flow', unit: 'W' } };
+  const thermogram: Curves = { kind: 'thermogram', ...axes, series: [trace('short', 100), trace('long', 10_000)] };
+  const { holds } = partLanes(buildLanes(thermogram, { ...thermogram, kind: 'baseline', series: [] }, []));
+  const { x, xLabel, placed } = layoutLanes(holds, 600, { temperature: '°C', rate: 'K/min' });
+  expect(xLabel).toBe('Time from the start of the hold, min, logarithmic');
+  expect(x.at(100) - x.at(10)).toBeCloseTo(x.at(10_000) - x.at(1000), 9);
+  // What is left of the axis is left out of the curves too.
+  for (const { path } of placed) expect(Number(/^M([\d.]+)/.exec(path)?.[1])).toBeGreaterThanOrEqual(x.range[0]);
+  const { conversion, holdConversion } = partConversion({
+    ...thermogram,
+    kind: 'conversion',
+    series: [trace('hold', 100), { name: 'ramp', x: [400, 410], y: [0, 1] }],
+  });
+  expect(conversion.series.map(({ name }) => name)).toEqual(['ramp']);
+  expect(holdConversion.x).toEqual({ quantity: 'time', unit: 's' });
+  expect(holdConversion.series.map(({ name, x: [first] }) => [name, first])).toEqual([['hold', 0.5]]);
 });
 
 // RFC 4180, section 2: quoted fields may hold commas, line breaks and doubled quotes.

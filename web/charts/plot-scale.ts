@@ -1,6 +1,6 @@
 import { celsiusFromKelvin, kelvinFromCelsius } from '../../schema/wire/units.ts';
 import { formatFixed, type Units } from '../format.ts';
-import { linearScale, roundTicks } from './scales.ts';
+import { linearScale, logScale, roundTicks } from './scales.ts';
 
 /** A linear axis of a plot. Pure: the same on the page and on the server. */
 export interface PlotScale {
@@ -60,6 +60,8 @@ export const createTemperatureScale = (
     ...(units.temperature === '°C' && { shown: celsiusFromKelvin, hidden: kelvinFromCelsius }),
   });
 
+const HOLD_TIME = 'Time from the start of the hold';
+
 /** Units of a time axis, from the span in s from which each is chosen. */
 const TIME_UNITS = [
   { unit: 'h', seconds: 3600, from: 6 * 3600 },
@@ -90,7 +92,35 @@ export function createLaneScale(
   if (lane?.holdK === undefined)
     return { scale: createTemperatureScale(values, range, units), label: `Temperature, ${units.temperature}` };
   const scale = createTimeScale(values, range);
-  return { scale, label: `Time from the start of the hold, ${scale.unit}` };
+  return { scale, label: `${HOLD_TIME}, ${scale.unit}` };
+}
+
+/** Times that span less than this ratio stand on a linear axis. */
+const LINEAR_TIMES = 5;
+
+/** Axis of holds side by side, which last from seconds to days: on a logarithmic one each shows its event. */
+export function createHoldsScale(
+  timesS: readonly number[],
+  range: [number, number],
+): { scale: PlotScale; label: string } {
+  const shortestS = Math.min(...timesS);
+  const longestS = Math.max(...timesS);
+  if (!(shortestS > 0 && longestS / shortestS > LINEAR_TIMES)) {
+    const scale = createTimeScale(timesS, range);
+    return { scale, label: `${HOLD_TIME}, ${scale.unit}` };
+  }
+  const { unit, seconds } = TIME_UNITS.find(({ from }) => longestS >= from) ?? TIME_UNITS[2];
+  const { at, valueAt } = logScale([shortestS, longestS], range);
+  const ticks: PlotScale['ticks'] = [];
+  const [first, last] = [Math.log10(shortestS / seconds), Math.log10(longestS / seconds)];
+  for (let exponent = Math.floor(first); exponent <= last; exponent++)
+    for (const factor of last - first > 2.5 ? [1] : [1, 2, 5]) {
+      const shown = factor * 10 ** exponent;
+      if (shown * seconds < shortestS || shown * seconds > longestS) continue;
+      ticks.push({ at: at(shown * seconds), label: formatFixed(shown, Math.max(0, -exponent)) });
+    }
+  const scale: PlotScale = { at, valueAt, range, ticks };
+  return { scale, label: `${HOLD_TIME}, ${unit}, logarithmic` };
 }
 
 /** Equal steps with as many decimals as the step needs. */

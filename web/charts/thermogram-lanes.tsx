@@ -1,9 +1,9 @@
 import { formatRate, formatTemperature, type Units } from '../format.ts';
-import type { ScanLane } from '../model/curves.ts';
+import type { CurveSeries, ScanLane } from '../model/curves.ts';
 import { linePath } from './curve-path.ts';
 import { InstrumentMark } from './instrument-mark.tsx';
 import { createPlotBox, type PlotBox, PlotFrame } from './plot-frame.tsx';
-import { createLaneScale, createPlotScale, extent, type PlotScale } from './plot-scale.ts';
+import { createHoldsScale, createLaneScale, createPlotScale, extent, type PlotScale } from './plot-scale.ts';
 
 export interface PlacedLane {
   lane: ScanLane;
@@ -42,13 +42,14 @@ export function layoutLanes(lanes: readonly ScanLane[], width: number, units: Un
   const top = 26 + laneHeight * OVERLAP;
   const left = width < 480 ? NARROW_LABEL_WIDTH : LABEL_WIDTH;
   const box = { ...createPlotBox(width, top + lanes.length * laneHeight + 44, left, 26) };
-  const { scale: x, label: xLabel } = createLaneScale(
-    lanes[0],
-    extent(...lanes.map((lane) => lane.trace.x)),
-    [box.left, box.right],
-    units,
-  );
-  const placed = lanes.map((lane, i): PlacedLane => {
+  const areHolds = lanes.length > 0 && lanes.every((lane) => lane.holdK !== undefined);
+  const shown = areHolds ? trimHolds(lanes) : lanes;
+  const range: [number, number] = [box.left, box.right];
+  const values = extent(...shown.map((lane) => lane.trace.x));
+  const { scale: x, label: xLabel } = areHolds
+    ? createHoldsScale(values, range)
+    : createLaneScale(shown[0], values, range, units);
+  const placed = shown.map((lane, i): PlacedLane => {
     const foot = box.bottom - 4 - i * laneHeight;
     const y = createPlotScale(extent(lane.trace.y), [foot, foot - laneHeight * (1 + OVERLAP)]);
     return {
@@ -63,6 +64,20 @@ export function layoutLanes(lanes: readonly ScanLane[], width: number, units: Un
     };
   });
   return { box, x, xLabel, laneHeight, placed };
+}
+
+/** First moments of a hold, left out of the logarithmic axis: this share of the shortest. */
+const FIRST_MOMENTS = 1 / 60;
+
+/** Holds from the first time that all of them show. */
+function trimHolds(lanes: readonly ScanLane[]): ScanLane[] {
+  const startS = FIRST_MOMENTS * Math.min(...lanes.map((lane) => lane.trace.x.at(-1) ?? 1));
+  const trim = (series: CurveSeries): CurveSeries => ({
+    ...series,
+    x: series.x.filter((timeS) => timeS >= startS),
+    y: series.y.filter((_, i) => series.x[i] >= startS),
+  });
+  return lanes.map((lane) => ({ ...lane, trace: trim(lane.trace), baseline: lane.baseline && trim(lane.baseline) }));
 }
 
 /** The point of the trace nearest to a peak's temperature: the trace itself may be a hair off by smoothing. */

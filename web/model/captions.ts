@@ -2,7 +2,10 @@ import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import type { CurveKind } from './curves.ts';
 
 /** Title and words of each figure, on the page and in the report. */
-export const FIGURES: Record<Exclude<CurveKind, 'baseline'> | 'hold', { title: string; caption: string }> = {
+export const FIGURES: Record<
+  Exclude<CurveKind, 'baseline'> | 'hold' | 'holdConversion',
+  { title: string; caption: string }
+> = {
   thermogram: {
     title: 'Thermograms',
     caption:
@@ -11,7 +14,12 @@ export const FIGURES: Record<Exclude<CurveKind, 'baseline'> | 'hold', { title: s
   hold: {
     title: 'Holds',
     caption:
-      'Every hold over time from its start, the coolest at the foot, each drawn to its own height. Dashed: the baseline under the event.',
+      'Every hold over time from its start, on a logarithmic axis, the coolest at the foot, each drawn to its own height. Dashed: the baseline under the event.',
+  },
+  holdConversion: {
+    title: 'Conversion of holds',
+    caption:
+      'Conversion of each event of a hold over time from its start, from the area above its baseline. Equal shapes side by side: one exponent at every temperature.',
   },
   conversion: {
     title: 'Conversion',

@@ -98,6 +98,15 @@ export const partLanes = (lanes: readonly ScanLane[]): { scans: ScanLane[]; hold
   holds: lanes.filter((lane) => lane.holdK !== undefined),
 });
 
+/** Conversion on ramps and on holds apart, those of holds over time. */
+export function partConversion(curves: Curves): { conversion: Curves; holdConversion: Curves } {
+  const holds = curves.series.filter((s) => s.time_s);
+  return {
+    conversion: { ...curves, series: curves.series.filter((s) => !s.time_s) },
+    holdConversion: { ...curves, x: { quantity: 'time', unit: 's' }, series: holds.map(overTime) },
+  };
+}
+
 const FORECAST_METHOD = /^(model_free|shared_law)(?:, |$)/;
 
 /** Event and the rest of a name of the form `event 2, rest`. */

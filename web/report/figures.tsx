@@ -18,6 +18,7 @@ import {
   type CurveKind,
   type CurveSeries,
   curvesByEvent,
+  partConversion,
   partLanes,
   splitCurves,
 } from '../model/curves.ts';
@@ -170,7 +171,7 @@ export function SampleFigures(props: {
   const { thermogram, baseline, conversion, kissinger, energy } = all;
   const lanes = thermogram && baseline ? buildLanes(thermogram, baseline, scans) : [];
   const parted = partLanes(lanes);
-  const conversionLayout = layoutConversion(conversion?.series ?? [], WIDTH, units);
+  const conversions = conversion && partConversion(conversion);
   const eventTitle = (title: string, event: number, of: number): string =>
     of > 1 ? `${title}, event ${event}` : title;
   return (
@@ -194,15 +195,21 @@ export function SampleFigures(props: {
           </ReportFigure>
         );
       })}
-      {conversion && conversionLayout.series.length > 0 && (
-        <ReportFigure
-          {...FIGURES.conversion}
-          height={conversionLayout.box.height}
-          legend={<InstrumentLegend names={instrumentsOf(conversion.series, instruments)} instruments={instruments} />}
-        >
-          <ConversionPlot layout={conversionLayout} instruments={instruments} units={units} />
-        </ReportFigure>
-      )}
+      {(['conversion', 'holdConversion'] as const).map((kind) => {
+        const series = conversions?.[kind].series ?? [];
+        if (series.length === 0) return null;
+        const layout = layoutConversion(series, WIDTH, units);
+        return (
+          <ReportFigure
+            key={kind}
+            {...FIGURES[kind]}
+            height={layout.box.height}
+            legend={<InstrumentLegend names={instrumentsOf(series, instruments)} instruments={instruments} />}
+          >
+            <ConversionPlot layout={layout} instruments={instruments} />
+          </ReportFigure>
+        );
+      })}
       {kissinger &&
         kissinger.series.length > 0 &&
         curvesByEvent(kissinger).map(({ event, series }, _, events) => {

@@ -43,7 +43,8 @@ th[scope="rowgroup"] { font-weight: 600; padding-top: 0.6rem; }
 .interval-mark { display: block; max-width: none; }
 tbody th { white-space: nowrap; }
 tbody th:has(.file), .with-words tbody th { white-space: normal; }
-.with-words td:last-child { min-width: 14rem; }
+.with-words tbody th { min-width: 6.5rem; }
+.with-words td:last-child { min-width: 14rem; width: 50%; }
 .with-words td, .with-words th { padding-right: 0.5rem; }
 .hash { font-size: 0.78em; }
 .event-numbers tr:last-child td { border: 0; }
@@ -52,7 +53,9 @@ tbody th:has(.file), .with-words tbody th { white-space: normal; }
 }
 @media print {
   body { max-width: none; margin: 0; padding: 0; font-size: 9.5pt; }
-  h2, h3, caption { break-after: avoid; }
+  h2, h3, caption, tr:has(th[scope="rowgroup"]) { break-after: avoid; }
+  .sample { break-before: page; }
+  .hash { font-size: 6pt; white-space: nowrap; }
   figure, tr, .legend { break-inside: avoid; }
   thead { display: table-header-group; }
   .table-box { overflow: visible; }

@@ -90,7 +90,7 @@ export function ScanReport({ rows, units }: { rows: readonly ScanRow[]; units: U
       caption="Scans, slowest first: one row a scan and event."
       heads={['Rate', 'Instrument', 'Mass', 'Glass transition', 'Onset', 'Peak', 'Enthalpy', 'File, state and flags']}
       rows={sorted.map((row) => [
-        rate(row) === 0 ? 'not known' : formatRate(rate(row), units),
+        row.rate_K_per_s === 0 ? 'hold' : rate(row) === 0 ? 'not known' : formatRate(rate(row), units),
         row.instrument,
         row.mass_mg === null ? '' : `${formatSignificant(row.mass_mg)}\u00a0mg`,
         temperature(row.glass_transition_K),

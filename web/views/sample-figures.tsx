@@ -8,7 +8,14 @@ import { InstrumentKey } from '../charts/instrument-mark.tsx';
 import { KissingerPlot, layoutKissinger } from '../charts/kissinger-plot.tsx';
 import { eventLimits, layoutScanPlot, ScanPlot } from '../charts/scan-plot.tsx';
 import { FIGURES } from '../model/captions.ts';
-import { type CurveSeries, type Curves, curvesByEvent, type ScanLane, splitCurves } from '../model/curves.ts';
+import {
+  type CurveSeries,
+  type Curves,
+  curvesByEvent,
+  partConversion,
+  type ScanLane,
+  splitCurves,
+} from '../model/curves.ts';
 import { units } from '../state/units.ts';
 import { Figure } from './figure.tsx';
 import { describeLane } from './lanes.tsx';
@@ -35,20 +42,33 @@ interface FigureProps {
   instruments: readonly string[];
 }
 
-export function ConversionFigure(props: FigureProps & { pointed: Signal<string | undefined> }) {
+export function ConversionFigures(props: FigureProps & { pointed: Signal<string | undefined> }) {
   const { curves, of, instruments, pointed } = props;
-  const { title, caption } = FIGURES.conversion;
+  const parts = useMemo(() => partConversion(curves), [curves]);
   return (
-    <Figure
-      title={title}
-      of={of}
-      curves={curves}
-      caption={caption}
-      legend={<InstrumentKeys of={curves.series} instruments={instruments} />}
-      draw={(width) => (
-        <ConversionDrawing series={curves.series} width={width} instruments={instruments} pointed={pointed} />
+    <>
+      {(['conversion', 'holdConversion'] as const).map(
+        (kind) =>
+          parts[kind].series.length > 0 && (
+            <Figure
+              key={kind}
+              title={FIGURES[kind].title}
+              of={of}
+              curves={parts[kind]}
+              caption={FIGURES[kind].caption}
+              legend={<InstrumentKeys of={parts[kind].series} instruments={instruments} />}
+              draw={(width) => (
+                <ConversionDrawing
+                  series={parts[kind].series}
+                  width={width}
+                  instruments={instruments}
+                  pointed={pointed}
+                />
+              )}
+            />
+          ),
       )}
-    />
+    </>
   );
 }
 
@@ -63,10 +83,7 @@ function ConversionDrawing(props: {
 }) {
   const { series, width, instruments, pointed } = props;
   const layout = useMemo(() => layoutConversion(series, width, units.value), [series, width, units.value]);
-  const drawing = useMemo(
-    () => <ConversionPlot layout={layout} instruments={instruments} units={units.value} />,
-    [layout, instruments, units.value],
-  );
+  const drawing = useMemo(() => <ConversionPlot layout={layout} instruments={instruments} />, [layout, instruments]);
   const pointAt = (event: PointerEvent): void => {
     const bounds = (event.currentTarget as Element).getBoundingClientRect();
     const px = event.clientX - bounds.left;
@@ -87,7 +104,7 @@ function ConversionDrawing(props: {
       width={layout.box.width}
       height={layout.box.height}
       role="img"
-      aria-label={`Conversion against temperature, ${series.length} curves`}
+      aria-label={`Conversion against ${series[0]?.time_s ? 'time' : 'temperature'}, ${series.length} curves`}
       onPointerMove={pointAt}
     >
       {drawing}

@@ -23,7 +23,7 @@ import { NextSteps } from './next-steps.tsx';
 import { ProblemNotice } from './notice.tsx';
 import { plotWidth } from './numbers.tsx';
 import { NotYet, PageHead } from './page-head.tsx';
-import { ConversionFigure, EnergyFigures, InstrumentKeys, KissingerFigures, OtherFigures } from './sample-figures.tsx';
+import { ConversionFigures, EnergyFigures, InstrumentKeys, KissingerFigures, OtherFigures } from './sample-figures.tsx';
 import { ScanPanel } from './scan-panel.tsx';
 import { ScanTable } from './scan-table.tsx';
 import { useParts } from './use-parts.ts';
@@ -158,7 +158,7 @@ export function SampleView({ id, sample: name }: { id: string; sample: string })
                 </AfterPaint>
               )}
               {curves.conversion && curves.conversion.series.length > 0 && (
-                <ConversionFigure curves={curves.conversion} of={of} instruments={instruments} pointed={pointed} />
+                <ConversionFigures curves={curves.conversion} of={of} instruments={instruments} pointed={pointed} />
               )}
             </div>
           </>

@@ -19,6 +19,10 @@ export function ScanTable(props: {
 }) {
   const { campaign, sample, scans, ids, instruments, pointed, onShow } = props;
   const rate = (row: ScanRow): number => Math.abs(row.rate_K_per_s ?? row.rate_nominal_K_per_s ?? 0);
+  const rateWords = (row: ScanRow): string => {
+    if (row.rate_K_per_s === 0) return 'hold';
+    return rate(row) > 0 ? formatRate(rate(row), units.value) : 'no rate';
+  };
   const sorted = [...scans].sort((a, b) => rate(a) - rate(b) || (a.file < b.file ? -1 : 1));
   const temperature = (value: number | null) => (value === null ? '' : formatTemperature(value, units.value));
   const hasGlass = scans.some((row) => row.glass_transition_K !== null);
@@ -56,13 +60,11 @@ export function ScanTable(props: {
                 <th scope="row" class="number">
                   {id !== undefined ? (
                     <button type="button" class="quiet row-button" onClick={() => onShow(id)}>
-                      {rate(row) > 0 ? formatRate(rate(row), units.value) : 'no rate'}
+                      {rateWords(row)}
                       <span class="unseen">, show this scan</span>
                     </button>
-                  ) : rate(row) > 0 ? (
-                    formatRate(rate(row), units.value)
                   ) : (
-                    'no rate'
+                    rateWords(row)
                   )}
                 </th>
                 <td>
