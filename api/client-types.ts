@@ -35,6 +35,8 @@ export interface ReceivedFile {
   scan_ids?: string[];
   job_id?: string;
   reason?: string;
+  /** The other name of one path (`x.txt` and `x.txt.gz`) under which it came before: unless the bytes are the same, that no longer counts. */
+  replaces?: string;
 }
 
 export interface CampaignStatus {

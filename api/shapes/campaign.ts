@@ -67,5 +67,9 @@ export const ReceivedShape = z
     scan_ids: z.array(z.string()).optional(),
     job_id: z.string().optional(),
     reason: z.string().optional(),
+    replaces: z.string().optional().openapi({
+      description:
+        'The other name of one path (`x.txt` and `x.txt.gz`) under which it came before: unless the bytes are the same, that no longer counts.',
+    }),
   })
   .openapi('ReceivedFile');

@@ -1,4 +1,11 @@
-import { archiveKind, assignmentFromPath, isProgram, pathProblem, sheetKind } from '../instrument/index.ts';
+import {
+  archiveKind,
+  assignmentFromPath,
+  isProgram,
+  pathProblem,
+  sheetKind,
+  unpackedPath,
+} from '../instrument/index.ts';
 import type { PathRules } from '../ports/index.ts';
 
 export const pathRules: PathRules = {
@@ -7,5 +14,6 @@ export const pathRules: PathRules = {
     if (sheetKind(path) !== undefined || isProgram(path)) return 'sheet';
     return archiveKind(path) !== undefined ? 'archive' : 'data';
   },
+  unpacked: unpackedPath,
   assignment: assignmentFromPath,
 };

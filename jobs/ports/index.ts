@@ -55,6 +55,8 @@ export interface PathRules {
   /** Why the path is not allowed, in words that follow it in a sentence, or undefined. */
   problem(path: string): string | undefined;
   kind(path: string): 'data' | 'sheet' | 'archive';
+  /** The path that a file has in its campaign: `x.txt.gz` is `x.txt` there. */
+  unpacked(path: string): string;
   /** The folder layout SAMPLE/INSTRUMENT/file. */
   assignment(path: string): { sample: string; instrument: string } | undefined;
 }

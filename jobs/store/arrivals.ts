@@ -16,6 +16,8 @@ export interface FileReceipt {
   scan_ids?: string[];
   job_id?: string;
   reason?: string;
+  /** The other name of one path (`x.txt` and `x.txt.gz`) under which it came before: unless the bytes are the same, that no longer counts. */
+  replaces?: string;
 }
 
 /** A file whose bytes are in the blob store (or in `bytes`, not stored yet). */
@@ -64,6 +66,7 @@ export async function acceptFile(ports: Ports, campaignId: string, file: Arrived
       outcome: outcomeOf(file.kind, before.live !== undefined, known !== false),
       scan_ids: known === false ? plan.scanIds : known,
       ...(plan.jobIds.length > 0 && { job_id: plan.jobIds[0] }),
+      ...(before.otherName && { replaces: before.otherName.name }),
     };
   }
 }
@@ -90,16 +93,22 @@ export interface Surroundings {
   live?: { id: string; sha256: string; blobKey: string };
   /** An older file of the same path and bytes. */
   former?: { id: string };
+  /** The path came under another name before: as `x.txt.gz`, whose row is `archiveId`, or as `x.txt`. */
+  otherName?: { name: string; archiveId?: string };
   /** Another path with the same bytes. */
   sameBytes?: { id: string; path: string; blobKey: string };
 }
 
 export async function lookAround(ports: Ports, campaignId: string, file: ArrivedFile): Promise<Surroundings> {
-  const rows = await allRows<{ id: string; path: string; sha256: string; blobKey: string; superseded: 0 | 1 }>(
+  const rows = await allRows<NearbyRow>(
     ports.database.read,
     text`
-      select id, path, sha256, blob_key as blobKey, superseded from files
-      where campaign_id = ${campaignId} and (path = ${file.path} and superseded = 0 or sha256 = ${file.sha256})`,
+      select id, path, sha256, blob_key as blobKey, superseded, kind, state, archive_id as archiveId,
+        (select path from files a where a.id = f.archive_id) as archivePath
+      from files f
+      where campaign_id = ${campaignId} and (
+        path in (${file.path}, ${ports.paths.unpacked(file.path)}, ${`${file.path}.gz`}) and superseded = 0
+        or sha256 = ${file.sha256})`,
   );
   const here = rows.filter((row) => row.path === file.path);
   const elsewhere = rows.filter((row) => row.path !== file.path && row.sha256 === file.sha256 && !row.superseded);
@@ -107,8 +116,36 @@ export async function lookAround(ports: Ports, campaignId: string, file: Arrived
   return {
     live: here.find((row) => !row.superseded),
     former: here.find((row) => row.superseded && row.sha256 === file.sha256),
+    otherName: file.archiveId === undefined ? otherNameOf(ports, file, rows) : undefined,
     sameBytes: elsewhere[0],
   };
+}
+
+interface NearbyRow {
+  id: string;
+  path: string;
+  sha256: string;
+  blobKey: string;
+  superseded: 0 | 1;
+  kind: FileKind;
+  state: string;
+  archiveId: string | null;
+  archivePath: string | null;
+}
+
+function otherNameOf(ports: Ports, file: ArrivedFile, rows: readonly NearbyRow[]): Surroundings['otherName'] {
+  const live = rows.filter((row) => !row.superseded);
+  const plain = ports.paths.unpacked(file.path);
+  const here = live.find((row) => row.path === plain);
+  if (file.path !== plain) {
+    const name = here && (here.archivePath ?? here.path);
+    return name === undefined || name === file.path ? undefined : { name };
+  }
+  if (here?.archivePath && ports.paths.unpacked(here.archivePath) === plain)
+    return { name: here.archivePath, archiveId: here.archiveId ?? undefined };
+  // Not unpacked yet: what came later counts all the same.
+  const packed = live.find((row) => row.path !== plain && ports.paths.unpacked(row.path) === plain);
+  return packed?.state === 'unread' ? { name: packed.path, archiveId: packed.id } : undefined;
 }
 
 export interface ArrivalPlan {
@@ -122,7 +159,7 @@ export interface ArrivalPlan {
 
 /** The rows and jobs that an arriving file makes. */
 export function planArrival(campaignId: string, file: ArrivedFile, before: Surroundings, now: number): ArrivalPlan {
-  const { live, former, sameBytes } = before;
+  const { live, former, sameBytes, otherName } = before;
   const assignId = createId('job');
   const jobId = createId('job');
   // Members of an archive are woken by its write-back.
@@ -139,7 +176,9 @@ export function planArrival(campaignId: string, file: ArrivedFile, before: Surro
     }),
     touchCampaign(campaignId, true),
   ];
-  const supersede = (db: LibSQLDatabase): Statement[] => (live ? supersedeFile(db, live.id) : []);
+  // The packed file goes with what came out of it: sent again, it is no longer known.
+  const supersede = (db: LibSQLDatabase): Statement[] =>
+    [live?.id, otherName?.archiveId].flatMap((id) => (id === undefined ? [] : supersedeFile(db, id)));
   if (former && file.kind === 'data') {
     // The path has its old bytes back: the old row, its columns and results count again.
     return {

@@ -1,6 +1,7 @@
+import { gzipSync } from 'node:zlib';
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { CampaignShape } from '../../api/shapes/campaign.ts';
-import { type Harness, openHarness } from './harness.ts';
+import { type Body, type Harness, openHarness } from './harness.ts';
 
 let api: Harness;
 beforeAll(async () => {
@@ -53,4 +54,23 @@ test('an empty campaign is settled and has empty tables', async () => {
     const csv = await api.send('GET', `/v1/campaigns/${body.id}/${table}?format=csv`);
     expect((await csv.text()).split('\n').length).toBe(2);
   }
+});
+
+test('a file under its other name, packed or plain, is told in the answer and in the row of the older one', async () => {
+  const { id } = (await api.sendJson('POST', '/v1/campaigns', { name: 'names' })).body;
+  const bytes = (text: string) => new TextEncoder().encode(text);
+  expect((await api.upload(id, 'A/oven/1.txt.gz', gzipSync('first'))).body).not.toHaveProperty('replaces');
+  await api.drain();
+  const plain = (await api.upload(id, 'A/oven/1.txt', bytes('second'))).body;
+  expect(plain).toMatchObject({ outcome: 'replaced', replaces: 'A/oven/1.txt.gz' });
+  expect((await api.upload(id, 'A/oven/1.txt', bytes('third'))).body).not.toHaveProperty('replaces');
+  const packed = (await api.upload(id, 'A/oven/1.txt.gz', gzipSync('fourth'))).body;
+  expect(packed).toMatchObject({ outcome: 'archive', replaces: 'A/oven/1.txt' });
+  await api.drain();
+  const { items } = (await api.get(`/v1/campaigns/${id}/scans`)).body;
+  expect(items.map((row: Body) => row.status).sort()).toEqual(['set_aside', 'superseded', 'superseded', 'superseded']);
+  const reasons = items.filter((row: Body) => row.status === 'superseded').map((row: Body) => row.reason);
+  // The first came under the name that counts now.
+  expect(reasons.filter((reason: string | null) => reason === null)).toHaveLength(1);
+  expect(new Set(reasons)).toEqual(new Set([null, '«A/oven/1.txt.gz» came later and stands in its place']));
 });

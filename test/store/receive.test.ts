@@ -1,4 +1,5 @@
 import { createHash } from 'node:crypto';
+import { gzipSync } from 'node:zlib';
 import { describe, expect, it } from 'vitest';
 import {
   createCampaign,
@@ -178,5 +179,60 @@ describe('campaigns', () => {
     for (const prefix of ['originals/', 'derived/']) {
       for await (const { key } of ports.blobs.list(prefix)) expect.fail(`${key} was left`);
     }
+  });
+});
+
+describe('one path under two names', () => {
+  const plain = 'A/oven/1.txt';
+  const packed = `${plain}.gz`;
+  const sendPacked = (content: string) => receiveFile(ports, campaign, packed, gzipSync(content));
+  const told = async () =>
+    (await rowsOf(ports, campaign, 'scans')).map(({ file, status, reason }) => [file, status, reason]).sort();
+
+  it('the plain file after the packed one says so, and the older row says why', async () => {
+    await sendPacked('rate 1');
+    await drain(ports, campaign);
+    expect(await send(ports, campaign, plain, 'rate 2')).toMatchObject({ outcome: 'replaced', replaces: packed });
+    await drain(ports, campaign);
+    expect(await told()).toEqual([
+      [plain, 'reduced', null],
+      [plain, 'superseded', `«${plain}» came later and stands in its place`],
+    ]);
+    // The packed one again is no longer known: it came last, so it counts.
+    expect(await sendPacked('rate 1')).toMatchObject({ outcome: 'archive', replaces: plain });
+    await drain(ports, campaign);
+    expect(await told()).toEqual([
+      [plain, 'reduced', null],
+      [plain, 'superseded', `«${packed}» came later and stands in its place`],
+    ]);
+    const [live] = (await rowsOf(ports, campaign, 'scans')).filter((row) => row.status === 'reduced');
+    expect(live.rate_K_per_s).toBe(1);
+  });
+
+  it('a packed file that is overtaken before it is unpacked does not come back over the later one', async () => {
+    await sendPacked('rate 1');
+    expect(await send(ports, campaign, plain, 'rate 2')).toMatchObject({ outcome: 'accepted', replaces: packed });
+    await drain(ports, campaign);
+    expect(await told()).toEqual([
+      [plain, 'reduced', null],
+      [packed, 'superseded', `«${plain}» came later and stands in its place`],
+    ]);
+    expect((await rowsOf(ports, campaign, 'scans'))[0].rate_K_per_s).toBe(2);
+    expect(await originals()).toHaveLength(2);
+  });
+
+  it('the same bytes under both names, or the same name again, replace no other name', async () => {
+    await send(ports, campaign, plain, 'rate 1');
+    await send(ports, campaign, plain, 'rate 2');
+    await drain(ports, campaign);
+    expect((await told()).map(([, status, reason]) => [status, reason])).toEqual([
+      ['reduced', null],
+      ['superseded', null],
+    ]);
+    await sendPacked('rate 2');
+    await drain(ports, campaign);
+    expect((await told()).filter(([, status]) => status === 'superseded')).toHaveLength(1);
+    await sendPacked('rate 2');
+    expect(await sendPacked('rate 2')).toEqual({ file: packed, outcome: 'known', scan_ids: [] });
   });
 });

@@ -1,6 +1,6 @@
 import { eq, inArray, sql } from 'drizzle-orm';
 import { files, scans } from '../../../schema/tables/index.ts';
-import type { Flag } from '../../../schema/wire/flags.ts';
+import { type Flag, quote } from '../../../schema/wire/flags.ts';
 import type { PeakSheetRow } from '../../../schema/wire/forecasts.ts';
 import type { ReducedSummary } from '../../../schema/wire/reduced-blob.ts';
 import type { Ports } from '../../ports/index.ts';
@@ -28,6 +28,8 @@ export interface ScanRecord {
   eventNumbers: number[] | null;
   flags: Flag[];
   fileFlags: Flag[];
+  /** The name that stands in the place of a superseded file, where it is another than its own. */
+  replacedBy: string | null;
 }
 
 /** Text by code unit, missing first: the same order on every machine. */
@@ -37,6 +39,12 @@ export const compareCells = (a: string | number | null, b: string | number | nul
   if (b === null) return 1;
   return a < b ? -1 : 1;
 };
+
+/** Of a file that no longer counts: the name under which its path came later, where the two differ (`x.txt` and `x.txt.gz`). */
+const REPLACED_BY = sql<string | null>`case when ${files.superseded} then (
+  select coalesce(a.path, l.path) from files l left join files a on a.id = l.archive_id
+  where l.campaign_id = ${files.campaignId} and l.path = ${files.path} and l.superseded = 0 and coalesce(a.path, l.path) <>
+    coalesce((select o.path from files o where o.id = ${files.archiveId}), ${files.path})) end`;
 
 const RECORD = {
   scanId: scans.id,
@@ -57,6 +65,7 @@ const RECORD = {
   eventNumbers: scans.eventNumbers,
   flags: scans.flags,
   fileFlags: files.flags,
+  replacedBy: REPLACED_BY,
 };
 
 /** Records in memory at a time: a page of the table needs one such chunk, whatever the size of the campaign. */
@@ -120,6 +129,28 @@ async function loadRefusedArchives(ports: Pick<Ports, 'database'>, campaignId: s
   }));
 }
 
+/** Archives that no longer counted before they were unpacked: nothing else tells that they came. */
+async function loadOvertakenArchives(ports: Pick<Ports, 'database'>, campaignId: string): Promise<ResultRow[]> {
+  const rows = await allRows<{ path: string; sha256: string; replacedBy: string | null }>(
+    ports.database.read,
+    text`
+      select path, sha256, (
+        select l.path from files l where l.campaign_id = f.campaign_id and l.superseded = 0 and l.archive_id is null
+          and f.path like '%.gz' and l.path = substr(f.path, 1, length(f.path) - 3)) as replacedBy
+      from files f where campaign_id = ${campaignId} and kind = 'archive' and superseded = 1 and state = 'unread'`,
+  );
+  return rows.map(({ path, sha256, replacedBy }) => replacedRow(path, sha256, replacedBy));
+}
+
+/** What was found in a scan before its file was replaced depends on when that was: only that it was there is told. */
+const replacedRow = (file: string, sha256: string, replacedBy: string | null): ResultRow => ({
+  ...EMPTY_ROW,
+  file,
+  sha256,
+  status: 'superseded',
+  reason: replacedBy === null ? null : `${quote(replacedBy)} came later and stands in its place`,
+});
+
 const EMPTY_ROW: ResultRow = {
   file: null,
   sha256: null,
@@ -162,10 +193,7 @@ const J_PER_KG_TO_J_PER_G = 1e-3;
 
 /** Rows of scans.csv of one scan: one an event, or one with an empty event. */
 export function scanRowsOf(scan: ScanRecord): ResultRow[] {
-  // What was found in a scan before its file was replaced depends on when that was: only that it was there is told.
-  if (scan.status === 'superseded') {
-    return [{ ...EMPTY_ROW, file: scan.path, sha256: scan.sha256, status: scan.status }];
-  }
+  if (scan.status === 'superseded') return [replacedRow(scan.path, scan.sha256, scan.replacedBy)];
   const { result, sheetRow } = scan;
   const analysed = result?.segments.find((segment) => segment.segment === result.segment);
   const massKg = result?.massKg ?? sheetRow?.massKg;
@@ -225,7 +253,8 @@ export async function* readScanTable(
   sample?: string,
 ): AsyncGenerator<ResultRow> {
   const others = (await loadPeakRows(ports, campaignId, sample)).map(peakRowOf);
-  if (sample === undefined) others.push(...(await loadRefusedArchives(ports, campaignId)));
+  if (sample === undefined)
+    others.push(...(await loadRefusedArchives(ports, campaignId)), ...(await loadOvertakenArchives(ports, campaignId)));
   // The sort is stable: rows of one file keep their order.
   others.sort((a, b) => compareCells(a.file as string, b.file as string));
   let next = 0;
