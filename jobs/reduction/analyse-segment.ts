@@ -102,7 +102,7 @@ export function analyseSegment(
       fromS: previous ? previous.peakS + TAIL * previous.rightS : timeS[segment.from],
       toS,
       ...(limits ? { limits } : { ...(g === 0 && glass && { glass }), ...(melting && { melting }) }),
-      responseS: Math.max(0, c.input.calibration.responseS ?? 0),
+      responseS: c.responseS,
       ...knownArea(c, groups.length === 1 && group.length === 1),
     };
     const done = reduceEvents(c, segment, group, room, events.length + 1);

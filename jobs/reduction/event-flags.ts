@@ -21,6 +21,8 @@ export interface Judged {
   selfHeating?: SelfHeating;
   /** What the event warms its sample by at the peak, K; its temperatures hold that already */
   warmingK: number;
+  /** The delay R_th m c_p of its heat was known and undone */
+  contactKnown: boolean;
   glassOverlap: boolean;
   meltingOverlap: boolean;
   knownArea: boolean;
@@ -92,7 +94,9 @@ export function judgeEvent(e: ReducedEvent, about: Judged, where: object): Flag[
     tell(
       'self-heating',
       `The event warms its own sample: S is ${heating.number.toPrecision(2)} (it matters above ${SELF_HEATING.told}${out}). Its temperatures are raised by what it warms, ${about.warmingK.toPrecision(2)} K at the peak, which is known to ${100 * WARMING_ERROR_PART} %.`,
-      'Use less mass or a lower rate.',
+      about.contactKnown
+        ? 'Use less mass or a lower rate.'
+        : 'Give mass and heat capacity [J/(g K)], with which the delay of the sample’s own contact is undone; or use less mass or a lower rate.',
     );
   }
   if (about.responseUnknown && Math.abs(about.lagK) > 0.1 * e.widthK) {

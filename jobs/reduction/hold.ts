@@ -29,12 +29,13 @@ export function reduceHold(
   const start = ramp?.from ?? segment.from;
   let reached = Math.min(segment.to - 1, segment.from + ((segment.to - segment.from) >> 1));
   while (reached > start && Math.abs(temperatureK[reached - 1] - levelK) <= tolerance) reached--;
-  const { lagS, responseS } = c.input.calibration;
+  const { lagS } = c.input.calibration;
+  const { responseS } = c;
   const holdReachedS = timeS[reached];
-  const fromS = holdReachedS + SETTLED_LAGS * Math.max(0, lagS, responseS ?? 0);
+  const fromS = holdReachedS + SETTLED_LAGS * Math.max(0, lagS, responseS);
   const hold = { ...segment, from: Math.min(lowerBound(timeS, fromS), segment.to - 8) };
   const toS = timeS[segment.to - 1];
-  const room = { fromS, toS, responseS: Math.max(0, responseS ?? 0), footless: true };
+  const room = { fromS, toS, responseS, footless: true };
   const rows = ramp ? { ...segment, from: ramp.from, startK: ramp.startK } : segment;
   const { events, shown } = reduceEvents(c, hold, bells, room, 1, { rows, cornerS: holdReachedS });
   return {

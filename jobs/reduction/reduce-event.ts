@@ -93,7 +93,7 @@ function completeEvent(
   const { input, scan } = c;
   const { calibration } = input;
   const where = { ...c.where, event: number };
-  const responseS = Math.max(0, calibration.responseS ?? 0) - w.undoneS;
+  const responseS = c.responseS - w.undoneS;
   const bell = isolated.bells[index];
   const shape = shapeEvent(w, x, bell, responseS);
   const marks = findLandmarks(w, x, shape);
@@ -156,7 +156,7 @@ function completeEvent(
     event.curve = makeCurve(c, w, x, shape, times, (t) => T(t) + warming.at(t), error, programme, shiftK);
     if (segment.kind === 'heating') {
       const enthalpy = event.enthalpyJPerKg ?? input.crystallizationEnthalpyJPerKg;
-      selfHeating = selfHeatingOf(c, event.curve, marks.height, enthalpy);
+      selfHeating = selfHeatingOf(c, event.curve, warming.most, enthalpy);
       if (selfHeating && !selfHeating.bound) event.selfHeating = selfHeating.number;
     }
   }
@@ -169,6 +169,7 @@ function completeEvent(
         responseUnknown: calibration.responseS === undefined,
         ...(selfHeating && { selfHeating }),
         warmingK: warming.at(marks.peakS),
+        contactKnown: c.contactS > 0,
         glassOverlap: isolated.glassOverlap,
         meltingOverlap: isolated.meltingOverlap,
         knownArea: room.knownArea !== undefined,

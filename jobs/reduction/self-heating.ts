@@ -1,5 +1,6 @@
 import { CONVERSION_GRID, type ReducedCurve } from '../../schema/wire/reduced.ts';
-import { binAt, type EventShape, trueSignal } from './conversion.ts';
+import { interpolate } from '../numeric/local-polynomial.ts';
+import { type EventShape, trueSignal } from './conversion.ts';
 import type { Excess } from './excess.ts';
 import type { ScanContext } from './scan-context.ts';
 import type { EventWindow } from './window.ts';
@@ -26,19 +27,19 @@ export interface SelfHeating {
  * resistance R_th is known (leading edge of a standard, slope β/R_th), τ_s = R_th m c_p and S = R_th φ_max E/(R T²): mass and heat
  * capacity drop out. Otherwise τ_s ≤ τ − τ_r bounds it from above. A single scan shows n E/(R T²) (the growth of ln(−ln(1−α)) a kelvin)
  * but not its two factors: n is taken as 3, so that S is right to a factor of two, as a warning should be.
- * @param height of the event, signal units   @param enthalpyJPerKg where known
+ * @param warmedK what the event warms the sample by at most   @param enthalpyJPerKg where known
  */
 export function selfHeatingOf(
   { input, scan }: ScanContext,
   curve: ReducedCurve,
-  height: number,
+  warmedK: number,
   enthalpyJPerKg: number | undefined,
 ): SelfHeating | undefined {
   const { resistanceKPerW, lagS, responseS } = input.calibration;
   const y = (k: number) => Math.log(-Math.log1p(-CONVERSION_GRID[k]));
   const steepness = (y(HIGH) - y(LOW)) / (curve.temperatureK[HIGH] - curve.temperatureK[LOW]) / TYPICAL_EXPONENT;
   if (resistanceKPerW !== undefined && scan.heatFlowUnit !== 'W/kg') {
-    return { number: resistanceKPerW * height * steepness, bound: false, heatCapacityAssumed: false };
+    return { number: warmedK * steepness, bound: false, heatCapacityAssumed: false };
   }
   const contactS = lagS - Math.max(0, responseS ?? 0);
   if (enthalpyJPerKg === undefined || !(contactS > 0)) return undefined;
@@ -55,22 +56,47 @@ export interface Warming {
   at: (t: number) => number;
   /** over the event, weighted by its heat flow */
   mean: number;
+  most: number;
   /** standard error, part of it */
   part: number;
 }
 
 /**
- * The sample is R_th φ warmer than its programme says while an event gives off φ. At the top φ is stationary, so that the heating rate there
- * is the programme's and Kissinger's condition holds at this temperature.
+ * The sample is warmer than its programme says by R_th times the heat that flows through its contact. What an event gives off reaches the
+ * contact with the delay R_th m c_p: where that is known the heat set free is delayed by it again, else the signal counts as it is.
+ * At the top the warming is stationary as long as it is small, so that Kissinger's condition holds there with the programme's rate.
  */
-export function warmingOf({ input, scan }: ScanContext, w: EventWindow, x: Excess, shape: EventShape): Warming {
+export function warmingOf(
+  { input, scan, contactS }: ScanContext,
+  w: EventWindow,
+  x: Excess,
+  shape: EventShape,
+): Warming {
   const resistance = scan.heatFlowUnit === 'W/kg' ? 0 : (input.calibration.resistanceKPerW ?? 0);
-  if (!(resistance > 0)) return { at: () => 0, mean: 0, part: 0 };
-  let squares = 0;
-  for (let i = x.from + 1; i < x.to; i++) squares += (w.t[i] - w.t[i - 1]) * x.e[i] ** 2;
+  if (!(resistance > 0)) return { at: () => 0, mean: 0, most: 0, part: 0 };
+  const warmedK = new Float64Array(w.t.length);
+  const free = (i: number) => resistance * Math.max(0, trueSignal(w, shape, w.t[i], i).value);
+  let [most, heat, weighted, before] = [0, 0, 0, free(x.from)];
+  warmedK[x.from] = before;
+  for (let i = x.from + 1; i < x.to; i++) {
+    const dt = w.t[i] - w.t[i - 1];
+    const now = free(i);
+    if (contactS > 0) {
+      // dΔT/dt = (free − ΔT)/τ along a straight piece of the heat set free, in closed form.
+      const kept = Math.exp(-dt / contactS);
+      const rise = ((now - before) * contactS) / dt;
+      warmedK[i] = now - rise + (warmedK[i - 1] - before + rise) * kept;
+    } else warmedK[i] = now;
+    most = Math.max(most, warmedK[i]);
+    heat += dt * now;
+    weighted += dt * now * warmedK[i];
+    before = now;
+  }
+  warmedK.fill(0, x.to);
   return {
-    at: (t) => resistance * Math.max(0, trueSignal(w, shape, t, binAt(w, x, t)).value),
-    mean: (resistance * squares) / x.area,
+    at: (t) => interpolate(w.t, warmedK, t),
+    mean: heat > 0 ? weighted / heat : 0,
+    most,
     part: WARMING_ERROR_PART,
   };
 }

@@ -17,6 +17,8 @@ export interface RecordedAs {
   kind?: InstrumentCalibration['kind'];
   /** What the fractions of the recording refer to, W; by default the events' height */
   heightW?: number;
+  /** The sheet does not know the sample's heat capacity */
+  heatCapacityUnknown?: boolean;
 }
 
 /** Records a simulated scan and reduces it with the truth about its instrument on the sheet. */
@@ -37,6 +39,8 @@ export function reduceModel(model: ScanModel, as: RecordedAs, random: Random): R
     standards: 0,
     ...(selfHeating && { resistanceKPerW: selfHeating.contactS / (massKg * selfHeating.heatCapacityJPerKgK) }),
   };
+  const heatCapacity =
+    selfHeating && !as.heatCapacityUnknown ? { heatCapacityJPerKgK: selfHeating.heatCapacityJPerKgK } : {};
   return reduceScan(
     {
       timeS: recorded.timeS,
@@ -47,6 +51,6 @@ export function reduceModel(model: ScanModel, as: RecordedAs, random: Random): R
       dialect: 'simulated',
       flags: [],
     },
-    { file: 'simulated', sample: 'simulated', role: 'sample', exotherm: 'up', massKg, calibration },
+    { file: 'simulated', sample: 'simulated', role: 'sample', exotherm: 'up', massKg, calibration, ...heatCapacity },
   );
 }

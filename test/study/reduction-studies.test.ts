@@ -27,6 +27,14 @@ test.each([
   }
 });
 
+test('self-heating S = 0.5 with a known heat capacity: T(0.5) within 3 % of the width, Tp within 3 %', () => {
+  for (let index = 0; index < 3; index++) {
+    const result = reduceSimulated(difficulty('self-heating S = 0.5'), 'test', index);
+    expect(Math.abs(result.peak ?? 1), `${index}`).toBeLessThan(0.03);
+    expect(Math.abs(result.half ?? 1), `${index}`).toBeLessThan(0.03);
+  }
+});
+
 test('noise that does not average out: the errors stated for Tp, T(0.5) and ΔH hold most of the truth', () => {
   const results = Array.from({ length: 8 }, (_, index) =>
     reduceSimulated(difficulty('pink noise 0.3 %'), 'test', index),

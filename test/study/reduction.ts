@@ -32,8 +32,9 @@ export interface Difficulty {
   glassTransition?: { widthsBelow: number; step: number; overshoot?: number };
   /** Melting this many widths above the peak, of the event's own heat, a third as wide */
   meltingAbove?: number;
-  /** Self-heating number */
+  /** Self-heating number, and whether the sheet leaves out the heat capacity */
   selfHeating?: number;
+  heatCapacityUnknown?: boolean;
   /** A second event of the same law this many widths above, with this part of the first one's heat */
   overlap?: {
     widthsAbove: number;
@@ -136,7 +137,10 @@ export const DIFFICULTIES: Difficulty[] = [
     overlap: { widthsAbove: 1, part: 0.7, energy: 1.2 },
   },
   { name: 'self-heating S = 0.1', selfHeating: 0.1 },
+  { name: 'self-heating S = 0.3', selfHeating: 0.3 },
   { name: 'self-heating S = 0.5', selfHeating: 0.5 },
+  { name: 'self-heating S = 0.1, heat capacity not known', selfHeating: 0.1, heatCapacityUnknown: true },
+  { name: 'self-heating S = 0.5, heat capacity not known', selfHeating: 0.5, heatCapacityUnknown: true },
 ];
 
 /** Errors of temperatures in units of the event's true width, of ΔH relative; missing where nothing came. */
@@ -245,7 +249,8 @@ export function reduceSimulated(difficulty: Difficulty, seed: string, index: num
   const uneven = difficulty.uneven && { ...difficulty.uneven, random: random.fork('sampling') };
   const kind = rateKPerS < 10 ? 'furnace' : 'chip';
   const recording = { ...PLAIN, ...difficulty.recording };
-  const outcome = reduceModel(model, { rows, recording, uneven, kind }, random);
+  const { heatCapacityUnknown } = difficulty;
+  const outcome = reduceModel(model, { rows, recording, uneven, kind, heatCapacityUnknown }, random);
   if (!outcome.ok) return { reason: outcome.code, flags: [] };
   const { events, glassTransitionK } = outcome.reduced;
   const glass = model.sample.glassTransition;
