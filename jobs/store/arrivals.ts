@@ -100,15 +100,16 @@ export interface Surroundings {
 }
 
 export async function lookAround(ports: Ports, campaignId: string, file: ArrivedFile): Promise<Surroundings> {
+  // The campaign stands in both branches: each then has its index, else all files of the campaign are looked at.
   const rows = await allRows<NearbyRow>(
     ports.database.read,
     text`
       select id, path, sha256, blob_key as blobKey, superseded, kind, state, archive_id as archiveId,
         (select path from files a where a.id = f.archive_id) as archivePath
       from files f
-      where campaign_id = ${campaignId} and (
-        path in (${file.path}, ${ports.paths.unpacked(file.path)}, ${`${file.path}.gz`}) and superseded = 0
-        or sha256 = ${file.sha256})`,
+      where campaign_id = ${campaignId} and superseded = 0
+          and path in (${file.path}, ${ports.paths.unpacked(file.path)}, ${`${file.path}.gz`})
+        or campaign_id = ${campaignId} and sha256 = ${file.sha256}`,
   );
   const here = rows.filter((row) => row.path === file.path);
   const elsewhere = rows.filter((row) => row.path !== file.path && row.sha256 === file.sha256 && !row.superseded);
