@@ -1,6 +1,6 @@
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 import { CONVERSION_COUNT, type EventData } from '../kinetics/event-data.ts';
-import type { ScatterModel } from '../kinetics/monte-carlo.ts';
+import type { Scatter } from '../kinetics/monte-carlo.ts';
 import { studentQuantile } from '../numeric/distributions.ts';
 import { solveSymmetric } from '../numeric/linear-solve.ts';
 import type { Candidate } from './advice-candidates.ts';
@@ -29,7 +29,7 @@ export class EnergyPrecision {
 
   constructor(
     private readonly data: EventData,
-    private readonly model: ScatterModel,
+    private readonly model: Scatter,
     /** J/mol */
     private readonly energy: number,
   ) {

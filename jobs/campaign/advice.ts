@@ -1,7 +1,7 @@
 import { type AdviceRow, FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 import { collectEvent, distinctRates } from '../kinetics/event-data.ts';
-import { modelScatter } from '../kinetics/monte-carlo.ts';
+import { findScatter } from '../kinetics/monte-carlo.ts';
 import { type Candidate, isUsable, listCandidates } from './advice-candidates.ts';
 import { EnergyPrecision, eventWidthK } from './advice-energy.ts';
 import type { AdviceGoal, AdviceInput } from './advice-input.ts';
@@ -117,7 +117,7 @@ function energyWidth(input: AdviceInput): Width {
   const curves = Uint16Array.from(Array.from(data.hasCurve.keys()).filter((i) => data.hasCurve[i] === 1));
   const rates = distinctRates(data.rate);
   if (rates.length < 2 || data.n < 3) return () => undefined;
-  const precision = new EnergyPrecision(data, modelScatter(data, curves, rates.length), input.energyJPerMol);
+  const precision = new EnergyPrecision(data, findScatter(data, curves, rates.length), input.energyJPerMol);
   const temperature = expectedTemperatures(input);
   return (more, count) => {
     const width = precision.width(more && { ...more, temperatureK: temperature(more.rateKPerS) }, count);

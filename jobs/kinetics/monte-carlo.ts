@@ -12,11 +12,8 @@ import {
 } from './event-data.ts';
 import { fitLogTrend, fitRateTrend, fitTemperatureTrend, type Trend } from './trend.ts';
 
-/**
- * The scatter between scans, split into a trend with heating rate and one whole residual curve a scan: one scan's curve moves together, so
- * the scan is the unit of resampling.
- */
-export interface ScatterModel {
+/** The scatter between scans about a trend with heating rate. */
+export interface Scatter {
   data: EventData;
   bent: boolean;
   /** parameters of the trend: 2 straight, 3 bent */
@@ -27,6 +24,10 @@ export interface ScatterModel {
   /** degrees of freedom behind each */
   scatterDegrees: Float64Array;
   peak: Trend;
+}
+
+/** With one whole residual curve a scan: one scan's curve moves together, so the scan is the unit of resampling. */
+export interface ScatterModel extends Scatter {
   width: Trend;
   /** per conversion, over the curve scans */
   temperature: Trend[];
@@ -71,34 +72,41 @@ const LEAST_PRIOR_K = { furnace: 0.2, chip: 1 } as const;
  * end define it alone and hide their own scatter (88 % coverage).
  * @param distinct number of distinct rates
  */
-export function modelScatter(data: EventData, curves: Uint16Array, distinct: number): ScatterModel {
+export function findScatter(data: EventData, curves: Uint16Array, distinct: number): Scatter {
   const span = Math.max(...data.rate) / Math.min(...data.rate);
   const bearable = distinct >= BENT_FROM_RATES && span >= BENT_FROM_SPAN && data.n >= 5;
-  if (!bearable) return modelWithTrend(data, curves, false);
-  const bent = modelWithTrend(data, curves, true);
+  if (!bearable) return scatterAbout(data, curves, false);
+  const bent = scatterAbout(data, curves, true);
   const straight = fitTemperatureTrend(data.rate, data.peakK, bent.weights, false);
   const sum = (t: Trend) => t.residuals.reduce((total, r, i) => total + bent.weights[i] * r * r, 0);
   const gained = sum(straight) - sum(bent.peak);
   const degrees = data.n - 3;
   const seen = gained > (studentQuantile(0.975, degrees) ** 2 * sum(bent.peak)) / degrees;
-  return seen ? bent : modelWithTrend(data, curves, false);
+  return seen ? bent : scatterAbout(data, curves, false);
 }
 
-function modelWithTrend(data: EventData, curves: Uint16Array, bent: boolean): ScatterModel {
+/** Too few of the scans may have curves to bear the bent trend that the peaks bear. */
+const bearsBend = (curves: Uint16Array): boolean => curves.length >= 5;
+const hasTrend = (curves: Uint16Array): boolean => curves.length > 2;
+
+const ofCurves = (values: ArrayLike<number>, curves: Uint16Array): Float64Array =>
+  Float64Array.from(curves, (i) => values[i]);
+const atConversion = (columns: Float64Array, curves: Uint16Array, k: number): Float64Array =>
+  Float64Array.from(curves, (i) => columns[i * CONVERSION_COUNT + k]);
+
+function scatterAbout(data: EventData, curves: Uint16Array, bent: boolean): Scatter {
   const n = data.n;
-  // Too few of the scans may have curves to bear the bent trend that the peaks bear.
-  const bentCurves = bent && curves.length >= 5;
-  const hasTrend = curves.length > 2;
   let weights: Float64Array = new Float64Array(n).fill(1);
   let scatter = { sigmaK: new Float64Array(0), degrees: new Float64Array(0) };
-  const pick = (from: Float64Array, k: number) => Float64Array.from(curves, (i) => from[i * CONVERSION_COUNT + k]);
-  const some = <A extends ArrayLike<number>>(a: A) => Float64Array.from(curves, (i) => a[i]);
+  const rate = ofCurves(data.rate, curves);
+  const bentCurves = bent && bearsBend(curves);
   // Weights follow from the scatter about a trend that is fitted with them: a few rounds settle that.
   for (let round = 0; round < (data.instruments.length > 1 ? 6 : 1); round++) {
     const peak = fitTemperatureTrend(data.rate, data.peakK, weights, bent);
-    const curve = hasTrend
+    const w = ofCurves(weights, curves);
+    const curve = hasTrend(curves)
       ? [POOLED.from, MIDDLE, POOLED.to - 1].map((k) =>
-          fitTemperatureTrend(some(data.rate), pick(data.temperatureK, k), some(weights), bentCurves),
+          fitTemperatureTrend(rate, atConversion(data.temperatureK, curves, k), w, bentCurves),
         )
       : [];
     scatter = instrumentScatter(data, [peak, ...curve], curves);
@@ -106,18 +114,7 @@ function modelWithTrend(data: EventData, curves: Uint16Array, bent: boolean): Sc
   }
   const mean = weights.reduce((s, w) => s + w, 0) / n;
   weights = weights.map((w) => w / mean);
-  const rate = some(data.rate);
-  const w = some(weights);
-  const temperature: Trend[] = [];
-  const lnRate: Trend[] = [];
-  const usable = usableWeights(data, curves, w, data.usable).at;
-  for (let k = 0; k < CONVERSION_COUNT && hasTrend; k++) {
-    const T = fitTemperatureTrend(rate, pick(data.temperatureK, k), usable[k], bentCurves);
-    temperature.push(T);
-    lnRate.push(fitRateTrend(rate, T.fitted, pick(data.lnRate, k), usable[k], bentCurves));
-  }
-  for (const trends of [temperature, lnRate]) fillUnusable(trends, data.usable, curves);
-  const model = {
+  return {
     data,
     bent,
     trendParameters: bent ? 3 : 2,
@@ -125,10 +122,29 @@ function modelWithTrend(data: EventData, curves: Uint16Array, bent: boolean): Sc
     sigmaK: scatter.sigmaK,
     scatterDegrees: scatter.degrees,
     peak: fitTemperatureTrend(data.rate, data.peakK, weights, bent),
-    width: fitLogTrend(data.rate, data.widthK, weights),
+  };
+}
+
+/** What the draws of an event are made from. */
+export function modelScatter(data: EventData, curves: Uint16Array, distinct: number): ScatterModel {
+  const scatter = findScatter(data, curves, distinct);
+  const rate = ofCurves(data.rate, curves);
+  const bent = scatter.bent && bearsBend(curves);
+  const temperature: Trend[] = [];
+  const lnRate: Trend[] = [];
+  const usable = usableWeights(data, curves, ofCurves(scatter.weights, curves), data.usable).at;
+  for (let k = 0; k < CONVERSION_COUNT && hasTrend(curves); k++) {
+    const T = fitTemperatureTrend(rate, atConversion(data.temperatureK, curves, k), usable[k], bent);
+    temperature.push(T);
+    lnRate.push(fitRateTrend(rate, T.fitted, atConversion(data.lnRate, curves, k), usable[k], bent));
+  }
+  for (const trends of [temperature, lnRate]) fillUnusable(trends, data.usable, curves);
+  const model = {
+    width: fitLogTrend(data.rate, data.widthK, scatter.weights),
     temperature,
     lnRate,
     curves,
+    ...scatter,
   };
   return { parts: drawParts(model), ...model };
 }

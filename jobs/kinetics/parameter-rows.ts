@@ -30,16 +30,21 @@ export interface Where {
 export class RowBuilder {
   readonly rows: ParameterRow[] = [];
   private readonly spread: DrawSpread;
+  /** K/s */
+  private readonly rates: number[];
+  private readonly curveRates: number[];
 
   constructor(
     private readonly sample: string,
     private readonly data: EventData,
-    private readonly curves: Uint16Array,
+    curves: Uint16Array,
     model: ScatterModel,
     private readonly drawn: DrawnColumns,
     causes: readonly DrawCauses[],
   ) {
     this.spread = new DrawSpread(causes, data.n - model.trendParameters, scanDegrees(model));
+    this.rates = Array.from(data.rate);
+    this.curveRates = Array.from(curves, (i) => data.rate[i]);
   }
 
   /**
@@ -50,7 +55,9 @@ export class RowBuilder {
   add(where: Where, estimate: number, drawn: Float64Array, scale: number, log: boolean, onCurves: boolean): void {
     const value = estimate * scale;
     if (!Number.isFinite(value)) return;
-    const half = this.spread.halfWidth(drawn.map((v) => (log ? Math.log(v * scale) : v * scale)));
+    const values = new Float64Array(drawn.length);
+    for (let d = 0; d < values.length; d++) values[d] = log ? Math.log(drawn[d] * scale) : drawn[d] * scale;
+    const half = this.spread.halfWidth(values);
     const bounded = Number.isFinite(half) && (!log || value > 0);
     this.push(
       where,
@@ -70,7 +77,7 @@ export class RowBuilder {
   ): void {
     // A table of peaks alone has no widths and no start of the ramp: what needs them is missing, not a number.
     if (!Number.isFinite(value)) return;
-    const rates = onCurves ? Array.from(this.curves, (i) => this.data.rate[i]) : Array.from(this.data.rate);
+    const rates = onCurves ? this.curveRates : this.rates;
     this.rows.push({
       sample: this.sample,
       event: this.data.event,

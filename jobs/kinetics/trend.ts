@@ -72,10 +72,11 @@ function trendValue(p: ArrayLike<number>, u: number): { value: number; byLogEner
 }
 
 function solveTemperature(p: Float64Array, rate: number, start: number, scale: BentScale): number {
+  const lnRate = Math.log(rate);
   let x = 1 / start;
   for (let i = 0; i < 20; i++) {
     const m = trendValue(p, (x - scale.x0) / scale.dx);
-    const f = m.value - Math.log(rate) - 2 * Math.log(x);
+    const f = m.value - lnRate - 2 * Math.log(x);
     const step = f / (m.byU / scale.dx - 2 / x);
     x = Math.min(1.5 / start, Math.max(0.67 / start, x - step));
     if (Math.abs(step) < 1e-13 * x) break;

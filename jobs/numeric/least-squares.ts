@@ -49,8 +49,17 @@ export class LeastSquares {
     this.solver = new SymmetricSolver(p);
   }
 
-  /** The minimum alone, for draws. @param tolerance step ÷ scale at which the fit has converged */
-  minimise(start: Float64Array, scale: Float64Array, maxIterations = 50, tolerance = SMALLEST_STEP): Minimum {
+  /**
+   * The minimum alone. @param tolerance step ÷ scale at which the fit has converged
+   * @param lookBack false for draws: the last step is taken without asking what it leaves, and the sum of squares is that before it
+   */
+  minimise(
+    start: Float64Array,
+    scale: Float64Array,
+    maxIterations = 50,
+    tolerance = SMALLEST_STEP,
+    lookBack = true,
+  ): Minimum {
     const { p, rows, trial, normal, gradient, solver } = this;
     const parameters = new Float64Array(p);
     parameters.set(start);
@@ -76,6 +85,12 @@ export class LeastSquares {
       for (let i = 0; i < p; i++) {
         trial[i] = parameters[i] - gradient[i];
         largest = Math.max(largest, Math.abs(gradient[i]) / scale[i]);
+      }
+      if (!lookBack && largest < tolerance) {
+        parameters.set(trial);
+        converged = true;
+        message = 'last step below tolerance';
+        break;
       }
       this.model(trial, this.trialResiduals, this.trialJacobian);
       evaluations++;

@@ -161,7 +161,7 @@ export class LawProblem {
   draw(start: Float64Array, temperatureK: Float64Array, priorDraws: Float64Array, bend?: number): Minimum {
     const from = this.begin(start, temperatureK, priorDraws);
     if (bend !== undefined) this.bend = bend;
-    return this.solver.minimise(from, this.scale, 30, DRAW_STEP);
+    return this.solver.minimise(from, this.scale, 30, DRAW_STEP, false);
   }
 
   private evaluate(x: Float64Array, r: Float64Array, J: Float64Array): void {

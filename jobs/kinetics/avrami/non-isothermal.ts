@@ -34,12 +34,18 @@ const SLOPE = CONVERSION.map((a) => -(1 - a) * Math.log1p(-a));
 
 /** Standard deviation of one α of a curve about the law when the scan sits right: noise and baseline, about half a per cent. */
 const CURVE_SIGMA = 0.005;
-/** Step ÷ scale at which a fit has converged: to the last digit, and in a draw, where what is left after such a step is a hundredth of it. */
+/** Step ÷ scale at which a fit has converged: to the last digit, and in a draw, where what is left after such a step goes with its square. */
 const LAST_DIGIT = 1e-9;
-const DRAW_TOLERANCE = 1e-5;
+const DRAW_TOLERANCE = 1e-4;
 /** In a draw integrals are carried this part of E along their derivatives: what is left out is below 1e-7. */
 const REACH = 5e-3;
 const MOST_STEPS = 60;
+/**
+ * How a pass takes the residuals r: those of n ln X from ln[−ln(1−α)], times dα/d ln X; those of α, whose products of first derivatives stand for
+ * the second (Gauss–Newton); or those of α with the second derivatives (Newton). E moves against all shifts at once with little resistance
+ * but that of the scatter, and there Gauss–Newton gains only a digit a step.
+ */
+type Pass = 'logarithmic' | 'first-order' | 'second-order';
 /** A first step of a draw beyond this, in units of `SCALE`, is not taken. */
 const FIRST_STEP = 1;
 const DAMPING_LIMIT = 1e8;
@@ -72,7 +78,7 @@ export class JmakFit {
   /** Schur complement of the normal matrix and its right-hand side */
   private readonly normal = new Float64Array(P * P);
   private readonly gradient = new Float64Array(P);
-  /** per scan: Σ g², Σ g r, and Σ g J for the three parameters */
+  /** per scan: Σ g², Σ g r, and Σ g J for the three parameters, up to one common factor */
   private readonly border: Float64Array;
   /** the sums before a step that may have to be taken back */
   private readonly keptNormal = new Float64Array(P * P);
@@ -140,7 +146,10 @@ export class JmakFit {
     return { energy, lnPrefactor: lnK0 + (energy * this.x0) / GAS_CONSTANT, exponent, fit };
   }
 
-  /** @param tolerance step ÷ scale   @param reach see `REACH`; 0: integrals anew for every E, and no step in the logarithm first */
+  /**
+   * @param tolerance step ÷ scale   @param reach see `REACH`; 0: from a rough start, so integrals anew for every E, no step in the logarithm
+   * first, and Gauss–Newton throughout
+   */
   private solve(start: Float64Array, tolerance: number, reach: number): LeastSquaresResult {
     this.reach = reach;
     this.madeAt = 0;
@@ -155,13 +164,14 @@ export class JmakFit {
     let trial = this.trialShifts;
     const parameters = start.slice();
     if (reach > 0) {
-      this.accumulate(parameters, shifts, true);
+      this.accumulate(parameters, shifts, 'logarithmic');
       if (this.makeStep(parameters, shifts, trial, 0) < FIRST_STEP) {
         parameters.set(next);
         [shifts, trial] = [trial, shifts];
       }
     }
-    let sum = this.accumulate(parameters, shifts, false);
+    let pass: Pass = reach > 0 ? 'second-order' : 'first-order';
+    let sum = this.accumulate(parameters, shifts, pass);
     let evaluations = 1;
     let damping = 0;
     let converged = false;
@@ -175,6 +185,12 @@ export class JmakFit {
       keptGradient.set(gradient);
       keptBorder.set(border);
       const largest = this.makeStep(parameters, shifts, trial, damping);
+      if (Number.isNaN(largest) && pass === 'second-order') {
+        pass = 'first-order';
+        this.accumulate(parameters, shifts, pass);
+        evaluations++;
+        continue;
+      }
       if (Number.isNaN(largest)) {
         message = 'the normal matrix is singular: the data do not determine every parameter';
         break;
@@ -186,13 +202,17 @@ export class JmakFit {
         message = `last step ${largest.toExponential(1)} of the parameters' scale`;
         break;
       }
-      const sum2 = this.accumulate(next, trial, false);
+      const sum2 = this.accumulate(next, trial, pass);
       evaluations++;
       if (sum2 <= sum) {
         parameters.set(next);
         [shifts, trial] = [trial, shifts];
         sum = sum2;
         damping = damping < 1e-6 ? 0 : damping / 10;
+      } else if (pass === 'second-order') {
+        pass = 'first-order';
+        this.accumulate(parameters, shifts, pass);
+        evaluations++;
       } else {
         normal.set(keptNormal);
         gradient.set(keptGradient);
@@ -235,9 +255,8 @@ export class JmakFit {
 
   /**
    * One pass over the points: the sum of squares (infinite outside the model's range) and the sums that the next step needs.
-   * @param logarithmic residuals are those of n ln X from ln[−ln(1−α)], times dα/d ln X
    */
-  private accumulate(p: Float64Array, shifts: Float64Array, logarithmic: boolean): number {
+  private accumulate(p: Float64Array, shifts: Float64Array, pass: Pass): number {
     const energy = p[0];
     const lnK0 = p[1];
     const n = p[2];
@@ -249,6 +268,10 @@ export class JmakFit {
     }
     const { value, byEnergy, byEnergy2 } = this.integrals;
     const moved = energy - this.madeAt;
+    const logarithmic = pass === 'logarithmic';
+    const second = pass === 'second-order';
+    const perN = 1 / n;
+    // Sums leave out the n that E, ln K0 and the shifts act on n ln X with.
     let curveSquares = 0;
     let shiftSquares = 0;
     let n00 = 0;
@@ -263,12 +286,12 @@ export class JmakFit {
     for (let i = 0; i < shifts.length; i++) {
       const shift = shifts[i];
       const prior = CURVE_SIGMA / this.sigmaK[i];
-      let gg = prior * prior;
-      let gr = prior * prior * shift;
+      let gg = prior * prior * perN * perN;
+      let gr = prior * prior * shift * perN;
       let g0 = 0;
       let g1 = 0;
       let g2 = 0;
-      shiftSquares += gr * shift;
+      shiftSquares += prior * prior * shift * shift;
       const from = i * CONVERSION_COUNT;
       for (let k = 0; k < CONVERSION_COUNT; k++) {
         const row = from + k;
@@ -276,40 +299,47 @@ export class JmakFit {
         const perShift = perKelvin[row];
         const bend = moved * byEnergy2[row];
         const lnX = lnK0 + value[row] + moved * (byEnergy[row] + bend / 2) - energy * perShift * shift;
+        // Derivatives of ln X by E and by the shift, and those of r by n ln X.
+        const byE = byEnergy[row] + bend - perShift * shift;
+        const byShift = -energy * perShift;
         let slope = SLOPE[k];
         let r = slope * (n * lnX - LN_LN_1A[k]);
+        let curvature = 0;
         if (!logarithmic) {
           const X = Math.exp(n * lnX);
           const left = Math.exp(-X);
           r = 1 - left - CONVERSION[k];
           slope = left * X;
+          if (second) curvature = slope * (1 - X);
         }
-        const j1 = slope * n;
-        const j0 = j1 * (byEnergy[row] + bend - perShift * shift);
-        const j2 = slope * lnX;
-        const g = -j1 * energy * perShift;
         curveSquares += r * r;
-        gg += g * g;
-        gr += g * r;
-        g0 += g * j0;
-        g1 += g * j1;
-        g2 += g * j2;
-        b0 += j0 * r;
-        b1 += j1 * r;
-        b2 += j2 * r;
-        n00 += j0 * j0;
-        n01 += j0 * j1;
-        n02 += j0 * j2;
-        n11 += j1 * j1;
-        n12 += j1 * j2;
-        n22 += j2 * j2;
+        const f = r * slope;
+        const q = slope * slope + r * curvature;
+        const s = second ? f : 0;
+        const qE = q * byE;
+        const qShift = q * byShift;
+        const qX = q * lnX;
+        gg += qShift * byShift;
+        gr += f * byShift;
+        g0 += qShift * byE - s * perShift * perN;
+        g1 += qShift;
+        g2 += qShift * lnX + s * byShift * perN;
+        b0 += f * byE;
+        b1 += f;
+        b2 += f * lnX;
+        n00 += qE * byE + s * byEnergy2[row] * perN;
+        n01 += qE;
+        n02 += qE * lnX + s * byE * perN;
+        n11 += q;
+        n12 += qX + s * perN;
+        n22 += qX * lnX;
       }
       const b = i * (P + 2);
       border[b] = gg;
-      border[b + 1] = gr;
+      border[b + 1] = gr * perN;
       border[b + 2] = g0;
       border[b + 3] = g1;
-      border[b + 4] = g2;
+      border[b + 4] = g2 * perN;
       b0 -= (g0 * gr) / gg;
       b1 -= (g1 * gr) / gg;
       b2 -= (g2 * gr) / gg;
@@ -320,14 +350,14 @@ export class JmakFit {
       n12 -= (g1 * g2) / gg;
       n22 -= (g2 * g2) / gg;
     }
-    this.gradient[0] = b0;
-    this.gradient[1] = b1;
+    this.gradient[0] = n * b0;
+    this.gradient[1] = n * b1;
     this.gradient[2] = b2;
-    normal[0] = n00;
-    normal[1] = normal[3] = n01;
-    normal[2] = normal[6] = n02;
-    normal[4] = n11;
-    normal[5] = normal[7] = n12;
+    normal[0] = n * n * n00;
+    normal[1] = normal[3] = n * n * n01;
+    normal[2] = normal[6] = n * n02;
+    normal[4] = n * n * n11;
+    normal[5] = normal[7] = n * n12;
     normal[8] = n22;
     this.curveSquares = curveSquares;
     return curveSquares + shiftSquares;

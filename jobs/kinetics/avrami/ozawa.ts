@@ -84,7 +84,10 @@ export function fitOzawa(
 /** ln[−ln(1−α)] of a scan at T, linear in 1/T between the conversions of the table (there it is all but straight); NaN outside them. */
 function lnLnAt(d: EventColumns, scan: number, T: number): number {
   const at = scan * CONVERSION_COUNT;
-  const rising = d.temperatureK[at + CONVERSION_COUNT - 1] > d.temperatureK[at];
+  const first = d.temperatureK[at];
+  const last = d.temperatureK[at + CONVERSION_COUNT - 1];
+  const rising = last > first;
+  if (rising ? T < first || T >= last : T > first || T <= last) return Number.NaN;
   for (let k = 1; k < CONVERSION_COUNT; k++) {
     const a = d.temperatureK[at + k - 1];
     const b = d.temperatureK[at + k];

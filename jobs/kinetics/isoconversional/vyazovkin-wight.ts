@@ -36,7 +36,7 @@ export function vyazovkinWightLimits(
     }
     return sum / (n * (n - 1));
   };
-  const lowest = minimise(variance, energy * 0.97, energy * 1.03);
+  const lowest = minimise(variance, energy);
   const least = variance(lowest);
   if (!(least > 1e-20)) return [energy, energy];
   const limit = least * fisherQuantile(0.95, n - 1, n - 1);
@@ -54,27 +54,20 @@ export function vyazovkinWightLimits(
   return low === undefined || high === undefined ? undefined : [low, high];
 }
 
-/** S² is flat at its minimum: this much of E changes it by less than a millionth. */
-const SETTLED = 1e-6;
+/** How far from E the minimum of S² may lie, and how far the two parabolas reach that find it, as parts of E. */
+const MINIMUM_REACH = 0.03;
+const PARABOLAS = [0.01, 3e-4];
 
-/** Golden section. */
-function minimise(f: (x: number) => number, low: number, high: number): number {
-  const g = (Math.sqrt(5) - 1) / 2;
-  let [a, b] = [low, high];
-  let c = b - g * (b - a);
-  let d = a + g * (b - a);
-  let fc = f(c);
-  let fd = f(d);
-  while (b - a > SETTLED * high) {
-    if (fc < fd) {
-      [b, d, fd] = [d, c, fc];
-      c = b - g * (b - a);
-      fc = f(c);
-    } else {
-      [a, c, fc] = [c, d, fd];
-      d = a + g * (b - a);
-      fd = f(d);
-    }
+/** By the vertex of a parabola through three values, then through three near by: S² is all but one. */
+function minimise(f: (E: number) => number, energy: number): number {
+  let at = energy;
+  for (const part of PARABOLAS) {
+    const h = part * energy;
+    const below = f(at - h);
+    const above = f(at + h);
+    const bend = below + above - 2 * f(at);
+    const step = bend > 0 ? (h * (below - above)) / (2 * bend) : below < above ? -h : h;
+    at = Math.min(energy * (1 + MINIMUM_REACH), Math.max(energy * (1 - MINIMUM_REACH), at + step));
   }
-  return (a + b) / 2;
+  return at;
 }
