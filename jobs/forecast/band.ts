@@ -8,13 +8,13 @@ export interface Band {
 }
 
 /** Fewest draws that make a band, and the share of them that must give a finite answer. */
-const LEAST_DRAWS = 20;
-const LEAST_SHARE = 0.9;
+export const LEAST_DRAWS = 20;
+export const LEAST_SHARE = 0.9;
 
 /** The quantile of the last degrees of freedom: a diagram asks hundreds of bands of one source, and it costs more than the rest of a band. */
 let [lastDegrees, lastQuantile] = [Number.NaN, Number.NaN];
 
-function halfQuantile(degreesOfFreedom: number): number {
+export function halfQuantile(degreesOfFreedom: number): number {
   if (degreesOfFreedom !== lastDegrees) {
     lastQuantile = studentQuantile(0.975, Math.max(1, degreesOfFreedom));
     lastDegrees = degreesOfFreedom;

@@ -1,5 +1,5 @@
 import type { ForecastSource } from '../../schema/wire/forecasts.ts';
-import { bandOf } from './band.ts';
+import { halfQuantile, LEAST_DRAWS, LEAST_SHARE } from './band.ts';
 import type { Instances } from './instances.ts';
 
 /** One line of a diagram with its 95 % band; all arrays of one length, abscissa ascending. */
@@ -41,10 +41,37 @@ export const drawsOf = (count: number): number[] => {
   return Array.from({ length: most }, (_, d) => Math.floor((d * count) / most));
 };
 
-/** Half of the 95 % interval around a value; 0 where too few draws make one. */
-export function halfOf(value: number, drawn: ArrayLike<number>, degreesOfFreedom: number): number {
-  const { upper } = bandOf(value, drawn, degreesOfFreedom);
-  return upper === undefined ? 0 : upper - value;
+/**
+ * Half of the 95 % interval of Σ g_j p_j over drawn parameters p, to first order all that a diagram asks: their covariance is worked out once, and a
+ * point costs its square form. 0 where too few draws make one. @param columns p_j of every draw; a gradient may be shorter
+ */
+export function createSpread(
+  columns: readonly ArrayLike<number>[],
+  degreesOfFreedom: number,
+): (gradient: ArrayLike<number>) => number {
+  const m = columns.length;
+  const places = drawsOf(columns[0]?.length ?? 0);
+  const whole = places.filter((d) => columns.every((column) => Number.isFinite(column[d])));
+  if (whole.length < LEAST_DRAWS || whole.length < LEAST_SHARE * places.length) return () => 0;
+  const covariance = new Float64Array(m * m);
+  const centred = columns.map((column) => {
+    const own = Float64Array.from(whole, (d) => column[d]);
+    const mean = own.reduce((sum, v) => sum + v, 0) / own.length;
+    return own.map((v) => v - mean);
+  });
+  for (let i = 0; i < m; i++)
+    for (let j = 0; j <= i; j++) {
+      let sum = 0;
+      for (let d = 0; d < whole.length; d++) sum += centred[i][d] * centred[j][d];
+      covariance[i * m + j] = ((i === j ? 1 : 2) * sum) / (whole.length - 1);
+    }
+  const t = halfQuantile(degreesOfFreedom);
+  return (gradient) => {
+    let variance = 0;
+    for (let i = 0; i < gradient.length; i++)
+      for (let j = 0; j <= i; j++) variance += gradient[i] * gradient[j] * covariance[i * m + j];
+    return t * Math.sqrt(Math.max(0, variance));
+  };
 }
 
 export const beyondMeasured = ({ lowestMeasuredK, highestMeasuredK }: ForecastSource, temperatureK: number): number =>

@@ -5,7 +5,7 @@ import { createSharedHeating } from './shared-heating.ts';
 
 /** Decades of rate that a diagram without asked rates shows below and above the measured ones, and its points a decade. */
 const MARGIN_DECADES = 2;
-const POINTS_A_DECADE = 4;
+const POINTS_A_DECADE = 3;
 /** The line of the critical conversion ends just below its critical rate. */
 const JUST_BELOW = 1e-9;
 

@@ -2,7 +2,7 @@ import type { ForecastSource, ModelFreeCurve } from '../../schema/wire/forecasts
 import { GAS_CONSTANT } from '../../schema/wire/units.ts';
 import { addStretch } from '../laws/arrhenius-integral.ts';
 import { temperatureIntegralFactorFast } from '../laws/temperature-integral.ts';
-import { drawsOf, type Heating, halfOf } from './diagram-line.ts';
+import { createSpread, drawsOf, type Heating } from './diagram-line.ts';
 import { isWhole, placeAt } from './model-free-kinetics.ts';
 
 /** Exponents between the first segment's end and where its integral begins: e^−40 of it is left out. */
@@ -10,18 +10,17 @@ const DEPTH = 40;
 const MOST_STEPS = 30;
 const WITHIN = 1e-10;
 
-/** A temperature on a ramp, with its derivatives by ln of the step and by the energy of each segment up to it. */
+/** A temperature on a ramp, with its derivatives by ln of the step and by the energy, in turn, of each segment up to it. */
 interface Reached {
   K: number;
-  byLnStep: Float64Array;
-  byEnergy: Float64Array;
+  gradient: Float64Array;
 }
 
 /**
  * Heating at β without a model. Segment k ends at T_k, where ∫ w_k dT from T_(k−1) = β J_k; w_k(T) = exp[−(E_k/R)(1/T − x0)], J_k = exp(lnStep_k) times the
  * share of the segment that is asked for, and T_(−1) = 0. Each T_k is found by Newton on the integral in closed form. Its change follows from
  *   w_k(T_k) dT_k = w_k(T_(k−1)) dT_(k−1) + β J_k (d lnStep_k + d ln β) − (∂/∂E_k ∫ w_k dT) dE_k,
- * so that a draw costs two products a segment, to first order in what was drawn. Undefined without a description, or with an energy
+ * so that the spread of T follows from that of what was drawn, to first order. Undefined without a description, or with an energy
  * that is not above zero.
  */
 export function createModelFreeHeating(source: ForecastSource): Heating | undefined {
@@ -31,8 +30,8 @@ export function createModelFreeHeating(source: ForecastSource): Heating | undefi
   return {
     method: 'model_free',
     answer(asked) {
-      const bandAt = createBand(source, curve);
-      return asked.map(({ conversion, lnRate }) => bandAt(lnRate, reach(curve, conversion, lnRate)));
+      const bandAt = createBand(source, curve.conversions.length);
+      return asked.map(({ conversion, lnRate }) => bandAt(reach(curve, conversion, lnRate)));
     },
     lnRateOf(conversion, temperatureK) {
       let lnRate = 0;
@@ -47,32 +46,26 @@ export function createModelFreeHeating(source: ForecastSource): Heating | undefi
   };
 }
 
-const byLnRate = ({ byLnStep }: Reached): number => byLnStep.reduce((sum, v) => sum + v, 0);
+const byLnRate = ({ gradient }: Reached): number => gradient.reduce((sum, v, j) => (j % 2 === 0 ? sum + v : sum), 0);
 
-/** The band of a temperature from the draws, which are taken as their distances from the estimate. */
-function createBand(source: ForecastSource, { conversions, lnStep, energyJPerMol }: ModelFreeCurve) {
-  const { modelFreeDraws, modelFreeDegreesOfFreedom, degreesOfFreedom } = source;
-  const count = conversions.length;
-  const places = drawsOf(modelFreeDraws ? modelFreeDraws.lnStep.length / count : 0);
-  const distances = (drawn: Float64Array | undefined, estimate: Float64Array) =>
-    Float64Array.from({ length: places.length * count }, (_, i) => {
-      const k = i % count;
-      return drawn![places[(i - k) / count] * count + k] - estimate[k];
-    });
-  const steps = distances(modelFreeDraws?.lnStep, lnStep);
-  const energies = distances(modelFreeDraws?.energyJPerMol, energyJPerMol);
-  const lnRates = new Float64Array(places.length);
-  return (lnRate: number, reached: Reached) => {
-    const { K, byLnStep, byEnergy } = reached;
-    const slope = byLnRate(reached);
-    for (let d = 0; d < lnRates.length; d++) {
-      let dT = 0;
-      for (let k = 0, i = d * count; k < byLnStep.length; k++, i++)
-        dT += byLnStep[k] * steps[i] + byEnergy[k] * energies[i];
-      lnRates[d] = lnRate - dT / slope;
-    }
-    // 1/T is nearly a straight line in ln β.
-    const dx = (halfOf(lnRate, lnRates, modelFreeDegreesOfFreedom ?? degreesOfFreedom) * slope) / K ** 2;
+/** The band of a temperature from the spread of ln β at it. */
+function createBand(
+  { modelFreeDraws: drawn, modelFreeDegreesOfFreedom, degreesOfFreedom }: ForecastSource,
+  count: number,
+) {
+  const places = drawsOf(Math.floor((drawn?.lnStep.length ?? 0) / count));
+  // Step and energy of a segment side by side: a conversion needs those up to its own.
+  const columns = Array.from({ length: 2 * count }, (_, j) => {
+    const column = new Float64Array(places.length);
+    const all = j % 2 === 0 ? drawn?.lnStep : drawn?.energyJPerMol;
+    for (let d = 0; d < column.length; d++) column[d] = all![places[d] * count + (j >> 1)];
+    return column;
+  });
+  const spread = createSpread(columns, modelFreeDegreesOfFreedom ?? degreesOfFreedom);
+  return (reached: Reached) => {
+    const { K, gradient } = reached;
+    // 1/T is nearly a straight line in ln β, so half of ln β times its slope is what the draws move T by.
+    const dx = spread(gradient) / K ** 2;
     return { K, lower: 1 / (1 / K + dx), upper: 1 / Math.max(1 / K - dx, Number.MIN_VALUE) };
   };
 }
@@ -80,8 +73,7 @@ function createBand(source: ForecastSource, { conversions, lnStep, energyJPerMol
 function reach(curve: ModelFreeCurve, conversion: number, lnRate: number): Reached {
   const { energyJPerMol, lnStep, x0PerK } = curve;
   const { segment, share } = placeAt(curve, conversion);
-  const byLnStep = new Float64Array(segment + 1);
-  const byEnergy = new Float64Array(segment + 1);
+  const gradient = new Float64Array(2 * (segment + 1));
   const out = { value: 0, byEnergy: 0, byEnergy2: 0 };
   let K = 0;
   for (let k = 0; k <= segment; k++) {
@@ -111,15 +103,12 @@ function reach(curve: ModelFreeCurve, conversion: number, lnRate: number): Reach
     }
     const end = weight(T);
     const carried = k === 0 ? 0 : weight(K) / end;
-    for (let j = 0; j < k; j++) {
-      byLnStep[j] *= carried;
-      byEnergy[j] *= carried;
-    }
-    byLnStep[k] = goal / end;
-    byEnergy[k] = -(out.byEnergy + (x0PerK / GAS_CONSTANT) * out.value) / end;
+    for (let j = 0; j < 2 * k; j++) gradient[j] *= carried;
+    gradient[2 * k] = goal / end;
+    gradient[2 * k + 1] = -(out.byEnergy + (x0PerK / GAS_CONSTANT) * out.value) / end;
     K = T;
   }
-  return { K, byLnStep, byEnergy };
+  return { K, gradient };
 }
 
 /** x = E/(R T) where ln[h(x) e^−x/x²] = −lnRest: c e^shift p(x) is the integral from 0 to T. */

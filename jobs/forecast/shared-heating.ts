@@ -1,17 +1,11 @@
 import type { ForecastSource } from '../../schema/wire/forecasts.ts';
 import type { SharedLaw } from '../../schema/wire/shared-law.ts';
 import { CRITICAL_CONVERSION, coldEnd } from './critical-rates.ts';
-import { drawsOf, type Heating, type HeatingAsk, halfOf } from './diagram-line.ts';
+import { createSpread, type Heating, type HeatingAsk } from './diagram-line.ts';
 import { extentOf } from './kinetics.ts';
 import { isWhole } from './model-free-kinetics.ts';
 import { accumulate, COARSE, FINE, layPanels, lnIntegral, timeOfIntegral } from './programme.ts';
-import {
-  drawnParameters,
-  type LawParameters,
-  type RateCurve,
-  sharedRateCurve,
-  straightRateCurve,
-} from './rate-curve.ts';
+import { type LawParameters, type RateCurve, sharedRateCurve, straightRateCurve } from './rate-curve.ts';
 
 /** Without a melting temperature lines end at this multiple of the highest measured one. */
 const TOP = 1.5;
@@ -42,7 +36,11 @@ export function createSharedHeating(source: ForecastSource): Heating | undefined
   const topK = melting?.meltingK ?? law.highestMeasuredK * TOP;
   const curve = sharedRateCurve(law, law, melting);
   const estimate = integrate(curve, law.lowestMeasuredK, topK);
-  const pessimistic = integrate(straightRateCurve(law, law, melting), law.lowestMeasuredK, topK);
+  let pessimistic: HeatingIntegral | undefined;
+  const straightOf = (target: number) => {
+    pessimistic ??= integrate(straightRateCurve(law, law, melting), law.lowestMeasuredK, topK);
+    return pessimistic.temperatureOf(target);
+  };
   const shift = (conversion: number) => extentOf(conversion) / law.avramiExponent;
   return {
     method: 'shared_law',
@@ -57,7 +55,7 @@ export function createSharedHeating(source: ForecastSource): Heating | undefined
         let lower = half > 0 ? estimate.temperatureOf(target - half) : K;
         const upper = half > 0 ? estimate.temperatureOf(target + half) : K;
         // A glass may be no more stable than the straight law says.
-        const straightK = K < law.frozenBelowK ? pessimistic.temperatureOf(target) : K;
+        const straightK = K < law.frozenBelowK ? straightOf(target) : K;
         if (straightK < lower) lower = straightK;
         // Not reached before melting: melting ends the band.
         return { K, lower, upper: Number.isNaN(upper) ? topK : upper };
@@ -76,7 +74,7 @@ function integrate(curve: RateCurve, measuredK: number, topK: number): HeatingIn
   return {
     lnAt(T) {
       if (T >= topK) return total;
-      const part = layPanels(ramp([fromK, T]), curve.steepness, curve.breaksK, FINE);
+      const part = layPanels(ramp([fromK, T]), curve.steepness, curve.breaksK, COARSE);
       return lnIntegral(accumulate(part, curve.lnRate));
     },
     temperatureOf: (lnTarget) =>
@@ -85,7 +83,7 @@ function integrate(curve: RateCurve, measuredK: number, topK: number): HeatingIn
 }
 
 /**
- * Half of the 95 % interval of ln β at the temperature of each point, to first order in ln K0, E and the bend; 0 where too few draws make one,
+ * Half of the 95 % interval of ln β at the temperature of each point, to first order in what was drawn; 0 where too few draws make one,
  * NaN where the temperature is.
  */
 function halfWidths(
@@ -111,18 +109,12 @@ function halfWidths(
   };
   const byLnEnergy = slopes((step) => ({ energyJPerMol: law.energyJPerMol * Math.exp(step) }));
   const byBend = slopes((step) => ({ bend: law.bend + step }));
-  const drawn = drawsOf(lawDraws.bend.length).map((d) => drawnParameters(lawDraws, d));
-  const lnRates = new Float64Array(drawn.length);
-  return asked.map(({ conversion, lnRate }, i) => {
-    const extent = extentOf(conversion);
-    drawn.forEach((p, d) => {
-      const lnIntegral =
-        p.lnRateAtMiddle -
-        law.lnRateAtMiddle +
-        byLnEnergy[i] * (p.energyJPerMol / law.energyJPerMol - 1) +
-        byBend[i] * (p.bend - law.bend);
-      lnRates[d] = lnRate + lnIntegral - extent * (1 / p.avramiExponent - 1 / law.avramiExponent);
-    });
-    return halfOf(lnRate, lnRates, degreesOfFreedom);
-  });
+  const { lnRateAtMiddle, energyJPerMol, bend, avramiExponent } = lawDraws;
+  const spread = createSpread(
+    [lnRateAtMiddle, energyJPerMol, bend, avramiExponent.map((n) => 1 / n)],
+    degreesOfFreedom,
+  );
+  return asked.map(({ conversion }, i) =>
+    spread([1, byLnEnergy[i] / law.energyJPerMol, byBend[i], -extentOf(conversion)]),
+  );
 }
