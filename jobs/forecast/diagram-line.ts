@@ -51,18 +51,25 @@ export function createSpread(
 ): (gradient: ArrayLike<number>) => number {
   const m = columns.length;
   const places = drawsOf(columns[0]?.length ?? 0);
-  const whole = places.filter((d) => columns.every((column) => Number.isFinite(column[d])));
+  const isWhole = (d: number) => {
+    for (let j = 0; j < m; j++) if (!Number.isFinite(columns[j][d])) return false;
+    return true;
+  };
+  const whole = places.filter(isWhole);
   if (whole.length < LEAST_DRAWS || whole.length < LEAST_SHARE * places.length) return () => 0;
   const covariance = new Float64Array(m * m);
   const centred = columns.map((column) => {
-    const own = Float64Array.from(whole, (d) => column[d]);
-    const mean = own.reduce((sum, v) => sum + v, 0) / own.length;
-    return own.map((v) => v - mean);
+    let mean = 0;
+    for (let d = 0; d < whole.length; d++) mean += column[whole[d]] / whole.length;
+    const own = new Float64Array(whole.length);
+    for (let d = 0; d < whole.length; d++) own[d] = column[whole[d]] - mean;
+    return own;
   });
   for (let i = 0; i < m; i++)
     for (let j = 0; j <= i; j++) {
+      const [a, b] = [centred[i], centred[j]];
       let sum = 0;
-      for (let d = 0; d < whole.length; d++) sum += centred[i][d] * centred[j][d];
+      for (let d = 0; d < a.length; d++) sum += a[d] * b[d];
       covariance[i * m + j] = ((i === j ? 1 : 2) * sum) / (whole.length - 1);
     }
   const t = halfQuantile(degreesOfFreedom);

@@ -93,15 +93,20 @@ function halfWidths(
   asked: readonly HeatingAsk[],
   reachedK: readonly number[],
 ): number[] {
+  const rising = [...reachedK.keys()].filter((i) => reachedK[i] > 0).sort((a, b) => reachedK[a] - reachedK[b]);
   const knots: number[] = [];
-  for (const K of reachedK.filter((T) => T > 0).sort((a, b) => a - b))
-    if (!(K - knots[knots.length - 1] < SAME_K)) knots.push(K);
+  for (const i of rising) if (!(reachedK[i] - knots[knots.length - 1] < SAME_K)) knots.push(reachedK[i]);
   if (!lawDraws || knots.length === 0) return asked.map(() => 0);
   const panels = layPanels(ramp([coldEnd(curve, knots[0]), ...knots]), curve.steepness, curve.breaksK, COARSE);
-  const last = reachedK.map((K) => panels.toK.findLastIndex((end) => end < K + SAME_K / 2));
+  const last = new Int32Array(reachedK.length).fill(-1);
+  let panel = -1;
+  for (const i of rising) {
+    while (panels.toK[panel + 1] < reachedK[i] + SAME_K / 2) panel++;
+    last[i] = panel;
+  }
   const lnIntegrals = (p: Partial<LawParameters>) => {
     const { lnScale, sums } = accumulate(panels, sharedRateCurve(law, { ...law, ...p }, melting).lnRate);
-    return last.map((at) => lnScale + Math.log(sums[at]));
+    return Float64Array.from(last, (at) => lnScale + Math.log(sums[at]));
   };
   const slopes = (of: (step: number) => Partial<LawParameters>) => {
     const [below, above] = [lnIntegrals(of(-STEP)), lnIntegrals(of(STEP))];
