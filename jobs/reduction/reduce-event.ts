@@ -71,9 +71,12 @@ export function reduceEvents(
     return { events };
   }
   const { isolated, parts } = separated;
-  const events = parts.map((x, i) =>
-    completeEvent(c, w, segment, isolated, x, i, room, first + i, parts.length, programme),
-  );
+  const events: ReducedEvent[] = [];
+  parts.forEach((x, i) => {
+    const number = first + events.length;
+    const event = completeEvent(c, w, segment, isolated, x, i, room, number, parts.length, programme);
+    if (event) events.push(event);
+  });
   const { together } = isolated;
   return { events, shown: { window: w, excess: isolated.excess }, ...(together && { glass: together.glass }) };
 }
@@ -89,7 +92,7 @@ function completeEvent(
   number: number,
   together: number,
   programme: Programme,
-): ReducedEvent {
+): ReducedEvent | undefined {
   const { input, scan } = c;
   const { calibration } = input;
   const where = { ...c.where, event: number };
@@ -97,6 +100,8 @@ function completeEvent(
   const bell = isolated.bells[index];
   const shape = shapeEvent(w, x, bell, responseS);
   const marks = findLandmarks(w, x, shape);
+  // A valley between two humps of the baseline, not an event.
+  if (!(x.area > 0 && marks.widthS > 0)) return undefined;
   const rate = eventRate(c, marks, segment, where);
   const shiftK = c.shiftAt(rate, temperatureAt(w, marks.peakS, shape.widthS / 10));
   const T = (t: number) => temperatureAt(w, t, shape.widthS / 10) + shiftK;

@@ -91,12 +91,14 @@ interface PeakFit {
  * `tail` and `steepness`: 1 held (tails at JMAK, or both alike), 0 free.
  */
 const SHAPES = [
-  { held: 0, tails: 1, steepnesses: 1, parameters: (k: number) => 2 * k + 2 },
   { held: 1, tails: 0, steepnesses: 0, parameters: (k: number) => 3 * k },
+  { held: 0, tails: 1, steepnesses: 1, parameters: (k: number) => 2 * k + 2 },
   { held: 0, tails: 1, steepnesses: 0, parameters: (k: number) => 3 * k + 1 },
   { held: 0, tails: 0, steepnesses: 0, parameters: (k: number) => 4 * k },
 ];
-const JMAK = 1;
+const JMAK = 0;
+/** More peaks than this are humps of a baseline rather than events: JMAK and free shapes are enough there, and each costs its time. */
+const MOST_COMPARED = 3;
 /** Where events are not JMAK, the family is near their shapes at best: this part of what leaving JMAK moves an area by stays open. */
 const MOVED_AREAS = 0.3;
 /** Weight by which what is held or shared is. */
@@ -154,13 +156,14 @@ function fitPeaks(w: EventWindow, x: Excess, start: Bell[], startS: number | und
     return { q, open: [0], clock, scaleY, residual: scaleY * Math.sqrt(sumOfSquares / rows) };
   }
   const variance = (w.noise / scaleY) ** 2 + LEAST_SHAPE_ERROR ** 2;
+  const shapes = count > MOST_COMPARED ? [SHAPES[JMAK], SHAPES[SHAPES.length - 1]] : SHAPES;
   let near = parameters;
-  const fits = SHAPES.map(({ held, tails, steepnesses, parameters: used }, i) => {
+  const fits = shapes.map(({ held, tails, steepnesses, parameters: used }) => {
     pull = held ? HELD : error / TAIL_SPREAD;
     tie = { tails: TIED * tails, steepnesses: TIED * steepnesses };
-    const { parameters: q, sumOfSquares } = fit.minimise(near, scale, 60, 1e-5);
-    // The free shapes begin where the shared tail ended; the others at the rough bells.
-    near = i === 0 ? parameters : q;
+    const { parameters: q, sumOfSquares } = fit.minimise(steepnesses ? parameters : near, scale, 60, 1e-5);
+    // Each begins where the one before ended; shared steepnesses, another valley, at the rough bells.
+    if (!steepnesses) near = q;
     return { q, sumOfSquares, score: sumOfSquares / variance / SAME + used(count) * Math.log(rows / SAME) };
   });
   if (!fits.every(({ q, score }) => q.every(Number.isFinite) && Number.isFinite(score))) return undefined;
