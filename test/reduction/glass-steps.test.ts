@@ -25,8 +25,9 @@ test('a step between parallel lines is found beside a hump of the baseline', () 
 });
 
 test('the same step the other way round is none', () => {
-  const { step: found } = look((t) => step(t, 500, 20));
+  const { step: found, doubtful } = look((t) => step(t, 500, 20));
   expect(found).toBeUndefined();
+  expect(doubtful).toEqual([]);
 });
 
 test('a jump between two rows is told from a step that rows resolve', () => {
