@@ -68,7 +68,7 @@ export function analyseSegment(
   excursions: Excursion[],
 ): SegmentFindings {
   const { timeS, temperatureK } = c.scan;
-  const bells: Bell[] = withoutRipple(c, segment, excursions).map((x) => ({ ...x, height: x.prominence }));
+  const bells: Bell[] = withoutRipple(c, segment, excursions).map((x) => ({ height: x.prominence, ...x }));
   if (segment.kind === 'hold') {
     if (c.input.limitsK) c.flags.push(limitsUnused(c, segment));
     return reduceHold(c, segment, before, bells);

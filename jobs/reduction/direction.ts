@@ -40,7 +40,7 @@ export function findDirection(
     const leftS = Math.min(strongest.leftS, MOST_LEFT * strongest.rightS);
     const before = lowerBound(timeS, strongest.peakS - GLASS_BEFORE * leftS);
     const noise = noiseSigma(heatFlow, s.from, before);
-    const foot = { ...strongest, leftS, height: strongest.prominence };
+    const foot = { height: strongest.prominence, ...strongest, leftS };
     const steps = [heatFlow, flipped].map((y) => findGlassTransition(timeS, y, s.from, before, noise, foot));
     // Seen the wrong way round, what lies beside a step can look like a small one.
     const [weightUp, weightDown] = steps.map((found) => found?.significance ?? 0);

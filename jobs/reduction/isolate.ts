@@ -74,7 +74,7 @@ function isolateFrom(
         Math.abs(b.peakS - bells[i].peakS) < 0.05 * width,
     );
     bells = next;
-    found = { ...fitted, bells };
+    found = { bells, ...fitted };
     if (!settled) continue;
     if (found.glassOverlap && room === around) {
       // Now that the event's foot is known, the step can be told from it better.

@@ -38,7 +38,7 @@ export function smoothSignal(t: Float64Array, e: Float64Array, from: number, to:
   }
   const middle = Math.min(n - 1, (from + to) >> 1);
   const { valueNoise, slopeNoise } = fitLocalPolynomial(t, e, t[middle], half, 3, middle);
-  return { ...out, valueNoise, slopeNoise };
+  return { valueNoise, slopeNoise, ...out };
 }
 
 function weigh(weights: Float64Array, y: Float64Array, from: number): number {

@@ -55,7 +55,7 @@ export function averageWindow(
     out.T[b] = sT / size;
     out.y[b] = sy / size;
   }
-  return { ...out, noise: rowNoise / Math.sqrt(size), flicker: 0, binSize: size, undoneS: 0 };
+  return { noise: rowNoise / Math.sqrt(size), flicker: 0, binSize: size, undoneS: 0, ...out };
 }
 
 /**
