@@ -4,7 +4,7 @@ import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { VerdictRow } from '../../schema/wire/verdicts.ts';
 import type { Curves } from '../model/curves.ts';
 import type { Route } from '../routes.ts';
-import { askAhead, firstPage, request } from './request.ts';
+import { askAhead, firstPage, requestJson } from './request.ts';
 import type { Campaign, FlagRow, InstrumentRow, SampleView, ScanRow, Status } from './rows.ts';
 
 /** What a page shows first. */
@@ -33,12 +33,12 @@ const overviewRoute = (id: string, sample: string | undefined): string =>
   `/campaigns/${encodeURIComponent(id)}/overview${sample === undefined ? '' : `?${new URLSearchParams({ sample })}`}`;
 
 /** What a page of a campaign, or of one sample of it, shows first. */
-export const loadOverview = async (id: string, sample: string | undefined, signal?: AbortSignal): Promise<Overview> =>
-  (await request(overviewRoute(id, sample), { signal })).json();
+export const loadOverview = (id: string, sample: string | undefined, signal?: AbortSignal): Promise<Overview> =>
+  requestJson(overviewRoute(id, sample), signal);
 
-/** Asks for what the page at this address shows first. */
-export function askForPage(route: Route): void {
-  if (route.view === 'campaigns') askAhead(firstPage('/campaigns'));
-  else if (route.view === 'campaign') askAhead(overviewRoute(route.id, undefined));
-  else if (route.view === 'sample') askAhead(overviewRoute(route.id, route.sample));
+/** Asks for what the page at this address shows first. Resolves when it is there, or refused. */
+export async function askForPage(route: Route): Promise<void> {
+  if (route.view === 'campaigns') await askAhead(firstPage('/campaigns'));
+  else if (route.view === 'campaign') await askAhead(overviewRoute(route.id, undefined));
+  else if (route.view === 'sample') await askAhead(overviewRoute(route.id, route.sample));
 }

@@ -34,14 +34,29 @@ const unreachable = (cause: unknown): Problem =>
     'Check that the server runs (ratespan serve) and that this computer reaches it; the page keeps trying.',
   );
 
-let ahead: { route: string; answer: Promise<Response> } | undefined;
+let ahead: { route: string; answer: Promise<unknown> } | undefined;
 
-/** Sends a request before whoever needs its answer is there; the next request of the same route takes the answer. */
-export function askAhead(route: string): void {
-  const answer = request(route);
-  // Told to whoever takes it.
-  answer.catch(() => undefined);
+/**
+ * Asks before whoever needs the answer is there; the next `requestJson` of the same route takes it. Resolves when the answer is
+ * read, or refused, which is told to whoever takes it.
+ */
+export function askAhead(route: string): Promise<void> {
+  const answer = requestJson(route);
   ahead = { route, answer };
+  return answer.then(
+    () => undefined,
+    () => undefined,
+  );
+}
+
+/** The JSON that a GET answers; throws as `request` does. */
+export async function requestJson<Answer>(route: string, signal?: AbortSignal): Promise<Answer> {
+  if (ahead?.route === route) {
+    const { answer } = ahead;
+    ahead = undefined;
+    return answer as Promise<Answer>;
+  }
+  return (await request(route, { signal })).json();
 }
 
 /**
@@ -49,11 +64,6 @@ export function askAhead(route: string): void {
  * Throws a Problem for every answer that is not 2xx (problem+json where given) and when no answer comes.
  */
 export async function request(route: string, init: RequestInit = {}): Promise<Response> {
-  if (ahead?.route === route && init.method === undefined) {
-    const { answer } = ahead;
-    ahead = undefined;
-    return answer;
-  }
   let response: Response;
   const token = accessToken.value;
   const headers = token === '' ? init.headers : { ...init.headers, authorization: `Bearer ${token}` };
@@ -93,7 +103,7 @@ export async function requestAll<Item>(
   const items: Item[] = [];
   let after: string | undefined;
   do {
-    const page = await (await request(pageRoute(route, filter, after), { signal })).json();
+    const page: { items: Item[]; next?: string | null } = await requestJson(pageRoute(route, filter, after), signal);
     items.push(...page.items);
     after = page.next ?? undefined;
   } while (after !== undefined);
