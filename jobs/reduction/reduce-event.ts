@@ -100,8 +100,8 @@ function completeEvent(
   const bell = isolated.bells[index];
   const shape = shapeEvent(w, x, bell, responseS);
   const marks = findLandmarks(w, x, shape);
-  // A valley between two humps of the baseline, not an event.
-  if (!(x.area > 0 && marks.widthS > 0)) return undefined;
+  // A valley between two humps of the baseline, not an event; what the user has set limits to is one, however cut.
+  if (!room.limits && !(x.area > 0 && marks.widthS > 0)) return undefined;
   const rate = eventRate(c, marks, segment, where);
   const shiftK = c.shiftAt(rate, temperatureAt(w, marks.peakS, shape.widthS / 10));
   const T = (t: number) => temperatureAt(w, t, shape.widthS / 10) + shiftK;
