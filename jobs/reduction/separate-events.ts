@@ -5,10 +5,10 @@ import { misfitOfOne, partExcess, type Separation, separatePeaks } from './separ
 import { fitStepUnderEvent } from './step-under-event.ts';
 import type { EventWindow } from './window.ts';
 
-/** A single event is looked at for a hidden second one when one fitted peak misses it by this much of its height (a JMAK event: 1 %) … */
-const MISFIT_PART = 0.03;
+/** A single event is looked at for a hidden second one when one fitted peak misses it by this much of its height (a JMAK event: 1 %, a Gaussian 1.7 %) … */
+const MISFIT_PART = 0.025;
 /** … and the second counts when two peaks leave less than this part of that misfit and hold this part of the area each. */
-const MISFIT_LEFT = 0.35;
+const MISFIT_LEFT = 0.25;
 const LEAST_SHARE = 0.08;
 
 /** … and for a glass transition under it where it is missed by this much. */
