@@ -1,8 +1,9 @@
 import type { ResultRow } from '../jobs/store/index.ts';
+import type { CurveKind } from '../schema/wire/curve-kinds.ts';
 import { CONVERSION_GRID, type ReducedScan } from '../schema/wire/reduced.ts';
 import { GAS_CONSTANT } from '../schema/wire/units.ts';
 import type { PlotCurve } from '../schema/wire/verdicts.ts';
-import type { CurveKind, CurveSeries, Curves } from './shapes/curves.ts';
+import type { CurveSeries, Curves } from './shapes/curves.ts';
 
 /** One reduced scan with what names its curves. */
 export interface ReducedSampleScan {

@@ -9,6 +9,7 @@ import {
   type SampleView,
   type TableFilter,
 } from '../jobs/store/index.ts';
+import { CURVE_KINDS, type CurveKind } from '../schema/wire/curve-kinds.ts';
 import { FORECAST_CAUTION } from '../schema/wire/forecasts.ts';
 import type { ResultTable } from '../schema/wire/result-tables.ts';
 import {
@@ -24,7 +25,7 @@ import {
   traceSeries,
 } from './curves.ts';
 import { criticalRateSeries, diagramSeries } from './diagram-series.ts';
-import { CURVE_KINDS, type CurveKind, type CurveSeries, type Curves } from './shapes/curves.ts';
+import type { CurveSeries, Curves } from './shapes/curves.ts';
 
 async function reducedScans(ports: Ports, { campaignId, sample }: SampleView): Promise<ReducedSampleScan[]> {
   const found: ReducedSampleScan[] = [];

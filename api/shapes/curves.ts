@@ -1,19 +1,5 @@
 import { z } from '@hono/zod-openapi';
-
-/** Kinds of curves that a sample has. */
-export const CURVE_KINDS = [
-  'thermogram',
-  'baseline',
-  'conversion',
-  'kissinger',
-  'energy',
-  'local_energy',
-  'growth',
-  'viscosity',
-  'ttt',
-  'constant_heating',
-] as const;
-export type CurveKind = (typeof CURVE_KINDS)[number];
+import { CURVE_KINDS } from '../../schema/wire/curve-kinds.ts';
 
 export const CURVE_NOTES =
   'The diagrams `ttt` (time at constant temperature) and `constant_heating` (temperature at constant heating rate) have one series an event, method and conversion, with the 95 % band and with the distance of each point from the measured temperatures. Where a critical heating rate is known a series of that name stands upright at it up to the melting temperature, and there goes to the lower and to the upper end of its interval.';

@@ -1,9 +1,10 @@
 import type { CoverageRow, GapRow } from '../../schema/wire/campaign.ts';
+import type { CurveKind } from '../../schema/wire/curve-kinds.ts';
 import type { AdviceRow, ForecastRow } from '../../schema/wire/forecasts.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { ResultTable } from '../../schema/wire/result-tables.ts';
 import type { VerdictRow } from '../../schema/wire/verdicts.ts';
-import type { CurveKind, Curves } from '../model/curves.ts';
+import type { Curves } from '../model/curves.ts';
 import { request, requestAll } from './request.ts';
 import type { Campaign, FileOutcome, FlagRow, InstrumentRow, JobRow, SampleView, ScanRow, Status } from './rows.ts';
 import { copyText, saveFile } from './save.ts';

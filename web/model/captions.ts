@@ -1,5 +1,5 @@
+import type { CurveKind } from '../../schema/wire/curve-kinds.ts';
 import { FORECAST_CAUTION } from '../../schema/wire/forecasts.ts';
-import type { CurveKind } from './curves.ts';
 
 /** Title and words of each figure, on the page and in the report. */
 export const FIGURES: Record<

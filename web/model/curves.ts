@@ -1,3 +1,4 @@
+import type { CurveKind } from '../../schema/wire/curve-kinds.ts';
 import type { ScanRow } from '../client/rows.ts';
 
 /** One curve or set of points. */
@@ -17,18 +18,14 @@ export interface CurveSeries {
   beyond_measured_K?: number[];
 }
 
-/** Kinds of curves a sample may have, in the order in which they are shown. */
-export type CurveKind =
-  | 'thermogram'
-  | 'baseline'
-  | 'conversion'
-  | 'kissinger'
-  | 'energy'
-  | 'local_energy'
-  | 'growth'
-  | 'viscosity'
-  | 'ttt'
-  | 'constant_heating';
+/** Kinds that stand below the figures of the scans, each in figures of one make. */
+export const OTHER_KINDS = [
+  'local_energy',
+  'growth',
+  'viscosity',
+  'ttt',
+  'constant_heating',
+] as const satisfies CurveKind[];
 
 /** Body of GET /samples/:id/curves. */
 export interface Curves {

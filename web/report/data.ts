@@ -1,10 +1,11 @@
 import type { CoverageRow, GapRow } from '../../schema/wire/campaign.ts';
+import type { CurveKind } from '../../schema/wire/curve-kinds.ts';
 import type { AdviceRow, ForecastRow } from '../../schema/wire/forecasts.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { SampleState } from '../../schema/wire/states.ts';
 import type { VerdictRow } from '../../schema/wire/verdicts.ts';
 import type { FlagRow, InstrumentRow, ScanRow } from '../client/rows.ts';
-import type { CurveKind, Curves } from '../model/curves.ts';
+import type { Curves } from '../model/curves.ts';
 
 /** All that a report says. Rows are keyed as the API and the CSV files key them, missing is null; the report reads nothing else. */
 export interface ReportData {

@@ -15,9 +15,9 @@ import type { Units } from '../format.ts';
 import { FIGURES } from '../model/captions.ts';
 import {
   buildLanes,
-  type CurveKind,
   type CurveSeries,
   curvesByEvent,
+  OTHER_KINDS,
   partConversion,
   partLanes,
   splitCurves,
@@ -157,8 +157,6 @@ function CoverageFigure(props: {
     </ReportFigure>
   );
 }
-
-const OTHER_KINDS: CurveKind[] = ['local_energy', 'growth', 'viscosity', 'ttt', 'constant_heating'];
 
 /** Every figure of one sample for which there are curves. */
 export function SampleFigures(props: {

@@ -1,4 +1,5 @@
 import type { GapRow } from '../../schema/wire/campaign.ts';
+import { CURVE_KINDS, type CurveKind } from '../../schema/wire/curve-kinds.ts';
 import type { AdviceRow, ForecastRow } from '../../schema/wire/forecasts.ts';
 import type { ParameterRow } from '../../schema/wire/parameters.ts';
 import type { VerdictRow } from '../../schema/wire/verdicts.ts';
@@ -6,21 +7,8 @@ import { loadCurves, loadParameters, loadSample, loadTable, type TableRows } fro
 import type { Overview } from '../client/overview.ts';
 import { Problem } from '../client/request.ts';
 import type { FlagRow, InstrumentRow, SampleView, ScanRow, Status, StatusSample } from '../client/rows.ts';
-import type { CurveKind, Curves } from '../model/curves.ts';
+import type { Curves } from '../model/curves.ts';
 import { openLivePage } from './live-page.ts';
-
-const KINDS: CurveKind[] = [
-  'thermogram',
-  'baseline',
-  'conversion',
-  'kissinger',
-  'energy',
-  'local_energy',
-  'growth',
-  'viscosity',
-  'ttt',
-  'constant_heating',
-];
 
 export interface SampleData {
   sample: StatusSample;
@@ -67,7 +55,7 @@ async function loadAll(campaignId: string, name: string, status: Status, signal:
       load('forecasts'),
       load('advice'),
       loadParameters(campaignId, filter, signal),
-      ...KINDS.map((kind) => loadCurves(sample.id, kind, signal)),
+      ...CURVE_KINDS.map((kind) => loadCurves(sample.id, kind, signal)),
     ]);
   const below = { flags, gaps, parameters, forecasts, advice };
   const byKind = Object.fromEntries(curves.map((c) => [c.kind, c]));

@@ -6,7 +6,7 @@ import { StateGlyph } from '../charts/state-glyph.tsx';
 import type { Campaign, ScanRow, Status } from '../client/rows.ts';
 import { formatCount } from '../format.ts';
 import { FIGURES } from '../model/captions.ts';
-import { buildLanes, type CurveKind, partLanes } from '../model/curves.ts';
+import { buildLanes, OTHER_KINDS, partLanes } from '../model/curves.ts';
 import { numbersBySample } from '../model/headline.ts';
 import { tellableNow } from '../model/next-steps.ts';
 import { identifyScans } from '../model/scan-ids.ts';
@@ -27,8 +27,6 @@ import { ConversionFigures, EnergyFigures, InstrumentKeys, KissingerFigures, Oth
 import { ScanPanel } from './scan-panel.tsx';
 import { ScanTable } from './scan-table.tsx';
 import { useParts } from './use-parts.ts';
-
-const OTHER_KINDS: CurveKind[] = ['local_energy', 'growth', 'viscosity', 'ttt', 'constant_heating'];
 
 /** One sample: its scans, what they give, and what is in doubt. */
 export function SampleView({ id, sample: name }: { id: string; sample: string }) {
