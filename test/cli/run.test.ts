@@ -1,3 +1,4 @@
+import { createHash } from 'node:crypto';
 import { readdir, readFile, rm } from 'node:fs/promises';
 import { join } from 'node:path';
 import { describe, expect, test } from 'vitest';
@@ -63,6 +64,12 @@ describe('run', () => {
       counts: { scans: { reduced: 6 } },
     });
     expect(record.inputs).toHaveLength(8);
+    for (const { file, sha256 } of record.inputs)
+      expect(sha256, file).toBe(
+        createHash('sha256')
+          .update(await readFile(join(input, file)))
+          .digest('hex'),
+      );
     expect(record.settings.draws).toBe(400);
     expect(record.seed.glass).toMatch(/^[0-9a-f]{64}$/);
 
